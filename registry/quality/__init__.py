@@ -1,0 +1,1 @@
+"""Reference materials, blanks, duplicates and precision; no database."""

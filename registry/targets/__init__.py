@@ -1,0 +1,1 @@
+"""Criteria and verdicts: the definitions are TOML data, the engine judges whole batches of arrays."""
