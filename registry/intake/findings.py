@@ -1,0 +1,71 @@
+"""Collects the problems of one file: equal faults are listed up to a number and then counted."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass, field
+
+from registry.errors import Problem
+
+
+@dataclass
+class Findings:
+    """The faults found so far. ``column`` and ``found`` may differ within a group; ``what`` names the group."""
+
+    file: str
+    listed: int = 20
+    refused_lines: set[int] = field(default_factory=set)
+    whole_file_refused: bool = False
+    _problems: list[Problem] = field(default_factory=list)
+    _counts: dict[tuple[str, str], int] = field(default_factory=dict)
+    _last: dict[tuple[str, str], Problem] = field(default_factory=dict)
+
+    def add(
+        self,
+        what: str,
+        *,
+        row: int | None = None,
+        column: str | None = None,
+        found: str | None = None,
+        expected: str | None = None,
+        remedy: str | None = None,
+        severity: str = "problem",
+    ) -> None:
+        """Record one fault; past the limit of its kind it is only counted (its line is still remembered)."""
+        if severity == "problem":
+            if row is None:
+                self.whole_file_refused = True
+            else:
+                self.refused_lines.add(row)
+        group = (severity, what)
+        self._counts[group] = count = self._counts.get(group, 0) + 1
+        if found is not None and len(found) > 80:
+            found = found[:77] + "..."
+        problem = Problem(self.file, what, row, column, found, expected, remedy, severity)
+        if count <= self.listed:
+            self._problems.append(problem)
+        else:
+            self._last[group] = problem
+
+    def warn(self, what: str, **places: object) -> None:
+        self.add(what, severity="warning", **places)  # type: ignore[arg-type]
+
+    def has_problems(self) -> bool:
+        return self.whole_file_refused or bool(self.refused_lines)
+
+    def problems(self) -> list[Problem]:
+        """All faults: those of the whole file first, then by row, then the counts of the groups cut short."""
+        ordered = sorted(self._problems, key=lambda one: (one.row is not None, one.row or 0))
+        for (severity, what), last in self._last.items():
+            more = self._counts[severity, what] - self.listed
+            ordered.append(
+                Problem(
+                    self.file,
+                    f"{more} more of the same kind ({what}), the last at row {last.row}",
+                    column=last.column,
+                    found=last.found,
+                    expected=last.expected,
+                    remedy=last.remedy,
+                    severity=severity,
+                )
+            )
+        return ordered

@@ -1,0 +1,114 @@
+"""What the intake hands over: the checked tables, what was understood, and every problem of the file."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass, field
+from typing import Any
+
+import numpy as np
+from numpy.typing import NDArray
+
+from registry.errors import Problem
+from registry.intake.recipes import Recipe
+
+KINDS = ("areas", "sites", "surveys", "intervals", "intrusions", "samples", "results", "reference-materials")
+
+
+@dataclass(frozen=True)
+class ReadingOptions:
+    """Choices of the user that change how a file is read.
+
+    ``recipe`` corrects what was understood; ``sheet`` names one sheet of a workbook or one member of an archive;
+    ``negative_means_below`` reads ``-x`` as below the limit x (only on the user's word); ``unit`` is the unit of every
+    result column that states none; ``listed`` is how many equal faults are listed one by one;
+    ``unpacked_limit_bytes`` bounds what an archive may unpack to.
+    """
+
+    recipe: Recipe | None = None
+    sheet: str | None = None
+    negative_means_below: bool = False
+    unit: str | None = None
+    listed: int = 20
+    unpacked_limit_bytes: int = 2_000_000_000
+
+
+@dataclass
+class MasterTable:
+    """Rows of master data: ``rows`` maps each contract column that stood in the file to its values, None for blank.
+
+    Numbers are float, ``depth_m`` and the like in the unit of the name; dates ISO text; truth values bool; the rest text.
+    """
+
+    kind: str
+    columns: tuple[str, ...]
+    rows: dict[str, list[Any]]
+    line_no: NDArray[np.int64]
+    ignored: tuple[str, ...] = ()
+
+    def __len__(self) -> int:
+        return len(self.line_no)
+
+
+@dataclass
+class ResultColumn:
+    """One column of results: ``position`` from 0 in the file (in a long table: order of first appearance)."""
+
+    position: int
+    header: str
+    analyte: str
+    unit: str
+    method: str | None = None
+    digestion: str = "unknown"
+    detection_limit: float | None = None
+    upper_limit: float | None = None
+
+
+@dataclass
+class ResultTable:
+    """Results of one file. ``values`` float64 (n, m), NaN missing, in each column's unit as reported.
+
+    ``qualifiers`` uint8 (n, m): 0 none, 1 below the value, 2 above it (``analytes.QUALIFIER_*``). ``control_text`` is
+    what a QA/QC or sample-type column said of the line (``BLANK``, ``DUPL OF ...``), None where it said nothing.
+    """
+
+    columns: list[ResultColumn]
+    sample_codes: list[str]
+    line_no: NDArray[np.int64]
+    values: NDArray[np.float64]
+    qualifiers: NDArray[np.uint8]
+    certificate: str | None = None
+    lab: str | None = None
+    ignored: tuple[str, ...] = ()
+    control_text: list[str | None] = field(default_factory=list)
+    sample_header: str = ""
+
+    def __len__(self) -> int:
+        return len(self.sample_codes)
+
+
+@dataclass
+class Reading:
+    """One file as read. ``problems`` holds all of it; the file may be stored only if ``ok``.
+
+    ``refused_lines`` are all lines with a problem of their own, grouped or not: what ``--keep-going`` leaves out;
+    ``whole_file_refused`` says that a problem concerns the file itself, so that no row of it can be kept.
+    ``recipe`` is this reading as a recipe that can be saved, corrected and applied again.
+    """
+
+    file: str
+    kind: str | None = None
+    problems: list[Problem] = field(default_factory=list)
+    understood: list[str] = field(default_factory=list)
+    master: MasterTable | None = None
+    results: ResultTable | None = None
+    refused_lines: frozenset[int] = frozenset()
+    whole_file_refused: bool = False
+    recipe: Recipe | None = None
+
+    @property
+    def ok(self) -> bool:
+        return not any(problem.severity == "problem" for problem in self.problems)
+
+    @property
+    def warnings(self) -> list[Problem]:
+        return [problem for problem in self.problems if problem.severity == "warning"]
