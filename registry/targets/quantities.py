@@ -1,0 +1,216 @@
+"""Quantities that only the targets ask for, and those known better than as a point: rules on what is known."""
+
+from __future__ import annotations
+
+import numpy as np
+
+from registry.petrology.constants import ZERO_CELSIUS_K
+from registry.petrology.saturation import ZIRCON_M_HIGH, ZIRCON_M_LOW, ZIRCON_SIO2_LOW_WT, zircon_m
+from registry.targets.intervals import Booleans, Floats, Interval, Known, Rule, Words, point
+
+#: Contributions to heat production, uW/m3 per kg/m3: U and Th in ppm, K2O in wt% (0.8302 K in K2O) [rybach1988].
+HEAT_PER_U_PPM, HEAT_PER_TH_PPM, HEAT_PER_K2O_WT = 9.52e-5, 2.56e-5, 3.48e-5 * 0.8302
+#: Th/U of common igneous rocks lies above this below a differentiation index of 70; it bounds an unknown U.
+#: Common practice, no source. In leucogranites Th/U falls below 1, so there is no bound there.
+LEAST_TH_U, TH_U_HOLDS_BELOW_INDEX = 1.0, 70.0
+
+
+def _porphyritic_intrusion(known: Known) -> Words:
+    """Porphyritic and not extrusive; not known where lithology and texture are both blank."""
+    extrusive = known.flag("logged_extrusive")
+    blank = known.flag("logged_blank") & ~extrusive if "logged_blank" in known.workspace else _no_words(known)
+    return Words.yes_no(known.flag("logged_porphyritic") & ~extrusive, ~blank)
+
+
+def _no_words(known: Known) -> Booleans:
+    any_word = np.zeros(known.n, dtype=bool)
+    for name in ("logged_porphyritic", "logged_extrusive", "logged_plutonic", "logged_cumulate"):
+        any_word |= known.flag(name)
+    return ~any_word
+
+
+def _intrusive_body(known: Known) -> Words:
+    """An intrusion is recorded, or the log has a plutonic or cumulate word; a lava word says no."""
+    yes = known.flag("has_intrusion") | known.flag("logged_plutonic") | known.flag("logged_cumulate")
+    extrusive = known.flag("logged_extrusive") & ~known.flag("has_intrusion") & ~known.flag("logged_cumulate")
+    return Words.yes_no(yes & ~extrusive, yes | extrusive)
+
+
+def _intrusion_recorded(known: Known) -> Words:
+    """'yes' where the sample is tied to an intrusion; otherwise not known."""
+    recorded = known.flag("has_intrusion")
+    return Words.yes_no(recorded, recorded)
+
+
+def _arrived(known: Known) -> Words:
+    """Mapped or cored, else by the outcome of the ascent: stalled or not."""
+    outcome = known.words("ascent_outcome")
+    stalled_label = np.array(["stall" in label for label in outcome.labels])
+    stalled = stalled_label[outcome.codes]
+    mapped = known.flag("body_mapped_or_cored")
+    return Words.yes_no(mapped | ~stalled, mapped | ~outcome.missing)
+
+
+def _melt_parameter(known: Known) -> Floats:
+    columns = ["sio2", "tio2", "al2o3", "feot", "mno", "mgo", "cao", "na2o", "k2o", "p2o5"]
+    minor = {"tio2", "mno", "p2o5"}
+    values = [known.raw(f"{name}_vf_wt") for name in columns]
+    return zircon_m(*(np.nan_to_num(v) if c in minor else v for c, v in zip(columns, values, strict=True)))
+
+
+def _zircon_model_applies(known: Known) -> Words:
+    """Whether the rock lies inside the zircon model: M 0.9-1.9, SiO2 >= 63 %, A/NK >= 1."""
+    m, sio2, a_nk = _melt_parameter(known), known.raw("sio2_vf_wt"), known.raw("a_nk")
+    inside = (m >= ZIRCON_M_LOW) & (m <= ZIRCON_M_HIGH) & (sio2 >= ZIRCON_SIO2_LOW_WT) & (a_nk >= 1.0)
+    outside = (m < ZIRCON_M_LOW) | (m > ZIRCON_M_HIGH) | (sio2 < ZIRCON_SIO2_LOW_WT) | (a_nk < 1.0)
+    return Words.yes_no(inside, inside | outside)
+
+
+def _zircon_temperature(known: Known) -> Interval:
+    """The zircon saturation temperature; an interval where Zr is one (it rises with Zr).
+
+    From 12900/T = 2.95 + 0.85 M + ln(D): another Zr changes 12900/T by ln(Zr/Zr') [watson1983].
+    """
+    temperature = known.raw("zircon_saturation_wh83_c")
+    zr = known.number("zr_ppm")
+    if zr.exact:
+        return Interval(temperature, temperature)
+    kelvin, zr_used = temperature + ZERO_CELSIUS_K, known.raw("zr_ppm")
+
+    def at(zirconium: Floats) -> Floats:
+        with np.errstate(divide="ignore", invalid="ignore"):
+            inverse = 12900.0 / kelvin + np.log(zr_used / zirconium)
+            celsius = np.where(inverse > 0.0, 12900.0 / inverse, np.inf) - ZERO_CELSIUS_K
+        return np.where(np.isnan(temperature) | np.isnan(zirconium), np.nan, celsius)
+
+    straddles = zr.straddles()
+    open_low, open_high = zr.ends()
+    low = np.where(straddles, at(zr.low), np.where(zr.missing, np.nan, temperature))
+    high = np.where(straddles, at(zr.high), np.where(zr.missing, np.nan, temperature))
+    return Interval(low, high, open_low & straddles, open_high & straddles)
+
+
+def _thermal_density(known: Known) -> Floats:
+    """kg/m3 for heat production: as used by the heat method, else measured, else by silica class."""
+    conventions = known.conventions
+    with np.errstate(divide="ignore", invalid="ignore"):
+        per_density = (
+            HEAT_PER_U_PPM * known.raw("u_ppm")
+            + HEAT_PER_TH_PPM * known.raw("th_ppm")
+            + HEAT_PER_K2O_WT * known.raw("k2o_wt")
+        )
+        used = np.where(per_density > 0.0, known.raw("heat_production_uw_m3") / per_density, np.nan)
+    silica = known.raw("sio2_vf_wt")
+    by_class = np.select(
+        [silica < 45.0, silica < 52.0, silica < 63.0, silica >= 63.0],
+        [
+            conventions.density_ultrabasic_kg_m3,
+            conventions.density_basic_kg_m3,
+            conventions.density_intermediate_kg_m3,
+            conventions.density_acid_kg_m3,
+        ],
+        np.nan,
+    )
+    measured = known.raw("density_kg_m3")
+    return np.where(np.isnan(used), np.where(np.isnan(measured), by_class, measured), used)
+
+
+def _uranium(known: Known) -> Interval:
+    """U as analysed; where it is missing between 0 and what Th/U >= 1 allows (below an index of 70), else open."""
+    uranium, thorium = known.number("u_ppm"), known.number("th_ppm")
+    missing = uranium.missing & ~thorium.missing
+    if not missing.any():
+        return uranium
+    bounded = known.raw("differentiation_index") < TH_U_HOLDS_BELOW_INDEX
+    open_low, open_high = uranium.ends()
+    return Interval(
+        np.where(missing, 0.0, uranium.low),
+        np.where(missing, np.where(bounded, thorium.high / LEAST_TH_U, np.inf), uranium.high),
+        open_low & ~missing,
+        open_high | missing,
+    )
+
+
+def _heat_production(known: Known) -> Interval:
+    """uW/m3, end by end, from U, Th and K2O [rybach1988]; an unknown U is bounded by Th (see ``_uranium``)."""
+    parts = [(_uranium(known), HEAT_PER_U_PPM), (known.number("th_ppm"), HEAT_PER_TH_PPM)]
+    parts.append((known.number("k2o_wt"), HEAT_PER_K2O_WT))
+    if all(part.exact for part, _ in parts):
+        return point(known.workspace.get("heat_production_uw_m3", np.nan), known.n)
+    density = _thermal_density(known)
+    low = density * sum(part.low * factor for part, factor in parts)
+    high = density * sum(part.high * factor for part, factor in parts)
+    all_points = np.logical_and.reduce([~part.missing & ~part.straddles() for part, _ in parts])
+    computed = known.raw("heat_production_uw_m3")
+    use = all_points & ~np.isnan(computed)
+    nothing = np.isnan(low)
+    open_low = np.logical_or.reduce([part.ends()[0] for part, _ in parts]) & ~use & ~nothing
+    open_high = np.logical_or.reduce([part.ends()[1] for part, _ in parts]) & ~use & ~nothing
+    return Interval(np.where(use, computed, low), np.where(use, computed, high), open_low, open_high)
+
+
+def _heat_times_thickness(known: Known) -> Interval:
+    """mW/m2: A x 2a of a slab, A x 4a/3 of a sphere (its mean thickness); not defined for an upright cylinder."""
+    production, half_width = known.number("heat_production_uw_m3"), known.raw("half_width_m")
+    shape = known.words("intrusion_shape")
+    factor_of_label = np.array([{"slab": 2.0, "sphere": 4.0 / 3.0}.get(label, np.nan) for label in shape.labels])
+    volume = known.raw("volume_km3")
+    radius = np.where(np.isnan(half_width), np.cbrt(0.75e9 * volume / np.pi), half_width)
+    is_sphere = np.array([label == "sphere" for label in shape.labels])[shape.codes]
+    thickness_km = factor_of_label[shape.codes] * np.where(is_sphere, radius, half_width) / 1000.0
+    low = production.low * thickness_km
+    if production.exact:
+        return Interval(low, low)
+    high = np.where(np.isnan(low), np.nan, production.high * thickness_km)
+    open_low, open_high = production.ends()
+    return Interval(low, high, open_low & ~np.isnan(low), open_high & ~np.isnan(low))
+
+
+def _theta_centre(known: Known) -> Interval:
+    """The heat left at the centre over age +- 2 sigma; a point where only the age itself was used."""
+    centre = known.raw("theta_centre")
+    low, high = known.raw("theta_centre_low"), known.raw("theta_centre_high")
+    low, high = np.where(np.isnan(low), centre, low), np.where(np.isnan(high), centre, high)
+    nothing = np.isnan(low) | np.isnan(high)
+    return Interval(np.where(nothing, np.nan, low), np.where(nothing, np.nan, high))
+
+
+RULES: dict[str, Rule] = {
+    "porphyritic_intrusion": _porphyritic_intrusion,
+    "intrusive_body": _intrusive_body,
+    "intrusion_recorded": _intrusion_recorded,
+    "arrived": _arrived,
+    "zircon_model_applies": _zircon_model_applies,
+    "zircon_saturation_wh83_c": _zircon_temperature,
+    "heat_production_uw_m3": _heat_production,
+    "heat_x_thickness_mw_m2": _heat_times_thickness,
+    "theta_centre": _theta_centre,
+}
+TEXT_RULES = (
+    "porphyritic_intrusion", "intrusive_body", "intrusion_recorded", "arrived", "zircon_model_applies",
+)  # fmt: skip
+
+#: quantity -> (factor, {column: power}). Potassium in ppm of K2O in wt%: 1e4 x 0.8302.
+_RATIOS = {
+    "k_rb": ("k2o_wt", "rb_ppm", 8302.0),
+    "rb_sr": ("rb_ppm", "sr_ppm", 1.0),
+    "nb_ta": ("nb_ppm", "ta_ppm", 1.0),
+    "zr_hf": ("zr_ppm", "hf_ppm", 1.0),
+    "sr_y": ("sr_ppm", "y_ppm", 1.0),
+    "la_yb": ("la_ppm", "yb_ppm", 1.0),
+    "v_sc": ("v_ppm", "sc_ppm", 1.0),
+    "cu_zr": ("cu_ppm", "zr_ppm", 1.0),
+    "pd_pt": ("pd_ppm", "pt_ppm", 1.0),
+    "th_u": ("th_ppm", "u_ppm", 1.0),
+    "th_nb": ("th_ppm", "nb_ppm", 1.0),
+}
+POWERS: dict[str, tuple[float, dict[str, float]]] = {
+    name: (factor, {numerator: 1.0, denominator: -1.0}) for name, (numerator, denominator, factor) in _RATIOS.items()
+}
+#: CI chondrite, ppm [mcdonough1995]: Sm 0.148, Eu 0.0563, Gd 0.199.
+POWERS["eu_anomaly"] = ((0.148 * 0.199) ** 0.5 / 0.0563, {"eu_ppm": 1.0, "sm_ppm": -0.5, "gd_ppm": -0.5})
+
+
+def known_of(workspace: object, n: int) -> Known:
+    """What a workspace says of every quantity the targets read."""
+    return Known(workspace, n, RULES, POWERS)  # type: ignore[arg-type]
