@@ -21,10 +21,41 @@ whole = sa.BigInteger().with_variant(sqlite.INTEGER(), "sqlite")
 number = sa.Double().with_variant(sqlite.REAL(), "sqlite").with_variant(postgresql.DOUBLE_PRECISION(), "postgresql")
 words = sa.Text().with_variant(postgresql.TEXT(collation="C"), "postgresql")
 
-CHOSEN_COLUMNS = ["sio2_wt", "tio2_wt", "al2o3_wt", "mno_wt", "mgo_wt", "cao_wt", "na2o_wt", "k2o_wt", "p2o5_wt", "cr2o3_wt", "nio_wt", "v2o3_wt", "bao_wt", "sro_wt", "zro2_wt", "li2o_wt", "loi_wt", "h2o_plus_wt", "h2o_minus_wt", "co2_wt", "s_wt", "so3_wt", "f_wt", "cl_wt", "fe2o3t_reported_wt", "feo_titrated_wt", "fe2o3_ferric_wt", "total_reported_wt", "li_ppm", "be_ppm", "b_ppm", "sc_ppm", "v_ppm", "cr_ppm", "co_ppm", "ni_ppm", "cu_ppm", "zn_ppm", "ga_ppm", "ge_ppm", "as_ppm", "rb_ppm", "sr_ppm", "y_ppm", "zr_ppm", "nb_ppm", "mo_ppm", "ag_ppm", "cd_ppm", "in_ppm", "sn_ppm", "sb_ppm", "te_ppm", "cs_ppm", "ba_ppm", "la_ppm", "ce_ppm", "pr_ppm", "nd_ppm", "sm_ppm", "eu_ppm", "gd_ppm", "tb_ppm", "dy_ppm", "ho_ppm", "er_ppm", "tm_ppm", "yb_ppm", "lu_ppm", "hf_ppm", "ta_ppm", "w_ppm", "re_ppm", "tl_ppm", "pb_ppm", "bi_ppm", "th_ppm", "u_ppm", "au_ppm", "pt_ppm", "pd_ppm"]
-#: The derived quantities; those of DERIVED_TEXT_COLUMNS hold words.
-DERIVED_COLUMNS = ["fe2o3t_wt", "feot_wt", "fe2o3_wt", "feo_wt", "iron_basis", "total_wt", "sio2_vf_wt", "tio2_vf_wt", "al2o3_vf_wt", "fe2o3_vf_wt", "feo_vf_wt", "feot_vf_wt", "mno_vf_wt", "mgo_vf_wt", "cao_vf_wt", "na2o_vf_wt", "k2o_vf_wt", "p2o5_vf_wt", "cr2o3_vf_wt", "nio_vf_wt", "zro2_vf_wt", "q_wt", "c_wt", "z_wt", "or_wt", "ab_wt", "an_wt", "lc_wt", "ne_wt", "kp_wt", "hl_wt", "th_wt", "ac_wt", "ns_wt", "ks_wt", "di_wt", "wo_wt", "hy_wt", "ol_wt", "cs_wt", "mt_wt", "cm_wt", "hm_wt", "il_wt", "tn_wt", "pf_wt", "ru_wt", "ap_wt", "fr_wt", "pr_wt", "cc_wt", "di_wo_wt", "di_en_wt", "di_fs_wt", "hy_en_wt", "hy_fs_wt", "ol_fo_wt", "ol_fa_wt", "norm_total_wt", "norm_residual_wt", "norm_basis", "q_cat", "c_cat", "z_cat", "or_cat", "ab_cat", "an_cat", "lc_cat", "ne_cat", "kp_cat", "hl_cat", "th_cat", "ac_cat", "ns_cat", "ks_cat", "di_cat", "wo_cat", "hy_cat", "ol_cat", "cs_cat", "mt_cat", "cm_cat", "hm_cat", "il_cat", "tn_cat", "pf_cat", "ru_cat", "ap_cat", "fr_cat", "pr_cat", "cc_cat", "mg_number", "mg_number_total_iron", "differentiation_index", "solidification_index", "larsen_index", "crystallization_index", "felsic_index", "mafic_index", "a_cnk", "a_nk", "asi", "agpaitic_index", "mali", "fe_number", "rittmann_index", "r1", "r2", "q_prime", "anor", "eu_anomaly", "ce_anomaly", "la_yb", "la_yb_n", "k_rb", "rb_sr", "nb_ta", "zr_hf", "sr_y", "v_sc", "fe2o3_feo", "ga_al_10000", "delta_ox", "cu_zr", "cu_pd", "pd_pt", "zr_tio2", "nb_y", "al2o3_tio2", "ti_zr", "th_yb", "zr_y", "y_nb", "y_ho", "zr_nb_ce_y", "fssi", "f_prime", "hughes_x", "cia", "alteration_index", "ccpi", "silica_class", "tas_volcanic", "tas_plutonic", "tas_subname", "a_type", "k2o_series", "afm_series", "alkalinity", "alumina_class", "fe_class", "mali_class", "granite_field", "redox_series", "fitness", "fitness_cause", "h2o_wt", "liquidus_c", "liquidus_model", "liquidus_cause", "liquidus_low_c", "liquidus_high_c", "liquidus_helz_thornber_c", "liquidus_putirka13_c", "liquidus_putirka14_c", "liquidus_putirka15_c", "liquidus_putirka22_c", "liquidus_beattie_c", "liquidus_sugawara_c", "liquidus_makhluf_c", "liquidus_duan_c", "zircon_saturation_wh83_c", "zircon_saturation_b13_c", "zircon_saturation_shao_c", "saturation_hfse_c", "apatite_saturation_c", "monazite_saturation_c", "monazite_saturation_maimaiti_c", "melt_density_kg_m3", "melt_viscosity_log10_pa_s", "melt_viscosity_shaw_log10_pa_s", "stokes_velocity_m_per_yr", "dyke_velocity_m_per_s", "ascent_outcome", "ascent_cause", "heat_production_uw_m3", "heat_production_cause"]
-DERIVED_TEXT_COLUMNS = ["iron_basis", "norm_basis", "silica_class", "tas_volcanic", "tas_plutonic", "tas_subname", "a_type", "k2o_series", "afm_series", "alkalinity", "alumina_class", "fe_class", "mali_class", "granite_field", "redox_series", "fitness", "fitness_cause", "liquidus_model", "liquidus_cause", "ascent_outcome", "ascent_cause", "heat_production_cause"]
+CHOSEN_COLUMNS = """
+sio2_wt tio2_wt al2o3_wt mno_wt mgo_wt cao_wt na2o_wt k2o_wt p2o5_wt cr2o3_wt nio_wt v2o3_wt bao_wt sro_wt zro2_wt
+li2o_wt loi_wt h2o_plus_wt h2o_minus_wt co2_wt s_wt so3_wt f_wt cl_wt fe2o3t_reported_wt feo_titrated_wt
+fe2o3_ferric_wt total_reported_wt li_ppm be_ppm b_ppm sc_ppm v_ppm cr_ppm co_ppm ni_ppm cu_ppm zn_ppm ga_ppm ge_ppm
+as_ppm rb_ppm sr_ppm y_ppm zr_ppm nb_ppm mo_ppm ag_ppm cd_ppm in_ppm sn_ppm sb_ppm te_ppm cs_ppm ba_ppm la_ppm ce_ppm
+pr_ppm nd_ppm sm_ppm eu_ppm gd_ppm tb_ppm dy_ppm ho_ppm er_ppm tm_ppm yb_ppm lu_ppm hf_ppm ta_ppm w_ppm re_ppm tl_ppm
+pb_ppm bi_ppm th_ppm u_ppm au_ppm pt_ppm pd_ppm
+"""
+DERIVED_COLUMNS = """
+fe2o3t_wt feot_wt fe2o3_wt feo_wt iron_basis total_wt sio2_vf_wt tio2_vf_wt al2o3_vf_wt fe2o3_vf_wt feo_vf_wt
+feot_vf_wt mno_vf_wt mgo_vf_wt cao_vf_wt na2o_vf_wt k2o_vf_wt p2o5_vf_wt cr2o3_vf_wt nio_vf_wt zro2_vf_wt q_wt c_wt
+z_wt or_wt ab_wt an_wt lc_wt ne_wt kp_wt hl_wt th_wt ac_wt ns_wt ks_wt di_wt wo_wt hy_wt ol_wt cs_wt mt_wt cm_wt hm_wt
+il_wt tn_wt pf_wt ru_wt ap_wt fr_wt pr_wt cc_wt di_wo_wt di_en_wt di_fs_wt hy_en_wt hy_fs_wt ol_fo_wt ol_fa_wt
+norm_total_wt norm_residual_wt norm_basis q_cat c_cat z_cat or_cat ab_cat an_cat lc_cat ne_cat kp_cat hl_cat th_cat
+ac_cat ns_cat ks_cat di_cat wo_cat hy_cat ol_cat cs_cat mt_cat cm_cat hm_cat il_cat tn_cat pf_cat ru_cat ap_cat fr_cat
+pr_cat cc_cat mg_number mg_number_total_iron differentiation_index solidification_index larsen_index
+crystallization_index felsic_index mafic_index a_cnk a_nk asi agpaitic_index mali fe_number rittmann_index r1 r2
+q_prime anor eu_anomaly ce_anomaly la_yb la_yb_n k_rb rb_sr nb_ta zr_hf sr_y v_sc fe2o3_feo ga_al_10000 delta_ox cu_zr
+cu_pd pd_pt zr_tio2 nb_y al2o3_tio2 ti_zr th_yb zr_y y_nb y_ho zr_nb_ce_y fssi f_prime hughes_x cia alteration_index
+ccpi silica_class tas_volcanic tas_plutonic tas_subname a_type k2o_series afm_series alkalinity alumina_class fe_class
+mali_class granite_field redox_series fitness fitness_cause h2o_wt liquidus_c liquidus_model liquidus_cause
+liquidus_low_c liquidus_high_c liquidus_helz_thornber_c liquidus_putirka13_c liquidus_putirka14_c liquidus_putirka15_c
+liquidus_putirka22_c liquidus_beattie_c liquidus_sugawara_c liquidus_makhluf_c liquidus_duan_c
+zircon_saturation_wh83_c zircon_saturation_b13_c zircon_saturation_shao_c saturation_hfse_c apatite_saturation_c
+monazite_saturation_c monazite_saturation_maimaiti_c melt_density_kg_m3 melt_viscosity_log10_pa_s
+melt_viscosity_shaw_log10_pa_s stokes_velocity_m_per_yr dyke_velocity_m_per_s ascent_outcome ascent_cause
+heat_production_uw_m3 heat_production_cause
+"""
+#: Those of the derived quantities that hold words.
+DERIVED_TEXT_COLUMNS = """
+iron_basis norm_basis silica_class tas_volcanic tas_plutonic tas_subname a_type k2o_series afm_series alkalinity
+alumina_class fe_class mali_class granite_field redox_series fitness fitness_cause liquidus_model liquidus_cause
+ascent_outcome ascent_cause heat_production_cause
+"""
+
 NAMING = {
     "pk": "pk_%(table_name)s",
     "uq": "uq_%(table_name)s_%(column_0_N_name)s",
@@ -35,342 +66,226 @@ NAMING = {
 metadata = sa.MetaData(naming_convention=NAMING)
 
 
-def _id(name: str) -> sa.Column[int]:
+def own_id(name: str) -> sa.Column[int]:
     return sa.Column(name, whole, sa.Identity(), primary_key=True)
 
 
-def _sample_key() -> sa.Column[int]:
+def sample_key() -> sa.Column[int]:
     return sa.Column(
         "sample_id", whole, sa.ForeignKey("sample.sample_id", ondelete="CASCADE"), primary_key=True, autoincrement=False
     )
 
 
-def _link(name: str, target: str, nullable: bool = True, ondelete: str | None = None) -> sa.Column[int]:
+def link(name: str, target: str, nullable: bool = True, ondelete: str | None = None) -> sa.Column[int]:
     return sa.Column(name, whole, sa.ForeignKey(target, ondelete=ondelete), nullable=nullable)
 
 
-def _numbers(names: str) -> list[sa.Column[float]]:
+def reals(names: str) -> list[sa.Column[float]]:
     return [sa.Column(name, number) for name in names.split()]
 
 
-def _words(names: str, nullable: bool = True) -> list[sa.Column[str]]:
+def texts(names: str, nullable: bool = True) -> list[sa.Column[str]]:
     return [sa.Column(name, words, nullable=nullable) for name in names.split()]
 
 
-def _row_version() -> sa.Column[int]:
+def row_version() -> sa.Column[int]:
     return sa.Column("row_version", whole, nullable=False, server_default=sa.text("1"))
 
 
-def _one_of(column: str, *words: str) -> sa.CheckConstraint:
+def one_of(column: str, *words: str) -> sa.CheckConstraint:
     listed = ", ".join(f"'{word}'" for word in words)
     return sa.CheckConstraint(f"{column} IN ({listed})", name=column)
 
 
-def _table(name: str, *parts: sa.schema.SchemaItem, counted: bool = True, rowid: bool = True) -> sa.Table:
+def table(name: str, *parts: sa.schema.SchemaItem, counted: bool = True, rowid: bool = True) -> sa.Table:
     return sa.Table(name, metadata, *parts, sqlite_strict=True, sqlite_autoincrement=counted, sqlite_with_rowid=rowid)
 
 
-area = _table(
-    "area",
-    _id("area_id"),
-    sa.Column("name", words, nullable=False, unique=True),
-    sa.Column("epsg", whole),
-    *_numbers("heat_flow_mw_m2 surface_temperature_c conductivity_w_m_k heat_production_uw_m3 heat_production_depth_m"),
-    _row_version(),
+# fmt: off
+area = table(
+    "area", own_id("area_id"), sa.Column("name", words, nullable=False, unique=True), sa.Column("epsg", whole),
+    *reals("heat_flow_mw_m2 surface_temperature_c conductivity_w_m_k heat_production_uw_m3 heat_production_depth_m"),
+    row_version(),
 )
-site = _table(
-    "site",
-    _id("site_id"),
-    sa.Column("code", words, nullable=False, unique=True),
-    sa.Column("kind", words, nullable=False),
-    _link("area_id", "area.area_id"),
-    *_numbers("easting northing elevation_m"),
-    sa.Column("epsg", whole),
-    *_numbers("longitude latitude depth_m"),
-    sa.Column("azimuth_reference", words),
-    _row_version(),
-    _one_of("kind", "drill_hole", "outcrop"),
-    _one_of("azimuth_reference", "true", "grid", "magnetic"),
+site = table(
+    "site", own_id("site_id"), sa.Column("code", words, nullable=False, unique=True),
+    sa.Column("kind", words, nullable=False), link("area_id", "area.area_id"), *reals("easting northing elevation_m"),
+    sa.Column("epsg", whole), *reals("longitude latitude depth_m"), sa.Column("azimuth_reference", words),
+    row_version(), one_of("kind", "drill_hole", "outcrop"), one_of("azimuth_reference", "true", "grid", "magnetic"),
 )
 sa.Index(None, site.c.area_id)
-survey = _table(
-    "survey",
-    _id("survey_id"),
-    _link("site_id", "site.site_id", nullable=False, ondelete="CASCADE"),
-    sa.Column("depth_m", number, nullable=False),
-    sa.Column("azimuth_deg", number, nullable=False),
-    sa.Column("dip_deg", number, nullable=False),
-    sa.UniqueConstraint("site_id", "depth_m"),
+survey = table(
+    "survey", own_id("survey_id"), link("site_id", "site.site_id", nullable=False, ondelete="CASCADE"),
+    sa.Column("depth_m", number, nullable=False), sa.Column("azimuth_deg", number, nullable=False),
+    sa.Column("dip_deg", number, nullable=False), sa.UniqueConstraint("site_id", "depth_m"),
     sa.CheckConstraint("depth_m >= 0", name="depth_m"),
 )
-lithology_interval = _table(
-    "lithology_interval",
-    _id("lithology_interval_id"),
-    _link("site_id", "site.site_id", nullable=False, ondelete="CASCADE"),
-    sa.Column("from_m", number, nullable=False),
-    sa.Column("to_m", number, nullable=False),
-    *_words("lithology description"),
-    sa.UniqueConstraint("site_id", "from_m"),
-    sa.CheckConstraint("from_m < to_m", name="from_m"),
+lithology_interval = table(
+    "lithology_interval", own_id("lithology_interval_id"),
+    link("site_id", "site.site_id", nullable=False, ondelete="CASCADE"), sa.Column("from_m", number, nullable=False),
+    sa.Column("to_m", number, nullable=False), *texts("lithology description"),
+    sa.UniqueConstraint("site_id", "from_m"), sa.CheckConstraint("from_m < to_m", name="from_m"),
 )
-intrusion = _table(
-    "intrusion",
-    _id("intrusion_id"),
-    sa.Column("name", words, nullable=False, unique=True),
-    _link("area_id", "area.area_id"),
-    sa.Column("shape", words),
-    *_numbers("half_width_m volume_km3 depth_to_top_m emplacement_depth_m age_ma age_sigma_ma country_density_kg_m3"),
-    sa.Column("mapped", whole),
-    _row_version(),
-    _one_of("shape", "sphere", "slab", "cylinder"),
+intrusion = table(
+    "intrusion", own_id("intrusion_id"), sa.Column("name", words, nullable=False, unique=True),
+    link("area_id", "area.area_id"), sa.Column("shape", words),
+    *reals("half_width_m volume_km3 depth_to_top_m emplacement_depth_m age_ma age_sigma_ma country_density_kg_m3"),
+    sa.Column("mapped", whole), row_version(), one_of("shape", "sphere", "slab", "cylinder"),
     sa.CheckConstraint("mapped BETWEEN 0 AND 1", name="mapped"),
 )
 sa.Index(None, intrusion.c.area_id)
-sample = _table(
-    "sample",
-    _id("sample_id"),
-    sa.Column("code", words, nullable=False, unique=True),
-    sa.Column("kind", words, nullable=False),
-    _link("site_id", "site.site_id"),
-    *_numbers("from_m to_m"),
-    _link("intrusion_id", "intrusion.intrusion_id"),
-    *_words("lithology texture alteration igsn collected_on"),
-    _link("duplicate_of", "sample.sample_id", ondelete="SET NULL"),
-    sa.Column("reference_material", words),
-    *_numbers("magnetic_susceptibility_si density_kg_m3"),
-    sa.Column("pulp_available", whole),
-    *_numbers("easting northing elevation_m"),
-    sa.Column("epsg", whole),
-    *_numbers("longitude latitude"),
-    sa.Column("position_basis", words),
-    _row_version(),
-    _one_of("kind", "core", "chips", "outcrop", "float", "unknown", "reference_material", "blank", "duplicate"),
+sample = table(
+    "sample", own_id("sample_id"), sa.Column("code", words, nullable=False, unique=True),
+    sa.Column("kind", words, nullable=False), link("site_id", "site.site_id"), *reals("from_m to_m"),
+    link("intrusion_id", "intrusion.intrusion_id"), *texts("lithology texture alteration igsn collected_on"),
+    link("duplicate_of", "sample.sample_id", ondelete="SET NULL"), sa.Column("reference_material", words),
+    *reals("magnetic_susceptibility_si density_kg_m3"), sa.Column("pulp_available", whole),
+    *reals("easting northing elevation_m"), sa.Column("epsg", whole), *reals("longitude latitude"),
+    sa.Column("position_basis", words), row_version(),
+    one_of("kind", "core", "chips", "outcrop", "float", "unknown", "reference_material", "blank", "duplicate"),
     sa.CheckConstraint("from_m <= to_m", name="from_m"),
     sa.CheckConstraint("pulp_available BETWEEN 0 AND 1", name="pulp_available"),
 )
 for _column in (sample.c.site_id, sample.c.intrusion_id, sample.c.duplicate_of):
     sa.Index(None, _column)
-
-batch = _table(
-    "batch",
-    _id("batch_id"),
-    sa.Column("code", words, nullable=False, unique=True),
-    *_words("lab certificate received_on reported_on"),
-    *_words("imported_at", nullable=False),
-    *_words("imported_by file_name"),
-    sa.Column("sha256", words, unique=True),
-    sa.Column("file_bytes", sa.LargeBinary()),
-    sa.Column("state", words, nullable=False, server_default="active"),
-    _link("superseded_by", "batch.batch_id", ondelete="SET NULL"),
-    _one_of("state", "active", "superseded", "withdrawn"),
+batch = table(
+    "batch", own_id("batch_id"), sa.Column("code", words, nullable=False, unique=True),
+    *texts("lab certificate received_on reported_on"), *texts("imported_at", nullable=False),
+    *texts("imported_by file_name"), sa.Column("sha256", words, unique=True),
+    sa.Column("file_bytes", sa.LargeBinary()), sa.Column("state", words, nullable=False, server_default="active"),
+    link("superseded_by", "batch.batch_id", ondelete="SET NULL"),
+    one_of("state", "active", "superseded", "withdrawn"),
 )
 sa.Index(None, batch.c.certificate)
 sa.Index(None, batch.c.superseded_by)
-batch_column = _table(
-    "batch_column",
-    _id("batch_column_id"),
-    _link("batch_id", "batch.batch_id", nullable=False, ondelete="CASCADE"),
-    sa.Column("position", whole, nullable=False),
-    sa.Column("header", words),
-    *_words("analyte unit", nullable=False),
-    sa.Column("method", words),
-    sa.Column("digestion", words, nullable=False, server_default="unknown"),
-    sa.Column("detection_limit", number),
-    sa.UniqueConstraint("batch_id", "position"),
+batch_column = table(
+    "batch_column", own_id("batch_column_id"), link("batch_id", "batch.batch_id", nullable=False, ondelete="CASCADE"),
+    sa.Column("position", whole, nullable=False), sa.Column("header", words), *texts("analyte unit", nullable=False),
+    sa.Column("method", words), sa.Column("digestion", words, nullable=False, server_default="unknown"),
+    sa.Column("detection_limit", number), sa.UniqueConstraint("batch_id", "position"),
 )
-aliquot = _table(
-    "aliquot",
-    _id("aliquot_id"),
-    _link("sample_id", "sample.sample_id", nullable=False, ondelete="CASCADE"),
-    _link("batch_id", "batch.batch_id", nullable=False, ondelete="CASCADE"),
-    sa.Column("line_no", whole, nullable=False),
-    sa.Column("kind", words, nullable=False),
+aliquot = table(
+    "aliquot", own_id("aliquot_id"), link("sample_id", "sample.sample_id", nullable=False, ondelete="CASCADE"),
+    link("batch_id", "batch.batch_id", nullable=False, ondelete="CASCADE"),
+    sa.Column("line_no", whole, nullable=False), sa.Column("kind", words, nullable=False),
     sa.Column("repeat_no", whole, nullable=False, server_default=sa.text("0")),
-    _one_of("kind", "original", "repeat", "control"),
+    one_of("kind", "original", "repeat", "control"),
 )
 sa.Index(None, aliquot.c.sample_id)
 sa.Index(None, aliquot.c.batch_id)
-#: No foreign key to batch_column: unindexed, it made deleting slow. A trigger deletes, ``check`` verifies.
-result = _table(
+result = table(
     "result",
     sa.Column(
-        "aliquot_id",
-        whole,
-        sa.ForeignKey("aliquot.aliquot_id", ondelete="CASCADE"),
-        primary_key=True,
+        "aliquot_id", whole, sa.ForeignKey("aliquot.aliquot_id", ondelete="CASCADE"), primary_key=True,
         autoincrement=False,
     ),
-    sa.Column("column_id", whole, primary_key=True, autoincrement=False),
-    sa.Column("value", number),
+    sa.Column("column_id", whole, primary_key=True, autoincrement=False), sa.Column("value", number),
     sa.Column("qualifier", whole, nullable=False, server_default=sa.text("0")),
-    sa.CheckConstraint("qualifier BETWEEN 0 AND 2", name="qualifier"),
-    counted=False,
-    rowid=False,
+    sa.CheckConstraint("qualifier BETWEEN 0 AND 2", name="qualifier"), counted=False, rowid=False,
 )
-
-composition = _table(
-    "composition",
-    _sample_key(),
-    *_numbers(" ".join(CHOSEN_COLUMNS)),
-    *_words("qualifiers digestions", nullable=False),
-    sa.Column("censored", words),
-    counted=False,
+composition = table(
+    "composition", sample_key(), *reals(CHOSEN_COLUMNS), *texts("qualifiers digestions", nullable=False),
+    sa.Column("censored", words), counted=False,
 )
-derived = _table(
-    "derived",
-    _sample_key(),
-    *(sa.Column(name, words if name in DERIVED_TEXT_COLUMNS else number) for name in DERIVED_COLUMNS),
-    *_words("causes warnings", nullable=False),
-    _link("convention_set_id", "convention_set.convention_set_id"),
-    sa.Column("method_version", words),
-    sa.Column("best_target", words),
-    sa.Column("best_verdict", whole),
-    sa.CheckConstraint("best_verdict BETWEEN 0 AND 3", name="best_verdict"),
-    counted=False,
+derived = table(
+    "derived", sample_key(),
+    *(sa.Column(name, words if name in DERIVED_TEXT_COLUMNS.split() else number) for name in DERIVED_COLUMNS.split()),
+    *texts("causes warnings", nullable=False), link("convention_set_id", "convention_set.convention_set_id"),
+    sa.Column("method_version", words), sa.Column("best_target", words), sa.Column("best_verdict", whole),
+    sa.CheckConstraint("best_verdict BETWEEN 0 AND 3", name="best_verdict"), counted=False,
 )
-
-target = _table(
-    "target",
-    _id("target_id"),
-    sa.Column("code", words, nullable=False, unique=True),
+target = table(
+    "target", own_id("target_id"), sa.Column("code", words, nullable=False, unique=True),
     sa.Column("name", words, nullable=False),
 )
-target_version = _table(
-    "target_version",
-    _id("target_version_id"),
-    _link("target_id", "target.target_id", nullable=False, ondelete="CASCADE"),
-    *_words("version definition created_at", nullable=False),
-    sa.Column("active", whole, nullable=False),
-    sa.UniqueConstraint("target_id", "version"),
-    sa.CheckConstraint("active BETWEEN 0 AND 1", name="active"),
+target_version = table(
+    "target_version", own_id("target_version_id"),
+    link("target_id", "target.target_id", nullable=False, ondelete="CASCADE"),
+    *texts("version definition created_at", nullable=False), sa.Column("active", whole, nullable=False),
+    sa.UniqueConstraint("target_id", "version"), sa.CheckConstraint("active BETWEEN 0 AND 1", name="active"),
 )
-criterion = _table(
-    "criterion",
-    _id("criterion_id"),
-    _link("target_version_id", "target_version.target_version_id", nullable=False, ondelete="CASCADE"),
-    sa.Column("position", whole, nullable=False),
-    *_words("kind code label", nullable=False),
-    *_words("column_name comparison"),
-    *_numbers("threshold weight"),
-    sa.Column("unit", words),
-    sa.Column("provisional", whole, nullable=False),
-    *_words("source note"),
-    sa.UniqueConstraint("target_version_id", "position"),
-    sa.UniqueConstraint("target_version_id", "code"),
-    _one_of("kind", "fitness", "rule", "criterion"),
+criterion = table(
+    "criterion", own_id("criterion_id"),
+    link("target_version_id", "target_version.target_version_id", nullable=False, ondelete="CASCADE"),
+    sa.Column("position", whole, nullable=False), *texts("kind code label", nullable=False),
+    *texts("column_name comparison"), *reals("threshold weight"), sa.Column("unit", words),
+    sa.Column("provisional", whole, nullable=False), *texts("source note"),
+    sa.UniqueConstraint("target_version_id", "position"), sa.UniqueConstraint("target_version_id", "code"),
+    one_of("kind", "fitness", "rule", "criterion"),
     sa.CheckConstraint("provisional BETWEEN 0 AND 1", name="provisional"),
 )
-verdict = _table(
-    "verdict",
-    _sample_key(),
+verdict = table(
+    "verdict", sample_key(),
     sa.Column("target_id", whole, sa.ForeignKey("target.target_id"), primary_key=True, autoincrement=False),
-    _link("target_version_id", "target_version.target_version_id", nullable=False),
-    sa.Column("verdict", whole, nullable=False),
-    *_numbers("score_min score_max coverage probability"),
+    link("target_version_id", "target_version.target_version_id", nullable=False),
+    sa.Column("verdict", whole, nullable=False), *reals("score_min score_max coverage probability"),
     sa.Column("probability_state", words, nullable=False, server_default="not_computed"),
-    sa.Column("provisional", whole, nullable=False),
-    sa.Column("reasons", words, nullable=False),
+    sa.Column("provisional", whole, nullable=False), sa.Column("reasons", words, nullable=False),
     sa.CheckConstraint("verdict BETWEEN 0 AND 3", name="verdict"),
     sa.CheckConstraint("json_valid(reasons)", name="reasons").ddl_if(dialect="sqlite"),
-    sa.CheckConstraint("reasons::jsonb IS NOT NULL", name="reasons").ddl_if(dialect="postgresql"),
-    counted=False,
+    sa.CheckConstraint("reasons::jsonb IS NOT NULL", name="reasons").ddl_if(dialect="postgresql"), counted=False,
     rowid=False,
 )
 sa.Index(None, verdict.c.target_id, verdict.c.verdict)
-#: A log: it outlives the sample it names, so it holds no foreign key.
-verdict_change = _table(
-    "verdict_change",
-    _id("verdict_change_id"),
-    sa.Column("sample_id", whole, nullable=False),
-    sa.Column("target_id", whole, nullable=False),
-    sa.Column("changed_at", words, nullable=False),
-    sa.Column("verdict_from", whole),
-    sa.Column("verdict_to", whole),
-    sa.Column("cause", words, nullable=False),
+verdict_change = table(
+    "verdict_change", own_id("verdict_change_id"), sa.Column("sample_id", whole, nullable=False),
+    sa.Column("target_id", whole, nullable=False), sa.Column("changed_at", words, nullable=False),
+    sa.Column("verdict_from", whole), sa.Column("verdict_to", whole), sa.Column("cause", words, nullable=False),
 )
 sa.Index(None, verdict_change.c.sample_id)
-
-setting = _table(
-    "setting", sa.Column("name", words, primary_key=True), sa.Column("value", words, nullable=False), counted=False
+setting = table(
+    "setting", sa.Column("name", words, primary_key=True), sa.Column("value", words, nullable=False), counted=False,
 )
-convention_set = _table(
-    "convention_set",
-    _id("convention_set_id"),
-    sa.Column("conventions", words, nullable=False, unique=True),
+convention_set = table(
+    "convention_set", own_id("convention_set_id"), sa.Column("conventions", words, nullable=False, unique=True),
     sa.Column("created_at", words, nullable=False),
 )
-#: Filled by triggers, drained before the commit: level 1 derive and judge, level 2 judge only.
-stale = _table(
-    "stale",
-    sa.Column("sample_id", whole, primary_key=True, autoincrement=False),
-    sa.Column("level", whole, nullable=False),
-    sa.CheckConstraint("level BETWEEN 1 AND 2", name="level"),
+stale = table(
+    "stale", sa.Column("sample_id", whole, primary_key=True, autoincrement=False),
+    sa.Column("level", whole, nullable=False), sa.CheckConstraint("level BETWEEN 1 AND 2", name="level"),
     counted=False,
 )
-#: While a row stands here, the stale triggers are silent (a long import that computes from the arrays in hand).
-import_guard = _table(
-    "import_guard",
-    sa.Column("guard", whole, primary_key=True, autoincrement=False),
-    sa.CheckConstraint("guard = 1", name="guard"),
-    counted=False,
+import_guard = table(
+    "import_guard", sa.Column("guard", whole, primary_key=True, autoincrement=False),
+    sa.CheckConstraint("guard = 1", name="guard"), counted=False,
 )
-account = _table(
-    "account",
-    _id("account_id"),
+account = table(
+    "account", own_id("account_id"), sa.Column("name", words, nullable=False, unique=True),
+    *texts("password_hash role created_at", nullable=False),
+)
+audit_entry = table(
+    "audit_entry", own_id("audit_entry_id"), *texts("at account action", nullable=False), *texts("subject detail"),
+)
+reference_material = table(
+    "reference_material", own_id("reference_material_id"), sa.Column("name", words, nullable=False, unique=True),
+)
+reference_value = table(
+    "reference_value", own_id("reference_value_id"),
+    link("reference_material_id", "reference_material.reference_material_id", nullable=False, ondelete="CASCADE"),
+    sa.Column("analyte", words, nullable=False), sa.Column("value", number, nullable=False),
+    sa.Column("unit", words, nullable=False), sa.Column("uncertainty", number),
+    *texts("status source", nullable=False), sa.UniqueConstraint("reference_material_id", "analyte", "unit"),
+)
+quantity = table(
+    "quantity", sa.Column("position", whole, primary_key=True, autoincrement=False),
     sa.Column("name", words, nullable=False, unique=True),
-    *_words("password_hash role created_at", nullable=False),
+    *texts("sheet label unit meaning method source status", nullable=False), counted=False,
 )
-audit_entry = _table(
-    "audit_entry",
-    _id("audit_entry_id"),
-    *_words("at account action", nullable=False),
-    *_words("subject detail"),
+warning_kind = table(
+    "warning_kind", sa.Column("position", whole, primary_key=True, autoincrement=False),
+    *texts("code column_name", nullable=False), sa.Column("value_column", words),
+    sa.Column("text", words, nullable=False), counted=False,
 )
-reference_material = _table(
-    "reference_material", _id("reference_material_id"), sa.Column("name", words, nullable=False, unique=True)
+cause_kind = table(
+    "cause_kind", sa.Column("position", whole, primary_key=True, autoincrement=False),
+    sa.Column("letter", words, nullable=False, unique=True), *texts("code text", nullable=False), counted=False,
 )
-reference_value = _table(
-    "reference_value",
-    _id("reference_value_id"),
-    _link("reference_material_id", "reference_material.reference_material_id", nullable=False, ondelete="CASCADE"),
-    sa.Column("analyte", words, nullable=False),
-    sa.Column("value", number, nullable=False),
-    sa.Column("unit", words, nullable=False),
-    sa.Column("uncertainty", number),
-    *_words("status source", nullable=False),
-    sa.UniqueConstraint("reference_material_id", "analyte", "unit"),
+column_guide_row = table(
+    "column_guide_row", sa.Column("position", whole, primary_key=True, autoincrement=False),
+    *texts("view_name column_name unit meaning method source", nullable=False),
+    sa.UniqueConstraint("view_name", "column_name"), counted=False,
 )
-
-#: The catalogue as rows: rewritten at create and upgrade, read by the views.
-quantity = _table(
-    "quantity",
-    sa.Column("position", whole, primary_key=True, autoincrement=False),
-    sa.Column("name", words, nullable=False, unique=True),
-    *_words("sheet label unit meaning method source status", nullable=False),
-    counted=False,
-)
-warning_kind = _table(
-    "warning_kind",
-    sa.Column("position", whole, primary_key=True, autoincrement=False),
-    *_words("code column_name", nullable=False),
-    sa.Column("value_column", words),
-    sa.Column("text", words, nullable=False),
-    counted=False,
-)
-cause_kind = _table(
-    "cause_kind",
-    sa.Column("position", whole, primary_key=True, autoincrement=False),
-    sa.Column("letter", words, nullable=False, unique=True),
-    *_words("code text", nullable=False),
-    counted=False,
-)
-column_guide_row = _table(
-    "column_guide_row",
-    sa.Column("position", whole, primary_key=True, autoincrement=False),
-    *_words("view_name column_name unit meaning method source", nullable=False),
-    sa.UniqueConstraint("view_name", "column_name"),
-    counted=False,
-)
+# fmt: on
 
 
 def upgrade() -> None:

@@ -1,0 +1,233 @@
+"""The views of both engines, made from ``sheets`` (columns and their order) and the warnings of the catalogue."""
+
+from __future__ import annotations
+
+from collections.abc import Iterator
+from typing import Any
+
+import sqlalchemy as sa
+
+from registry.petrology.analytes import CHOSEN_COLUMNS, QUALIFIER_SIGNS
+from registry.store import dialect_postgresql, dialect_sqlite, tables
+from registry.store.sheets import (
+    CONTROL_KINDS,
+    DERIVED_COLUMNS,
+    DERIVED_SHEETS,
+    OUTCOME_WORDS,
+    SHEETS,
+    VERDICT_WORDS,
+)
+
+_SITE = "LEFT JOIN site AS k ON k.site_id = s.site_id"
+_INTRUSION = "LEFT JOIN intrusion AS i ON i.intrusion_id = s.intrusion_id"
+_COMPOSITION = "LEFT JOIN composition AS c ON c.sample_id = s.sample_id"
+_DERIVED = "LEFT JOIN derived AS d ON d.sample_id = s.sample_id"
+_JUDGED = "s.kind NOT IN (" + ", ".join(f"'{kind}'" for kind in CONTROL_KINDS) + ")"
+
+
+def statements(connection: sa.Connection) -> Iterator[str]:
+    """CREATE VIEW of every sheet, for the engine of the connection; reads the rows of ``warning_kind``."""
+    dialect: Any = dialect_sqlite if connection.dialect.name == "sqlite" else dialect_postgresql
+    value_columns = connection.execute(
+        sa.select(tables.warning_kind.c.position, tables.warning_kind.c.value_column).order_by(
+            tables.warning_kind.c.position
+        )
+    ).fetchall()
+    for name, (expressions, source) in _sheets(dialect, [(row[0], row[1]) for row in value_columns]).items():
+        columns = ", ".join(f"{expressions[column]} AS {column}" for column in SHEETS[name])
+        yield f"CREATE VIEW {name} AS SELECT {columns} FROM {source}"
+
+
+def _words(expression: str, words: dict[int, str] | dict[str, str]) -> str:
+    branches = " ".join(
+        f"WHEN {key} THEN '{word}'" if isinstance(key, int) else f"WHEN '{key}' THEN '{word}'"
+        for key, word in words.items()
+    )
+    return f"CASE {expression} {branches} END"
+
+
+def _verdict_word(expression: str) -> str:
+    return _words(expression, dict(enumerate(VERDICT_WORDS)))
+
+
+def _each(prefix: str, names: tuple[str, ...] | str) -> dict[str, str]:
+    return {name: f"{prefix}.{name}" for name in (names.split() if isinstance(names, str) else names)}
+
+
+def _sheets(dialect: Any, value_columns: list[tuple[int, str | None]]) -> dict[str, tuple[dict[str, str], str]]:
+    """Sheet -> (column -> expression, FROM and WHERE)."""
+    sample = {
+        "sample_id": "s.sample_id",
+        "sample_code": "s.code",
+        "is_stale": dialect.as_integer("EXISTS (SELECT 1 FROM stale AS z WHERE z.sample_id = s.sample_id)"),
+    }
+    derived = _each("d", DERIVED_COLUMNS)
+    sheets = {name: ({**sample, **derived}, f"sample AS s {_DERIVED}") for name in DERIVED_SHEETS}
+    sheets["sample_sheet"] = (
+        {
+            **derived,
+            **_each("s", "from_m to_m longitude latitude easting northing elevation_m epsg lithology texture"),
+            **_each("c", "sio2_wt mgo_wt"),
+            **sample,
+            "sample_kind": "s.kind",
+            "area": "coalesce(ka.name, ia.name)",
+            "site_code": "k.code",
+            "site_kind": "k.kind",
+            "intrusion": "i.name",
+            "best_target": "d.best_target",
+            "best_verdict": _verdict_word("d.best_verdict"),
+        },
+        f"sample AS s {_SITE} LEFT JOIN area AS ka ON ka.area_id = k.area_id {_INTRUSION} "
+        f"LEFT JOIN area AS ia ON ia.area_id = i.area_id {_COMPOSITION} {_DERIVED}",
+    )
+    sheets["composition_sheet"] = (
+        {**derived, **_each("c", CHOSEN_COLUMNS), **sample, "censored": "c.censored"},
+        f"sample AS s {_COMPOSITION} {_DERIVED}",
+    )
+    sheets.update(_judgement_sheets(dialect, sample))
+    sheets.update(_expanded_sheets(dialect, sample, value_columns))
+    sheets.update(_register_sheets(dialect, sample))
+    return sheets
+
+
+def _judgement_sheets(dialect: Any, sample: dict[str, str]) -> dict[str, tuple[dict[str, str], str]]:
+    """Verdicts, their reasons (the packed JSON, by the criterion's position) and their changes."""
+    value = dialect.packed_number("v.reasons", "values", "q.position")
+    threshold = dialect.packed_number("v.reasons", "thresholds", "q.position")
+    outcome = f"substr({dialect.packed_text('v.reasons', 'outcomes')}, CAST(q.position AS integer) + 1, 1)"
+    judged = f"verdict AS v JOIN sample AS s ON s.sample_id = v.sample_id AND {_JUDGED} JOIN target AS t ON "
+    judged += "t.target_id = v.target_id"
+    return {
+        "verdict_sheet": (
+            {
+                **_each("v", "score_min score_max coverage probability probability_state provisional"),
+                **sample,
+                "target": "t.code",
+                "verdict": _verdict_word("v.verdict"),
+                "target_version": "w.version",
+            },
+            f"{judged} JOIN target_version AS w ON w.target_version_id = v.target_version_id",
+        ),
+        "reason_sheet": (
+            {
+                **sample,
+                "target": "t.code",
+                "criterion": "q.code",
+                "value": value,
+                "value_text": dialect.packed_text("v.reasons", "texts", "q.position"),
+                "threshold": threshold,
+                "margin": f"CASE WHEN q.comparison IN ('<', '<=') THEN {threshold} - {value} "
+                f"WHEN q.comparison IN ('>', '>=') THEN {value} - {threshold} END",
+                "outcome": _words(outcome, OUTCOME_WORDS),
+                "missing": dialect.packed_text("v.reasons", "missing", "q.position"),
+                "provisional": "q.provisional",
+                "source": "q.source",
+            },
+            f"{judged} JOIN criterion AS q ON q.target_version_id = v.target_version_id",
+        ),
+        "change_sheet": (
+            {
+                **_each("h", "changed_at cause"),
+                **sample,
+                "target": "t.code",
+                "verdict_from": _verdict_word("h.verdict_from"),
+                "verdict_to": _verdict_word("h.verdict_to"),
+            },
+            "verdict_change AS h JOIN sample AS s ON s.sample_id = h.sample_id JOIN target AS t ON "
+            "t.target_id = h.target_id",
+        ),
+    }
+
+
+def _expanded_sheets(
+    dialect: Any, sample: dict[str, str], value_columns: list[tuple[int, str | None]]
+) -> dict[str, tuple[dict[str, str], str]]:
+    """The strings of each derived row, one letter a quantity and one 0/1 a warning, as rows."""
+    branches = " ".join(
+        f"WHEN {position} THEN {place}"
+        for position, column in value_columns
+        if column is not None and (place := _place_of(column)) is not None
+    )
+    value = f"CASE w.position {branches} END" if branches else dialect.NULL_NUMBER
+    said = f"replace(w.text, '{{value}}', coalesce({dialect.spelled(value)}, 'not known'))"
+    letter = "substr(d.causes, CAST(q.position AS integer) + 1, 1)"
+    return {
+        "warning_sheet": (
+            {**sample, "code": "w.code", "column_name": "w.column_name", "value": value, "text": said},
+            f"derived AS d JOIN sample AS s ON s.sample_id = d.sample_id {_COMPOSITION} JOIN warning_kind AS w ON "
+            "substr(d.warnings, CAST(w.position AS integer) + 1, 1) = '1'",
+        ),
+        "cause_sheet": (
+            {**sample, "column_name": "q.name", "cause": "w.code", "text": "w.text"},
+            f"derived AS d JOIN sample AS s ON s.sample_id = d.sample_id JOIN quantity AS q ON {letter} <> '.' "
+            f"JOIN cause_kind AS w ON w.letter = {letter}",
+        ),
+    }
+
+
+def _place_of(column: str) -> str | None:
+    """Where a warning's value stands; None where it is no number of a stored row."""
+    for prefix, table in (("d", tables.derived), ("c", tables.composition), ("s", tables.sample)):
+        if column in table.c and column not in ("sample_id", "code") and not _is_text(table.c[column]):
+            return f"{prefix}.{column}"
+    return None
+
+
+def _is_text(column: sa.Column[Any]) -> bool:
+    return issubclass(column.type._type_affinity or object, sa.String)
+
+
+def _register_sheets(dialect: Any, sample: dict[str, str]) -> dict[str, tuple[dict[str, str], str]]:
+    """What was entered: results, batches, intrusions, areas; and the sheets whose methods come later."""
+    number, text = dialect.NULL_NUMBER, dialect.NULL_TEXT
+    nothing = "(SELECT 1 AS one) AS n WHERE 1 = 0"
+    signs = {code: sign for code, sign in enumerate(QUALIFIER_SIGNS) if sign}
+    later = {column: number for column in ("change_wt", "change_percent", "isocon_slope", "quantity", "value", "z")}
+    return {
+        "result_sheet": (
+            {
+                **_each("b", "analyte unit method digestion"),
+                **sample,
+                "value": "r.value",
+                "qualifier": _words("r.qualifier", signs),
+                "batch": "h.code",
+                "line_no": "a.line_no",
+            },
+            "sample AS s JOIN aliquot AS a ON a.sample_id = s.sample_id JOIN batch AS h ON h.batch_id = a.batch_id "
+            "AND h.state = 'active' JOIN result AS r ON r.aliquot_id = a.aliquot_id "
+            "JOIN batch_column AS b ON b.batch_column_id = r.column_id",
+        ),
+        "batch_sheet": ({"batch": "h.code", **_each("h", "lab state file_name sha256")}, "batch AS h"),
+        "control_sheet": (
+            {**{column: text for column in SHEETS["control_sheet"]}, "expected": number, "found": number, "z": number},
+            nothing,
+        ),
+        "intrusion_sheet": (
+            {
+                **_each("i", "shape half_width_m age_ma"),
+                **{name: number for name in ["theta_centre", "theta_centre_low", "theta_centre_high"]},
+                "intrusion": "i.name",
+                "area": "a.name",
+                "heat_x_thickness_mw_m2": number,
+                "samples": "(SELECT count(*) FROM sample AS s WHERE s.intrusion_id = i.intrusion_id)",
+                "trend_quality": text,
+            },
+            "intrusion AS i LEFT JOIN area AS a ON a.area_id = i.area_id",
+        ),
+        "area_sheet": (
+            {
+                **_each("a", SHEETS["area_sheet"][1:6]),
+                "area": "a.name",
+                "mantle_heat_flow_mw_m2": number,
+                "wet_granite_solidus_depth_km": number,
+                "geotherm_cause": "'not_yet_computed'",
+            },
+            "area AS a",
+        ),
+        "suite_sheet": ({**{column: text for column in SHEETS["suite_sheet"]}, "value": number}, nothing),
+        "mass_change_sheet": (
+            {**{column: text for column in SHEETS["mass_change_sheet"]}, **later, **sample},
+            "sample AS s WHERE 1 = 0",
+        ),
+        "column_guide": (_each("g", SHEETS["column_guide"]), "column_guide_row AS g"),
+    }
