@@ -1,0 +1,251 @@
+"""The whole path on the invented district: CSV files through the ordinary commands to the cells of the views.
+
+The data are invented (seed_demo/README.txt). Expected cells are worked out here from the text of the CSV files with
+atomic masses of the IUPAC/CIAAW abridged table (Prohaska et al. 2022) and the published formulas named beside them, and
+with nothing of the product.
+"""
+
+from __future__ import annotations
+
+import csv
+import io
+import math
+import sqlite3
+import subprocess
+import sys
+from collections.abc import Iterator
+from pathlib import Path
+
+import pytest
+
+import seed_demo
+
+ROOT = Path(__file__).resolve().parents[2]
+FE2O3_PER_FEO = 159.687 / (2 * 71.844)
+
+
+def run(*arguments: str) -> str:
+    done = subprocess.run([sys.executable, "-m", "registry.cli", *arguments], capture_output=True, text=True, cwd=ROOT)
+    assert done.returncode == 0, done.stdout + done.stderr
+    return done.stdout
+
+
+@pytest.fixture(scope="module")
+def registry(tmp_path_factory: pytest.TempPathFactory) -> Path:
+    """Made by ``create`` and ``import``, as a team makes its own."""
+    path = tmp_path_factory.mktemp("demo") / "district.sqlite"
+    run("create", "--registry", str(path))
+    run("import", *map(str, seed_demo.files()), "--registry", str(path))
+    return path
+
+
+@pytest.fixture(scope="module")
+def view(registry: Path) -> Iterator[sqlite3.Connection]:
+    connection = sqlite3.connect(f"file:{registry}?mode=ro", uri=True)
+    connection.row_factory = sqlite3.Row
+    yield connection
+    connection.close()
+
+
+def certificate_row(name: str, sample: str) -> dict[str, float | str]:
+    """One line of a certificate read by hand: numbers, or the text as it stands; headings cut to the analyte."""
+    path = next(path for path in seed_demo.files() if path.name == f"results_{name}.csv")
+    if name == "K88":
+        text, delimiter, point = path.read_bytes().decode("cp1252"), ";", ","
+    else:
+        text, delimiter, point = path.read_bytes().decode("utf-8-sig"), ",", "."
+    rows = list(csv.reader(io.StringIO(text), delimiter=delimiter))
+    (line,) = [row for row in rows if row[0] == sample]
+    found: dict[str, float | str] = {}
+    for heading, cell in zip(rows[0], line, strict=True):
+        try:
+            found[heading.split(" ")[0]] = float(cell.replace(point, "."))
+        except ValueError:
+            found[heading.split(" ")[0]] = cell
+    return found
+
+
+def row_of(view: sqlite3.Connection, sheet: str, sample: str) -> sqlite3.Row:
+    rows = view.execute(f"SELECT * FROM {sheet} WHERE sample_code = ?", (sample,)).fetchall()
+    assert len(rows) == 1
+    return rows[0]
+
+
+def test_import_stores_every_sample_and_site(view: sqlite3.Connection) -> None:
+    kinds = dict(view.execute("SELECT sample_kind, count(*) FROM sample_sheet GROUP BY sample_kind").fetchall())
+    assert kinds == {"core": 97, "outcrop": 14, "reference_material": 10, "blank": 5, "duplicate": 5}
+    assert view.execute("SELECT count(*) FROM site").fetchone()[0] == 13
+    assert view.execute("SELECT count(*) FROM batch_sheet WHERE state = 'active'").fetchone()[0] == 2
+
+
+def test_import_leaves_nothing_stale(view: sqlite3.Connection) -> None:
+    assert view.execute("SELECT count(*) FROM sample_sheet WHERE is_stale <> 0").fetchone()[0] == 0
+
+
+def test_results_every_filled_cell_of_the_certificates_is_stored(view: sqlite3.Connection) -> None:
+    filled = 0
+    for name, heads, delimiter in (("A417", 1, ","), ("K88", 3, ";")):
+        path = next(path for path in seed_demo.files() if path.name == f"results_{name}.csv")
+        rows = list(csv.reader(io.StringIO(path.read_bytes().decode("cp1252")), delimiter=delimiter))
+        filled += sum(cell != "" for row in rows[heads:] for cell in row[1:])
+    assert view.execute("SELECT count(*) FROM result_sheet").fetchone()[0] == filled
+
+
+def test_controls_get_no_verdict(view: sqlite3.Connection) -> None:
+    judged = {row[0] for row in view.execute("SELECT DISTINCT sample_id FROM verdict_sheet")}
+    rocks = {
+        row[0] for row in view.execute("SELECT sample_id FROM sample_sheet WHERE sample_kind IN ('core', 'outcrop')")
+    }
+    assert judged == rocks
+
+
+def test_composition_cells_of_the_first_layout_come_through(view: sqlite3.Connection) -> None:
+    reported = certificate_row("A417", "KD001-103")
+    cells = row_of(view, "composition_sheet", "KD001-103")
+    for analyte in ("SiO2", "K2O", "LOI", "S"):
+        assert cells[f"{analyte.lower()}_wt"] == reported[analyte]
+    for analyte in ("Sr", "Y", "Zr", "Eu", "Cu"):
+        assert cells[f"{analyte.lower()}_ppm"] == reported[analyte]
+    assert cells["feo_titrated_wt"] == reported["FeO"]
+    assert cells["fe2o3t_wt"] == reported["Fe2O3T"]
+    assert cells["feot_wt"] == pytest.approx(reported["Fe2O3T"] / FE2O3_PER_FEO, rel=1e-5)
+    below = [name for name, cell in reported.items() if isinstance(cell, str) and cell.startswith("<")]
+    assert below
+    assert sorted(cells["censored"].split(",")) == sorted(f"{name.lower()}_ppm<" for name in below)
+
+
+def test_composition_cells_of_the_decimal_comma_layout_come_through(view: sqlite3.Connection) -> None:
+    reported = certificate_row("K88", "OD001-310")
+    cells = row_of(view, "composition_sheet", "OD001-310")
+    assert cells["sio2_wt"] == reported["SiO2"]
+    assert cells["mno_wt"] == pytest.approx(float(reported["MnO"]) / 1e4, rel=1e-12)
+    assert cells["fe2o3t_wt"] == reported["Fe2O3tot"]
+    assert (cells["th_ppm"], cells["u_ppm"]) == (reported["Th"], reported["U"])
+    assert cells["feo_titrated_wt"] is None and cells["s_wt"] is None and cells["sn_ppm"] is None
+
+
+def test_total_sums_oxides_with_all_iron_ferric_and_loi(view: sqlite3.Connection) -> None:
+    reported = certificate_row("A417", "Q005a")
+    oxides = ("SiO2", "TiO2", "Al2O3", "Fe2O3T", "MnO", "MgO", "CaO", "Na2O", "K2O", "P2O5", "LOI")
+    expected = sum(float(reported[name]) for name in oxides)
+    assert row_of(view, "composition_sheet", "Q005a")["total_wt"] == pytest.approx(expected, abs=1e-9)
+
+
+def test_volatile_free_silica_closes_the_split_analysis(view: sqlite3.Connection) -> None:
+    """Eleven majors with titrated FeO, and Cr2O3, NiO, ZrO2 from ppm, closed to 100."""
+    reported = {name: cell for name, cell in certificate_row("A417", "KD001-103").items() if isinstance(cell, float)}
+    ferric = reported["Fe2O3T"] - FE2O3_PER_FEO * reported["FeO"]
+    majors = sum(
+        reported[name] for name in ("SiO2", "TiO2", "Al2O3", "FeO", "MnO", "MgO", "CaO", "Na2O", "K2O", "P2O5")
+    )
+    minor = 1e-4 * (
+        reported["Cr"] * 151.989 / (2 * 51.996) + reported["Ni"] * 74.692 / 58.693 + reported["Zr"] * 123.222 / 91.224
+    )
+    cells = row_of(view, "volatile_free_sheet", "KD001-103")
+    closed = majors + ferric + minor
+    assert cells["sio2_vf_wt"] == pytest.approx(100.0 * reported["SiO2"] / closed, rel=1e-5)
+    assert cells["fe2o3_vf_wt"] == pytest.approx(100.0 * ferric / closed, rel=1e-4)
+
+
+def test_indices_follow_from_the_reported_cells(view: sqlite3.Connection) -> None:
+    """Ratios by definition; Eu/Eu* = EuN / sqrt(SmN GdN) with CI chondrite of McDonough & Sun 1995."""
+    reported = {name: cell for name, cell in certificate_row("A417", "KD001-103").items() if isinstance(cell, float)}
+    cells = row_of(view, "index_sheet", "KD001-103")
+    assert cells["sr_y"] == pytest.approx(reported["Sr"] / reported["Y"], rel=1e-9)
+    assert cells["la_yb"] == pytest.approx(reported["La"] / reported["Yb"], rel=1e-9)
+    potassium_ppm = 1e4 * reported["K2O"] * 2 * 39.098 / 94.195
+    assert cells["k_rb"] == pytest.approx(potassium_ppm / reported["Rb"], rel=1e-5)
+    europium = reported["Eu"] / 0.0563 / math.sqrt(reported["Sm"] / 0.148 * reported["Gd"] / 0.199)
+    assert cells["eu_anomaly"] == pytest.approx(europium, rel=1e-6)
+    magnesium, iron = reported["MgO"] / 40.304, reported["Fe2O3T"] / FE2O3_PER_FEO / 71.844
+    assert cells["mg_number_total_iron"] == pytest.approx(100.0 * magnesium / (magnesium + iron), rel=1e-5)
+
+
+def test_heat_production_follows_from_cells_and_measured_density(view: sqlite3.Connection) -> None:
+    """A = 1e-5 rho (9.52 U + 2.56 Th + 3.48 K), Rybach 1988 (coefficients from memory)."""
+    reported = {name: cell for name, cell in certificate_row("K88", "OD001-310").items() if isinstance(cell, float)}
+    samples = next(path for path in seed_demo.files() if path.name == "samples.csv")
+    (sample,) = [row for row in csv.DictReader(samples.open(encoding="utf-8")) if row["sample_code"] == "OD001-310"]
+    potassium_wt = reported["K2O"] * 2 * 39.098 / 94.195
+    expected = (
+        1e-5 * float(sample["density_kg_m3"]) * (9.52 * reported["U"] + 2.56 * reported["Th"] + 3.48 * potassium_wt)
+    )
+    assert row_of(view, "melt_sheet", "OD001-310")["heat_production_uw_m3"] == pytest.approx(expected, rel=1e-4)
+
+
+def test_altered_core_is_not_judged_by_its_lost_magnetite(view: sqlite3.Connection) -> None:
+    series = dict(
+        view.execute(
+            "SELECT s.sample_code, c.redox_series FROM sample_sheet AS s JOIN class_sheet AS c USING (sample_id)"
+            " WHERE s.site_code = 'KD001' AND s.from_m BETWEEN 118 AND 175 AND s.sample_kind = 'core'"
+        ).fetchall()
+    )
+    assert len(series) >= 5
+    assert "ilmenite" not in series.values()
+
+
+def mean_scores(view: sqlite3.Connection, target: str) -> list[tuple[str, float]]:
+    return [
+        (row[0], row[1])
+        for row in view.execute(
+            "SELECT s.intrusion, avg(v.score_min) FROM verdict_sheet AS v JOIN sample_sheet AS s USING (sample_id)"
+            " WHERE v.target = ? AND s.intrusion IS NOT NULL GROUP BY s.intrusion ORDER BY 2 DESC",
+            (target,),
+        )
+    ]
+
+
+def test_fertile_stock_leads_for_porphyry_copper(view: sqlite3.Connection) -> None:
+    ranked = mean_scores(view, "porphyry_copper")
+    assert ranked[0][0] == "Kestrin stock"
+    favourable = dict(
+        view.execute(
+            "SELECT s.intrusion, count(*) FROM verdict_sheet AS v JOIN sample_sheet AS s USING (sample_id)"
+            " WHERE v.target = 'porphyry_copper' AND v.verdict = 'favourable' GROUP BY s.intrusion"
+        ).fetchall()
+    )
+    assert favourable.get("Kestrin stock", 0) > sum(n for name, n in favourable.items() if name != "Kestrin stock")
+
+
+def test_hot_granite_leads_for_radiogenic_heat(view: sqlite3.Connection) -> None:
+    ranked = mean_scores(view, "radiogenic_heat")
+    assert ranked[0][0] == "Ostrevel granite"
+    verdicts = dict(
+        view.execute(
+            "SELECT s.intrusion, count(*) FROM verdict_sheet AS v JOIN sample_sheet AS s USING (sample_id)"
+            " WHERE v.target = 'radiogenic_heat' AND v.verdict = 'favourable' GROUP BY s.intrusion"
+        ).fetchall()
+    )
+    assert set(verdicts) == {"Ostrevel granite"}
+
+
+def test_core_without_traces_names_what_is_missing(view: sqlite3.Connection) -> None:
+    missing = {
+        row[0]
+        for row in view.execute(
+            "SELECT missing FROM reason_sheet WHERE sample_code = 'KD001-121' AND target = 'porphyry_copper'"
+            " AND outcome = 'unknown'"
+        )
+    }
+    assert any(text and "y_ppm" in text for text in missing)
+
+
+def test_demo_command_builds_the_same_views_and_reuses_them(registry: Path, tmp_path: Path) -> None:
+    path = tmp_path / "demo.sqlite"
+    run("demo", "--no-serve", "--registry", str(path))
+    sheets = {}
+    for place in (registry, path):
+        connection = sqlite3.connect(place)
+        sheets[place] = [
+            connection.execute(f"SELECT * FROM {sheet} ORDER BY sample_code").fetchall()
+            for sheet in ("composition_sheet", "index_sheet", "norm_sheet")
+        ]
+        connection.close()
+    assert sheets[registry] == sheets[path]
+    before = path.read_bytes()
+    assert "again" in run("demo", "--no-serve", "--registry", str(path))
+    assert path.read_bytes() == before
+
+
+def test_demo_registry_passes_the_check(registry: Path) -> None:
+    run("check", "--registry", str(registry))
