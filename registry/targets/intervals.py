@@ -144,6 +144,11 @@ class Known:
         """The numbers of the workspace as they stand, NaN where it does not hold them."""
         return point(self.workspace.get(name, np.nan), self.n).low
 
+    def texts(self, name: str) -> NDArray[np.object_]:
+        """The texts of the workspace as they stand, None where it does not hold them."""
+        found = self.workspace.get(name)
+        return np.full(self.n, None, dtype=object) if found is None else np.asarray(found, dtype=object)
+
     def flag(self, name: str) -> Booleans:
         """A boolean of the workspace; false where it does not hold it."""
         return np.broadcast_to(np.asarray(self.workspace.get(name, False), dtype=bool), (self.n,))

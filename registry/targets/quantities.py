@@ -4,12 +4,16 @@ from __future__ import annotations
 
 import numpy as np
 
-from registry.petrology.constants import ZERO_CELSIUS_K
+from registry.petrology.constants import ZERO_CELSIUS_K, oxide_from_element
+from registry.petrology.heat import effective_half_width_m, heat_x_thickness_mw_m2, rock_density_kg_m3
+from registry.petrology.intrusion_heat import theta_centre_interval
+from registry.petrology.normalising import CHONDRITE_MCDONOUGH
 from registry.petrology.saturation import ZIRCON_M_HIGH, ZIRCON_M_LOW, ZIRCON_SIO2_LOW_WT, zircon_m
+from registry.petrology.trace import RATIOS
 from registry.targets.intervals import Booleans, Floats, Interval, Known, Rule, Words, point
 
-#: Contributions to heat production, uW/m3 per kg/m3: U and Th in ppm, K2O in wt% (0.8302 K in K2O) [rybach1988].
-HEAT_PER_U_PPM, HEAT_PER_TH_PPM, HEAT_PER_K2O_WT = 9.52e-5, 2.56e-5, 3.48e-5 * 0.8302
+#: Contributions to heat production, uW/m3 per kg/m3: U and Th in ppm, K2O in wt% [rybach1988].
+HEAT_PER_U_PPM, HEAT_PER_TH_PPM, HEAT_PER_K2O_WT = 9.52e-5, 2.56e-5, 3.48e-5 / oxide_from_element("K2O")
 #: Th/U of common igneous rocks lies above this below a differentiation index of 70; it bounds an unknown U.
 #: Common practice, no source. In leucogranites Th/U falls below 1, so there is no bound there.
 LEAST_TH_U, TH_U_HOLDS_BELOW_INDEX = 1.0, 70.0
@@ -90,31 +94,6 @@ def _zircon_temperature(known: Known) -> Interval:
     return Interval(low, high, open_low & straddles, open_high & straddles)
 
 
-def _thermal_density(known: Known) -> Floats:
-    """kg/m3 for heat production: as used by the heat method, else measured, else by silica class."""
-    conventions = known.conventions
-    with np.errstate(divide="ignore", invalid="ignore"):
-        per_density = (
-            HEAT_PER_U_PPM * known.raw("u_ppm")
-            + HEAT_PER_TH_PPM * known.raw("th_ppm")
-            + HEAT_PER_K2O_WT * known.raw("k2o_wt")
-        )
-        used = np.where(per_density > 0.0, known.raw("heat_production_uw_m3") / per_density, np.nan)
-    silica = known.raw("sio2_vf_wt")
-    by_class = np.select(
-        [silica < 45.0, silica < 52.0, silica < 63.0, silica >= 63.0],
-        [
-            conventions.density_ultrabasic_kg_m3,
-            conventions.density_basic_kg_m3,
-            conventions.density_intermediate_kg_m3,
-            conventions.density_acid_kg_m3,
-        ],
-        np.nan,
-    )
-    measured = known.raw("density_kg_m3")
-    return np.where(np.isnan(used), np.where(np.isnan(measured), by_class, measured), used)
-
-
 def _uranium(known: Known) -> Interval:
     """U as analysed; where it is missing between 0 and what Th/U >= 1 allows (below an index of 70), else open."""
     uranium, thorium = known.number("u_ppm"), known.number("th_ppm")
@@ -137,7 +116,7 @@ def _heat_production(known: Known) -> Interval:
     parts.append((known.number("k2o_wt"), HEAT_PER_K2O_WT))
     if all(part.exact for part, _ in parts):
         return point(known.workspace.get("heat_production_uw_m3", np.nan), known.n)
-    density = _thermal_density(known)
+    density = rock_density_kg_m3(known.raw("density_kg_m3"), known.raw("sio2_vf_wt"), known.conventions)
     low = density * sum(part.low * factor for part, factor in parts)
     high = density * sum(part.high * factor for part, factor in parts)
     all_points = np.logical_and.reduce([~part.missing & ~part.straddles() for part, _ in parts])
@@ -151,25 +130,32 @@ def _heat_production(known: Known) -> Interval:
 
 def _heat_times_thickness(known: Known) -> Interval:
     """mW/m2: A x 2a of a slab, A x 4a/3 of a sphere (its mean thickness); not defined for an upright cylinder."""
-    production, half_width = known.number("heat_production_uw_m3"), known.raw("half_width_m")
-    shape = known.words("intrusion_shape")
-    factor_of_label = np.array([{"slab": 2.0, "sphere": 4.0 / 3.0}.get(label, np.nan) for label in shape.labels])
-    volume = known.raw("volume_km3")
-    radius = np.where(np.isnan(half_width), np.cbrt(0.75e9 * volume / np.pi), half_width)
-    is_sphere = np.array([label == "sphere" for label in shape.labels])[shape.codes]
-    thickness_km = factor_of_label[shape.codes] * np.where(is_sphere, radius, half_width) / 1000.0
-    low = production.low * thickness_km
+    production, shape = known.number("heat_production_uw_m3"), known.texts("intrusion_shape")
+    half_width = effective_half_width_m(shape, known.raw("half_width_m"), known.raw("volume_km3"))
+    low = heat_x_thickness_mw_m2(production.low, shape, half_width)
     if production.exact:
         return Interval(low, low)
-    high = np.where(np.isnan(low), np.nan, production.high * thickness_km)
+    high = heat_x_thickness_mw_m2(production.high, shape, half_width)
     open_low, open_high = production.ends()
     return Interval(low, high, open_low & ~np.isnan(low), open_high & ~np.isnan(low))
 
 
+_THETA_NAMES = ("theta_centre", "theta_centre_low", "theta_centre_high")
+
+
 def _theta_centre(known: Known) -> Interval:
     """The heat left at the centre over age +- 2 sigma; a point where only the age itself was used."""
-    centre = known.raw("theta_centre")
-    low, high = known.raw("theta_centre_low"), known.raw("theta_centre_high")
+    centre, low, high = (known.raw(name) for name in _THETA_NAMES)
+    if "theta_centre" not in known.workspace:
+        computed = theta_centre_interval(
+            known.texts("intrusion_shape"),
+            effective_half_width_m(known.texts("intrusion_shape"), known.raw("half_width_m"), known.raw("volume_km3")),
+            known.raw("depth_to_top_m"),
+            known.raw("age_ma"),
+            known.raw("age_sigma_ma"),
+            known.conventions.thermal_diffusivity_m2_s,
+        )
+        centre, low, high = (computed[name] for name in _THETA_NAMES)
     low, high = np.where(np.isnan(low), centre, low), np.where(np.isnan(high), centre, high)
     nothing = np.isnan(low) | np.isnan(high)
     return Interval(np.where(nothing, np.nan, low), np.where(nothing, np.nan, high))
@@ -190,25 +176,18 @@ TEXT_RULES = (
     "porphyritic_intrusion", "intrusive_body", "intrusion_recorded", "arrived", "zircon_model_applies",
 )  # fmt: skip
 
-#: quantity -> (factor, {column: power}). Potassium in ppm of K2O in wt%: 1e4 x 0.8302.
-_RATIOS = {
-    "k_rb": ("k2o_wt", "rb_ppm", 8302.0),
-    "rb_sr": ("rb_ppm", "sr_ppm", 1.0),
-    "nb_ta": ("nb_ppm", "ta_ppm", 1.0),
-    "zr_hf": ("zr_ppm", "hf_ppm", 1.0),
-    "sr_y": ("sr_ppm", "y_ppm", 1.0),
-    "la_yb": ("la_ppm", "yb_ppm", 1.0),
-    "v_sc": ("v_ppm", "sc_ppm", 1.0),
-    "cu_zr": ("cu_ppm", "zr_ppm", 1.0),
-    "pd_pt": ("pd_ppm", "pt_ppm", 1.0),
-    "th_u": ("th_ppm", "u_ppm", 1.0),
-    "th_nb": ("th_ppm", "nb_ppm", 1.0),
-}
+#: Ratios that only the targets ask for: quantity -> (numerator column, denominator column, factor).
+_OWN_RATIOS = {"th_u": ("th_ppm", "u_ppm", 1.0), "th_nb": ("th_ppm", "nb_ppm", 1.0)}
+#: quantity -> (factor, {column: power}).
 POWERS: dict[str, tuple[float, dict[str, float]]] = {
-    name: (factor, {numerator: 1.0, denominator: -1.0}) for name, (numerator, denominator, factor) in _RATIOS.items()
+    name: (factor, {numerator: 1.0, denominator: -1.0})
+    for name, (numerator, denominator, factor) in (RATIOS | _OWN_RATIOS).items()
 }
-#: CI chondrite, ppm [mcdonough1995]: Sm 0.148, Eu 0.0563, Gd 0.199.
-POWERS["eu_anomaly"] = ((0.148 * 0.199) ** 0.5 / 0.0563, {"eu_ppm": 1.0, "sm_ppm": -0.5, "gd_ppm": -0.5})
+#: EuN/sqrt(SmN GdN), CI chondrite [mcdonough1995].
+POWERS["eu_anomaly"] = (
+    (CHONDRITE_MCDONOUGH["Sm"] * CHONDRITE_MCDONOUGH["Gd"]) ** 0.5 / CHONDRITE_MCDONOUGH["Eu"],
+    {"eu_ppm": 1.0, "sm_ppm": -0.5, "gd_ppm": -0.5},
+)
 
 
 def known_of(workspace: object, n: int) -> Known:
