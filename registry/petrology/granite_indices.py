@@ -59,7 +59,7 @@ def asi(al2o3_wt: ArrayLike, cao_wt: ArrayLike, na2o_wt: ArrayLike, k2o_wt: Arra
 def agpaitic_index(al2o3_wt: ArrayLike, na2o_wt: ArrayLike, k2o_wt: ArrayLike) -> Floats:
     """Agpaitic index, molar (Na + K)/Al, from wt%, shape (n,). Above 1 peralkaline, above 1.2 agpaitic.
 
-    Source [liegeois1991]: 0.87 and more for alkaline granites, from memory.
+    Source [liegeois1987]: 0.87 and more for alkaline granites, from memory.
     """
     return quotient(moles(na2o_wt, "Na2O") + moles(k2o_wt, "K2O"), moles(al2o3_wt, "Al2O3"))
 
