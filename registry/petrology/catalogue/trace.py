@@ -66,7 +66,8 @@ def measured_together(quantity: str, label: str, columns: tuple[str, ...]) -> tu
 #: quantity: label, meaning, source, equation, status.
 _RATIO_RECORDS: dict[str, tuple[str, str, str, str, str]] = {
     "la_yb": (
-        "La/Yb", "La over Yb, ppm: steepness of the rare earths, raw", "richards2007", "definition by mass", "published",
+        "La/Yb", "La over Yb, ppm: steepness of the rare earths, raw", "richards2007", "definition by mass",
+        "published",
     ),
     "la_yb_n": (
         "(La/Yb)N", "La over Yb, each over CI chondrite", "mcdonough1995", "table 1, CI chondrite", "published",

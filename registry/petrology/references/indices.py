@@ -22,7 +22,8 @@ REFERENCES = {
     "and plutonic rocks using R1R2-diagram and major-element analyses. Chemical Geology 29, 183-210.",
     "streckeisen1979": "Streckeisen, A., Le Maitre, R.W. 1979. A chemical approximation to the modal QAPF "
     "classification of the igneous rocks. Neues Jahrbuch fuer Mineralogie, Abhandlungen 136, 169-206.",
-    "rittmann1957": "Rittmann, A. 1957. On the serial character of igneous rocks. Egyptian Journal of Geology 1, 23-48.",
+    "rittmann1957": "Rittmann, A. 1957. On the serial character of igneous rocks. "
+    "Egyptian Journal of Geology 1, 23-48.",
     "peacock1931": "Peacock, M.A. 1931. Classification of igneous rock series. Journal of Geology 39, 54-67.",
     "shand1943": "Shand, S.J. 1943. Eruptive Rocks, 2nd edition. Wiley, New York.",
     "zen1988": "Zen, E-an 1988. Phase relations of peraluminous granitic rocks and their petrogenetic implications. "
@@ -31,8 +32,8 @@ REFERENCES = {
     "A geochemical classification for granitic rocks. Journal of Petrology 42, 2033-2048.",
     "frost2008": "Frost, B.R., Frost, C.D. 2008. A geochemical classification for feldspathic igneous rocks. "
     "Journal of Petrology 49, 1955-1969.",
-    "liegeois1987": "Liegeois, J.P., Black, R. 1987. Alkaline magmatism subsequent to collision in the Pan-African belt "
-    "of the Adrar des Iforas (Mali). Geological Society, London, Special Publications 30, 381-401.",
+    "liegeois1987": "Liegeois, J.P., Black, R. 1987. Alkaline magmatism subsequent to collision in the Pan-African "
+    "belt of the Adrar des Iforas (Mali). Geological Society, London, Special Publications 30, 381-401.",
     "mcdonough1995": "McDonough, W.F., Sun, S.-s. 1995. The composition of the Earth. Chemical Geology 120, 223-253.",
     "sun1989": "Sun, S.-s., McDonough, W.F. 1989. Chemical and isotopic systematics of oceanic basalts: implications "
     "for mantle composition and processes. Geological Society, London, Special Publications 42, 313-345.",
@@ -83,12 +84,12 @@ REFERENCES = {
     "Cambridge University Press.",
     "middlemost1994": "Middlemost, E.A.K. 1994. Naming materials in the magma/igneous rock system. "
     "Earth-Science Reviews 37, 215-224.",
-    "peccerillo1976": "Peccerillo, A., Taylor, S.R. 1976. Geochemistry of Eocene calc-alkaline volcanic rocks from the "
-    "Kastamonu area, northern Turkey. Contributions to Mineralogy and Petrology 58, 63-81.",
-    "rickwood1989": "Rickwood, P.C. 1989. Boundary lines within petrologic diagrams which use oxides of major and minor "
-    "elements. Lithos 22, 247-263.",
-    "irvine1971": "Irvine, T.N., Baragar, W.R.A. 1971. A guide to the chemical classification of the common volcanic "
-    "rocks. Canadian Journal of Earth Sciences 8, 523-548.",
+    "peccerillo1976": "Peccerillo, A., Taylor, S.R. 1976. Geochemistry of Eocene calc-alkaline volcanic rocks from "
+    "the Kastamonu area, northern Turkey. Contributions to Mineralogy and Petrology 58, 63-81.",
+    "rickwood1989": "Rickwood, P.C. 1989. Boundary lines within petrologic diagrams which use oxides of major and "
+    "minor elements. Lithos 22, 247-263.",
+    "irvine1971": "Irvine, T.N., Baragar, W.R.A. 1971. A guide to the chemical classification of the common "
+    "volcanic rocks. Canadian Journal of Earth Sciences 8, 523-548.",
     "kuno1968": "Kuno, H. 1968. Differentiation of basalt magmas. In: Hess, H.H., Poldervaart, A. (eds) Basalts, "
     "volume 2. Interscience, New York, 623-688.",
     "macdonald1964": "Macdonald, G.A., Katsura, T. 1964. Chemical composition of Hawaiian lavas. "
