@@ -5,10 +5,8 @@ Order-of-magnitude screens. Velocities are positive upwards: a melt denser than 
 
 from __future__ import annotations
 
-from typing import Any
-
 import numpy as np
-from numpy.typing import ArrayLike
+from numpy.typing import ArrayLike, NDArray
 
 from registry.petrology.constants import GRAVITY_M_PER_S2, SECONDS_PER_YEAR
 from registry.petrology.melt_composition import Array, not_negative, positive
@@ -25,9 +23,7 @@ CROSSING_RATIO_LOW, CROSSING_RATIO_HIGH = 0.1, 1.0
 #: Reynolds number up to which dyke flow is taken as laminar.
 HIGHEST_LAMINAR_REYNOLDS = 1000.0
 
-LIQUIDUS_UNKNOWN = "liquidus_unknown"
-MELT_UNKNOWN = "melt_properties_unknown"
-DEPTH_UNKNOWN = "emplacement_depth_unknown"
+ASCENT_CAUSES = ("liquidus_unknown", "emplacement_depth_unknown", "melt_properties_unknown")
 
 
 def stokes_velocity_m_per_s(radius_m: ArrayLike, density_contrast_kg_m3: ArrayLike, viscosity_pa_s: ArrayLike) -> Array:
@@ -85,32 +81,35 @@ def crossing_over_freezing(
     return crossing / positive(dyke_freezing_time_s(dyke_width_m, thermal_diffusivity_m2_s))
 
 
-def judge_ascent(
-    liquidus_c: ArrayLike,
+def ascent_outcome(
     density_contrast_kg_m3: ArrayLike,
     dyke_velocity: ArrayLike,
     emplacement_depth_m: ArrayLike,
     dyke_width_m: float,
     thermal_diffusivity_m2_s: float,
-) -> dict[str, Any]:
-    """Outcome of dyke ascent from the emplacement depth, and the cause where there is none, as object arrays (n,).
+) -> NDArray[np.object_]:
+    """Outcome of dyke ascent from the emplacement depth: one of ``ASCENT_OUTCOMES`` or None, object array (n,).
 
-    ``ascent_outcome`` is one of ``ASCENT_OUTCOMES`` or None: crossing over freezing time below 0.1 likely reaches
-    the surface, to 1 marginal, above likely stalls; a melt no lighter than the wall rock is stalled by density at
-    any depth. ``ascent_cause`` is ``liquidus_unknown``, ``melt_properties_unknown`` or
-    ``emplacement_depth_unknown``. Common practice, no source; an order-of-magnitude screen.
+    Crossing over freezing time below 0.1 likely reaches the surface, to 1 marginal, above likely stalls; a melt no
+    lighter than the wall rock is stalled by density at any depth; None where depth or melt is unknown. Common
+    practice, no source; an order-of-magnitude screen. Example: log10 eta 5.156, drho 425, 2 m, 5 km -> marginal.
     """
-    contrast = np.asarray(density_contrast_kg_m3, dtype=np.float64)
+    contrast = np.atleast_1d(np.asarray(density_contrast_kg_m3, dtype=np.float64))
     ratio = crossing_over_freezing(emplacement_depth_m, dyke_velocity, dyke_width_m, thermal_diffusivity_m2_s)
     words = np.array([*ASCENT_OUTCOMES, None], dtype=object)
     by_time = np.where(ratio < CROSSING_RATIO_LOW, 0, np.where(ratio <= CROSSING_RATIO_HIGH, 1, 2))
     known = np.where(np.isnan(ratio), 4, by_time)
-    outcome = np.where(contrast <= 0.0, 3, known)
-    causes = np.array([LIQUIDUS_UNKNOWN, MELT_UNKNOWN, DEPTH_UNKNOWN, None], dtype=object)
+    return words[np.where(contrast <= 0.0, 3, known)]
+
+
+def ascent_cause(
+    outcome: ArrayLike, liquidus_c: ArrayLike, density_contrast_kg_m3: ArrayLike, emplacement_depth_m: ArrayLike
+) -> NDArray[np.object_]:
+    """Why there is no ascent outcome, object array (n,): one of ``ASCENT_CAUSES``; None where there is one."""
+    words = np.array([*ASCENT_CAUSES, None], dtype=object)
+    missing = np.equal(np.asarray(outcome, dtype=object), None).astype(bool)
     no_liquidus = np.isnan(np.asarray(liquidus_c, dtype=np.float64))
-    no_melt = np.isnan(contrast) | np.isnan(np.asarray(dyke_velocity, dtype=np.float64))
-    cause = np.where(no_liquidus, 0, np.where(no_melt, 1, 2))
-    return {
-        "ascent_outcome": words[outcome],
-        "ascent_cause": causes[np.where(outcome == 4, cause, 3)],
-    }
+    no_depth = np.isnan(not_negative(emplacement_depth_m))
+    no_density = np.isnan(np.asarray(density_contrast_kg_m3, dtype=np.float64))
+    cause = np.where(no_liquidus, 0, np.where(no_depth & ~no_density, 1, 2))
+    return words[np.where(missing, cause, 3)]

@@ -2,10 +2,8 @@
 
 from __future__ import annotations
 
-from typing import Any
-
 import numpy as np
-from numpy.typing import ArrayLike
+from numpy.typing import ArrayLike, NDArray
 
 from registry.petrology.constants import oxide_from_element
 from registry.petrology.conventions import Conventions
@@ -49,23 +47,16 @@ def rock_density_kg_m3(density_kg_m3: ArrayLike, sio2_wt: ArrayLike, conventions
     return np.where(np.isnan(measured), assumed, measured)
 
 
-def heat_production_with_cause(
+def heat_production_cause(
     u_ppm: ArrayLike, th_ppm: ArrayLike, k2o_wt: ArrayLike, density_kg_m3: ArrayLike
-) -> dict[str, Any]:
-    """Heat production from U, Th (ppm), K2O (wt%) and a density, with the first cause where it is missing.
-
-    Returns ``heat_production_uw_m3`` (n,) and ``heat_production_cause``, object array: one of ``HEAT_CAUSES`` or None.
-    """
-    inputs = [np.atleast_1d(np.asarray(v, dtype=np.float64)) for v in (u_ppm, th_ppm, k2o_wt, density_kg_m3)]
-    heat = heat_production_rybach(inputs[0], inputs[1], potassium_wt(inputs[2]), inputs[3])
+) -> NDArray[np.object_]:
+    """Which input of the heat production is missing first, object array (n,): one of ``HEAT_CAUSES`` or None."""
     words = np.array([*HEAT_CAUSES, None], dtype=object)
-    cause = np.full(heat.shape, len(HEAT_CAUSES) - 1)
-    for position in (2, 1, 0):
+    inputs = [not_negative(u_ppm), not_negative(th_ppm), not_negative(k2o_wt), positive(density_kg_m3)]
+    cause = np.full(np.broadcast_shapes(*(values.shape for values in inputs), (1,)), len(HEAT_CAUSES))
+    for position in (3, 2, 1, 0):
         cause = np.where(np.isnan(inputs[position]), position, cause)
-    return {
-        "heat_production_uw_m3": heat,
-        "heat_production_cause": words[np.where(np.isnan(heat), cause, len(HEAT_CAUSES))],
-    }
+    return words[cause]
 
 
 def sphere_radius_m(volume_km3: ArrayLike) -> Array:

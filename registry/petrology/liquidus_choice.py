@@ -31,7 +31,7 @@ HIGHEST_LIQUID_FORSTERITE = 93.0
 ACID_HIGH_H2O_WT = 3.0
 
 MODEL_WORDS = ("olivine_median", "blend", "makhluf")
-NOT_A_LIQUID, NO_MODEL_IN_RANGE, MISSING_INPUT = "not_a_liquid", "no_model_in_range", "missing_input"
+LIQUIDUS_CAUSES = ("not_a_liquid", "no_model_in_range", "missing_input")
 
 
 def is_not_a_liquid(mgo_wt: ArrayLike, feot_wt: ArrayLike, logged_cumulate: ArrayLike) -> NDArray[np.bool_]:
@@ -65,27 +65,25 @@ def median_low_high(values: Array) -> tuple[Array, Array, Array]:
 
 def choose_liquidus(
     sio2_wt: ArrayLike,
-    mgo_wt: ArrayLike,
-    feot_wt: ArrayLike,
     h2o_wt: ArrayLike,
     olivine_models_c: Mapping[str, ArrayLike],
     makhluf_c: ArrayLike,
     zircon_c: ArrayLike,
     zircon_is_usable: ArrayLike,
-    logged_cumulate: ArrayLike,
+    not_a_liquid: ArrayLike,
+    mgo_wt: ArrayLike,
     depression_model: str = "almeev",
 ) -> dict[str, Any]:
-    """The liquidus temperature chosen for each rock, with its model, its spread and the cause where there is none.
+    """The liquidus temperature chosen for each rock, with its route and its spread.
 
     Arrays of shape (n,): anhydrous oxides in wt%, water in the melt in wt%, model temperatures in C as published
     (``olivine_models_c`` by the names of ``OLIVINE_MODELS``; the dry ones are lowered here by ``depression_model``),
-    zircon saturation (Watson and Harrison) and whether it is usable.
+    zircon saturation (Watson and Harrison), whether that is usable, and ``is_not_a_liquid``.
 
-    Returns ``liquidus_c``, ``liquidus_model`` (one of ``MODEL_WORDS``), ``liquidus_cause`` (``not_a_liquid``,
-    ``no_model_in_range``, ``missing_input``; None where there is a temperature), ``liquidus_low_c`` and
-    ``liquidus_high_c``. Basic: the range of the models in range. Acid: low is the usable zircon temperature, else
-    NaN; high the haplogranite at 3 wt% water. Between: the least and greatest of both. ValueError for a model name
-    that is missing.
+    Returns ``liquidus_c``, ``liquidus_model`` (one of ``MODEL_WORDS``, None without a temperature),
+    ``liquidus_low_c`` and ``liquidus_high_c``. Basic: the range of the models in range. Acid: low is the usable
+    zircon temperature, else NaN; high the haplogranite at 3 wt% water. Between: the least and greatest of both
+    routes. ValueError for a model that is missing.
     """
     sio2, mgo, water = (np.atleast_1d(np.asarray(v, dtype=np.float64)) for v in (sio2_wt, mgo_wt, h2o_wt))
     missing_models = [model for model in OLIVINE_MODELS if model not in olivine_models_c]
@@ -102,25 +100,39 @@ def choose_liquidus(
     blend = (1.0 - weight) * basic + weight * acid
     blend_low = np.fmin(np.minimum(basic_low, np.minimum(acid, acid_high)), acid_low)
     blend_high = np.maximum(basic_high, np.maximum(acid, acid_high))
-    liquid = ~is_not_a_liquid(mgo, feot_wt, logged_cumulate)
 
     def route(of_basic: Array, of_blend: Array, of_acid: Array) -> Array:
         return np.where(is_basic, of_basic, np.where(is_acid, of_acid, of_blend))
 
-    temperature = np.where(liquid, route(basic, blend, acid), np.nan)
+    is_liquid = ~np.asarray(not_a_liquid, dtype=bool) & ~np.isnan(mgo)
+    temperature = np.where(is_liquid, route(basic, blend, acid), np.nan)
     found = ~np.isnan(temperature)
-    complete = ~(np.isnan(sio2) | np.isnan(mgo) | np.isnan(np.asarray(feot_wt, dtype=np.float64)))
-    outside = complete & (mgo < OLIVINE_MGO_LOW_WT) & ~is_acid
-    words = np.array([*MODEL_WORDS, NOT_A_LIQUID, NO_MODEL_IN_RANGE, MISSING_INPUT, None], dtype=object)
+    words = np.array([*MODEL_WORDS, None], dtype=object)
     model = np.where(is_basic, 0, np.where(is_acid, 2, 1))
-    cause = np.where(~liquid, 3, np.where(outside, 4, 5))
     return {
         "liquidus_c": temperature,
-        "liquidus_model": words[np.where(found, model, 6)],
-        "liquidus_cause": words[np.where(found, 6, cause)],
+        "liquidus_model": words[np.where(found, model, 3)],
         "liquidus_low_c": np.where(found, route(basic_low, blend_low, acid_low), np.nan),
         "liquidus_high_c": np.where(found, route(basic_high, blend_high, acid_high), np.nan),
     }
+
+
+def liquidus_cause(
+    liquidus_c: ArrayLike, not_a_liquid: ArrayLike, sio2_wt: ArrayLike, mgo_wt: ArrayLike
+) -> NDArray[np.object_]:
+    """Why there is no liquidus temperature, object array (n,): ``not_a_liquid``, ``no_model_in_range`` (SiO2 up to
+    63 with MgO below 3 wt%, anhydrous), ``missing_input``; None where there is one."""
+    found = ~np.isnan(np.atleast_1d(np.asarray(liquidus_c, dtype=np.float64)))
+    outside = has_no_model_in_range(sio2_wt, mgo_wt)
+    words = np.array([*LIQUIDUS_CAUSES, None], dtype=object)
+    cause = np.where(np.asarray(not_a_liquid, dtype=bool), 0, np.where(outside, 1, 2))
+    return words[np.where(found, 3, cause)]
+
+
+def has_no_model_in_range(sio2_wt: ArrayLike, mgo_wt: ArrayLike) -> NDArray[np.bool_]:
+    """True where an anhydrous analysis of up to 63 wt% SiO2 has less than 3 wt% MgO: no olivine model applies."""
+    sio2, mgo = np.asarray(sio2_wt, dtype=np.float64), np.asarray(mgo_wt, dtype=np.float64)
+    return (sio2 <= OLIVINE_SIO2_HIGH_WT) & (mgo < OLIVINE_MGO_LOW_WT)
 
 
 def _basic_route(
