@@ -174,9 +174,7 @@ METHODS = (
         equation="liquidus_unknown, emplacement_depth_unknown or melt_properties_unknown",
         status="common practice",
         causes=(
-            Cause(
-                "value_present", "the value is there, so it has no cause of absence", _word_present, ("ascent_outcome",)
-            ),
+            Cause("value_present", "the value is there, so no cause is needed", _word_present, ("ascent_outcome",)),
         ),
     ),
 )

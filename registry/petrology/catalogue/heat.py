@@ -153,7 +153,7 @@ METHODS = (
         causes=(
             Cause(
                 "value_present",
-                "the value is there, so it has no cause of absence",
+                "the value is there, so no cause is needed",
                 _is_present,
                 ("heat_production_uw_m3",),
             ),

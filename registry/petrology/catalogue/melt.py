@@ -56,10 +56,10 @@ METHODS = (
         source="lange1997",
         equation="mass over the sum of partial molar volumes",
         status="from memory",
-        calibration=(Range("liquidus_c", 700.0, 1600.0),),
+        calibration=(Range("liquidus_c", 427.0, 1627.0),),
         standard_error="0.32 % at 1400 C",
         note="TiO2, Fe2O3 and FeO of [lange1987], compressibilities of [kress1991], water of [ochs1999]; MnO and P2O5 "
-        "are left out of mass and volume. The range is from memory.",
+        "are left out of mass and volume. The range is that of the title, 700-1900 K.",
         causes=(_NOT_A_LIQUID,),
     ),
     Method(

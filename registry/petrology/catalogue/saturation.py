@@ -161,7 +161,6 @@ METHODS = (
         source="watson1983",
         equation="range of the calibration",
         status="common practice",
-        calibration=(),
     ),
     Method(
         key="saturation_hfse",

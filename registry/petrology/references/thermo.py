@@ -21,8 +21,7 @@ REFERENCES = {
     "makhluf2017": "Makhluf, A.R., Newton, R.C., Manning, C.E. 2017. Experimental investigation of phase relations in "
     "the system NaAlSi3O8-KAlSi3O8-SiO2-H2O at high temperatures and pressures: liquidus relations, liquidus mineral "
     "compositions, and activity of H2O in liquids at 10 kbar. Contributions to Mineralogy and Petrology 172.",
-    "duan2022": "Duan, M. et al. 2022. Bulk-rock zircon saturation temperature and the temperature of granitoid magma. "
-    "Mineralogy and Petrology 116, 93-103.",
+    "duan2022": "Duan et al. 2022. Mineralogy and Petrology 116, 93-103 (abstract seen).",
     "medard2008": "Medard, E., Grove, T.L. 2008. The effect of H2O on the olivine liquidus of basaltic melts: "
     "experiments and thermodynamic models. Contributions to Mineralogy and Petrology 155, 417-432.",
     "falloon2000": "Falloon, T.J., Danyushevsky, L.V. 2000. Melting of refractory mantle at 1.5, 2 and 2.5 GPa under "
@@ -47,8 +46,7 @@ REFERENCES = {
     "experimental data and an extension of the Harrison-Watson model. Geochimica et Cosmochimica Acta 56, 3855-3861.",
     "montel1993": "Montel, J.M. 1993. A model for monazite/melt equilibrium and application to the generation of "
     "granitic magmas. Chemical Geology 110, 127-146.",
-    "maimaiti2019": "Maimaiti, M., Carroll, M.R. et al. 2019. Monazite solubility in silicate melts. "
-    "European Journal of Mineralogy 31, 49-59.",
+    "maimaiti2019": "Maimaiti et al. 2019. European Journal of Mineralogy 31, 49-59 (abstract seen).",
     "lange1987": "Lange, R.A., Carmichael, I.S.E. 1987. Densities of Na2O-K2O-CaO-MgO-FeO-Fe2O3-Al2O3-TiO2-SiO2 "
     "liquids: new measurements and derived partial molar properties. Geochimica et Cosmochimica Acta 51, 2931-2946.",
     "lange1990": "Lange, R.A., Carmichael, I.S.E. 1990. Thermodynamic properties of silicate liquids with emphasis on "
@@ -88,8 +86,8 @@ REFERENCES = {
     "anhydrous mantle: the primacy of partitioning. Physics of the Earth and Planetary Interiors 176, 54-68.",
     "katz2003": "Katz, R.F., Spiegelman, M., Langmuir, C.H. 2003. A new parameterization of hydrous mantle melting. "
     "Geochemistry, Geophysics, Geosystems 4, 1073.",
-    "stern1973": "Stern, C.R., Wyllie, P.J. 1973. Melting relations of basalt-andesite-rhyolite-H2O and a pelagic red "
-    "clay at 30 kbars; water-saturated and -undersaturated melting of a granite to 35 kilobars. "
+    "stern1973": "Stern, C.R., Wyllie, P.J. 1973. Water-saturated and undersaturated melting relations of a granite to "
+    "35 kilobars. "
     "Earth and Planetary Science Letters 18, 163-167.",
     "johannes1996": "Johannes, W., Holtz, F. 1996. Petrogenesis and Experimental Petrology of Granitic Rocks. "
     "Springer, Berlin.",
