@@ -1,0 +1,89 @@
+"""The command ``plutonbook``: thin, and slow imports wait until a subcommand needs them."""
+
+from __future__ import annotations
+
+import importlib
+import sys
+from typing import Any
+
+import click
+
+#: subcommand -> (module of registry.commands, name of the function there)
+COMMANDS = {
+    "create": ("registries", "create"),
+    "upgrade": ("registries", "upgrade"),
+    "check": ("registries", "check"),
+    "import": ("data", "import_"),
+    "refresh": ("data", "refresh"),
+    "export": ("data", "export"),
+    "batches": ("batches", "batches"),
+    "withdraw": ("batches", "withdraw"),
+    "restore-batch": ("batches", "restore_batch"),
+    "methods": ("methods", "methods"),
+    "serve": ("serving", "serve"),
+    "demo": ("serving", "demo"),
+}
+
+
+class LazyGroup(click.Group):
+    """A group that imports a subcommand's module when it is called."""
+
+    def list_commands(self, ctx: click.Context) -> list[str]:
+        return list(COMMANDS)
+
+    def get_command(self, ctx: click.Context, name: str) -> click.Command | None:
+        if name not in COMMANDS:
+            return None
+        module, function = COMMANDS[name]
+        return getattr(importlib.import_module(f"registry.commands.{module}"), function)
+
+
+@click.group(cls=LazyGroup, context_settings={"help_option_names": ["-h", "--help"]})
+@click.option(
+    "--registry",
+    "registry_path",
+    metavar="PATH-or-URL",
+    help="The registry file, or a SQLAlchemy URL for PostgreSQL; also from PLUTONBOOK_REGISTRY.",
+)
+@click.version_option(package_name="plutonbook")
+@click.pass_context
+def group(ctx: click.Context, registry_path: str | None) -> None:
+    """A register of drill and outcrop samples: which intrusions could have been a source of ore or heat, and why.
+
+    Its verdicts are a screening aid, never a resource statement.
+    """
+    ctx.obj = registry_path
+
+
+def main(arguments: list[str] | None = None) -> Any:
+    """Run the command; every expected error ends in a sentence on standard error, never in a traceback."""
+    from registry.errors import InputProblems, PlutonbookError
+
+    try:
+        code = group.main(args=arguments, prog_name="plutonbook", standalone_mode=False)
+    except click.exceptions.Abort:
+        click.echo("Stopped.", err=True)
+        sys.exit(130)
+    except click.ClickException as error:
+        error.show()
+        sys.exit(2)
+    except InputProblems as error:
+        _show_problems(error)
+        sys.exit(error.exit_code)
+    except PlutonbookError as error:
+        click.echo(f"plutonbook: {error}", err=True)
+        sys.exit(error.exit_code)
+    except BrokenPipeError:
+        sys.exit(141)
+    sys.exit(code if isinstance(code, int) else 0)
+
+
+def _show_problems(error: Any) -> None:
+    for problem in error.problems:
+        click.echo(problem.sentence(), err=True)
+    count = sum(problem.severity == "problem" for problem in error.problems)
+    click.echo(f"plutonbook: {count} {'problem' if count == 1 else 'problems'}; nothing was written.", err=True)
+
+
+if __name__ == "__main__":
+    main()

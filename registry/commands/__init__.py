@@ -1,0 +1,1 @@
+"""The subcommands of ``plutonbook``, one module a subject; imported only when called."""

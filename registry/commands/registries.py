@@ -1,0 +1,54 @@
+"""``plutonbook create``, ``upgrade`` and ``check``."""
+
+from __future__ import annotations
+
+import click
+
+from registry.commands.options import json_option, registry_named, registry_option, say
+
+
+@click.command()
+@registry_option
+@json_option
+def create(registry_path: str | None, as_json: bool) -> None:
+    """Make a new, empty registry."""
+    from registry.founding import found
+    from registry.store.engine import HEAD_REVISION
+
+    path = registry_named(registry_path)
+    found(path)
+    say(
+        {"registry": path, "revision": HEAD_REVISION},
+        [f"Created {path} at revision {HEAD_REVISION}.", "Bring data in with: plutonbook import FILE..."],
+        as_json,
+    )
+
+
+@click.command()
+@registry_option
+@json_option
+def upgrade(registry_path: str | None, as_json: bool) -> None:
+    """Bring an older registry to this version's schema, after an automatic backup, and recompute what changed."""
+    from registry.founding import bring_up_to_date
+
+    report = bring_up_to_date(registry_named(registry_path))
+    lines = [f"The registry stands at revision {report['revision']} (before: {report['before']})."]
+    if report["backup"]:
+        lines.append(f"The registry as it was lies in {report['backup']}.")
+    lines.append(f"Recomputed {report['recomputed']:,} samples.")
+    say(report, lines, as_json)
+
+
+@click.command()
+@registry_option
+@json_option
+@click.pass_context
+def check(ctx: click.Context, registry_path: str | None, as_json: bool) -> int:
+    """Look for damage: integrity, foreign keys, orphans, schema, stale rows, file hashes, and the methods themselves."""
+    from registry.checking import check_registry
+    from registry.store.engine import open_registry
+
+    findings = check_registry(open_registry(registry_named(registry_path), any_revision=True))
+    lines = [f"{finding['subject']}: {finding['found']}; {finding['remedy']}" for finding in findings]
+    say({"findings": findings}, lines or ["Nothing to complain of."], as_json)
+    return 1 if findings else 0

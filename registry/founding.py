@@ -1,0 +1,79 @@
+"""Making registries: a new one with the shipped targets, an older one brought up to date, and the demo."""
+
+from __future__ import annotations
+
+from pathlib import Path
+from typing import Any
+
+from registry.clock import now
+from registry.errors import PlutonbookError
+from registry.judging import install_shipped_definitions
+from registry.refresh import refresh_registry
+from registry.store import schema, target_rows
+from registry.store.engine import Registry, open_registry, place_of, reading
+from registry.targets.definition import load_definitions
+
+DEMO_MARK = "demo"
+
+
+def found(path_or_url: str | Path, demo: bool = False) -> Registry:
+    """A new registry at head with the shipped target definitions copied in; marked if it is a demo."""
+
+    def fill(connection: Any) -> None:
+        install_shipped_definitions(connection, tuple(load_definitions().values()))
+        target_rows.write_setting(connection, "created_at", now())
+        if demo:
+            target_rows.write_setting(connection, DEMO_MARK, "1")
+
+    return schema.create(path_or_url, fill)
+
+
+def bring_up_to_date(path_or_url: str | Path) -> dict[str, Any]:
+    """Migrate, install newer shipped definitions, recompute everything; a report with the backup's path."""
+    changed: list[str] = []
+
+    def fill(connection: Any) -> None:
+        changed.extend(install_shipped_definitions(connection, tuple(load_definitions().values())))
+
+    before, saved = schema.upgrade(path_or_url, fill)
+    registry = open_registry(path_or_url)
+    recomputed = refresh_registry(registry, everything=True, cause="upgrade")
+    return {
+        "before": before,
+        "revision": schema.revision(registry),
+        "backup": None if saved is None else str(saved),
+        "new_target_versions": changed,
+        "recomputed": recomputed,
+    }
+
+
+def is_demo(registry: Registry) -> bool:
+    """Whether a registry was made by ``plutonbook demo``."""
+    with reading(registry) as connection:
+        return target_rows.read_settings(connection).get(DEMO_MARK) == "1"
+
+
+def build_demo(path_or_url: str) -> list[str]:
+    """The demo registry at that place, built from ``seed_demo`` by the ordinary import, or used again; what was done.
+
+    Refuses a registry that is not marked as a demo, so that no real data are mixed with invented ones.
+    """
+    import seed_demo
+    from registry.importing import ImportOptions, import_files
+
+    _, path = place_of(path_or_url)
+    if path is not None and path.exists():
+        if not is_demo(open_registry(path_or_url)):
+            raise PlutonbookError(
+                f"{path} is a registry of real data, not a demo; give the demo a path of its own with --registry"
+            )
+        return [f"Using the demo registry {path} again (delete the file to build it anew)."]
+    registry = found(path_or_url, demo=True)
+    try:
+        report = import_files(registry, seed_demo.files(), ImportOptions(lab="Invented laboratory"))
+    except BaseException:
+        registry.close()
+        if path is not None:
+            path.unlink(missing_ok=True)
+        raise
+    return [f"Built the demo registry {path or 'on PostgreSQL'}: every name and number in it is invented.", *report.summary()]

@@ -1,0 +1,204 @@
+"""Import of master data and lab results: read, check, store, compute and judge in one transaction."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from dataclasses import asdict, dataclass, field
+from pathlib import Path
+from typing import Any
+
+from registry.errors import InputProblems, NotFound, PlutonbookError, Problem, UsageError
+from registry.importing_results import ResultsReport, store_results
+from registry.intake import KINDS, Reading, read_file
+from registry.refresh import changes_since, drain, last_change
+from registry.store import masters
+from registry.store.engine import Registry, writing
+
+
+@dataclass(frozen=True)
+class ImportOptions:
+    """The choices of ``plutonbook import`` (see its help)."""
+
+    kind: str | None = None
+    dry_run: bool = False
+    batch: str | None = None
+    lab: str | None = None
+    create_samples: bool = False
+    keep_going: bool = False
+    supersede: bool = False
+    add_to: str | None = None
+    code_prefix: str = ""
+
+    def refuse_what_is_not_there(self) -> None:
+        """UsageError for options that this version does not have yet, with what to do meanwhile."""
+        if self.supersede or self.add_to:
+            raise UsageError(
+                "--supersede and --add-to are not there yet; withdraw the earlier batch with 'plutonbook withdraw' and "
+                "import the corrected file under its own --batch code"
+            )
+        if self.keep_going:
+            raise UsageError("--keep-going is not there yet; correct the rows that are reported and import again")
+
+
+@dataclass
+class FileReport:
+    """What became of one file."""
+
+    file: str
+    kind: str
+    rows: int
+    understood: list[str]
+    remarks: list[str]
+    added: int = 0
+    changes: list[str] = field(default_factory=list)
+    results: ResultsReport | None = None
+
+    def lines(self) -> list[str]:
+        lines = [f"{self.file}: {self.kind}, {_count(self.rows, 'row')}"]
+        lines += [f"  understood: {sentence}" for sentence in self.understood]
+        lines += [f"  remark: {sentence}" for sentence in self.remarks]
+        if self.results is not None:
+            lines += [f"  {sentence}" for sentence in self.results.lines()]
+        else:
+            lines.append(f"  {self.added:,} new, {len(self.changes):,} changed")
+            lines += [f"  changed: {change}" for change in self.changes[:20]]
+            if len(self.changes) > 20:
+                lines.append(f"  ... and {len(self.changes) - 20:,} more changes")
+        return lines
+
+
+@dataclass
+class ImportReport:
+    """What an import did, or in a dry run would do."""
+
+    files: list[FileReport]
+    recomputed: int
+    verdicts_changed: int
+    verdicts: dict[str, dict[str, int]]
+    dry_run: bool
+
+    def lines(self) -> list[str]:
+        return [*(line for file in self.files for line in file.lines()), *self._ending()]
+
+    def summary(self) -> list[str]:
+        """One line a file and the verdicts, without what was understood."""
+        return [*(f"{file.file}: {file.kind}, {_count(file.rows, 'row')}" for file in self.files), *self._ending()]
+
+    def _ending(self) -> list[str]:
+        lines = [f"Computed and judged {_count(self.recomputed, 'sample')}."]
+        for target, counts in self.verdicts.items():
+            lines.append(f"  {target}: " + ", ".join(f"{count:,} {word}" for word, count in counts.items()))
+        if self.verdicts_changed:
+            lines.append(f"{_count(self.verdicts_changed, 'earlier verdict')} changed: see change_sheet.")
+        lines.append("Dry run: nothing was written." if self.dry_run else "Stored.")
+        return lines
+
+    def as_dict(self) -> dict[str, Any]:
+        return asdict(self)
+
+
+class _NothingWritten(Exception):
+    """Rolls a dry run back."""
+
+
+def import_files(registry: Registry, paths: Sequence[Path], options: ImportOptions | None = None) -> ImportReport:
+    """Import files in the order areas, sites, surveys, intervals, intrusions, samples, results; one transaction.
+
+    Raises InputProblems with every problem of every file (then nothing was written), NotFound for a missing file.
+    """
+    options = options or ImportOptions()
+    options.refuse_what_is_not_there()
+    contents = [(path, _bytes_of(path)) for path in paths]
+    readings = [(read_file(path.name, data, options.kind), data) for path, data in contents]
+    readings.sort(key=lambda pair: KINDS.index(pair[0].kind) if pair[0].kind in KINDS else len(KINDS))
+    unreadable = [problem for reading, _ in readings for problem in reading.problems if not reading.ok]
+    report: ImportReport | None = None
+    try:
+        with writing(registry, what=f"an import of {len(paths)} files") as connection:
+            report = _store(connection, readings, options, unreadable)
+            if options.dry_run:
+                raise _NothingWritten
+    except _NothingWritten:
+        pass
+    assert report is not None
+    return report
+
+
+def _store(
+    connection: Any, readings: Sequence[tuple[Reading, bytes]], options: ImportOptions, problems: list[Problem]
+) -> ImportReport:
+    before = last_change(connection)
+    reports, computed = [], 0
+    results = sum(reading.kind == "results" for reading, _ in readings)
+    if options.batch and results > 1:
+        raise UsageError(f"--batch names one batch, but {results} files hold results; import them one by one")
+    for reading, data in readings:
+        if problems:
+            break  # what follows may name what a faulty file was to bring: its complaints would mislead
+        report, done, faults = _store_one(connection, reading, data, options)
+        reports.append(report)
+        computed += done
+        problems = [*problems, *faults]
+    if problems:
+        raise InputProblems(problems)
+    computed += drain(connection, cause=_cause(reports))
+    return ImportReport(
+        reports, computed, changes_since(connection, before), masters.verdict_counts(connection), options.dry_run
+    )
+
+
+def _store_one(
+    connection: Any, reading: Reading, data: bytes, options: ImportOptions
+) -> tuple[FileReport, int, list[Problem]]:
+    """Store one good reading; its report, how many samples were computed, and the problems met on the way."""
+    kind = reading.kind or ""
+    remarks = [problem.sentence() for problem in reading.warnings]
+    if reading.results is not None:
+        report = FileReport(reading.file, kind, len(reading.results), reading.understood, remarks)
+        report.results, done, faults = store_results(connection, reading.file, reading.results, data, options)
+        return report, done, faults
+    if kind == "reference-materials":
+        raise PlutonbookError(
+            f"{reading.file}: certificates of reference materials cannot be imported yet; import the other files "
+            "without it"
+        )
+    table = reading.master
+    assert table is not None
+    report = FileReport(reading.file, kind, len(table), reading.understood, remarks)
+    outcome = masters.upsert(connection, kind, _prefixed(table.rows, options.code_prefix), table.line_no, reading.file)
+    report.added, report.changes = outcome.added, outcome.changes
+    faults = [problem for problem in outcome.problems if problem.severity == "problem"]
+    report.remarks += [problem.sentence() for problem in outcome.problems if problem.severity != "problem"]
+    return report, 0, faults
+
+
+def _prefixed(rows: dict[str, list[Any]], prefix: str) -> dict[str, list[Any]]:
+    if not prefix:
+        return rows
+    coded = ("sample_code", "duplicate_of")
+    return {
+        name: [value if value is None else f"{prefix}{value}" for value in column] if name in coded else column
+        for name, column in rows.items()
+    }
+
+
+def _cause(reports: Sequence[FileReport]) -> str:
+    batches = [report.results.batch for report in reports if report.results is not None]
+    if batches:
+        return f"batch {', '.join(batches)} imported"
+    return f"{', '.join(report.file for report in reports)} imported"
+
+
+def _bytes_of(path: Path) -> bytes:
+    if path.is_dir():
+        raise NotFound(f"{path} is a folder; name the files in it")
+    try:
+        return path.read_bytes()
+    except FileNotFoundError as error:
+        raise NotFound(f"there is no file {path}") from error
+    except OSError as error:
+        raise NotFound(f"{path} cannot be read: {error.strerror}") from error
+
+
+def _count(number: int, word: str) -> str:
+    return f"{number:,} {word}" if number == 1 else f"{number:,} {word}s"

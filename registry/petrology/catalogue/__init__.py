@@ -1,0 +1,134 @@
+"""The catalogue: every derived quantity with its method, in the order of computation, and the remarks on values."""
+
+from __future__ import annotations
+
+import importlib
+from collections.abc import Callable
+from typing import Any
+
+import numpy as np
+
+from registry.petrology.catalogue.records import Cause, Method, Quantity, Range, Warning
+
+__all__ = [
+    "CAUSES",
+    "METHODS",
+    "METHOD_BY_KEY",
+    "METHOD_OF_QUANTITY",
+    "QUANTITIES",
+    "WARNINGS",
+    "Cause",
+    "Method",
+    "Quantity",
+    "Range",
+    "Warning",
+]
+
+TOPICS = (
+    "iron",
+    "closure",
+    "norm",
+    "trace",
+    "indices",
+    "alteration",
+    "classification",
+    "liquidus",
+    "saturation",
+    "melt",
+    "ascent",
+    "heat",
+    "fitness",
+)
+
+#: Causes that any quantity can have; a method adds its own. The letter stands in ``derived.causes``.
+GENERAL_CAUSES = (
+    ("missing_input", "an analyte it needs was not reported, not determined or not carried by the digestion"),
+    ("not_yet_computed", "this method is not computed by this version"),
+    ("not_applicable", "not defined for this rock"),
+)
+_LETTERS = "abcdefghijklmnopqrstuvwxyzABCDEFGHIJKLMNOPQRSTUVWXYZ0123456789"
+
+
+def _range_warning(method: Method) -> Warning | None:
+    ranges = tuple(limits for limits in method.calibration if limits.low is not None or limits.high is not None)
+    if not ranges:
+        return None
+    output = method.outputs[0]
+
+    def outside(value: Any, *columns: Any) -> Any:
+        mask = np.zeros(np.shape(value), dtype=bool)
+        for limits, column in zip(ranges, columns, strict=True):
+            if limits.low is not None:
+                mask |= column < limits.low
+            if limits.high is not None:
+                mask |= column > limits.high
+        present = ~np.isnan(value) if value.dtype.kind == "f" else value.astype(bool)
+        return mask & present
+
+    spelled = "; ".join(f"{limits.column} {_spell(limits)}" for limits in ranges)
+    return Warning(
+        code=f"{method.key}_outside_range",
+        column=output.name,
+        value_column=ranges[0].column,
+        text=f"outside the range {method.label} was calibrated for ({spelled}); {ranges[0].column} is {{value}}",
+        mask=outside,
+        inputs=(output.name, *(limits.column for limits in ranges)),
+    )
+
+
+def _spell(limits: Range) -> str:
+    if limits.low is None:
+        return f"up to {limits.high:g}"
+    if limits.high is None:
+        return f"from {limits.low:g}"
+    return f"{limits.low:g} to {limits.high:g}"
+
+
+def _collect() -> tuple[tuple[Method, ...], tuple[Warning, ...]]:
+    methods: list[Method] = []
+    warnings: list[Warning] = []
+    for topic in TOPICS:
+        module = importlib.import_module(f"registry.petrology.catalogue.{topic}")
+        methods.extend(module.METHODS)
+        warnings.extend(module.WARNINGS)
+    warnings.extend(warning for method in methods if (warning := _range_warning(method)) is not None)
+    return _ordered(methods), tuple(warnings)
+
+
+def _ordered(methods: list[Method]) -> tuple[Method, ...]:
+    """Methods so that each follows those whose outputs it reads; ValueError names a circle."""
+    produced = {output.name for method in methods for output in method.outputs}
+    known: set[str] = set()
+    ordered: list[Method] = []
+    waiting = list(methods)
+    while waiting:
+        ready = [m for m in waiting if all(name in known or name not in produced for name in m.inputs)]
+        if not ready:
+            raise ValueError(f"methods wait for each other: {[method.key for method in waiting]}")
+        for method in ready:
+            ordered.append(method)
+            known.update(output.name for output in method.outputs)
+        waiting = [method for method in waiting if method not in ready]
+    return tuple(ordered)
+
+
+def _cause_letters(methods: tuple[Method, ...]) -> dict[str, tuple[str, str]]:
+    table: dict[str, tuple[str, str]] = {}
+    general = [Cause(code, text, _never, ()) for code, text in GENERAL_CAUSES]
+    for cause in (*general, *(cause for method in methods for cause in method.causes)):
+        if cause.code not in table:
+            table[cause.code] = (_LETTERS[len(table)], cause.text)
+    return table
+
+
+def _never(*_: Any) -> Any:
+    return False
+
+
+METHODS, WARNINGS = _collect()
+QUANTITIES: tuple[Quantity, ...] = tuple(output for method in METHODS for output in method.outputs)
+METHOD_BY_KEY: dict[str, Method] = {method.key: method for method in METHODS}
+METHOD_OF_QUANTITY: dict[str, Method] = {output.name: method for method in METHODS for output in method.outputs}
+#: code -> (letter in ``derived.causes``, text). A dot there means that the value is present.
+CAUSES = _cause_letters(METHODS)
+CauseMask = Callable[..., Any]

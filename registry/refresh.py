@@ -1,0 +1,135 @@
+"""Bring derived values and verdicts up to date: whatever stands in ``stale`` is computed before the commit."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from typing import Any
+
+import numpy as np
+
+from registry.choice import Block, ColumnUse, choose
+from registry.clock import now
+from registry.judging import Rules, read_rules
+from registry.pipeline import CHUNK_SIZE, METHOD_VERSION, Chunk, Computed, compute
+from registry.store import bulk, loading, stale
+from registry.store.engine import Registry, reading, writing
+
+#: A reading page refreshes at most this many samples by itself.
+SMALL_REFRESH = 200
+DERIVE, JUDGE = 1, 2
+
+
+def drain(connection: Any, cause: str = "edited", limit: int | None = None) -> int:
+    """Compute what is stale, at most ``limit`` samples, inside the caller's transaction; how many were done.
+
+    ``cause`` is written beside each verdict that changes.
+    """
+    rules: Rules | None = None
+    done = 0
+    while limit is None or done < limit:
+        size = CHUNK_SIZE if limit is None else min(CHUNK_SIZE, limit - done)
+        pending = stale.pending(connection, size)
+        if not pending:
+            break
+        rules = rules or read_rules(connection)
+        derive = [sample_id for sample_id, level in pending if level == DERIVE]
+        judge = [sample_id for sample_id, level in pending if level != DERIVE]
+        if derive:
+            recompute(connection, recompose(connection, derive), rules, cause, rewrite_composition=True)
+        if judge:
+            recompute(connection, loading.load_composition(connection, judge), rules, cause)
+        stale.clear(connection, [sample_id for sample_id, _ in pending])
+        done += len(pending)
+    return done
+
+
+def refresh_registry(registry: Registry, everything: bool = False, cause: str = "refresh") -> int:
+    """Recompute what is stale, or every sample; how many were done. Nothing stale: the registry is not even locked."""
+    with reading(registry) as connection:
+        if not everything and not stale.pending(connection, 1):
+            return 0
+    with writing(registry, what="a refresh") as connection:
+        if everything:
+            stale.mark_all(connection)
+        return drain(connection, cause)
+
+
+def last_change(connection: Any) -> int:
+    """The id of the newest logged verdict change, 0 where there is none."""
+    return bulk.last_verdict_change(connection)
+
+
+def changes_since(connection: Any, change_id: int) -> int:
+    """How many verdict changes were logged after that one."""
+    return bulk.count_verdict_changes(connection, change_id)
+
+
+def recompose(connection: Any, sample_ids: Sequence[int]) -> loading.Composition:
+    """The composition of samples, chosen anew from their active results."""
+    ids = np.asarray(sorted(sample_ids), dtype=np.int64)
+    blocks = [
+        Block(
+            [ColumnUse(column.analyte, column.unit, column.digestion) for column in block.columns],
+            block.sample,
+            block.values,
+            block.qualifiers,
+            block.newness,
+            block.repeat,
+        )
+        for block in loading.load_blocks(connection, ids)
+    ]
+    return composed(ids, blocks)
+
+
+def composed(ids: np.ndarray, blocks: Sequence[Block]) -> loading.Composition:
+    """The composition of the samples ``ids`` (ascending) from blocks of results."""
+    values, qualifiers, digestions = choose(len(ids), blocks)
+    return loading.Composition(ids, values, qualifiers, digestions)
+
+
+def recompute(
+    connection: Any,
+    composition: loading.Composition,
+    rules: Rules,
+    cause: str,
+    *,
+    rewrite_composition: bool = False,
+    log_changes: bool = True,
+) -> Computed:
+    """Derive and judge one chunk of samples and write all of it; the computed arrays."""
+    ids = composition.sample_ids
+    context = loading.load_context(connection, ids)
+    chunk = Chunk(ids, composition.values, composition.qualifiers, composition.digestions, context)
+    computed = compute(chunk, rules.definitions, rules.conventions)
+    if rewrite_composition:
+        bulk.write_composition(
+            connection, ids, composition.values, composition.qualifiers, composition.digestions
+        )
+    write_computed(connection, ids, computed, rules, cause if log_changes else None)
+    return computed
+
+
+def write_computed(connection: Any, ids: np.ndarray, computed: Computed, rules: Rules, cause: str | None) -> None:
+    """Write derived rows and verdicts; with a ``cause`` the verdicts that changed are logged (a first one is not)."""
+    bulk.write_derived(
+        connection,
+        ids,
+        computed.derived,
+        computed.causes,
+        computed.warnings,
+        rules.convention_set_id,
+        str(METHOD_VERSION),
+        best_target=computed.best_target,
+        best_verdict=computed.best_verdict,
+    )
+    before = bulk.verdicts_of(connection, ids) if cause is not None else {}
+    for code, verdicts in computed.verdicts.items():
+        bulk.write_verdicts(
+            connection,
+            ids,
+            rules.target_ids[code],
+            rules.version_ids[code],
+            verdicts,
+        )
+    if cause is not None:
+        bulk.log_verdict_changes(connection, before, bulk.verdicts_of(connection, ids), cause, now())
