@@ -25,7 +25,7 @@ NOT_JUDGED = 255
 VERDICT_WORDS = ("favourable", "possible", "unfavourable", "undecided")
 #: Samples of these kinds test the laboratory; they get no verdict.
 CONTROL_KINDS = ("reference_material", "blank", "duplicate")
-_TEXT_QUANTITIES = (*TEXT_RULES, "redox_series", "intrusion_shape", "ascent_outcome")
+TEXT_QUANTITIES = (*TEXT_RULES, "redox_series", "intrusion_shape", "ascent_outcome")
 
 
 @dataclass
@@ -117,7 +117,7 @@ def _fitness(known: Known) -> tuple[Booleans, Words]:
 
 def is_known(known: Known, name: str) -> Booleans:
     """Where anything at all is known of a quantity, number or text."""
-    if name in _TEXT_QUANTITIES:
+    if name in TEXT_QUANTITIES:
         return ~known.words(name).missing
     return ~known.number(name).missing
 
@@ -182,6 +182,18 @@ def _controls(known: Known) -> Booleans:
 
 
 __all__ = [
-    "CONTROL_KINDS", "FAVOURABLE", "NOT_JUDGED", "POSSIBLE", "UNDECIDED", "UNFAVOURABLE", "VERDICT_WORDS", "Outcome",
-    "Verdicts", "best", "is_known", "judge", "judge_all",
+    "CONTROL_KINDS",
+    "FAVOURABLE",
+    "NOT_JUDGED",
+    "POSSIBLE",
+    "TEXT_QUANTITIES",
+    "UNDECIDED",
+    "UNFAVOURABLE",
+    "VERDICT_WORDS",
+    "Outcome",
+    "Verdicts",
+    "best",
+    "is_known",
+    "judge",
+    "judge_all",
 ]  # fmt: skip

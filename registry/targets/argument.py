@@ -1,0 +1,264 @@
+"""The argument of one verdict in words: the sentences, what would turn it, what contradicts it, what is missing."""
+
+from __future__ import annotations
+
+import re
+from collections.abc import Mapping
+from typing import Any
+
+import numpy as np
+import orjson
+
+from registry.petrology.analytes import CHOSEN_COLUMNS, CHOSEN_INDEX, QUALIFIER_BELOW
+from registry.petrology.conventions import Conventions
+from registry.petrology.digestion import DIGESTION_LETTERS, DIGESTION_WORDS
+from registry.petrology.intrusion_heat import ASSUMED_AGE_SIGMA
+from registry.petrology.logged import logged_words
+from registry.targets.definition import Criterion, Gate, TargetDefinition
+from registry.targets.engine import TEXT_QUANTITIES, VERDICT_WORDS, is_known, judge
+from registry.targets.evaluation import evaluate
+from registry.targets.grammar import Condition
+from registry.targets.intervals import Known, interval_text
+from registry.targets.quantities import known_of
+
+NOT_KNOWN = "not known"
+_PLACEHOLDER = re.compile(r"\{([a-z_]+)(?:\.([a-z0-9_]+))?\}")
+
+
+def number_text(value: float) -> str:
+    """Three significant digits without an exponent where the number is of ordinary size."""
+    if value == 0.0 or not np.isfinite(value):
+        return f"{value:g}"
+    if not 1e-4 <= abs(value) < 1e7:
+        return f"{value:.3g}"
+    decimals = max(0, 2 - int(np.floor(np.log10(abs(value)))))
+    rounded = round(value, 2 - int(np.floor(np.log10(abs(value)))))
+    return f"{rounded:.{decimals}f}"
+
+
+def workspace_of_sample(sample: Mapping[str, Any], conventions: Conventions | None = None) -> dict[str, Any]:
+    """A workspace of one sample from its stored row: columns by name, None for missing.
+
+    ``qualifiers`` and ``digestions`` are the packed strings of the composition; a censored column holds its limit.
+    """
+    conventions = conventions or Conventions()
+    workspace: dict[str, Any] = {"conventions": conventions}
+    for name, value in sample.items():
+        if value is None or name in ("qualifiers", "digestions", "conventions"):
+            continue
+        if isinstance(value, str):
+            workspace[name] = np.array([value], dtype=object)
+        elif isinstance(value, bool | int | float | np.number | np.bool_):
+            workspace[name] = np.array([value], dtype=bool if isinstance(value, bool | np.bool_) else np.float64)
+    _add_qualifiers(workspace, sample, conventions)
+    words = [np.array([sample.get(name)], dtype=object) for name in ("lithology", "texture", "alteration")]
+    for name, flag in logged_words(*words).items():
+        workspace.setdefault(name, flag)
+    workspace.setdefault("has_intrusion", np.array([bool(sample.get("intrusion"))]))
+    return workspace
+
+
+def _add_qualifiers(workspace: dict[str, Any], sample: Mapping[str, Any], conventions: Conventions) -> None:
+    signs, letters = sample.get("qualifiers"), sample.get("digestions")
+    for column in CHOSEN_COLUMNS:
+        position = CHOSEN_INDEX[column]
+        if letters:
+            code = DIGESTION_LETTERS.index(letters[position])
+            workspace[f"digestion:{column}"] = np.array([code], dtype=np.uint8)
+        if signs and column in workspace and signs[position] in "<>":
+            code = QUALIFIER_BELOW if signs[position] == "<" else 2
+            workspace[f"qualifier:{column}"] = np.array([code], dtype=np.uint8)
+            workspace[f"reported:{column}"] = workspace[column]
+            if code == QUALIFIER_BELOW:
+                workspace[column] = workspace[column] * conventions.censored_substitute
+
+
+def argue(
+    definition: TargetDefinition,
+    sample: Mapping[str, Any],
+    reasons: str | Mapping[str, Any] | None = None,
+    conventions: Conventions | None = None,
+) -> dict[str, Any]:
+    """The argument of one sample's verdict on one target.
+
+    ``sample``: its stored row (composition, derived, context) by column name; ``reasons``: the stored JSON, else it is
+    judged here. Returns plain texts: ``verdict argument cause`` (texts, cause may be None) and the lists
+    ``would_turn contradictions missing cautions`` (missing: dearest first, with what supplies it).
+    """
+    workspace = workspace_of_sample(sample, conventions)
+    known = known_of(workspace, 1)
+    verdicts = judge(definition, workspace, 1, known)
+    stored = orjson.loads(verdicts.reasons[0] or "{}") if reasons is None else reasons
+    if isinstance(stored, str | bytes):
+        stored = orjson.loads(stored)
+    page = _Argument(definition, sample, known, stored)
+    code = int(verdicts.verdict[0])
+    return {
+        "verdict": VERDICT_WORDS[code] if code < len(VERDICT_WORDS) else "not judged",
+        "argument": page.sentences(),
+        "cause": stored.get("texts", {}).get("cause"),
+        "would_turn": page.would_turn(),
+        "contradictions": page.contradictions(),
+        "missing": page.missing(),
+        "cautions": list(definition.cautions),
+    }
+
+
+class _Argument:
+    """One sample's reasons, read criterion by criterion."""
+
+    def __init__(
+        self, definition: TargetDefinition, sample: Mapping[str, Any], known: Known, reasons: Mapping[str, Any]
+    ) -> None:
+        self.definition = definition
+        self.sample = sample
+        self.known = known
+        letters = reasons.get("outcomes", "u" * len(definition.tests))
+        self.outcomes = {item.code: letter for item, letter in zip(definition.tests, letters, strict=True)}
+        limits = reasons.get("thresholds", [None] * len(definition.tests))
+        self.limits = {item.code: limit for item, limit in zip(definition.tests, limits, strict=True)}
+
+    def points(self, letter: str) -> int:
+        return sum(c.weight for c in self.definition.criteria if self.outcomes[c.code] == letter)
+
+    def provisional_points(self) -> int:
+        criteria = self.definition.criteria
+        return sum(c.weight for c in criteria if self.outcomes[c.code] == "m" and c.provisional)
+
+    # sentences
+
+    def sentences(self) -> str:
+        return _PLACEHOLDER.sub(self._fill, self.definition.argument)
+
+    def _fill(self, match: re.Match[str]) -> str:
+        name, part = match.groups()
+        if part is not None:
+            return self._fill_part(name, part)
+        special = {
+            "redox_source": self._redox_source,
+            "density_basis": self._density_basis,
+            "two_sigma": self._two_sigma,
+            "because_missing": self._because_missing,
+        }.get(name)
+        return special() if special else self.value_text(name)
+
+    def _fill_part(self, name: str, part: str) -> str:
+        if name == "points":
+            values = {"met": self.points("m"), "unknown": self.points("u"), "provisional": self.provisional_points()}
+            return str(values[part])
+        if name == "threshold":
+            limit = self.limits[part]
+            return NOT_KNOWN if limit is None else number_text(limit)
+        if name == "digestion":
+            code = int(np.asarray(self.known.workspace.get(f"digestion:{part}", [0]))[0])
+            return DIGESTION_WORDS[code]
+        if name == "phrase":
+            phrase = self.definition.phrases[part]
+            letters = [self.outcomes[code] for code in phrase.criteria]
+            if all(letter == "m" for letter in letters):
+                return phrase.met
+            return phrase.not_met if any(letter in "nr" for letter in letters) else phrase.unknown
+        raise KeyError(f"the argument of {self.definition.code} asks for '{name}.{part}', which is not known")
+
+    def value_text(self, name: str) -> str:
+        """A quantity as it is known: three digits, an interval, a word, or 'not known'."""
+        if name in TEXT_QUANTITIES:
+            words = self.known.words(name)
+            return words.labels[int(words.codes[0])] or NOT_KNOWN
+        value = self.known.number(name)
+        if value.missing[0]:
+            return NOT_KNOWN
+        low, high = float(value.low[0]), float(value.high[0])
+        open_low, open_high = value.ends()
+        return interval_text(low, high, bool(open_low[0]), bool(open_high[0])) or number_text(low)
+
+    def _redox_source(self) -> str:
+        evidence = self.sample.get("redox_evidence")
+        if isinstance(evidence, str):
+            return evidence
+        names = {"feo_titrated_wt": "titrated FeO", "magnetic_susceptibility_si": "magnetic susceptibility"}
+        present = [words for name, words in names.items() if not self.known.number(name).missing[0]]
+        return " and ".join(present) or "neither titrated FeO nor a susceptibility reading"
+
+    def _density_basis(self) -> str:
+        return "the default of its silica class" if self.sample.get("density_kg_m3") is None else "measured"
+
+    def _two_sigma(self) -> str:
+        sigma, age = self.sample.get("age_sigma_ma"), self.sample.get("age_ma")
+        if sigma is None and age is None:
+            return NOT_KNOWN
+        return number_text(2.0 * sigma) if sigma is not None else number_text(2.0 * ASSUMED_AGE_SIGMA * float(age or 0))
+
+    def _because_missing(self) -> str:
+        names = [words for words, _ in self._missing_inputs()]
+        return f" because {', '.join(names)} is missing" if names else ""
+
+    # what would turn it, what contradicts it, what is missing
+
+    def would_turn(self) -> list[str]:
+        """Failed gates and near misses, the heaviest first."""
+        told = []
+        for gate in self.definition.gates:
+            if self.outcomes[gate.code] == "n":
+                told.append(f"{gate.label}: {self._against(gate)}; while this gate fails the verdict is unfavourable")
+        near = [c for c in self.definition.criteria if self.outcomes[c.code] == "r"]
+        for criterion in sorted(near, key=lambda c: -c.weight):
+            told.append(f"{criterion.label}: {self._against(criterion)}, a near miss worth {criterion.weight} points")
+        return told
+
+    def _against(self, item: Gate | Criterion) -> str:
+        test = item.test
+        if isinstance(item, Criterion) and item.otherwise and self.known.number(test.quantity).missing[0]:
+            test = item.otherwise
+        limit = self.limits[item.code]
+        asked = test.text if limit is None else f"{test.sign} {number_text(limit)}"
+        if test.sign == "between":
+            asked = test.text
+        return f"{self.value_text(test.quantity)}, asked for {asked}"
+
+    def contradictions(self) -> list[str]:
+        return [
+            contradiction.label
+            for contradiction in self.definition.contradictions
+            if all(evaluate(self.known, test)[0][0] for test in contradiction.tests)
+        ]
+
+    def missing(self) -> list[str]:
+        """What to determine, dearest first, with the digestion or reading that supplies it."""
+        return [
+            f"{words} (opens {weight} of 100 points)" if weight else f"{words} (needed before it can be judged)"
+            for words, weight in self._missing_inputs()
+        ]
+
+    def _missing_inputs(self) -> list[tuple[str, int]]:
+        weights: dict[str, int] = {}
+        for need in self.definition.needs:
+            if not any(is_known(self.known, name)[0] for name in need.any_of):
+                weights.setdefault(need.any_of[0], 0)
+        for item in self.definition.tests:
+            if self.outcomes[item.code] != "u":
+                continue
+            weight = item.weight if isinstance(item, Criterion) else 0
+            for name in self._open_inputs(item):
+                weights[name] = weights.get(name, 0) + weight
+        told: dict[str, int] = {}
+        for name, weight in sorted(weights.items(), key=lambda pair: -pair[1]):
+            words = self.definition.supply.get(name, name)
+            told[words] = max(told.get(words, 0), weight)
+        return list(told.items())
+
+    def _open_inputs(self, item: Gate | Criterion) -> list[str]:
+        conditions: list[Condition] = [item.test, *(item.only_if if isinstance(item, Criterion) else ())]
+        names: dict[str, None] = {}
+        for condition in conditions:
+            for quantity in filter(None, (condition.quantity, condition.of)):
+                for name in self.known.inputs(quantity):
+                    if self._is_open(name):
+                        names.setdefault(name)
+        return list(names)
+
+    def _is_open(self, name: str) -> bool:
+        if name in TEXT_QUANTITIES:
+            return bool(self.known.words(name).missing[0])
+        value = self.known.number(name)
+        return bool(value.missing[0] or value.straddles()[0])
