@@ -89,7 +89,7 @@ LAYERS = (
     _layer(
         "tests/",
         "numpy pandas openpyxl orjson pyproj click sqlalchemy alembic pyarrow flask werkzeug waitress plotly pytest "
-        "hypothesis selenium psycopg molmass periodictable markupsafe jinja2",
+        "tests hypothesis selenium psycopg molmass periodictable markupsafe jinja2",
         "registry migrations web seed_demo",
     ),
 )

@@ -90,13 +90,6 @@ _VOLATILE_OF = {
 
 
 def _shortfall(code: str) -> Callable[..., Any]:
-    volatile = {
-        "co2_exceeds_cao": "co2_wt",
-        "s_exceeds_feo": "s_wt",
-        "f_exceeds_cao": "f_wt",
-        "cl_exceeds_na2o": "cl_wt",
-    }
-
     def mask(*inputs: Any) -> Any:
         *values, residual = inputs
         admitted = _admitted(values[-1])
