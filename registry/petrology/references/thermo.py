@@ -4,7 +4,7 @@ from __future__ import annotations
 
 REFERENCES = {
     "convention": "Convention of this register: common practice, no published source.",
-    "lemaitre2002": "Le Maitre, R.W. (ed.) 2002. Igneous Rocks: A Classification and Glossary of Terms, 2nd edition. "
+    "lemaitre2002": "Le Maitre, R.W. (ed.) 2002. Igneous Rocks: a Classification and Glossary of Terms, 2nd edition. "
     "Cambridge University Press.",
     "roeder1970": "Roeder, P.L., Emslie, R.F. 1970. Olivine-liquid equilibrium. "
     "Contributions to Mineralogy and Petrology 29, 275-289.",
