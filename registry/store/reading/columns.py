@@ -11,6 +11,7 @@ from dataclasses import dataclass, field
 
 from sqlalchemy import Connection, text
 
+from registry.petrology.analytes import ELEMENT_COLUMNS, ELEMENT_SYMBOLS, OXIDE_COLUMNS, OXIDE_SYMBOLS
 from registry.store import tables
 from registry.store.sheets import DERIVED_SHEETS, SHEETS
 from registry.store.types import Words
@@ -28,6 +29,24 @@ PLACES = {
 }
 #: Looked through in this order for any other column.
 TABLES = ("sample", "derived", "composition")
+#: What a column is called at the head of a table, where its name does not say it.
+LABELS = {
+    **dict(zip(OXIDE_COLUMNS, OXIDE_SYMBOLS, strict=True)),
+    **dict(zip(ELEMENT_COLUMNS, ELEMENT_SYMBOLS, strict=True)),
+    "sample_kind": "kind",
+    "area": "area",
+    "site_code": "site",
+    "site_kind": "kind of site",
+    "from_m": "from",
+    "to_m": "to",
+    "elevation_m": "elevation",
+    "epsg": "EPSG code",
+    "feo_titrated_wt": "FeO titrated",
+    "total_reported_wt": "total reported",
+    "best_target": "best target",
+    "best_verdict": "best verdict",
+    "censored": "censored values",
+}
 #: Never a choice: the key, the code that heads every row, and the mark that stands beside it anyway.
 NOT_OFFERED = ("sample_id", "sample_code", "is_stale")
 
@@ -37,6 +56,7 @@ class Column:
     """One column of a per-sample view: its contract name, where it is read from, and what it means."""
 
     name: str
+    label: str
     view: str
     unit: str
     meaning: str
@@ -46,6 +66,9 @@ class Column:
 
     @property
     def sql(self) -> str:
+        """The expression that a query selects; a sample without a site lies in its intrusion's area."""
+        if self.table == "area":
+            return "coalesce(area.name, intrusion_area.name)"
         return f'{self.table}."{self.field}"'
 
     @property
@@ -79,7 +102,7 @@ class Columns(Mapping[str, Column]):
 
 
 CODE = Column(
-    "sample_code", "sample_sheet", "text", "code of the sample, unique in the registry", "sample", "code", False
+    "sample_code", "code", "sample_sheet", "text", "code of the sample, unique in the registry", "sample", "code", False
 )
 
 
@@ -95,6 +118,7 @@ def load_columns(connection: Connection) -> Columns:
         (row.view_name, row.column_name): (row.unit, row.meaning)
         for row in connection.execute(text("SELECT view_name, column_name, unit, meaning FROM column_guide"))
     }
+    labels = {row.name: row.label for row in connection.execute(text("SELECT name, label FROM quantity"))} | LABELS
     found: dict[str, Column] = {}
     for view in VIEWS:
         for name in SHEETS[view]:
@@ -104,5 +128,6 @@ def load_columns(connection: Connection) -> Columns:
                 numeric = not isinstance(tables.metadata.tables[table].columns[field_name].type, Words)
                 numeric = numeric and name != "best_verdict"
                 unit, meaning = guide.get((view, name), ("1" if numeric else "text", name))
-                found[name] = Column(name, view, unit, meaning, table, field_name, numeric)
+                label = labels.get(name, name.replace("_", " "))
+                found[name] = Column(name, label, view, unit, meaning, table, field_name, numeric)
     return Columns(found)

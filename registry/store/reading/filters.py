@@ -31,7 +31,10 @@ LONGEST_TEXT = 200
 
 @dataclass(frozen=True)
 class Range:
-    """Samples whose ``column`` lies from ``low`` to ``high``, ends included; None leaves an end open."""
+    """Samples whose ``column`` lies from ``low`` to ``high``, ends included; None leaves an end open.
+
+    Both are None only where what was typed is told in the filter's ``problems``.
+    """
 
     column: Column
     low: float | None
@@ -173,8 +176,7 @@ def _ranges(arguments: Mapping[str, Sequence[str]], columns: Columns, problems: 
             problems[low_name] = (
                 f"The lower limit {number_text(least)} is above the upper limit {number_text(greatest)}; exchange them."
             )
-        if least is not None or greatest is not None:
-            found.append(Range(column, least, greatest))
+        found.append(Range(column, least, greatest))
     return tuple(found)
 
 
@@ -259,5 +261,5 @@ def parse_filter(
 def sort_column(asked: Filter, columns: Columns) -> Column:
     """The column a filter orders by; the score of a target lies in ``verdict``."""
     if asked.sort == SCORE:
-        return Column(SCORE, "verdict_sheet", "1", "least score of the target", "verdict", "score_min", True)
+        return Column(SCORE, "score", "verdict_sheet", "1", "least score of the target", "verdict", "score_min", True)
     return CODE if asked.sort == "sample_code" else columns[asked.sort]

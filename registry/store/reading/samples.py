@@ -25,44 +25,17 @@ SEARCHED = (
     "intrusion.name",
 )  # fmt: skip
 #: Minerals of the norm in the order of crystallisation tables, as the norm bar shows them.
-NORM_COLUMNS = tuple(
-    [
-        "q_wt",
-        "c_wt",
-        "or_wt",
-        "ab_wt",
-        "an_wt",
-        "lc_wt",
-        "ne_wt",
-        "kp_wt",
-        "hl_wt",
-        "th_wt",
-        "ac_wt",
-        "ns_wt",
-        "ks_wt",
-        "di_wt",
-        "wo_wt",
-        "hy_wt",
-        "ol_wt",
-        "cs_wt",
-        "mt_wt",
-        "cm_wt",
-        "hm_wt",
-        "il_wt",
-        "tn_wt",
-        "pf_wt",
-        "ru_wt",
-        "z_wt",
-        "ap_wt",
-        "fr_wt",
-        "pr_wt",
-        "cc_wt",
-    ]
-)
+NORM_ORDER = (
+    "q", "c", "or", "ab", "an", "lc", "ne", "kp", "hl", "th", "ac", "ns", "ks", "di", "wo", "hy", "ol", "cs",
+    "mt", "cm", "hm", "il", "tn", "pf", "ru", "z", "ap", "fr", "pr", "cc",
+)  # fmt: skip
 _JOINS = {
     "site": "LEFT JOIN site ON site.site_id = sample.site_id",
-    "area": "LEFT JOIN area ON area.area_id = site.area_id",
     "intrusion": "LEFT JOIN intrusion ON intrusion.intrusion_id = sample.intrusion_id",
+    "area": (
+        "LEFT JOIN area ON area.area_id = site.area_id "
+        "LEFT JOIN area AS intrusion_area ON intrusion_area.area_id = intrusion.area_id"
+    ),
     "composition": "LEFT JOIN composition ON composition.sample_id = sample.sample_id",
     "derived": "LEFT JOIN derived ON derived.sample_id = sample.sample_id",
     "stale": "LEFT JOIN stale ON stale.sample_id = sample.sample_id",
@@ -118,7 +91,7 @@ def _is_postgresql(connection: Connection) -> bool:
 def _joins(tables: set[str]) -> str:
     wanted = set(tables)
     if "area" in wanted:
-        wanted.add("site")
+        wanted |= {"site", "intrusion"}
     return " ".join(["sample", *(clause for table, clause in _JOINS.items() if table in wanted)])
 
 
@@ -138,7 +111,8 @@ def _conditions(asked: Filter, like: str, bound: dict[str, Any]) -> tuple[list[s
         bound["words"] = f"%{escaped}%"
         clauses.append("(" + " OR ".join(f"{column} {like} :words ESCAPE '\\'" for column in SEARCHED) + ")")
         tables |= {"site", "intrusion"}
-    for name, column in (("area", "area.name"), ("site", "site.code"), ("intrusion", "intrusion.name")):
+    area = "coalesce(area.name, intrusion_area.name)"
+    for name, column in (("area", area), ("site", "site.code"), ("intrusion", "intrusion.name")):
         if values := getattr(asked, name):
             clauses.append(f"{column} IN ({_bind_list(values, name, bound)})")
             tables.add(name)
@@ -252,7 +226,7 @@ def _selected(asked: Filter, shown: Sequence[Column], *, norm: bool) -> tuple[st
     parts = ["sample.sample_id AS sample_id", "sample.code AS sample_code", "sample.kind AS kind"]
     parts += [f'{column.sql} AS "{column.name}"' for column in shown]
     if norm:
-        parts += [f'derived."{name}" AS "norm_{name}"' for name in NORM_COLUMNS]
+        parts += [f'derived."{mineral}_wt" AS "norm_{mineral}"' for mineral in NORM_ORDER]
         tables.add("derived")
     if asked.target:
         parts += [
@@ -269,7 +243,8 @@ def _selected(asked: Filter, shown: Sequence[Column], *, norm: bool) -> tuple[st
 def _rows_by_key(connection: Connection, asked: Filter, columns: Columns, keys: list[int]) -> list[dict[str, Any]]:
     bound: dict[str, Any] = {"target": asked.target} if asked.target else {}
     selected, tables = _selected(asked, shown_columns(asked, columns), norm=True)
-    statement = f"SELECT {selected} FROM {_joins(tables - {'sample'})} WHERE sample.sample_id IN ({_bind_list(keys, 'key', bound)})"
+    listed = _bind_list(keys, "key", bound)
+    statement = f"SELECT {selected} FROM {_joins(tables - {'sample'})} WHERE sample.sample_id IN ({listed})"
     by_key = {row["sample_id"]: dict(row) for row in connection.execute(text(statement), bound).mappings()}
     return [by_key[key] for key in keys if key in by_key]
 

@@ -1,0 +1,52 @@
+"""The targets with their active definitions, and how the registry's samples stand to them."""
+
+from __future__ import annotations
+
+from typing import Any
+
+from sqlalchemy import Connection, text
+
+from registry.store.sheets import VERDICT_WORDS
+
+
+def target_list(connection: Connection) -> list[dict[str, Any]]:
+    """Every target with its active version, the number of samples by verdict word, and the text of its definition."""
+    rows = connection.execute(
+        text(
+            """
+            SELECT target.target_id, target.code, target.name, target_version.target_version_id,
+                target_version.version, target_version.created_at, target_version.definition
+            FROM target LEFT JOIN target_version
+                ON target_version.target_id = target.target_id AND target_version.active = 1
+            ORDER BY target.target_id
+            """
+        )
+    )
+    targets = [dict(row) for row in rows.mappings()]
+    counts: dict[int, dict[str, int]] = {}
+    for row in connection.execute(
+        text("SELECT target_id, verdict, count(*) AS samples FROM verdict GROUP BY target_id, verdict")
+    ):
+        counts.setdefault(row.target_id, {})[VERDICT_WORDS[row.verdict]] = row.samples
+    for target in targets:
+        target["counts"] = {word: counts.get(target["target_id"], {}).get(word, 0) for word in VERDICT_WORDS}
+    return targets
+
+
+def target_names(connection: Connection) -> dict[str, str]:
+    """Names of the targets by code, in their own order."""
+    return {row.code: row.name for row in connection.execute(text("SELECT code, name FROM target ORDER BY target_id"))}
+
+
+def criteria(connection: Connection, target_version_id: int) -> list[dict[str, Any]]:
+    """Fitness needs, gates and weighed criteria of a version, in their own order."""
+    rows = connection.execute(
+        text(
+            """
+            SELECT kind, code, label, column_name, comparison, threshold, weight, unit, provisional, source, note
+            FROM criterion WHERE target_version_id = :version ORDER BY position
+            """
+        ),
+        {"version": target_version_id},
+    )
+    return [dict(row) for row in rows.mappings()]

@@ -1,0 +1,234 @@
+"""A small registry for the pages. Every name, place and number in it is invented, to test layout and branches only."""
+
+from __future__ import annotations
+
+import json
+from collections.abc import Iterator
+from pathlib import Path
+from typing import Any
+
+import numpy as np
+import pytest
+import sqlalchemy as sa
+from flask import Flask
+from flask.testing import FlaskClient
+
+from registry.judging import install_shipped_definitions
+from registry.petrology.analytes import CHOSEN_COLUMNS, CHOSEN_INDEX
+from registry.petrology.conventions import Conventions
+from registry.petrology.digestion import DIGESTION_CODE, DIGESTION_LETTERS
+from registry.pipeline import compute, empty_chunk
+from registry.store import schema, tables
+from registry.store.engine import Registry
+from registry.targets.definition import load_definitions
+from web import create_app
+
+HOSTILE = '<script>alert("x")</script>&amp;'
+_OXIDES = ("sio2_wt", "tio2_wt", "al2o3_wt", "fe2o3t_reported_wt", "mno_wt", "mgo_wt", "cao_wt", "na2o_wt", "k2o_wt")
+_TRACES = "p2o5_wt loi_wt sr_ppm y_ppm la_ppm yb_ppm nb_ppm zr_ppm rb_ppm ba_ppm v_ppm sc_ppm th_ppm u_ppm cr_ppm ni_ppm".split()
+#: Invented analyses, in the order of _OXIDES and _TRACES.
+ROCKS = {
+    "granodiorite": (
+        (65.2, 0.48, 16.1, 4.3, 0.07, 1.9, 4.2, 4.3, 2.6),
+        (0.16, 0.9, 620, 11, 26, 0.9, 5.1, 128, 71, 760, 92, 9.5, 8.1, 2.2, 22, 14),
+    ),
+    "gabbro": (
+        (48.6, 1.1, 16.4, 10.9, 0.17, 8.6, 11.2, 2.4, 0.35),
+        (0.11, 0.6, 260, 21, 6.2, 2.1, 4.4, 66, 8, 96, 240, 33, 0.6, 0.2, 310, 140),
+    ),
+    "granite": (
+        (73.1, 0.19, 13.9, 1.7, 0.04, 0.3, 0.9, 3.4, 4.9),
+        (0.12, 0.8, 62, 31, 29, 3.2, 18, 98, 310, 280, 9, 4.1, 22.5, 9.8, 6, 4),
+    ),
+}
+CONTROLS = ("blank", "reference_material")
+
+
+def _insert(connection: Any, table: sa.Table, **values: Any) -> int:
+    return int(connection.execute(sa.insert(table).values(**values)).inserted_primary_key[0])  # type: ignore[index]
+
+
+def _places(connection: Any) -> dict[str, dict[str, int]]:
+    areas = {
+        name: _insert(connection, tables.area, name=name, epsg=32633, heat_flow_mw_m2=flow)
+        for name, flow in (("North Block", 85.0), ("South Block", None))
+    }
+    sites = {
+        code: _insert(
+            connection, tables.site, code=code, kind=kind, area_id=areas[area], easting=500000.0 + n, northing=6.1e6,
+            elevation_m=412.5, epsg=32633, longitude=15.0 + n / 1000, latitude=55.04, depth_m=depth,
+        )
+        for n, (code, kind, area, depth) in enumerate(
+            (("DH-1", "drill_hole", "North Block", 220.0), ("OC-7", "outcrop", "South Block", None))
+        )
+    }  # fmt: skip
+    intrusions = {
+        name: _insert(
+            connection, tables.intrusion, name=name, area_id=areas["North Block"], shape=shape, half_width_m=half_width,
+            depth_to_top_m=800.0, age_ma=61.0, age_sigma_ma=1.5, mapped=1,
+        )
+        for name, shape, half_width in (("Aster stock", "cylinder", 900.0), ("Brock gabbro", None, None))
+    }  # fmt: skip
+    return {"area": areas, "site": sites, "intrusion": intrusions}
+
+
+def _samples(connection: Any, places: dict[str, dict[str, int]], count: int) -> list[dict[str, Any]]:
+    rows = []
+    for n in range(count):
+        rock = list(ROCKS)[n % 3]
+        kind = "blank" if n % 20 == 19 else "core" if n % 4 else "outcrop"
+        site = "DH-1" if kind == "core" else "OC-7"
+        rows.append(
+            {
+                "code": f"PB-{n + 1:03d}", "kind": kind, "site_id": places["site"][site] if kind != "blank" else None,
+                "from_m": 10.0 + n if kind == "core" else None, "to_m": 11.0 + n if kind == "core" else None,
+                "intrusion_id": places["intrusion"]["Brock gabbro" if rock == "gabbro" else "Aster stock"]
+                if kind != "blank" else None,
+                "lithology": rock, "texture": "porphyritic" if n % 6 == 0 else None,
+                "magnetic_susceptibility_si": 0.012 if n % 2 == 0 else None, "rock": rock,
+            }
+        )  # fmt: skip
+    rows.append({"code": HOSTILE, "kind": "float", "lithology": "'; DROP TABLE sample; --", "rock": None})
+    rows.append({"code": "no results/1", "kind": "chips", "lithology": "tuff 50%_x", "rock": None})
+    for row in rows:
+        values = {name: value for name, value in row.items() if name != "rock"}
+        row["sample_id"] = _insert(connection, tables.sample, **values)
+    return rows
+
+
+def _batch(connection: Any, rows: list[dict[str, Any]]) -> None:
+    batch = _insert(
+        connection, tables.batch, code="Q-2041", lab="Invented Laboratory", certificate="Q-2041",
+        reported_on="2026-03-02", imported_at="2026-03-04T09:12:00Z", imported_by="tester", file_name="q2041.csv",
+        sha256="0" * 64,
+    )  # fmt: skip
+    columns = [
+        _insert(
+            connection, tables.batch_column, batch_id=batch, position=position, header=header, analyte=analyte,
+            unit=unit, method="fused bead", digestion=digestion, detection_limit=limit,
+        )
+        for position, (header, analyte, unit, digestion, limit) in enumerate(
+            (("SiO2 (%)", "SiO2", "wt%", "xrf", 0.01), ("Zr ppm", "Zr", "ppm", "fusion", 2.0))
+        )
+    ]  # fmt: skip
+    for line, row in enumerate(rows, 2):
+        if row["rock"] is None:
+            continue
+        aliquot = _insert(
+            connection, tables.aliquot, sample_id=row["sample_id"], batch_id=batch, line_no=line,
+            kind="control" if row["kind"] in CONTROLS else "original",
+        )  # fmt: skip
+        for column, (value, qualifier) in zip(columns, ((ROCKS[row["rock"]][0][0], 0), (5.0, 1)), strict=True):
+            connection.execute(
+                sa.insert(tables.result).values(aliquot_id=aliquot, column_id=column, value=value, qualifier=qualifier)
+            )
+
+
+def _computed(connection: Any, rows: list[dict[str, Any]]) -> None:
+    """Composition, derived values and verdicts, by the pipeline that every import uses."""
+    analysed = [row for row in rows if row["rock"]]
+    chunk = empty_chunk(len(analysed))
+    chunk.sample_id[:] = [row["sample_id"] for row in analysed]
+    noise = np.random.default_rng(7)
+    for n, row in enumerate(analysed):
+        oxides, traces = ROCKS[row["rock"]]
+        for names, values, digestion in ((_OXIDES, oxides, "xrf"), (_TRACES, traces, "fusion")):
+            for name, value in zip(names, values, strict=True):
+                place = CHOSEN_INDEX[name]
+                chunk.values[place, n] = round(value * (1 + 0.02 * noise.standard_normal()), 2) if value < 40 else value
+                chunk.digestions[place, n] = DIGESTION_CODE[digestion]
+        if n % 5 == 0:
+            chunk.qualifiers[CHOSEN_INDEX["nb_ppm"], n] = 1
+        chunk.digestions[CHOSEN_INDEX["zr_ppm"], n] = DIGESTION_CODE["four_acid"]
+    texts = {"sample_kind": "kind", "lithology": "lithology", "texture": "texture"}
+    chunk.context = {
+        **{name: np.array([row.get(key) for row in analysed], dtype=object) for name, key in texts.items()},
+        "has_intrusion": np.array([row.get("intrusion_id") is not None for row in analysed]),
+        "magnetic_susceptibility_si": np.array(
+            [row.get("magnetic_susceptibility_si") or np.nan for row in analysed], dtype=float
+        ),
+    }
+    conventions = Conventions()
+    definitions = tuple(load_definitions().values())
+    install_shipped_definitions(connection, definitions)
+    computed = compute(chunk, definitions, conventions)
+    convention_set = _insert(
+        connection, tables.convention_set, conventions=json.dumps(conventions.as_dict()), created_at="2026-03-04T09:12:00Z"
+    )
+    targets = {row.code: row for row in connection.execute(sa.select(tables.target))}
+    versions = {row.target_id: row for row in connection.execute(sa.select(tables.target_version))}
+    words = ["favourable", "possible", "unfavourable", "undecided"]
+    for n, row in enumerate(analysed):
+        values = chunk.values[:, n]
+        connection.execute(
+            sa.insert(tables.composition).values(
+                sample_id=row["sample_id"],
+                **{name: value for name, value in zip(CHOSEN_COLUMNS, values.tolist(), strict=True)},
+                qualifiers="".join(".<>"[code] for code in chunk.qualifiers[:, n]),
+                digestions="".join(DIGESTION_LETTERS[code] for code in chunk.digestions[:, n]),
+                censored="nb_ppm<" if chunk.qualifiers[CHOSEN_INDEX["nb_ppm"], n] else None,
+            )
+        )
+        best = computed.best_verdict[n]
+        connection.execute(
+            sa.insert(tables.derived).values(
+                sample_id=row["sample_id"], **{name: column[n] for name, column in computed.derived.items() if name in tables.derived.c},
+                causes=computed.causes[n].tobytes().decode(), warnings=computed.warnings[n].tobytes().decode(),
+                convention_set_id=convention_set, method_version="1", best_target=computed.best_target[n],
+                best_verdict=words.index(best) if isinstance(best, str) else best,
+            )
+        )  # fmt: skip
+        for code, verdicts in computed.verdicts.items():
+            if verdicts.judged[n]:
+                target = targets[code]
+                connection.execute(
+                    sa.insert(tables.verdict).values(
+                        sample_id=row["sample_id"], target_id=target.target_id,
+                        target_version_id=versions[target.target_id].target_version_id,
+                        verdict=int(verdicts.verdict[n]), score_min=verdicts.score_min[n],
+                        score_max=verdicts.score_max[n], coverage=verdicts.coverage[n],
+                        provisional=int(verdicts.provisional[n]), reasons=verdicts.reasons[n],
+                    )
+                )  # fmt: skip
+
+
+def build_registry(path: Path, count: int = 120) -> Registry:
+    """A registry of ``count`` invented samples, one with a hostile name, one without results, the last one stale."""
+
+    def fill(connection: Any) -> None:
+        rows = _samples(connection, _places(connection), count)
+        _batch(connection, rows)
+        _computed(connection, rows)
+        connection.execute(sa.delete(tables.stale))
+        connection.execute(sa.insert(tables.stale).values(sample_id=rows[2]["sample_id"], level=1))
+
+    return schema.create(path, fill)
+
+
+@pytest.fixture(scope="session")
+def registry_path(tmp_path_factory: pytest.TempPathFactory) -> Path:
+    path = tmp_path_factory.mktemp("site") / "invented.sqlite"
+    build_registry(path).close()
+    return path
+
+
+@pytest.fixture(scope="session")
+def app(registry_path: Path) -> Iterator[Flask]:
+    application = create_app(str(registry_path))
+    application.testing = True
+    yield application
+    application.extensions["registry"].close()
+
+
+@pytest.fixture
+def client(app: Flask) -> FlaskClient:
+    return app.test_client()
+
+
+@pytest.fixture(scope="session")
+def empty_client(tmp_path_factory: pytest.TempPathFactory) -> Iterator[FlaskClient]:
+    path = tmp_path_factory.mktemp("empty") / "empty.sqlite"
+    schema.create(path).close()
+    application = create_app(str(path))
+    yield application.test_client()
+    application.extensions["registry"].close()

@@ -1,0 +1,64 @@
+"""What a reader sees when something is wrong: a sentence that says what, and where to go on."""
+
+from __future__ import annotations
+
+from flask import Flask, render_template, request
+from werkzeug.exceptions import HTTPException
+
+from registry.errors import PlutonbookError, RegistryBusy
+
+
+class Missing(Exception):
+    """A thing named in the address is not in the registry; ``near`` holds (words, address) that may be meant."""
+
+    def __init__(self, what: str, name: str, near: list[tuple[str, str]] | None = None) -> None:
+        super().__init__(f"The registry holds no {what} “{name}”.")
+        self.near = near or []
+
+
+def _page(status: int, title: str, sentence: str, near: list[tuple[str, str]] | None = None) -> tuple[str, int]:
+    return render_template("error.html", title=title, sentence=sentence, near=near or []), status
+
+
+def _missing(fault: Missing) -> tuple[str, int]:
+    return _page(404, "Not found", str(fault), fault.near)
+
+
+def _http(fault: HTTPException) -> tuple[str, int, dict[str, str]]:
+    known = {
+        404: f"This site has no page at {request.path}.",
+        405: f"The page at {request.path} can only be read; nothing is sent to it.",
+        413: "What was sent is too large.",
+    }
+    status = fault.code or 500
+    headers = {}
+    if status == 405 and getattr(fault, "valid_methods", None):
+        headers["Allow"] = ", ".join(fault.valid_methods)  # type: ignore[attr-defined]
+    sentence = known.get(status) or fault.description or fault.name
+    return (*_page(status, fault.name, sentence), headers)
+
+
+def _busy(fault: RegistryBusy) -> tuple[str, int]:
+    return _page(503, "The registry is busy", str(fault))
+
+
+def _refused(fault: PlutonbookError) -> tuple[str, int]:
+    return _page(400, "This could not be shown", str(fault))
+
+
+def _unexpected(fault: Exception) -> tuple[str, int]:
+    return _page(
+        500,
+        "Something went wrong",
+        "The page could not be made because of a fault in the program, not in your data. The terminal that serves "
+        "this site holds the details.",
+    )
+
+
+def register(app: Flask) -> None:
+    """Answer every error in the site's own words."""
+    app.register_error_handler(Missing, _missing)
+    app.register_error_handler(HTTPException, _http)
+    app.register_error_handler(RegistryBusy, _busy)
+    app.register_error_handler(PlutonbookError, _refused)
+    app.register_error_handler(500, _unexpected)

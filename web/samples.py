@@ -1,0 +1,255 @@
+"""The list of samples under its filter sentence, and the same samples as CSV."""
+
+from __future__ import annotations
+
+import csv
+import io
+from collections.abc import Iterable, Iterator, Mapping, Sequence
+from typing import Any
+
+from flask import Blueprint, Response, current_app, redirect, render_template, request, stream_with_context, url_for
+from werkzeug.datastructures import MultiDict
+
+from registry.store.reading import samples as reading
+from registry.store.reading.columns import Column, Columns
+from registry.store.reading.filters import ADDING_ARGUMENTS, KINDS, SCORE, VERDICTS, Filter, parse_filter
+from registry.store.reading.session import query_only
+from registry.store.reading.targets import target_names
+from web import numbers, wording
+from web.pictures import norm_segments
+from web.reading import offered_columns, registry_connection
+
+blueprint = Blueprint("samples", __name__)
+#: Stored values of these columns stand for words.
+VERDICT_COLUMNS = ("best_verdict",)
+
+
+def _asked(arguments: Mapping[str, Sequence[str]], columns: Columns, targets: Mapping[str, str]) -> Filter:
+    return parse_filter(arguments, columns, list(targets))
+
+
+def _arguments() -> dict[str, list[str]]:
+    return {name: request.args.getlist(name) for name in request.args}
+
+
+def _address(pairs: Iterable[tuple[str, str]], endpoint: str = "samples.list_page", **more: str) -> str:
+    query: MultiDict[str, str] = MultiDict(pairs)
+    for name, value in more.items():
+        query[name] = value
+    return url_for(endpoint, **query.to_dict(flat=False))
+
+
+def _unsettled(arguments: Mapping[str, Sequence[str]]) -> bool:
+    """True for an address that a form wrote: empty fields, the fields that add a condition, a list of ticks."""
+    return (
+        any(name in arguments for name in ADDING_ARGUMENTS)
+        or any(not value for values in arguments.values() for value in values)
+        or len(arguments.get("columns", ())) > 1
+    )
+
+
+@blueprint.get("/")
+def start() -> Any:
+    return list_page()
+
+
+@blueprint.get("/samples")
+def list_page() -> Any:
+    arguments = _arguments()
+    with registry_connection() as connection:
+        columns, targets = offered_columns(connection), target_names(connection)
+        asked = _asked(arguments, columns, targets)
+        problems = dict(asked.problems) | reading.names_not_found(connection, asked)
+        place, problem = _place(arguments)
+        if problem:
+            problems["after"] = problem
+        if problems:
+            asked = Filter(**{**vars(asked), "problems": problems})
+            page = reading.Page(0, [], None, None)
+        elif _unsettled(arguments):
+            return redirect(_address(asked.arguments()))
+        else:
+            page = reading.page_of_samples(connection, asked, columns, place=place)
+        choices = reading.choices(connection)
+    shown = reading.shown_columns(asked, columns)
+    heads = _heads(asked, shown, targets)
+    pairs = asked.arguments()
+    addresses = {
+        "first_address": _address(pairs),
+        "csv_address": _address(pairs, "samples.csv_file"),
+        "next_address": page.next and _address(pairs, after=page.next.token()),
+        "previous_address": page.previous and _address(pairs, before=page.previous.token()),
+    }
+    body = render_template(
+        "samples.html",
+        section="Samples",
+        title="Samples",
+        asked=asked,
+        page=page,
+        words=_words(asked, columns, targets),
+        choices=choices,
+        kinds=KINDS,
+        verdict_words=VERDICTS,
+        targets=targets,
+        typed={name: values[-1] for name, values in arguments.items() if values},
+        groups=[(wording.VIEW_WORDS[view], members) for view, members in columns.by_view()],
+        numeric_groups=_numeric_groups(columns),
+        sortable=shown,
+        other_faults=_other_faults(asked),
+        heads=heads,
+        rows=_rows(page.rows, shown, asked, targets),
+        any_stale=any(row["is_stale"] for row in page.rows),
+        rows_per_page=reading.ROWS_PER_PAGE,
+        **addresses,
+    )
+    return body, 400 if asked.problems else 200
+
+
+def _place(arguments: Mapping[str, Sequence[str]]) -> tuple[reading.Place | None, str | None]:
+    for name in ("after", "before"):
+        if token := (arguments.get(name) or [""])[-1]:
+            try:
+                return reading.read_place(token, backwards=name == "before"), None
+            except reading.BadPlace as fault:
+                return None, str(fault)
+    return None, None
+
+
+def _words(asked: Filter, columns: Columns, targets: Mapping[str, str]) -> dict[str, Any]:
+    adding = {name for name in ("add_column", "add_min", "add_max") if name in asked.problems}
+    if not asked.text:
+        adding |= {"text"} & set(asked.problems)
+    if not (asked.target or asked.verdict):
+        adding |= {"target", "verdict"} & set(asked.problems)
+    return {
+        "kind": wording.kind_words(asked),
+        "place": wording.place_words(asked),
+        "verdict": wording.verdict_words(asked, targets) if asked.target or asked.verdict else "",
+        "ranges": {limit.column.name: wording.range_words(limit) for limit in asked.ranges},
+        "sort": wording.sort_words(asked, columns),
+        "adding_fault": bool(adding),
+    }
+
+
+def _numeric_groups(columns: Columns) -> list[tuple[str, list[Column]]]:
+    groups = [(wording.VIEW_WORDS[view], [c for c in members if c.numeric]) for view, members in columns.by_view()]
+    return [(words, members) for words, members in groups if members]
+
+
+def _other_faults(asked: Filter) -> list[str]:
+    """Sentences of faults that have no field on the page."""
+    fields = {"text", "area", "site", "intrusion", "kind", "target", "verdict", "sort", "descending"}
+    fields |= {"add_column", "add_min", "add_max"}
+    fields |= {f"{limit.column.name}_{end}" for limit in asked.ranges for end in ("min", "max")}
+    return [sentence for name, sentence in asked.problems.items() if name not in fields]
+
+
+def _heads(asked: Filter, shown: Sequence[Column], targets: Mapping[str, str]) -> list[dict[str, Any]]:
+    heads = [_head(asked, "sample_code", "code", "", "code of the sample", "text")]
+    if asked.target:
+        name = targets[asked.target]
+        heads.append(_head(asked, "", "verdict", "", f"verdict for {name}", "verdict"))
+        heads.append(_head(asked, SCORE, "score", "", f"share of the weights met for {name}, least to most", "number"))
+    for column in shown:
+        kind = "number" if column.numeric else "verdict" if column.name in VERDICT_COLUMNS else "text"
+        unit = "" if column.unit in ("1", "text") else column.unit
+        heads.append(_head(asked, column.name, column.label, unit, column.meaning, kind))
+    heads.append(_head(asked, "", "norm", "0 to 100 wt%", "CIPW weight norm in crystallisation order", "norm"))
+    return heads
+
+
+def _head(asked: Filter, name: str, label: str, unit: str, meaning: str, kind: str) -> dict[str, Any]:
+    sorted_by = name and asked.sort == name
+    turned = Filter(
+        **{**vars(asked), "sort": name, "descending": not asked.descending if sorted_by else kind == "number"}
+    )
+    return {
+        "label": label,
+        "unit": unit,
+        "meaning": meaning,
+        "kind": kind,
+        "numeric": kind == "number",
+        "sorted": ("descending" if asked.descending else "ascending") if sorted_by else "",
+        "address": _address(turned.arguments()) if name else "",
+    }
+
+
+def _rows(
+    rows: Sequence[Mapping[str, Any]], shown: Sequence[Column], asked: Filter, targets: Mapping[str, str]
+) -> list[dict[str, Any]]:
+    blocks: list[Sequence[Any]] = []
+    if asked.target:
+        blocks.append([_verdict_word(row["target_verdict"]) for row in rows])
+        blocks.append([_score(row["target_score_min"], row["target_score_max"]) for row in rows])
+    for column in shown:
+        cells = [_cell(row[column.name], column, targets) for row in rows]
+        blocks.append(numbers.aligned(cells) if column.numeric else cells)
+    blocks.append([norm_segments({mineral: row[f"norm_{mineral}"] for mineral in reading.NORM_ORDER}) for row in rows])
+    return [
+        {"code": row["sample_code"], "is_stale": row["is_stale"], "cells": cells}
+        for row, cells in zip(rows, zip(*blocks, strict=True), strict=True)
+    ]
+
+
+def _verdict_word(stored: int | None) -> str:
+    return "" if stored is None else VERDICTS[stored]
+
+
+def _score(least: float | None, most: float | None) -> str:
+    if least is None or most is None:
+        return ""
+    return f"{least:.2f}" if most - least < 0.005 else f"{least:.2f}\N{EN DASH}{most:.2f}"
+
+
+def _cell(value: Any, column: Column, targets: Mapping[str, str]) -> str:
+    if value is None:
+        return ""
+    if column.name in VERDICT_COLUMNS:
+        return _verdict_word(value)
+    if column.name == "best_target":
+        return targets.get(value, value)
+    if not column.numeric:
+        return str(value).replace("_", " ") if column.table == "derived" or column.name == "sample_kind" else str(value)
+    return numbers.derived(value, column.unit) if column.table == "derived" else numbers.reported(value)
+
+
+@blueprint.get("/samples.csv")
+def csv_file() -> Any:
+    """The filtered set, all of it, as comma-separated values; raw numbers, names of the sample views at the head."""
+    with registry_connection() as connection:
+        columns, targets = offered_columns(connection), target_names(connection)
+        asked = _asked(_arguments(), columns, targets)
+        problems = dict(asked.problems) | reading.names_not_found(connection, asked)
+    if problems:
+        return Response("\n".join(problems.values()) + "\n", 400, mimetype="text/plain")
+    registry = current_app.extensions["registry"]
+    shown = reading.shown_columns(asked, columns)
+    lines = stream_with_context(_csv_lines(registry, asked, columns, shown))
+    headers = {"Content-Disposition": 'attachment; filename="samples.csv"'}
+    return Response(lines, mimetype="text/csv", headers=headers)
+
+
+def _csv_lines(registry: Any, asked: Filter, columns: Columns, shown: Sequence[Column]) -> Iterator[str]:
+    judged = ["verdict", "score_min", "score_max"] if asked.target else []
+    buffer = io.StringIO()
+    writer = csv.writer(buffer)
+    writer.writerow(["sample_code", *judged, *(column.name for column in shown), "is_stale"])
+    with query_only(registry) as connection:
+        for count, row in enumerate(reading.every_sample(connection, asked, columns, shown)):
+            cells = [row["sample_code"]]
+            if asked.target:
+                cells += [_verdict_word(row["target_verdict"]), row["target_score_min"], row["target_score_max"]]
+            for column in shown:
+                value = row[column.name]
+                cells.append(_verdict_word(value) if column.name in VERDICT_COLUMNS else value)
+            writer.writerow([*map(_plain, cells), row["is_stale"]])
+            if count % 500 == 499:
+                yield buffer.getvalue()
+                buffer.seek(0)
+                buffer.truncate()
+    yield buffer.getvalue()
+
+
+def _plain(cell: Any) -> Any:
+    """Text that a spreadsheet would run as a formula gets an apostrophe in front; numbers stay as they are."""
+    return f"'{cell}" if isinstance(cell, str) and cell[:1] in ("=", "+", "-", "@", "\t", "\r") else cell

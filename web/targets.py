@@ -1,0 +1,36 @@
+"""The targets: what each one asks of a rock, with weights, sources and cautions."""
+
+from __future__ import annotations
+
+from typing import Any
+
+from flask import Blueprint, render_template, url_for
+
+from registry.explain import read_definition
+from registry.store.reading import methods as methods_reading
+from registry.store.reading import targets as reading
+from web.errors import Missing
+from web.reading import registry_connection
+
+blueprint = Blueprint("targets", __name__)
+
+
+@blueprint.get("/targets")
+def list_page() -> Any:
+    with registry_connection() as connection:
+        targets = reading.target_list(connection)
+    shown = [{**target, "applies_to": read_definition(target["definition"]).applies_to} for target in targets]
+    return render_template("targets.html", section="Targets", targets=shown)
+
+
+@blueprint.get("/targets/<code>")
+def page(code: str) -> Any:
+    with registry_connection() as connection:
+        targets = reading.target_list(connection)
+        labels = {row["name"]: row["label"] for row in methods_reading.quantities(connection)}
+    target = next((target for target in targets if target["code"] == code), None)
+    if target is None:
+        near = [(other["name"], url_for("targets.page", code=other["code"])) for other in targets]
+        raise Missing("target", code, near)
+    definition = read_definition(target["definition"])
+    return render_template("target.html", section="Targets", target=target, definition=definition, labels=labels)

@@ -1,0 +1,127 @@
+"""The filter as words: what each editable part of the sentence above a list says."""
+
+from __future__ import annotations
+
+import re
+from collections.abc import Mapping, Sequence
+
+from flask import Flask
+
+from registry.store.reading.columns import Columns
+from registry.store.reading.filters import SCORE, Filter, Range, number_text
+
+KIND_WORDS = {
+    "core": "core",
+    "chips": "chip",
+    "outcrop": "outcrop",
+    "float": "float",
+    "unknown": "unspecified",
+    "reference_material": "reference-material",
+    "blank": "blank",
+    "duplicate": "duplicate",
+}
+VIEW_WORDS = {
+    "sample_sheet": "Sample",
+    "composition_sheet": "Composition as analysed",
+    "volatile_free_sheet": "Volatile-free analysis",
+    "norm_sheet": "CIPW weight norm",
+    "cation_norm_sheet": "Cation norm",
+    "index_sheet": "Indices and ratios",
+    "class_sheet": "Names and classes",
+    "melt_sheet": "Temperatures, melt, heat",
+}
+#: Oxides whose figures are set below the line.
+_OXIDE = re.compile(r"\b(?:SiO2|TiO2|Al2O3|Fe2O3|Na2O|K2O|P2O5|Cr2O3|V2O3|V2O5|ZrO2|Li2O|CO2|SO3|H2O)(?![a-z0-9])")
+_LOWERED = str.maketrans("0123456789", "₀₁₂₃₄₅₆₇₈₉")
+_COLUMN = re.compile(r"\b[a-z][a-z0-9]*(?:_[a-z0-9]+)+\b")
+
+
+def formula(text: str) -> str:
+    """Oxides with their figures below the line."""
+    return _OXIDE.sub(lambda found: found.group().translate(_LOWERED), text)
+
+
+def column_words(name: str) -> str:
+    """A column name as a person says it: ``feo_titrated_wt`` is ``FeO titrated``, ``sn_ppm`` is ``Sn``."""
+    base = name.removesuffix("_wt").removesuffix("_ppm")
+    closed = base.endswith("_vf")
+    words = base.removesuffix("_vf").split("_")
+    known = {
+        "sio2": "SiO2", "tio2": "TiO2", "al2o3": "Al2O3", "fe2o3": "Fe2O3", "fe2o3t": "total Fe2O3", "feo": "FeO",
+        "feot": "total FeO", "mno": "MnO", "mgo": "MgO", "cao": "CaO", "na2o": "Na2O", "k2o": "K2O", "p2o5": "P2O5",
+        "co2": "CO2", "loi": "LOI",
+    }  # fmt: skip
+    element = name.endswith("_ppm") or base in ("f", "s", "cl")
+    spelled = [known.get(word, word.capitalize() if element else word) for word in words]
+    return formula(" ".join(spelled)) + (" volatile-free" if closed else "")
+
+
+def readable(test: str) -> str:
+    """A test of a target's definition in print: ``≥ 35``, ``≤ 0.5 La``, ``from 40 to 88``, ``magnetite``."""
+    if test.startswith("between "):
+        return "from " + test.removeprefix("between ").replace(" and ", " to ")
+    spelled = test.removeprefix("= ").replace(">=", "≥").replace("<=", "≤")
+    return _COLUMN.sub(lambda found: column_words(found.group()), spelled)
+
+
+def register(app: Flask) -> None:
+    """Make the spellings known to the templates."""
+    app.jinja_env.filters.update(formula=formula, column_words=column_words, readable=readable)
+
+
+def joined(words: Sequence[str], last: str = "and") -> str:
+    """``a``, ``a and b``, ``a, b and c``."""
+    return words[0] if len(words) == 1 else f"{', '.join(words[:-1])} {last} {words[-1]}"
+
+
+def unit_after(unit: str) -> str:
+    """A unit as it follows a number; nothing for pure numbers and words."""
+    return "" if unit in ("1", "text") else f"\N{NO-BREAK SPACE}{unit}"
+
+
+def kind_words(asked: Filter) -> str:
+    """Before the noun: ``core and outcrop``; ``rock and control`` where every kind is shown."""
+    return joined([KIND_WORDS[kind] for kind in asked.kind]) if asked.kind else "rock and control"
+
+
+def place_words(asked: Filter) -> str:
+    """``North Block or South Block, in Aster stock, at DH-1``."""
+    parts = []
+    if asked.area:
+        parts.append(joined(asked.area, "or"))
+    if asked.intrusion:
+        parts.append(("the intrusion " if not parts else "in the intrusion ") + joined(asked.intrusion, "or"))
+    if asked.site:
+        parts.append(("site " if not parts else "at site ") + joined(asked.site, "or"))
+    return ", ".join(parts) or "everywhere"
+
+
+def verdict_words(asked: Filter, targets: Mapping[str, str]) -> str:
+    """``porphyry copper favourable or possible``."""
+    words = joined(asked.verdict, "or") if asked.verdict else ""
+    if asked.target:
+        name = targets[asked.target]
+        return f"{name} {words}" if words else f"judged for {name}"
+    return f"{words} as best verdict"
+
+
+def range_words(limit: Range) -> str:
+    """``Sr/Y at least 20``, ``SiO2 from 50 to 60 wt%``."""
+    unit, name = unit_after(limit.column.unit), limit.column.label
+    if limit.low is not None and limit.high is not None:
+        return f"{name} from {number_text(limit.low)} to {number_text(limit.high)}{unit}"
+    if limit.low is not None:
+        return f"{name} at least {number_text(limit.low)}{unit}"
+    if limit.high is not None:
+        return f"{name} at most {number_text(limit.high)}{unit}"
+    return f"{name} of what size?"
+
+
+def sort_words(asked: Filter, columns: Columns) -> str:
+    """``code``, ``Sr/Y, highest first``."""
+    if asked.sort == "sample_code":
+        return "code, last first" if asked.descending else "code"
+    numeric = asked.sort == SCORE or columns[asked.sort].numeric
+    name = "score" if asked.sort == SCORE else columns[asked.sort].label
+    first = ("highest" if asked.descending else "lowest") if numeric else ("last" if asked.descending else "first")
+    return f"{name}, {first} first" if numeric else f"{name}, {'Z to A' if asked.descending else 'A to Z'}"
