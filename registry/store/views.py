@@ -22,6 +22,8 @@ _SITE = "LEFT JOIN site AS k ON k.site_id = s.site_id"
 _INTRUSION = "LEFT JOIN intrusion AS i ON i.intrusion_id = s.intrusion_id"
 _COMPOSITION = "LEFT JOIN composition AS c ON c.sample_id = s.sample_id"
 _DERIVED = "LEFT JOIN derived AS d ON d.sample_id = s.sample_id"
+#: How the packed reasons begin a text that names what would have to be known.
+_LACKING = "missing: "
 _JUDGED = "s.kind NOT IN (" + ", ".join(f"'{kind}'" for kind in CONTROL_KINDS) + ")"
 
 
@@ -94,6 +96,7 @@ def _judgement_sheets(dialect: Any, sample: dict[str, str]) -> dict[str, tuple[d
     """Verdicts, their reasons (the packed JSON, by the criterion's position) and their changes."""
     value = dialect.packed_number("v.reasons", "values", "q.position")
     threshold = dialect.packed_number("v.reasons", "thresholds", "q.position")
+    said = dialect.packed_text("v.reasons", "texts", "q.position")
     outcome = f"substr({dialect.packed_text('v.reasons', 'outcomes')}, CAST(q.position AS integer) + 1, 1)"
     judged = f"verdict AS v JOIN sample AS s ON s.sample_id = v.sample_id AND {_JUDGED} JOIN target AS t ON "
     judged += "t.target_id = v.target_id"
@@ -114,12 +117,13 @@ def _judgement_sheets(dialect: Any, sample: dict[str, str]) -> dict[str, tuple[d
                 "target": "t.code",
                 "criterion": "q.code",
                 "value": value,
-                "value_text": dialect.packed_text("v.reasons", "texts", "q.position"),
+                "value_text": f"CASE WHEN substr({said}, 1, {len(_LACKING)}) <> '{_LACKING}' THEN {said} END",
                 "threshold": threshold,
-                "margin": f"CASE WHEN q.comparison IN ('<', '<=') THEN {threshold} - {value} "
-                f"WHEN q.comparison IN ('>', '>=') THEN {value} - {threshold} END",
+                "margin": f"CASE substr(q.comparison, 1, 1) WHEN '<' THEN {threshold} - {value} "
+                f"WHEN '>' THEN {value} - {threshold} END",
                 "outcome": _words(outcome, OUTCOME_WORDS),
-                "missing": dialect.packed_text("v.reasons", "missing", "q.position"),
+                "missing": f"CASE WHEN substr({said}, 1, {len(_LACKING)}) = '{_LACKING}' "
+                f"THEN substr({said}, {len(_LACKING) + 1}) END",
                 "provisional": "q.provisional",
                 "source": "q.source",
             },

@@ -1,0 +1,149 @@
+"""Batches: one laboratory certificate each, with its file as it was sent and what state it is in."""
+
+from __future__ import annotations
+
+import hashlib
+import zlib
+from collections.abc import Mapping, Sequence
+from typing import Any
+
+import sqlalchemy as sa
+
+from registry.errors import NotFound, PlutonbookError
+from registry.store import tables
+
+STATES = ("active", "superseded", "withdrawn")
+_batch, _column = tables.batch, tables.batch_column
+
+
+def insert_batch(
+    connection: sa.Connection,
+    *,
+    code: str,
+    imported_at: str,
+    data: bytes | None = None,
+    sha256: str | None = None,
+    lab: str | None = None,
+    certificate: str | None = None,
+    received_on: str | None = None,
+    reported_on: str | None = None,
+    imported_by: str | None = None,
+    file_name: str | None = None,
+) -> int:
+    """Insert an active batch; its id. ``data`` are the file's bytes, kept compressed; their hash is computed here."""
+    if data is not None:
+        computed = hashlib.sha256(data).hexdigest()
+        if sha256 is not None and sha256 != computed:
+            raise ValueError(f"batch '{code}': the hash given is {sha256}, that of the bytes is {computed}")
+        sha256 = computed
+    inserted = connection.execute(
+        sa.insert(_batch).values(
+            code=code,
+            lab=lab,
+            certificate=certificate,
+            received_on=received_on,
+            reported_on=reported_on,
+            imported_at=imported_at,
+            imported_by=imported_by,
+            file_name=file_name,
+            sha256=sha256,
+            file_bytes=None if data is None else zlib.compress(data, 6),
+            state="active",
+        )
+    )
+    return int(inserted.inserted_primary_key[0])  # type: ignore[index]
+
+
+def insert_columns(connection: sa.Connection, batch_id: int, columns: Sequence[Mapping[str, Any]]) -> list[int]:
+    """Insert the columns of a batch (keys of the table ``batch_column`` without ids); their ids in the same order."""
+    return [
+        int(connection.execute(sa.insert(_column).values(batch_id=batch_id, **column)).inserted_primary_key[0])  # type: ignore[index]
+        for column in columns
+    ]
+
+
+def list_batches(connection: sa.Connection) -> list[dict[str, Any]]:
+    """Every batch, oldest import first, with the number of its lines and results."""
+    lines = (
+        sa.select(sa.func.count())
+        .select_from(tables.aliquot)
+        .where(tables.aliquot.c.batch_id == _batch.c.batch_id)
+        .scalar_subquery()
+    )
+    results = (
+        sa.select(sa.func.count())
+        .select_from(tables.result.join(tables.aliquot, tables.aliquot.c.aliquot_id == tables.result.c.aliquot_id))
+        .where(tables.aliquot.c.batch_id == _batch.c.batch_id)
+        .scalar_subquery()
+    )
+    query = sa.select(*_described(), lines.label("lines"), results.label("results")).order_by(_batch.c.batch_id)
+    return [dict(row._mapping) for row in connection.execute(query)]
+
+
+def find_batch(connection: sa.Connection, code: str) -> dict[str, Any] | None:
+    """The batch with this code, None where there is none."""
+    return _first(connection, _batch.c.code == code)
+
+
+def find_by_hash(connection: sa.Connection, sha256: str) -> dict[str, Any] | None:
+    """The batch imported from a file with this hash, None where there is none."""
+    return _first(connection, _batch.c.sha256 == sha256)
+
+
+def find_by_certificate(connection: sa.Connection, certificate: str) -> dict[str, Any] | None:
+    """The oldest batch with this certificate number, None where there is none."""
+    return _first(connection, _batch.c.certificate == certificate)
+
+
+def set_state(connection: sa.Connection, batch_id: int, state: str) -> None:
+    """Make a batch ``active``, ``superseded`` or ``withdrawn``; the triggers mark its samples stale."""
+    if state not in STATES:
+        raise ValueError(f"a batch cannot be '{state}'; its states are {', '.join(STATES)}")
+    changed = connection.execute(sa.update(_batch).where(_batch.c.batch_id == batch_id).values(state=state))
+    if changed.rowcount != 1:
+        raise NotFound(f"there is no batch with the id {batch_id}")
+
+
+def withdraw(connection: sa.Connection, code: str) -> None:
+    """Take a batch out of every composition; its results stay."""
+    set_state(connection, _known(connection, code)["batch_id"], "withdrawn")
+
+
+def restore(connection: sa.Connection, code: str) -> None:
+    """Let a withdrawn batch count again."""
+    batch = _known(connection, code)
+    if batch["state"] == "superseded":
+        raise PlutonbookError(f"batch '{code}' was superseded by a corrected certificate; withdraw that one first")
+    set_state(connection, batch["batch_id"], "active")
+
+
+def file_of(connection: sa.Connection, batch_id: int) -> bytes | None:
+    """The bytes of the file a batch was imported from; PlutonbookError where they are damaged."""
+    stored = connection.scalar(sa.select(_batch.c.file_bytes).where(_batch.c.batch_id == batch_id))
+    if stored is None:
+        return None
+    try:
+        return zlib.decompress(stored)
+    except zlib.error as error:
+        raise PlutonbookError(f"the stored file of batch {batch_id} is damaged: {error}") from error
+
+
+def _described() -> list[Any]:
+    return [
+        _batch.c.batch_id,
+        _batch.c.code.label("batch"),
+        *(_batch.c[name] for name in ["lab", "certificate", "received_on", "reported_on", "imported_at"]),
+        *(_batch.c[name] for name in ["imported_by", "file_name", "sha256", "state", "superseded_by"]),
+    ]
+
+
+def _first(connection: sa.Connection, condition: Any) -> dict[str, Any] | None:
+    row = connection.execute(sa.select(*_described()).where(condition).order_by(_batch.c.batch_id)).first()
+    return None if row is None else dict(row._mapping)
+
+
+def _known(connection: sa.Connection, code: str) -> dict[str, Any]:
+    batch = find_batch(connection, code)
+    if batch is None:
+        raise NotFound(f"there is no batch '{code}'; 'plutonbook batches' lists them")
+    return batch
