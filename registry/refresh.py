@@ -13,6 +13,7 @@ from registry.judging import Rules, read_rules
 from registry.pipeline import CHUNK_SIZE, METHOD_VERSION, Chunk, Computed, compute
 from registry.store import bulk, loading, stale
 from registry.store.engine import Registry, reading, writing
+from registry.store.sheets import DERIVED_COLUMNS
 
 #: A reading page refreshes at most this many samples by itself.
 SMALL_REFRESH = 200
@@ -114,7 +115,7 @@ def write_computed(connection: Any, ids: np.ndarray, computed: Computed, rules: 
     bulk.write_derived(
         connection,
         ids,
-        computed.derived,
+        {name: computed.derived[name] for name in DERIVED_COLUMNS},
         computed.causes,
         computed.warnings,
         rules.convention_set_id,
