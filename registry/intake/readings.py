@@ -19,14 +19,17 @@ class ReadingOptions:
     """Choices of the user that change how a file is read.
 
     ``recipe`` corrects what was understood; ``sheet`` names one sheet of a workbook or one member of an archive;
-    ``negative_means_below`` reads ``-x`` as below the limit x (only on the user's word); ``unit`` is the unit of every
-    result column that states none; ``listed`` is how many equal faults are listed one by one;
+    ``negative_means_below`` reads ``-x`` as below the limit x (only on the user's word);
+    ``positive_dips`` says of a file of positive dips only that they point ``down`` (they are turned) or
+    ``up``; ``unit`` is the unit of every result column that states none; ``listed`` is how many equal faults are
+    listed one by one;
     ``unpacked_limit_bytes`` bounds what an archive may unpack to.
     """
 
     recipe: Recipe | None = None
     sheet: str | None = None
     negative_means_below: bool = False
+    positive_dips: str | None = None
     unit: str | None = None
     listed: int = 20
     unpacked_limit_bytes: int = 2_000_000_000
@@ -36,7 +39,8 @@ class ReadingOptions:
 class MasterTable:
     """Rows of master data: ``rows`` maps each contract column that stood in the file to its values, None for blank.
 
-    Numbers are float, ``depth_m`` and the like in the unit of the name; dates ISO text; truth values bool; the rest text.
+    Numbers are float in the unit of the column's name (``epsg`` int); dates ISO text; truth values bool; the rest text.
+    Rows with a problem are here as well, with None in the faulty cell: ``Reading.refused_lines`` names them.
     """
 
     kind: str

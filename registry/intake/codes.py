@@ -1,0 +1,114 @@
+"""Sample codes: which column holds them, and what spreadsheets did to them."""
+
+from __future__ import annotations
+
+import re
+import unicodedata
+from dataclasses import dataclass
+
+_SAMPLE = r"(samples?|smpl|smp|specimen|spec|field|feild|lab|laboratory|client|rock|station sample)"
+_ID = r"(id|ids|no|no\.|nos|number|num|nr|code|codes|name|names|ref|reference|identification|identifier"
+_ID += r"|ident|label|#|tag)"
+_GOOD = (
+    (re.compile(rf"{_SAMPLE} ?(ref )?{_ID}"), 3.0),
+    (re.compile(r"(samples?|specimen|sampleid|sampleno|sample ?code|fieldid|labid|ident|smpid)"), 3.0),
+    (re.compile(r"(sample (discription|description)|client (sample )?id|igsn)"), 2.0),
+    (re.compile(r"(id|code|name|tag|label|number)"), 1.0),
+    (re.compile(rf".*\b(samples?|feild|field|lab) ?{_ID}\b.*"), 2.5),
+)
+_NEVER = re.compile(r".*\b(serial|type|kind|hole|site|batch|job|order|certificate|weight|wt|date|line|row)\b.*")
+_EATEN = re.compile(
+    r"(?mi)^(\d{1,2}-(jan|feb|mar|apr|may|jun|jul|aug|sep|oct|nov|dec)[a-z]*(-\d{2,4})?"
+    r"|(jan|feb|mar|apr|may|jun|jul|aug|sep|oct|nov|dec)[a-z]*-\d{1,4}"
+    r"|\d{4}-\d\d-\d\d( 00:00:00)?|\d(\.\d+)?e\+\d{1,3})$"
+)
+_FLOAT_NOISE = re.compile(r"(?m)^\d+\.0$")
+
+
+@dataclass(frozen=True)
+class CodeColumn:
+    """The chosen column of sample codes; ``doubt`` says why the choice is not certain."""
+
+    position: int
+    header: str
+    doubt: str | None = None
+
+
+def _folded(heading: str) -> str:
+    return re.sub(r"[\s_\-./]+", " ", heading.casefold()).strip()
+
+
+def heading_score(heading: str) -> float:
+    """How much a heading looks like that of sample codes, 0 to 3."""
+    folded = _folded(heading)
+    if not folded:
+        return 0.0
+    for pattern, score in _GOOD:
+        if pattern.fullmatch(folded):
+            return score
+    return 0.0
+
+
+def is_code_heading(heading: str) -> bool:
+    return heading_score(heading) >= 2.0
+
+
+def choose_code_column(
+    labels: list[str], rows: list[list[str]], taken: set[int], wanted: str | None = None
+) -> CodeColumn | None:
+    """The column of sample codes among those that hold no analyte, by heading and by what stands below it.
+
+    A Field or Lab ID heading weighs most; then being filled and without repeats. Float noise (``543.0``) speaks
+    against a column, for those are serial numbers that a spreadsheet touched.
+    """
+    if wanted is not None:
+        for position, label in enumerate(labels):
+            if label == wanted:
+                return CodeColumn(position, label)
+    scored = []
+    for position, label in enumerate(labels):
+        if position in taken:
+            continue
+        cells = [row[position].strip() for row in rows if position < len(row)]
+        filled = [cell for cell in cells if cell]
+        if not filled:
+            continue
+        by_heading = heading_score(label)
+        unique = len(set(filled)) / len(filled)
+        noise = sum(bool(re.fullmatch(r"\d+\.0", cell)) for cell in filled) / len(filled)
+        wordy = sum(bool(re.search(r"[A-Za-z].*\d|\d.*[A-Za-z]", cell)) for cell in filled) / len(filled)
+        never = 3.0 if _NEVER.fullmatch(_folded(label)) and by_heading < 2 else 0.0
+        field_first = 0.1 if re.search(r"(?i)f(ie|ei)ld|sample", label) else 0.0
+        score = by_heading + 1.5 * unique + len(filled) / len(cells) + 0.5 * wordy - noise - never + field_first
+        scored.append((score, -position, by_heading, label))
+    if not scored:
+        return None
+    scored.sort(reverse=True)
+    score, position, by_heading, label = scored[0]
+    doubt = None
+    if by_heading < 1:
+        doubt = "its heading does not say so; it was chosen for what stands in it"
+    elif len(scored) > 1 and scored[1][2] >= 2 and score - scored[1][0] < 2.0:
+        doubt = f"'{scored[1][3]}' could be meant as well"
+    return CodeColumn(-position, label, doubt)
+
+
+def tidy_codes(codes: list[str]) -> tuple[list[str], int, list[int]]:
+    """Codes trimmed and in NFC; the number freed of float noise; positions of codes that look like eaten dates.
+
+    Float noise (``16.0`` for 16) is taken off only where every code that is a number carries it.
+    """
+    codes = list(map(str.strip, codes))
+    joined = "\n".join(codes)
+    if not joined.isascii():
+        codes = [unicodedata.normalize("NFC", code).replace("\u00a0", " ").strip() for code in codes]
+        joined = "\n".join(codes)
+    freed = 0
+    if _FLOAT_NOISE.search(joined):
+        numbers = [code for code in codes if re.fullmatch(r"\d+(\.\d+)?", code)]
+        if all(code.endswith(".0") for code in numbers):
+            freed = len(numbers)
+            codes = [code[:-2] if _FLOAT_NOISE.fullmatch(code) else code for code in codes]
+            joined = "\n".join(codes)
+    eaten = [position for position, code in enumerate(codes) if _EATEN.match(code)] if _EATEN.search(joined) else []
+    return codes, freed, eaten

@@ -1,0 +1,275 @@
+"""Where the table stands in a wide results file: heading rows, sample codes, analyte columns, first row of data."""
+
+from __future__ import annotations
+
+import re
+from dataclasses import dataclass, field
+
+from registry.intake.cells import BELOW, MISSING, NUMBER, parse_cell
+from registry.intake.codes import CodeColumn, is_code_heading
+from registry.intake.methods import digestion_in, speaks_of_method
+from registry.intake.names import Heading, read_heading
+from registry.intake.units import canonical_unit, foreign_unit, split_unit
+
+#: Title lines looked through for the headings.
+SEARCH_ROWS = 80
+_LOWER_LIMIT = re.compile(
+    r"(?i)\b(l\.?o\.?d|ll?d|ldl|d\.?l|mdl|lod|loq|(lower )?(detection|reporting)([ _]limits?)?"
+    r"|lower limits?|det\.? ?lim\w*)\b"
+)
+_UPPER_LIMIT = re.compile(r"(?i)\b(upper ?(detection|reporting)?[ _]?limits?|udl|uol|max(imum)? limit|upper)\b")
+_UNIT_LABEL = re.compile(r"(?i)^\W*units?\b")
+_METHOD_LABEL = re.compile(r"(?i)\b(method|analys\w+|technique|digest\w*|scheme|procedure|analytical|prep\w*)\b")
+_ANALYTE_LABEL = re.compile(r"(?i)^\W*(analytes?|elements?|oxides?|parameters?|determinands?|symbols?)\b")
+_FILLER = re.compile(r"(?i)unnamed:? ?\d+(_level_\d+)?")
+UNIT, METHOD, LOWER, UPPER, ANALYTE, LABELS = (
+    "units",
+    "methods",
+    "detection limits",
+    "upper limits",
+    "analytes",
+    "labels",
+)
+
+
+@dataclass
+class AnalyteColumn:
+    """One analyte column as its headings say it; iron and missing units are settled later."""
+
+    position: int
+    header: str
+    heading: Heading
+    unit: str | None = None
+    method: str | None = None
+    lower: float | None = None
+    upper: float | None = None
+    foreign_unit: str | None = None
+
+
+@dataclass
+class WideLayout:
+    """``roles`` maps the index of each heading row to what it holds; ``first_row`` is the first row of data."""
+
+    width: int
+    roles: dict[int, str]
+    first_row: int
+    columns: list[AnalyteColumn]
+    labels: list[str]
+    code: CodeColumn | None = None
+    titles: list[str] = field(default_factory=list)
+
+    @property
+    def shape(self) -> tuple[str, ...]:
+        return tuple(self.labels)
+
+
+def _clean(cell: str) -> str:
+    cell = cell.strip().strip("\ufeff").strip()
+    return "" if _FILLER.fullmatch(cell) else cell
+
+
+def _analytes_in(row: list[str]) -> dict[int, Heading]:
+    """The analyte headings of a row by position; coordinates (x beside y, E beside N) are none."""
+    found = {}
+    texts = [_clean(cell) for cell in row]
+    folded = [text.casefold() for text in texts]
+    for position, text in enumerate(texts):
+        if not text or len(text) > 60:
+            continue
+        heading = read_heading(text)
+        if heading.analyte is None:
+            continue
+        beside = {folded[other] for other in (position - 1, position + 1) if 0 <= other < len(folded)}
+        if (folded[position] == "y" and "x" in beside) or (folded[position] == "n" and "e" in beside):
+            continue
+        found[position] = heading
+    return found
+
+
+def find_header_row(rows: list[list[str]]) -> tuple[int, dict[int, Heading]]:
+    """The row with most analyte headings, the first of equals; (-1, {}) if there is none."""
+    best: tuple[int, dict[int, Heading]] = (-1, {})
+    for index, row in enumerate(rows[:SEARCH_ROWS]):
+        found = _analytes_in(row)
+        if len(found) > len(best[1]) and (len(found) > 1 or len([cell for cell in row if cell.strip()]) > 1):
+            best = index, found
+    return best
+
+
+def _role(row: list[str], analytes: dict[int, Heading], first: bool) -> str | None:
+    """What a row beside the analyte row holds, None if it is no heading row."""
+    inside = [text for position in analytes if position < len(row) and (text := _clean(row[position]))]
+    outside = [
+        text
+        for position, cell in enumerate(row)
+        if position not in analytes and (text := _clean(cell)) and position < 40
+    ]
+    if not inside:
+        return None
+    label = " ".join(outside)
+    units = sum(canonical_unit(text) is not None or foreign_unit(text) for text in inside)
+    states = [parse_cell(text, "." if "," not in text else ",").state for text in inside]
+    numbers = sum(state in (NUMBER, BELOW, MISSING) for state in states)
+    named = sum(read_heading(text).analyte is not None for text in inside)
+    if numbers >= 0.5 * len(inside):
+        if _UPPER_LIMIT.search(label) and not _LOWER_LIMIT.search(label):
+            return UPPER
+        if _LOWER_LIMIT.search(label) and len(outside) <= 2:
+            return LOWER
+        return None
+    if units >= 0.5 * len(inside) or (_UNIT_LABEL.search(label) and units):
+        return UNIT
+    if named > 0.5 * len(inside):
+        return ANALYTE
+    spoken = sum(speaks_of_method(text) for text in inside)
+    if _METHOD_LABEL.search(label) or spoken >= 1 or len(inside) >= max(2, 0.3 * len(analytes)):
+        return METHOD
+    return LABELS if first else None
+
+
+def _unlabelled_limits(row: list[str], analytes: dict[int, Heading]) -> bool:
+    """Numbers only, under analytes only, nothing beside them: detection limits without a label."""
+    outside = [cell for position, cell in enumerate(row) if position not in analytes and _clean(cell)]
+    inside = [_clean(row[position]) for position in analytes if position < len(row) and _clean(row[position])]
+    return (
+        not outside
+        and len(inside) >= max(1, 0.5 * len(analytes))
+        and all(parse_cell(text, "." if "," not in text else ",").state == NUMBER for text in inside)
+    )
+
+
+def find_wide_layout(rows: list[list[str]]) -> WideLayout | None:
+    """Understand the headings of a wide table from its first rows; None where no row names an analyte."""
+    index, analytes = find_header_row(rows)
+    if index < 0:
+        return None
+    roles = {index: ANALYTE}
+    for above in range(index - 1, max(-1, index - 9), -1):
+        role = _role(rows[above], analytes, first=False)
+        if role is not None and role != LABELS:
+            roles[above] = role
+    below = index + 1
+    first_row = below
+    while below < min(len(rows), index + 9):
+        row = rows[below]
+        if not any(_clean(cell) for cell in row):
+            below += 1
+            continue
+        role = _role(row, analytes, first=True)
+        if role is None and _unlabelled_limits(row, analytes):
+            role = LOWER if LOWER not in roles.values() else UPPER
+        if role is None and below == index + 1 and _sub_labels(row, analytes):
+            role = LABELS
+        if role is None:
+            break
+        if role == METHOD and LABELS not in roles.values() and _looks_like_data(row):
+            break
+        roles[below] = role
+        below += 1
+        first_row = below
+    return _assemble(rows, roles, first_row)
+
+
+def _sub_labels(row: list[str], analytes: dict[int, Heading]) -> bool:
+    """A second heading row that names only the columns beside the analytes (Lab ID, From, To)."""
+    texts = [_clean(cell) for position, cell in enumerate(row) if position not in analytes]
+    texts = [text for text in texts if text]
+    return len(texts) > 1 and any(is_code_heading(text) for text in texts)
+
+
+def _looks_like_data(row: list[str]) -> bool:
+    """A row of texts where numbers were expected (a column of remarks under an analyte) is still a row of data."""
+    texts = [text for cell in row if (text := _clean(cell))]
+    return sum(parse_cell(text).state == NUMBER for text in texts) >= 0.5 * len(texts)
+
+
+def _assemble(rows: list[list[str]], roles: dict[int, str], first_row: int) -> WideLayout:
+    width = max(len(rows[index]) for index in roles)
+    order = sorted(roles)
+    pieces: list[list[str]] = [[] for _ in range(width)]
+    columns: dict[int, AnalyteColumn] = {}
+    for index in order:
+        if roles[index] == ANALYTE:
+            for position, heading in _analytes_in(rows[index]).items():
+                columns[position] = AnalyteColumn(position, "", heading, heading.unit, heading.method)
+    for index in order:  # analytes that stand in another heading row only ("Au" over a column of the method row)
+        if roles[index] in (METHOD, LABELS):
+            for position, heading in _analytes_in(rows[index]).items():
+                columns.setdefault(position, AnalyteColumn(position, "", heading, heading.unit, heading.method))
+    for index in order:
+        row = _spread(rows[index], columns) if roles[index] in (METHOD, UNIT) else rows[index]
+        for position, cell in enumerate(row):
+            text = _clean(cell)
+            if not text:
+                continue
+            column = columns.get(position)
+            if column is None or roles[index] not in (LOWER, UPPER):
+                pieces[position].append(re.sub(r"\s+", " ", text))
+            if column is not None:
+                _take(column, roles[index], text)
+    labels = _made_unique([" ".join(dict.fromkeys(texts)) for texts in pieces])
+    for position, column in columns.items():
+        column.header = labels[position]
+    top = min(order)
+    titles = [
+        ", ".join(text for cell in row if (text := _clean(cell)))
+        for row in [*rows[:top], *(rows[i] for i in range(top, first_row) if i not in roles)]
+    ]
+    return WideLayout(
+        width, roles, first_row, [columns[key] for key in sorted(columns)], labels, None, [t for t in titles if t]
+    )
+
+
+def _made_unique(labels: list[str]) -> list[str]:
+    """Number equal headings from the second on, so that a recipe can name each column."""
+    seen: dict[str, int] = {}
+    unique = []
+    for label in labels:
+        seen[label] = count = seen.get(label, 0) + 1
+        unique.append(f"{label} ({count})" if label and count > 1 else label)
+    return unique
+
+
+def _spread(row: list[str], columns: dict[int, AnalyteColumn]) -> list[str]:
+    """Carry a heading that stands once over several columns (merged cells) on to the right."""
+    filled = [position for position in columns if position < len(row) and _clean(row[position])]
+    spoken = [text for position in filled if speaks_of_method(text := _clean(row[position])) or split_unit(text)[1]]
+    if len(filled) > 0.5 * len(columns) or len(spoken) < len(filled) or not filled:
+        return row
+    row = row + [""] * (max(columns) + 1 - len(row))
+    last = ""
+    spread = list(row)
+    for position in sorted(columns):
+        last = _clean(row[position]) or last
+        spread[position] = last
+    return spread
+
+
+def _take(column: AnalyteColumn, role: str, text: str) -> None:
+    """Let one heading cell add what it says to its column."""
+    if role in (LOWER, UPPER):
+        cell = parse_cell(text, "." if "," not in text else ",")
+        if cell.state == NUMBER and cell.value > 0:
+            if role == LOWER:
+                column.lower = cell.value
+            else:
+                column.upper = cell.value
+        return
+    unit = canonical_unit(text)
+    heading = read_heading(text)
+    if role == UNIT:
+        found = unit or split_unit(text)[1]
+        if found:
+            column.unit = column.unit or found
+        elif foreign_unit(text):
+            column.foreign_unit = text
+    elif role in (METHOD, LABELS):
+        said = heading.method if heading.analyte else text
+        if unit is None and said:
+            said = re.sub(r"\.\d{1,2}$", "", said)  # "CODE.12": made unique by a program
+            column.method = said if column.method is None or digestion_in(column.method) is None else column.method
+        column.unit = column.unit or heading.unit
+    elif heading.analyte and heading.unit is None:
+        bracket = re.search(r"[(\[]([^()\[\]]+)[)\]]\s*$", text)
+        if bracket and foreign_unit(bracket.group(1)):
+            column.foreign_unit = bracket.group(1)

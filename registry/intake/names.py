@@ -1,0 +1,138 @@
+"""Analytes as laboratories spell them, and the symbol of ``analytes.ANALYTES`` they stand for."""
+
+from __future__ import annotations
+
+import re
+import unicodedata
+from dataclasses import dataclass
+from functools import lru_cache
+
+from registry.intake.units import canonical_unit, split_unit
+from registry.petrology.analytes import ANALYTES
+
+#: Plain iron headings whose meaning is settled when all headings are known (see ``iron.settle_iron``).
+PLAIN_IRON = ("Fe2O3", "FeO")
+
+_BY_CASE = {symbol.casefold(): symbol for symbol in ANALYTES}
+_WORDS = {
+    "loi": "LOI", "lossonignition": "LOI", "ignitionloss": "LOI", "loi1000": "LOI", "loi1000c": "LOI",
+    "loi950": "LOI", "loi1050": "LOI", "loi975": "LOI", "lossignition": "LOI", "wtloss": "LOI",
+    "sum": "Total", "total": "Total", "totals": "Total", "sumoxides": "Total", "totaloxides": "Total",
+    "sumofoxides": "Total", "oxidetotal": "Total", "analyticaltotal": "Total", "sumoftheoxides": "Total",
+    "h2oplus": "H2O+", "h2op": "H2O+", "h2om": "H2O-", "h2ominus": "H2O-", "boundwater": "H2O+",
+    "h2ototal": "H2O", "h2otot": "H2O", "h2ot": "H2O", "moisture": "H2O-",
+    "stotal": "S", "stot": "S", "tots": "S", "totalsulphur": "S", "totalsulfur": "S", "sulphur": "S",
+    "sulfur": "S", "tot/s": "S", "ts": "S", "s(total)": "S",
+    "ctotal": "C", "ctot": "C", "totc": "C", "tot/c": "C", "totalc": "C", "totalcarbon": "C", "carbon": "C",
+    "corg": "C_organic", "toc": "C_organic", "organiccarbon": "C_organic", "corganic": "C_organic",
+    "gold": "Au", "silver": "Ag", "copper": "Cu", "lead": "Pb", "zinc": "Zn", "iron": "Fe", "nickel": "Ni",
+    "cobalt": "Co", "silica": "SiO2", "alumina": "Al2O3", "titania": "TiO2", "magnesia": "MgO", "lime": "CaO",
+    "uranium": "U", "thorium": "Th", "zirconium": "Zr", "tungsten": "W", "tin": "Sn", "lithium": "Li",
+    "platinum": "Pt", "palladium": "Pd", "molybdenum": "Mo", "arsenic": "As", "fluorine": "F", "chlorine": "Cl",
+}  # fmt: skip
+_IRON_FORM = {"fe2o3": "Fe2O3", "feo": "FeO", "fe": "Fe"}
+_TOTAL_IRON = {"Fe2O3": "Fe2O3T", "FeO": "FeOT", "Fe": "Fe"}
+_IRON = re.compile(
+    r"(?P<before>tot|total|sum|all|t|\u03c3|\u2211)?(?P<word>ironas|feas|iron\(as\)|fe\(as\))?(?P<form>fe2o3|feo|fe)"
+    r"(?P<after>tot|total|t|\*|all|ascalculated)?(?P<asform>as(fe2o3|feo))?"
+)
+#: Headings that look like an analyte and are something else in the trade's tables.
+_NOT_ANALYTES = {"no", "id"}
+_METHOD_WORD = re.compile(
+    r"(?i)p?xrf|i?naa|icp|icpms|icpoes|icpaes|ms|oes|aes|aas|fa\d*|fus\w*|titr\w*|4a\w*|ar|aqua|regia|acid|four|ise|ir|comb\w*"
+)
+
+
+@dataclass(frozen=True)
+class Heading:
+    """What one heading text says: any of analyte, unit and method may be missing."""
+
+    analyte: str | None = None
+    unit: str | None = None
+    method: str | None = None
+
+
+def _squeezed(text: str) -> str:
+    text = (
+        unicodedata.normalize("NFKC", text).casefold().replace("⁺", "+").replace("\u2212", "-").replace("\u2013", "-")
+    )
+    return re.sub(r"[\s._'\"]+", "", text)
+
+
+@lru_cache(maxsize=4096)
+def analyte_symbol(text: str) -> str | None:
+    """The symbol for a name as written, in any case; None if it names no analyte. Iron stays as it was spelt."""
+    squeezed = _squeezed(text)
+    if re.fullmatch(r"total[\s_.]s", text.strip().casefold()):
+        return "S"  # squeezed, it could not be told from "totals"
+    if not squeezed or squeezed in _NOT_ANALYTES:
+        return None
+    if squeezed in _BY_CASE:
+        return _BY_CASE[squeezed]
+    bare = squeezed.replace("(", "").replace(")", "").replace("[", "").replace("]", "")
+    if bare in _WORDS:
+        return _WORDS[bare]
+    iron = _IRON.fullmatch(bare.replace("-", ""))
+    if iron:
+        form = _IRON_FORM[(iron["asform"] or iron["form"]).removeprefix("as")]
+        is_total = any(iron[part] for part in ("before", "word", "after", "asform"))
+        return _TOTAL_IRON[form] if is_total else form
+    water = re.fullmatch(r"h2o([+-])(?:\d+c?)?", bare)
+    if water:
+        return "H2O" + water[1]
+    if re.fullmatch(r"loi\d{3,4}°?c?", bare):
+        return "LOI"
+    return _BY_CASE.get(bare) if len(bare) > 1 or len(squeezed) == 1 else None
+
+
+@lru_cache(maxsize=4096)
+def read_heading(text: str) -> Heading:
+    """Take a heading apart into analyte, unit and what is left (a method code)."""
+    text = unicodedata.normalize("NFKC", text).strip()
+    if not text or re.fullmatch(r"(?i)unnamed:? ?\d+(_level_\d+)?", text):
+        return Heading()
+    unit = canonical_unit(text)
+    if unit is not None and analyte_symbol(text) is None:
+        return Heading(unit=unit)
+    whole = analyte_symbol(text)
+    if whole is not None:
+        return Heading(analyte=whole)
+    rest, unit = split_unit(text)
+    symbol = analyte_symbol(rest)
+    if symbol is not None:
+        return Heading(symbol, unit)
+    found = _within(rest, unit is not None)
+    if found is None:
+        return Heading(unit=unit, method=rest or None)
+    return Heading(found[0], unit, found[1])
+
+
+def _within(text: str, with_unit: bool) -> tuple[str, str | None] | None:
+    """An analyte followed by a method: ``Au-FA50``, ``Zr XRF``, ``XRF_Zr``."""
+    words = [word for word in re.split(r"[\s_,;:/|\-]+", text) if word]
+    duplicate = re.fullmatch(r"(.+)\.(\d{1,2})", text)  # "Au.1": a heading made unique by a spreadsheet or a program
+    if duplicate and analyte_symbol(duplicate[1]) is not None:
+        return str(analyte_symbol(duplicate[1])), None
+    # only a heading that begins with the analyte in its own case, or one of a few method words around it
+    if "/" in text and len(words) > 1 and all(analyte_symbol(word) for word in words):
+        return None  # a ratio
+    for length in range(min(4, len(words)), 0, -1):
+        symbol, rest = analyte_symbol(" ".join(words[:length])), words[length:]
+        in_lower_case = with_unit and rest and all(_METHOD_WORD.fullmatch(word) for word in rest)
+        if symbol is not None and (in_lower_case or _written_as(words[:length], symbol)) and rest != ["situ"]:
+            return symbol, " ".join(rest) or None
+    if len(words) <= 4 and len(words) > 1:
+        symbol = analyte_symbol(words[-1])
+        if symbol is not None and words[-1] == symbol and (len(symbol) > 1 or "_" in text) and _method_like(words[:-1]):
+            return symbol, " ".join(words[:-1])
+    return None
+
+
+def _written_as(words: list[str], symbol: str) -> bool:
+    """Whether the words are the symbol in its own case or all capitals; ``in place`` is not indium."""
+    text = "".join(words)
+    return text == symbol or text == symbol.upper() or text.casefold() != symbol.casefold()
+
+
+def _method_like(words: list[str]) -> bool:
+    return all(re.fullmatch(r"[A-Z]{2,}[A-Z0-9]*\d*[a-z]?|[0-9]+[A-Z]+", word) for word in words)

@@ -1,0 +1,299 @@
+"""A results file as a table: headings understood, body read, texts and values judged."""
+
+from __future__ import annotations
+
+import re
+from collections import Counter
+from dataclasses import dataclass
+
+import numpy as np
+
+from registry.intake.cells import NUMBER, decimal_sign, parse_cell
+from registry.intake.checks import check_units, check_values
+from registry.intake.codes import choose_code_column, tidy_codes
+from registry.intake.findings import Findings
+from registry.intake.layout import WideLayout, find_wide_layout
+from registry.intake.readings import ReadingOptions, ResultColumn, ResultTable
+from registry.intake.recipes import ColumnChoice, Recipe
+from registry.intake.settling import settle_columns
+from registry.intake.sources import Source
+from registry.intake.titles import read_titles
+from registry.intake.units import canonical_unit, split_unit
+from registry.intake.wide import WideBody, WideReader
+
+_CONTROL = re.compile(r"(?i)\W*(qa ?[/&-]? ?qc|qc|control|sample[ _]?(type|kind|class)|type|qc[ _]?type|check type)\W*")
+_CONTROL_WORD = re.compile(r"(?i)\b(blanks?|blk|dupl?\w*|triplicate|standards?|std|crm|reference material|qa/?qc)\b")
+_QUALIFIER = re.compile(r"(?i)(?P<of>.*?)[\s_\-]*(qualifiers?|qual|flags?|sign|censored?|q|lt|lod[ _]flag)")
+
+
+@dataclass
+class Understanding:
+    """What the reading of a results file adds to a Reading."""
+
+    table: ResultTable | None
+    recipe: Recipe | None
+
+
+def read_results(
+    source: Source, options: ReadingOptions, findings: Findings, understood: list[str], row_bound: int, underscores: int
+) -> Understanding:
+    """Read a wide results table. ``row_bound``: at least the number of rows; ``underscores`` of the whole file."""
+    preview, preview_lines = source.preview()
+    layout = find_wide_layout(preview)
+    if layout is None:
+        findings.add(
+            "no row of headings with analytes was found",
+            expected="a row such as: Sample, SiO2 (%), Al2O3 (%), Zr (ppm)",
+            remedy="see that the headings stand within the first 80 lines and name analytes and units",
+        )  # fmt: skip
+        return Understanding(None, None)
+    recipe = options.recipe
+    body_rows = preview[layout.first_row :]
+    taken = {column.position for column in layout.columns}
+    wanted = recipe.sample_header if recipe else None
+    layout.code = choose_code_column(layout.labels, body_rows, taken, wanted)
+    if layout.code is None:
+        findings.add(
+            "no column of sample codes was found",
+            expected="a column headed sample code, Sample ID, Field ID or Lab ID",
+            remedy="give the column of sample codes a heading",
+        )  # fmt: skip
+        return Understanding(None, None)
+    _say_layout(layout, preview_lines.tolist(), understood)
+    titles = read_titles(layout.titles)
+    stated = canonical_unit(options.unit) if options.unit else (recipe and recipe.unit) or titles.unit
+    if titles.unit:
+        understood.append(f"the lines above the table state {titles.unit} for columns without a unit of their own")
+    if titles.digestion:
+        understood.append(f"the lines above the table state the method for all columns that name none: {titles.method}")
+    columns = settle_columns(
+        layout.columns, findings, understood, stated_unit=stated or None, stated_digestion=titles.digestion,
+        stated_method=titles.method, recipe=recipe,
+    )  # fmt: skip
+    if not columns:
+        findings.add("every analyte column is ignored", remedy="keep at least one in the reading recipe")
+        return Understanding(None, None)
+    decimal = _settle_decimal(body_rows, columns, recipe, findings, understood)
+    others = [
+        position for position in range(layout.width) if position not in taken and position != layout.code.position
+    ]
+    qualifier_positions = _qualifier_columns(layout, columns, others, body_rows)
+    control = next((place for place in others if _CONTROL.fullmatch(layout.labels[place])), None)
+    reader = WideReader(
+        columns, decimal, findings, code_position=layout.code.position, control_position=control,
+        qualifier_positions=qualifier_positions, negative_means_below=options.negative_means_below,
+    )  # fmt: skip
+    in_headings = sum(cell.count("_") for row in preview[: layout.first_row] for cell in row)
+    body = reader.read(source, layout.first_row, row_bound, underscores > in_headings)
+    columns, body = _judge_texts(columns, body, decimal, findings)
+    columns, body = _drop_empty(columns, body, understood)
+    used = {column.position for column in columns} | {layout.code.position} | set(qualifier_positions)
+    ignored = [layout.labels[place] for place in range(layout.width) if place not in used and layout.labels[place]]
+    _say_ignored(layout, used, control, findings, understood)
+    table = _table(layout, columns, body, titles.certificate, titles.lab, tuple(ignored), findings, understood)
+    made = Recipe(
+        shape=layout.shape,
+        columns={c.header: ColumnChoice(c.analyte, c.unit, c.method, c.digestion) for c in columns},
+        sample_header=layout.code.header,
+        decimal=decimal,
+    )
+    return Understanding(table, made)
+
+
+def _say_layout(layout: WideLayout, lines: list[int], understood: list[str]) -> None:
+    rows = ", ".join(f"{role} in row {lines[index]}" for index, role in sorted(layout.roles.items()))
+    first = lines[layout.first_row] if layout.first_row < len(lines) else "the end"
+    understood.append(f"heading rows: {rows}; data from row {first}")
+    if layout.titles:
+        understood.append(f"{len(layout.titles)} title lines above the table")
+    code = layout.code
+    if code is not None:
+        name = f"'{code.header}'" if code.header else f"number {code.position + 1}, which has no heading,"
+        understood.append(
+            f"sample codes come from column {name}" + (f" (doubtful: {code.doubt})" if code.doubt else "")
+        )
+
+
+def _settle_decimal(
+    rows: list[list[str]],
+    columns: list[ResultColumn],
+    recipe: Recipe | None,
+    findings: Findings,
+    understood: list[str],
+) -> str:
+    if recipe and recipe.decimal in (".", ","):
+        return recipe.decimal
+    cells = [row[column.position] for row in rows for column in columns if column.position < len(row)]
+    decimal, sure = decimal_sign(cells)
+    understood.append(f"decimal sign: {'comma' if decimal == ',' else 'point'}")
+    if not sure:
+        findings.warn(
+            "the decimal sign cannot be told from the numbers",
+            expected="a number such as 0.5 or 0,5",
+            remedy="a comma before three digits is read as a mark of thousands; give the decimal sign in a recipe",
+        )
+    return decimal
+
+
+def _qualifier_columns(
+    layout: WideLayout, columns: list[ResultColumn], others: list[int], rows: list[list[str]]
+) -> dict[int, int]:
+    """Columns that hold only the qualifier of an analyte column beside them or named in their heading."""
+    found: dict[int, int] = {}
+    by_position = {column.position: index for index, column in enumerate(columns)}
+    for place in others:
+        label = layout.labels[place]
+        cells = {row[place].strip() for row in rows if place < len(row)}
+        signs = bool(cells & {"<", ">", "<=", ">="}) and cells <= {"", "<", ">", "<=", ">=", "="}
+        named = _QUALIFIER.fullmatch(label)
+        if not signs and not (named and not cells - {""}):
+            continue
+        index = None
+        if named and named["of"]:
+            wanted = split_unit(named["of"])[0].casefold()
+            index = next((i for i, c in enumerate(columns) if split_unit(c.header)[0].casefold() == wanted), None)
+        if index is None:  # left of its number (as a sign is written), else right of it
+            neighbours = (place + 1, place - 1) if not label else (place - 1, place + 1)
+            index = next((by_position[other] for other in neighbours if other in by_position), None)
+        if index is not None and index not in found.values():
+            found[place] = index
+    return found
+
+
+def _judge_texts(
+    columns: list[ResultColumn], body: WideBody, decimal: str, findings: Findings
+) -> tuple[list[ResultColumn], WideBody]:
+    """Texts in analyte columns: a column of texts is misplaced (warning), a text among numbers is a problem."""
+    dropped = []
+    for index, texts in sorted(body.texts.items()):
+        column = columns[index]
+        numbers = int(np.isfinite(body.values[:, index]).sum())
+        pairs = texts.pairs()
+        first_line, first_text = pairs[0]
+        if len(pairs) > 4 * numbers:
+            findings.warn(
+                "texts stand where numbers are expected; they are not taken as results",
+                row=first_line, column=column.header,
+                found=f"{first_text.strip()} ({len(pairs)} texts, {numbers} numbers)", expected="numbers",
+                remedy="move the texts to a column of their own, or ignore the column in a recipe",
+            )  # fmt: skip
+            _take_control_words(body, pairs)
+            if numbers == 0:
+                dropped.append(index)
+            continue
+        for line, text in pairs:
+            findings.add(
+                "a text stands where a number is expected", row=line, column=column.header, found=text.strip(),
+                expected="a number, <number, >number, or a word for no result", remedy=_text_cause(text, decimal),
+            )  # fmt: skip
+    if not dropped:
+        return columns, body
+    kept = [index for index in range(len(columns)) if index not in dropped]
+    body.values, body.qualifiers = body.values[:, kept], body.qualifiers[:, kept]
+    return [columns[index] for index in kept], body
+
+
+def _take_control_words(body: WideBody, pairs: list[tuple[int, str]]) -> None:
+    """A misplaced text that names a control sample (``Blank Sample``) still says so of its line."""
+    said = {line: text.strip() for line, text in pairs if _CONTROL_WORD.search(text)}
+    if not said:
+        return
+    control = body.control or [None] * len(body.lines)
+    body.control = [
+        "; ".join(filter(None, (one, said.get(line)))) or None
+        for one, line in zip(control, body.lines.tolist(), strict=True)
+    ]
+
+
+def _text_cause(text: str, decimal: str) -> str:
+    other = "," if decimal == "." else "."
+    if parse_cell(text, other).state == NUMBER:
+        return f"the rest of the file has the decimal sign '{decimal}'; write this number with it"
+    if re.search(r"(?i)\b(jan|feb|mar|apr|may|jun|jul|aug|sep|oct|nov|dec)[a-z]*\b|\d{4}-\d\d-\d\d", text):
+        return "a spreadsheet seems to have turned a number into a date; take it from the laboratory's original"
+    return "correct the cell or leave it blank"
+
+
+def _drop_empty(
+    columns: list[ResultColumn], body: WideBody, understood: list[str]
+) -> tuple[list[ResultColumn], WideBody]:
+    filled = [bool((~np.isnan(body.values[:, index])).any()) for index in range(len(columns))]
+    if all(filled) or not any(filled):
+        return columns, body
+    empty = [column.header for column, some in zip(columns, filled, strict=True) if not some]
+    understood.append(f"columns without any result are left out: {', '.join(empty)}")
+    kept = [index for index, some in enumerate(filled) if some]
+    body.values, body.qualifiers = body.values[:, kept], body.qualifiers[:, kept]
+    return [columns[index] for index in kept], body
+
+
+def _say_ignored(
+    layout: WideLayout, used: set[int], control: int | None, findings: Findings, understood: list[str]
+) -> None:
+    analytes = {column.position for column in layout.columns}
+    plain = []
+    for place, label in enumerate(layout.labels):
+        if place in used or not label:
+            continue
+        rest, unit = split_unit(label)
+        if unit is not None and place not in analytes and re.search(r"[A-Z]", rest) and len(rest) < 20:
+            findings.warn(
+                "the heading names no analyte that the register knows; the column is ignored", column=label,
+                found=rest, expected="an oxide or element, or a total", remedy="name the analyte in a reading recipe",
+            )  # fmt: skip
+        plain.append(f"'{label}'")
+    if plain:
+        understood.append("columns not read as results: " + ", ".join(plain))
+    if control is not None:
+        understood.append(f"column '{layout.labels[control]}' says which lines are control samples")
+
+
+def _table(
+    layout: WideLayout,
+    columns: list[ResultColumn],
+    body: WideBody,
+    certificate: str | None,
+    lab: str | None,
+    ignored: tuple[str, ...],
+    findings: Findings,
+    understood: list[str],
+) -> ResultTable | None:
+    assert layout.code is not None
+    understood += body.passed_over[:20]
+    if len(body.passed_over) > 20:
+        understood.append(f"{len(body.passed_over) - 20} more rows are passed over as headings, notes or summaries")
+    codes, freed, eaten = tidy_codes(body.codes)
+    if freed:
+        understood.append(
+            f"{freed} sample codes such as '{body.codes[0].strip()}' are freed of the '.0' of a spreadsheet"
+        )
+    for place in eaten:
+        findings.warn(
+            "the sample code looks like a date or number made by a spreadsheet", row=int(body.lines[place]),
+            column=layout.code.header, found=codes[place],
+            remedy="compare with the submitted list and correct the code",
+        )  # fmt: skip
+    if not codes:
+        findings.add(
+            "the file holds no results", expected="rows of samples below the headings",
+            remedy="see whether the headings or the sample codes were misunderstood",
+        )  # fmt: skip
+        return None
+    if len(set(codes)) != len(codes):
+        first = dict(zip(reversed(codes), range(len(codes) - 1, -1, -1), strict=True))
+        for code, times in Counter(codes).items():
+            if times > 1:
+                findings.warn(
+                    "the sample code stands more than once; each line is kept as a repeat",
+                    row=int(body.lines[first[code]]), column=layout.code.header, found=f"{code} ({times} times)",
+                    remedy="if the lines are different samples, correct the codes",
+                )  # fmt: skip
+    check_values(columns, body.values, body.qualifiers, body.lines, findings)
+    check_units(columns, body.values, findings)
+    understood.append(f"{len(codes)} lines of results in {len(columns)} columns")
+    if certificate or lab:
+        understood.append("stated above the table: " + ", ".join(filter(None, (certificate, lab))))
+    return ResultTable(
+        columns, codes, body.lines, body.values, body.qualifiers, certificate, lab, ignored,
+        body.control, layout.code.header,
+    )  # fmt: skip

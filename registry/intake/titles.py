@@ -1,0 +1,58 @@
+"""What the lines above a table say: certificate, laboratory, one unit or one method for everything."""
+
+from __future__ import annotations
+
+import re
+from dataclasses import dataclass
+
+from registry.intake.methods import digestion_in
+from registry.intake.units import canonical_unit
+
+_CERTIFICATE = re.compile(
+    r"(?i)\b(?:certificate|cert\.?|report|work ?order|job)(?: of analysis)?(?: ?(?:no|number|nr|id)\b\.?| ?#)?"
+    r"\s*[:,#=]\s*(?P<code>[A-Za-z0-9][\w./\-]*)"
+)
+_LAB = re.compile(r"(?i)\b(?:laboratory|laboratories|lab)(?: name)?\s*[:,=]\s*(?P<name>[^,;:]+)")
+_UNIT = re.compile(
+    r"(?i)\b(?:units?|all (?:results|values|data|elements|concentrations)|results|values|concentrations|data|reported)"
+    r"(?: (?:are|is|given|reported|stated))*(?: in)?\s*[:,=]?\s*(?P<unit>\S+(?: ?%)?)"
+)
+
+
+@dataclass(frozen=True)
+class Titles:
+    certificate: str | None = None
+    lab: str | None = None
+    unit: str | None = None
+    digestion: str | None = None
+    method: str | None = None
+
+
+def read_titles(lines: list[str]) -> Titles:
+    """Read the title lines; a unit or digestion counts only if no other line contradicts it."""
+    certificate = lab = method = None
+    units, digestions = set(), set()
+    for line in lines:
+        found = _CERTIFICATE.search(line)
+        if found and certificate is None and re.search(r"\d", found["code"]):
+            certificate = found["code"]
+        found = _LAB.search(line)
+        if found and lab is None:
+            lab = found["name"].strip()
+        for stated in _UNIT.finditer(line):
+            unit = canonical_unit(stated["unit"].rstrip(".,;")) or canonical_unit(
+                stated["unit"].split()[0].rstrip(".,;")
+            )
+            if unit:
+                units.add(unit)
+        digestion = digestion_in(line)
+        if digestion:
+            digestions.add(digestion)
+            method = line.strip()
+    return Titles(
+        certificate,
+        lab,
+        units.pop() if len(units) == 1 else None,
+        digestions.pop() if len(digestions) == 1 else None,
+        method,
+    )

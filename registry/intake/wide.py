@@ -1,0 +1,292 @@
+"""Reads the body of a wide results table: a stream of rows into arrays; every cell that does not belong is reported."""
+
+from __future__ import annotations
+
+import re
+from array import array
+from dataclasses import dataclass, field
+
+import numpy as np
+from numpy.typing import NDArray
+
+from registry.intake.blocks import BlockReader
+from registry.intake.cells import (
+    ABOVE,
+    BELOW,
+    INSUFFICIENT,
+    MISSING,
+    NUMBER,
+    SPREADSHEET_ERROR,
+    TEXT,
+    parse_cell,
+)
+from registry.intake.findings import Findings
+from registry.intake.names import read_heading
+from registry.intake.readings import ResultColumn
+from registry.intake.sources import Source
+from registry.intake.units import canonical_unit
+from registry.petrology.analytes import WT_PERCENT_PER_UNIT
+
+_SUMMARY_ROW = re.compile(
+    r"(?i)\s*(means?|averages?|avg\.?|totals?|sums?|std\.? ?dev\.?\w*|standard deviation|minimum|maximum|min\.?|max\.?"
+    r"|medians?|counts?|(lower |upper )?(detection|reporting) ?limits?|l\.?o\.?d\.?|lld|ldl|mdl|udl"
+    r"|units?|methods?|analytes?|number of (samples|results)|rsd|percentiles?|\d+(th|st|nd|rd) percentile|end( of .*)?"
+    r"|.*end of (report|file|certificate).*)"
+    r"\s*[:%]?\s*"
+)
+_QUALIFIER_WORDS = {"<": 1, "<=": 1, "b": 1, "bdl": 1, "lt": 1, "nd": 1, "u": 1, ">": 2, ">=": 2, "gt": 2, "a": 2}
+_NO_QUALIFIER = {"", "=", "-", ".", "n", "na", "~"}
+
+
+@dataclass
+class Texts:
+    """Texts found in one analyte column: the line of each and, by number, which of the distinct texts it is."""
+
+    lines: array[int] = field(default_factory=lambda: array("q"))
+    words: dict[str, int] = field(default_factory=dict)
+    which: array[int] = field(default_factory=lambda: array("q"))
+
+    def add(self, line: int, text: str) -> None:
+        self.lines.append(line)
+        self.which.append(self.words.setdefault(text, len(self.words)))
+
+    def pairs(self) -> list[tuple[int, str]]:
+        """(line, text) of every one."""
+        texts = list(self.words)
+        return [(line, texts[number]) for line, number in zip(self.lines, self.which, strict=True)]
+
+
+@dataclass
+class WideBody:
+    """What the rows held: arrays of the kept rows, codes as written, and the texts set aside."""
+
+    codes: list[str]
+    lines: NDArray[np.int64]
+    values: NDArray[np.float64]
+    qualifiers: NDArray[np.uint8]
+    control: list[str | None]
+    texts: dict[int, Texts]
+    passed_over: list[str]
+
+
+class WideReader:
+    """One pass over a source. ``settings``: positions of the code column, of a QA/QC column, of qualifier columns."""
+
+    def __init__(
+        self,
+        columns: list[ResultColumn],
+        decimal: str,
+        findings: Findings,
+        *,
+        code_position: int,
+        control_position: int | None = None,
+        qualifier_positions: dict[int, int] | None = None,
+        negative_means_below: bool = False,
+    ) -> None:
+        self.columns, self.findings, self.decimal = columns, findings, decimal
+        self.code_position, self.control_position = code_position, control_position
+        self.qualifier_positions = qualifier_positions or {}
+        self.negative_means_below = negative_means_below
+        self.block = BlockReader([column.position for column in columns], decimal)
+        self.texts: dict[int, Texts] = {}
+        self.passed_over: list[str] = []
+        reach = [code_position, control_position or 0, *self.qualifier_positions, *self.block.positions]
+        self.reach = max(reach) + 1
+
+    def read(self, source: Source, first_row: int, row_bound: int, watch_underscores: bool) -> WideBody:
+        """Read everything from ``first_row`` on; ``row_bound`` is at least the number of rows."""
+        width = len(self.columns)
+        values = np.empty((row_bound, width))
+        qualifiers = np.empty((row_bound, width), np.uint8)
+        lines = np.empty(row_bound, np.int64)
+        codes: list[str] = []
+        control: list[str | None] = []
+        skip, count = first_row, 0
+        for rows, numbers in source.chunks(fast=True):
+            if skip:
+                dropped = min(skip, len(rows))
+                rows, numbers, skip = rows[dropped:], numbers[dropped:], skip - dropped
+                if not rows:
+                    continue
+            rows = self._even(rows)
+            chunk, marks, keep = self._chunk(rows, numbers, source.marks_below, watch_underscores)
+            kept = int(keep.sum())
+            everything = kept == len(rows)
+            stop = count + kept
+            values[count:stop] = chunk if everything else chunk[keep]
+            qualifiers[count:stop] = marks if everything else marks[keep]
+            lines[count:stop] = numbers if everything else numbers[keep]
+            chosen = rows if everything else [row for row, good in zip(rows, keep.tolist(), strict=True) if good]
+            codes += self._column(chosen, self.code_position, source.marks_below)
+            if self.control_position is not None:
+                said = self._column(chosen, self.control_position, source.marks_below)
+                control += [text.strip() or None for text in said]
+            count = stop
+        return WideBody(codes, lines[:count], values[:count], qualifiers[:count], control, self.texts, self.passed_over)
+
+    def _even(self, rows: list[list[str]]) -> list[list[str]]:
+        if min(map(len, rows)) >= self.reach:
+            return rows
+        return [row if len(row) >= self.reach else row + [""] * (self.reach - len(row)) for row in rows]
+
+    @staticmethod
+    def _column(rows: list[list[str]], position: int, marks_below: bool) -> list[str]:
+        texts = [row[position] for row in rows]
+        if marks_below and position and any(text.startswith("-") for text in texts):
+            texts = ["<" + text[1:] if text.startswith("-") else text for text in texts]
+        return texts
+
+    def _chunk(
+        self, rows: list[list[str]], lines: NDArray[np.int64], marks_below: bool, watch_underscores: bool
+    ) -> tuple[NDArray[np.float64], NDArray[np.uint8], NDArray[np.bool_]]:
+        values, qualifiers, odd = self.block.read(rows, marks_below, watch_underscores)
+        texts: dict[int, list[tuple[int, str]]] = {}
+        spoken: set[int] = set()
+        for row, column, text in odd:
+            cell = self.block.cell(text)
+            if cell.state == NUMBER:
+                value = cell.value
+                if cell.unit is not None or cell.doubt is not None:
+                    value = self._converted(cell.value, cell.unit, cell.doubt, column, int(lines[row]), text)
+                values[row, column] = value
+                qualifiers[row, column] = cell.qualifier
+            elif cell.state != MISSING:
+                texts.setdefault(row, []).append((column, text))
+                spoken.add(row)
+        if self.negative_means_below:
+            negative = (values < 0) & np.array([column.analyte != "LOI" for column in self.columns])
+            qualifiers[negative] = 1
+            values[negative] *= -1
+        for position, column in self.qualifier_positions.items():
+            self._apply_qualifiers(rows, position, column, values, qualifiers, lines, marks_below)
+        keep: NDArray[np.bool_] = np.ones(len(rows), bool)
+        numberless: NDArray[np.bool_] = np.asarray(np.isnan(values).all(axis=1))
+        bare = {row for row, code in enumerate(self._column(rows, self.code_position, False)) if not code.strip()}
+        doubtful = set(np.flatnonzero(numberless).tolist()) | bare | spoken
+        code_texts = self._column(rows, self.code_position, marks_below)
+        for row in sorted(doubtful):
+            keep[row] = self._row_stays(
+                rows[row], code_texts[row], int(lines[row]), bool(numberless[row]), texts.get(row, [])
+            )
+        keep &= ~self._summary_rows(code_texts, lines, keep)
+        for row in sorted(spoken):
+            if keep[row]:
+                self._take_words(texts[row], row, int(lines[row]), values, qualifiers)
+        return values, qualifiers, keep
+
+    def _summary_rows(self, codes: list[str], lines: NDArray[np.int64], keep: NDArray[np.bool_]) -> NDArray[np.bool_]:
+        """Rows of means, totals or limits under the data, told by what stands in the code column."""
+        found = np.zeros(len(codes), bool)
+        unusual = [row for row, code in enumerate(codes) if code and not code[-1].isdigit()]
+        for row in unusual:
+            code = codes[row]
+            if keep[row] and _SUMMARY_ROW.fullmatch(code):
+                found[row] = True
+                self.passed_over.append(f"row {lines[row]} ('{code.strip()}') is a summary and not a sample")
+        return found
+
+    def _row_stays(self, row: list[str], code: str, line: int, numberless: bool, texts: list[tuple[int, str]]) -> bool:
+        if not any(cell.strip() for cell in row):
+            return False
+        if len(texts) >= max(2, 0.5 * len(self.columns)) and all(_is_heading(text) for _, text in texts):
+            self.passed_over.append(f"row {line} repeats the headings")
+            return False
+        if not code.strip():
+            said = next((cell.strip() for cell in row if cell.strip()), "")
+            if numberless or _SUMMARY_ROW.fullmatch(said):
+                self.passed_over.append(f"row {line} ('{said[:40]}') has no sample code and is a note or a summary")
+                return False
+            self.findings.add(
+                "results without a sample code", row=line, column="sample code", found="",
+                expected="a sample code", remedy="write the code, or delete the row if it is no sample",
+            )  # fmt: skip
+            return False
+        if numberless and not texts:
+            others = [cell for cell in row if cell.strip()]
+            if len(others) == 1:
+                self.passed_over.append(f"row {line} ('{code.strip()[:40]}') is a group heading or a note")
+            else:
+                self.findings.warn(
+                    "the sample has no results", row=line, found=code.strip(),
+                    remedy="nothing is stored for it; ask the laboratory if results were expected",
+                )  # fmt: skip
+            return False
+        return True
+
+    def _take_words(
+        self,
+        words: list[tuple[int, str]],
+        row: int,
+        line: int,
+        values: NDArray[np.float64],
+        qualifiers: NDArray[np.uint8],
+    ) -> None:
+        for index, text in words:
+            state = self.block.cell(text).state
+            column = self.columns[index]
+            limit = column.detection_limit if state == BELOW else column.upper_limit if state == ABOVE else None
+            if limit is not None:
+                values[row, index] = limit
+                qualifiers[row, index] = 1 if state == BELOW else 2
+            elif state in (BELOW, ABOVE):
+                self.findings.warn(
+                    f"below or above a limit that is not known ({text.strip()}); taken as missing",
+                    row=line, column=column.header, found=text.strip(),
+                    expected="a detection limit in a heading row, or '<' with the limit in the cell",
+                    remedy="add a row of detection limits, or write the limit into the cell",
+                )  # fmt: skip
+            elif state == INSUFFICIENT:
+                self.findings.warn(
+                    f"no result: {text.strip()}", row=line, column=column.header, found=text.strip(),
+                    remedy="the cell is stored as missing",
+                )  # fmt: skip
+            elif state == SPREADSHEET_ERROR:
+                self.findings.add(
+                    "a spreadsheet's error stands in place of a result", row=line, column=column.header, found=text,
+                    expected="a number", remedy="export the original values of the laboratory, not formulas",
+                )  # fmt: skip
+            elif state == TEXT:
+                self.texts.setdefault(index, Texts()).add(line, text)
+
+    def _converted(self, value: float, unit: str | None, doubt: str | None, index: int, line: int, text: str) -> float:
+        column = self.columns[index]
+        if doubt == "thousands":
+            mark = "," if self.decimal == "." else "."
+            self.findings.warn(
+                f"'{mark}' before three digits is read as a mark of thousands", row=line, column=column.header,
+                found=text, expected=f"{value:g}", remedy="if it is a decimal sign, write all numbers with it",
+            )  # fmt: skip
+        if unit is not None and column.unit and unit != column.unit:
+            self.findings.warn(
+                f"the cell states {unit} in a column of {column.unit}; converted", row=line, column=column.header,
+                found=text, remedy="check that the cell's own unit is right",
+            )  # fmt: skip
+            value *= WT_PERCENT_PER_UNIT[unit] / WT_PERCENT_PER_UNIT[column.unit]
+        return value
+
+    def _apply_qualifiers(
+        self,
+        rows: list[list[str]],
+        position: int,
+        column: int,
+        values: NDArray[np.float64],
+        qualifiers: NDArray[np.uint8],
+        lines: NDArray[np.int64],
+        marks_below: bool,
+    ) -> None:
+        for row, text in enumerate(self._column(rows, position, marks_below)):
+            text = text.strip().casefold()
+            if text in _NO_QUALIFIER:
+                continue
+            code = _QUALIFIER_WORDS.get(text)
+            if code is None:
+                self.findings.warn(
+                    "an unknown qualifier", row=int(lines[row]), column=self.columns[column].header, found=text,
+                    expected="< or >", remedy="the value is taken as it stands",
+                )  # fmt: skip
+            elif not np.isnan(values[row, column]):
+                qualifiers[row, column] = code
+
+
+def _is_heading(text: str) -> bool:
+    return read_heading(text).analyte is not None or canonical_unit(text) is not None or parse_cell(text).state == BELOW
