@@ -107,7 +107,7 @@ def ascent_cause(
 ) -> NDArray[np.object_]:
     """Why there is no ascent outcome, object array (n,): one of ``ASCENT_CAUSES``; None where there is one."""
     words = np.array([*ASCENT_CAUSES, None], dtype=object)
-    missing = np.equal(np.asarray(outcome, dtype=object), None).astype(bool)
+    missing = ~np.asarray(outcome, dtype=object).astype(bool)  # None, not a word
     no_liquidus = np.isnan(np.asarray(liquidus_c, dtype=np.float64))
     no_depth = np.isnan(not_negative(emplacement_depth_m))
     no_density = np.isnan(np.asarray(density_contrast_kg_m3, dtype=np.float64))

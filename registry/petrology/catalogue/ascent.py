@@ -59,7 +59,7 @@ def _no_depth(depth: Any) -> Any:
 
 
 def _word_present(word: Any) -> Any:
-    return ~np.equal(word, None).astype(bool)
+    return word.astype(bool)  # a word, not None
 
 
 _NO_LIQUIDUS = Cause(

@@ -46,7 +46,8 @@ def _theta(
         rows = np.column_stack([column[known] for column in (code, radius, depth, age, sigma)])
         bodies, row_of = np.unique(np.nan_to_num(rows, nan=-1.0), axis=0, return_inverse=True)
         names = np.array(("", *SHAPES), dtype=object)[bodies[:, 0].astype(np.intp)]
-        interval = theta_centre_interval(names, *bodies[:, 1:].T, conventions.thermal_diffusivity_m2_s)
+        half, top, years, spread = bodies[:, 1:].T
+        interval = theta_centre_interval(names, half, top, years, spread, conventions.thermal_diffusivity_m2_s)
         for name in _THETA:
             result[name][known] = interval[name][row_of.ravel()]
     return result

@@ -128,7 +128,7 @@ METHODS = (
             Quantity("liquidus_high_c", _SHEET, "liquidus, high", "C", "greatest of the models; acid: at 3 wt% H2O"),
         ),
         source="convention",
-        equation="median of the olivine models in range, dry ones lowered by water; acid: haplogranite; a blend between",
+        equation="median of the olivine models in range, dry ones lowered by water; acid haplogranite; blend between",
         status="provisional",
         note="Models [helz1987], [putirka2008], [beattie1993], [sugawara2000], [makhluf2017], zircon [watson1983]; "
         "water depression [almeev2007] unless set otherwise. The spread is that of the models, not an error.",
@@ -139,7 +139,7 @@ METHODS = (
             Cause("missing_input", "", _zircon_missing, ("liquidus_c", "zircon_saturation_wh83_c")),
             Cause(
                 "zircon_out_of_range",
-                "zircon saturation is outside its range (M 0.9-1.9, SiO2 from 63 wt%, A/NK from 1) or Zr not wholly dissolved",
+                "zircon saturation is outside its range (M 0.9-1.9, SiO2 from 63 wt%, A/NK from 1), or Zr is a minimum",
                 _zircon_barred,
                 ("liquidus_c", "zircon_saturation_usable"),
             ),

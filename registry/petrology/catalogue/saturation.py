@@ -58,7 +58,7 @@ def _apatite_usable(m: Any, sio2: Any, a_nk: Any) -> Any:
 
 def _monazite_d(*values: Any) -> Any:
     *oxides, lithium = values
-    return monazite_d(*oxides, li_ppm=np.where(np.isnan(lithium), 0.0, lithium))
+    return monazite_d(*oxides, np.where(np.isnan(lithium), 0.0, lithium))
 
 
 def _maimaiti(la: Any, ce: Any, pr: Any, nd: Any, sm: Any, d: Any, h2o: Any, conventions: Any) -> Any:
