@@ -158,7 +158,8 @@ def rittmann_index(sio2_wt: ArrayLike, na2o_wt: ArrayLike, k2o_wt: ArrayLike) ->
 def rayleigh_liquid_fraction(parent_ppm: ArrayLike, liquid_ppm: ArrayLike, partition: ArrayLike = 0.0) -> Floats:
     """Liquid left F after fractional crystallization, from C = C0 F^(D - 1): F = (C0/C)^(1/(1 - D)).
 
-    ppm of one element in the parent and in the liquid; D below 1. NaN where D is 1 or more. Derivable.
+    ppm of one element in the parent and in the liquid; D below 1. NaN where D is 1 or more.
+    Derivable; after [rayleigh1896].
     """
     ratio, bulk = floats(quotient(parent_ppm, liquid_ppm), partition)
     result = np.full(ratio.shape, np.nan)
