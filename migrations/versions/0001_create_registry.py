@@ -124,7 +124,7 @@ lithology_interval = table(
     "lithology_interval", own_id("lithology_interval_id"),
     link("site_id", "site.site_id", nullable=False, ondelete="CASCADE"), sa.Column("from_m", number, nullable=False),
     sa.Column("to_m", number, nullable=False), *texts("lithology description"),
-    sa.UniqueConstraint("site_id", "from_m"), sa.CheckConstraint("from_m < to_m", name="from_m"),
+    sa.UniqueConstraint("site_id", "from_m", "to_m"), sa.CheckConstraint("from_m < to_m", name="from_m"),
 )
 intrusion = table(
     "intrusion", own_id("intrusion_id"), sa.Column("name", words, nullable=False, unique=True),

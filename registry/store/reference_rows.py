@@ -67,7 +67,7 @@ def sync_catalogue(
 
 
 def _quantities(methods: Sequence[Method], citations: Mapping[str, str]) -> list[dict[str, Any]]:
-    rows = []
+    rows: list[dict[str, Any]] = []
     for method in methods:
         source = citations.get(method.source, method.source)
         if method.equation:

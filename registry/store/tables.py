@@ -113,7 +113,7 @@ lithology_interval = table(
     sa.Column("from_m", Number, nullable=False),
     sa.Column("to_m", Number, nullable=False),
     *words("lithology description"),
-    sa.UniqueConstraint("site_id", "from_m"),
+    sa.UniqueConstraint("site_id", "from_m", "to_m"),
     sa.CheckConstraint("from_m < to_m", name="from_m"),
 )
 intrusion = table(

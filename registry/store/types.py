@@ -33,7 +33,7 @@ def plain(value: Any) -> Any:
 class _Plain(TypeDecorator[Any]):
     """A type whose values pass through :func:`plain`."""
 
-    impl = sa.Text
+    impl: Any = sa.Text
     cache_ok = True
     on_sqlite: type[TypeEngine[Any]] = sqlite.TEXT
 
@@ -76,7 +76,7 @@ class Whole(_Plain):
 class Words(_Plain):
     """Text, compared byte by byte on both engines."""
 
-    impl = sa.Text
+    impl: Any = sa.Text
     cache_ok = True
     on_sqlite = sqlite.TEXT
 
