@@ -11,7 +11,7 @@ from registry.choice import Block, ColumnUse, choose
 from registry.clock import now
 from registry.judging import Rules, read_rules
 from registry.pipeline import CHUNK_SIZE, METHOD_VERSION, Chunk, Computed, compute
-from registry.store import bulk, loading, stale
+from registry.store import bulk, loading, sample_context, stale
 from registry.store.engine import Registry, reading, writing
 from registry.store.sheets import DERIVED_COLUMNS
 
@@ -99,7 +99,7 @@ def recompute(
 ) -> Computed:
     """Derive and judge one chunk of samples and write all of it; the computed arrays."""
     ids = composition.sample_ids
-    context = loading.load_context(connection, ids)
+    context = sample_context.load_context(connection, ids)
     chunk = Chunk(ids, composition.values, composition.qualifiers, composition.digestions, context)
     computed = compute(chunk, rules.definitions, rules.conventions)
     if rewrite_composition:

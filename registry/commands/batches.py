@@ -17,7 +17,7 @@ def batches(registry_path: str | None, as_json: bool) -> None:
 
     rows = list_batches(open_registry(registry_named(registry_path)))
     lines = [
-        f"{row['batch']}  {row['state']}  {row['aliquots']:,} lines, {row['results']:,} results"
+        f"{row['batch']}  {row['state']}  {row['lines']:,} lines, {row['results']:,} results"
         f"  {row['lab'] or 'laboratory not given'}  {row['file_name'] or ''}"
         for row in rows
     ]
