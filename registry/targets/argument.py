@@ -22,7 +22,8 @@ from registry.targets.intervals import Known, interval_text
 from registry.targets.quantities import known_of
 
 NOT_KNOWN = "not known"
-_PLACEHOLDER = re.compile(r"\{([a-z_]+)(?:\.([a-z0-9_]+))?\}")
+#: ``{name}``, ``{name unit}`` (the unit only where something is known) or ``{points.met}`` and the like.
+_PLACEHOLDER = re.compile(r"\{([a-z0-9_]+)(?:\.([a-z0-9_]+))?( [^}]+)?\}")
 
 
 def number_text(value: float) -> str:
@@ -31,9 +32,8 @@ def number_text(value: float) -> str:
         return f"{value:g}"
     if not 1e-4 <= abs(value) < 1e7:
         return f"{value:.3g}"
-    decimals = max(0, 2 - int(np.floor(np.log10(abs(value)))))
-    rounded = round(value, 2 - int(np.floor(np.log10(abs(value)))))
-    return f"{rounded:.{decimals}f}"
+    rounded = float(f"{value:.2e}")
+    return f"{rounded:.{max(0, 2 - int(np.floor(np.log10(abs(rounded)))))}f}"
 
 
 def workspace_of_sample(sample: Mapping[str, Any], conventions: Conventions | None = None) -> dict[str, Any]:
@@ -131,9 +131,11 @@ class _Argument:
         return _PLACEHOLDER.sub(self._fill, self.definition.argument)
 
     def _fill(self, match: re.Match[str]) -> str:
-        name, part = match.groups()
-        if part is not None:
-            return self._fill_part(name, part)
+        name, part, unit = match.groups()
+        text = self._fill_value(name) if part is None else self._fill_part(name, part)
+        return text if unit is None or text == NOT_KNOWN else text + unit
+
+    def _fill_value(self, name: str) -> str:
         special = {
             "redox_source": self._redox_source,
             "density_basis": self._density_basis,
@@ -190,8 +192,8 @@ class _Argument:
         return number_text(2.0 * sigma) if sigma is not None else number_text(2.0 * ASSUMED_AGE_SIGMA * float(age or 0))
 
     def _because_missing(self) -> str:
-        names = [words for words, _ in self._missing_inputs()]
-        return f" because {', '.join(names)} is missing" if names else ""
+        names = [words.split(" by ")[0] for words, _ in self._missing_inputs()]
+        return f"; open because of {', '.join(names)}" if names else ""
 
     # what would turn it, what contradicts it, what is missing
 
@@ -234,7 +236,7 @@ class _Argument:
         weights: dict[str, int] = {}
         for need in self.definition.needs:
             if not any(is_known(self.known, name)[0] for name in need.any_of):
-                weights.setdefault(need.any_of[0], 0)
+                weights |= {name: weights.get(name, 0) for name in self._open_parts(need.any_of[0])}
         for item in self.definition.tests:
             if self.outcomes[item.code] != "u":
                 continue
@@ -252,10 +254,14 @@ class _Argument:
         names: dict[str, None] = {}
         for condition in conditions:
             for quantity in filter(None, (condition.quantity, condition.of)):
-                for name in self.known.inputs(quantity):
-                    if self._is_open(name):
-                        names.setdefault(name)
+                names |= dict.fromkeys(self._open_parts(quantity))
         return list(names)
+
+    def _open_parts(self, quantity: str) -> list[str]:
+        """The inputs that keep a quantity open; itself where none of them can be named."""
+        if not self._is_open(quantity):
+            return []
+        return [name for name in self.known.inputs(quantity) if self._is_open(name)] or [quantity]
 
     def _is_open(self, name: str) -> bool:
         if name in TEXT_QUANTITIES:

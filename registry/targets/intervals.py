@@ -271,7 +271,7 @@ def base_of_volatile_free(name: str) -> str:
 RULE_INPUTS: dict[str, tuple[str, ...]] = {
     "heat_production_uw_m3": ("u_ppm", "th_ppm", "k2o_wt"),
     "heat_x_thickness_mw_m2": ("u_ppm", "th_ppm", "k2o_wt", "intrusion_shape", "half_width_m"),
-    "theta_centre": ("age_ma", "intrusion_shape", "half_width_m", "depth_to_top_m"),
+    "theta_centre": ("age_ma", "intrusion_shape", "half_width_m"),
     "zircon_saturation_wh83_c": ("zr_ppm",),
     "zircon_model_applies": ("zr_ppm",),
 }
