@@ -111,7 +111,8 @@ def _carries() -> NDArray[np.uint8]:
     mark(PORTABLE_XRF, (*_BELOW_XRF, "na2o_wt", "f_wt", "co2_wt"), REFUSED)
     for code in (FOUR_ACID, UNKNOWN_WITHOUT_SILICA):
         mark(code, (*_RESISTATE, "s_wt", "so3_wt"), MINIMUM)  # S: barite
-        mark(code, _LOST_WITH_ACID, REFUSED)
+        # what is not known to have seen acid enters the composition all the same, as a minimum
+        mark(code, _LOST_WITH_ACID, REFUSED if code == FOUR_ACID else MINIMUM)
     table[AQUA_REGIA] = REFUSED
     mark(AQUA_REGIA, _AQUA_REGIA_CARRIES, MINIMUM)
     table[TITRATION] = REFUSED  # wet chemistry determines majors, never traces
