@@ -1,18 +1,26 @@
 """Why a sample was judged as it was: the verdicts with their reasons in words and numbers, ready to be shown.
 
-The stored reasons are read with the definition that made them, never computed again: what a page says is what was
-decided.
+The stored reasons are read with the definition that made them: what a page says is what was decided. Only quantities
+that no table keeps (heat left in the body, how redox was told) are worked out again for the sentences.
 """
 
 from __future__ import annotations
 
 import json
+import math
 from dataclasses import dataclass
 from functools import lru_cache
 from typing import Any
 
+import numpy as np
+
 from registry.margins import Margin, margin
+from registry.petrology.analytes import CHOSEN_COLUMNS
+from registry.petrology.conventions import Conventions
+from registry.pipeline import Chunk, compute
+from registry.store import loading
 from registry.store.reading import sample as reading
+from registry.targets.argument import argue
 from registry.targets.definition import Criterion, Gate, TargetDefinition, parse_definition
 
 OUTCOME_WORDS = {"m": "met", "r": "near", "n": "not met", "u": "unknown"}
@@ -40,16 +48,6 @@ class Reason:
 
 
 @dataclass(frozen=True)
-class Missing:
-    """Something that was not measured: what it would open in points, and how it is best had."""
-
-    names: tuple[str, ...]
-    points: int
-    gate: bool
-    supply: str
-
-
-@dataclass(frozen=True)
 class Conclusion:
     """The verdict on one sample for one target, with everything that stands behind it."""
 
@@ -62,9 +60,13 @@ class Conclusion:
     coverage: float | None
     provisional: bool
     cause: str
-    sentences: tuple[str, ...]
+    argument: str
+    would_turn: tuple[str, ...]
+    contradictions: tuple[str, ...]
     reasons: tuple[Reason, ...]
-    missing: tuple[Missing, ...]
+    missing: tuple[str, ...]
+    favourable: float
+    possible: float
     cautions: tuple[str, ...]
 
 
@@ -75,21 +77,44 @@ def read_definition(text: str) -> TargetDefinition:
 
 
 def explain_sample(connection: Any, sample_id: int) -> list[Conclusion]:
-    """The conclusions on a sample, favourable ones first; empty for control samples."""
-    return [_conclusion(row) for row in reading.verdict_rows(connection, sample_id)]
+    """The conclusions on a sample, favourable ones first; empty for control samples and where nothing is computed."""
+    rows = reading.verdict_rows(connection, sample_id)
+    if not rows:
+        return []
+    sample, conventions = _known_of(connection, sample_id)
+    return [_conclusion(row, sample, conventions) for row in rows]
 
 
-def _conclusion(row: dict[str, Any]) -> Conclusion:
+def _known_of(connection: Any, sample_id: int) -> tuple[dict[str, Any], Conventions]:
+    """Everything known of a sample by name, None for missing, and the conventions it was computed under."""
+    stored = reading.derived_row(connection, sample_id)
+    conventions = Conventions.from_dict(json.loads(stored.pop("conventions", None) or "{}"))
+    composition = loading.load_composition(connection, [sample_id])
+    context = loading.load_context(connection, [sample_id])
+    packed = (composition.values, composition.qualifiers, composition.digestions)
+    computed = compute(Chunk(composition.sample_ids, *packed, context), (), conventions)
+    columns = {
+        **dict(zip(CHOSEN_COLUMNS, composition.values, strict=True)),
+        **computed.derived,
+        **context,
+    }
+    known = {name: _plain(column[0]) for name, column in columns.items()}
+    known.update({name: value for name, value in stored.items() if value is not None})
+    return known, conventions
+
+
+def _plain(value: Any) -> Any:
+    value = value.item() if hasattr(value, "item") else value
+    return None if isinstance(value, float) and math.isnan(value) else value
+
+
+def _conclusion(row: dict[str, Any], sample: dict[str, Any], conventions: Conventions) -> Conclusion:
     definition = read_definition(row["definition"])
     packed = json.loads(row["reasons"])
     texts = packed.get("texts", {})
-    reasons = tuple(
-        _reason(test, letter, value, limit, texts.get(str(position), ""))
-        for position, (test, letter, value, limit) in enumerate(
-            zip(definition.tests, packed["outcomes"], packed["values"], packed["thresholds"], strict=True)
-        )
-    )
-    cause = texts.get("cause", "")
+    with np.errstate(all="ignore"):  # as in the pipeline: a quotient by zero is a missing value, not a fault
+        told = argue(definition, sample, packed, conventions)
+    outcomes = zip(definition.tests, packed["outcomes"], packed["values"], packed["thresholds"], strict=True)
     return Conclusion(
         target=row["target"],
         name=row["target_name"],
@@ -99,10 +124,17 @@ def _conclusion(row: dict[str, Any]) -> Conclusion:
         score_max=row["score_max"],
         coverage=row["coverage"],
         provisional=bool(row["provisional"]),
-        cause=cause,
-        sentences=(_summary(definition, row, reasons, cause),),
-        reasons=reasons,
-        missing=_missing(definition, reasons),
+        cause=(texts.get("cause") or "") if row["verdict"] == "undecided" else "",
+        argument=told["argument"],
+        would_turn=tuple(told["would_turn"]),
+        contradictions=tuple(told["contradictions"]),
+        reasons=tuple(
+            _reason(test, letter, value, limit, texts.get(str(position), ""))
+            for position, (test, letter, value, limit) in enumerate(outcomes)
+        ),
+        missing=tuple(told["missing"]),
+        favourable=definition.favourable,
+        possible=definition.possible,
         cautions=definition.cautions,
     )
 
@@ -125,35 +157,4 @@ def _reason(test: Gate | Criterion, letter: str, value: float | None, limit: flo
         provisional=test.provisional,
         source=test.source,
         margin=margin(test.test, criterion.near if criterion else None, value, limit, text),
-    )
-
-
-def _missing(definition: TargetDefinition, reasons: tuple[Reason, ...]) -> tuple[Missing, ...]:
-    """What was not measured, dearest first: gates before weights, then by the points it would open."""
-    points: dict[tuple[str, ...], int] = {}
-    gates: set[tuple[str, ...]] = set()
-    for reason in reasons:
-        if reason.outcome == "unknown" and reason.missing:
-            points[reason.missing] = points.get(reason.missing, 0) + reason.weight
-            if reason.gate:
-                gates.add(reason.missing)
-    found = []
-    for names, weight in points.items():
-        supply = dict.fromkeys(definition.supply[name] for name in names if name in definition.supply)
-        found.append(Missing(names, weight, names in gates, "; ".join(supply)))
-    return tuple(sorted(found, key=lambda lacking: (not lacking.gate, -lacking.points)))
-
-
-def _summary(definition: TargetDefinition, row: dict[str, Any], reasons: tuple[Reason, ...], cause: str) -> str:
-    """One sentence: how the score stands to the limits of the target, or why nothing could be judged."""
-    if cause and row["verdict"] == "undecided":
-        return f"It cannot be judged: {cause}."
-    failed = [reason for reason in reasons if reason.gate and reason.outcome == "not met"]
-    if failed and row["verdict"] == "unfavourable":
-        return "Ruled out: " + "; ".join(f"{r.label} fails the rule {r.quantity} {r.test}" for r in failed) + "."
-    met = round(100 * (row["score_min"] or 0.0))
-    unknown = round(100 * ((row["score_max"] or 0.0) - (row["score_min"] or 0.0)))
-    return (
-        f"{met} of 100 points are met and {unknown} unknown; favourable begins at {100 * definition.favourable:.0f}, "
-        f"unfavourable lies below {100 * definition.possible:.0f}."
     )

@@ -70,15 +70,16 @@ PATTERNS = {
     "dots": "",
 }
 #: Stroke of a pattern by the colour beneath it.
-STROKES = {"black": "light", "paper": "soft", "blue": "light"}
-BAR_WIDTH = 1000.0
+STROKES = {"black": "black", "paper": "soft", "blue": "light"}
+BAR_WIDTH_PERCENT = 100.0
 LEAST_SHOWN_WT = 0.005
-LABEL_WIDTH = 34.0
+#: Narrowest segment that holds its symbol, on a telephone too.
+LABEL_WIDTH_PERCENT = 6.0
 
 
 @dataclass(frozen=True)
 class Segment:
-    """One mineral of a bar: where it begins and how wide it is, in thousandths of the bar."""
+    """One mineral of a bar: where it begins and how wide it is, in per cent of the bar."""
 
     mineral: Mineral
     wt: float
@@ -87,12 +88,12 @@ class Segment:
 
     @property
     def middle(self) -> float:
-        return self.x + self.width / 2
+        return round(self.x + self.width / 2, 2)
 
     @property
     def labelled(self) -> bool:
         """True where the symbol fits over the segment."""
-        return self.width >= LABEL_WIDTH
+        return self.width >= LABEL_WIDTH_PERCENT
 
 
 def norm_segments(norm: Mapping[str, float | None]) -> list[Segment]:
@@ -102,7 +103,7 @@ def norm_segments(norm: Mapping[str, float | None]) -> list[Segment]:
     """
     amounts = [(mineral, norm.get(mineral.symbol) or 0.0) for mineral in MINERALS]
     total = sum(amount for _, amount in amounts if amount > LEAST_SHOWN_WT)
-    scale = BAR_WIDTH / max(100.0, total)
+    scale = BAR_WIDTH_PERCENT / max(100.0, total)
     segments, x = [], 0.0
     for mineral, amount in amounts:
         if amount > LEAST_SHOWN_WT:

@@ -12,7 +12,15 @@ from werkzeug.datastructures import MultiDict
 
 from registry.store.reading import samples as reading
 from registry.store.reading.columns import Column, Columns
-from registry.store.reading.filters import ADDING_ARGUMENTS, KINDS, SCORE, VERDICTS, Filter, parse_filter
+from registry.store.reading.filters import (
+    ADDING_ARGUMENTS,
+    DEFAULT_COLUMNS,
+    KINDS,
+    SCORE,
+    VERDICTS,
+    Filter,
+    parse_filter,
+)
 from registry.store.reading.session import query_only
 from registry.store.reading.targets import target_names
 from web import numbers, wording
@@ -22,6 +30,8 @@ from web.reading import offered_columns, registry_connection
 blueprint = Blueprint("samples", __name__)
 #: Stored values of these columns stand for words.
 VERDICT_COLUMNS = ("best_verdict",)
+#: A column of words up to this long is not broken into lines.
+SHORT_WORDS = 24
 
 
 def _asked(arguments: Mapping[str, Sequence[str]], columns: Columns, targets: Mapping[str, str]) -> Filter:
@@ -72,6 +82,8 @@ def list_page() -> Any:
             page = reading.page_of_samples(connection, asked, columns, place=place)
         choices = reading.choices(connection)
     shown = reading.shown_columns(asked, columns)
+    if asked.target and asked.columns == DEFAULT_COLUMNS:
+        shown = [column for column in shown if column.name not in ("best_target", *VERDICT_COLUMNS)]
     heads = _heads(asked, shown, targets)
     pairs = asked.arguments()
     addresses = {
@@ -97,7 +109,7 @@ def list_page() -> Any:
         sortable=shown,
         other_faults=_other_faults(asked),
         heads=heads,
-        rows=_rows(page.rows, shown, asked, targets),
+        rows=_rows(page.rows, shown, asked, targets, heads),
         any_stale=any(row["is_stale"] for row in page.rows),
         rows_per_page=reading.ROWS_PER_PAGE,
         **addresses,
@@ -145,16 +157,18 @@ def _other_faults(asked: Filter) -> list[str]:
 
 
 def _heads(asked: Filter, shown: Sequence[Column], targets: Mapping[str, str]) -> list[dict[str, Any]]:
-    heads = [_head(asked, "sample_code", "code", "", "code of the sample", "text")]
+    heads = [
+        _head(asked, "sample_code", "code", "", "code of the sample", "text"),
+        _head(asked, "", "norm", "0 to 100 wt%", "CIPW weight norm in crystallisation order", "norm"),
+    ]
     if asked.target:
         name = targets[asked.target]
         heads.append(_head(asked, "", "verdict", "", f"verdict for {name}", "verdict"))
         heads.append(_head(asked, SCORE, "score", "", f"share of the weights met for {name}, least to most", "number"))
     for column in shown:
         kind = "number" if column.numeric else "verdict" if column.name in VERDICT_COLUMNS else "text"
-        unit = "" if column.unit in ("1", "text") else column.unit
-        heads.append(_head(asked, column.name, column.label, unit, column.meaning, kind))
-    heads.append(_head(asked, "", "norm", "0 to 100 wt%", "CIPW weight norm in crystallisation order", "norm"))
+        unit = wording.unit_words(column.unit)
+        heads.append(_head(asked, column.name, wording.formula(column.label), unit, column.meaning, kind))
     return heads
 
 
@@ -175,16 +189,22 @@ def _head(asked: Filter, name: str, label: str, unit: str, meaning: str, kind: s
 
 
 def _rows(
-    rows: Sequence[Mapping[str, Any]], shown: Sequence[Column], asked: Filter, targets: Mapping[str, str]
+    rows: Sequence[Mapping[str, Any]],
+    shown: Sequence[Column],
+    asked: Filter,
+    targets: Mapping[str, str],
+    heads: Sequence[dict[str, Any]],
 ) -> list[dict[str, Any]]:
-    blocks: list[Sequence[Any]] = []
+    blocks: list[Sequence[Any]] = [
+        [norm_segments({mineral: row[f"norm_{mineral}"] for mineral in reading.NORM_ORDER}) for row in rows]
+    ]
     if asked.target:
         blocks.append([_verdict_word(row["target_verdict"]) for row in rows])
         blocks.append([_score(row["target_score_min"], row["target_score_max"]) for row in rows])
-    for column in shown:
+    for head, column in zip(heads[-len(shown) :], shown, strict=True):
         cells = [_cell(row[column.name], column, targets) for row in rows]
+        head["short"] = max(map(len, cells), default=0) <= SHORT_WORDS
         blocks.append(numbers.aligned(cells) if column.numeric else cells)
-    blocks.append([norm_segments({mineral: row[f"norm_{mineral}"] for mineral in reading.NORM_ORDER}) for row in rows])
     return [
         {"code": row["sample_code"], "is_stale": row["is_stale"], "cells": cells}
         for row, cells in zip(rows, zip(*blocks, strict=True), strict=True)

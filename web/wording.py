@@ -31,9 +31,32 @@ VIEW_WORDS = {
     "melt_sheet": "Temperatures, melt, heat",
 }
 #: Oxides whose figures are set below the line.
-_OXIDE = re.compile(r"\b(?:SiO2|TiO2|Al2O3|Fe2O3|Na2O|K2O|P2O5|Cr2O3|V2O3|V2O5|ZrO2|Li2O|CO2|SO3|H2O)(?![a-z0-9])")
+_OXIDE = re.compile(r"\b(?:SiO2|TiO2|Al2O3|Fe2O3T?|Na2O|K2O|P2O5|Cr2O3|V2O3|V2O5|ZrO2|Li2O|CO2|SO3|H2O)(?![a-z0-9])")
 _LOWERED = str.maketrans("0123456789", "₀₁₂₃₄₅₆₇₈₉")
 _COLUMN = re.compile(r"\b[a-z][a-z0-9]*(?:_[a-z0-9]+)+\b")
+_SPELLINGS = {
+    "sio2": "SiO2", "tio2": "TiO2", "al2o3": "Al2O3", "fe2o3": "Fe2O3", "fe2o3t": "total Fe2O3", "feo": "FeO",
+    "feot": "total FeO", "mno": "MnO", "mgo": "MgO", "cao": "CaO", "na2o": "Na2O", "k2o": "K2O", "p2o5": "P2O5",
+    "co2": "CO2", "loi": "LOI", "h2o": "H2O",
+}  # fmt: skip
+_NAMES = {
+    "half_width_m": "half-width", "heat_flow_mw_m2": "heat flow of the area", "volume_km3": "volume", "sr_y": "Sr/Y",
+    "v_sc": "V/Sc", "rb_sr": "Rb/Sr", "k_rb": "K/Rb", "la_yb": "La/Yb", "nb_ta": "Nb/Ta", "zr_hf": "Zr/Hf",
+    "cu_zr": "Cu/Zr", "pd_pt": "Pd/Pt", "a_nk": "A/NK", "a_cnk": "A/CNK",
+    "heat_production_uw_m3": "heat production", "th_u": "Th/U", "th_nb": "Th/Nb",
+    "heat_x_thickness_mw_m2": "heat production times thickness",
+}  # fmt: skip
+_UNIT_ENDS = ("_wt", "_ppm", "_ma", "_m", "_km3", "_mw_m2", "_uw_m3", "_kg_m3", "_si", "_c")
+_UNITS = {
+    "C": "°C", "degC": "°C", "uW/m3": "µW/m³", "kg/m3": "kg/m³", "mW/m2": "mW/m²", "km3": "km³",
+    "log10(Pa s)": "log₁₀ Pa s",
+}  # fmt: skip
+_PRINTED = (
+    ("+-", "±"), (">=", "≥"), ("<=", "≤"), (" - ", " \N{MINUS SIGN} "), ("uW/m3", "µW/m³"), ("mW/m2", "mW/m²"),
+    ("kg/m3", "kg/m³"), (" to inf", " or more"),
+)  # fmt: skip
+_CITED = re.compile(r"(?P<authors>[^()]+?),? (?:\(eds?\.\),? )?\(?(?P<year>(?:18|19|20)\d\d)\b")
+_INITIALS = re.compile(r"(?:[A-Z]\.[- ]?)+(?:,? (?:Jr|II)\.?)?")
 
 
 def formula(text: str) -> str:
@@ -43,30 +66,50 @@ def formula(text: str) -> str:
 
 def column_words(name: str) -> str:
     """A column name as a person says it: ``feo_titrated_wt`` is ``FeO titrated``, ``sn_ppm`` is ``Sn``."""
-    base = name.removesuffix("_wt").removesuffix("_ppm")
-    closed = base.endswith("_vf")
-    words = base.removesuffix("_vf").split("_")
-    known = {
-        "sio2": "SiO2", "tio2": "TiO2", "al2o3": "Al2O3", "fe2o3": "Fe2O3", "fe2o3t": "total Fe2O3", "feo": "FeO",
-        "feot": "total FeO", "mno": "MnO", "mgo": "MgO", "cao": "CaO", "na2o": "Na2O", "k2o": "K2O", "p2o5": "P2O5",
-        "co2": "CO2", "loi": "LOI",
-    }  # fmt: skip
-    element = name.endswith("_ppm") or base in ("f", "s", "cl")
-    spelled = [known.get(word, word.capitalize() if element else word) for word in words]
-    return formula(" ".join(spelled)) + (" volatile-free" if closed else "")
+    if name in _NAMES:
+        return _NAMES[name]
+    element = name.endswith("_ppm") or name in ("f_wt", "s_wt", "cl_wt")
+    stem = next((name.removesuffix(end) for end in _UNIT_ENDS if name.endswith(end)), name)
+    closed = stem.endswith("_vf")
+    words = stem.removesuffix("_vf").split("_")
+    spelled = " ".join(_SPELLINGS.get(word, word.capitalize() if element else word) for word in words)
+    return formula(spelled) + (" volatile-free" if closed else "")
 
 
-def readable(test: str) -> str:
-    """A test of a target's definition in print: ``≥ 35``, ``≤ 0.5 La``, ``from 40 to 88``, ``magnetite``."""
-    if test.startswith("between "):
-        return "from " + test.removeprefix("between ").replace(" and ", " to ")
-    spelled = test.removeprefix("= ").replace(">=", "≥").replace("<=", "≤")
-    return _COLUMN.sub(lambda found: column_words(found.group()), spelled)
+def readable(text: str) -> str:
+    """A test or sentence in print: ``≥ 35``, ``≤ 0.5 La``, ``from 40 to 88``, ``is magnetite``; no column names."""
+    if text.startswith("between "):
+        return "from " + text.removeprefix("between ").replace(" and ", " to ")
+    if text == "= yes":
+        return "yes"
+    if text.startswith("= "):
+        return "is " + text.removeprefix("= ").replace(", ", " or ")
+    for written, printed in _PRINTED:
+        text = text.replace(written, printed)
+    return formula(_COLUMN.sub(lambda found: column_words(found.group()), text))
+
+
+def unit_words(unit: str) -> str:
+    """A unit in print; nothing for pure numbers and words."""
+    return "" if unit in ("1", "text") else _UNITS.get(unit, unit)
+
+
+def short_source(source: str) -> str:
+    """A citation as it stands in running text: ``Frost et al. 2001``; the first words where nobody is cited."""
+    cited = _CITED.match(source)
+    if cited is None or source.lower().startswith(("common practice", "convention")):
+        return re.split(r"[:;.]", source, maxsplit=1)[0]
+    parts = re.split(r", | and | & ", cited["authors"].strip())
+    names = [part for part in parts if not _INITIALS.fullmatch(part) and part]
+    who = names[0] if len(names) == 1 else f"{names[0]} and {names[1]}" if len(names) == 2 else f"{names[0]} et al."
+    return f"{who} {cited['year']}"
 
 
 def register(app: Flask) -> None:
     """Make the spellings known to the templates."""
-    app.jinja_env.filters.update(formula=formula, column_words=column_words, readable=readable)
+    app.jinja_env.filters.update(
+        formula=formula, column_words=column_words, readable=readable, unit_words=unit_words, short_source=short_source
+    )
 
 
 def joined(words: Sequence[str], last: str = "and") -> str:
@@ -76,12 +119,13 @@ def joined(words: Sequence[str], last: str = "and") -> str:
 
 def unit_after(unit: str) -> str:
     """A unit as it follows a number; nothing for pure numbers and words."""
-    return "" if unit in ("1", "text") else f"\N{NO-BREAK SPACE}{unit}"
+    words = unit_words(unit)
+    return f"\N{NO-BREAK SPACE}{words}" if words else ""
 
 
 def kind_words(asked: Filter) -> str:
-    """Before the noun: ``core and outcrop``; ``rock and control`` where every kind is shown."""
-    return joined([KIND_WORDS[kind] for kind in asked.kind]) if asked.kind else "rock and control"
+    """Before the noun: ``core and outcrop``; after it, where every kind is shown: ``of every kind``."""
+    return joined([KIND_WORDS[kind] for kind in asked.kind]) if asked.kind else "of every kind"
 
 
 def place_words(asked: Filter) -> str:
@@ -101,6 +145,7 @@ def verdict_words(asked: Filter, targets: Mapping[str, str]) -> str:
     words = joined(asked.verdict, "or") if asked.verdict else ""
     if asked.target:
         name = targets[asked.target]
+        name = name[:1].lower() + name[1:]
         return f"{name} {words}" if words else f"judged for {name}"
     return f"{words} as best verdict"
 

@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-import json
 from collections.abc import Iterator
 from pathlib import Path
 from typing import Any
@@ -14,10 +13,8 @@ from flask import Flask
 from flask.testing import FlaskClient
 
 from registry.judging import install_shipped_definitions
-from registry.petrology.analytes import CHOSEN_COLUMNS, CHOSEN_INDEX
-from registry.petrology.conventions import Conventions
-from registry.petrology.digestion import DIGESTION_CODE, DIGESTION_LETTERS
-from registry.pipeline import compute, empty_chunk
+from registry.petrology.analytes import ELEMENT_SYMBOLS, OXIDE_SYMBOLS
+from registry.refresh import drain
 from registry.store import schema, tables
 from registry.store.engine import Registry
 from registry.targets.definition import load_definitions
@@ -25,7 +22,10 @@ from web import create_app
 
 HOSTILE = '<script>alert("x")</script>&amp;'
 _OXIDES = ("sio2_wt", "tio2_wt", "al2o3_wt", "fe2o3t_reported_wt", "mno_wt", "mgo_wt", "cao_wt", "na2o_wt", "k2o_wt")
-_TRACES = "p2o5_wt loi_wt sr_ppm y_ppm la_ppm yb_ppm nb_ppm zr_ppm rb_ppm ba_ppm v_ppm sc_ppm th_ppm u_ppm cr_ppm ni_ppm".split()
+_TRACES = (
+    "p2o5_wt", "loi_wt", "sr_ppm", "y_ppm", "la_ppm", "yb_ppm", "nb_ppm", "zr_ppm", "rb_ppm", "ba_ppm", "v_ppm",
+    "sc_ppm", "th_ppm", "u_ppm", "cr_ppm", "ni_ppm",
+)  # fmt: skip
 #: Invented analyses, in the order of _OXIDES and _TRACES.
 ROCKS = {
     "granodiorite": (
@@ -96,21 +96,32 @@ def _samples(connection: Any, places: dict[str, dict[str, int]], count: int) -> 
     return rows
 
 
+#: Analyte of a results column by the name in ROCKS.
+_ANALYTES = {"fe2o3t_reported_wt": "Fe2O3T"}
+
+
+def _analyte(name: str) -> tuple[str, str]:
+    stem, _, unit = name.rpartition("_")
+    symbols = {symbol.lower(): symbol for symbol in (*OXIDE_SYMBOLS, *ELEMENT_SYMBOLS)}
+    return _ANALYTES.get(name) or symbols[stem], "wt%" if unit == "wt" else "ppm"
+
+
 def _batch(connection: Any, rows: list[dict[str, Any]]) -> None:
+    """One certificate: majors by XRF, traces by fusion, Zr by four-acid (a minimum); some Nb below its limit."""
     batch = _insert(
         connection, tables.batch, code="Q-2041", lab="Invented Laboratory", certificate="Q-2041",
         reported_on="2026-03-02", imported_at="2026-03-04T09:12:00Z", imported_by="tester", file_name="q2041.csv",
         sha256="0" * 64,
     )  # fmt: skip
-    columns = [
-        _insert(
-            connection, tables.batch_column, batch_id=batch, position=position, header=header, analyte=analyte,
-            unit=unit, method="fused bead", digestion=digestion, detection_limit=limit,
-        )
-        for position, (header, analyte, unit, digestion, limit) in enumerate(
-            (("SiO2 (%)", "SiO2", "wt%", "xrf", 0.01), ("Zr ppm", "Zr", "ppm", "fusion", 2.0))
-        )
-    ]  # fmt: skip
+    columns = {}
+    for position, name in enumerate((*_OXIDES, *_TRACES)):
+        analyte, unit = _analyte(name)
+        digestion = "xrf" if name in _OXIDES else "four_acid" if name == "zr_ppm" else "fusion"
+        columns[name] = _insert(
+            connection, tables.batch_column, batch_id=batch, position=position, header=f"{analyte} ({unit})",
+            analyte=analyte, unit=unit, method="invented method", digestion=digestion, detection_limit=0.01,
+        )  # fmt: skip
+    noise = np.random.default_rng(7)
     for line, row in enumerate(rows, 2):
         if row["rock"] is None:
             continue
@@ -118,78 +129,15 @@ def _batch(connection: Any, rows: list[dict[str, Any]]) -> None:
             connection, tables.aliquot, sample_id=row["sample_id"], batch_id=batch, line_no=line,
             kind="control" if row["kind"] in CONTROLS else "original",
         )  # fmt: skip
-        for column, (value, qualifier) in zip(columns, ((ROCKS[row["rock"]][0][0], 0), (5.0, 1)), strict=True):
-            connection.execute(
-                sa.insert(tables.result).values(aliquot_id=aliquot, column_id=column, value=value, qualifier=qualifier)
-            )
-
-
-def _computed(connection: Any, rows: list[dict[str, Any]]) -> None:
-    """Composition, derived values and verdicts, by the pipeline that every import uses."""
-    analysed = [row for row in rows if row["rock"]]
-    chunk = empty_chunk(len(analysed))
-    chunk.sample_id[:] = [row["sample_id"] for row in analysed]
-    noise = np.random.default_rng(7)
-    for n, row in enumerate(analysed):
         oxides, traces = ROCKS[row["rock"]]
-        for names, values, digestion in ((_OXIDES, oxides, "xrf"), (_TRACES, traces, "fusion")):
-            for name, value in zip(names, values, strict=True):
-                place = CHOSEN_INDEX[name]
-                chunk.values[place, n] = round(value * (1 + 0.02 * noise.standard_normal()), 2) if value < 40 else value
-                chunk.digestions[place, n] = DIGESTION_CODE[digestion]
-        if n % 5 == 0:
-            chunk.qualifiers[CHOSEN_INDEX["nb_ppm"], n] = 1
-        chunk.digestions[CHOSEN_INDEX["zr_ppm"], n] = DIGESTION_CODE["four_acid"]
-    texts = {"sample_kind": "kind", "lithology": "lithology", "texture": "texture"}
-    chunk.context = {
-        **{name: np.array([row.get(key) for row in analysed], dtype=object) for name, key in texts.items()},
-        "has_intrusion": np.array([row.get("intrusion_id") is not None for row in analysed]),
-        "magnetic_susceptibility_si": np.array(
-            [row.get("magnetic_susceptibility_si") or np.nan for row in analysed], dtype=float
-        ),
-    }
-    conventions = Conventions()
-    definitions = tuple(load_definitions().values())
-    install_shipped_definitions(connection, definitions)
-    computed = compute(chunk, definitions, conventions)
-    convention_set = _insert(
-        connection, tables.convention_set, conventions=json.dumps(conventions.as_dict()), created_at="2026-03-04T09:12:00Z"
-    )
-    targets = {row.code: row for row in connection.execute(sa.select(tables.target))}
-    versions = {row.target_id: row for row in connection.execute(sa.select(tables.target_version))}
-    words = ["favourable", "possible", "unfavourable", "undecided"]
-    for n, row in enumerate(analysed):
-        values = chunk.values[:, n]
-        connection.execute(
-            sa.insert(tables.composition).values(
-                sample_id=row["sample_id"],
-                **{name: value for name, value in zip(CHOSEN_COLUMNS, values.tolist(), strict=True)},
-                qualifiers="".join(".<>"[code] for code in chunk.qualifiers[:, n]),
-                digestions="".join(DIGESTION_LETTERS[code] for code in chunk.digestions[:, n]),
-                censored="nb_ppm<" if chunk.qualifiers[CHOSEN_INDEX["nb_ppm"], n] else None,
+        for name, value in zip((*_OXIDES, *_TRACES), (*oxides, *traces), strict=True):
+            below = name == "nb_ppm" and line % 5 == 2
+            varied = value if value >= 40 else round(value * (1 + 0.02 * noise.standard_normal()), 2)
+            connection.execute(
+                sa.insert(tables.result).values(
+                    aliquot_id=aliquot, column_id=columns[name], value=varied, qualifier=int(below)
+                )
             )
-        )
-        best = computed.best_verdict[n]
-        connection.execute(
-            sa.insert(tables.derived).values(
-                sample_id=row["sample_id"], **{name: column[n] for name, column in computed.derived.items() if name in tables.derived.c},
-                causes=computed.causes[n].tobytes().decode(), warnings=computed.warnings[n].tobytes().decode(),
-                convention_set_id=convention_set, method_version="1", best_target=computed.best_target[n],
-                best_verdict=words.index(best) if isinstance(best, str) else best,
-            )
-        )  # fmt: skip
-        for code, verdicts in computed.verdicts.items():
-            if verdicts.judged[n]:
-                target = targets[code]
-                connection.execute(
-                    sa.insert(tables.verdict).values(
-                        sample_id=row["sample_id"], target_id=target.target_id,
-                        target_version_id=versions[target.target_id].target_version_id,
-                        verdict=int(verdicts.verdict[n]), score_min=verdicts.score_min[n],
-                        score_max=verdicts.score_max[n], coverage=verdicts.coverage[n],
-                        provisional=int(verdicts.provisional[n]), reasons=verdicts.reasons[n],
-                    )
-                )  # fmt: skip
 
 
 def build_registry(path: Path, count: int = 120) -> Registry:
@@ -198,8 +146,8 @@ def build_registry(path: Path, count: int = 120) -> Registry:
     def fill(connection: Any) -> None:
         rows = _samples(connection, _places(connection), count)
         _batch(connection, rows)
-        _computed(connection, rows)
-        connection.execute(sa.delete(tables.stale))
+        install_shipped_definitions(connection, tuple(load_definitions().values()))
+        drain(connection)
         connection.execute(sa.insert(tables.stale).values(sample_id=rows[2]["sample_id"], level=1))
 
     return schema.create(path, fill)

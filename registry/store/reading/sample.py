@@ -113,6 +113,24 @@ def chosen_values(connection: Connection, sample_id: int) -> list[dict[str, Any]
     return found
 
 
+def derived_row(connection: Connection, sample_id: int) -> dict[str, Any]:
+    """The derived quantities of a sample with its packed qualifiers and digestions, and its conventions as JSON."""
+    rows = _rows(
+        connection,
+        """
+        SELECT derived.*, composition.qualifiers, composition.digestions, convention_set.conventions,
+            intrusion.name AS intrusion
+        FROM derived JOIN sample ON sample.sample_id = derived.sample_id
+        LEFT JOIN composition ON composition.sample_id = derived.sample_id
+        LEFT JOIN intrusion ON intrusion.intrusion_id = sample.intrusion_id
+        LEFT JOIN convention_set ON convention_set.convention_set_id = derived.convention_set_id
+        WHERE derived.sample_id = :sample_id
+        """,
+        sample_id=sample_id,
+    )
+    return rows[0] if rows else {}
+
+
 def verdict_rows(connection: Connection, sample_id: int) -> list[dict[str, Any]]:
     """The verdicts on a sample, favourable ones first, each with its target's definition and its packed reasons."""
     rows = _rows(
