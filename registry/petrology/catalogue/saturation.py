@@ -57,8 +57,9 @@ def _apatite_usable(m: Any, sio2: Any, a_nk: Any) -> Any:
 
 
 def _monazite_d(*values: Any) -> Any:
-    *oxides, lithium = values
-    return monazite_d(*oxides, np.where(np.isnan(lithium), 0.0, lithium))
+    lithium = values[-1]
+    arguments = (*values[:-1], np.where(np.isnan(lithium), 0.0, lithium))
+    return monazite_d(*arguments)
 
 
 def _maimaiti(la: Any, ce: Any, pr: Any, nd: Any, sm: Any, d: Any, h2o: Any, conventions: Any) -> Any:
