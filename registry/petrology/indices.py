@@ -155,19 +155,6 @@ def rittmann_index(sio2_wt: ArrayLike, na2o_wt: ArrayLike, k2o_wt: ArrayLike) ->
     return quotient((na2o + k2o) ** 2, sio2 - RITTMANN_SIO2_WT)
 
 
-def rayleigh_liquid_fraction(parent_ppm: ArrayLike, liquid_ppm: ArrayLike, partition: ArrayLike = 0.0) -> Floats:
-    """Liquid left F after fractional crystallization, from C = C0 F^(D - 1): F = (C0/C)^(1/(1 - D)).
-
-    ppm of one element in the parent and in the liquid; D below 1. NaN where D is 1 or more.
-    Derivable; after [rayleigh1896].
-    """
-    ratio, bulk = floats(quotient(parent_ppm, liquid_ppm), partition)
-    result = np.full(ratio.shape, np.nan)
-    usable = (bulk < 1.0) & (ratio > 0.0)
-    np.power(ratio, quotient(1.0, 1.0 - bulk), out=result, where=usable)
-    return result
-
-
 def alkali_lime_index(sio2_wt: ArrayLike, cao_wt: ArrayLike, alkalis_wt: ArrayLike) -> float:
     """Peacock's alkali-lime index of a suite: SiO2 (wt%) at which CaO = Na2O + K2O, by a straight-line fit.
 
