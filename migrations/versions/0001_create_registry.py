@@ -36,24 +36,27 @@ z_wt or_wt ab_wt an_wt lc_wt ne_wt kp_wt hl_wt th_wt ac_wt ns_wt ks_wt di_wt wo_
 il_wt tn_wt pf_wt ru_wt ap_wt fr_wt pr_wt cc_wt di_wo_wt di_en_wt di_fs_wt hy_en_wt hy_fs_wt ol_fo_wt ol_fa_wt
 norm_total_wt norm_residual_wt norm_basis q_cat c_cat z_cat or_cat ab_cat an_cat lc_cat ne_cat kp_cat hl_cat th_cat
 ac_cat ns_cat ks_cat di_cat wo_cat hy_cat ol_cat cs_cat mt_cat cm_cat hm_cat il_cat tn_cat pf_cat ru_cat ap_cat fr_cat
-pr_cat cc_cat mg_number mg_number_total_iron differentiation_index solidification_index larsen_index
-crystallization_index felsic_index mafic_index a_cnk a_nk asi agpaitic_index mali fe_number rittmann_index r1 r2
-q_prime anor eu_anomaly ce_anomaly la_yb la_yb_n k_rb rb_sr nb_ta zr_hf sr_y v_sc fe2o3_feo ga_al_10000 delta_ox cu_zr
-cu_pd pd_pt zr_tio2 nb_y al2o3_tio2 ti_zr th_yb zr_y y_nb y_ho zr_nb_ce_y fssi f_prime hughes_x cia alteration_index
-ccpi silica_class tas_volcanic tas_plutonic tas_subname a_type k2o_series afm_series alkalinity alumina_class fe_class
-mali_class granite_field redox_series fitness fitness_cause h2o_wt liquidus_c liquidus_model liquidus_cause
-liquidus_low_c liquidus_high_c liquidus_helz_thornber_c liquidus_putirka13_c liquidus_putirka14_c liquidus_putirka15_c
-liquidus_putirka22_c liquidus_beattie_c liquidus_sugawara_c liquidus_makhluf_c liquidus_duan_c
-zircon_saturation_wh83_c zircon_saturation_b13_c zircon_saturation_shao_c saturation_hfse_c apatite_saturation_c
-monazite_saturation_c monazite_saturation_maimaiti_c melt_density_kg_m3 melt_viscosity_log10_pa_s
-melt_viscosity_shaw_log10_pa_s stokes_velocity_m_per_yr dyke_velocity_m_per_s ascent_outcome ascent_cause
-heat_production_uw_m3 heat_production_cause
+pr_cat cc_cat di_wo_cat di_en_cat di_fs_cat hy_en_cat hy_fs_cat ol_fo_cat ol_fa_cat mg_number mg_number_total_iron
+differentiation_index solidification_index larsen_index crystallization_index felsic_index mafic_index a_cnk a_nk asi
+agpaitic_index mali fe_number rittmann_index r1 r2 q_prime anor eu_anomaly ce_anomaly la_yb la_yb_n k_rb rb_sr nb_ta
+zr_hf sr_y v_sc fe2o3_feo ga_al_10000 delta_ox cu_zr cu_pd pd_pt zr_tio2 nb_y al2o3_tio2 ti_zr th_yb zr_y y_nb y_ho
+zr_nb_ce_y fssi f_prime hughes_x cia alteration_index ccpi silica_class tas_volcanic tas_plutonic tas_subname a_type
+k2o_series afm_series alkalinity alumina_class fe_class mali_class granite_field redox_series fitness fitness_cause
+h2o_wt liquidus_c liquidus_model liquidus_cause liquidus_low_c liquidus_high_c liquidus_helz_thornber_c
+liquidus_putirka13_c liquidus_putirka14_c liquidus_putirka15_c liquidus_putirka22_c liquidus_beattie_c
+liquidus_sugawara_c liquidus_makhluf_c liquidus_duan_c zircon_saturation_wh83_c zircon_saturation_b13_c
+zircon_saturation_shao_c saturation_hfse_c apatite_saturation_c monazite_saturation_c monazite_saturation_maimaiti_c
+melt_density_kg_m3 melt_viscosity_log10_pa_s melt_viscosity_shaw_log10_pa_s stokes_velocity_m_per_yr
+dyke_velocity_m_per_s ascent_outcome ascent_cause heat_production_uw_m3 heat_production_cause theta_centre
+theta_centre_low theta_centre_high heat_x_thickness_mw_m2 not_a_liquid olivine_d_mg olivine_c_nm olivine_c_sio2
+olivine_nf zircon_m monazite_d heat_production_density_kg_m3 redox_evidence zircon_saturation_usable
+apatite_saturation_usable density_contrast_kg_m3
 """
 #: Those of the derived quantities that hold words.
 DERIVED_TEXT_COLUMNS = """
 iron_basis norm_basis silica_class tas_volcanic tas_plutonic tas_subname a_type k2o_series afm_series alkalinity
 alumina_class fe_class mali_class granite_field redox_series fitness fitness_cause liquidus_model liquidus_cause
-ascent_outcome ascent_cause heat_production_cause
+ascent_outcome ascent_cause heat_production_cause redox_evidence
 """
 
 NAMING = {

@@ -205,22 +205,43 @@ def write_derived(
 
 
 def write_verdicts(
-    connection: sa.Connection, sample_ids: np.ndarray, target_id: int, target_version_id: int, verdicts: Judged
+    connection: sa.Connection,
+    sample_ids: np.ndarray,
+    judged_targets: Sequence[tuple[int, int, Judged]],
 ) -> None:
-    """Upsert one target's verdicts on n samples; where ``judged`` is false an earlier verdict is deleted."""
+    """Upsert the verdicts of several targets on n samples; where ``judged`` is false earlier verdicts are deleted.
+
+    ``judged_targets``: (target id, target version id, verdicts). Rows are written in key order (sample, then target),
+    which keeps the table half as large as target after target.
+    """
     ids = np.asarray(sample_ids, dtype=np.int64)
-    judged = np.asarray(verdicts.judged, dtype=bool)
-    if not judged.all():
-        raw_rows.select(
-            connection, f"DELETE FROM verdict WHERE target_id = {int(target_id)} AND sample_id {{ids}}", ids[~judged]
-        )
     sqlite = raw_rows.is_sqlite(connection)
+    by_mask: dict[bytes, list[tuple[int, int, Judged]]] = {}
+    for entry in sorted(judged_targets, key=lambda entry: entry[0]):
+        by_mask.setdefault(np.asarray(entry[2].judged, dtype=bool).tobytes(), []).append(entry)
+    for mask, entries in by_mask.items():
+        judged = np.frombuffer(mask, dtype=bool)
+        if not judged.all():
+            targets = ", ".join(str(int(target_id)) for target_id, _, _ in entries)
+            raw_rows.select(
+                connection, f"DELETE FROM verdict WHERE target_id IN ({targets}) AND sample_id {{ids}}", ids[~judged]
+            )
+        parts = [_verdict_columns(ids, judged, *entry, sqlite) for entry in entries]
+        columns = {name: _interleaved([part[name] for part in parts]) for name in parts[0]}
+        raw_rows.upsert(
+            connection, "verdict", ("sample_id", "target_id"), list(columns), list(columns.values()), ("probability",)
+        )
+
+
+def _verdict_columns(
+    ids: np.ndarray, judged: np.ndarray, target_id: int, version_id: int, verdicts: Judged, sqlite: bool
+) -> dict[str, list[Any]]:
     n = int(judged.sum())
     reasons = list(verdicts.reasons)
-    columns: dict[str, list[Any]] = {
+    return {
         "sample_id": ids[judged].tolist(),
         "target_id": [int(target_id)] * n,
-        "target_version_id": [int(target_version_id)] * n,
+        "target_version_id": [int(version_id)] * n,
         "verdict": cells("verdict", verdicts.verdict[judged], sqlite),
         "score_min": cells("score_min", verdicts.score_min[judged], sqlite),
         "score_max": cells("score_max", verdicts.score_max[judged], sqlite),
@@ -229,9 +250,14 @@ def write_verdicts(
         "provisional": cells("provisional", verdicts.provisional[judged], sqlite),
         "reasons": reasons if n == len(reasons) else [reasons[row] for row in np.flatnonzero(judged).tolist()],
     }
-    raw_rows.upsert(
-        connection, "verdict", ("sample_id", "target_id"), list(columns), list(columns.values()), ("probability",)
-    )
+
+
+def _interleaved(lists: list[list[Any]]) -> list[Any]:
+    """The lists (all of one length) row by row: the first of each, then the second of each, ..."""
+    mixed: list[Any] = [None] * sum(map(len, lists))
+    for offset, values in enumerate(lists):
+        mixed[offset :: len(lists)] = values
+    return mixed
 
 
 def verdicts_of(connection: sa.Connection, sample_ids: Any) -> VerdictCodes:

@@ -79,10 +79,6 @@ MEANINGS: dict[str, Words] = {
     "half_width_m": _entered("m", "radius, or half the thickness of a slab"),
     "age_ma": _entered("Ma", "age"),
     "samples": _counted("1", "number of samples from this intrusion", "counted"),
-    "theta_centre": _counted("1", "share of the first excess temperature left at the centre", "not yet computed"),
-    "theta_centre_low": _counted("1", "the same at the low end of what is uncertain", "not yet computed"),
-    "theta_centre_high": _counted("1", "the same at the high end of what is uncertain", "not yet computed"),
-    "heat_x_thickness_mw_m2": _counted("mW/m2", "heat production times thickness", "not yet computed"),
     "trend_quality": _counted("text", "how well its samples form one series", "not yet computed"),
     "heat_flow_mw_m2": _entered("mW/m2", "surface heat flow"),
     "surface_temperature_c": _entered("degC", "mean temperature of the ground surface"),
@@ -123,6 +119,9 @@ BY_VIEW: dict[tuple[str, str], Words] = {
     ("warning_sheet", "text"): _counted("text", "the remark in words, with its number"),
     ("change_sheet", "cause"): _counted("text", "batch, edit, setting or version that changed it"),
     ("area_sheet", "heat_production_uw_m3"): _entered("uW/m3", "crustal heat production at the surface"),
+    ("intrusion_sheet", "heat_x_thickness_mw_m2"): _counted(
+        "mW/m2", "heat production times thickness, the mean of its samples", "mean of heat_x_thickness of its samples"
+    ),
     ("suite_sheet", "unit"): _counted("text", "unit of the value", "not yet computed"),
     ("column_guide", "method"): _counted("text", "how the value comes about"),
     ("column_guide", "unit"): _counted("text", "unit; text for words, 1 for pure numbers"),

@@ -91,6 +91,7 @@ def open_registry(path_or_url: str | Path, *, any_revision: bool = False) -> Reg
     registry = Registry(url, path)
     revision = _file_revision(path) if path is not None else _server_revision(registry)
     if not any_revision and revision != HEAD_REVISION:
+        registry.close()
         name = path if path is not None else sa.make_url(url).render_as_string()
         if revision > HEAD_REVISION:
             raise PlutonbookError(

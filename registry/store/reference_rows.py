@@ -28,10 +28,7 @@ def sync_catalogue(
     the references of ``registry.petrology``.
     """
     if methods is None or warnings is None or causes is None:
-        try:
-            from registry.petrology import catalogue
-        except ModuleNotFoundError:  # until every topic of the catalogue is written
-            return sync_catalogue(connection, (), (), {}, {})
+        from registry.petrology import catalogue
 
         methods = catalogue.METHODS if methods is None else methods
         warnings = catalogue.WARNINGS if warnings is None else warnings

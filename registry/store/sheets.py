@@ -31,7 +31,10 @@ NORM_COLUMNS = (
     *(f"{mineral}_wt" for mineral in MINERALS),
     *_names("di_wo_wt di_en_wt di_fs_wt hy_en_wt hy_fs_wt ol_fo_wt ol_fa_wt norm_total_wt norm_residual_wt norm_basis"),
 )
-CATION_NORM_COLUMNS = tuple(f"{mineral}_cat" for mineral in MINERALS)
+CATION_NORM_COLUMNS = (
+    *(f"{mineral}_cat" for mineral in MINERALS),
+    *_names("di_wo_cat di_en_cat di_fs_cat hy_en_cat hy_fs_cat ol_fo_cat ol_fa_cat"),
+)
 INDEX_COLUMNS = _names(
     "mg_number mg_number_total_iron differentiation_index solidification_index larsen_index "
     "crystallization_index felsic_index mafic_index a_cnk a_nk asi agpaitic_index mali fe_number "
@@ -57,6 +60,15 @@ MELT_COLUMNS = (
 #: Columns of the composition sheet that are computed: they stand in the derived table.
 COMPUTED_IRON_COLUMNS = ("fe2o3t_wt", "feot_wt", "fe2o3_wt", "feo_wt", "iron_basis", "total_wt")
 
+#: Computed for each sample and shown by intrusion.
+BODY_COLUMNS = _names("theta_centre theta_centre_low theta_centre_high heat_x_thickness_mw_m2")
+#: Computed on the way to the columns of the sheets; stored since warnings and reasons name their numbers.
+ON_THE_WAY_COLUMNS = _names(
+    "not_a_liquid olivine_d_mg olivine_c_nm olivine_c_sio2 olivine_nf zircon_m monazite_d "
+    "heat_production_density_kg_m3 redox_evidence zircon_saturation_usable apatite_saturation_usable "
+    "density_contrast_kg_m3"
+)
+
 #: Every column of the derived table that a method of the catalogue fills.
 DERIVED_COLUMNS = (
     *COMPUTED_IRON_COLUMNS,
@@ -66,6 +78,8 @@ DERIVED_COLUMNS = (
     *INDEX_COLUMNS,
     *CLASS_COLUMNS,
     *MELT_COLUMNS,
+    *BODY_COLUMNS,
+    *ON_THE_WAY_COLUMNS,
 )
 #: Those of them that hold words.
 DERIVED_TEXT_COLUMNS = frozenset(
@@ -78,6 +92,7 @@ DERIVED_TEXT_COLUMNS = frozenset(
         "ascent_outcome",
         "ascent_cause",
         "heat_production_cause",
+        "redox_evidence",
     )
 )
 

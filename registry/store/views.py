@@ -10,6 +10,7 @@ import sqlalchemy as sa
 from registry.petrology.analytes import CHOSEN_COLUMNS, QUALIFIER_SIGNS
 from registry.store import dialect_postgresql, dialect_sqlite, tables
 from registry.store.sheets import (
+    BODY_COLUMNS,
     CONTROL_KINDS,
     DERIVED_COLUMNS,
     DERIVED_SHEETS,
@@ -185,6 +186,8 @@ def _register_sheets(dialect: Any, sample: dict[str, str]) -> dict[str, tuple[di
     """What was entered: results, batches, intrusions, areas; and the sheets whose methods come later."""
     number, text = dialect.NULL_NUMBER, dialect.NULL_TEXT
     nothing = "(SELECT 1 AS one) AS n WHERE 1 = 0"
+    of_body = f"sample AS s JOIN derived AS d ON d.sample_id = s.sample_id AND {_JUDGED} "
+    of_body += "WHERE s.intrusion_id = i.intrusion_id"
     signs = {code: sign for code, sign in enumerate(QUALIFIER_SIGNS) if sign}
     later = {column: number for column in ("change_wt", "change_percent", "isocon_slope", "quantity", "value", "z")}
     return {
@@ -209,10 +212,10 @@ def _register_sheets(dialect: Any, sample: dict[str, str]) -> dict[str, tuple[di
         "intrusion_sheet": (
             {
                 **_each("i", "shape half_width_m age_ma"),
-                **{name: number for name in ["theta_centre", "theta_centre_low", "theta_centre_high"]},
+                **{name: f"(SELECT max(d.{name}) FROM {of_body})" for name in BODY_COLUMNS[:3]},
                 "intrusion": "i.name",
                 "area": "a.name",
-                "heat_x_thickness_mw_m2": number,
+                "heat_x_thickness_mw_m2": f"(SELECT avg(d.heat_x_thickness_mw_m2) FROM {of_body})",
                 "samples": "(SELECT count(*) FROM sample AS s WHERE s.intrusion_id = i.intrusion_id)",
                 "trend_quality": text,
             },

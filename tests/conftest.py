@@ -1,0 +1,227 @@
+"""Fixtures that several parts share: registries made by the migrations, a private PostgreSQL server, a browser.
+
+What is not installed is skipped with the reason; where the variable CI is set it fails instead, so that CI never
+passes by leaving something out.
+"""
+
+from __future__ import annotations
+
+import os
+import pwd
+import shutil
+import subprocess
+import tempfile
+from collections.abc import Callable, Iterator
+from pathlib import Path
+from typing import Any, NoReturn
+
+import pytest
+import sqlalchemy as sa
+
+from registry.founding import found
+from registry.store import schema
+from registry.store.engine import Registry
+
+ENGINES = ["sqlite", pytest.param("postgresql", marks=pytest.mark.postgresql)]
+
+
+def absent(what: str) -> NoReturn:
+    """Skip with the reason; in CI fail."""
+    if os.environ.get("CI"):
+        pytest.fail(f"{what}; CI must have it")
+    pytest.skip(what)
+
+
+class PostgresqlServer:
+    """A private cluster on a unix socket in a folder of its own, run by an unprivileged user."""
+
+    def __init__(self, programs: Path, user: str | None) -> None:
+        self._programs, self._user = programs, user
+        self.folder = Path(tempfile.mkdtemp(prefix="plutonbook-pg-", dir="/tmp"))
+        self.folder.chmod(0o755)
+        if user is not None:
+            shutil.chown(self.folder, user)
+        self._databases = 0
+        self._template: str | None = None
+        data = str(self.folder / "data")
+        self._run("initdb", "-D", data, "-U", "plutonbook", "-A", "trust", "-E", "UTF8", "--locale=C", "--no-sync")
+        options = f"-c listen_addresses='' -c unix_socket_directories='{self.folder}' -c fsync=off"
+        log = str(self.folder / "log")
+        self._run("pg_ctl", "-D", data, "-w", "-t", "60", "-l", log, "-o", options, "start")
+
+    def _run(self, program: str, *arguments: str) -> None:
+        done = subprocess.run(
+            [str(self._programs / program), *arguments],
+            user=self._user,
+            extra_groups=[] if self._user else None,
+            cwd="/",
+            env={"PATH": os.environ["PATH"], "LC_ALL": "C"},
+            stdin=subprocess.DEVNULL,
+            stdout=subprocess.DEVNULL,
+            stderr=subprocess.PIPE,
+            text=True,
+            timeout=120,
+        )
+        assert done.returncode == 0, f"{program}: {done.stderr}"
+
+    def url(self, database: str) -> str:
+        return f"postgresql+psycopg://plutonbook@/{database}?host={self.folder}"
+
+    def new_database(self, template: str | None = None) -> str:
+        """The URL of a new database, empty or a copy of another of this server."""
+        self._databases += 1
+        name = f"test_{self._databases}"
+        engine = sa.create_engine(self.url("postgres"), isolation_level="AUTOCOMMIT")
+        with engine.connect() as connection:
+            copied = "" if template is None else f" TEMPLATE {template}"
+            connection.exec_driver_sql(f"CREATE DATABASE {name}{copied}")
+        engine.dispose()
+        return self.url(name)
+
+    def new_registry(self) -> str:
+        """The URL of a new database with an empty registry at the newest schema, copied from one made once."""
+        if self._template is None:
+            url = self.new_database()
+            schema.create(url).close()
+            self._template = sa.make_url(url).database
+        return self.new_database(self._template)
+
+    def stop(self) -> None:
+        self._run("pg_ctl", "-D", str(self.folder / "data"), "-m", "immediate", "-w", "stop")
+        shutil.rmtree(self.folder, ignore_errors=True)
+
+
+def _postgresql_programs() -> Path:
+    found_there = sorted(Path("/usr/lib/postgresql").glob("*/bin/initdb"))
+    if not found_there:
+        absent("Debian's postgresql is not installed (/usr/lib/postgresql/*/bin)")
+    return found_there[-1].parent
+
+
+@pytest.fixture(scope="session")
+def postgresql_server() -> Iterator[PostgresqlServer]:
+    """One server a test session (a worker of its own each with xdist)."""
+    programs = _postgresql_programs()
+    user = None
+    if os.geteuid() == 0:
+        try:
+            user = pwd.getpwnam("postgres").pw_name
+        except KeyError:
+            absent("PostgreSQL refuses to run as root and there is no user postgres")
+    server = PostgresqlServer(programs, user)
+    yield server
+    server.stop()
+
+
+@pytest.fixture(scope="session")
+def empty_registry_file(tmp_path_factory: pytest.TempPathFactory) -> Path:
+    """An empty registry at the newest schema, made once by the migrations; copy it, do not write it."""
+    path = tmp_path_factory.mktemp("template") / "empty.sqlite"
+    _settled(schema.create(path))
+    return path
+
+
+@pytest.fixture(scope="session")
+def founded_registry_file(tmp_path_factory: pytest.TempPathFactory) -> Path:
+    """The same with the shipped targets copied in, as ``plutonbook create`` makes it; copy it, do not write it."""
+    path = tmp_path_factory.mktemp("template") / "founded.sqlite"
+    _settled(found(path))
+    return path
+
+
+def _settled(registry: Registry) -> None:
+    """Move everything from the write-ahead log into the file, so that the file alone can be copied."""
+    registry.close()
+    engine = registry.engine(foreign_keys=True, query_only=False)
+    driver = engine.raw_connection()
+    driver.driver_connection.execute("PRAGMA wal_checkpoint(TRUNCATE)")
+    driver.close()
+    engine.dispose()
+
+
+@pytest.fixture
+def registry_path(empty_registry_file: Path, tmp_path: Path) -> Path:
+    """The path of a new empty registry file."""
+    return Path(shutil.copy(empty_registry_file, tmp_path / "registry.sqlite"))
+
+
+@pytest.fixture
+def sqlite_registry(registry_path: Path) -> Iterator[Registry]:
+    """A new empty registry file, opened."""
+    registry = schema.open_registry(registry_path)
+    yield registry
+    registry.close()
+
+
+@pytest.fixture
+def founded_registry(founded_registry_file: Path, tmp_path: Path) -> Iterator[Registry]:
+    """A new registry file with the shipped targets, opened."""
+    registry = schema.open_registry(shutil.copy(founded_registry_file, tmp_path / "registry.sqlite"))
+    yield registry
+    registry.close()
+
+
+@pytest.fixture
+def postgresql_registry(postgresql_server: PostgresqlServer) -> Iterator[Registry]:
+    """A new empty registry in a database of its own."""
+    registry = schema.open_registry(postgresql_server.new_registry())
+    yield registry
+    registry.close()
+
+
+@pytest.fixture(params=ENGINES)
+def any_registry(request: pytest.FixtureRequest) -> Registry:
+    """An empty registry, once on SQLite and once on PostgreSQL."""
+    return request.getfixturevalue(f"{request.param}_registry")
+
+
+@pytest.fixture(params=ENGINES)
+def new_place(request: pytest.FixtureRequest, tmp_path: Path) -> str:
+    """A path or URL where a registry can be created, once for each engine."""
+    if request.param == "sqlite":
+        return str(tmp_path / "new.sqlite")
+    return request.getfixturevalue("postgresql_server").new_database()
+
+
+@pytest.fixture(scope="session")
+def browser(tmp_path_factory: pytest.TempPathFactory) -> Iterator[Any]:
+    """Debian's chromium, headless, that reaches nothing outside; one a session."""
+    chromium, driver = Path("/usr/bin/chromium"), Path("/usr/bin/chromedriver")
+    if not (chromium.exists() and driver.exists()):
+        absent("Debian's chromium and chromium-driver are not installed")
+    try:
+        from selenium import webdriver
+        from selenium.webdriver.chrome.service import Service
+    except ImportError:
+        absent("selenium is not installed (the extra named test brings it)")
+    options = webdriver.ChromeOptions()
+    options.binary_location = str(chromium)
+    for flag in (
+        "--headless",
+        "--no-sandbox",
+        "--disable-gpu",
+        "--disable-dev-shm-usage",
+        "--disable-background-networking",
+        "--disable-component-update",
+        "--disable-sync",
+        f"--user-data-dir={tmp_path_factory.mktemp('browser')}",
+    ):
+        options.add_argument(flag)
+    options.set_capability("goog:loggingPrefs", {"browser": "ALL"})
+    window = webdriver.Chrome(options=options, service=Service(str(driver)))
+    window.set_window_size(1280, 900)
+    yield window
+    window.quit()
+
+
+@pytest.fixture
+def client_program() -> Callable[[str], str]:
+    """The path of a Debian program such as sqlite3 or psql."""
+
+    def find(name: str) -> str:
+        path = shutil.which(name)
+        if path is None:
+            absent(f"Debian's {name} is not installed")
+        return path
+
+    return find
