@@ -138,8 +138,7 @@ def warned(code, **columns):
 
 @pytest.mark.parametrize(("sulphur", "expected"), [(0.51, True), (0.5, False), (np.nan, False)])
 def test_mg_number_sulphidic_rock_is_warned(sulphur, expected):
-    for name in ("mg_number", "mg_number_total_iron"):
-        assert warned(f"{name}_sulphidic", conventions=Conventions(), s_wt=sulphur, **{name: 57.0}) is expected
+    assert warned("mg_number_sulphidic", mg_number=57.0, s_wt=sulphur, conventions=Conventions()) is expected
 
 
 @pytest.mark.parametrize(("p2o5", "expected"), [(0.5, True), (0.1, False)])

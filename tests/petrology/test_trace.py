@@ -128,5 +128,10 @@ def test_sr_y_of_altered_rock_is_warned():
     assert warned("sr_y_altered", np.full(3, 40.0), loi, Conventions()) == [False, True, False]
 
 
-def test_cu_zr_of_sulphidic_rock_is_warned():
-    assert warned("cu_zr_sulphidic", np.full(2, 3.0), np.array([0.5, 0.6]), Conventions()) == [False, True]
+def test_ratio_of_a_partial_digestion_is_warned_where_the_element_stays_behind():
+    """Four acids leave zircon; they take Rb and Sr wholly (common practice)."""
+    acid, total = digestions("four_acid", "fusion"), digestions("fusion", "fusion")
+
+    assert warned("zr_hf_partial_digestion", np.full(2, 35.0), acid, total) == [True, False]
+    assert warned("zr_hf_partial_digestion", np.full(2, np.nan), acid, total) == [False, False]
+    assert warned("rb_sr_partial_digestion", np.full(2, 0.5), acid, acid) == [False, False]

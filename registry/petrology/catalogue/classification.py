@@ -83,7 +83,7 @@ METHODS = (
     Method(
         "a_type", "A-type granite", classification.a_type, ("ga_al_10000", "zr_nb_ce_y", "q_wt"),
         (_text("a_type", "A-type", "10000 Ga/Al above 2.6 and Zr + Nb + Ce + Y above 350 ppm"),),
-        "whalen1987", "limits of table 1 and fig. 1", "from memory", calibration=(Range("q_wt", 5.0, None),),
+        "whalen1987", "limits of table 1 and fig. 1", "from memory",
         note="Both limits are asked: highly fractionated I- and S-type granites pass on Ga/Al alone.",
         causes=(_NOT_GRANITIC,),
     ),
@@ -134,7 +134,7 @@ METHODS = (
         "granite_field", "tectonic field of a granite", granite_fields.granite_field,
         ("rb_ppm", "y_ppm", "nb_ppm", "q_wt"),
         (_text("granite_field", "Granite field", "tectonic field by Rb against Y + Nb"),),
-        "pearce1984", "fig. 4, Rb against Y + Nb", "from memory", calibration=(Range("q_wt", 5.0, None),),
+        "pearce1984", "fig. 4, Rb against Y + Nb", "from memory",
         note="Normative quartz above 5 wt% stands for modal quartz. Post-collision granites overlap all fields.",
         causes=(
             _NOT_GRANITIC,

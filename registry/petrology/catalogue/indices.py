@@ -7,7 +7,7 @@ from typing import Any
 import numpy as np
 
 from registry.petrology import granite_indices, indices, redox_series
-from registry.petrology.catalogue.records import Cause, Method, Quantity, Range, Warning
+from registry.petrology.catalogue.records import Cause, Method, Quantity, Warning
 from registry.petrology.catalogue.trace import ZERO_DENOMINATOR
 from registry.petrology.constants import FE2O3_FROM_FEO
 
@@ -164,7 +164,7 @@ METHODS = (
     Method(
         "rittmann_index", "Rittmann index", indices.rittmann_index, ("sio2_wt", "na2o_wt", "k2o_wt"),
         (_index("rittmann_index", "Rittmann index", "wt%", "(Na2O + K2O)^2/(SiO2 - 43), as analysed", 0.0),),
-        "rittmann1957", "definition", "published", calibration=(Range("sio2_wt", 43.0, None),),
+        "rittmann1957", "definition", "published",
         standard_error="that of the analysis",
         note="As analysed. Below 1.8 calcic, to 3.3 calc-alkaline, to 9 alkaline, above peralkaline (from memory).",
         causes=(Cause("silica_at_most_43", "SiO2 is at most 43 wt%: the index is not defined", _silica_too_low,
@@ -225,17 +225,6 @@ def _sulphidic(value: Any, sulphur: Any, conventions: Any) -> Any:
     return (sulphur > conventions.sulphur_warn_wt) & ~np.isnan(value)
 
 
-def _sulphide_warning(quantity: str) -> Warning:
-    return Warning(
-        f"{quantity}_sulphidic",
-        quantity,
-        "s_wt",
-        "S is {value} wt%: sulphide ties iron, so the Mg-number of the silicates is higher",
-        _sulphidic,
-        (quantity, "s_wt", "conventions"),
-    )
-
-
 def _phosphorus_exceeds_lime(value: Any, cao: Any, p2o5: Any) -> Any:
     return (granite_indices.silicate_calcium_moles(cao, p2o5) < 0.0) & ~np.isnan(value)
 
@@ -257,8 +246,14 @@ def _iron_altered(value: Any, loi: Any, conventions: Any) -> Any:
 
 
 WARNINGS = (
-    _sulphide_warning("mg_number"),
-    _sulphide_warning("mg_number_total_iron"),
+    Warning(
+        "mg_number_sulphidic",
+        "mg_number",
+        "s_wt",
+        "S is {value} wt%: sulphide ties iron, so the Mg-number of the silicates is higher",
+        _sulphidic,
+        ("mg_number", "s_wt", "conventions"),
+    ),
     phosphorus_warning("asi", "ASI"),
     Warning(
         "fe2o3_feo_altered",

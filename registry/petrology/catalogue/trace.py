@@ -8,8 +8,9 @@ from typing import Any
 
 import numpy as np
 
+from registry.petrology.analytes import CHOSEN_INDEX
 from registry.petrology.catalogue.records import Cause, Method, Quantity, Warning
-from registry.petrology.digestion import DIGESTIONS, FUSION, INAA, XRF
+from registry.petrology.digestion import CARRIES, DIGESTIONS, FUSION, INAA, MINIMUM, XRF
 from registry.petrology.trace import RATIOS, ce_anomaly, element_ratio, eu_anomaly, zr_nb_ce_y
 
 _SHEET = "index_sheet"
@@ -39,9 +40,25 @@ def _from_censored(value: Any, *qualifiers: Any) -> Any:
     return np.logical_or.reduce([qualifier > 0 for qualifier in qualifiers]) & ~np.isnan(value)
 
 
-def measured_together(quantity: str, label: str, columns: tuple[str, ...]) -> tuple[Warning, Warning]:
-    """The two remarks on a quantity of several measured columns: two digestions, and a censored member."""
+def _from_partial(value: Any, *digestions: Any, tables: tuple[Any, ...]) -> Any:
+    minimum = [table[digestion] for table, digestion in zip(tables, digestions, strict=True)]
+    return np.logical_or.reduce(minimum) & ~np.isnan(value)
+
+
+def measured_together(quantity: str, label: str, columns: tuple[str, ...]) -> tuple[Warning, ...]:
+    """Remarks on a quantity of several measured columns: two digestions, a partial one, a censored member."""
+    digestions = tuple(f"digestion:{column}" for column in columns)
+    tables = tuple(CARRIES[:, CHOSEN_INDEX[column]] == MINIMUM for column in columns)
     return (
+        Warning(
+            f"{quantity}_partial_digestion",
+            quantity,
+            quantity,
+            f"{label} {{value}} rests on a digestion that leaves part of an element in the residue: that value is a "
+            "minimum, so the true figure may lie on either side; re-assay by fusion",
+            partial(_from_partial, tables=tables),
+            (quantity, *digestions),
+        ),
         Warning(
             f"{quantity}_two_digestions",
             quantity,
@@ -49,7 +66,7 @@ def measured_together(quantity: str, label: str, columns: tuple[str, ...]) -> tu
             f"{label} {{value}} joins values of two digestions (fusion, XRF and INAA count as one); "
             "re-assay both by one total method before leaning on it",
             _two_digestions,
-            (quantity, *(f"digestion:{column}" for column in columns)),
+            (quantity, *digestions),
         ),
         Warning(
             f"{quantity}_censored",
@@ -209,10 +226,6 @@ def _altered(value: Any, loi: Any, conventions: Any) -> Any:
     return (loi > conventions.loi_warn_wt) & ~np.isnan(value)
 
 
-def _sulphidic(value: Any, sulphur: Any, conventions: Any) -> Any:
-    return (sulphur > conventions.sulphur_warn_wt) & ~np.isnan(value)
-
-
 def _strontium_warning(quantity: str, label: str) -> Warning:
     return Warning(
         f"{quantity}_altered",
@@ -235,12 +248,4 @@ WARNINGS = (
     *measured_together("zr_nb_ce_y", "Zr + Nb + Ce + Y", _SUM),
     _strontium_warning("sr_y", "Sr/Y"),
     _strontium_warning("rb_sr", "Rb/Sr"),
-    Warning(
-        "cu_zr_sulphidic",
-        "cu_zr",
-        "s_wt",
-        "S is {value} wt%: copper of sulphides is ore, not melt",
-        _sulphidic,
-        ("cu_zr", "s_wt", "conventions"),
-    ),
 )
