@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
+from concurrent.futures import Future, ThreadPoolExecutor
 from dataclasses import asdict, dataclass, field
 from pathlib import Path
 from typing import Any
@@ -11,7 +12,7 @@ from registry.errors import InputProblems, NotFound, PlutonbookError, Problem, U
 from registry.importing_results import ResultsReport, store_results
 from registry.intake import KINDS, Reading, read_file
 from registry.refresh import changes_since, drain, last_change
-from registry.store import masters
+from registry.store import batches, masters
 from registry.store.engine import Registry, writing
 
 
@@ -97,6 +98,14 @@ class ImportReport:
         return asdict(self)
 
 
+@dataclass(frozen=True)
+class _File:
+    """The bytes of a file, and what they are compressed to."""
+
+    data: bytes
+    compressed: Future[bytes]
+
+
 class _NothingWritten(Exception):
     """Rolls a dry run back."""
 
@@ -109,7 +118,12 @@ def import_files(registry: Registry, paths: Sequence[Path], options: ImportOptio
     options = options or ImportOptions()
     options.refuse_what_is_not_there()
     contents = [(path, _bytes_of(path)) for path in paths]
-    readings = [(read_file(path.name, data, options.kind), data) for path, data in contents]
+    with ThreadPoolExecutor(1) as pool:  # zlib works beside the reading: it needs no interpreter
+        files = [_File(data, pool.submit(batches.compress, data)) for _, data in contents]
+        readings = [
+            (read_file(path.name, file.data, options.kind), file)
+            for (path, _), file in zip(contents, files, strict=True)
+        ]
     readings.sort(key=lambda pair: KINDS.index(pair[0].kind) if pair[0].kind in KINDS else len(KINDS))
     unreadable = [problem for reading, _ in readings for problem in reading.problems if not reading.ok]
     report: ImportReport | None = None
@@ -125,17 +139,17 @@ def import_files(registry: Registry, paths: Sequence[Path], options: ImportOptio
 
 
 def _store(
-    connection: Any, readings: Sequence[tuple[Reading, bytes]], options: ImportOptions, problems: list[Problem]
+    connection: Any, readings: Sequence[tuple[Reading, _File]], options: ImportOptions, problems: list[Problem]
 ) -> ImportReport:
     before = last_change(connection)
     reports, computed = [], 0
     results = sum(reading.kind == "results" for reading, _ in readings)
     if options.batch and results > 1:
         raise UsageError(f"--batch names one batch, but {results} files hold results; import them one by one")
-    for reading, data in readings:
+    for reading, contents in readings:
         if problems:
             break  # what follows may name what a faulty file was to bring: its complaints would mislead
-        report, done, faults = _store_one(connection, reading, data, options)
+        report, done, faults = _store_one(connection, reading, contents, options)
         reports.append(report)
         computed += done
         problems = [*problems, *faults]
@@ -148,14 +162,16 @@ def _store(
 
 
 def _store_one(
-    connection: Any, reading: Reading, data: bytes, options: ImportOptions
+    connection: Any, reading: Reading, contents: _File, options: ImportOptions
 ) -> tuple[FileReport, int, list[Problem]]:
     """Store one good reading; its report, how many samples were computed, and the problems met on the way."""
     kind = reading.kind or ""
     remarks = [problem.sentence() for problem in reading.warnings]
     if reading.results is not None:
         report = FileReport(reading.file, kind, len(reading.results), reading.understood, remarks)
-        report.results, done, faults = store_results(connection, reading.file, reading.results, data, options)
+        report.results, done, faults = store_results(
+            connection, reading.file, reading.results, contents.data, contents.compressed, options
+        )
         return report, done, faults
     if kind == "reference-materials":
         raise PlutonbookError(

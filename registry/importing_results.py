@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import hashlib
+from concurrent.futures import Future
 from dataclasses import dataclass
 from pathlib import Path
 from typing import TYPE_CHECKING, Any
@@ -45,7 +46,12 @@ class ResultsReport:
 
 
 def store_results(
-    connection: Any, file: str, table: ResultTable, data: bytes, options: ImportOptions
+    connection: Any,
+    file: str,
+    table: ResultTable,
+    data: bytes,
+    compressed: Future[bytes],
+    options: ImportOptions,
 ) -> tuple[ResultsReport, int, list[Problem]]:
     """Store one table of results and compute its samples; a report, how many were computed, and the problems.
 
@@ -67,7 +73,7 @@ def store_results(
         known.update(masters.add_samples(connection, missing, "unknown"))
     sample_ids = np.array([known[sample] for sample in codes], dtype=np.int64)
     fresh_ids = _without_results(connection, sample_ids)
-    batch_id, column_ids = _store_batch(connection, file, table, data, sha256, code, options)
+    batch_id, column_ids = _store_batch(connection, file, table, data, compressed.result(), code, options)
     repeat_no = _repeat_numbers(sample_ids)
     with bulk.guarded(connection):
         aliquot_ids = bulk.insert_aliquots(
@@ -139,7 +145,7 @@ def _unknown_codes(
 
 
 def _store_batch(
-    connection: Any, file: str, table: ResultTable, data: bytes, sha256: str, code: str, options: ImportOptions
+    connection: Any, file: str, table: ResultTable, data: bytes, compressed: bytes, code: str, options: ImportOptions
 ) -> tuple[int, np.ndarray]:
     batch_id = batches.insert_batch(
         connection,
@@ -147,8 +153,8 @@ def _store_batch(
         lab=options.lab or table.lab,
         certificate=table.certificate,
         file_name=file,
-        sha256=sha256,
         data=data,
+        compressed=compressed,
         imported_at=now(),
     )
     column_ids = batches.insert_columns(

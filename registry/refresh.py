@@ -124,13 +124,10 @@ def write_computed(connection: Any, ids: np.ndarray, computed: Computed, rules: 
         best_verdict=computed.best_verdict,
     )
     before = bulk.verdicts_of(connection, ids) if cause is not None else {}
-    for code, verdicts in computed.verdicts.items():
-        bulk.write_verdicts(
-            connection,
-            ids,
-            rules.target_ids[code],
-            rules.version_ids[code],
-            verdicts,
-        )
+    bulk.write_verdicts(
+        connection,
+        ids,
+        [(rules.target_ids[code], rules.version_ids[code], verdicts) for code, verdicts in computed.verdicts.items()],
+    )
     if cause is not None:
         bulk.log_verdict_changes(connection, before, bulk.verdicts_of(connection, ids), cause, now())

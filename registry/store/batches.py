@@ -22,6 +22,7 @@ def insert_batch(
     code: str,
     imported_at: str,
     data: bytes | None = None,
+    compressed: bytes | None = None,
     sha256: str | None = None,
     lab: str | None = None,
     certificate: str | None = None,
@@ -30,7 +31,10 @@ def insert_batch(
     imported_by: str | None = None,
     file_name: str | None = None,
 ) -> int:
-    """Insert an active batch; its id. ``data`` are the file's bytes, kept compressed; their hash is computed here."""
+    """Insert an active batch; its id. ``data`` are the file's bytes, kept compressed; their hash is computed here.
+
+    ``compressed``: what :func:`compress` made of them, where that was done beforehand.
+    """
     if data is not None:
         computed = hashlib.sha256(data).hexdigest()
         if sha256 is not None and sha256 != computed:
@@ -47,11 +51,16 @@ def insert_batch(
             imported_by=imported_by,
             file_name=file_name,
             sha256=sha256,
-            file_bytes=None if data is None else zlib.compress(data, 6),
+            file_bytes=None if data is None else compressed or compress(data),
             state="active",
         )
     )
     return int(inserted.inserted_primary_key[0])  # type: ignore[index]
+
+
+def compress(data: bytes) -> bytes:
+    """The bytes of a file as they are kept (zlib, its quickest level: a lab file still shrinks to about a third)."""
+    return zlib.compress(data, 1)
 
 
 def insert_columns(connection: sa.Connection, batch_id: int, columns: Sequence[Mapping[str, Any]]) -> list[int]:
