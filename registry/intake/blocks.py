@@ -6,15 +6,22 @@ from array import array
 from collections.abc import Iterator
 from itertools import chain, repeat
 from operator import itemgetter
+from typing import Any
 
 import numpy as np
 from numpy.typing import NDArray
 
 from registry.intake.cells import TEXT, Cell, parse_cell
+from registry.intake.sources import Chunk, PlainChunk
 
 #: In a file of decimal commas a point groups thousands: it is made unreadable here, so that the cell is looked at.
 _COMMA = str.maketrans({",": ".", ".": "\x00"})
+#: Words for no result that are common enough to be worth a pass over the text.
+_BLANK_WORDS = ("NA", "-", "N/A", "na", "n/a", "n.a.", "--", " ")
 _REMEMBERED = 50_000
+
+Numbers = NDArray[np.float64]
+Marks = NDArray[np.uint8]
 
 
 class BlockReader:
@@ -23,20 +30,85 @@ class BlockReader:
     def __init__(self, positions: list[int], decimal: str) -> None:
         self.positions, self.decimal = positions, decimal
         self.width = len(positions)
-        if self.width == 1:
-            only = positions[0]
-            self._pick = lambda row: (row[only],)
-        else:
-            self._pick = itemgetter(*positions)  # type: ignore[assignment]
+        self._pick: Any = (
+            itemgetter(*positions) if self.width > 1 else itemgetter(slice(positions[0], positions[0] + 1))
+        )
         self._known: dict[str, Cell] = {}
 
-    def read(
-        self, rows: list[list[str]], marks_below: bool, watch_underscores: bool
-    ) -> tuple[NDArray[np.float64], NDArray[np.uint8], list[tuple[int, int, str]]]:
-        """Values (k, m) with NaN, qualifiers (k, m), and the cells that are no plain number as (row, column, text).
+    def read(self, chunk: Chunk, watch_underscores: bool) -> tuple[Numbers, Marks, list[tuple[int, int, str]]]:
+        """Values (k, m) with NaN, qualifiers (k, m), and the cells that are no plain number as (row, column, text)."""
+        if isinstance(chunk, PlainChunk):
+            fast = self._read_text(chunk)
+            if fast is not None:
+                return *fast, []
+        return self._read_cells(chunk, watch_underscores)
 
-        ``marks_below``: the source wrote ``<`` as ``-``. Every row must reach past the last position.
-        """
+    def _read_text(self, chunk: PlainChunk) -> tuple[Numbers, Marks] | None:
+        """Numbers and ``<`` straight from the text; None where some cell needs a look."""
+        separator = chunk.separator
+        text = "".join(chunk.texts)
+        if "\r" in text:
+            text = text.replace("\r\n", "\n").replace("\r", "\n")
+        if not text.endswith("\n"):
+            text += "\n"
+        if text.startswith("\n") or "\n\n" in text or text.isspace():
+            return None
+        if self.decimal == ",":
+            if "." in text or separator == ",":
+                return None
+            text = text.replace(",", ".")
+        below_sign = separator + "<"
+        below: NDArray[np.bool_] | None = None
+        by_sign = False
+        if below_sign in text:
+            by_sign = separator + "-" not in text
+            if by_sign:
+                text = text.replace(below_sign, separator + "-")
+            else:
+                below = self._places_below(text, separator, len(chunk))
+                if below is None:
+                    return None
+                text = text.replace(below_sign, separator)
+        if not by_sign:
+            for word in _BLANK_WORDS:
+                if separator + word + separator in text or separator + word + "\n" in text:
+                    text = _filled(text.replace(separator + word + "\n", separator + "\n"), separator, word)
+        if separator + separator in text or separator + "\n" in text:
+            text = _filled(text.replace(separator + "\n", separator + "nan\n"), separator, "")
+        try:
+            values = np.loadtxt(
+                text.split("\n")[:-1], delimiter=separator, usecols=self.positions, comments=None, ndmin=2
+            )
+        except (ValueError, IndexError):
+            return None
+        if values.shape != (len(chunk), self.width) or np.isinf(values).any():
+            return None
+        if by_sign:
+            qualifiers = (np.signbit(values) & ~np.isnan(values)).astype(np.uint8)
+            np.abs(values, out=values)
+        elif below is not None:
+            qualifiers = (below & ~np.isnan(values)).astype(np.uint8)
+        else:
+            qualifiers = np.zeros(values.shape, np.uint8)
+        return values, qualifiers
+
+    def _places_below(self, text: str, separator: str, count: int) -> NDArray[np.bool_] | None:
+        """Which cells (k, m) begin with ``<``; None if the rows are not all of one width."""
+        signs = np.frombuffer(text.encode(), np.uint8)  # in UTF-8 these signs are bytes of their own
+        ends = np.flatnonzero((signs == ord(separator)) | (signs == 10))
+        width, rest = divmod(len(ends), count)
+        if rest or not (signs[ends[width - 1 :: width]] == 10).all() or (signs[ends] == 10).sum() != count:
+            return None
+        marked = np.flatnonzero((signs[1:] == ord("<")) & (signs[:-1] == ord(separator))) + 1
+        whole = np.zeros(count * width, bool)
+        whole[np.searchsorted(ends, marked)] = True
+        return whole.reshape(count, width)[:, self.positions] if max(self.positions) < width else None
+
+    def _read_cells(self, chunk: Chunk, watch_underscores: bool) -> tuple[Numbers, Marks, list[tuple[int, int, str]]]:
+        reach = max(self.positions) + 1
+        rows = chunk.rows
+        if min(map(len, rows)) < reach:
+            rows = [row if len(row) >= reach else row + [""] * (reach - len(row)) for row in rows]
         cells: Iterator[str] = chain.from_iterable(map(self._pick, rows))
         if self.decimal == ",":
             cells = map(str.translate, cells, repeat(_COMMA))
@@ -46,19 +118,13 @@ class BlockReader:
         missing = float("nan")
         while True:
             try:
-                buffer.extend(numbers)
+                buffer.extend(numbers)  # keeps what came before the refused cell; the iterator stands behind it
                 break
             except ValueError:
                 refused.append(len(buffer))
                 buffer.append(missing)
-        values = np.frombuffer(buffer, dtype=np.float64).reshape(len(rows), self.width)
-        if marks_below:
-            qualifiers = np.signbit(values).astype(np.uint8)
-            qualifiers[np.isnan(values)] = 0
-            values = np.abs(values)
-        else:
-            qualifiers = np.zeros(values.shape, np.uint8)
-            values = values.copy()
+        values = np.frombuffer(buffer, dtype=np.float64).reshape(len(rows), self.width).copy()
+        qualifiers = np.zeros(values.shape, np.uint8)
         if np.isinf(values).any():
             refused += np.flatnonzero(np.isinf(values).ravel()).tolist()
         if watch_underscores and "_" in "".join(chain.from_iterable(map(self._pick, rows))):
@@ -71,8 +137,7 @@ class BlockReader:
             if text == "":
                 continue
             values[row, column] = missing
-            qualifiers[row, column] = 0
-            odd.append((row, column, "<" + text[1:] if marks_below and text[0] == "-" else text))
+            odd.append((row, column, text))
         return values, qualifiers, odd
 
     def cell(self, text: str) -> Cell:
@@ -80,8 +145,14 @@ class BlockReader:
         known = self._known.get(text)
         if known is None:
             known = parse_cell(text, self.decimal)
-            if "_" in text and known.state != TEXT and known.value == known.value:
+            if "_" in text and known.value == known.value:
                 known = Cell(TEXT)
             if len(self._known) < _REMEMBERED:
                 self._known[text] = known
         return known
+
+
+def _filled(text: str, separator: str, word: str) -> str:
+    """Write ``nan`` into cells that hold just the word; neighbours share a separator, so twice."""
+    before, after = separator + word + separator, separator + "nan" + separator
+    return text.replace(before, after).replace(before, after)

@@ -5,6 +5,7 @@ from __future__ import annotations
 import re
 import unicodedata
 from dataclasses import dataclass
+from functools import lru_cache
 
 TEXT, NUMBER, DATE, TRUTH, WORD = "text", "number", "date", "truth", "word"
 
@@ -153,6 +154,7 @@ def folded(text: str) -> str:
     return re.sub(r"[\s_.\-:]+", " ", text).strip()
 
 
+@lru_cache(maxsize=8192)
 def field_of(kind: str, heading: str) -> tuple[Field, str | None] | None:
     """The contract column that a heading of this kind of file means, and the unit stated in it."""
     plain = folded(heading)
@@ -162,15 +164,27 @@ def field_of(kind: str, heading: str) -> tuple[Field, str | None] | None:
     tail = _UNIT_TAIL.search(plain)
     if tail:
         bare, unit = plain[: tail.start()].strip(), (tail["bracket"] or tail["tail"] or "").strip()
-    for text in (plain, bare):
-        for one in FIELDS[kind]:
-            if text == folded(one.name) or text in one.spellings:
-                return one, unit if text == bare and bare != plain else None
-    for one in FIELDS[kind]:  # the contract name without its own unit: "depth" with "(m)"
-        name = re.sub(r" (m|deg|c|si|ma|km3|kg m3|mw m2|uw m3|w m k)$", "", folded(one.name))
-        if bare == name:
-            return one, unit
-    return None
+    names = _spelt(kind)
+    if plain in names:
+        return names[plain], None
+    known = names.get(bare) or _spelt_bare(kind).get(bare)
+    return None if known is None else (known, unit)
+
+
+@lru_cache
+def _spelt(kind: str) -> dict[str, Field]:
+    spelt: dict[str, Field] = {}
+    for one in FIELDS[kind]:
+        for text in (one.name, *one.spellings):
+            spelt.setdefault(folded(text), one)
+    return spelt
+
+
+@lru_cache
+def _spelt_bare(kind: str) -> dict[str, Field]:
+    """The contract's names without their own unit: ``depth`` of ``depth (m)``."""
+    ending = re.compile(r" (m|deg|c|si|ma|km3|kg m3|mw m2|uw m3|w m k)$")
+    return {ending.sub("", folded(one.name)): one for one in FIELDS[kind]}
 
 
 def columns_of(kind: str, headings: list[str]) -> dict[str, int]:

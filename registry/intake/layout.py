@@ -22,6 +22,8 @@ _UNIT_LABEL = re.compile(r"(?i)^\W*units?\b")
 _METHOD_LABEL = re.compile(r"(?i)\b(method|analys\w+|technique|digest\w*|scheme|procedure|analytical|prep\w*)\b")
 _ANALYTE_LABEL = re.compile(r"(?i)^\W*(analytes?|elements?|oxides?|parameters?|determinands?|symbols?)\b")
 _FILLER = re.compile(r"(?i)unnamed:? ?\d+(_level_\d+)?")
+#: No name of an analyte begins so.
+_NO_NAME = frozenset("0123456789<>-.")
 UNIT, METHOD, LOWER, UPPER, ANALYTE, LABELS = (
     "units",
     "methods",
@@ -71,7 +73,7 @@ def _clean(cell: str) -> str:
 def _analytes_in(row: list[str]) -> dict[int, Heading]:
     """The analyte headings of a row by position; coordinates (x beside y, E beside N) are none."""
     found = {}
-    texts = [_clean(cell) for cell in row]
+    texts = ["" if cell[:1] in _NO_NAME else _clean(cell) for cell in row]
     folded = [text.casefold() for text in texts]
     for position, text in enumerate(texts):
         if not text or len(text) > 60:

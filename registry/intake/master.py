@@ -98,8 +98,8 @@ def _body(source: Source, first_row: int) -> tuple[list[list[str]], np.ndarray]:
     rows: list[list[str]] = []
     lines: list[int] = []
     skip = first_row
-    for some, numbers in source.chunks():
-        for row, line in zip(some, numbers.tolist(), strict=True):
+    for chunk in source.chunks():
+        for row, line in zip(chunk.rows, chunk.lines.tolist(), strict=True):
             if skip:
                 skip -= 1
             elif any(cell.strip() for cell in row):

@@ -168,7 +168,8 @@ def _check_shapes(table: Table, lines: np.ndarray, headings: Mapping[str, str], 
             findings.add(
                 f"a volume alone does not fix the size of a {shape}", row=line,
                 column=headings["volume_km3"],
-                found=f"{volume:g} km3", expected="half_width_m: half the thickness of a slab, the radius of a cylinder",
+                found=f"{volume:g} km3",
+                expected="half_width_m: half the thickness of a slab, the radius of a cylinder",
                 remedy="give half_width_m, or the shape sphere if the body is about as wide as high",
             )  # fmt: skip
         for name, value in (("half_width_m", half_width), ("volume_km3", volume)):

@@ -123,8 +123,8 @@ def _settle_decimal(
 ) -> str:
     if recipe and recipe.decimal in (".", ","):
         return recipe.decimal
-    cells = [row[column.position] for row in rows for column in columns if column.position < len(row)]
-    decimal, sure = decimal_sign(cells)
+    cells = {row[column.position] for row in rows for column in columns if column.position < len(row)}
+    decimal, sure = decimal_sign(sorted(cells)[:: len(cells) // 2000 + 1])
     understood.append(f"decimal sign: {'comma' if decimal == ',' else 'point'}")
     if not sure:
         findings.warn(

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import csv
 import io
-from collections.abc import Callable, Iterable, Iterator
+from collections.abc import Callable, Iterator
 from dataclasses import dataclass
 from itertools import islice
 
@@ -13,12 +13,10 @@ from numpy.typing import NDArray
 
 from registry.intake.encodings import Encoding
 
-#: Rows a chunk: about 10 MB of cells at 55 columns.
-CHUNK_ROWS = 2048
+#: Rows a chunk: at 55 columns the text of one chunk stays in the cache of the processor.
+CHUNK_ROWS = 1024
 #: A row that swallows so many lines is an unclosed quotation mark.
 LONGEST_ROW_LINES = 60
-
-Chunk = tuple[list[list[str]], NDArray[np.int64]]
 
 
 class BrokenTable(Exception):
@@ -29,22 +27,77 @@ class BrokenTable(Exception):
         self.what, self.line, self.remedy = what, line, remedy
 
 
+class Chunk:
+    """Some rows of a table with the file's line numbers, (k,) of the rows."""
+
+    def __init__(self, rows: list[list[str]] | None, lines: NDArray[np.int64]) -> None:
+        self._rows, self.lines = rows, lines
+
+    def __len__(self) -> int:
+        return len(self.lines)
+
+    @property
+    def rows(self) -> list[list[str]]:
+        return self._rows or []
+
+    def column(self, position: int) -> list[str]:
+        """The cells of one column, blank where a row is too short."""
+        try:
+            return [row[position] for row in self.rows]
+        except IndexError:
+            return [row[position] if position < len(row) else "" for row in self.rows]
+
+    def after(self, count: int) -> Chunk:
+        """This chunk without its first ``count`` rows."""
+        return Chunk(self.rows[count:], self.lines[count:])
+
+
+class PlainChunk(Chunk):
+    """Lines of a delimited file without any quotation mark, cut into cells only when somebody asks."""
+
+    def __init__(self, texts: list[str], lines: NDArray[np.int64], separator: str) -> None:
+        super().__init__(None, lines)
+        self.texts, self.separator = texts, separator
+
+    @property
+    def rows(self) -> list[list[str]]:
+        if self._rows is None:
+            try:
+                self._rows = list(csv.reader(self.texts, delimiter=self.separator))
+            except csv.Error as fault:
+                raise BrokenTable(
+                    f"the table cannot be cut into cells ({fault})",
+                    int(self.lines[0]),
+                    "see whether this is a delimited text file, and look at the lines from here on",
+                ) from fault
+        return self._rows
+
+    def column(self, position: int) -> list[str]:
+        if self._rows is None and position < 12:
+            separator, pieces = self.separator, position + 1
+            try:
+                return [text.split(separator, pieces)[position].rstrip("\r\n") for text in self.texts]
+            except IndexError:
+                pass
+        return super().column(position)
+
+    def after(self, count: int) -> PlainChunk:
+        return PlainChunk(self.texts[count:], self.lines[count:], self.separator)
+
+
 class Source:
     """Rows of cells. ``chunks`` may be called again and starts from the top each time."""
 
-    #: in the last chunks ``<`` stood as ``-`` (see DelimitedSource); only then may a reader take the sign for it
-    marks_below = False
-
-    def chunks(self, fast: bool = False) -> Iterator[Chunk]:
+    def chunks(self) -> Iterator[Chunk]:
         raise NotImplementedError
 
     def preview(self, count: int = 200) -> tuple[list[list[str]], NDArray[np.int64]]:
         """The first rows of the file."""
         rows: list[list[str]] = []
         lines: list[NDArray[np.int64]] = []
-        for some, numbers in self.chunks():
-            rows += some
-            lines.append(numbers)
+        for chunk in self.chunks():
+            rows += chunk.rows[:count]
+            lines.append(chunk.lines)
             if len(rows) >= count:
                 break
         joined = np.concatenate(lines) if lines else np.empty(0, np.int64)
@@ -55,36 +108,36 @@ class Source:
 class GridSource(Source):
     """Rows that are in memory already (a sheet of a workbook, a turned table)."""
 
-    rows: list[list[str]]
+    grid: list[list[str]]
     lines: NDArray[np.int64]
 
-    def chunks(self, fast: bool = False) -> Iterator[Chunk]:
-        for start in range(0, len(self.rows), CHUNK_ROWS):
-            yield self.rows[start : start + CHUNK_ROWS], self.lines[start : start + CHUNK_ROWS]
+    def chunks(self) -> Iterator[Chunk]:
+        for start in range(0, len(self.grid), CHUNK_ROWS):
+            yield Chunk(self.grid[start : start + CHUNK_ROWS], self.lines[start : start + CHUNK_ROWS])
 
 
 class DelimitedSource(Source):
-    """A delimited text file, read as a stream.
-
-    A cell that begins with ``<`` costs an exception in the fast conversion. Where no cell of the whole file begins
-    with ``-``, ``fast`` hands ``<0.5`` out as ``-0.5`` (``marks_below``): the sign bit then is the qualifier.
-    """
+    """A delimited text file, read as a stream; without quotation marks a row is a line."""
 
     def __init__(self, data: bytes, encoding: Encoding, separator: str) -> None:
         self.data, self.encoding, self.separator = data, encoding, separator
-        codec = encoding.codec.removesuffix("-sig") if encoding.codec.startswith("utf-8") else encoding.codec
-        self._minus_free = codec in ("utf-8", "cp1252", "mac_roman") and (separator + "-").encode(codec) not in data
 
-    def lines(self) -> io.TextIOWrapper:
+    def text(self) -> io.TextIOWrapper:
         return io.TextIOWrapper(
             io.BytesIO(self.data), encoding=self.encoding.codec, errors=self.encoding.errors, newline=""
         )
 
-    def chunks(self, fast: bool = False) -> Iterator[Chunk]:
-        stream = self.lines()
-        self.marks_below = fast and self._minus_free
-        source: Iterable[str] = _marked(stream, self.separator) if self.marks_below else stream
-        reader = csv.reader(source, delimiter=self.separator)
+    def chunks(self) -> Iterator[Chunk]:
+        return self._quoted() if b'"' in self.data else self._plain()
+
+    def _plain(self) -> Iterator[Chunk]:
+        stream, count = self.text(), 0
+        while texts := list(islice(stream, CHUNK_ROWS)):
+            yield PlainChunk(texts, np.arange(count + 1, count + 1 + len(texts), dtype=np.int64), self.separator)
+            count += len(texts)
+
+    def _quoted(self) -> Iterator[Chunk]:
+        reader = csv.reader(self.text(), delimiter=self.separator)
         while True:
             before = reader.line_num
             try:
@@ -108,17 +161,11 @@ class DelimitedSource(Source):
                         int(lines[longest]),
                         "a quotation mark is opened in this row and not closed; close or remove it",
                     )
-            yield rows, lines
+            yield Chunk(rows, lines)
 
 
 def _breaks(cell: str) -> int:
     return cell.replace("\r\n", "\n").replace("\r", "\n").count("\n") if "\n" in cell or "\r" in cell else 0
-
-
-def _marked(stream: io.TextIOWrapper, separator: str) -> Iterator[str]:
-    before, after = separator + "<", separator + "-"
-    while block := stream.readlines(1 << 20):
-        yield from io.StringIO("".join(block).replace(before, after), newline="")
 
 
 def tell_separator(data: bytes, encoding: Encoding, score: Callable[[list[list[str]]], int]) -> str:

@@ -5,6 +5,7 @@ from __future__ import annotations
 import re
 from array import array
 from dataclasses import dataclass, field
+from itertools import compress
 
 import numpy as np
 from numpy.typing import NDArray
@@ -23,7 +24,7 @@ from registry.intake.cells import (
 from registry.intake.findings import Findings
 from registry.intake.names import read_heading
 from registry.intake.readings import ResultColumn
-from registry.intake.sources import Source
+from registry.intake.sources import Chunk, Source
 from registry.intake.units import canonical_unit
 from registry.petrology.analytes import WT_PERCENT_PER_UNIT
 
@@ -34,6 +35,7 @@ _SUMMARY_ROW = re.compile(
     r"|.*end of (report|file|certificate).*)"
     r"\s*[:%]?\s*"
 )
+_LETTER_AT_END = re.compile(r"(?m)\D$")
 _QUALIFIER_WORDS = {"<": 1, "<=": 1, "b": 1, "bdl": 1, "lt": 1, "nd": 1, "u": 1, ">": 2, ">=": 2, "gt": 2, "a": 2}
 _NO_QUALIFIER = {"", "=", "-", ".", "n", "na", "~"}
 
@@ -90,8 +92,6 @@ class WideReader:
         self.block = BlockReader([column.position for column in columns], decimal)
         self.texts: dict[int, Texts] = {}
         self.passed_over: list[str] = []
-        reach = [code_position, control_position or 0, *self.qualifier_positions, *self.block.positions]
-        self.reach = max(reach) + 1
 
     def read(self, source: Source, first_row: int, row_bound: int, watch_underscores: bool) -> WideBody:
         """Read everything from ``first_row`` on; ``row_bound`` is at least the number of rows."""
@@ -102,44 +102,32 @@ class WideReader:
         codes: list[str] = []
         control: list[str | None] = []
         skip, count = first_row, 0
-        for rows, numbers in source.chunks(fast=True):
+        for chunk in source.chunks():
             if skip:
-                dropped = min(skip, len(rows))
-                rows, numbers, skip = rows[dropped:], numbers[dropped:], skip - dropped
-                if not rows:
+                dropped = min(skip, len(chunk))
+                chunk, skip = chunk.after(dropped), skip - dropped
+                if not len(chunk):
                     continue
-            rows = self._even(rows)
-            chunk, marks, keep = self._chunk(rows, numbers, source.marks_below, watch_underscores)
+            block, marks, said, keep = self._chunk(chunk, watch_underscores)
             kept = int(keep.sum())
-            everything = kept == len(rows)
+            everything = kept == len(chunk)
             stop = count + kept
-            values[count:stop] = chunk if everything else chunk[keep]
+            values[count:stop] = block if everything else block[keep]
             qualifiers[count:stop] = marks if everything else marks[keep]
-            lines[count:stop] = numbers if everything else numbers[keep]
-            chosen = rows if everything else [row for row, good in zip(rows, keep.tolist(), strict=True) if good]
-            codes += self._column(chosen, self.code_position, source.marks_below)
+            lines[count:stop] = chunk.lines if everything else chunk.lines[keep]
+            codes += said if everything else list(compress(said, keep))
             if self.control_position is not None:
-                said = self._column(chosen, self.control_position, source.marks_below)
-                control += [text.strip() or None for text in said]
+                spoken = [text.strip() or None for text in chunk.column(self.control_position)]
+                control += spoken if everything else list(compress(spoken, keep))
             count = stop
         return WideBody(codes, lines[:count], values[:count], qualifiers[:count], control, self.texts, self.passed_over)
 
-    def _even(self, rows: list[list[str]]) -> list[list[str]]:
-        if min(map(len, rows)) >= self.reach:
-            return rows
-        return [row if len(row) >= self.reach else row + [""] * (self.reach - len(row)) for row in rows]
-
-    @staticmethod
-    def _column(rows: list[list[str]], position: int, marks_below: bool) -> list[str]:
-        texts = [row[position] for row in rows]
-        if marks_below and position and any(text.startswith("-") for text in texts):
-            texts = ["<" + text[1:] if text.startswith("-") else text for text in texts]
-        return texts
-
     def _chunk(
-        self, rows: list[list[str]], lines: NDArray[np.int64], marks_below: bool, watch_underscores: bool
-    ) -> tuple[NDArray[np.float64], NDArray[np.uint8], NDArray[np.bool_]]:
-        values, qualifiers, odd = self.block.read(rows, marks_below, watch_underscores)
+        self, chunk: Chunk, watch_underscores: bool
+    ) -> tuple[NDArray[np.float64], NDArray[np.uint8], list[str], NDArray[np.bool_]]:
+        """Values, qualifiers, codes and which rows are kept."""
+        lines = chunk.lines
+        values, qualifiers, odd = self.block.read(chunk, watch_underscores)
         texts: dict[int, list[tuple[int, str]]] = {}
         spoken: set[int] = set()
         for row, column, text in odd:
@@ -158,27 +146,29 @@ class WideReader:
             qualifiers[negative] = 1
             values[negative] *= -1
         for position, column in self.qualifier_positions.items():
-            self._apply_qualifiers(rows, position, column, values, qualifiers, lines, marks_below)
-        keep: NDArray[np.bool_] = np.ones(len(rows), bool)
+            self._apply_qualifiers(chunk, position, column, values, qualifiers)
+        codes = chunk.column(self.code_position)
+        keep: NDArray[np.bool_] = np.ones(len(chunk), bool)
         numberless: NDArray[np.bool_] = np.asarray(np.isnan(values).all(axis=1))
-        bare = {row for row, code in enumerate(self._column(rows, self.code_position, False)) if not code.strip()}
-        doubtful = set(np.flatnonzero(numberless).tolist()) | bare | spoken
-        code_texts = self._column(rows, self.code_position, marks_below)
-        for row in sorted(doubtful):
+        bare: set[int] = set()
+        if "" in codes or any(map(str.isspace, codes)):
+            bare = {row for row, code in enumerate(codes) if not code.strip()}
+        for row in sorted(set(np.flatnonzero(numberless).tolist()) | bare | spoken):
             keep[row] = self._row_stays(
-                rows[row], code_texts[row], int(lines[row]), bool(numberless[row]), texts.get(row, [])
+                chunk.rows[row], codes[row], int(lines[row]), bool(numberless[row]), texts.get(row, [])
             )
-        keep &= ~self._summary_rows(code_texts, lines, keep)
+        keep &= ~self._summary_rows(codes, lines, keep)
         for row in sorted(spoken):
             if keep[row]:
                 self._take_words(texts[row], row, int(lines[row]), values, qualifiers)
-        return values, qualifiers, keep
+        return values, qualifiers, codes, keep
 
     def _summary_rows(self, codes: list[str], lines: NDArray[np.int64], keep: NDArray[np.bool_]) -> NDArray[np.bool_]:
         """Rows of means, totals or limits under the data, told by what stands in the code column."""
         found = np.zeros(len(codes), bool)
-        unusual = [row for row, code in enumerate(codes) if code and not code[-1].isdigit()]
-        for row in unusual:
+        if not _LETTER_AT_END.search("\n".join(codes)):
+            return found
+        for row in (row for row, code in enumerate(codes) if code and not code[-1].isdigit()):
             code = codes[row]
             if keep[row] and _SUMMARY_ROW.fullmatch(code):
                 found[row] = True
@@ -266,22 +256,20 @@ class WideReader:
 
     def _apply_qualifiers(
         self,
-        rows: list[list[str]],
+        chunk: Chunk,
         position: int,
         column: int,
         values: NDArray[np.float64],
         qualifiers: NDArray[np.uint8],
-        lines: NDArray[np.int64],
-        marks_below: bool,
     ) -> None:
-        for row, text in enumerate(self._column(rows, position, marks_below)):
+        for row, text in enumerate(chunk.column(position)):
             text = text.strip().casefold()
             if text in _NO_QUALIFIER:
                 continue
             code = _QUALIFIER_WORDS.get(text)
             if code is None:
                 self.findings.warn(
-                    "an unknown qualifier", row=int(lines[row]), column=self.columns[column].header, found=text,
+                    "an unknown qualifier", row=int(chunk.lines[row]), column=self.columns[column].header, found=text,
                     expected="< or >", remedy="the value is taken as it stands",
                 )  # fmt: skip
             elif not np.isnan(values[row, column]):
