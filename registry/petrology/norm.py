@@ -14,7 +14,7 @@ from numpy.typing import ArrayLike, NDArray
 
 from registry.petrology.analytes import CHOSEN_INDEX
 from registry.petrology.constants import ATOMIC_WEIGHT, molar_mass
-from registry.petrology.norm_sequence import CAO_PER_P2O5, Moles, allot_minerals
+from registry.petrology.norm_sequence import CAO_PER_P2O5, Minerals, Moles, Scratch, Take, allot_minerals
 
 Array = NDArray[np.float64]
 
@@ -36,10 +36,13 @@ NORM_MINERALS = tuple(
 )  # fmt: skip
 NORM_END_MEMBERS = ("di_wo_wt", "di_en_wt", "di_fs_wt", "hy_en_wt", "hy_fs_wt", "ol_fo_wt", "ol_fa_wt")
 NORM_COLUMNS = (*NORM_MINERALS, *NORM_END_MEMBERS, "norm_total_wt", "norm_residual_wt")
+#: Added to the sum as they are written; di, hy and ol follow when their end members are.
+_IN_TOTAL = frozenset(NORM_MINERALS) - {"di_wt", "hy_wt", "ol_wt"}
 _ROW = {name: position for position, name in enumerate(NORM_COLUMNS)}
 #: Rows computed at a time, so that the arrays of a step stay in the processor's cache.
 CHUNK_ROWS = 16_384
 
+_PER_MASS = {column: 1.0 / molar_mass(oxide) for column, oxide in NORM_OXIDES.items()}
 _SIO2, _AL2O3, _MGO, _K2O = (molar_mass(oxide) for oxide in ("SiO2", "Al2O3", "MgO", "K2O"))
 _HALF_OXYGEN = 0.5 * ATOMIC_WEIGHT["O"]
 
@@ -68,9 +71,11 @@ def cipw_norm(oxides: Mapping[str, ArrayLike]) -> dict[str, Array]:
     flat = {name: array.reshape(-1) for name, array in arrays.items()}
     rows = flat["sio2_wt"].shape[0]
     result = np.empty((len(NORM_COLUMNS), rows))
+    scratch = Scratch(min(rows, CHUNK_ROWS))
     for start in range(0, rows, CHUNK_ROWS):
-        chunk = slice(start, start + CHUNK_ROWS)
-        _norm_of_chunk({name: array[chunk] for name, array in flat.items()}, result[:, chunk])
+        out = result[:, start : start + CHUNK_ROWS]
+        chunk = {name: array[start : start + CHUNK_ROWS] for name, array in flat.items()}
+        _norm_of_chunk(chunk, out, scratch.rows(out.shape[1]))
     return {name: result[position].reshape(shape) for name, position in _ROW.items()}
 
 
@@ -99,69 +104,86 @@ def norm_inputs(oxides: Mapping[str, ArrayLike]) -> dict[str, Array]:
     return {name: np.broadcast_to(array, shape) for name, array in used.items()}
 
 
-def norm_moles(wt: Mapping[str, Array]) -> tuple[Moles, dict[str, Any]]:
-    """Moles per 100 g for ``norm_sequence``, and the mean masses (g/mol) of the groups ``fe2 ca na fe3``."""
-    moles = {name: wt[name] * (1.0 / molar_mass(NORM_OXIDES[name])) for name in wt}
-    fe2, fe2_mass = _group(wt, moles, "feo_wt", "mno_wt", "nio_wt")
-    ca, ca_mass = _group(wt, moles, "cao_wt", "sro_wt", "bao_wt")
-    na, na_mass = _group(wt, moles, "na2o_wt", "li2o_wt")
-    fe3, fe3_mass = _group(wt, moles, "fe2o3_wt", "v2o3_wt")
+def norm_moles(wt: Mapping[str, Array], take: Take) -> tuple[Moles, dict[str, Any]]:
+    """Moles per 100 g for ``norm_sequence``, and the mean masses (g/mol) of the groups ``fe2 ca na fe3``.
+
+    ``take`` gives memory; the moles are the caller's own.
+    """
+    return _grouped(wt, {name: np.multiply(array, _PER_MASS[name], take()) for name, array in wt.items()}, take)
+
+
+def _grouped(wt: Mapping[str, Array], moles: Mapping[str, Array], take: Take) -> tuple[Moles, dict[str, Any]]:
+    fe2_mass = _gather(wt, moles, take, "feo_wt", "mno_wt", "nio_wt")
+    ca_mass = _gather(wt, moles, take, "cao_wt", "sro_wt", "bao_wt")
+    na_mass = _gather(wt, moles, take, "na2o_wt", "li2o_wt")
+    fe3_mass = _gather(wt, moles, take, "fe2o3_wt", "v2o3_wt")
     grouped = Moles(
-        si=moles["sio2_wt"], ti=moles["tio2_wt"], al=moles["al2o3_wt"], fe3=fe3, fe2=fe2, mg=moles["mgo_wt"], ca=ca,
-        na=na, k=moles["k2o_wt"], p=moles["p2o5_wt"], cr=moles.get("cr2o3_wt"), zr=moles.get("zro2_wt"),
-        co2=moles.get("co2_wt"), s=moles.get("s_wt"), so3=moles.get("so3_wt"), f=moles.get("f_wt"),
-        cl=moles.get("cl_wt"),
+        si=moles["sio2_wt"], ti=moles["tio2_wt"], al=moles["al2o3_wt"], fe3=moles["fe2o3_wt"], fe2=moles["feo_wt"],
+        mg=moles["mgo_wt"], ca=moles["cao_wt"], na=moles["na2o_wt"], k=moles["k2o_wt"], p=moles["p2o5_wt"],
+        cr=moles.get("cr2o3_wt"), zr=moles.get("zro2_wt"), co2=moles.get("co2_wt"), s=moles.get("s_wt"),
+        so3=moles.get("so3_wt"), f=moles.get("f_wt"), cl=moles.get("cl_wt"),
     )  # fmt: skip
     return grouped, {"fe2": fe2_mass, "ca": ca_mass, "na": na_mass, "fe3": fe3_mass}
 
 
-def _group(wt: Mapping[str, Array], moles: Mapping[str, Array], *names: str) -> tuple[Array, Any]:
-    """Moles of a group and its mean mass, sum of the masses over sum of the moles; 0 where the group is absent."""
-    present = [name for name in names if name in wt]
-    if len(present) == 1:
-        return moles[present[0]], molar_mass(NORM_OXIDES[present[0]])
-    mass, amount = wt[present[0]], moles[present[0]]
+def _gather(wt: Mapping[str, Array], moles: Mapping[str, Array], take: Take, first: str, *others: str) -> Any:
+    """Add the moles of a group to those of its first oxide; its mean mass is the sum of masses over that of moles."""
+    present = [name for name in others if name in wt]
+    if not present:
+        return molar_mass(NORM_OXIDES[first])
+    mass, spare = np.add(wt[first], wt[present[0]], take()), take()
     for name in present[1:]:
-        mass, amount = mass + wt[name], amount + moles[name]
-    return amount, mass / np.maximum(amount, 1e-300)
+        mass += wt[name]
+    for name in present:
+        amount = moles[first]
+        amount += moles[name]
+    return np.divide(mass, np.maximum(moles[first], 1e-300, out=spare), mass)
 
 
-def _norm_of_chunk(wt: Mapping[str, Array], out: Array) -> None:
+def _norm_of_chunk(wt: Mapping[str, Array], out: Array, take: Take) -> None:
     """Fill ``out``, shape (columns, rows), with the norm of the chunk."""
-    used, lowest = wt["sio2_wt"], wt["sio2_wt"]
-    for name, array in wt.items():
-        if name != "sio2_wt":
-            used, lowest = used + array, np.minimum(lowest, array)
+    used, lowest, moles = take(), take(), {}
+    np.copyto(used, wt["sio2_wt"])
+    np.copyto(lowest, used)
+    with np.errstate(invalid="ignore"):  # infinities of both signs; such rows have no norm
+        for name, array in wt.items():  # one oxide at a time, while it is in the cache
+            moles[name] = np.multiply(array, _PER_MASS[name], take())
+            if name != "sio2_wt":
+                used += array
+                np.minimum(lowest, array, out=lowest)
     possible = (lowest >= 0.0) & (used < np.inf)
     if not possible.all():
         wt = {name: np.where(possible, array, 0.0) for name, array in wt.items()}
+        for name, array in wt.items():
+            np.multiply(array, _PER_MASS[name], moles[name])
 
-    moles, mass = norm_moles(wt)
-    minerals = allot_minerals(moles)
-    _weigh(minerals, mass, out)
-    total = out[_ROW["norm_total_wt"]]
-    np.add(out[0], out[1], out=total)
-    for position in range(2, len(NORM_MINERALS)):
-        if getattr(minerals, _FIELDS[position]) is not None:
-            total += out[position]
-    np.subtract(used, total, out=out[_ROW["norm_residual_wt"]])
+    grouped, mass = _grouped(wt, moles, take)
+    minerals = allot_minerals(grouped, take)
+    _weigh(minerals, mass, out, take)
+    np.subtract(used, out[_ROW["norm_total_wt"]], out[_ROW["norm_residual_wt"]])
     if not possible.all():
         out[:, ~possible] = np.nan
 
 
-_FIELDS = tuple({"or_wt": "or_"}.get(name, name.removesuffix("_wt")) for name in NORM_MINERALS)
-
-
-def _weigh(minerals: Any, mass: Mapping[str, Any], out: Array) -> None:
-    """Moles times molar masses; the masses are composed of the oxides with the mean masses of the groups."""
+def _weigh(minerals: Minerals, mass: Mapping[str, Any], out: Array, take: Take) -> None:
+    """Moles times molar masses, and their sum; the masses are made of the oxides with the mean masses of the groups."""
     m, fe2, ca, na, fe3 = minerals, mass["fe2"], mass["ca"], mass["na"], mass["fe3"]
+    spare, total = take(), out[_ROW["norm_total_wt"]]
+    total[...] = 0.0
 
-    def put(name: str, amount: Array | None, molar: Any) -> None:
+    def put(name: str, amount: Array | None, constant: float, *groups: Any, times: float = 1.0) -> None:
+        """``amount`` times (``constant`` + ``times`` x the groups' masses) into the column."""
         row = out[_ROW[name]]
         if amount is None:
             row[...] = 0.0
-        else:
-            np.multiply(amount, molar, out=row)
+            return
+        molar: Any = constant
+        for group in groups:
+            part = group if times == 1.0 else np.multiply(group, times, spare) if np.ndim(group) else group * times
+            molar = np.add(part, molar, spare) if np.ndim(part) or np.ndim(molar) else part + molar
+        np.multiply(amount, molar, row)
+        if name in _IN_TOTAL:
+            np.add(total, row, total)
 
     put("q_wt", m.q, _SIO2)
     put("c_wt", m.c, _AL2O3)
@@ -169,48 +191,44 @@ def _weigh(minerals: Any, mass: Mapping[str, Any], out: Array) -> None:
     put("or_wt", m.or_, _K2O + _AL2O3 + 6.0 * _SIO2)
     put("lc_wt", m.lc, _K2O + _AL2O3 + 4.0 * _SIO2)
     put("kp_wt", m.kp, _K2O + _AL2O3 + 2.0 * _SIO2)
-    put("ab_wt", m.ab, na + (_AL2O3 + 6.0 * _SIO2))
-    put("ne_wt", m.ne, na + (_AL2O3 + 2.0 * _SIO2))
-    put("an_wt", m.an, ca + (_AL2O3 + 2.0 * _SIO2))
-    put("hl_wt", m.hl, 0.5 * na + (ATOMIC_WEIGHT["Cl"] - _HALF_OXYGEN))
-    put("th_wt", m.th, na + molar_mass("SO3"))
-    put("ac_wt", m.ac, na + fe3 + 4.0 * _SIO2)
-    put("ns_wt", m.ns, na + _SIO2)
+    put("ab_wt", m.ab, _AL2O3 + 6.0 * _SIO2, na)
+    put("ne_wt", m.ne, _AL2O3 + 2.0 * _SIO2, na)
+    put("an_wt", m.an, _AL2O3 + 2.0 * _SIO2, ca)
+    put("hl_wt", m.hl, ATOMIC_WEIGHT["Cl"] - _HALF_OXYGEN, na, times=0.5)
+    put("th_wt", m.th, molar_mass("SO3"), na)
+    put("ac_wt", m.ac, 4.0 * _SIO2, na, fe3)
+    put("ns_wt", m.ns, _SIO2, na)
     put("ks_wt", m.ks, _K2O + _SIO2)
-    put("cs_wt", m.cs, 2.0 * ca + _SIO2)
-    put("mt_wt", m.mt, fe2 + fe3)
-    put("cm_wt", m.cm, fe2 + molar_mass("Cr2O3"))
-    put("hm_wt", m.hm, fe3)
-    put("il_wt", m.il, fe2 + molar_mass("TiO2"))
-    put("tn_wt", m.tn, ca + (molar_mass("TiO2") + _SIO2))
-    put("pf_wt", m.pf, ca + molar_mass("TiO2"))
+    put("cs_wt", m.cs, _SIO2, ca, times=2.0)
+    put("mt_wt", m.mt, 0.0, fe2, fe3)
+    put("cm_wt", m.cm, molar_mass("Cr2O3"), fe2)
+    put("hm_wt", m.hm, 0.0, fe3)
+    put("il_wt", m.il, molar_mass("TiO2"), fe2)
+    put("tn_wt", m.tn, molar_mass("TiO2") + _SIO2, ca)
+    put("pf_wt", m.pf, molar_mass("TiO2"), ca)
     put("ru_wt", m.ru, molar_mass("TiO2"))
-    put("ap_wt", m.ap, CAO_PER_P2O5 * ca + molar_mass("P2O5"))
+    put("ap_wt", m.ap, molar_mass("P2O5"), ca, times=CAO_PER_P2O5)
     if m.f_in_ap is not None:
-        out[_ROW["ap_wt"]] += m.f_in_ap * (ATOMIC_WEIGHT["F"] - _HALF_OXYGEN)
-    put("fr_wt", m.fr, ca + 2.0 * (ATOMIC_WEIGHT["F"] - _HALF_OXYGEN))
-    put("pr_wt", m.pr, fe2 + (2.0 * ATOMIC_WEIGHT["S"] - ATOMIC_WEIGHT["O"]))
-    put("cc_wt", m.cc, ca + molar_mass("CO2"))
+        apatite = out[_ROW["ap_wt"]]
+        apatite += np.multiply(m.f_in_ap, ATOMIC_WEIGHT["F"] - _HALF_OXYGEN, spare)
+        total += spare
+    put("fr_wt", m.fr, 2.0 * (ATOMIC_WEIGHT["F"] - _HALF_OXYGEN), ca)
+    put("pr_wt", m.pr, 2.0 * ATOMIC_WEIGHT["S"] - ATOMIC_WEIGHT["O"], fe2)
+    put("cc_wt", m.cc, molar_mass("CO2"), ca)
 
-    wollastonite, ferrosilite = ca + _SIO2, fe2 + _SIO2
-    di_mg, hy_mg, ol_mg = m.di * m.mg_share, m.hy * m.mg_share, m.ol * m.mg_share
-    put("wo_wt", m.wo, wollastonite)
-    put("di_wo_wt", m.di, wollastonite)
-    put("di_en_wt", di_mg, _MGO + _SIO2)
-    put("di_fs_wt", m.di - di_mg, ferrosilite)
-    put("hy_en_wt", hy_mg, _MGO + _SIO2)
-    put("hy_fs_wt", m.hy - hy_mg, ferrosilite)
-    put("ol_fo_wt", ol_mg, 2.0 * _MGO + _SIO2)
-    put("ol_fa_wt", m.ol - ol_mg, 2.0 * fe2 + _SIO2)
-    for group, parts in _PARTS.items():
-        row = out[_ROW[group]]
-        np.add(out[_ROW[parts[0]]], out[_ROW[parts[1]]], out=row)
-        for part in parts[2:]:
-            row += out[_ROW[part]]
-
-
-_PARTS = {
-    "di_wt": ("di_wo_wt", "di_en_wt", "di_fs_wt"),
-    "hy_wt": ("hy_en_wt", "hy_fs_wt"),
-    "ol_wt": ("ol_fo_wt", "ol_fa_wt"),
-}
+    put("wo_wt", m.wo, _SIO2, ca)
+    put("di_wo_wt", m.di, _SIO2, ca)
+    of_mg = take()
+    for group, amount, magnesian, ferrous, times in (
+        ("di", m.di, "di_en_wt", "di_fs_wt", 1.0),
+        ("hy", m.hy, "hy_en_wt", "hy_fs_wt", 1.0),
+        ("ol", m.ol, "ol_fo_wt", "ol_fa_wt", 2.0),
+    ):
+        np.multiply(amount, m.mg_share, of_mg)
+        put(magnesian, of_mg, times * _MGO + _SIO2)
+        put(ferrous, np.subtract(amount, of_mg, of_mg), _SIO2, fe2, times=times)
+        row = out[_ROW[f"{group}_wt"]]
+        np.add(out[_ROW[magnesian]], out[_ROW[ferrous]], row)
+        if group == "di":
+            row += out[_ROW["di_wo_wt"]]
+        total += row

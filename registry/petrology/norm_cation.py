@@ -8,7 +8,7 @@ import numpy as np
 from numpy.typing import ArrayLike, NDArray
 
 from registry.petrology.norm import CHUNK_ROWS, NORM_END_MEMBERS, NORM_MINERALS, norm_inputs, norm_moles
-from registry.petrology.norm_sequence import CAO_PER_P2O5, Minerals, allot_minerals
+from registry.petrology.norm_sequence import CAO_PER_P2O5, Minerals, Scratch, Take, allot_minerals
 
 Array = NDArray[np.float64]
 
@@ -36,19 +36,21 @@ def cation_norm(oxides: Mapping[str, ArrayLike]) -> dict[str, Array]:
     flat = {name: array.reshape(-1) for name, array in arrays.items()}
     rows = flat["sio2_wt"].shape[0]
     result = np.zeros((len(CATION_COLUMNS), rows))
+    scratch = Scratch(min(rows, CHUNK_ROWS))
     for start in range(0, rows, CHUNK_ROWS):
-        chunk = slice(start, start + CHUNK_ROWS)
-        _norm_of_chunk({name: array[chunk] for name, array in flat.items()}, result[:, chunk])
+        out = result[:, start : start + CHUNK_ROWS]
+        chunk = {name: array[start : start + CHUNK_ROWS] for name, array in flat.items()}
+        _norm_of_chunk(chunk, out, scratch.rows(out.shape[1]))
     return {name: result[position].reshape(shape) for position, name in enumerate(CATION_COLUMNS)}
 
 
-def _norm_of_chunk(wt: Mapping[str, Array], out: Array) -> None:
+def _norm_of_chunk(wt: Mapping[str, Array], out: Array, take: Take) -> None:
     """Fill ``out``, shape (columns, rows), with the cation norm of the chunk."""
     possible = np.ones(out.shape[1], dtype=bool)
     for array in wt.values():
         possible &= (array >= 0.0) & (array < np.inf)
     wt = {name: np.where(possible, array, 0.0) for name, array in wt.items()}
-    cations = _cations(allot_minerals(norm_moles(wt)[0]))
+    cations = _cations(allot_minerals(norm_moles(wt, take)[0], take))
     total = sum(cations[name.removesuffix("_wt")] for name in NORM_MINERALS if name.removesuffix("_wt") in cations)
     factor = 100.0 / np.where(possible & (total > 0.0), total, np.nan)
     for position, column in enumerate(CATION_COLUMNS):

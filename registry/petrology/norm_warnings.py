@@ -39,9 +39,10 @@ def norm_shortfalls(oxides: Mapping[str, ArrayLike], norm: Mapping[str, ArrayLik
     """
     wt = norm_inputs(oxides)
     norm = cipw_norm(oxides) if norm is None else norm
-    moles, _ = norm_moles(wt)
-    early = allot_accessories(moles)
-    zero = np.zeros(wt["sio2_wt"].shape)
+    shape = wt["sio2_wt"].shape
+    moles, _ = norm_moles(wt, lambda: np.empty(shape))
+    early = allot_accessories(moles, lambda: np.empty(shape))
+    zero = np.zeros(shape)
     left = {code: zero for code in NORM_WARNING_TEXTS}
     left["p2o5_exceeds_cao"] = (moles.p - early.ap) * molar_mass("P2O5")
     for code, given, bound, mass in (
