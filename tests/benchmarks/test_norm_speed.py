@@ -1,7 +1,8 @@
 """The complete norm against a bare numpy pass with as many elementwise steps: at most three times as long.
 
 The steps are counted, not guessed: the norm runs once on arrays that report every ufunc applied to them. The bare pass
-multiplies that often, each time into a new array, over the same rows in chunks of the same length.
+multiplies that often, each time into a new array, over the same rows in chunks of the same length. Norm and bare pass
+run in turn, each time in a process of its own; the fastest run of each counts.
 """
 
 from __future__ import annotations
@@ -14,7 +15,8 @@ import pytest
 
 LIMIT = 3.0
 ROWS = 300_000
-REPEATS = 5
+REPEATS = 7
+ROUNDS = 4
 
 ANALYSES = """
 import json, time
@@ -80,7 +82,9 @@ def _run(task: str, **constants: int) -> float:
 @pytest.mark.benchmark
 def test_norm_speed_stays_within_three_bare_passes(capsys: pytest.CaptureFixture[str]) -> None:
     steps = int(_run(COUNT))
-    norm, bare = _run(NORM), _run(BARE, STEPS=steps)
+    norm = bare = float("inf")
+    for _ in range(ROUNDS):  # in turn, so that a busy moment of the machine strikes both
+        norm, bare = min(norm, _run(NORM)), min(bare, _run(BARE, STEPS=steps))
 
     with capsys.disabled():
         print(
