@@ -77,6 +77,7 @@ LAYERS = (
         "registry.store registry.petrology registry.errors",
     ),
     _layer("registry/", "numpy pandas openpyxl orjson pyproj click sqlalchemy alembic pyarrow", "registry seed_demo"),
+    _layer("web/serving.py", "waitress flask", "web registry.errors"),
     _layer(
         "web/",
         "flask flask_wtf wtforms werkzeug jinja2 markupsafe plotly orjson",

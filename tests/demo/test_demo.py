@@ -165,7 +165,8 @@ def test_heat_production_follows_from_cells_and_measured_density(view: sqlite3.C
     """A = 1e-5 rho (9.52 U + 2.56 Th + 3.48 K), Rybach 1988 (coefficients from memory)."""
     reported = {name: cell for name, cell in certificate_row("K88", "OD001-310").items() if isinstance(cell, float)}
     samples = next(path for path in seed_demo.files() if path.name == "samples.csv")
-    (sample,) = [row for row in csv.DictReader(samples.open(encoding="utf-8")) if row["sample_code"] == "OD001-310"]
+    rows = csv.DictReader(io.StringIO(samples.read_text(encoding="utf-8")))
+    (sample,) = [row for row in rows if row["sample_code"] == "OD001-310"]
     potassium_wt = reported["K2O"] * 2 * 39.098 / 94.195
     expected = (
         1e-5 * float(sample["density_kg_m3"]) * (9.52 * reported["U"] + 2.56 * reported["Th"] + 3.48 * potassium_wt)
