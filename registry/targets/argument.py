@@ -245,9 +245,18 @@ class _Argument:
                 weights[name] = weights.get(name, 0) + weight
         told: dict[str, int] = {}
         for name, weight in sorted(weights.items(), key=lambda pair: -pair[1]):
-            words = self.definition.supply.get(name, name)
+            words = self._remedy(name)
             told[words] = max(told.get(words, 0), weight)
         return list(told.items())
+
+    def _remedy(self, name: str) -> str:
+        words = self.definition.supply.get(name, name)
+        if name in TEXT_QUANTITIES:
+            why = self.known.why_unknown(name)
+            ground = why.labels[int(why.codes[0])]
+            return f"{words} of fresh rock or a third witness ({ground})" if ground else words
+        below = np.asarray(self.known.workspace.get(f"qualifier:{name}", [0]))[0] == QUALIFIER_BELOW
+        return f"{words}, with a lower detection limit" if below else words
 
     def _open_inputs(self, item: Gate | Criterion) -> list[str]:
         conditions: list[Condition] = [item.test, *(item.only_if if isinstance(item, Criterion) else ())]

@@ -79,18 +79,18 @@ def _compare(value: Interval, limit: Interval, sign: str) -> tuple[Booleans, Boo
 def evaluate_gate(known: Known, gate: Gate) -> Outcome:
     met, failed = evaluate(known, gate.test)
     letters = np.where(met, MET, np.where(failed, NOT_MET, UNKNOWN)).astype(np.uint8)
-    values, limits, texts = _shown(known, gate.test, letters)
+    values, limits, texts = _shown(known, gate.test)
     return Outcome(letters, values, limits, texts)
 
 
 def evaluate_criterion(known: Known, criterion: Criterion) -> Outcome:
     """The outcome of a criterion with its alternative, its precondition and its near band."""
     letters = _letters(known, criterion.test, criterion.near)
-    values, limits, texts = _shown(known, criterion.test, letters)
+    values, limits, texts = _shown(known, criterion.test)
     if criterion.otherwise is not None:
         instead = known.number(criterion.test.quantity).missing
         other = _letters(known, criterion.otherwise, criterion.otherwise_near)
-        other_values, other_limits, other_texts = _shown(known, criterion.otherwise, other)
+        other_values, other_limits, other_texts = _shown(known, criterion.otherwise)
         instead &= ~known.number(criterion.otherwise.quantity).missing
         letters = np.where(instead, other, letters)
         values, limits = np.where(instead, other_values, values), np.where(instead, other_limits, limits)
@@ -126,13 +126,14 @@ def _with_precondition(
     return letters, Words(codes, labels)
 
 
-def _shown(known: Known, test: Condition, letters: NDArray[np.uint8]) -> tuple[Floats, Floats, Words]:
-    unknown = letters == UNKNOWN
+def _shown(known: Known, test: Condition) -> tuple[Floats, Floats, Words]:
     nothing = np.full(known.n, np.nan)
     if test.is_text:
-        words = known.words(test.quantity)
-        absent = np.where(words.missing & unknown, len(words.labels), words.codes)
-        return nothing, nothing, Words(absent, (*words.labels, _lacking(known, test.quantity, words.missing)))
+        words, why = known.words(test.quantity), known.why_unknown(test.quantity)
+        first = len(words.labels)
+        absent = np.where(why.codes == 0, first, first + why.codes)
+        codes = np.where(words.missing, absent, words.codes)
+        return nothing, nothing, Words(codes, (*words.labels, f"missing: {test.quantity}", *why.labels[1:]))
     value = known.number(test.quantity)
     if test.sign == "between":
         centre = 0.5 * (test.constant + test.upper)
@@ -140,12 +141,6 @@ def _shown(known: Known, test: Condition, letters: NDArray[np.uint8]) -> tuple[F
     else:
         limits = limit_of(known, test).point
     return value.point, limits, _texts(known, test, value)
-
-
-def _lacking(known: Known, quantity: str, where: Booleans) -> str:
-    """For a text quantity: its own cause where the workspace gives one for all, else the quantity's name."""
-    del where
-    return f"missing: {quantity}"
 
 
 def _texts(known: Known, test: Condition, value: Interval) -> Words:

@@ -112,8 +112,16 @@ Rule = Callable[["Known"], "Interval | Words"]
 class Known:
     """What a workspace says of each quantity, each worked out once. ``n`` is the number of samples."""
 
-    def __init__(self, workspace: Workspace, n: int, rules: Mapping[str, Rule], powers: Mapping[str, Any]) -> None:
+    def __init__(
+        self,
+        workspace: Workspace,
+        n: int,
+        rules: Mapping[str, Rule],
+        powers: Mapping[str, Any],
+        grounds: Mapping[str, Callable[[Known], Words]],
+    ) -> None:
         self.workspace = workspace
+        self.grounds = grounds
         self.n = n
         self.rules = rules
         self.powers = powers
@@ -139,6 +147,11 @@ class Known:
                 texts = self.workspace.get(name)
                 self._words[name] = Words(np.zeros(self.n, dtype=np.intp), ("",)) if texts is None else Words.of(texts)
         return self._words[name]
+
+    def why_unknown(self, name: str) -> Words:
+        """Why a text quantity is not known, where more can be said than that it is missing."""
+        ground = self.grounds.get(name)
+        return ground(self) if ground else Words(np.zeros(self.n, dtype=np.intp), ("",))
 
     def raw(self, name: str) -> Floats:
         """The numbers of the workspace as they stand, NaN where it does not hold them."""

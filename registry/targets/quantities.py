@@ -8,6 +8,7 @@ from registry.petrology.constants import ZERO_CELSIUS_K, oxide_from_element
 from registry.petrology.heat import effective_half_width_m, heat_x_thickness_mw_m2, rock_density_kg_m3
 from registry.petrology.intrusion_heat import theta_centre_interval
 from registry.petrology.normalising import CHONDRITE_MCDONOUGH
+from registry.petrology.redox_series import is_loi_too_high, is_magnetite_destroyed, is_redox_conflict
 from registry.petrology.saturation import ZIRCON_M_HIGH, ZIRCON_M_LOW, ZIRCON_SIO2_LOW_WT, zircon_m
 from registry.petrology.trace import RATIOS
 from registry.targets.intervals import Booleans, Floats, Interval, Known, Rule, Words, point
@@ -190,6 +191,29 @@ POWERS["eu_anomaly"] = (
 )
 
 
+def _why_no_redox(known: Known) -> Words:
+    """Two witnesses that disagree, or alteration that silences them."""
+    inputs = (
+        known.raw("delta_ox"),
+        known.raw("magnetic_susceptibility_si"),
+        known.raw("loi_wt"),
+        known.flag("logged_destroyed_magnetite"),
+        known.conventions,
+    )
+    conflict, destroyed = is_redox_conflict(*inputs), is_magnetite_destroyed(*inputs)
+    altered = is_loi_too_high(*inputs)
+    codes = np.select([conflict, destroyed, altered], [1, 2, 3], 0)
+    return Words(codes, ("", *_REDOX_GROUNDS))
+
+
+_REDOX_GROUNDS = (
+    "redox_conflict: titrated FeO and susceptibility disagree",
+    "susceptibility is low, but alteration may have destroyed magnetite",
+    "loss on ignition is too high for the iron to be the magma's",
+)
+GROUNDS = {"redox_series": _why_no_redox}
+
+
 def known_of(workspace: object, n: int) -> Known:
     """What a workspace says of every quantity the targets read."""
-    return Known(workspace, n, RULES, POWERS)  # type: ignore[arg-type]
+    return Known(workspace, n, RULES, POWERS, GROUNDS)  # type: ignore[arg-type]

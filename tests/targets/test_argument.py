@@ -48,6 +48,14 @@ def test_argue_gaps_are_listed_dearest_first_with_what_supplies_them():
     assert "Redox is not known (neither titrated FeO nor a susceptibility reading)" in told["argument"]
 
 
+def test_argue_witnesses_of_redox_that_disagree_are_named():
+    told = argue(load_definition("porphyry_copper"), PORPHYRY | {"redox_series": None, "delta_ox": -0.3, "loi_wt": 1.0})
+    assert told["missing"] == [
+        "titrated FeO or a susceptibility reading of fresh rock or a third witness "
+        "(redox_conflict: titrated FeO and susceptibility disagree) (opens 24 of 100 points)"
+    ]
+
+
 def test_argue_near_miss_and_contradiction_are_shown():
     told = argue(load_definition("porphyry_copper"), PORPHYRY | {"sr_ppm": 330.0, "eu_ppm": 0.5})
     assert told["would_turn"] == ["Sr over Y: 30.0, asked for >= 35.0, a near miss worth 22 points"]
@@ -69,7 +77,7 @@ def test_argue_packed_qualifiers_and_digestions_give_intervals():
     told = argue(load_definition("tin"), sample)
     assert "Sn is < 10 ppm" in told["argument"]
     assert told["missing"][0].startswith("titrated FeO or a susceptibility reading")
-    assert any(words.startswith("Sn by fusion or peroxide fusion") for words in told["missing"])
+    assert "Sn by fusion or peroxide fusion, with a lower detection limit (opens 8 of 100 points)" in told["missing"]
 
 
 def test_argue_tungsten_names_the_digestion_of_its_key_analyte():
