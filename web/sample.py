@@ -122,6 +122,9 @@ def _majors(chosen: Sequence[Mapping[str, Any]], sheets: Mapping[str, Mapping[st
     for value in chosen:
         if value["unit"] == "wt%":
             rows.append({**value, "volatile_free": closed.get(value["column"].replace("_wt", "_vf_wt"))})
+    as_analysed = numbers.aligned([row["sign"] + numbers.reported(row["value"]) for row in rows])
+    for row, spelled in zip(rows, as_analysed, strict=True):
+        row["spelled"] = spelled
     return rows
 
 

@@ -105,10 +105,21 @@ def short_source(source: str) -> str:
     return f"{who} {cited['year']}"
 
 
+def digestion_words(code: str) -> str:
+    """A stored digestion as it is said: ``four-acid``, ``portable XRF``."""
+    known = {"xrf": "XRF", "portable_xrf": "portable XRF", "inaa": "INAA", "four_acid": "four-acid"}
+    return known.get(code, code.replace("_", " "))
+
+
 def register(app: Flask) -> None:
     """Make the spellings known to the templates."""
     app.jinja_env.filters.update(
-        formula=formula, column_words=column_words, readable=readable, unit_words=unit_words, short_source=short_source
+        formula=formula,
+        column_words=column_words,
+        readable=readable,
+        unit_words=unit_words,
+        short_source=short_source,
+        digestion_words=digestion_words,
     )
 
 

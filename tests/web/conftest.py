@@ -154,15 +154,15 @@ def build_registry(path: Path, count: int = 120) -> Registry:
 
 
 @pytest.fixture(scope="session")
-def registry_path(tmp_path_factory: pytest.TempPathFactory) -> Path:
+def invented_registry(tmp_path_factory: pytest.TempPathFactory) -> Path:
     path = tmp_path_factory.mktemp("site") / "invented.sqlite"
     build_registry(path).close()
     return path
 
 
 @pytest.fixture(scope="session")
-def app(registry_path: Path) -> Iterator[Flask]:
-    application = create_app(str(registry_path))
+def app(invented_registry: Path) -> Iterator[Flask]:
+    application = create_app(str(invented_registry))
     application.testing = True
     yield application
     application.extensions["registry"].close()
