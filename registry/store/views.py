@@ -121,7 +121,10 @@ def _judgement_sheets(dialect: Any, sample: dict[str, str]) -> dict[str, tuple[d
                 "value_text": f"CASE WHEN substr({said}, 1, {len(_LACKING)}) <> '{_LACKING}' THEN {said} END",
                 "threshold": threshold,
                 "margin": f"CASE substr(q.comparison, 1, 1) WHEN '<' THEN {threshold} - {value} "
-                f"WHEN '>' THEN {value} - {threshold} END",
+                f"WHEN '>' THEN {value} - {threshold} "
+                # between: the packed threshold is the nearer end, rounded to six digits
+                f"WHEN 'b' THEN CASE WHEN abs({threshold} - q.threshold) <= 1e-5 * abs(q.threshold) "
+                f"THEN {value} - {threshold} ELSE {threshold} - {value} END END",
                 "outcome": _words(outcome, OUTCOME_WORDS),
                 "missing": f"CASE WHEN substr({said}, 1, {len(_LACKING)}) = '{_LACKING}' "
                 f"THEN substr({said}, {len(_LACKING) + 1}) END",
@@ -165,7 +168,7 @@ def _expanded_sheets(
         "cause_sheet": (
             {**sample, "column_name": "q.name", "cause": "w.code", "text": "w.text"},
             f"derived AS d JOIN sample AS s ON s.sample_id = d.sample_id JOIN quantity AS q ON {letter} <> '.' "
-            f"JOIN cause_kind AS w ON w.letter = {letter}",
+            f"JOIN cause_kind AS w ON w.letter = {letter} AND w.code <> 'value_present'",
         ),
     }
 
