@@ -8,10 +8,13 @@ import shutil
 import sqlite3
 import subprocess
 import sys
+from collections.abc import Callable, Iterator, Sequence
 from pathlib import Path
+from typing import Any
 
 import click
 import pytest
+import sqlalchemy as sa
 
 import seed_demo
 from registry.cli import COMMANDS, group
@@ -115,6 +118,20 @@ def demo_registry(tmp_path_factory: pytest.TempPathFactory) -> Path:
     return path
 
 
+@pytest.fixture(scope="module", params=["sqlite", pytest.param("postgresql", marks=pytest.mark.postgresql)])
+def demo_rows(request: pytest.FixtureRequest) -> Iterator[Callable[[str], Sequence[Any]]]:
+    """A function that runs a query on the demo registry, once on each engine."""
+    if request.param == "sqlite":
+        place = f"sqlite:///{request.getfixturevalue('demo_registry')}"
+    else:
+        place = request.getfixturevalue("postgresql_server").new_database()
+        run("demo", "--no-serve", "--registry", place)
+    engine = sa.create_engine(place)
+    with engine.connect() as connection:
+        yield lambda query: connection.exec_driver_sql(query).fetchall()
+    engine.dispose()
+
+
 def run(*arguments: str) -> str:
     done = subprocess.run([sys.executable, "-m", "registry.cli", *arguments], capture_output=True, text=True, cwd=ROOT)
     assert done.returncode == 0, done.stderr
@@ -122,13 +139,8 @@ def run(*arguments: str) -> str:
 
 
 @pytest.mark.parametrize("query", QUERIES, ids=lambda query: query.splitlines()[0].removeprefix("-- "))
-def test_readme_query_runs_on_the_demo_and_finds_rows(demo_registry: Path, query: str) -> None:
-    connection = sqlite3.connect(demo_registry)
-    try:
-        rows = connection.execute(query).fetchall()
-    finally:
-        connection.close()
-    assert rows
+def test_readme_query_runs_on_the_demo_and_finds_rows(demo_rows: Callable[[str], Sequence[Any]], query: str) -> None:
+    assert demo_rows(query)
 
 
 def test_readme_offers_ten_queries() -> None:

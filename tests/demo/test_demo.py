@@ -15,8 +15,10 @@ import subprocess
 import sys
 from collections.abc import Iterator
 from pathlib import Path
+from typing import Any
 
 import pytest
+import sqlalchemy as sa
 
 import seed_demo
 
@@ -250,3 +252,22 @@ def test_demo_command_builds_the_same_views_and_reuses_them(registry: Path, tmp_
 
 def test_demo_registry_passes_the_check(registry: Path) -> None:
     run("check", "--registry", str(registry))
+
+
+@pytest.mark.postgresql
+def test_postgresql_holds_the_same_cells_and_verdicts(view: sqlite3.Connection, postgresql_server: Any) -> None:
+    place = postgresql_server.new_database()
+    run("create", "--registry", place)
+    run("import", *map(str, seed_demo.files()), "--registry", place)
+    queries = (
+        "SELECT sample_code, sr_y, k_rb, eu_anomaly, a_cnk FROM index_sheet ORDER BY sample_code",
+        "SELECT sample_code, q_wt, ab_wt, an_wt, norm_total_wt FROM norm_sheet ORDER BY sample_code",
+        "SELECT sample_code, target, verdict, score_min, score_max FROM verdict_sheet ORDER BY sample_code, target",
+    )
+    engine = sa.create_engine(place)
+    with engine.connect() as connection:
+        for query in queries:
+            expected = sorted(tuple(row) for row in view.execute(query))
+            found = sorted(tuple(row) for row in connection.exec_driver_sql(query))
+            assert found == expected
+    engine.dispose()
