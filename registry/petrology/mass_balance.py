@@ -43,6 +43,8 @@ MINERALS: Mapping[str, Mapping[str, float]] = {
     "apatite": {"cao_wt": 10.0 / 3.0, "p2o5_wt": 1.0},
 }
 _ENTRY_TOLERANCE = 1e-10
+#: Rounds of the active-set iteration allowed for each column.
+_ROUNDS_PER_COLUMN = 30
 
 
 @dataclass(frozen=True)
@@ -96,16 +98,18 @@ def balance_fractionation(
 def non_negative_least_squares(matrix: ArrayLike, target: ArrayLike) -> Array:
     """x >= 0 that minimises |matrix x - target|, by the active-set method. Source [lawson1974] chapter 23.
 
-    ``matrix`` (m, k), ``target`` (m,), result (k,). ValueError where shapes disagree; ArithmeticError where the
-    iteration does not end (it does for any finite input of full column rank).
+    ``matrix`` (m, k), ``target`` (m,), result (k,). ValueError where shapes disagree or a value
+    is not finite; ArithmeticError where the iteration does not end (it does for columns that are independent).
     """
     a, b = np.asarray(matrix, dtype=np.float64), np.asarray(target, dtype=np.float64)
     if a.ndim != 2 or b.shape != (a.shape[0],):
         raise ValueError(f"least squares: a matrix {a.shape} does not go with a target {b.shape}")
+    if not (np.isfinite(a).all() and np.isfinite(b).all()):
+        raise ValueError("least squares: a value is missing or infinite; give finite numbers only")
     x = np.zeros(a.shape[1])
     free = np.zeros(a.shape[1], dtype=bool)
     scale = _ENTRY_TOLERANCE * max(1.0, float(np.abs(a.T @ b).max(initial=0.0)))
-    for _ in range(30 * a.shape[1]):
+    for _ in range(_ROUNDS_PER_COLUMN * a.shape[1]):
         gradient = a.T @ (b - a @ x)
         waiting = ~free & (gradient > scale)
         if not waiting.any():

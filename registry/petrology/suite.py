@@ -117,7 +117,8 @@ def batch_melt_fractions(
     columns = tuple(column for column in melt if column in source and column in partition_coefficients)
     if not columns:
         raise ValueError(
-            f"batch melting: no element is in all of {sorted(melt)}, {sorted(source)} and the coefficients"
+            f"batch melting: no element is in all of melt {sorted(melt)}, source {sorted(source)} and coefficients "
+            f"{sorted(partition_coefficients)}; give at least one to all three"
         )
     rows = [
         batch_melt_fraction(positive(melt[column]) / source[column], partition_coefficients[column])
