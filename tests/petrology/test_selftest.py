@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import dataclasses
+import re
 
 import numpy as np
 import pytest
@@ -70,8 +71,7 @@ def test_run_check_impossible_row_tells_the_problem(changes: dict, problem: str)
     result = run_check(dataclasses.replace(FEOT, **changes))
 
     assert not result.passed
-    with pytest.raises(AssertionError, match=problem):
-        raise AssertionError(result.sentence())
+    assert re.search(problem, result.sentence())
 
 
 @pytest.mark.parametrize(

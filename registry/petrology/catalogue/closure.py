@@ -54,10 +54,6 @@ def _outside(total: Any, conventions: Any) -> Any:
     return (total < conventions.total_warn_low_wt) | (total > conventions.total_warn_high_wt)
 
 
-def _without_loi(total: Any, loi: Any) -> Any:
-    return np.isfinite(total) & np.isnan(loi)
-
-
 METHODS = (
     Method(
         key="total",
@@ -136,13 +132,5 @@ WARNINGS = (
         "the oxides sum to {value} wt%, outside the convention's limits of a good analysis",
         _outside,
         ("total_wt", "conventions"),
-    ),
-    Warning(
-        "total_without_loi",
-        "total_wt",
-        "total_wt",
-        "loss on ignition was not reported; the sum {value} wt% is without it",
-        _without_loi,
-        ("total_wt", "loi_wt"),
     ),
 )
