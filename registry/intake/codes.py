@@ -71,9 +71,11 @@ def choose_code_column(
             continue
         cells = [row[position].strip() for row in rows if position < len(row)]
         filled = [cell for cell in cells if cell]
-        if not filled:
-            continue
         by_heading = heading_score(label)
+        if not filled:
+            if not rows and by_heading:
+                scored.append((by_heading, -position, by_heading, label))
+            continue
         unique = len(set(filled)) / len(filled)
         noise = sum(bool(re.fullmatch(r"\d+\.0", cell)) for cell in filled) / len(filled)
         wordy = sum(bool(re.search(r"[A-Za-z].*\d|\d.*[A-Za-z]", cell)) for cell in filled) / len(filled)

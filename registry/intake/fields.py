@@ -41,7 +41,6 @@ _WORDS = {
     "cylinder": "pipe|plug|cylindrical",
     "true": "true north|tn|t|geographic", "grid": "grid north|gn|g|utm", "magnetic": "magnetic north|mn|mag|m",
 }  # fmt: skip
-_WORD_OF = {spelling: word for word, spellings in _WORDS.items() for spelling in spellings.split("|")}
 
 
 def unit_factor(field_name: str, unit: str) -> float | None:
@@ -75,10 +74,9 @@ def word(text: str, allowed: tuple[str, ...]) -> str | None:
     """The contract's word that a text means, or None."""
     plain = re.sub(r"[\s_\-]+", " ", text.strip().casefold())
     for one in allowed:
-        if plain == one.replace("_", " "):
+        if plain == one.replace("_", " ") or plain in _WORDS.get(one, "").split("|"):
             return one
-    other = _WORD_OF.get(plain)
-    return other if other in allowed else None
+    return None
 
 
 def iso_date(text: str) -> str | None:

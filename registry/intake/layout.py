@@ -22,6 +22,8 @@ _UNIT_LABEL = re.compile(r"(?i)^\W*units?\b")
 _METHOD_LABEL = re.compile(r"(?i)\b(method|analys\w+|technique|digest\w*|scheme|procedure|analytical|prep\w*)\b")
 _ANALYTE_LABEL = re.compile(r"(?i)^\W*(analytes?|elements?|oxides?|parameters?|determinands?|symbols?)\b")
 _FILLER = re.compile(r"(?i)unnamed:? ?\d+(_level_\d+)?")
+#: Headings of a column that holds the sign of another column's numbers.
+QUALIFIER_WORD = re.compile(r"(?i)(qualifiers?|qual|flags?|sign|censor(ed)?|q|lt|(lod|dl)[ _]flag)")
 #: No name of an analyte begins so.
 _NO_NAME = frozenset("0123456789<>-.")
 UNIT, METHOD, LOWER, UPPER, ANALYTE, LABELS = (
@@ -79,12 +81,15 @@ def _analytes_in(row: list[str]) -> dict[int, Heading]:
         if not text or len(text) > 60:
             continue
         heading = read_heading(text)
-        if heading.analyte is None:
+        if heading.analyte is None or (heading.method and QUALIFIER_WORD.fullmatch(heading.method)):
             continue
         beside = {folded[other] for other in (position - 1, position + 1) if 0 <= other < len(folded)}
         if (folded[position] == "y" and "x" in beside) or (folded[position] == "n" and "e" in beside):
             continue
         found[position] = heading
+    if not any(len(heading.analyte or "") > 1 or heading.unit for heading in found.values()):
+        # nothing but single letters: "b" or "y" beside them is hardly boron or yttrium
+        found = {position: heading for position, heading in found.items() if texts[position].isupper()}
     return found
 
 
@@ -98,8 +103,8 @@ def find_header_row(rows: list[list[str]]) -> tuple[int, dict[int, Heading]]:
     return best
 
 
-def _role(row: list[str], analytes: dict[int, Heading], first: bool) -> str | None:
-    """What a row beside the analyte row holds, None if it is no heading row."""
+def _role(row: list[str], analytes: dict[int, Heading], below: bool) -> str | None:
+    """What a row above or below the analyte row holds, None if it is no heading row."""
     inside = [text for position in analytes if position < len(row) and (text := _clean(row[position]))]
     outside = [
         text
@@ -123,10 +128,13 @@ def _role(row: list[str], analytes: dict[int, Heading], first: bool) -> str | No
         return UNIT
     if named > 0.5 * len(inside):
         return ANALYTE
-    spoken = sum(speaks_of_method(text) for text in inside)
-    if _METHOD_LABEL.search(label) or spoken >= 1 or len(inside) >= max(2, 0.3 * len(analytes)):
+    if _METHOD_LABEL.search(label):
         return METHOD
-    return LABELS if first else None
+    beside_codes = below and outside and not any(is_code_heading(text) for text in outside)
+    spoken = sum(speaks_of_method(text) for text in inside)
+    if not beside_codes and (spoken or len(inside) >= max(2, 0.3 * len(analytes))):
+        return METHOD
+    return None
 
 
 def _unlabelled_limits(row: list[str], analytes: dict[int, Heading]) -> bool:
@@ -147,8 +155,8 @@ def find_wide_layout(rows: list[list[str]]) -> WideLayout | None:
         return None
     roles = {index: ANALYTE}
     for above in range(index - 1, max(-1, index - 9), -1):
-        role = _role(rows[above], analytes, first=False)
-        if role is not None and role != LABELS:
+        role = _role(rows[above], analytes, below=False)
+        if role is not None:
             roles[above] = role
     below = index + 1
     first_row = below
@@ -157,7 +165,7 @@ def find_wide_layout(rows: list[list[str]]) -> WideLayout | None:
         if not any(_clean(cell) for cell in row):
             below += 1
             continue
-        role = _role(row, analytes, first=True)
+        role = _role(row, analytes, below=True)
         if role is None and _unlabelled_limits(row, analytes):
             role = LOWER if LOWER not in roles.values() else UPPER
         if role is None and below == index + 1 and _sub_labels(row, analytes):

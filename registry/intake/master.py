@@ -60,6 +60,9 @@ def read_master(
         at = positions[name]
         cells = [row[at] if at < len(row) else "" for row in rows]
         factor = _factor(name, headings[at], kind, findings, understood)
+        if factor is None:
+            table[name] = [None] * len(rows)
+            continue
         table[name] = _column(by_name[name], headings[at], cells, lines, decimal, factor, findings, understood)
         if headings[at] != name:
             understood.append(f"column '{headings[at]}' is {name}")
@@ -108,7 +111,7 @@ def _body(source: Source, first_row: int) -> tuple[list[list[str]], np.ndarray]:
     return rows, np.array(lines, np.int64)
 
 
-def _factor(name: str, heading: str, kind: str, findings: Findings, understood: list[str]) -> float:
+def _factor(name: str, heading: str, kind: str, findings: Findings, understood: list[str]) -> float | None:
     known = kinds.field_of(kind, heading)
     unit = known[1] if known else None
     if not unit:
@@ -119,7 +122,7 @@ def _factor(name: str, heading: str, kind: str, findings: Findings, understood: 
             "the unit in the heading does not belong to this column", column=heading, found=unit,
             expected=f"the unit of {name}", remedy="convert the numbers and correct the heading",
         )  # fmt: skip
-        return 1.0
+        return None
     if factor != 1.0:
         understood.append(f"column '{heading}' is multiplied by {factor:g} to give {name}")
     return factor

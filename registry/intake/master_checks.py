@@ -136,7 +136,7 @@ def _check_coordinates(
     blank = [None] * len(lines)
     for one, other in (("easting", "northing"), ("longitude", "latitude")):
         for line, first, second in zip(lines.tolist(), table.get(one, blank), table.get(other, blank), strict=True):
-            if (first is None) != (second is None):
+            if (first is None) != (second is None) and line not in findings.refused_lines:
                 missing, given = (one, other) if first is None else (other, one)
                 findings.add(
                     "only one of a pair of coordinates is given", row=line,

@@ -39,7 +39,7 @@ _IRON = re.compile(
 #: Headings that look like an analyte and are something else in the trade's tables.
 _NOT_ANALYTES = {"no", "id"}
 _METHOD_WORD = re.compile(
-    r"(?i)p?xrf|i?naa|icp|icpms|icpoes|icpaes|ms|oes|aes|aas|fa\d*|fus\w*|titr\w*|4a\w*|ar|aqua|regia|acid|four|ise|ir|comb\w*"
+    r"(?i)p?xrf|i?naa|icp|icpms|icpoes|icpaes|ms|oes|aes|aas|fa\d*|fus\w*|titr\w*|4a\w*|ar|aqua|regia|acid|four|fire|assay|ise|ir|comb\w*"
 )
 
 
@@ -119,7 +119,7 @@ def _within(text: str, with_unit: bool) -> tuple[str, str | None] | None:
     for length in range(min(4, len(words)), 0, -1):
         symbol, rest = analyte_symbol(" ".join(words[:length])), words[length:]
         in_lower_case = with_unit and rest and all(_METHOD_WORD.fullmatch(word) for word in rest)
-        if symbol is not None and (in_lower_case or _written_as(words[:length], symbol)) and rest != ["situ"]:
+        if symbol is not None and (in_lower_case or _written_as(words[:length], symbol, rest)) and rest != ["situ"]:
             return symbol, " ".join(rest) or None
     if len(words) <= 4 and len(words) > 1:
         symbol = analyte_symbol(words[-1])
@@ -128,9 +128,14 @@ def _within(text: str, with_unit: bool) -> tuple[str, str | None] | None:
     return None
 
 
-def _written_as(words: list[str], symbol: str) -> bool:
-    """Whether the words are the symbol in its own case or all capitals; ``in place`` is not indium."""
+def _written_as(words: list[str], symbol: str, rest: list[str]) -> bool:
+    """Whether the words are the symbol in its own case or all capitals; ``in place`` is not indium.
+
+    A name written out (``Lithium``) must be followed by method words only: ``Lithium borate`` is not lithium.
+    """
     text = "".join(words)
+    if text.isalpha() and len(text) > 3 and text.casefold() in _WORDS:
+        return all(_METHOD_WORD.fullmatch(word) for word in rest)
     return text == symbol or text == symbol.upper() or text.casefold() != symbol.casefold()
 
 

@@ -12,7 +12,7 @@ from registry.intake.cells import NUMBER, decimal_sign, parse_cell
 from registry.intake.checks import check_units, check_values
 from registry.intake.codes import choose_code_column, tidy_codes
 from registry.intake.findings import Findings
-from registry.intake.layout import WideLayout, find_wide_layout
+from registry.intake.layout import QUALIFIER_WORD, WideLayout, find_wide_layout
 from registry.intake.readings import ReadingOptions, ResultColumn, ResultTable
 from registry.intake.recipes import ColumnChoice, Recipe
 from registry.intake.settling import settle_columns
@@ -23,7 +23,7 @@ from registry.intake.wide import WideBody, WideReader
 
 _CONTROL = re.compile(r"(?i)\W*(qa ?[/&-]? ?qc|qc|control|sample[ _]?(type|kind|class)|type|qc[ _]?type|check type)\W*")
 _CONTROL_WORD = re.compile(r"(?i)\b(blanks?|blk|dupl?\w*|triplicate|standards?|std|crm|reference material|qa/?qc)\b")
-_QUALIFIER = re.compile(r"(?i)(?P<of>.*?)[\s_\-]*(qualifiers?|qual|flags?|sign|censored?|q|lt|lod[ _]flag)")
+_QUALIFIER = re.compile(r"(?i)(?P<of>.*?)[\s_\-]*" + QUALIFIER_WORD.pattern.removeprefix("(?i)"))
 
 
 @dataclass

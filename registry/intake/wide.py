@@ -19,7 +19,6 @@ from registry.intake.cells import (
     NUMBER,
     SPREADSHEET_ERROR,
     TEXT,
-    parse_cell,
 )
 from registry.intake.findings import Findings
 from registry.intake.names import read_heading
@@ -277,4 +276,4 @@ class WideReader:
 
 
 def _is_heading(text: str) -> bool:
-    return read_heading(text).analyte is not None or canonical_unit(text) is not None or parse_cell(text).state == BELOW
+    return read_heading(text).analyte is not None or canonical_unit(text) is not None

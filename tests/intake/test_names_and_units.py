@@ -1,0 +1,136 @@
+"""Spellings of analytes, units and digestions: the trade's own. Common practice of laboratories, no source."""
+
+from __future__ import annotations
+
+import pytest
+
+from registry.intake.methods import digestion_in
+from registry.intake.names import analyte_symbol, read_heading
+from registry.intake.units import canonical_unit, foreign_unit
+from registry.petrology.analytes import ANALYTES
+from registry.petrology.digestion import DIGESTIONS
+
+
+@pytest.mark.parametrize(
+    ("heading", "analyte", "unit", "method"),
+    [
+        ("SiO2 (%)", "SiO2", "wt%", None),
+        ("SiO2_wt%", "SiO2", "wt%", None),
+        ("SIO2", "SiO2", None, None),
+        ("sio2_pct", "SiO2", "wt%", None),
+        ("SiO₂", "SiO2", None, None),
+        ("Al2O3 [wt %]", "Al2O3", "wt%", None),
+        ("K2O%", "K2O", "wt%", None),
+        ("Zr ppm", "Zr", "ppm", None),
+        ("Zr_ppm", "Zr", "ppm", None),
+        ("ZrPPM", "Zr", "ppm", None),
+        ("Zr (mg/kg)", "Zr", "ppm", None),
+        ("Nb (µg/g)", "Nb", "ppm", None),
+        ("Au (g/t)", "Au", "ppm", None),
+        ("Au_FA_ppb", "Au", "ppb", "FA"),
+        ("Zr_ppm_XRF", "Zr", "ppm", "XRF"),
+        ("XRF_Zr_ppm", "Zr", "ppm", "XRF"),
+        ("zr_ppm_xrf", "Zr", "ppm", "xrf"),
+        ("Ga_ppm_fusion ICP-MS", "Ga", "ppm", "fusion ICP MS"),
+        ("L.O.I.", "LOI", None, None),
+        ("LOI 1000C %", "LOI", "wt%", None),
+        ("SUM", "Total", None, None),
+        ("Total (%)", "Total", "wt%", None),
+        ("H2O (-) %", "H2O-", "wt%", None),
+        ("h2o_plus_wt", "H2O+", "wt%", None),
+        ("Total S %", "S", "wt%", None),
+        ("Au.1", "Au", None, None),
+        ("W %", "W", "wt%", None),
+        ("sio2_wt", "SiO2", "wt%", None),
+        ("fe2o3t_wt", "Fe2O3T", "wt%", None),
+    ],
+)
+def test_heading_in_a_spelling_of_the_trade_gives_analyte_unit_method(heading, analyte, unit, method):
+    found = read_heading(heading)
+    assert (found.analyte, found.unit, found.method) == (analyte, unit, method)
+
+
+@pytest.mark.parametrize(
+    ("spelling", "symbol"),
+    [
+        *[
+            (text, "Fe2O3T")
+            for text in ("TFe2O3", "Fe2O3(T)", "Fe2O3T", "Fe2O3*", "Fe2O3tot", "Total Fe2O3", "Fe2O3_T")
+        ],
+        *[
+            (text, "Fe2O3T")
+            for text in ("Fe2O3 total", "T-Fe2O3", "Total Fe as Fe2O3", "Total iron as Fe2O3", "tFe2O3")
+        ],
+        *[(text, "FeOT") for text in ("FeO*", "FeOT", "FeOt", "FeO(tot)", "FeO_total", "Σ FeO", "TFeO", "Fe as FeO")],
+        ("Fe2O3", "Fe2O3"),
+        ("FeO", "FeO"),
+        ("Fe", "Fe"),
+        ("Fe(T)", "Fe"),
+    ],
+)
+def test_iron_in_every_usual_spelling_is_told_total_from_plain(spelling, symbol):
+    assert analyte_symbol(spelling) == symbol
+
+
+@pytest.mark.parametrize(
+    "text",
+    ["Sample ID", "Depth (m)", "From", "To", "No", "In situ", "Co/Ni", "Comment", "Notes on U", "as received", "mg#",
+     "Weight (kg)", "REE", "Unnamed: 4", "ME-ICP41", "Hole ID", ""],
+)  # fmt: skip
+def test_heading_that_is_no_analyte_stays_none(text):
+    assert read_heading(text).analyte is None
+
+
+@pytest.mark.parametrize("symbol", sorted(ANALYTES))
+def test_symbol_of_the_register_reads_as_itself_in_any_case(symbol):
+    expected = "Fe" if symbol == "Fe" else symbol
+    assert analyte_symbol(symbol) == expected
+    assert analyte_symbol(symbol.upper()) == expected
+    assert analyte_symbol(symbol.lower()) == expected
+
+
+@pytest.mark.parametrize(
+    ("text", "unit"),
+    [("%", "wt%"), ("wt. %", "wt%"), ("Weight %", "wt%"), ("g/100g", "wt%"), ("mg/kg", "ppm"), ("µg/g", "ppm"),
+     ("g/t", "ppm"), ("PPM", "ppm"), ("ug/kg", "ppb"), ("ng/g", "ppb"), ("ppt", "ppt"), ("oz/ton", "oz/t"),
+     ("mg/L", None), ("cps", None), ("SiO2", None)],
+)  # fmt: skip
+def test_unit_as_written_gives_the_canonical_word(text, unit):
+    assert canonical_unit(text) == unit
+
+
+def test_unit_of_no_mass_fraction_is_known_as_foreign():
+    assert foreign_unit("mg/L")
+    assert foreign_unit("at%")
+    assert not foreign_unit("ppm")
+    assert not foreign_unit("Granite")
+
+
+@pytest.mark.parametrize(
+    ("text", "digestion"),
+    [
+        ("Lithium borate fusion, ICP-MS", "fusion"),
+        ("LiBO2", "fusion"),
+        ("FUS-ICP", "fusion"),
+        ("Sodium peroxide fusion", "peroxide_fusion"),
+        ("Fused bead XRF", "xrf"),
+        ("pXRF", "portable_xrf"),
+        ("Handheld XRF", "portable_xrf"),
+        ("4-acid ICP-OES", "four_acid"),
+        ("Four Acid", "four_acid"),
+        ("HF-HNO3-HClO4", "four_acid"),
+        ("Aqua regia", "aqua_regia"),
+        ("AR-ICP", "aqua_regia"),
+        ("INAA", "inaa"),
+        ("FeO by titration", "titration"),
+        ("Combustion, infrared detection", "combustion"),
+        ("Fire assay, AAS", "fire_assay"),
+        ("FA50", "fire_assay"),
+        ("ICP-MS", None),
+        ("Zr (ppm)", None),
+        ("SAR-12", None),
+    ],
+)
+def test_method_text_names_the_digestion_or_none(text, digestion):
+    assert digestion_in(text) == digestion
+    assert digestion is None or digestion in DIGESTIONS
