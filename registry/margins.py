@@ -55,10 +55,11 @@ def margin(
     ends = interval_of(text) if value is None else (value, value)
     if test.is_text or limit is None or ends is None:
         return None
+    ticks: tuple[float, ...]
     if test.sign == "between":
         centre, unit = 0.5 * (test.constant + test.upper), 0.5 * (test.upper - test.constant)
-        ticks = (_place(-1.0), _place(1.0))
-        met = ticks
+        met = (_place(-1.0), _place(1.0))
+        ticks = met
     else:
         centre, unit = limit, _unit(test, near, limit)
         ticks = (0.0,)

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Mapping, Sequence
 from typing import Any
+from urllib.parse import urlencode
 
 from flask import Blueprint, render_template, url_for
 
@@ -108,7 +109,7 @@ def _facts(found: Mapping[str, Any]) -> list[tuple[str, str, str]]:
 
 
 def _list_of(argument: str, name: str | None) -> str:
-    return url_for("samples.list_page", **{argument: name}) if name else ""
+    return f"{url_for('samples.list_page')}?{urlencode({argument: name})}" if name else ""
 
 
 def _sample_address(code: str | None) -> str:

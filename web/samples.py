@@ -6,9 +6,9 @@ import csv
 import io
 from collections.abc import Iterable, Iterator, Mapping, Sequence
 from typing import Any
+from urllib.parse import urlencode
 
 from flask import Blueprint, Response, current_app, redirect, render_template, request, stream_with_context, url_for
-from werkzeug.datastructures import MultiDict
 
 from registry.store.reading import samples as reading
 from registry.store.reading.columns import Column, Columns
@@ -43,10 +43,8 @@ def _arguments() -> dict[str, list[str]]:
 
 
 def _address(pairs: Iterable[tuple[str, str]], endpoint: str = "samples.list_page", **more: str) -> str:
-    query: MultiDict[str, str] = MultiDict(pairs)
-    for name, value in more.items():
-        query[name] = value
-    return url_for(endpoint, **query.to_dict(flat=False))
+    query = urlencode([*pairs, *more.items()], safe=",")
+    return url_for(endpoint) + (f"?{query}" if query else "")
 
 
 def _unsettled(arguments: Mapping[str, Sequence[str]]) -> bool:

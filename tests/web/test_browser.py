@@ -54,6 +54,11 @@ def open_page(browser: Any, address: str) -> Iterator[Callable[..., Any]]:
     browser.execute_cdp_cmd("Emulation.setEmulatedMedia", {"features": []})
 
 
+def until(browser: Any, state: Callable[[], bool]) -> None:
+    """Wait up to ten seconds for what the page does by itself."""
+    WebDriverWait(browser, 10).until(lambda _: state())
+
+
 def pixels(browser: Any, selector: str) -> list[list[Pixel]]:
     """What the browser drew where the first element of ``selector`` stands, row by row."""
     return decoded(browser.find_element("css selector", selector).screenshot_as_png)
@@ -158,7 +163,7 @@ def test_browser_margin_shows_limit_and_value(open_page: Callable[..., Any]) -> 
 def test_browser_sentence_is_edited_in_place(open_page: Callable[..., Any]) -> None:
     browser = open_page("/samples")
     browser.find_element("css selector", ".add-part summary").click()
-    assert browser.switch_to.active_element.get_attribute("name") == "text"
+    until(browser, lambda: browser.switch_to.active_element.get_attribute("name") == "text")
     browser.find_element("css selector", "#add_column option[value='sr_y']").click()
     browser.find_element("id", "add_min").send_keys("20")
     browser.find_element("css selector", ".add-part button").click()
@@ -172,9 +177,9 @@ def test_browser_part_closes_with_escape_and_keeps_the_focus(open_page: Callable
     summary = browser.find_element("css selector", ".part summary")
     summary.click()
     part = browser.find_element("css selector", ".part")
-    assert part.get_attribute("open") == "true"
+    until(browser, lambda: browser.switch_to.active_element.get_attribute("name") == "kind")
     browser.switch_to.active_element.send_keys("\ue00c")
-    assert part.get_attribute("open") is None
+    until(browser, lambda: part.get_attribute("open") is None)
     assert browser.switch_to.active_element == summary
 
 
