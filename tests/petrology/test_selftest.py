@@ -65,6 +65,7 @@ def test_run_check_missing_input_gives_missing_output() -> None:
         ({"method": "no_such_key"}, "no method 'no_such_key'"),
         ({"method": "iron", "inputs": {"sio2": 50}}, r"takes no inputs \['sio2'\]"),
         ({"method": "iron", "inputs": {}, "output": "feo"}, "no output 'feo'"),
+        ({"method": "norm.NORM_COLUMNS"}, "TypeError"),
     ],
 )
 def test_run_check_impossible_row_tells_the_problem(changes: dict, problem: str) -> None:
