@@ -51,7 +51,8 @@ def slab_theta(distance_m: ArrayLike, half_width_m: ArrayLike, diffusion_m: Arra
     """
     a, x = positive(half_width_m), np.asarray(distance_m, dtype=np.float64)
     scale = 0.5 / positive(diffusion_m)
-    return 0.5 * (error_function((a - x) * scale) + error_function((a + x) * scale))
+    near, far = error_function(np.stack(np.broadcast_arrays((a - x) * scale, (a + x) * scale)))
+    return 0.5 * (near + far)
 
 
 def sphere_theta(distance_m: ArrayLike, radius_m: ArrayLike, diffusion_m: ArrayLike) -> Array:
@@ -64,11 +65,10 @@ def sphere_theta(distance_m: ArrayLike, radius_m: ArrayLike, diffusion_m: ArrayL
     s = positive(diffusion_m)
     central = r < 1e-6 * a
     safe = np.where(central, a, r)
-    near, far = (a - safe) / (2.0 * s), (a + safe) / (2.0 * s)
-    away = 0.5 * (error_function(near) + error_function(far))
-    away = away - s / (safe * np.sqrt(np.pi)) * (_gaussian(near) - _gaussian(far))
-    half = a / (2.0 * s)
-    centre = error_function(half) - 2.0 * half / np.sqrt(np.pi) * _gaussian(half)
+    near, far, half = np.broadcast_arrays((a - safe) / (2.0 * s), (a + safe) / (2.0 * s), a / (2.0 * s))
+    erf_near, erf_far, erf_half = error_function(np.stack([near, far, half]))
+    away = 0.5 * (erf_near + erf_far) - s / (safe * np.sqrt(np.pi)) * (_gaussian(near) - _gaussian(far))
+    centre = erf_half - 2.0 * half / np.sqrt(np.pi) * _gaussian(half)
     return np.where(central, centre, away)
 
 
@@ -124,7 +124,7 @@ def centre_theta(
             np.where(shape == "cylinder", cylinder_axis_theta(a, s), np.nan),
         ),
     )
-    known = np.isin(shape.astype("U8"), ("slab", "sphere", "cylinder")) & ~np.isnan(a)
+    known = ((shape == "slab") | (shape == "sphere") | (shape == "cylinder")) & ~np.isnan(a)
     return np.where(known & (started == 0.0), 1.0, result)
 
 

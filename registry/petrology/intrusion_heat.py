@@ -38,19 +38,18 @@ def theta_centre_interval(
     that reaches the surface, the other two no surface at all. A vertical cylinder never feels the surface here: its
     values are upper bounds. Water that moves cools 2-10 times faster. Source [jaeger1964].
     """
-    shape = np.atleast_1d(np.asarray(intrusion_shape, dtype=object))
-    youngest, oldest = age_interval_ma(age_ma, age_sigma_ma)
-    depth = not_negative(depth_to_top_m)
-
-    def theta(age: Array, depth_m: Array) -> Array:
-        length = diffusion_length_m(age * SECONDS_PER_MA, thermal_diffusivity_m2_s)
-        return centre_theta(shape, half_width_m, depth_m, length)
-
-    return {
-        "theta_centre": theta(not_negative(age_ma), depth),
-        "theta_centre_low": theta(oldest, np.where(np.isnan(depth), 0.0, depth)),
-        "theta_centre_high": theta(youngest, depth),
-    }
+    shape, half_width, depth, age, sigma = np.broadcast_arrays(
+        np.atleast_1d(np.asarray(intrusion_shape, dtype=object)),
+        positive(half_width_m),
+        not_negative(depth_to_top_m),
+        not_negative(age_ma),
+        not_negative(age_sigma_ma),
+    )
+    youngest, oldest = age_interval_ma(age, sigma)
+    depths = np.stack([depth, np.where(np.isnan(depth), 0.0, depth), depth])
+    lengths = diffusion_length_m(np.stack([age, oldest, youngest]) * SECONDS_PER_MA, thermal_diffusivity_m2_s)
+    theta, low, high = centre_theta(shape, half_width, depths, lengths)
+    return {"theta_centre": theta, "theta_centre_low": low, "theta_centre_high": high}
 
 
 def latent_heat_equivalent_c(

@@ -98,7 +98,7 @@ def test_batch_melting_without_a_common_element_is_refused() -> None:
 
 
 @pytest.mark.parametrize(
-    ("noise", "word"), [([0, 0, 0, 0, 0], "good"), ([0, 8, -3, 6, -7], "fair"), ([0, 18, -8, 12, -20], "poor")]
+    ("noise", "word"), [([0, 0, 0, 0, 0], "good"), ([0, 4, -3, 4, -3], "fair"), ([0, 18, -8, 12, -20], "poor")]
 )
 def test_trend_quality_falls_with_scatter(noise: list[float], word: str) -> None:
     sio2 = 50.0 - 15.0 * np.log(_LEFT) + np.array(noise)

@@ -25,6 +25,8 @@ _INTRUSION_SHEET = "intrusion_sheet"
 #: Zr (ppm) above which zircon that four acids leave behind holds a share of U and Th (common practice, no source).
 ZR_THAT_HIDES_URANIUM_PPM = 200.0
 _BODY = ("intrusion_shape", "half_width_m", "volume_km3", "depth_to_top_m", "age_ma", "age_sigma_ma")
+#: Weights, independent over the rationals, by which bodies are told apart.
+KEY_WEIGHTS = np.sqrt([2.0, 3.0, 5.0, 7.0, 11.0])
 _THETA = ("theta_centre", "theta_centre_low", "theta_centre_high")
 
 
@@ -43,14 +45,27 @@ def _theta(
     result = {name: np.full(radius.shape, np.nan) for name in _THETA}
     known = np.flatnonzero((code > 0) & ~np.isnan(radius) & (age >= 0.0))
     if known.size:
-        rows = np.column_stack([column[known] for column in (code, radius, depth, age, sigma)])
-        bodies, row_of = np.unique(np.nan_to_num(rows, nan=-1.0), axis=0, return_inverse=True)
-        names = np.array(("", *SHAPES), dtype=object)[bodies[:, 0].astype(np.intp)]
-        half, top, years, spread = bodies[:, 1:].T
+        rows = np.nan_to_num([column[known] for column in (code, radius, depth, age, sigma)], nan=-1.0)
+        bodies, body_of = _distinct(rows)
+        names = np.array(("", *SHAPES), dtype=object)[bodies[0].astype(np.intp)]
+        half, top, years, spread = bodies[1:]
         interval = theta_centre_interval(names, half, top, years, spread, conventions.thermal_diffusivity_m2_s)
         for name in _THETA:
-            result[name][known] = interval[name][row_of.ravel()]
+            result[name][known] = interval[name][body_of]
     return result
+
+
+def _distinct(columns: Any) -> tuple[Any, Any]:
+    """Distinct columns of a (k, n) array and, for each column, where it stands among them.
+
+    Columns are told apart by one weighted sum, which sorts faster than whole columns; should two that differ share
+    it, all are kept.
+    """
+    _, first, inverse = np.unique(KEY_WEIGHTS @ columns, return_index=True, return_inverse=True)
+    kept = columns[:, first]
+    if np.array_equal(kept[:, inverse], columns):
+        return kept, inverse
+    return columns, np.arange(columns.shape[1])
 
 
 def _thickness(heat: Any, shape: Any, half_width: Any, volume: Any) -> Any:
@@ -72,12 +87,12 @@ def _is_present(value: Any) -> Any:
 
 
 def _incomplete(shape: Any, half_width: Any, volume: Any, age: Any) -> Any:
-    has_shape = np.isin(shape.astype("U8"), SHAPES)
+    has_shape = (shape == "slab") | (shape == "sphere") | (shape == "cylinder")
     return ~has_shape | np.isnan(effective_half_width_m(shape, half_width, volume)) | ~(age >= 0.0)
 
 
 def _no_thickness(shape: Any, half_width: Any, volume: Any) -> Any:
-    flat = np.isin(shape.astype("U8"), ("slab", "sphere"))
+    flat = (shape == "slab") | (shape == "sphere")
     return ~flat | np.isnan(effective_half_width_m(shape, half_width, volume))
 
 
