@@ -60,17 +60,9 @@ class Filter:
 
     @property
     def narrows(self) -> bool:
-        """True where some condition leaves samples out."""
-        return bool(
-            self.text
-            or self.area
-            or self.site
-            or self.intrusion
-            or self.kind
-            or self.target
-            or self.verdict
-            or self.ranges
-        )
+        """True where some condition leaves samples out; a target alone does not."""
+        named = self.area or self.site or self.intrusion
+        return bool(self.text or named or self.kind or self.verdict or self.ranges)
 
     def arguments(self) -> list[tuple[str, str]]:
         """The filter as URL arguments, each given once in a fixed order, defaults left out."""
@@ -166,7 +158,7 @@ def _ranges(arguments: Mapping[str, Sequence[str]], columns: Columns, problems: 
             continue
         column = columns.get(name)
         if column is None or not column.numeric:
-            where = "add_column" if low_name == "add_min" else low_name
+            where = "add_column" if low_name == "add_min" else low_name if low else high_name
             problems[where] = (
                 _unknown_column(name, columns) if column is None else f"“{name}” holds words; a range needs a number."
             )
