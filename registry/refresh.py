@@ -35,6 +35,7 @@ def drain(connection: Any, cause: str = "edited", limit: int | None = None) -> i
         rules = rules or read_rules(connection)
         derive = [sample_id for sample_id, level in pending if level == DERIVE]
         judge = [sample_id for sample_id, level in pending if level != DERIVE]
+        derive = _ever_analysed(connection, derive)
         if derive:
             recompute(connection, recompose(connection, derive), rules, cause, rewrite_composition=True)
         if judge:
@@ -42,6 +43,15 @@ def drain(connection: Any, cause: str = "edited", limit: int | None = None) -> i
         stale.clear(connection, [sample_id for sample_id, _ in pending])
         done += len(pending)
     return done
+
+
+def _ever_analysed(connection: Any, sample_ids: Sequence[int]) -> list[int]:
+    """Those of the samples that have results or once had; the others have nothing to derive or judge yet."""
+    ids = np.asarray(sample_ids, dtype=np.int64)
+    analysed = np.union1d(
+        loading.samples_with_aliquots(connection, ids), loading.samples_with_derived(connection, ids)
+    )
+    return analysed.astype(np.int64).tolist()
 
 
 def refresh_registry(registry: Registry, everything: bool = False, cause: str = "refresh") -> int:

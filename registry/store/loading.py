@@ -69,6 +69,14 @@ def samples_with_aliquots(connection: sa.Connection, sample_ids: Any) -> np.ndar
     return np.array([row[0] for row in rows], dtype=np.int64)
 
 
+def samples_with_derived(connection: sa.Connection, sample_ids: Any) -> np.ndarray:
+    """Those of the samples that have been computed before, int64, ascending."""
+    rows = raw_rows.select(
+        connection, "SELECT sample_id FROM derived WHERE sample_id {ids} ORDER BY sample_id", sample_ids
+    )
+    return np.array([row[0] for row in rows], dtype=np.int64)
+
+
 def load_blocks(connection: sa.Connection, sample_ids: Any) -> list[StoredBlock]:
     """The results of samples (ids ascending) in active batches, a block a batch and repeat.
 
