@@ -13,6 +13,7 @@ from numpy.typing import ArrayLike, NDArray
 from registry.petrology.constants import FE2O3_FROM_FEO, FEO_FROM_FE2O3
 from registry.petrology.conventions import Conventions
 from registry.petrology.redox import buffer_log_fo2, ratio_kress
+from registry.petrology.tas import FIELDS, tas_field
 
 Array = NDArray[np.float64]
 
@@ -21,12 +22,9 @@ LE_MAITRE_VOLCANIC = (0.93, -0.0042, -0.022)
 LE_MAITRE_PLUTONIC = (0.88, -0.0016, -0.027)
 #: Where the regression still gives a ratio that a rock can have; outside it the split is missing, never clamped.
 LE_MAITRE_LIMITS = (0.05, 1.0)
-#: Fe2O3/FeO by weight of the fields without excess alkalis, by increasing silica (Middlemost 1989).
-MIDDLEMOST_RATIOS = np.array([0.15, 0.20, 0.30, 0.35, 0.40, 0.50])
-MIDDLEMOST_NAMES = ("picrobasalt", "basalt", "basaltic andesite", "andesite", "dacite", "rhyolite")
-#: Lower edge of the alkaline fields of the TAS diagram from SiO2 52 to 69: silica and Na2O + K2O (Le Bas et al. 1986).
-_EDGE_SILICA, _EDGE_ALKALIS = np.array([52.0, 57.0, 63.0, 69.0]), np.array([5.0, 5.9, 7.0, 8.0])
-
+#: Fe2O3/FeO by weight of the TAS fields without excess alkalis (Middlemost 1989).
+MIDDLEMOST_RATIOS = {"Pc": 0.15, "B": 0.20, "O1": 0.30, "O2": 0.35, "O3": 0.40, "R": 0.50}
+_RATIO_OF_FIELD = np.array([MIDDLEMOST_RATIOS.get(field, np.nan) for field in FIELDS] + [np.nan])
 #: The oxides beside iron that a convention may look at, and those of them that count as zero where not reported.
 CONVENTION_OXIDES = (
     "sio2_wt", "tio2_wt", "al2o3_wt", "mno_wt", "mgo_wt", "cao_wt", "na2o_wt", "k2o_wt", "p2o5_wt",
@@ -89,22 +87,13 @@ def split_le_maitre(
 
 
 def ratio_middlemost(sio2_wt: ArrayLike, alkalis_wt: ArrayLike) -> Array:
-    """Fe2O3/FeO by weight from the place in the TAS diagram; NaN in the alkaline fields and outside SiO2 41 to 100.
+    """Fe2O3/FeO by weight from the place in the TAS diagram; NaN in the alkaline fields and outside the fields.
 
     Silica and Na2O + K2O of the analysis closed to 100 without volatiles, all iron as FeO, wt%. Only the ratios of
     the fields without excess alkalis are held (picrobasalt 0.15 to rhyolite 0.50); those of the alkaline fields differ
     between reprints. Source: [middlemost1989], table of ratios (from memory, provisional).
     """
-    silica, alkalis = np.broadcast_arrays(
-        np.asarray(sio2_wt, dtype=np.float64), np.asarray(alkalis_wt, dtype=np.float64)
-    )
-    edge = np.where(silica < 45.0, 3.0, np.interp(silica, _EDGE_SILICA, _EDGE_ALKALIS))
-    # The field of rhyolite lies beyond the line (69, 8) to (77, 0) and takes all alkalis there.
-    rhyolite = (silica >= 69.0) & (alkalis >= 77.0 - silica)
-    strip = np.searchsorted(np.array([45.0, 52.0, 57.0, 63.0]), silica, side="right")
-    ratio = MIDDLEMOST_RATIOS[np.where(rhyolite, 5, strip)]
-    known = (silica >= 41.0) & (silica <= 100.0) & (alkalis >= 0.0) & (rhyolite | (alkalis < edge))
-    return np.where(known, ratio, np.nan)
+    return _RATIO_OF_FIELD[tas_field(sio2_wt, alkalis_wt)]
 
 
 def resolve_total_iron(

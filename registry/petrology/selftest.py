@@ -79,9 +79,9 @@ def published_checks() -> list[Check]:
     """All rows of all check files, by file name and line; ValueError where a row is malformed."""
     checks: list[Check] = []
     folder = files("registry.petrology") / "published"
-    for path in sorted(folder.iterdir(), key=lambda entry: entry.name):
-        if path.name.endswith(".csv"):
-            checks.extend(read_checks(path.name, path.read_text(encoding="utf-8").splitlines()))
+    paths = [path for path in folder.iterdir() if path.name.endswith(".csv")]
+    for path in sorted(paths, key=lambda entry: entry.name):
+        checks.extend(read_checks(path.name, path.read_text(encoding="utf-8").splitlines()))
     return checks
 
 
@@ -227,8 +227,6 @@ def _single(result: Any, output: str) -> float | str | None:
         if output not in result:
             raise LookupError(f"there is no output '{output}'; found {sorted(result)}")
         result = result[output]
-    elif output and hasattr(result, output):
-        result = getattr(result, output)
     values = np.atleast_1d(np.asarray(result)).ravel()
     if values.shape != (1,):
         raise ValueError(f"'{output}' gave {values.shape[0]} values; a check compares one")

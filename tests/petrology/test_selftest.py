@@ -8,6 +8,7 @@ import re
 import numpy as np
 import pytest
 
+from registry.petrology.catalogue import METHOD_BY_KEY
 from registry.petrology.selftest import (
     COLUMNS,
     MISSING,
@@ -73,6 +74,25 @@ def test_run_check_impossible_row_tells_the_problem(changes: dict, problem: str)
 
     assert not result.passed
     assert re.search(problem, result.sentence())
+
+
+def test_run_check_method_not_computed_yet_tells_so(monkeypatch: pytest.MonkeyPatch) -> None:
+    waiting = dataclasses.replace(METHOD_BY_KEY["iron"], function=None)
+    monkeypatch.setitem(METHOD_BY_KEY, "iron", waiting)
+
+    result = run_check(dataclasses.replace(FEOT, method="iron"))
+
+    assert not result.passed
+    assert result.problem == "LookupError: the method 'iron' is not computed yet"
+
+
+def test_run_check_text_output_is_compared_as_text() -> None:
+    measured = {"feo_titrated_wt": 7.13, "fe2o3_ferric_wt": 3.79}
+    check = dataclasses.replace(FEOT, method="iron", inputs=measured, output="iron_basis", expected="titrated FeO")
+
+    assert run_check(check).passed
+    assert not run_check(dataclasses.replace(check, expected="guessed")).passed
+    assert run_check(dataclasses.replace(check, inputs={}, expected=MISSING)).passed
 
 
 @pytest.mark.parametrize(
