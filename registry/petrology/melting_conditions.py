@@ -12,7 +12,7 @@ import numpy as np
 from numpy.typing import ArrayLike
 
 from registry.petrology.constants import GRAVITY_M_PER_S2
-from registry.petrology.geotherm import geotherm_exponential_c
+from registry.petrology.geotherm import geotherm_cause, geotherm_exponential_c, mantle_heat_flow_mw_m2
 from registry.petrology.melt_composition import Array, not_negative, positive
 from registry.petrology.melting import (
     KATZ_D_H2O,
@@ -56,17 +56,8 @@ def wet_granite_solidus_depth_m(
     there is no geotherm, or where it is hotter already at 0.2 GPa (7.3 km), above which the solidus is not given.
     Source [lachenbruch1970], [stern1973].
     """
-    columns = np.broadcast_arrays(
-        *(
-            np.atleast_1d(np.asarray(values, dtype=np.float64))
-            for values in (
-                heat_flow_mw_m2,
-                surface_temperature_c,
-                conductivity_w_m_k,
-                heat_production_uw_m3,
-                heat_production_depth_m,
-            )
-        )
+    columns = _columns(
+        heat_flow_mw_m2, surface_temperature_c, conductivity_w_m_k, heat_production_uw_m3, heat_production_depth_m
     )
     depth = np.arange(0.0, moho_depth_m + _SEARCH_STEP_M, _SEARCH_STEP_M)
     solidus = wet_granite_solidus(lithostatic_pressure_gpa(depth, moho_depth_m))
@@ -124,3 +115,35 @@ def _pressure_of_peridotite_solidus(temperature_c: Array) -> Array:
     root = b * b - 4.0 * a * (temperature_c - 1120.661)
     pressure = (b - np.sqrt(not_negative(root))) / (2.0 * a)
     return not_negative(pressure)
+
+
+def area_geotherm(
+    heat_flow_mw_m2: ArrayLike,
+    surface_temperature_c: ArrayLike,
+    conductivity_w_m_k: ArrayLike,
+    heat_production_uw_m3: ArrayLike,
+    heat_production_depth_m: ArrayLike,
+    moho_depth_m: float = MOHO_DEPTH_M,
+) -> dict[str, Any]:
+    """What an area's geotherm says, shape (n,), by the columns of ``area_sheet``.
+
+    ``mantle_heat_flow_mw_m2`` (may be negative), ``wet_granite_solidus_depth_km`` and ``geotherm_cause``: a word of
+    ``GEOTHERM_CAUSES``, ``surface_temperature_missing``, ``crust_colder_than_solidus`` where the two curves do not
+    meet between 0.2 GPa and the Moho, or None where the depth is given.
+    """
+    flow, surface, k, heat, scale = _columns(
+        heat_flow_mw_m2, surface_temperature_c, conductivity_w_m_k, heat_production_uw_m3, heat_production_depth_m
+    )
+    depth_km = wet_granite_solidus_depth_m(flow, surface, k, heat, scale, moho_depth_m) / 1000.0
+    cause = geotherm_cause(flow, k, heat, scale)
+    unexplained = np.isnan(depth_km) & ~cause.astype(bool)
+    words = np.array(["surface_temperature_missing", "crust_colder_than_solidus"], dtype=object)
+    return {
+        "mantle_heat_flow_mw_m2": mantle_heat_flow_mw_m2(flow, heat, scale),
+        "wet_granite_solidus_depth_km": depth_km,
+        "geotherm_cause": np.where(unexplained, words[np.where(np.isnan(surface), 0, 1)], cause),
+    }
+
+
+def _columns(*values: ArrayLike) -> tuple[Array, ...]:
+    return np.broadcast_arrays(*(np.atleast_1d(np.asarray(value, dtype=np.float64)) for value in values))

@@ -24,6 +24,7 @@ from registry.petrology.melting import (
     wet_granite_solidus,
 )
 from registry.petrology.melting_conditions import (
+    area_geotherm,
     lithostatic_pressure_gpa,
     melting_conditions,
     wet_granite_solidus_depth_m,
@@ -176,3 +177,21 @@ def test_melting_above_the_granite_curve_is_not_given() -> None:
     here = melting_conditions(5000.0, 200.0)
 
     assert np.isnan(here["solidus_c"][0]) and here["decompression"][0] is None
+
+
+def test_area_geotherm_gives_a_depth_or_a_cause() -> None:
+    nan = np.nan
+    area = area_geotherm(
+        [65.0, 65.0, 35.0, 65.0, nan], [10.0, 10.0, 10.0, nan, 10.0], 2.5, [2.5, 8.0, 1.0, 2.5, 2.5], 1e4
+    )
+
+    np.testing.assert_allclose(area["mantle_heat_flow_mw_m2"], [40.0, -15.0, 25.0, 40.0, nan])
+    assert 30.0 < area["wet_granite_solidus_depth_km"][0] < 36.0
+    assert np.isnan(area["wet_granite_solidus_depth_km"][1:]).all()
+    assert list(area["geotherm_cause"]) == [
+        None,
+        "mantle_heat_flow_too_low",
+        "crust_colder_than_solidus",
+        "surface_temperature_missing",
+        "heat_flow_missing",
+    ]
