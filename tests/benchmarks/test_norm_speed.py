@@ -16,7 +16,7 @@ import pytest
 LIMIT = 3.0
 ROWS = 300_000
 REPEATS = 7
-ROUNDS = 4
+ROUNDS = 10
 
 ANALYSES = """
 import json, time
