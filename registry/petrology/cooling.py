@@ -64,7 +64,7 @@ def sphere_theta(distance_m: ArrayLike, radius_m: ArrayLike, diffusion_m: ArrayL
     a, r = positive(radius_m), not_negative(distance_m)
     s = positive(diffusion_m)
     central = r < 1e-6 * a
-    safe = np.where(central, a, r)
+    safe = np.where(central, a, positive(r))
     near, far, half = np.broadcast_arrays((a - safe) / (2.0 * s), (a + safe) / (2.0 * s), a / (2.0 * s))
     erf_near, erf_far, erf_half = error_function(np.stack([near, far, half]))
     away = 0.5 * (erf_near + erf_far) - s / (safe * np.sqrt(np.pi)) * (_gaussian(near) - _gaussian(far))

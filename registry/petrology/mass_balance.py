@@ -129,8 +129,7 @@ def non_negative_least_squares(matrix: ArrayLike, target: ArrayLike) -> Array:
 
 def _solve_free(a: Array, b: Array, free: np.ndarray) -> Array:
     solution = np.zeros(a.shape[1])
-    if free.any():
-        solution[free] = np.linalg.lstsq(a[:, free], b, rcond=None)[0]
+    solution[free] = np.linalg.lstsq(a[:, free], b, rcond=None)[0]
     return solution
 
 

@@ -39,6 +39,12 @@ def not_negative(values: ArrayLike) -> Array:
     return np.where(array >= 0.0, array, np.nan)
 
 
+def exponential(values: ArrayLike) -> Array:
+    """exp of the values; NaN where it leaves the range of numbers (an impossible temperature or composition)."""
+    array = np.asarray(values, dtype=np.float64)
+    return np.exp(np.where(np.abs(array) < 700.0, array, np.nan))
+
+
 def by_silica_class(
     sio2_wt: ArrayLike, ultrabasic: ArrayLike, basic: ArrayLike, intermediate: ArrayLike, acid: ArrayLike
 ) -> Array:

@@ -88,8 +88,8 @@ def melt_fraction_katz_wet(
 
 def katz_depression_c(melt_fraction: ArrayLike, pressure_gpa: ArrayLike, bulk_h2o_wt: ArrayLike) -> Array:
     """Lowering (C) of the peridotite curves by bulk water at a melt fraction. Source [katz2003], from memory."""
-    f = np.asarray(melt_fraction, dtype=np.float64)
-    in_melt = np.asarray(bulk_h2o_wt, dtype=np.float64) / (KATZ_D_H2O + f * (1.0 - KATZ_D_H2O))
+    f = not_negative(melt_fraction)
+    in_melt = not_negative(bulk_h2o_wt) / (KATZ_D_H2O + f * (1.0 - KATZ_D_H2O))
     return KATZ_K * np.minimum(in_melt, katz_saturation_h2o_wt(pressure_gpa)) ** KATZ_GAMMA
 
 

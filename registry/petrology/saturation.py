@@ -12,7 +12,7 @@ from numpy.typing import ArrayLike, NDArray
 from registry.petrology.analytes import CHOSEN_INDEX
 from registry.petrology.constants import ZERO_CELSIUS_K, ZR_IN_ZIRCON_PPM, molar_mass
 from registry.petrology.digestion import CARRIES, TOTAL
-from registry.petrology.melt_composition import Array, cation_fractions, positive
+from registry.petrology.melt_composition import Array, cation_fractions, exponential, positive
 
 #: Where the parameter M of [watson1983] was calibrated, its upper end as extended.
 ZIRCON_M_LOW, ZIRCON_M_HIGH = 0.9, 1.9
@@ -102,19 +102,19 @@ def zircon_saturation_shao_alkaline(zr_ppm: ArrayLike, g: ArrayLike) -> Array:
 def zr_at_saturation_watson_harrison(temperature_c: ArrayLike, m: ArrayLike) -> Array:
     """Zr (ppm) that a melt of parameter M holds at zircon saturation [watson1983]; 800 C, M 1.4358 -> 193.9."""
     t = positive(np.asarray(temperature_c) + ZERO_CELSIUS_K)
-    return ZR_IN_ZIRCON_PPM / np.exp(12900.0 / t - 2.95 - 0.85 * np.asarray(m))
+    return ZR_IN_ZIRCON_PPM / exponential(12900.0 / t - 2.95 - 0.85 * np.asarray(m))
 
 
 def zr_at_saturation_boehnke(temperature_c: ArrayLike, m: ArrayLike) -> Array:
     """Zr (ppm) that a melt of parameter M holds at zircon saturation [boehnke2013]; 800 C, M 1.4358 -> 294.2."""
     t = positive(np.asarray(temperature_c) + ZERO_CELSIUS_K)
-    return ZR_IN_ZIRCON_PPM / np.exp(10108.0 / t - 1.16 * (np.asarray(m) - 1.0) - 1.48)
+    return ZR_IN_ZIRCON_PPM / exponential(10108.0 / t - 1.16 * (np.asarray(m) - 1.0) - 1.48)
 
 
 def zr_at_saturation_shao(temperature_c: ArrayLike, m: ArrayLike) -> Array:
     """Zr (ppm) that a melt of parameter M holds at zircon saturation [shao2020]; 800 C, M 1.4358 -> 205.5."""
     t = positive(np.asarray(temperature_c) + ZERO_CELSIUS_K)
-    return np.exp(14.297 + 0.964 * np.asarray(m) - 11113.0 / t)
+    return exponential(14.297 + 0.964 * np.asarray(m) - 11113.0 / t)
 
 
 def saturation_hfse(zr_ppm: ArrayLike, hf_ppm: ArrayLike) -> Array:

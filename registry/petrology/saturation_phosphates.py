@@ -6,7 +6,13 @@ import numpy as np
 from numpy.typing import ArrayLike
 
 from registry.petrology.constants import ATOMIC_WEIGHT, ZERO_CELSIUS_K, molar_mass
-from registry.petrology.melt_composition import Array, cation_fractions, not_negative, positive
+from registry.petrology.melt_composition import (
+    Array,
+    cation_fractions,
+    exponential,
+    not_negative,
+    positive,
+)
 
 #: P2O5 in apatite, wt%: 42 as usually taken; 41 is in print too (+2.6 C on an average granite).
 P2O5_IN_APATITE_WT = 42.0
@@ -36,7 +42,7 @@ def p2o5_at_apatite_saturation(
     """P2O5 (wt%) that a melt holds at apatite saturation [harrison1984]; 850 C, SiO2 71.30 -> 0.0495."""
     t = positive(np.asarray(temperature_c) + ZERO_CELSIUS_K)
     s = np.asarray(sio2_wt, dtype=np.float64) * 0.01 - 0.5
-    return p2o5_in_apatite_wt / np.exp((8400.0 + 26400.0 * s) / t - 3.1 - 12.4 * s)
+    return p2o5_in_apatite_wt / exponential((8400.0 + 26400.0 * s) / t - 3.1 - 12.4 * s)
 
 
 def p2o5_peraluminous_bea(p2o5_wt: ArrayLike, a_cnk: ArrayLike, temperature_c: ArrayLike) -> Array:
@@ -44,7 +50,7 @@ def p2o5_peraluminous_bea(p2o5_wt: ArrayLike, a_cnk: ArrayLike, temperature_c: A
 
     P x exp(6429 (A/CNK - 1)/T), T in degrees Celsius as published; for A/CNK > 1. Source [bea1992], from memory.
     """
-    return np.asarray(p2o5_wt) * np.exp(6429.0 * (np.asarray(a_cnk) - 1.0) / positive(temperature_c))
+    return np.asarray(p2o5_wt) * exponential(6429.0 * (np.asarray(a_cnk) - 1.0) / positive(temperature_c))
 
 
 def p2o5_peraluminous_pichavant(
@@ -56,7 +62,7 @@ def p2o5_peraluminous_pichavant(
     Source [pichavant1992], from memory.
     """
     t = positive(np.asarray(temperature_c) + ZERO_CELSIUS_K)
-    excess = np.exp(-5900.0 / t - 0.0322 * np.asarray(sio2_wt) + 9.31)
+    excess = exponential(-5900.0 / t - 0.0322 * np.asarray(sio2_wt) + 9.31)
     return np.asarray(p2o5_wt) + (np.asarray(a_cnk) - 1.0) * excess
 
 

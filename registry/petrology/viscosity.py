@@ -129,4 +129,4 @@ def crystal_factor_einstein_roscoe(
 def crystal_factor_maron_pierce(crystal_fraction: ArrayLike, locked_fraction: ArrayLike) -> Array:
     """How many times crystals raise the viscosity: (1 - phi/phi_m)^-2, phi_m by aspect ratio. Source [mueller2011]."""
     phi = not_negative(crystal_fraction)
-    return positive(1.0 - phi / np.asarray(locked_fraction, dtype=np.float64)) ** -2.0
+    return positive(1.0 - phi / positive(locked_fraction)) ** -2.0

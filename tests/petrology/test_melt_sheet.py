@@ -16,39 +16,16 @@ from registry.pipeline import Chunk, Computed, compute, empty_chunk
 from tests.petrology.melt_rocks import ANDESITE, BASALT, GRANITE
 
 #: The contract's columns, in its order.
-MELT_COLUMNS = [
-    "h2o_wt",
-    "liquidus_c",
-    "liquidus_model",
-    "liquidus_cause",
-    "liquidus_low_c",
-    "liquidus_high_c",
-    "liquidus_helz_thornber_c",
-    "liquidus_putirka13_c",
-    "liquidus_putirka14_c",
-    "liquidus_putirka15_c",
-    "liquidus_putirka22_c",
-    "liquidus_beattie_c",
-    "liquidus_sugawara_c",
-    "liquidus_makhluf_c",
-    "liquidus_duan_c",
-    "zircon_saturation_wh83_c",
-    "zircon_saturation_b13_c",
-    "zircon_saturation_shao_c",
-    "saturation_hfse_c",
-    "apatite_saturation_c",
-    "monazite_saturation_c",
-    "monazite_saturation_maimaiti_c",
-    "melt_density_kg_m3",
-    "melt_viscosity_log10_pa_s",
-    "melt_viscosity_shaw_log10_pa_s",
-    "stokes_velocity_m_per_yr",
-    "dyke_velocity_m_per_s",
-    "ascent_outcome",
-    "ascent_cause",
-    "heat_production_uw_m3",
-    "heat_production_cause",
-]
+MELT_COLUMNS = (
+    "h2o_wt", "liquidus_c", "liquidus_model", "liquidus_cause", "liquidus_low_c", "liquidus_high_c",
+    "liquidus_helz_thornber_c", "liquidus_putirka13_c", "liquidus_putirka14_c", "liquidus_putirka15_c",
+    "liquidus_putirka22_c", "liquidus_beattie_c", "liquidus_sugawara_c", "liquidus_makhluf_c",
+    "liquidus_duan_c", "zircon_saturation_wh83_c", "zircon_saturation_b13_c", "zircon_saturation_shao_c",
+    "saturation_hfse_c", "apatite_saturation_c", "monazite_saturation_c", "monazite_saturation_maimaiti_c",
+    "melt_density_kg_m3", "melt_viscosity_log10_pa_s", "melt_viscosity_shaw_log10_pa_s",
+    "stokes_velocity_m_per_yr", "dyke_velocity_m_per_s", "ascent_outcome", "ascent_cause",
+    "heat_production_uw_m3", "heat_production_cause",
+)  # fmt: skip
 _POSITION = {quantity.name: position for position, quantity in enumerate(QUANTITIES)}
 _CODE_OF_LETTER = {letter: code for code, (letter, _) in CAUSES.items()}
 _TRACES = {
