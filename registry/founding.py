@@ -76,4 +76,5 @@ def build_demo(path_or_url: str) -> list[str]:
         if path is not None:
             path.unlink(missing_ok=True)
         raise
+    registry.close()
     return [f"Built the demo registry {path or 'on PostgreSQL'}: every name and number in it is invented.", *report.summary()]

@@ -22,7 +22,10 @@ _REPLACED = (
 
 def findings(connection: sa.Connection) -> list[Finding]:
     """Dicts ``subject found remedy``, empty where all is well; nothing is repaired or refreshed."""
-    found = _file(connection)
+    found = _damage(connection)
+    if found:
+        return found  # nothing read from a damaged file can be trusted
+    found = _broken_keys(connection)
     revision = MigrationContext.configure(connection).get_current_revision()
     if revision != HEAD_REVISION:
         found.append(_finding("schema", f"revision {revision}, expected {HEAD_REVISION}", "run 'plutonbook upgrade'"))
@@ -38,20 +41,29 @@ def _finding(subject: str, found: str, remedy: str) -> Finding:
     return {"subject": subject, "found": found, "remedy": remedy}
 
 
-def _file(connection: sa.Connection) -> list[Finding]:
-    """SQLite's own checks: the file's pages, and rows that point at rows that are not there."""
+def _damage(connection: sa.Connection) -> list[Finding]:
+    """What SQLite's own check says of the pages of the file."""
     if connection.dialect.name != "sqlite":
         return []
-    damage = [row[0] for row in connection.exec_driver_sql("PRAGMA integrity_check(20)") if row[0] != "ok"]
-    found = [_finding("file", text, "stop writing; restore a backup with 'plutonbook recover'") for text in damage]
+    try:
+        said = list(connection.exec_driver_sql("PRAGMA integrity_check(20)").scalars())
+    except sa.exc.DatabaseError as error:
+        said = [str(error.orig)]
+    remedy = "stop writing; restore a backup with 'plutonbook recover'"
+    return [_finding("file", text, remedy) for text in said if text != "ok"]
+
+
+def _broken_keys(connection: sa.Connection) -> list[Finding]:
+    """Rows that point at rows that are not there; PostgreSQL lets none happen."""
+    if connection.dialect.name != "sqlite":
+        return []
     broken: dict[tuple[str, str], int] = {}
     for row in connection.exec_driver_sql("PRAGMA foreign_key_check"):
         broken[row[0], row[2]] = broken.get((row[0], row[2]), 0) + 1
-    found += [
-        _finding(f"table {table}", f"{_rows(count)} point at a {parent} that is not there", _REPLACED)
+    return [
+        _finding(f"table {table}", f"{_rows(count)} pointing at a {parent} that is not there", _REPLACED)
         for (table, parent), count in broken.items()
     ]
-    return found
 
 
 def _objects(connection: sa.Connection) -> list[Finding]:
@@ -103,7 +115,7 @@ def _orphans(connection: sa.Connection) -> list[Finding]:
     for table, parent, query in checks:
         count = connection.exec_driver_sql(query).scalar() or 0
         if count:
-            found.append(_finding(f"table {table}", f"{_rows(count)} point at a {parent} that is not there", _REPLACED))
+            found.append(_finding(f"table {table}", f"{_rows(count)} pointing at a {parent} that is not there", _REPLACED))
     if connection.exec_driver_sql("SELECT count(*) FROM import_guard").scalar():
         found.append(
             _finding(
@@ -150,27 +162,27 @@ def _derived(connection: sa.Connection) -> list[Finding]:
     checks = (
         (
             "derived values",
-            "samples are stale: something changed since they were computed",
+            "stale: something changed since they were computed",
             "SELECT count(*) FROM stale",
             "run 'plutonbook refresh'",
         ),
         (
             "derived values",
-            "samples have none and are not marked stale",
+            "samples without any that are not marked stale",
             "SELECT count(*) FROM sample AS s WHERE NOT EXISTS (SELECT 1 FROM derived AS d WHERE d.sample_id = "
             "s.sample_id) AND NOT EXISTS (SELECT 1 FROM stale AS x WHERE x.sample_id = s.sample_id)",
             again,
         ),
         (
             "verdicts",
-            "belong to control samples, which are never judged",
+            "of control samples, which are never judged",
             "SELECT count(*) FROM verdict AS v JOIN sample AS s ON s.sample_id = v.sample_id "
             f"WHERE s.kind IN ({controls})",
             again,
         ),
         (
             "derived values",
-            "rows were computed with another catalogue than this registry describes",
+            "rows computed with another catalogue than this registry describes",
             f"SELECT count(*) FROM derived WHERE length(causes) <> {quantities} OR length(warnings) <> {warnings}",
             again,
         ),
