@@ -8,14 +8,17 @@ from typing import Any
 
 from flask import current_app
 
+from registry.keeping_current import refresh_a_few
 from registry.store.reading.columns import Columns, load_columns
 from registry.store.reading.session import query_only
 
 
 @contextmanager
 def registry_connection() -> Iterator[Any]:
-    """A query-only connection to the application's registry."""
-    with query_only(current_app.extensions["registry"]) as connection:
+    """A query-only connection to the application's registry; a few stale samples are brought up to date first."""
+    registry = current_app.extensions["registry"]
+    refresh_a_few(registry)
+    with query_only(registry) as connection:
         yield connection
 
 

@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+import shutil
+import sqlite3
 from collections.abc import Iterator
 from pathlib import Path
 from typing import Any
@@ -16,7 +18,7 @@ from registry.judging import install_shipped_definitions
 from registry.petrology.analytes import ELEMENT_SYMBOLS, OXIDE_SYMBOLS
 from registry.refresh import drain
 from registry.store import schema, tables
-from registry.store.engine import Registry
+from registry.store.engine import Registry, open_registry
 from registry.targets.definition import load_definitions
 from web import create_app
 
@@ -141,14 +143,13 @@ def _batch(connection: Any, rows: list[dict[str, Any]]) -> None:
 
 
 def build_registry(path: Path, count: int = 120) -> Registry:
-    """A registry of ``count`` invented samples, one with a hostile name, one without results, the last one stale."""
+    """A registry of ``count`` invented samples, one with a hostile name, one without results."""
 
     def fill(connection: Any) -> None:
         rows = _samples(connection, _places(connection), count)
         _batch(connection, rows)
         install_shipped_definitions(connection, tuple(load_definitions().values()))
         drain(connection)
-        connection.execute(sa.insert(tables.stale).values(sample_id=rows[2]["sample_id"], level=1))
 
     return schema.create(path, fill)
 
@@ -156,7 +157,11 @@ def build_registry(path: Path, count: int = 120) -> Registry:
 @pytest.fixture(scope="session")
 def invented_registry(tmp_path_factory: pytest.TempPathFactory) -> Path:
     path = tmp_path_factory.mktemp("site") / "invented.sqlite"
-    build_registry(path).close()
+    registry = build_registry(path)
+    with registry.writer.connect() as connection:
+        connection.exec_driver_sql("COMMIT")
+        connection.exec_driver_sql("PRAGMA wal_checkpoint(TRUNCATE)")
+    registry.close()
     return path
 
 
@@ -180,3 +185,17 @@ def empty_client(tmp_path_factory: pytest.TempPathFactory) -> Iterator[FlaskClie
     application = create_app(str(path))
     yield application.test_client()
     application.extensions["registry"].close()
+
+
+@pytest.fixture
+def changed(invented_registry: Path, tmp_path: Path) -> Iterator[tuple[Registry, FlaskClient]]:
+    """A copy of the registry in which PB-003 was edited behind the program's back, and its site."""
+    registry = open_registry(shutil.copy(invented_registry, tmp_path / "changed.sqlite"))
+    edited = sqlite3.connect(tmp_path / "changed.sqlite")
+    edited.execute("UPDATE sample SET lithology = 'dunite' WHERE code = 'PB-003'")
+    edited.commit()
+    edited.close()
+    application = create_app(str(tmp_path / "changed.sqlite"))
+    yield registry, application.test_client()
+    application.extensions["registry"].close()
+    registry.close()

@@ -10,6 +10,7 @@ import pytest
 from flask import Flask
 from flask.testing import FlaskClient
 
+from registry.store.engine import Registry, reading, writing
 from web.security import HEADERS
 
 PAGES = (
@@ -136,9 +137,23 @@ def test_sample_page_says_why_values_are_missing(client: FlaskClient) -> None:
     assert "not_yet_computed" not in page
 
 
-def test_sample_page_of_a_stale_sample_says_so(client: FlaskClient) -> None:
-    assert "changed after these numbers were computed" in client.get("/samples/PB-003").text
-    assert "changed after these numbers were computed" not in client.get("/samples/PB-004").text
+def test_pages_show_a_stale_sample_marked_while_another_writes(changed: tuple[Registry, FlaskClient]) -> None:
+    registry, client = changed
+    with writing(registry):
+        assert "changed after these numbers were computed" in client.get("/samples/PB-003").text
+        assert "changed after these numbers were computed" not in client.get("/samples/PB-004").text
+        listed = client.get("/samples?text=PB-00").text
+        assert listed.count('<tr class="stale">') == 1
+        assert "numbers and verdict follow" in listed
+        assert ",1\r\n" in client.get("/samples.csv?text=PB-003").text
+
+
+def test_pages_bring_a_few_stale_samples_up_to_date_by_themselves(changed: tuple[Registry, FlaskClient]) -> None:
+    registry, client = changed
+    assert 'class="stale"' not in client.get("/samples?text=PB-00").text
+    with reading(registry) as connection:
+        assert connection.exec_driver_sql("SELECT count(*) FROM stale").scalar() == 0
+    assert ",0\r\n" in client.get("/samples.csv?text=PB-003").text
 
 
 def test_sample_page_of_a_control_is_never_judged(client: FlaskClient) -> None:
