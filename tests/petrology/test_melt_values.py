@@ -21,21 +21,6 @@ MODULES = (
     "liquidus_models", "melt_composition", "saturation", "saturation_phosphates", "water", "melt_density", "viscosity",
     "ascent", "heat", "cooling", "intrusion_heat", "geotherm", "melting", "melting_conditions",
 )  # fmt: skip
-    "liquidus_models",
-    "melt_composition",
-    "saturation",
-    "saturation_phosphates",
-    "water",
-    "melt_density",
-    "viscosity",
-    "ascent",
-    "heat",
-    "cooling",
-    "intrusion_heat",
-    "geotherm",
-    "melting",
-    "melting_conditions",
-]
 #: Functions whose arguments are words, mappings of formulas or conventions, tested by name elsewhere.
 OTHERWISE_TESTED = {
     "water_depression", "melt_water_by_convention", "rock_density_kg_m3", "oxide_mole_fractions", "wet_wt",
