@@ -1,0 +1,314 @@
+"""The whole way from CSV files to the views, and what stands after anything goes wrong on it."""
+
+from __future__ import annotations
+
+import shutil
+import sqlite3
+from collections.abc import Iterator
+from pathlib import Path
+from typing import Any
+
+import numpy as np
+import pytest
+
+from registry.batching import set_state
+from registry.errors import InputProblems, NotFound, PlutonbookError, UsageError
+from registry.importing import ImportOptions, import_files
+from registry.refresh import refresh_registry
+from registry.store import engine as store_engine
+from registry.store.engine import Registry, open_registry, reading
+
+#: Average basalt, andesite and granite of Le Maitre (1976, J. Petrol. 17, 589-637), wt%, from memory.
+AVERAGES = """Sample,SiO2 (%),TiO2 (%),Al2O3 (%),Fe2O3 (%),FeO (%),MnO (%),MgO (%),CaO (%),Na2O (%),K2O (%),P2O5 (%)
+BAS,49.20,1.84,15.74,3.79,7.13,0.20,6.73,9.47,2.91,1.10,0.35
+AND,57.94,0.87,17.02,3.27,4.04,0.14,3.33,6.79,3.48,1.62,0.21
+GRA,71.30,0.31,14.32,1.21,1.64,0.05,0.71,1.84,3.68,4.07,0.12
+"""
+#: Invented: a layout test.
+SAMPLES = """sample_code,sample_kind,lithology,texture,alteration
+BAS,outcrop,basalt lava,aphyric,
+AND,outcrop,andesite lava,aphyric,
+GRA,outcrop,granite,equigranular,
+"""
+
+
+def write(folder: Path, name: str, text: str) -> Path:
+    path = folder / name
+    path.write_text(text)
+    return path
+
+
+@pytest.fixture
+def averages(tmp_path: Path) -> list[Path]:
+    return [write(tmp_path, "averages.csv", AVERAGES), write(tmp_path, "samples.csv", SAMPLES)]
+
+
+def rows(registry: Registry, query: str) -> list[dict[str, Any]]:
+    with reading(registry) as connection:
+        return [dict(row._mapping) for row in connection.exec_driver_sql(query)]
+
+
+def counts(path: Path) -> dict[str, int]:
+    """Rows of every table that an import may write."""
+    connection = sqlite3.connect(path)
+    names = [
+        name
+        for (name,) in connection.execute("SELECT name FROM sqlite_master WHERE type = 'table'")
+        if not name.startswith("sqlite_")
+    ]
+    found = {name: connection.execute(f"SELECT count(*) FROM {name}").fetchone()[0] for name in names}
+    connection.close()
+    return found
+
+
+def test_import_of_averages_gives_their_published_norms(founded_registry: Registry, averages: list[Path]) -> None:
+    """Norms of Le Maitre 1976 averages, recomputed in the methods sheet on raw wt%; the stored norm is closed to 100.
+
+    Tolerance: half the last printed decimal, scaled by the closing.
+    """
+    import_files(founded_registry, averages)
+
+    printed = {
+        "BAS": {"or_wt": 6.50, "ab_wt": 24.62, "an_wt": 26.64, "di_wt": 14.57, "hy_wt": 14.52, "ol_wt": 1.81},
+        "AND": {"q_wt": 12.32, "or_wt": 9.57, "ab_wt": 29.45, "an_wt": 26.03, "di_wt": 5.06, "hy_wt": 9.39},
+        "GRA": {"q_wt": 28.93, "c_wt": 0.80, "or_wt": 24.05, "ab_wt": 31.14, "an_wt": 8.34, "hy_wt": 3.36},
+    }
+    totals = {"BAS": 98.46, "AND": 98.71, "GRA": 99.25}
+    norms = {row["sample_code"]: row for row in rows(founded_registry, "SELECT * FROM norm_sheet")}
+    for code, minerals in printed.items():
+        scale = 100.0 / totals[code]
+        assert abs(norms[code]["norm_total_wt"] - 100.0) < 0.01
+        for mineral, value in minerals.items():
+            assert norms[code][mineral] == pytest.approx(value * scale, abs=0.005 * scale + 1e-9), (code, mineral)
+
+
+def test_import_stores_what_was_reported_and_says_which_iron_was_measured(
+    founded_registry: Registry, averages: list[Path]
+) -> None:
+    """FeOt = FeO + 0.8998 Fe2O3: 10.540 for the basalt (methods sheet, recomputed)."""
+    import_files(founded_registry, averages)
+
+    row = rows(founded_registry, "SELECT * FROM composition_sheet WHERE sample_code = 'BAS'")[0]
+    assert row["sio2_wt"] == 49.20
+    assert row["feo_titrated_wt"] == 7.13
+    assert row["feot_wt"] == pytest.approx(10.540, abs=5e-4)
+    assert row["fe2o3_wt"] == pytest.approx(3.79, abs=5e-4)
+    assert "titrat" in row["iron_basis"]
+    assert row["is_stale"] == 0
+
+
+def test_import_reports_every_problem_of_a_file_and_writes_nothing(founded_registry: Registry, tmp_path: Path) -> None:
+    samples = write(tmp_path, "samples.csv", "sample_code,sample_kind\nA,outcrop\nB,outcrop\n")
+    bad = write(tmp_path, "bad.csv", "Sample,SiO2 (%),MnO (%),Zr (ppm)\nA,65.1,3002,180\nB,sixty,0.1,\nC,64.0,0.1,150\n")
+    assert founded_registry.path is not None
+    before = counts(founded_registry.path)
+
+    with pytest.raises(InputProblems, match="3002") as caught:
+        import_files(founded_registry, [samples, bad])
+
+    text = str(caught.value)
+    assert "row 2" in text and "MnO" in text
+    assert "row 3" in text and "sixty" in text
+    assert counts(founded_registry.path) == before
+
+
+def test_import_of_unknown_sample_codes_names_them_and_the_near_ones(
+    founded_registry: Registry, tmp_path: Path
+) -> None:
+    samples = write(tmp_path, "samples.csv", "sample_code,sample_kind\nKD-001,outcrop\nKD-002,outcrop\n")
+    results = write(tmp_path, "r.csv", "Sample,SiO2 (%)\nKD-001,60.0\nKD 002,61.0\n")
+
+    with pytest.raises(InputProblems, match="KD 002") as caught:
+        import_files(founded_registry, [samples, results])
+
+    assert "did you mean 'KD-002'" in str(caught.value)
+    assert "--create-samples" in str(caught.value)
+
+
+def test_import_with_create_samples_judges_them_like_any_rock(founded_registry: Registry, averages: list[Path]) -> None:
+    import_files(founded_registry, averages[:1], ImportOptions(create_samples=True))
+
+    kinds = rows(founded_registry, "SELECT DISTINCT sample_kind FROM sample_sheet")
+    verdicts = rows(founded_registry, "SELECT count(*) AS n FROM verdict_sheet")
+    targets = rows(founded_registry, "SELECT count(*) AS n FROM target")
+    assert kinds == [{"sample_kind": "unknown"}]
+    assert verdicts[0]["n"] == 3 * targets[0]["n"]
+
+
+def test_import_dry_run_shows_the_counts_and_writes_nothing(founded_registry: Registry, averages: list[Path]) -> None:
+    assert founded_registry.path is not None
+    before = counts(founded_registry.path)
+
+    report = import_files(founded_registry, averages, ImportOptions(dry_run=True))
+
+    assert report.recomputed == 3
+    assert "nothing was written" in "\n".join(report.lines())
+    assert counts(founded_registry.path) == before
+
+
+def test_import_of_the_same_bytes_is_refused_and_names_the_way_back(
+    founded_registry: Registry, averages: list[Path]
+) -> None:
+    import_files(founded_registry, averages, ImportOptions(batch="B1"))
+    with pytest.raises(InputProblems, match="same bytes"):
+        import_files(founded_registry, averages[:1], ImportOptions(batch="B2"))
+
+    set_state(founded_registry, "B1", "withdrawn")
+    with pytest.raises(InputProblems, match="restore-batch B1"):
+        import_files(founded_registry, averages[:1], ImportOptions(batch="B2"))
+
+
+def test_import_of_an_absent_file_says_so(founded_registry: Registry, tmp_path: Path) -> None:
+    with pytest.raises(NotFound, match=r"there is no file .*gone\.csv"):
+        import_files(founded_registry, [tmp_path / "gone.csv"])
+
+
+def test_import_of_two_result_files_under_one_batch_code_is_refused(
+    founded_registry: Registry, averages: list[Path], tmp_path: Path
+) -> None:
+    other = write(tmp_path, "other.csv", "Sample,Zr (ppm)\nGRA,150\n")
+    with pytest.raises(UsageError, match="--batch names one batch"):
+        import_files(founded_registry, [*averages, other], ImportOptions(batch="B1"))
+
+
+def test_second_batch_recomputes_samples_from_all_their_results(
+    founded_registry: Registry, averages: list[Path], tmp_path: Path
+) -> None:
+    """Majors in one file, traces in another; withdrawing and restoring goes there and back."""
+    import_files(founded_registry, averages)
+    alone = rows(founded_registry, "SELECT * FROM norm_sheet")
+    traces = write(tmp_path, "traces.csv", "Sample,Zr (ppm),Sr (ppm),Y (ppm)\nGRA,150,400,10\n")
+    import_files(founded_registry, [traces], ImportOptions(batch="T"))
+
+    query = "SELECT sr_y FROM index_sheet WHERE sample_code = 'GRA'"
+    assert rows(founded_registry, query) == [{"sr_y": 40.0}]
+
+    report = set_state(founded_registry, "T", "withdrawn")
+    assert report["recomputed"] == 1
+    assert rows(founded_registry, query) == [{"sr_y": None}]
+    assert rows(founded_registry, "SELECT * FROM norm_sheet") == alone
+    set_state(founded_registry, "T", "active")
+    assert rows(founded_registry, query) == [{"sr_y": 40.0}]
+    with pytest.raises(PlutonbookError, match="active already"):
+        set_state(founded_registry, "T", "active")
+
+
+def test_guarded_bulk_route_writes_the_same_rows_as_the_stale_route(
+    founded_registry_file: Path, averages: list[Path], tmp_path: Path
+) -> None:
+    """The import computes from the arrays in hand; recomputing everything from the stored results changes nothing."""
+    registry = open_registry(shutil.copy(founded_registry_file, tmp_path / "both.sqlite"))
+    import_files(registry, averages)
+    tables = ("composition", "derived", "verdict")
+    first = {table: rows(registry, f"SELECT * FROM {table} ORDER BY 1, 2") for table in tables}
+
+    assert refresh_registry(registry, everything=True) == 3
+
+    for table in tables:
+        assert rows(registry, f"SELECT * FROM {table} ORDER BY 1, 2") == first[table], table
+    assert rows(registry, "SELECT count(*) AS n FROM verdict_change") == [{"n": 0}]
+    registry.close()
+
+
+class _Fault(sqlite3.OperationalError):
+    """The planted fault."""
+
+
+class _Counter:
+    """Counts writing statements and raises at the one that is due."""
+
+    def __init__(self) -> None:
+        self.count, self.due = 0, -1
+
+    def meet(self, statement: str) -> None:
+        if statement.lstrip()[:6].upper() in ("INSERT", "UPDATE", "DELETE", "COMMIT"):
+            self.count += 1
+            if self.count == self.due:
+                raise _Fault(f"planted at write {self.count}")
+
+
+@pytest.fixture
+def counter(monkeypatch: pytest.MonkeyPatch) -> Iterator[_Counter]:
+    """Every connection of the store counts its writes, commits included."""
+    counting = _Counter()
+
+    class Cursor(sqlite3.Cursor):
+        def execute(self, statement: str, *parameters: Any) -> Any:
+            counting.meet(statement)
+            return super().execute(statement, *parameters)
+
+        def executemany(self, statement: str, *parameters: Any) -> Any:
+            counting.meet(statement)
+            return super().executemany(statement, *parameters)
+
+    class Connection(sqlite3.Connection):
+        def cursor(self, *arguments: Any, **named: Any) -> Any:
+            return super().cursor(Cursor, *arguments, **named)
+
+        def execute(self, statement: str, *parameters: Any) -> Any:
+            counting.meet(statement)
+            return super().execute(statement, *parameters)
+
+        def executemany(self, statement: str, *parameters: Any) -> Any:
+            counting.meet(statement)
+            return super().executemany(statement, *parameters)
+
+        def commit(self) -> None:
+            counting.meet("COMMIT")
+            super().commit()
+
+    real = sqlite3.connect
+    monkeypatch.setattr(
+        store_engine.sqlite3, "connect", lambda *arguments, **named: real(*arguments, factory=Connection, **named)
+    )
+    yield counting
+
+
+def test_import_that_fails_at_any_write_leaves_nothing_behind(
+    founded_registry_file: Path, averages: list[Path], tmp_path: Path, counter: _Counter
+) -> None:
+    """A fault at the n-th write, for every n: no row of the import remains, and the next import goes through."""
+    path = Path(shutil.copy(founded_registry_file, tmp_path / "whole.sqlite"))
+    registry = open_registry(path)
+    import_files(registry, averages)
+    registry.close()
+    writes = counter.count
+    whole = counts(path)
+    assert writes > 10
+    for n in range(1, writes + 1):
+        path = Path(shutil.copy(founded_registry_file, tmp_path / f"fault{n}.sqlite"))
+        before = counts(path)
+        counter.count, counter.due = 0, n
+        registry = open_registry(path)
+        with pytest.raises(Exception, match=f"planted at write {n}"):
+            import_files(registry, averages)
+        counter.due = -1
+        assert counts(path) == before, f"write {n}"
+        import_files(registry, averages)
+        registry.close()
+        assert counts(path) == whole, f"import after the fault at write {n}"
+
+
+@pytest.mark.postgresql
+def test_import_on_postgresql_gives_the_numbers_of_sqlite(
+    founded_registry: Registry, postgresql_server: Any, averages: list[Path]
+) -> None:
+    from registry.founding import found
+
+    server = found(postgresql_server.new_database())
+    for registry in (founded_registry, server):
+        import_files(registry, averages)
+    for sheet in ("norm_sheet", "index_sheet", "melt_sheet", "volatile_free_sheet"):
+        query = f"SELECT * FROM {sheet} ORDER BY sample_code"
+        for left, right in zip(rows(founded_registry, query), rows(server, query), strict=True):
+            for name, value in left.items():
+                if name == "sample_id":
+                    continue
+                if isinstance(value, float):
+                    np.testing.assert_allclose(right[name], value, rtol=1e-12, err_msg=name)
+                else:
+                    assert right[name] == value, name
+    query = "SELECT sample_code, target, verdict, score_min, score_max FROM verdict_sheet ORDER BY 1, 2"
+    assert rows(founded_registry, query) == rows(server, query)
+    server.close()
+
