@@ -27,9 +27,13 @@ def set_state(registry: Registry, code: str, state: str) -> dict[str, Any]:
         if batch["state"] == state:
             raise PlutonbookError(f"batch '{code}' is {state} already; nothing was changed")
         if batch["state"] == "superseded":
-            raise PlutonbookError(
-                f"batch '{code}' was superseded by a corrected certificate; withdraw that one instead"
-            )
+            successor = batches.find_by_id(connection, batch["superseded_by"]) if batch["superseded_by"] else None
+            if state == "withdrawn" or (successor is not None and successor["state"] != "withdrawn"):
+                name = successor["batch"] if successor else "a corrected certificate"
+                raise PlutonbookError(
+                    f"batch '{code}' was superseded by '{name}' and counts nowhere; withdraw '{name}' first, then "
+                    f"'plutonbook restore-batch {code}' lets the earlier results count again"
+                )
         before = last_change(connection)
         batches.set_state(connection, batch["batch_id"], state)
         recomputed = drain(connection, cause=f"batch {code} {verb}")

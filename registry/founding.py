@@ -77,4 +77,7 @@ def build_demo(path_or_url: str) -> list[str]:
             path.unlink(missing_ok=True)
         raise
     registry.close()
-    return [f"Built the demo registry {path or 'on PostgreSQL'}: every name and number in it is invented.", *report.summary()]
+    return [
+        f"Built the demo registry {path or 'on PostgreSQL'}: every name and number in it is invented.",
+        *report.summary(),
+    ]

@@ -32,11 +32,6 @@ class ImportOptions:
 
     def refuse_what_is_not_there(self) -> None:
         """UsageError for options that this version does not have yet, with what to do meanwhile."""
-        if self.supersede or self.add_to:
-            raise UsageError(
-                "--supersede and --add-to are not there yet; withdraw the earlier batch with 'plutonbook withdraw' and "
-                "import the corrected file under its own --batch code"
-            )
         if self.keep_going:
             raise UsageError("--keep-going is not there yet; correct the rows that are reported and import again")
 

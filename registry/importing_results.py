@@ -58,10 +58,9 @@ def store_results(
     Samples without other results are composed, derived and judged from the arrays in hand; those that had results
     are marked stale, and the caller's drain computes them from all of theirs.
     """
-    sha256 = hashlib.sha256(data).hexdigest()
-    code = options.batch or table.certificate or Path(file).stem
+    place, problems = _place_of(connection, file, table, hashlib.sha256(data).hexdigest(), options)
+    code = place.code
     codes = [f"{options.code_prefix}{sample}" for sample in table.sample_codes]
-    problems = _refusals(connection, file, table, sha256, code)
     known = masters.sample_ids(connection, set(codes))
     missing = [sample for sample in dict.fromkeys(codes) if sample not in known]
     empty = ResultsReport(code, 0, 0, 0, 0, 0)
@@ -73,21 +72,41 @@ def store_results(
         known.update(masters.add_samples(connection, missing, "unknown"))
     sample_ids = np.array([known[sample] for sample in codes], dtype=np.int64)
     fresh_ids = _without_results(connection, sample_ids)
-    batch_id, column_ids = _store_batch(connection, file, table, data, compressed.result(), code, options)
+    batch_id, column_ids = _store_batch(connection, file, table, data, compressed.result(), place, options)
     repeat_no = _repeat_numbers(sample_ids)
     with bulk.guarded(connection):
         aliquot_ids = bulk.insert_aliquots(
-            connection, sample_ids, batch_id, table.line_no, _aliquot_kinds(connection, sample_ids, repeat_no), repeat_no
+            connection,
+            sample_ids,
+            batch_id,
+            table.line_no,
+            _aliquot_kinds(connection, sample_ids, repeat_no),
+            repeat_no,
         )
         results = bulk.insert_results(connection, aliquot_ids, column_ids, table.values, table.qualifiers)
         computed = _compute_fresh(connection, table, sample_ids, repeat_no, fresh_ids)
-    stale.mark(connection, np.setdiff1d(sample_ids, fresh_ids).tolist(), 1)
+    if place.supersedes is not None:
+        batches.supersede(connection, place.supersedes, batch_id)
+    stale.mark(connection, np.setdiff1d(sample_ids, fresh_ids).tolist(), stale.DERIVE)
     censored = int((table.qualifiers > 0).sum())
     report = ResultsReport(code, len(table), results, censored, len(missing), int((repeat_no > 0).sum()))
     return report, computed, []
 
 
-def _refusals(connection: Any, file: str, table: ResultTable, sha256: str, code: str) -> list[Problem]:
+@dataclass(frozen=True)
+class _Place:
+    """Where a file of results goes: the code of its batch, the batch it is a part of, the batch it supersedes."""
+
+    code: str
+    part_of: int | None = None
+    supersedes: int | None = None
+
+
+def _place_of(
+    connection: Any, file: str, table: ResultTable, sha256: str, options: ImportOptions
+) -> tuple[_Place, list[Problem]]:
+    """The place of a file among the batches, or the problems that keep it out."""
+    code = options.batch or table.certificate or Path(file).stem
     same = batches.find_by_hash(connection, sha256)
     if same is not None:
         remedy = (
@@ -96,20 +115,45 @@ def _refusals(connection: Any, file: str, table: ResultTable, sha256: str, code:
             else "nothing needs to be done"
         )
         what = f"the same bytes were imported before, as batch '{same['batch']}' ({same['state']})"
-        return [Problem(file, what, remedy=remedy)]
-    other = batches.find_batch(connection, code) or (
-        batches.find_by_certificate(connection, table.certificate) if table.certificate else None
-    )
+        return _Place(code), [Problem(file, what, remedy=remedy)]
+    if options.add_to:
+        return _part(connection, file, options)
+    by_certificate = batches.find_by_certificate(connection, table.certificate) if table.certificate else None
+    other = batches.find_batch(connection, code) or by_certificate
+    if options.supersede:
+        return _successor(connection, file, code, other, options)
     if other is None:
-        return []
-    return [
-        Problem(
-            file,
-            f"certificate or batch '{code}' is in the registry already, from another file ({other['file_name']})",
-            remedy="if this is a corrected certificate use --supersede, if it is another part of the same one use "
-            f"--add-to {other['batch']}, else give it a code of its own with --batch",
+        return _Place(code), []
+    problem = Problem(
+        file,
+        f"certificate or batch '{code}' is in the registry already, from another file ({other['file_name']})",
+        remedy="if this is a corrected certificate use --supersede, if it is another part of the same one use "
+        f"--add-to {other['batch']}, else give it a code of its own with --batch",
+    )
+    return _Place(code), [problem]
+
+
+def _part(connection: Any, file: str, options: ImportOptions) -> tuple[_Place, list[Problem]]:
+    parent = batches.find_batch(connection, options.add_to or "")
+    if parent is None or parent["state"] != "active":
+        what = f"--add-to names batch '{options.add_to}', which is " + (
+            "not in the registry" if parent is None else parent["state"]
         )
-    ]
+        return _Place(""), [Problem(file, what, remedy="'plutonbook batches' lists the batches; name an active one")]
+    code = options.batch or batches.free_code(connection, parent["batch"], "/")
+    return _Place(code, part_of=parent["part_of"] or parent["batch_id"]), []
+
+
+def _successor(
+    connection: Any, file: str, code: str, other: dict[str, Any] | None, options: ImportOptions
+) -> tuple[_Place, list[Problem]]:
+    while other is not None and other["state"] == "superseded" and other["superseded_by"]:
+        other = batches.find_by_id(connection, other["superseded_by"])
+    if other is None:
+        what = f"--supersede: no batch has the code or certificate number '{code}'"
+        remedy = "name the batch that this file corrects with --batch, or import it without --supersede"
+        return _Place(code), [Problem(file, what, remedy=remedy)]
+    return _Place(batches.free_code(connection, code, " corrected "), supersedes=other["batch_id"]), []
 
 
 def _unknown_codes(
@@ -145,13 +189,20 @@ def _unknown_codes(
 
 
 def _store_batch(
-    connection: Any, file: str, table: ResultTable, data: bytes, compressed: bytes, code: str, options: ImportOptions
+    connection: Any,
+    file: str,
+    table: ResultTable,
+    data: bytes,
+    compressed: bytes,
+    place: _Place,
+    options: ImportOptions,
 ) -> tuple[int, np.ndarray]:
     batch_id = batches.insert_batch(
         connection,
-        code=code,
+        code=place.code,
         lab=options.lab or table.lab,
         certificate=table.certificate,
+        part_of=place.part_of,
         file_name=file,
         data=data,
         compressed=compressed,

@@ -46,7 +46,7 @@ def read_rules(connection: Any) -> Rules:
 
 def read_conventions(connection: Any) -> Conventions:
     """The conventions in force: the defaults, changed by the settings ``convention.<name>``."""
-    known = {field.name: type(field.default) for field in fields(Conventions)}
+    known: dict[str, Any] = {field.name: type(field.default) for field in fields(Conventions)}
     chosen = {}
     for name, value in target_rows.read_settings(connection).items():
         if not name.startswith(CONVENTION_PREFIX):

@@ -139,7 +139,7 @@ def is_missing(column: np.ndarray) -> np.ndarray:
     if column.dtype.kind == "f":
         return np.isnan(column)
     if column.dtype.kind == "O":
-        return np.equal(column, None).astype(bool)
+        return np.equal(column, None).astype(bool)  # type: ignore[call-overload]
     return np.zeros(column.shape, dtype=bool)
 
 

@@ -48,9 +48,7 @@ def drain(connection: Any, cause: str = "edited", limit: int | None = None) -> i
 def _ever_analysed(connection: Any, sample_ids: Sequence[int]) -> list[int]:
     """Those of the samples that have results or once had; the others have nothing to derive or judge yet."""
     ids = np.asarray(sample_ids, dtype=np.int64)
-    analysed = np.union1d(
-        loading.samples_with_aliquots(connection, ids), loading.samples_with_derived(connection, ids)
-    )
+    analysed = np.union1d(loading.samples_with_aliquots(connection, ids), loading.samples_with_derived(connection, ids))
     return analysed.astype(np.int64).tolist()
 
 
@@ -113,9 +111,7 @@ def recompute(
     chunk = Chunk(ids, composition.values, composition.qualifiers, composition.digestions, context)
     computed = compute(chunk, rules.definitions, rules.conventions)
     if rewrite_composition:
-        bulk.write_composition(
-            connection, ids, composition.values, composition.qualifiers, composition.digestions
-        )
+        bulk.write_composition(connection, ids, composition.values, composition.qualifiers, composition.digestions)
     write_computed(connection, ids, computed, rules, cause if log_changes else None)
     return computed
 

@@ -99,7 +99,9 @@ def test_import_stores_what_was_reported_and_says_which_iron_was_measured(
 
 def test_import_reports_every_problem_of_a_file_and_writes_nothing(founded_registry: Registry, tmp_path: Path) -> None:
     samples = write(tmp_path, "samples.csv", "sample_code,sample_kind\nA,outcrop\nB,outcrop\n")
-    bad = write(tmp_path, "bad.csv", "Sample,SiO2 (%),MnO (%),Zr (ppm)\nA,65.1,3002,180\nB,sixty,0.1,\nC,64.0,0.1,150\n")
+    bad = write(
+        tmp_path, "bad.csv", "Sample,SiO2 (%),MnO (%),Zr (ppm)\nA,65.1,3002,180\nB,sixty,0.1,\nC,64.0,0.1,150\n"
+    )
     assert founded_registry.path is not None
     before = counts(founded_registry.path)
 
@@ -312,3 +314,50 @@ def test_import_on_postgresql_gives_the_numbers_of_sqlite(
     assert rows(founded_registry, query) == rows(server, query)
     server.close()
 
+
+CORRECTED = "Sample,Zr (ppm),Sr (ppm),Y (ppm)\nGRA,150,400,20\n"
+
+
+def test_corrected_certificate_supersedes_and_can_be_undone(
+    founded_registry: Registry, averages: list[Path], tmp_path: Path
+) -> None:
+    query = "SELECT sr_y FROM index_sheet WHERE sample_code = 'GRA'"
+    first = write(tmp_path, "T.csv", CORRECTED.replace("400,20", "400,10"))
+    import_files(founded_registry, [*averages, first])
+    second = write(tmp_path, "again.csv", CORRECTED)
+
+    with pytest.raises(InputProblems, match=r"--supersede.*--add-to T"):
+        import_files(founded_registry, [second], ImportOptions(batch="T"))
+    report = import_files(founded_registry, [second], ImportOptions(batch="T", supersede=True))
+
+    assert rows(founded_registry, query) == [{"sr_y": 20.0}]
+    assert report.files[0].results is not None and report.files[0].results.batch == "T corrected 2"
+    states = rows(founded_registry, "SELECT batch, state FROM batch_sheet WHERE batch LIKE 'T%' ORDER BY 1")
+    assert states == [{"batch": "T", "state": "superseded"}, {"batch": "T corrected 2", "state": "active"}]
+    with pytest.raises(PlutonbookError, match="withdraw 'T corrected 2' first"):
+        set_state(founded_registry, "T", "active")
+    set_state(founded_registry, "T corrected 2", "withdrawn")
+    assert rows(founded_registry, query) == [{"sr_y": None}]
+    set_state(founded_registry, "T", "active")
+    assert rows(founded_registry, query) == [{"sr_y": 40.0}]
+
+
+def test_second_file_of_a_certificate_is_added_to_it_and_goes_with_it(
+    founded_registry: Registry, averages: list[Path], tmp_path: Path
+) -> None:
+    import_files(founded_registry, averages, ImportOptions(batch="C-7"))
+    traces = write(tmp_path, "traces.csv", CORRECTED)
+    import_files(founded_registry, [traces], ImportOptions(add_to="C-7"))
+
+    query = "SELECT sr_y, mg_number FROM index_sheet WHERE sample_code = 'GRA'"
+    assert rows(founded_registry, query)[0]["sr_y"] == 20.0
+    set_state(founded_registry, "C-7", "withdrawn")
+    assert rows(founded_registry, query) == [{"sr_y": None, "mg_number": None}]
+    assert {row["state"] for row in rows(founded_registry, "SELECT state FROM batch_sheet")} == {"withdrawn"}
+    with pytest.raises(InputProblems, match="C-8', which is not in the registry"):
+        import_files(founded_registry, [write(tmp_path, "more.csv", CORRECTED + "\n")], ImportOptions(add_to="C-8"))
+
+
+def test_supersede_without_an_earlier_certificate_says_so(founded_registry: Registry, averages: list[Path]) -> None:
+    with pytest.raises(InputProblems, match="no batch has the code or certificate number 'averages'"):
+        import_files(founded_registry, averages, ImportOptions(supersede=True))

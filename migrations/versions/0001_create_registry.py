@@ -157,10 +157,12 @@ batch = table(
     *texts("imported_by file_name"), sa.Column("sha256", words, unique=True),
     sa.Column("file_bytes", sa.LargeBinary()), sa.Column("state", words, nullable=False, server_default="active"),
     link("superseded_by", "batch.batch_id", ondelete="SET NULL"),
+    link("part_of", "batch.batch_id", ondelete="SET NULL"),
     one_of("state", "active", "superseded", "withdrawn"),
 )
 sa.Index(None, batch.c.certificate)
 sa.Index(None, batch.c.superseded_by)
+sa.Index(None, batch.c.part_of)
 batch_column = table(
     "batch_column", own_id("batch_column_id"), link("batch_id", "batch.batch_id", nullable=False, ondelete="CASCADE"),
     sa.Column("position", whole, nullable=False), sa.Column("header", words), *texts("analyte unit", nullable=False),

@@ -10,7 +10,7 @@ import click
 from registry.commands.options import json_option, registry_named, registry_option, say
 from registry.errors import UsageError
 
-KINDS = "areas sites surveys intervals intrusions samples results reference-materials".split()
+KINDS = ["areas", "sites", "surveys", "intervals", "intrusions", "samples", "results", "reference-materials"]
 
 
 @click.command("import")

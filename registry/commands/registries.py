@@ -44,7 +44,7 @@ def upgrade(registry_path: str | None, as_json: bool) -> None:
 @json_option
 @click.pass_context
 def check(ctx: click.Context, registry_path: str | None, as_json: bool) -> int:
-    """Look for damage: integrity, foreign keys, orphans, schema, stale rows, file hashes, and the methods themselves."""
+    """Look for damage: integrity, foreign keys, orphans, schema, stale rows, file hashes and the methods."""
     from registry.checking import check_registry
     from registry.store.engine import open_registry
 

@@ -48,6 +48,12 @@ def _serve(path: str, host: str, port: int) -> None:
     from web.serving import serve as serve_site
 
     try:
-        serve_site(path, host, port, announce=lambda address: click.echo(f"Plutonbook is at {address} (stop: Ctrl-C)"))
+        serve_site(path, host, port, announce=_announce)
     except OSError as error:
-        raise UsageError(f"port {port} on {host} cannot be used ({error.strerror}); choose another with --port") from error
+        raise UsageError(
+            f"port {port} on {host} cannot be used ({error.strerror}); choose another with --port"
+        ) from error
+
+
+def _announce(address: str) -> None:
+    click.echo(f"Plutonbook is at {address} (stop: Ctrl-C)")

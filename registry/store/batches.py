@@ -30,6 +30,7 @@ def insert_batch(
     reported_on: str | None = None,
     imported_by: str | None = None,
     file_name: str | None = None,
+    part_of: int | None = None,
 ) -> int:
     """Insert an active batch; its id. ``data`` are the file's bytes, kept compressed; their hash is computed here.
 
@@ -53,6 +54,7 @@ def insert_batch(
             sha256=sha256,
             file_bytes=None if data is None else compressed or compress(data),
             state="active",
+            part_of=part_of,
         )
     )
     return int(inserted.inserted_primary_key[0])  # type: ignore[index]
@@ -105,25 +107,29 @@ def find_by_certificate(connection: sa.Connection, certificate: str) -> dict[str
 
 
 def set_state(connection: sa.Connection, batch_id: int, state: str) -> None:
-    """Make a batch ``active``, ``superseded`` or ``withdrawn``; the triggers mark its samples stale."""
+    """Make a batch and its parts ``active``, ``superseded`` or ``withdrawn``; triggers mark their samples stale."""
     if state not in STATES:
         raise ValueError(f"a batch cannot be '{state}'; its states are {', '.join(STATES)}")
-    changed = connection.execute(sa.update(_batch).where(_batch.c.batch_id == batch_id).values(state=state))
-    if changed.rowcount != 1:
+    whole = sa.or_(_batch.c.batch_id == batch_id, _batch.c.part_of == batch_id)
+    if not connection.execute(sa.update(_batch).where(whole).values(state=state)).rowcount:
         raise NotFound(f"there is no batch with the id {batch_id}")
 
 
-def withdraw(connection: sa.Connection, code: str) -> None:
-    """Take a batch out of every composition; its results stay."""
-    set_state(connection, _known(connection, code)["batch_id"], "withdrawn")
+def supersede(connection: sa.Connection, batch_id: int, successor_id: int) -> None:
+    """Let a corrected certificate take the place of a batch and its parts."""
+    set_state(connection, batch_id, "superseded")
+    connection.execute(sa.update(_batch).where(_batch.c.batch_id == batch_id).values(superseded_by=successor_id))
 
 
-def restore(connection: sa.Connection, code: str) -> None:
-    """Let a withdrawn batch count again."""
-    batch = _known(connection, code)
-    if batch["state"] == "superseded":
-        raise PlutonbookError(f"batch '{code}' was superseded by a corrected certificate; withdraw that one first")
-    set_state(connection, batch["batch_id"], "active")
+def free_code(connection: sa.Connection, code: str, mark: str) -> str:
+    """The first of ``code`` + ``mark`` + 2, 3, ... that no batch has."""
+    taken = set(connection.scalars(sa.select(_batch.c.code).where(_batch.c.code.startswith(f"{code}{mark}"))))
+    return next(name for number in range(2, len(taken) + 3) if (name := f"{code}{mark}{number}") not in taken)
+
+
+def find_by_id(connection: sa.Connection, batch_id: int) -> dict[str, Any] | None:
+    """The batch with this id, None where there is none."""
+    return _first(connection, _batch.c.batch_id == batch_id)
 
 
 def file_of(connection: sa.Connection, batch_id: int) -> bytes | None:
@@ -142,17 +148,10 @@ def _described() -> list[Any]:
         _batch.c.batch_id,
         _batch.c.code.label("batch"),
         *(_batch.c[name] for name in ["lab", "certificate", "received_on", "reported_on", "imported_at"]),
-        *(_batch.c[name] for name in ["imported_by", "file_name", "sha256", "state", "superseded_by"]),
+        *(_batch.c[name] for name in ["imported_by", "file_name", "sha256", "state", "superseded_by", "part_of"]),
     ]
 
 
 def _first(connection: sa.Connection, condition: Any) -> dict[str, Any] | None:
     row = connection.execute(sa.select(*_described()).where(condition).order_by(_batch.c.batch_id)).first()
     return None if row is None else dict(row._mapping)
-
-
-def _known(connection: sa.Connection, code: str) -> dict[str, Any]:
-    batch = find_batch(connection, code)
-    if batch is None:
-        raise NotFound(f"there is no batch '{code}'; 'plutonbook batches' lists them")
-    return batch

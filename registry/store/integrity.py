@@ -115,7 +115,8 @@ def _orphans(connection: sa.Connection) -> list[Finding]:
     for table, parent, query in checks:
         count = connection.exec_driver_sql(query).scalar() or 0
         if count:
-            found.append(_finding(f"table {table}", f"{_rows(count)} pointing at a {parent} that is not there", _REPLACED))
+            what = f"{_rows(count)} pointing at a {parent} that is not there"
+            found.append(_finding(f"table {table}", what, _REPLACED))
     if connection.exec_driver_sql("SELECT count(*) FROM import_guard").scalar():
         found.append(
             _finding(

@@ -165,10 +165,12 @@ batch = table(
     sa.Column("file_bytes", Bytes),
     sa.Column("state", Words, nullable=False, server_default="active"),
     link("superseded_by", "batch.batch_id", ondelete="SET NULL"),
+    link("part_of", "batch.batch_id", ondelete="SET NULL"),
     one_of("state", "active", "superseded", "withdrawn"),
 )
 sa.Index(None, batch.c.certificate)
 sa.Index(None, batch.c.superseded_by)
+sa.Index(None, batch.c.part_of)
 batch_column = table(
     "batch_column",
     own_id("batch_column_id"),

@@ -57,7 +57,9 @@ print(json.dumps({{"seconds": seconds, "peak_bytes": peak * 1024}}))
 
 
 def run(code: str) -> dict[str, float]:
-    done = subprocess.run([sys.executable, "-c", code], capture_output=True, text=True, cwd=HERE.parents[1], check=False)
+    done = subprocess.run(
+        [sys.executable, "-c", code], capture_output=True, text=True, cwd=HERE.parents[1], check=False
+    )
     assert done.returncode == 0, done.stderr
     return json.loads(done.stdout.splitlines()[-1])
 
@@ -74,8 +76,10 @@ def test_import_of_a_large_batch_stays_near_bare_sqlite(tmp_path: Path, record_p
     bare = run(BARE.format(path=str(tmp_path / "bare.sqlite"), **names))
     whole = run(IMPORT.format(path=str(tmp_path / "registry.sqlite"), **names))
     ratio = whole["seconds"] / bare["seconds"]
-    print(f"import {whole['seconds']:.1f} s, bare {bare['seconds']:.1f} s, ratio {ratio:.2f}, "
-          f"peak {whole['peak_bytes'] / 1e6:.0f} MB")
+    print(
+        f"import {whole['seconds']:.1f} s, bare {bare['seconds']:.1f} s, ratio {ratio:.2f}, "
+        f"peak {whole['peak_bytes'] / 1e6:.0f} MB"
+    )
     record_property("ratio", ratio)
     assert ratio <= MOST_RATIO
     assert whole["peak_bytes"] < MOST_BYTES

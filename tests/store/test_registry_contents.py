@@ -75,13 +75,13 @@ def test_withdrawn_batch_gives_no_results_until_it_is_restored(any_registry: Reg
     with writing(any_registry) as connection:
         ids = insert_samples(connection, 2)
         insert_certificate(connection, "K1", "Zr", [(1, 0, [120.0]), (2, 0, [90.0])])
-        batches.withdraw(connection, "K1")
+        batches.set_state(connection, 1, "withdrawn")
         assert loading.load_blocks(connection, ids) == []
         assert connection.exec_driver_sql("SELECT count(*) FROM result_sheet").scalar() == 0
         assert [(b["batch"], b["state"], b["lines"], b["results"]) for b in batches.list_batches(connection)] == [
             ("K1", "withdrawn", 2, 2)
         ]
-        batches.restore(connection, "K1")
+        batches.set_state(connection, 1, "active")
         assert len(loading.load_blocks(connection, ids)) == 1
         rows = connection.exec_driver_sql("SELECT * FROM result_sheet ORDER BY sample_id").fetchall()
     assert tuple(rows[0]) == (1, "X001", "Zr", 120.0, "ppm", None, None, "unknown", "K1", 2, 1)
@@ -90,15 +90,10 @@ def test_withdrawn_batch_gives_no_results_until_it_is_restored(any_registry: Reg
 def test_batch_states_are_checked(any_registry: Registry) -> None:
     with writing(any_registry) as connection:
         batch_id = batches.insert_batch(connection, code="K1", imported_at="2026-01-01T00:00:00Z")
-        batches.set_state(connection, batch_id, "superseded")
-        with pytest.raises(PlutonbookError, match="'K1' was superseded by a corrected certificate"):
-            batches.restore(connection, "K1")
         with pytest.raises(ValueError, match="cannot be 'gone'; its states are active, superseded, withdrawn"):
             batches.set_state(connection, batch_id, "gone")
         with pytest.raises(NotFound, match="no batch with the id 99"):
             batches.set_state(connection, 99, "active")
-        with pytest.raises(NotFound, match="there is no batch 'K9'"):
-            batches.withdraw(connection, "K9")
 
 
 def test_blocks_hold_each_batch_and_repeat_apart_with_their_age(any_registry: Registry) -> None:
