@@ -116,6 +116,9 @@ _INSUFFICIENT_WORDS = frozenset(
     ]
 )
 _ABOVE_WORDS = frozenset([">", ">dl", ">uol", ">udl", "overrange", "over-range", "o/r", "abovelimit", "saturated"])
+#: Words of a qualifier column: 1 below, 2 above.
+QUALIFIER_CODES = {"<": 1, "<=": 1, "bdl": 1, "lt": 1, "nd": 1, "u": 1, ">": 2, ">=": 2, "gt": 2}
+NO_QUALIFIER = {"", "=", "-", ".", "n", "na", "~"}
 _ERRORS = re.compile(r"#(div/0|value|ref|name|num|null|spill|calc|error)[!?]?|err:\d+")
 _DASHES = str.maketrans(dict.fromkeys("\u2010\u2011\u2012\u2013\u2014\u2015\u2212\ufe63\uff0d", "-"))
 _SIGN = re.compile(r"(<=|=<|>=|=>|<|>|≤|≥|&lt;|&gt;|less than|greater than)\s*")

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections.abc import Callable
 from dataclasses import dataclass, field
 
 from registry.errors import Problem
@@ -15,6 +16,8 @@ class Findings:
     listed: int = 20
     refused_lines: set[int] = field(default_factory=set)
     whole_file_refused: bool = False
+    #: turns (row, column) of a table that was turned or gathered into the place in the file, for the reader only
+    place: Callable[[int | None, str | None], tuple[int | None, str | None]] | None = None
     _problems: list[Problem] = field(default_factory=list)
     _counts: dict[tuple[str, str], int] = field(default_factory=dict)
     _last: dict[tuple[str, str], Problem] = field(default_factory=dict)
@@ -38,6 +41,8 @@ class Findings:
                 self.refused_lines.add(row)
         group = (severity, what)
         self._counts[group] = count = self._counts.get(group, 0) + 1
+        if self.place is not None:
+            row, column = self.place(row, column)
         if found is not None and len(found) > 80:
             found = found[:77] + "..."
         problem = Problem(self.file, what, row, column, found, expected, remedy, severity)

@@ -3,13 +3,16 @@
 from __future__ import annotations
 
 from registry.intake import kinds
+from registry.intake.arrangement import LONG, TURNED, tell_arrangement
+from registry.intake.containers import BadContainer, Part, foreign_file, is_workbook, unpack
 from registry.intake.encodings import tell_encoding
 from registry.intake.findings import Findings
 from registry.intake.layout import find_header_row
 from registry.intake.master import header_row, read_master
 from registry.intake.readings import KINDS, Reading, ReadingOptions
 from registry.intake.results import read_results
-from registry.intake.sources import BrokenTable, DelimitedSource, Source, tell_separator
+from registry.intake.sources import BrokenTable, DelimitedSource, GridSource, Source, tell_separator
+from registry.intake.workbook import read_sheets
 
 _SEPARATOR_WORDS = {",": "comma", ";": "semicolon", "\t": "tab", "|": "vertical bar"}
 
@@ -17,15 +20,75 @@ _SEPARATOR_WORDS = {",": "comma", ";": "semicolon", "\t": "tab", "|": "vertical 
 def read_file(name: str, data: bytes, kind: str | None = None, options: ReadingOptions | None = None) -> Reading:
     """Read one file into a checked table; never raises for what stands in the file, all faults are in ``problems``.
 
-    ``kind`` is one of ``KINDS``; None: told from the headings. Raises ValueError for an unknown kind.
+    ``kind`` is one of ``KINDS``; None: told from the headings. A workbook or archive must hold one table, or
+    ``options.sheet`` must name one (``read_all`` reads them all). Raises ValueError for an unknown kind.
+    """
+    options = options or ReadingOptions()
+    readings = read_all(name, data, kind, options)
+    if len(readings) == 1:
+        return readings[0]
+    findings = Findings(name, options.listed)
+    findings.add(
+        "the file holds several tables", found=", ".join(reading.part or "" for reading in readings),
+        expected="one table", remedy="name the one to read, or save each as a file of its own",
+    )  # fmt: skip
+    return Reading(name, kind, findings.problems(), whole_file_refused=True)
+
+
+def read_all(name: str, data: bytes, kind: str | None = None, options: ReadingOptions | None = None) -> list[Reading]:
+    """Every table of a file: one reading a sheet of a workbook and a member of an archive, else a list of one.
+
+    Sheets and members without any table are left out and named in ``understood`` of the first reading.
     """
     if kind is not None and kind not in KINDS:
         raise ValueError(f"unknown kind of file '{kind}'; known are {', '.join(KINDS)}")
     options = options or ReadingOptions()
-    findings = Findings(name, options.listed)
-    reading = Reading(name, kind)
+    refused = Findings(name, options.listed)
+    readings: list[Reading] = []
+    passed_over: list[str] = []
     try:
-        _read(reading, data, options, findings)
+        parts = unpack(data, options.unpacked_limit_bytes)
+        if options.sheet is not None and any(part.member == options.sheet for part in parts):
+            parts = [Part(part.data) for part in parts if part.member == options.sheet]
+        for part in parts:
+            if not is_workbook(part.data):
+                readings.append(_one(name, part.member, part.data, None, kind, options))
+                continue
+            sheets = read_sheets(part.data, options.sheet)
+            tables = [(sheet, source) for sheet, source in sheets if len(sheets) == 1 or _holds_a_table(source)]
+            passed_over += [sheet for sheet, source in sheets if (sheet, source) not in tables]
+            for sheet, source in tables:
+                place = f"{part.member}/{sheet}" if part.member else sheet
+                readings.append(_one(name, place, b"", source, kind, options))
+    except BadContainer as fault:
+        refused.add(fault.what, remedy=fault.remedy)
+        return [Reading(name, kind, refused.problems(), whole_file_refused=True)]
+    if not readings:
+        refused.add(
+            "the workbook holds no table", expected="a sheet with headings", remedy="see whether it is the right file"
+        )
+        return [Reading(name, kind, refused.problems(), whole_file_refused=True)]
+    if passed_over:
+        readings[0].understood.append("sheets without a table are left out: " + ", ".join(passed_over))
+    return readings
+
+
+def _holds_a_table(source: Source) -> bool:
+    rows, _ = source.preview(100)
+    return _tell_kind(rows) != [] and len(rows) > 1
+
+
+def _one(
+    name: str, part: str | None, data: bytes, source: Source | None, kind: str | None, options: ReadingOptions
+) -> Reading:
+    findings = Findings(name if part is None else f"{name} [{part}]", options.listed)
+    reading = Reading(name, kind, part=part)
+    try:
+        if isinstance(source, GridSource):
+            reading.understood.append(f"sheet '{part}' of a workbook")
+            _read_table(reading, source, options, findings, len(source.grid) + 1, 1 << 60)
+        else:
+            _read_text(reading, data, options, findings)
     except BrokenTable as fault:
         findings.add(fault.what, row=fault.line, remedy=fault.remedy)
         findings.whole_file_refused = True
@@ -36,18 +99,17 @@ def read_file(name: str, data: bytes, kind: str | None = None, options: ReadingO
     return reading
 
 
-def _read(reading: Reading, data: bytes, options: ReadingOptions, findings: Findings) -> None:
+def _read_text(reading: Reading, data: bytes, options: ReadingOptions, findings: Findings) -> None:
     if not data.strip():
         findings.add(
             "the file is empty", expected="a table with headings", remedy="see whether the right file was chosen"
         )
         return
+    foreign = foreign_file(data)
     encoding = tell_encoding(data)
-    if encoding is None:
-        findings.add(
-            "the file is not a text file", expected="a table as delimited text (CSV)",
-            remedy="save the table as CSV and read that file",
-        )  # fmt: skip
+    if foreign is not None or encoding is None:
+        what, remedy = foreign or ("not a text file", "save the table as CSV and read that file")
+        findings.add(f"the file is {what}", expected="a table as delimited text (CSV) or .xlsx", remedy=remedy)
         return
     separator = (options.recipe and options.recipe.separator) or tell_separator(data, encoding, _known_headings)
     reading.understood.append(f"encoding {encoding.words}; separator {_SEPARATOR_WORDS.get(separator, separator)}")
@@ -63,7 +125,7 @@ def _read(reading: Reading, data: bytes, options: ReadingOptions, findings: Find
 def _read_table(
     reading: Reading, source: Source, options: ReadingOptions, findings: Findings, bound: int, underscores: int
 ) -> None:
-    kind = reading.kind or _tell_kind(source, findings)
+    kind = reading.kind or _settle_kind(source, findings)
     reading.kind = kind
     if kind is None:
         return
@@ -83,8 +145,8 @@ def _known_headings(rows: list[list[str]]) -> int:
     return best
 
 
-def _tell_kind(source: Source, findings: Findings) -> str | None:
-    rows, _ = source.preview(100)
+def _tell_kind(rows: list[list[str]]) -> list[str]:
+    """The kinds that the headings fit: one where it is clear, none where nothing is known."""
     index, analytes = find_header_row(rows)
     with_unit = sum(heading.unit is not None for heading in analytes.values())
     found: list[str] = []
@@ -93,8 +155,17 @@ def _tell_kind(source: Source, findings: Findings) -> str | None:
             found = kinds.possible_kinds(row, len(analytes) if row is rows[index] else 0)
             if found:
                 break
-    if len(analytes) >= 3 or (analytes and (with_unit or not found)):
-        return "results"
+    if found == ["reference-materials"]:
+        return found
+    arrangement = tell_arrangement(rows)
+    if arrangement in (LONG, TURNED) or len(analytes) >= 3 or (analytes and (with_unit or not found)):
+        return ["results"]
+    return found
+
+
+def _settle_kind(source: Source, findings: Findings) -> str | None:
+    rows, _ = source.preview(100)
+    found = _tell_kind(rows)
     if len(found) == 1:
         return found[0]
     headings = rows[max(header_row(rows, "samples"), 0)] if rows else []

@@ -108,6 +108,8 @@ class Reading:
     refused_lines: frozenset[int] = frozenset()
     whole_file_refused: bool = False
     recipe: Recipe | None = None
+    #: the sheet of a workbook or the member of an archive, None for a file of its own
+    part: str | None = None
 
     @property
     def ok(self) -> bool:

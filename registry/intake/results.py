@@ -8,11 +8,12 @@ from dataclasses import dataclass
 
 import numpy as np
 
+from registry.intake.arrangement import arrange
 from registry.intake.cells import NUMBER, decimal_sign, parse_cell
 from registry.intake.checks import check_units, check_values
 from registry.intake.codes import choose_code_column, tidy_codes
 from registry.intake.findings import Findings
-from registry.intake.layout import QUALIFIER_WORD, WideLayout, find_wide_layout
+from registry.intake.layout import QUALIFIER_WORD, WideLayout
 from registry.intake.readings import ReadingOptions, ResultColumn, ResultTable
 from registry.intake.recipes import ColumnChoice, Recipe
 from registry.intake.settling import settle_columns
@@ -38,20 +39,21 @@ def read_results(
     source: Source, options: ReadingOptions, findings: Findings, understood: list[str], row_bound: int, underscores: int
 ) -> Understanding:
     """Read a wide results table. ``row_bound``: at least the number of rows; ``underscores`` of the whole file."""
-    preview, preview_lines = source.preview()
-    layout = find_wide_layout(preview)
-    if layout is None:
+    arranged = arrange(source, row_bound, underscores > 0, findings, understood)
+    if arranged is None:
         findings.add(
             "no row of headings with analytes was found",
             expected="a row such as: Sample, SiO2 (%), Al2O3 (%), Zr (ppm)",
             remedy="see that the headings stand within the first 80 lines and name analytes and units",
         )  # fmt: skip
         return Understanding(None, None)
+    given, source, layout = source, arranged.source, arranged.layout
+    preview, preview_lines = source.preview()
     recipe = options.recipe
     body_rows = preview[layout.first_row :]
     taken = {column.position for column in layout.columns}
     wanted = recipe.sample_header if recipe else None
-    layout.code = choose_code_column(layout.labels, body_rows, taken, wanted)
+    layout.code = layout.code or choose_code_column(layout.labels, body_rows, taken, wanted)
     if layout.code is None:
         findings.add(
             "no column of sample codes was found",
@@ -78,13 +80,16 @@ def read_results(
         position for position in range(layout.width) if position not in taken and position != layout.code.position
     ]
     qualifier_positions = _qualifier_columns(layout, columns, others, body_rows)
-    control = next((place for place in others if _CONTROL.fullmatch(layout.labels[place])), None)
+    control = arranged.control_position
+    if control is None:
+        control = next((place for place in others if _CONTROL.fullmatch(layout.labels[place])), None)
     reader = WideReader(
         columns, decimal, findings, code_position=layout.code.position, control_position=control,
         qualifier_positions=qualifier_positions, negative_means_below=options.negative_means_below,
     )  # fmt: skip
     in_headings = sum(cell.count("_") for row in preview[: layout.first_row] for cell in row)
-    body = reader.read(source, layout.first_row, row_bound, underscores > in_headings)
+    watch = arranged.underscores and (source is not given or underscores > in_headings)
+    body = reader.read(source, layout.first_row, arranged.row_bound, watch)
     columns, body = _judge_texts(columns, body, decimal, findings)
     columns, body = _drop_empty(columns, body, understood)
     used = {column.position for column in columns} | {layout.code.position} | set(qualifier_positions)
@@ -103,7 +108,8 @@ def read_results(
 def _say_layout(layout: WideLayout, lines: list[int], understood: list[str]) -> None:
     rows = ", ".join(f"{role} in row {lines[index]}" for index, role in sorted(layout.roles.items()))
     first = lines[layout.first_row] if layout.first_row < len(lines) else "the end"
-    understood.append(f"heading rows: {rows}; data from row {first}")
+    if rows:
+        understood.append(f"heading rows: {rows}; data from row {first}")
     if layout.titles:
         understood.append(f"{len(layout.titles)} title lines above the table")
     code = layout.code

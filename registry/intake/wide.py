@@ -16,7 +16,9 @@ from registry.intake.cells import (
     BELOW,
     INSUFFICIENT,
     MISSING,
+    NO_QUALIFIER,
     NUMBER,
+    QUALIFIER_CODES,
     SPREADSHEET_ERROR,
     TEXT,
 )
@@ -35,8 +37,6 @@ _SUMMARY_ROW = re.compile(
     r"\s*[:%]?\s*"
 )
 _LETTER_AT_END = re.compile(r"(?m)\D$")
-_QUALIFIER_WORDS = {"<": 1, "<=": 1, "b": 1, "bdl": 1, "lt": 1, "nd": 1, "u": 1, ">": 2, ">=": 2, "gt": 2, "a": 2}
-_NO_QUALIFIER = {"", "=", "-", ".", "n", "na", "~"}
 
 
 @dataclass
@@ -263,9 +263,9 @@ class WideReader:
     ) -> None:
         for row, text in enumerate(chunk.column(position)):
             text = text.strip().casefold()
-            if text in _NO_QUALIFIER:
+            if text in NO_QUALIFIER:
                 continue
-            code = _QUALIFIER_WORDS.get(text)
+            code = QUALIFIER_CODES.get(text)
             if code is None:
                 self.findings.warn(
                     "an unknown qualifier", row=int(chunk.lines[row]), column=self.columns[column].header, found=text,

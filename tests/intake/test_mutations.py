@@ -2,9 +2,12 @@
 
 from __future__ import annotations
 
+import gzip
+import io
 import random
 
 import numpy as np
+import openpyxl
 import pytest
 
 from registry.intake import KINDS, ReadingOptions, read_file
@@ -15,12 +18,32 @@ WIDE = (
     + "".join(f"A-{n:03d},{n},{40 + n / 7:.2f},{n % 9}.1,{'<1' if n % 3 else n}\n" for n in range(40))
     + "Mean,,50,4,2\n"
 )
+LONG = "Sample ID,Analyte,Result,Unit,Method,LOD\n" + "".join(
+    f"A-{n // 2},{'Zr' if n % 2 else 'SiO2'},{n + 1},{'ppm' if n % 2 else '%'},fusion,1\n" for n in range(40)
+)
+TURNED = "Sample ID,,A-1,A-2\nSiO2,%,60,50\nMgO,%,2,3\nZr,ppm,180,<2\nNb,ppm,n.d.,5\n"
+
+
+def _workbook() -> bytes:
+    book = openpyxl.Workbook()
+    for line in WIDE.splitlines():
+        book.active.append(line.split(","))
+    stream = io.BytesIO()
+    book.save(stream)
+    return stream.getvalue()
+
+
+WORKBOOK = _workbook()
 FILES = (
     WIDE.encode(),
     WIDE.replace(",", ";").replace(".", ",").encode("cp1252"),
     WIDE.encode("utf-16"),
     ('"' + WIDE.replace(",", '","').replace("\n", '"\r\n"') + '"').encode(),
     WIDE.replace("n", "é").replace("\n", "\r").encode("mac_roman"),
+    LONG.encode(),
+    TURNED.encode(),
+    gzip.compress(WIDE.encode(), mtime=0),
+    WORKBOOK,
     b"site_code,easting,northing,epsg,site_kind\nA,500000,5200000,32633,outcrop\nB,500001,5200001,32633,drill_hole\n",
     b"site_code,depth_m,azimuth_deg,dip_deg\nA,0,90,-60\nA,50,91,-61\nB,0,0,-90\n",
     b"sample_code,site_code,from_m,to_m,collected_on,pulp_available\nS1,A,0,1,2024-05-31,yes\nS2,A,1,2,,no\n",

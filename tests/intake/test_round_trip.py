@@ -10,7 +10,7 @@ import numpy as np
 from hypothesis import HealthCheck, given, settings
 from hypothesis import strategies as st
 
-from registry.intake import read_file
+from registry.intake import Reading, read_file
 
 OXIDES = ("SiO2", "TiO2", "Al2O3", "MgO", "CaO", "Na2O", "K2O", "P2O5", "LOI")
 ELEMENTS = ("Zr", "Nb", "Rb", "Sr", "Y", "La", "Ce", "Yb", "Cu", "V", "Sc", "W", "Sn", "In", "As", "Au")
@@ -100,11 +100,50 @@ def written(draw: st.DrawFn) -> tuple[Table, bytes]:
     return table, stream.getvalue().encode(encoding)
 
 
+@st.composite
+def written_long_or_turned(draw: st.DrawFn) -> tuple[Table, bytes, bool]:
+    """A table and the bytes of it as a long table, or with its samples as columns."""
+    table = draw(tables())
+    turned = len(table.analytes) >= 3 and draw(st.booleans())
+    decimal = draw(st.sampled_from((".", ",")))
+    words = [DIGESTION_WORDS[name] for name in table.digestions or ["unknown"] * len(table.analytes)]
+    table.digestions = table.digestions or ["unknown"] * len(table.analytes)
+    signs = ("", "<", ">")
+
+    def text(cell: tuple[float, int] | None) -> str:
+        return "" if cell is None else signs[cell[1]] + _number(cell[0], decimal)
+
+    if turned:
+        table.limits = None
+        rows = [["Sample", "Unit", "Method", *table.codes]]
+        for at, name in enumerate(table.analytes):
+            rows.append([name, table.units[at], words[at], *(text(row[at]) for row in table.cells)])
+    else:
+        limits = [_number(limit, decimal) for limit in table.limits or []] or [""] * len(table.analytes)
+        rows = [["Sample ID", "Analyte", "Result", "Unit", "Method", "Detection limit"]]
+        for code, row in zip(table.codes, table.cells, strict=True):
+            for at, cell in enumerate(row):
+                rows.append([code, table.analytes[at], text(cell), table.units[at], words[at], limits[at]])
+    stream = io.StringIO()
+    csv.writer(stream, delimiter=draw(st.sampled_from((",", ";", "\t")))).writerows(rows)
+    return table, stream.getvalue().encode(draw(st.sampled_from(("utf-8", "utf-16")))), turned
+
+
+@settings(max_examples=200, deadline=None, suppress_health_check=[HealthCheck.too_slow])
+@given(written_long_or_turned())
+def test_long_or_turned_table_reads_back_the_same(case):
+    table, data, _ = case
+    check_same(table, read_file("random.csv", data, "results"))
+
+
 @settings(max_examples=300, deadline=None, suppress_health_check=[HealthCheck.too_slow])
 @given(written())
 def test_table_in_a_random_wide_layout_reads_back_the_same(case):
     table, data = case
-    reading = read_file("random.csv", data, "results")
+    check_same(table, read_file("random.csv", data, "results"))
+
+
+def check_same(table: Table, reading: Reading) -> None:
     assert reading.ok, [problem.sentence() for problem in reading.problems]
     found = reading.results
     assert [column.analyte for column in found.columns] == table.analytes

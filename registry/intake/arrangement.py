@@ -1,0 +1,135 @@
+"""How a results table is laid out (wide, long or turned), brought to one wide form that a single reader takes."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+import numpy as np
+
+from registry.intake.codes import CodeColumn
+from registry.intake.findings import Findings
+from registry.intake.layout import SEARCH_ROWS, WideLayout, find_header_row, find_wide_layout
+from registry.intake.long import LongLayout, find_long_layout, gather
+from registry.intake.names import read_heading
+from registry.intake.sources import GridSource, Source
+
+#: A table turned on its side is held in memory whole: no more cells than this.
+MOST_TURNED_CELLS = 20_000_000
+WIDE, LONG, TURNED = "wide", "long", "turned"
+
+
+@dataclass
+class Arranged:
+    """A results table in wide form: where to read it and what its headings say."""
+
+    source: Source
+    layout: WideLayout
+    row_bound: int
+    underscores: bool
+    control_position: int | None = None
+
+
+def tell_arrangement(rows: list[list[str]]) -> str | None:
+    """``wide``, ``long`` or ``turned`` from the first rows; None where nothing names an analyte."""
+    if find_long_layout(rows) is not None:
+        return LONG
+    across = len(find_header_row(rows)[1])
+    down, _ = _analytes_down(rows)
+    if down >= 3 and down > 1.5 * across:
+        return TURNED
+    return WIDE if across else None
+
+
+def _analytes_down(rows: list[list[str]]) -> tuple[int, int]:
+    """The most different analytes that stand under each other in one of the first columns, and which column."""
+    best, choice = 0, 0
+    for position in range(5):
+        found = set()
+        for row in rows:
+            if position < len(row) and 0 < len(row[position]) <= 40:
+                heading = read_heading(row[position])
+                if heading.analyte is not None:
+                    found.add((heading.analyte, heading.method))
+        if len(found) > best and any(len(analyte) > 1 for analyte, _ in found):
+            best, choice = len(found), position
+    return best, choice
+
+
+def arrange(
+    source: Source, row_bound: int, underscores: bool, findings: Findings, understood: list[str]
+) -> Arranged | None:
+    """Bring a results table to wide form; None where no analytes are named."""
+    preview, lines = source.preview()
+    arrangement = tell_arrangement(preview)
+    if arrangement == LONG:
+        layout = find_long_layout(preview)
+        assert layout is not None
+        return _gathered(source, layout, preview, findings, understood)
+    if arrangement == TURNED:
+        return _turned(source, preview, lines, findings, understood)
+    wide = find_wide_layout(preview)
+    return None if wide is None else Arranged(source, wide, row_bound, underscores)
+
+
+def _titles(rows: list[list[str]]) -> list[str]:
+    lines = (", ".join(cell.strip() for cell in row if cell.strip()) for row in rows)
+    return [line for line in lines if line]
+
+
+def _gathered(
+    source: Source, layout: LongLayout, preview: list[list[str]], findings: Findings, understood: list[str]
+) -> Arranged | None:
+    gathered = gather(source, layout, findings)
+    named = ", ".join(f"{role} in '{layout.labels[at]}'" for role, at in sorted(layout.roles.items()))
+    understood.append(f"a long table, one result a line ({len(gathered.line_of)} results): {named}")
+    if not gathered.columns:
+        return None
+    findings.place = gathered.place_of_cells()
+    width = len(gathered.columns) + 2
+    for row in gathered.grid:
+        row.extend([""] * (width - len(row)))
+    sample = layout.labels[layout.roles["sample"]]
+    control = layout.roles.get("control")
+    labels = [sample, layout.labels[control] if control is not None else ""]
+    labels += [column.header for column in gathered.columns]
+    wide = WideLayout(width, {}, 0, gathered.columns, labels, CodeColumn(0, sample), _titles(preview[: layout.header]))
+    grid = GridSource(gathered.grid, np.array(gathered.lines, np.int64))
+    return Arranged(grid, wide, len(gathered.grid), True, 1 if control is not None else None)
+
+
+def _turned(
+    source: Source, preview: list[list[str]], preview_lines: np.ndarray, findings: Findings, understood: list[str]
+) -> Arranged | None:
+    rows: list[list[str]] = []
+    lines: list[int] = []
+    cells = 0
+    for chunk in source.chunks():
+        rows += chunk.rows
+        lines += chunk.lines.tolist()
+        cells += sum(map(len, chunk.rows))
+        if cells > MOST_TURNED_CELLS:
+            findings.add(
+                "a table with samples as columns is too large", found=f"more than {MOST_TURNED_CELLS:,} cells",
+                expected="one sample a row", remedy="turn the table so that each sample has a row of its own",
+            )  # fmt: skip
+            return None
+    width = max(map(len, rows))
+    grid = [[row[at] if at < len(row) else "" for row in rows] for at in range(width)]
+    layout = find_wide_layout(grid)
+    if layout is None:
+        return None
+    understood.append("samples stand as columns: the table is turned; its line numbers count the columns of the file")
+    _, at = _analytes_down(preview)
+    first = next((number for number, row in enumerate(rows) if at < len(row) and read_heading(row[at]).analyte), 0)
+    layout.titles = _titles([row for row in rows[: min(first, SEARCH_ROWS)] if sum(map(bool, map(str.strip, row))) < 3])
+    line_of = {column.header: lines[column.position] for column in layout.columns}
+    names = [next((cell.strip() for cell in column if cell.strip()), "") for column in grid]
+
+    def place(row: int | None, column: str | None) -> tuple[int | None, str | None]:
+        if row is None:
+            return line_of.get(column or ""), column
+        sample = names[row - 1] if 0 < row <= len(names) else None
+        return line_of.get(column or ""), f"{sample} (column {row})"
+
+    findings.place = place
+    return Arranged(GridSource(grid, np.arange(1, width + 1, dtype=np.int64)), layout, width, True)

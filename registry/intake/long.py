@@ -1,0 +1,201 @@
+"""Long (tidy) results: one result a line, gathered into the same wide table as every other layout gives."""
+
+from __future__ import annotations
+
+import re
+from array import array
+from collections.abc import Callable
+from dataclasses import dataclass, field
+
+from registry.intake.cells import NO_QUALIFIER, QUALIFIER_CODES
+from registry.intake.codes import heading_score
+from registry.intake.findings import Findings
+from registry.intake.layout import SEARCH_ROWS, AnalyteColumn
+from registry.intake.names import Heading, read_heading
+from registry.intake.sources import Source
+from registry.intake.units import canonical_unit, foreign_unit
+
+_ROLES = {
+    "analyte": r"(chemical )?(analytes?|elements?|parameters?|oxides?|determinands?"
+    r"|constituents?|components?|variables?)"
+    r"( (name|code|symbol))?",
+    "value": r"(reported |result |numeric |assay )?(values?|results?|concentrations?|assays?|amounts?|readings?)",
+    "unit": r"(result |value )?(units?|uom|unit of measure|measurement unit)",
+    "qualifier": r"(result |value )?(qualifiers?|qual|flags?|signs?|prefix|censor(ed|ing)?|comparator|operator)",
+    "method": r"(analysis |analytical |lab |laboratory |test )?(methods?|technique|procedure)( (code|name))?",
+    "digestion": r"(digestion|digest|preparation|decomposition|attack)( method)?",
+    "lower": r"(lower )?(detection|reporting)( limit)?|l\.?o\.?d|lld|ldl|mdl|dl|lower limit|detection limit value",
+    "upper": r"upper (detection |reporting )?limit|udl|uol",
+    "control": r"qa ?/?qc|qc( type)?|sample type|control|check type",
+}
+_COMPILED = {role: re.compile(pattern) for role, pattern in _ROLES.items()}
+
+
+@dataclass
+class LongLayout:
+    """The heading row and the position of each role; ``sample``, ``analyte`` and ``value`` are always there."""
+
+    header: int
+    roles: dict[str, int]
+    labels: list[str]
+    value_unit: str | None = None
+
+
+@dataclass
+class Gathered:
+    """A long table turned wide: ``grid`` rows are [code, control text, cells ...], ``lines`` their first lines."""
+
+    columns: list[AnalyteColumn] = field(default_factory=list)
+    grid: list[list[str]] = field(default_factory=list)
+    lines: list[int] = field(default_factory=list)
+    row_of: array[int] = field(default_factory=lambda: array("q"))
+    column_of: array[int] = field(default_factory=lambda: array("q"))
+    line_of: array[int] = field(default_factory=lambda: array("q"))
+
+    def place_of_cells(self) -> Callable[[int | None, str | None], tuple[int | None, str | None]]:
+        """A function that turns (first line of the row, column) into the line on which that very result stands."""
+        exact: dict[tuple[int, str], int] = {}
+
+        def place(row: int | None, column: str | None) -> tuple[int | None, str | None]:
+            if not exact:
+                for number, position, line in zip(self.row_of, self.column_of, self.line_of, strict=True):
+                    exact[self.lines[number], self.columns[position].header] = line
+            return (row if row is None or column is None else exact.get((row, column), row)), column
+
+        return place
+
+
+def _folded(text: str) -> str:
+    return re.sub(r"[\s_\-]+", " ", text.strip().strip("\ufeff").casefold())
+
+
+def find_long_layout(rows: list[list[str]]) -> LongLayout | None:
+    """The headings of a long table within the first rows: a sample code, an analyte and a value column."""
+    for index, row in enumerate(rows[:SEARCH_ROWS]):
+        roles: dict[str, int] = {}
+        best = 0.0
+        unit = None
+        for position, cell in enumerate(row):
+            bare = re.sub(r"\s*[(\[][^()\[\]]*[)\]]\s*$", "", _folded(cell))
+            for role, pattern in _COMPILED.items():
+                if bare and pattern.fullmatch(bare) and role not in roles:
+                    roles[role] = position
+                    bracket = re.search(r"[(\[]([^()\[\]]*)[)\]]", cell)
+                    if role == "value" and bracket:
+                        unit = canonical_unit(bracket.group(1))
+                    break
+            else:
+                score = heading_score(cell)
+                if score > best:
+                    best, roles["sample"] = score, position
+        if {"sample", "analyte", "value"} <= roles.keys():
+            return LongLayout(index, roles, [cell.strip() for cell in row], unit)
+    return None
+
+
+def gather(source: Source, layout: LongLayout, findings: Findings) -> Gathered:
+    """Walk the lines once; a second result of one analyte, unit and method for a code opens a second row of it."""
+    gathered = Gathered()
+    at = layout.roles
+    columns: dict[tuple[str, ...], int | None] = {}
+    rows: dict[tuple[str, int], int] = {}
+    seen: dict[tuple[str, int], int] = {}
+    skip = layout.header + 1
+    keys = [role for role in ("analyte", "unit", "method", "digestion", "lower", "upper") if role in at]
+    for chunk in source.chunks():
+        if skip:
+            dropped = min(skip, len(chunk))
+            chunk, skip = chunk.after(dropped), skip - dropped
+            if not len(chunk):
+                continue
+        parts = zip(*(map(str.strip, chunk.column(at[role])) for role in keys), strict=True)
+        blank = [""] * len(chunk)
+        signs = chunk.column(at["qualifier"]) if "qualifier" in at else blank
+        control = chunk.column(at["control"]) if "control" in at else blank
+        cells = zip(
+            chunk.lines.tolist(), map(str.strip, chunk.column(at["sample"])), chunk.column(at["value"]), signs, control,
+            parts, strict=True,
+        )  # fmt: skip
+        for line, code, text, sign, said, key in cells:
+            if not code:
+                if text.strip() or key[0]:
+                    findings.add(
+                        "a result without a sample code", row=line, column=layout.labels[at["sample"]], found="",
+                        expected="a sample code", remedy="write the code, or delete the line",
+                    )  # fmt: skip
+                continue
+            if key not in columns:
+                columns[key] = _new_column(dict(zip(keys, key, strict=True)), layout, line, gathered, findings)
+            column = columns[key]
+            if column is None:
+                continue
+            occurrence = seen.get((code, column), 0)
+            seen[code, column] = occurrence + 1
+            row = rows.get((code, occurrence))
+            if row is None:
+                row = rows[code, occurrence] = len(gathered.grid)
+                gathered.grid.append([code, said.strip()])
+                gathered.lines.append(line)
+            cells_of_row = gathered.grid[row]
+            if len(cells_of_row) < column + 3:
+                cells_of_row.extend([""] * (column + 3 - len(cells_of_row)))
+            sign = sign.strip()
+            if sign:
+                text = _joined(sign, text, line, layout.labels[at["qualifier"]], findings)
+            cells_of_row[column + 2] = text
+            gathered.row_of.append(row)
+            gathered.column_of.append(column)
+            gathered.line_of.append(line)
+    return gathered
+
+
+def _joined(sign: str, text: str, line: int, heading: str, findings: Findings) -> str:
+    """The qualifier before its number, as a wide table would have it."""
+    code = QUALIFIER_CODES.get(sign.casefold())
+    if code is not None:
+        return ("<" if code == 1 else ">") + text.strip().lstrip("<>") if text.strip() else text
+    if sign.casefold() not in NO_QUALIFIER:
+        findings.warn(
+            "an unknown qualifier", row=line, column=heading, found=sign, expected="< or >",
+            remedy="the value is taken as it stands",
+        )  # fmt: skip
+    return text
+
+
+def _new_column(
+    key: dict[str, str], layout: LongLayout, line: int, gathered: Gathered, findings: Findings
+) -> int | None:
+    heading = read_heading(key["analyte"])
+    if heading.analyte is None:
+        if key["analyte"]:
+            findings.warn(
+                "the analyte is not known; its results are not read", row=line,
+                column=layout.labels[layout.roles["analyte"]], found=key["analyte"],
+                expected="an oxide or element, or a total", remedy="correct the name, or leave it if it is not needed",
+            )  # fmt: skip
+        return None
+    method = " ".join(filter(None, (key.get("method"), key.get("digestion"), heading.method))) or None
+    unit_text = key.get("unit", "")
+    unit = canonical_unit(unit_text) if unit_text else heading.unit or layout.value_unit
+    name = key["analyte"] + (f" ({unit_text})" if unit_text else "") + (f" {method}" if method else "")
+    taken = {column.header for column in gathered.columns}
+    header, number = name, 1
+    while header in taken:
+        number += 1
+        header = f"{name} ({number})"
+    column = AnalyteColumn(len(gathered.columns) + 2, header, Heading(heading.analyte, unit, method), unit, method)
+    column.lower, column.upper = _limit(key.get("lower", "")), _limit(key.get("upper", ""))
+    if unit_text and unit is None:
+        column.foreign_unit = unit_text
+        if not foreign_unit(unit_text):
+            column.foreign_unit = f"{unit_text}?"
+    gathered.columns.append(column)
+    return column.position - 2
+
+
+def _limit(text: str) -> float | None:
+    try:
+        value = float(text.replace(",", ".").lstrip("<> "))
+    except ValueError:
+        return None
+    return value if value > 0 else None
