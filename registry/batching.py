@@ -2,12 +2,18 @@
 
 from __future__ import annotations
 
+from collections.abc import Callable, Mapping
 from typing import Any
 
-from registry.errors import NotFound, PlutonbookError
+from registry.errors import NotFound, PlutonbookError, UsageError
+from registry.petrology.digestion import DIGESTIONS
 from registry.refresh import changes_since, drain, last_change
 from registry.store import batches
 from registry.store.engine import Registry, reading, writing
+from registry.store.reading.changes import verdict_changes
+
+#: What a person can say of a column.
+DIGESTION_NAMES = tuple(name for name in DIGESTIONS if name and name != "unknown_without_silica")
 
 
 def list_batches(registry: Registry) -> list[dict[str, Any]]:
@@ -16,26 +22,89 @@ def list_batches(registry: Registry) -> list[dict[str, Any]]:
         return batches.list_batches(connection)
 
 
-def set_state(registry: Registry, code: str, state: str) -> dict[str, Any]:
-    """Withdraw (``withdrawn``) or restore (``active``) a batch and recompute what it touches, in one transaction."""
+class _NothingWritten(Exception):
+    """Rolls a dry run back."""
+
+
+def set_state(registry: Registry, code: str, state: str, dry_run: bool = False) -> dict[str, Any]:
+    """Withdraw (``withdrawn``) or restore (``active``) a batch and recompute what it touches, in one transaction.
+
+    ``dry_run`` tells what would happen and writes nothing.
+    """
     verb = "withdrawn" if state == "withdrawn" else "restored"
-    with writing(registry, what=f"a change of batch {code}") as connection:
-        batch = batches.find_batch(connection, code)
-        if batch is None:
-            known = [row["batch"] for row in batches.list_batches(connection)]
-            raise NotFound(f"there is no batch '{code}'; the registry holds {', '.join(known) or 'none'}")
-        if batch["state"] == state:
-            raise PlutonbookError(f"batch '{code}' is {state} already; nothing was changed")
-        if batch["state"] == "superseded":
-            successor = batches.find_by_id(connection, batch["superseded_by"]) if batch["superseded_by"] else None
-            if state == "withdrawn" or (successor is not None and successor["state"] != "withdrawn"):
-                name = successor["batch"] if successor else "a corrected certificate"
-                raise PlutonbookError(
-                    f"batch '{code}' was superseded by '{name}' and counts nowhere; withdraw '{name}' first, then "
-                    f"'plutonbook restore-batch {code}' lets the earlier results count again"
-                )
-        before = last_change(connection)
-        batches.set_state(connection, batch["batch_id"], state)
-        recomputed = drain(connection, cause=f"batch {code} {verb}")
-        changed = changes_since(connection, before)
-    return {"batch": code, "state": state, "recomputed": recomputed, "verdicts_changed": changed}
+
+    def change(connection: Any) -> None:
+        batches.set_state(connection, _batch_to_change(connection, code, state)["batch_id"], state)
+
+    report = recomputed_after(registry, change, f"a change of batch {code}", f"batch {code} {verb}", dry_run)
+    return {"batch": code, "state": state, **report}
+
+
+def set_digestions(
+    registry: Registry, code: str, digestions: Mapping[int, str], dry_run: bool = False
+) -> dict[str, Any]:
+    """Say how columns of a batch (by their position) were digested and recompute its samples, in one transaction.
+
+    UsageError for a digestion or a position that is not known.
+    """
+    for name in digestions.values():
+        if name not in DIGESTION_NAMES:
+            raise UsageError(f"there is no digestion '{name}'; the digestions are {', '.join(DIGESTION_NAMES)}")
+
+    def change(connection: Any) -> None:
+        batches.set_digestions(connection, _known(connection, code)["batch_id"], digestions)
+
+    what, cause = f"a change of batch {code}", f"digestions of batch {code} stated"
+    return {"batch": code, **recomputed_after(registry, change, what, cause, dry_run)}
+
+
+def recomputed_after(
+    registry: Registry, change: Callable[[Any], Any], what: str, cause: str, dry_run: bool
+) -> dict[str, Any]:
+    """Change something and recompute what it touches: how many samples, how many verdicts, and the first of these."""
+    report: dict[str, Any] = {}
+    try:
+        with writing(registry, what=what) as connection:
+            before = last_change(connection)
+            change(connection)
+            report["recomputed"] = drain(connection, cause=cause)
+            report["verdicts_changed"] = changes_since(connection, before)
+            report["changes"] = verdict_changes(connection, before)
+            if dry_run:
+                raise _NothingWritten
+    except _NothingWritten:
+        pass
+    return report
+
+
+def stored_file(registry: Registry, code: str) -> tuple[str, bytes]:
+    """Name and bytes of the file of a batch, as it was sent; NotFound where none is kept."""
+    with reading(registry) as connection:
+        batch = _known(connection, code)
+        data = batches.file_of(connection, batch["batch_id"])
+    if data is None:
+        raise NotFound(f"the registry keeps no file of batch '{code}'")
+    return batch["file_name"] or f"{code}.csv", data
+
+
+def _known(connection: Any, code: str) -> dict[str, Any]:
+    batch = batches.find_batch(connection, code)
+    if batch is None:
+        known = [row["batch"] for row in batches.list_batches(connection)]
+        raise NotFound(f"there is no batch '{code}'; the registry holds {', '.join(known) or 'none'}")
+    return batch
+
+
+def _batch_to_change(connection: Any, code: str, state: str) -> dict[str, Any]:
+    batch = _known(connection, code)
+    if batch["state"] == state:
+        raise PlutonbookError(f"batch '{code}' is {state} already; nothing was changed")
+    if batch["state"] == "superseded":
+        successor = batches.find_by_id(connection, batch["superseded_by"]) if batch["superseded_by"] else None
+        if state == "withdrawn" or (successor is not None and successor["state"] != "withdrawn"):
+            name = successor["batch"] if successor else "a corrected certificate"
+            raise PlutonbookError(
+                f"batch '{code}' was superseded by '{name}' and counts nowhere; withdraw '{name}' first, then "
+                f"'plutonbook restore-batch {code}' lets the earlier results count again"
+            )
+    return batch

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Sequence
+from collections.abc import Callable, Mapping, Sequence
 from concurrent.futures import Future, ThreadPoolExecutor
 from dataclasses import asdict, dataclass, field
 from pathlib import Path
@@ -10,10 +10,14 @@ from typing import Any
 
 from registry.errors import InputProblems, NotFound, PlutonbookError, Problem, UsageError
 from registry.importing_results import ResultsReport, store_results
-from registry.intake import KINDS, Reading, read_file
+from registry.intake import KINDS, Reading, ReadingOptions, read_file
 from registry.refresh import changes_since, drain, last_change
 from registry.store import batches, masters
 from registry.store.engine import Registry, writing
+from registry.store.reading.changes import verdict_changes
+
+#: Called with what is being done (reading, storing, computing), how much of it is done, and of how much.
+Progress = Callable[[str, int, int], None]
 
 
 @dataclass(frozen=True)
@@ -34,6 +38,14 @@ class ImportOptions:
         """UsageError for options that this version does not have yet, with what to do meanwhile."""
         if self.keep_going:
             raise UsageError("--keep-going is not there yet; correct the rows that are reported and import again")
+
+
+@dataclass(frozen=True)
+class FileChoice:
+    """How one file is read: its kind (None: told from the headings) and the choices of the user."""
+
+    kind: str | None = None
+    reading: ReadingOptions | None = None
 
 
 @dataclass
@@ -72,6 +84,7 @@ class ImportReport:
     verdicts_changed: int
     verdicts: dict[str, dict[str, int]]
     dry_run: bool
+    changes: list[dict[str, Any]] = field(default_factory=list)
 
     def lines(self) -> list[str]:
         return [*(line for file in self.files for line in file.lines()), *self._ending()]
@@ -105,26 +118,44 @@ class _NothingWritten(Exception):
     """Rolls a dry run back."""
 
 
-def import_files(registry: Registry, paths: Sequence[Path], options: ImportOptions | None = None) -> ImportReport:
+def _unwatched(_what: str, _done: int, _total: int) -> None:
+    """Progress that nobody looks at."""
+
+
+def import_files(
+    registry: Registry,
+    paths: Sequence[Path],
+    options: ImportOptions | None = None,
+    *,
+    choices: Mapping[Path, FileChoice] | None = None,
+    progress: Progress = _unwatched,
+    tell: Callable[[str], Any] | None = None,
+    on_read: Callable[[Path, Reading], Any] | None = None,
+) -> ImportReport:
     """Import files in the order areas, sites, surveys, intervals, intrusions, samples, results; one transaction.
 
-    Raises InputProblems with every problem of every file (then nothing was written), NotFound for a missing file.
+    ``choices`` says how single files are read; ``on_read`` is given each reading before anything is stored;
+    ``tell`` makes the import wait for a busy registry and gets the sentence that says what holds it. Raises InputProblems with every problem of every file (then nothing was written), NotFound for a missing file.
     """
     options = options or ImportOptions()
     options.refuse_what_is_not_there()
     contents = [(path, _bytes_of(path)) for path in paths]
     with ThreadPoolExecutor(1) as pool:  # zlib works beside the reading: it needs no interpreter
         files = [_File(data, pool.submit(batches.compress, data)) for _, data in contents]
-        readings = [
-            (read_file(path.name, file.data, options.kind), file)
-            for (path, _), file in zip(contents, files, strict=True)
-        ]
+        readings = []
+        for (path, data), file in zip(contents, files, strict=True):
+            progress("reading", len(readings), len(paths))
+            choice = (choices or {}).get(path, FileChoice())
+            reading = read_file(path.name, data, choice.kind or options.kind, choice.reading)
+            if on_read is not None:
+                on_read(path, reading)
+            readings.append((reading, file))
     readings.sort(key=lambda pair: KINDS.index(pair[0].kind) if pair[0].kind in KINDS else len(KINDS))
     unreadable = [problem for reading, _ in readings for problem in reading.problems if not reading.ok]
     report: ImportReport | None = None
     try:
-        with writing(registry, what=f"an import of {len(paths)} files") as connection:
-            report = _store(connection, readings, options, unreadable)
+        with writing(registry, what=f"an import of {_count(len(paths), 'file')}", tell=tell) as connection:
+            report = _store(connection, readings, options, unreadable, progress)
             if options.dry_run:
                 raise _NothingWritten
     except _NothingWritten:
@@ -134,7 +165,11 @@ def import_files(registry: Registry, paths: Sequence[Path], options: ImportOptio
 
 
 def _store(
-    connection: Any, readings: Sequence[tuple[Reading, _File]], options: ImportOptions, problems: list[Problem]
+    connection: Any,
+    readings: Sequence[tuple[Reading, _File]],
+    options: ImportOptions,
+    problems: list[Problem],
+    progress: Progress,
 ) -> ImportReport:
     before = last_change(connection)
     reports, computed = [], 0
@@ -144,20 +179,25 @@ def _store(
     for reading, contents in readings:
         if problems:
             break  # what follows may name what a faulty file was to bring: its complaints would mislead
-        report, done, faults = _store_one(connection, reading, contents, options)
+        report, done, faults = _store_one(connection, reading, contents, options, progress)
         reports.append(report)
         computed += done
         problems = [*problems, *faults]
     if problems:
         raise InputProblems(problems)
-    computed += drain(connection, cause=_cause(reports))
+    computed += drain(connection, cause=_cause(reports), progress=progress)
     return ImportReport(
-        reports, computed, changes_since(connection, before), masters.verdict_counts(connection), options.dry_run
+        reports,
+        computed,
+        changes_since(connection, before),
+        masters.verdict_counts(connection),
+        options.dry_run,
+        verdict_changes(connection, before),
     )
 
 
 def _store_one(
-    connection: Any, reading: Reading, contents: _File, options: ImportOptions
+    connection: Any, reading: Reading, contents: _File, options: ImportOptions, progress: Progress
 ) -> tuple[FileReport, int, list[Problem]]:
     """Store one good reading; its report, how many samples were computed, and the problems met on the way."""
     kind = reading.kind or ""
@@ -165,7 +205,7 @@ def _store_one(
     if reading.results is not None:
         report = FileReport(reading.file, kind, len(reading.results), reading.understood, remarks)
         report.results, done, faults = store_results(
-            connection, reading.file, reading.results, contents.data, contents.compressed, options
+            connection, reading.file, reading.results, contents.data, contents.compressed, options, progress
         )
         return report, done, faults
     if kind == "reference-materials":

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import hashlib
+from collections.abc import Callable
 from concurrent.futures import Future
 from dataclasses import dataclass
 from pathlib import Path
@@ -21,6 +22,8 @@ from registry.store import batches, bulk, loading, masters, stale
 if TYPE_CHECKING:
     from registry.importing import ImportOptions
 
+#: Lines of results stored between two reports of progress.
+LINES_AT_A_TIME = 8192
 CONTROL_KINDS = ("reference_material", "blank", "duplicate")
 
 
@@ -52,6 +55,7 @@ def store_results(
     data: bytes,
     compressed: Future[bytes],
     options: ImportOptions,
+    progress: Callable[[str, int, int], None],
 ) -> tuple[ResultsReport, int, list[Problem]]:
     """Store one table of results and compute its samples; a report, how many were computed, and the problems.
 
@@ -83,8 +87,13 @@ def store_results(
             _aliquot_kinds(connection, sample_ids, repeat_no),
             repeat_no,
         )
-        results = bulk.insert_results(connection, aliquot_ids, column_ids, table.values, table.qualifiers)
-        computed = _compute_fresh(connection, table, sample_ids, repeat_no, fresh_ids)
+        results = 0
+        for start in range(0, len(aliquot_ids), LINES_AT_A_TIME):
+            progress("storing", start, len(aliquot_ids))
+            part = slice(start, start + LINES_AT_A_TIME)
+            values, qualifiers = table.values[part], table.qualifiers[part]
+            results += bulk.insert_results(connection, aliquot_ids[part], column_ids, values, qualifiers)
+        computed = _compute_fresh(connection, table, sample_ids, repeat_no, fresh_ids, progress)
     if place.supersedes is not None:
         batches.supersede(connection, place.supersedes, batch_id)
     stale.mark(connection, np.setdiff1d(sample_ids, fresh_ids).tolist(), stale.DERIVE)
@@ -253,7 +262,12 @@ def _aliquot_kinds(connection: Any, sample_ids: np.ndarray, repeat_no: np.ndarra
 
 
 def _compute_fresh(
-    connection: Any, table: ResultTable, sample_ids: np.ndarray, repeat_no: np.ndarray, fresh_ids: np.ndarray
+    connection: Any,
+    table: ResultTable,
+    sample_ids: np.ndarray,
+    repeat_no: np.ndarray,
+    fresh_ids: np.ndarray,
+    progress: Callable[[str, int, int], None],
 ) -> int:
     """Compose, derive and judge the samples that have these results only."""
     from registry.judging import read_rules
@@ -262,6 +276,7 @@ def _compute_fresh(
     rules = read_rules(connection)
     uses = [ColumnUse(column.analyte, column.unit, column.digestion) for column in table.columns]
     for start in range(0, len(fresh_ids), CHUNK_SIZE):
+        progress("computing", start, len(fresh_ids))
         ids = fresh_ids[start : start + CHUNK_SIZE]
         position = np.searchsorted(ids, sample_ids)
         inside = (position < len(ids)) & (ids[np.minimum(position, len(ids) - 1)] == sample_ids)

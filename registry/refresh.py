@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Sequence
+from collections.abc import Callable, Sequence
 from typing import Any
 
 import numpy as np
@@ -20,18 +20,26 @@ SMALL_REFRESH = 200
 DERIVE, JUDGE = 1, 2
 
 
-def drain(connection: Any, cause: str = "edited", limit: int | None = None) -> int:
+def drain(
+    connection: Any,
+    cause: str = "edited",
+    limit: int | None = None,
+    progress: Callable[[str, int, int], None] | None = None,
+) -> int:
     """Compute what is stale, at most ``limit`` samples, inside the caller's transaction; how many were done.
 
-    ``cause`` is written beside each verdict that changes.
+    ``cause`` is written beside each verdict that changes; ``progress("computing", done, all)`` is called by chunks.
     """
     rules: Rules | None = None
     done = 0
+    total = stale.count(connection) if progress is not None else 0
     while limit is None or done < limit:
         size = CHUNK_SIZE if limit is None else min(CHUNK_SIZE, limit - done)
         pending = stale.pending(connection, size)
         if not pending:
             break
+        if progress is not None:
+            progress("computing", done, total)
         rules = rules or read_rules(connection)
         derive = [sample_id for sample_id, level in pending if level == DERIVE]
         judge = [sample_id for sample_id, level in pending if level != DERIVE]

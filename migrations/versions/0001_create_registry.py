@@ -261,6 +261,10 @@ account = table(
 audit_entry = table(
     "audit_entry", own_id("audit_entry_id"), *texts("at account action", nullable=False), *texts("subject detail"),
 )
+reading_recipe = table(
+    "reading_recipe", own_id("reading_recipe_id"), sa.Column("name", words, nullable=False, unique=True),
+    *texts("kind shape recipe created_at", nullable=False),
+)
 reference_material = table(
     "reference_material", own_id("reference_material_id"), sa.Column("name", words, nullable=False, unique=True),
 )

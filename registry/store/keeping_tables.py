@@ -1,4 +1,4 @@
-"""Settings, what is stale, who may write, reference materials, and the catalogue as rows."""
+"""Settings, what is stale, who may write, reading recipes, reference materials, and the catalogue as rows."""
 
 from __future__ import annotations
 
@@ -42,6 +42,13 @@ audit_entry = table(
     own_id("audit_entry_id"),
     *words("at account action", nullable=False),
     *words("subject detail"),
+)
+#: How a file of one shape is read: ``shape`` is the JSON list of its headings, ``recipe`` the JSON of the intake.
+reading_recipe = table(
+    "reading_recipe",
+    own_id("reading_recipe_id"),
+    sa.Column("name", Words, nullable=False, unique=True),
+    *words("kind shape recipe created_at", nullable=False),
 )
 reference_material = table(
     "reference_material", own_id("reference_material_id"), sa.Column("name", Words, nullable=False, unique=True)
