@@ -135,14 +135,15 @@ def import_files(
     """Import files in the order areas, sites, surveys, intervals, intrusions, samples, results; one transaction.
 
     ``choices`` says how single files are read; ``on_read`` is given each reading before anything is stored;
-    ``tell`` makes the import wait for a busy registry and gets the sentence that says what holds it. Raises InputProblems with every problem of every file (then nothing was written), NotFound for a missing file.
+    ``tell`` makes the import wait for a busy registry and gets the sentence that says what holds it.
+    Raises InputProblems with every problem of every file (then nothing was written), NotFound for a missing file.
     """
     options = options or ImportOptions()
     options.refuse_what_is_not_there()
     contents = [(path, _bytes_of(path)) for path in paths]
     with ThreadPoolExecutor(1) as pool:  # zlib works beside the reading: it needs no interpreter
         files = [_File(data, pool.submit(batches.compress, data)) for _, data in contents]
-        readings = []
+        readings: list[tuple[Reading, _File]] = []
         for (path, data), file in zip(contents, files, strict=True):
             progress("reading", len(readings), len(paths))
             choice = (choices or {}).get(path, FileChoice())

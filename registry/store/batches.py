@@ -132,6 +132,17 @@ def find_by_id(connection: sa.Connection, batch_id: int) -> dict[str, Any] | Non
     return _first(connection, _batch.c.batch_id == batch_id)
 
 
+def set_digestions(connection: sa.Connection, batch_id: int, digestions: Mapping[int, str]) -> None:
+    """Write the digestion of columns of a batch, by position; the triggers mark the samples stale where it changes."""
+    for position, digestion in digestions.items():
+        column = sa.and_(_column.c.batch_id == batch_id, _column.c.position == position)
+        found = connection.scalar(sa.select(_column.c.digestion).where(column))
+        if found is None:
+            raise NotFound(f"the batch has no column at position {position}")
+        if found != digestion:
+            connection.execute(sa.update(_column).where(column).values(digestion=digestion))
+
+
 def file_of(connection: sa.Connection, batch_id: int) -> bytes | None:
     """The bytes of the file a batch was imported from; PlutonbookError where they are damaged."""
     stored = connection.scalar(sa.select(_batch.c.file_bytes).where(_batch.c.batch_id == batch_id))
