@@ -108,7 +108,7 @@ def table(name: str, *parts: sa.schema.SchemaItem, counted: bool = True, rowid: 
 area = table(
     "area", own_id("area_id"), sa.Column("name", words, nullable=False, unique=True), sa.Column("epsg", whole),
     *reals("heat_flow_mw_m2 surface_temperature_c conductivity_w_m_k heat_production_uw_m3 heat_production_depth_m"),
-    row_version(),
+    sa.Column("moho_depth_m", number), row_version(),
 )
 site = table(
     "site", own_id("site_id"), sa.Column("code", words, nullable=False, unique=True),
@@ -133,7 +133,7 @@ intrusion = table(
     "intrusion", own_id("intrusion_id"), sa.Column("name", words, nullable=False, unique=True),
     link("area_id", "area.area_id"), sa.Column("shape", words),
     *reals("half_width_m volume_km3 depth_to_top_m emplacement_depth_m age_ma age_sigma_ma country_density_kg_m3"),
-    sa.Column("mapped", whole), row_version(), one_of("shape", "sphere", "slab", "cylinder"),
+    sa.Column("mapped", whole), *texts("parent_sample fresh_sample"), row_version(), one_of("shape", "sphere", "slab", "cylinder"),
     sa.CheckConstraint("mapped BETWEEN 0 AND 1", name="mapped"),
 )
 sa.Index(None, intrusion.c.area_id)
@@ -173,7 +173,7 @@ aliquot = table(
     "aliquot", own_id("aliquot_id"), link("sample_id", "sample.sample_id", nullable=False, ondelete="CASCADE"),
     link("batch_id", "batch.batch_id", nullable=False, ondelete="CASCADE"),
     sa.Column("line_no", whole, nullable=False), sa.Column("kind", words, nullable=False),
-    sa.Column("repeat_no", whole, nullable=False, server_default=sa.text("0")),
+    sa.Column("repeat_no", whole, nullable=False, server_default=sa.text("0")), sa.Column("control_text", words),
     one_of("kind", "original", "repeat", "control"),
 )
 sa.Index(None, aliquot.c.sample_id)
@@ -250,6 +250,53 @@ stale = table(
     sa.Column("level", whole, nullable=False), sa.CheckConstraint("level BETWEEN 1 AND 2", name="level"),
     counted=False,
 )
+stale_group = table(
+    "stale_group", sa.Column("kind", words, primary_key=True),
+    sa.Column("group_id", whole, primary_key=True, autoincrement=False), one_of("kind", "intrusion", "area"),
+    counted=False, rowid=False,
+)
+intrusion_derived = table(
+    "intrusion_derived",
+    sa.Column(
+        "intrusion_id", whole, sa.ForeignKey("intrusion.intrusion_id", ondelete="CASCADE"), primary_key=True,
+        autoincrement=False,
+    ),
+    *reals("theta_centre theta_centre_low theta_centre_high heat_x_thickness_mw_m2"),
+    sa.Column("trend_quality", words), counted=False,
+)
+area_derived = table(
+    "area_derived",
+    sa.Column(
+        "area_id", whole, sa.ForeignKey("area.area_id", ondelete="CASCADE"), primary_key=True, autoincrement=False
+    ),
+    *reals("mantle_heat_flow_mw_m2 wet_granite_solidus_depth_km"), sa.Column("geotherm_cause", words),
+    *reals("crust_heating_needed_c crust_heating_depth_km"), *texts("crust_decompression crust_water"),
+    *reals("moho_temperature_c mantle_heating_needed_c mantle_water_needed_wt dry_peridotite_solidus_depth_km"),
+    *reals("mantle_decompression_needed_gpa mantle_decompression_depth_km"),
+    *texts("mantle_decompression mantle_cause"), counted=False,
+)
+suite_row = table(
+    "suite_row",
+    sa.Column(
+        "intrusion_id", whole, sa.ForeignKey("intrusion.intrusion_id", ondelete="CASCADE"), primary_key=True,
+        autoincrement=False,
+    ),
+    sa.Column("position", whole, primary_key=True, autoincrement=False), *texts("model quantity", nullable=False),
+    sa.Column("value", number), sa.Column("unit", words, nullable=False), *texts("quality cause"), counted=False,
+    rowid=False,
+)
+suite_outlier = table(
+    "suite_outlier", sample_key(), link("intrusion_id", "intrusion.intrusion_id", nullable=False, ondelete="CASCADE"),
+    *reals("distance distance_limit"), sa.Column("component", words), *reals("component_value component_median"),
+    sa.Column("text", words, nullable=False), counted=False,
+)
+sa.Index(None, suite_outlier.c.intrusion_id)
+mass_change = table(
+    "mass_change", sample_key(), link("intrusion_id", "intrusion.intrusion_id", nullable=False, ondelete="CASCADE"),
+    sa.Column("reference_sample", words), sa.Column("isocon_slope", number),
+    *texts("immobile_components cause changes"), counted=False,
+)
+sa.Index(None, mass_change.c.intrusion_id)
 import_guard = table(
     "import_guard", sa.Column("guard", whole, primary_key=True, autoincrement=False),
     sa.CheckConstraint("guard = 1", name="guard"), counted=False,
@@ -272,8 +319,30 @@ reference_value = table(
     "reference_value", own_id("reference_value_id"),
     link("reference_material_id", "reference_material.reference_material_id", nullable=False, ondelete="CASCADE"),
     sa.Column("analyte", words, nullable=False), sa.Column("value", number, nullable=False),
-    sa.Column("unit", words, nullable=False), sa.Column("uncertainty", number),
-    *texts("status source", nullable=False), sa.UniqueConstraint("reference_material_id", "analyte", "unit"),
+    sa.Column("unit", words, nullable=False), sa.Column("uncertainty", number), sa.Column("uncertainty_type", words),
+    *texts("status source", nullable=False), sa.UniqueConstraint("reference_material_id", "analyte", "unit", "source"),
+)
+control_outcome = table(
+    "control_outcome", sa.Column("aliquot_id", whole, primary_key=True, autoincrement=False),
+    sa.Column("column_id", whole, primary_key=True, autoincrement=False),
+    link("batch_id", "batch.batch_id", nullable=False, ondelete="CASCADE"), sa.Column("kind", words, nullable=False),
+    sa.Column("material", words), *reals("expected found z limit_low limit_high"),
+    sa.Column("state", whole, nullable=False), *texts("rule source"),
+    one_of("kind", "reference_material", "blank", "duplicate", "lab_repeat"),
+    sa.CheckConstraint("state BETWEEN 0 AND 3", name="state"), counted=False, rowid=False,
+)
+sa.Index(None, control_outcome.c.batch_id)
+control_state = table(
+    "control_state", sa.Column("column_id", whole, primary_key=True, autoincrement=False),
+    link("batch_id", "batch.batch_id", nullable=False, ondelete="CASCADE"), sa.Column("state", whole, nullable=False),
+    sa.Column("remarks", words, nullable=False), sa.Column("reference_results", whole, nullable=False),
+    sa.Column("blank_results", whole, nullable=False), sa.Column("pairs", whole, nullable=False),
+    *reals("bias_percent bias_error_percent drift_percent drift_error_percent precision_s0 precision_k"),
+    sa.CheckConstraint("state BETWEEN 0 AND 2", name="state"), counted=False,
+)
+sa.Index(None, control_state.c.batch_id)
+stale_batch = table(
+    "stale_batch", sa.Column("batch_id", whole, primary_key=True, autoincrement=False), counted=False,
 )
 quantity = table(
     "quantity", sa.Column("position", whole, primary_key=True, autoincrement=False),

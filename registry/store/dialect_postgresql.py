@@ -7,7 +7,7 @@ from collections.abc import Iterator
 import sqlalchemy as sa
 
 from registry.store.sheets import SHEETS
-from registry.store.stale_rules import CLEANED, PREFIX, RULES, VERSIONED, Rule
+from registry.store.stale_rules import BEFORE_CLEANING, CLEANED, PREFIX, RULES, VERSIONED, Rule
 
 NULL_NUMBER = "CAST(NULL AS double precision)"
 NULL_TEXT = "CAST(NULL AS text)"
@@ -46,6 +46,7 @@ def trigger_statements() -> Iterator[str]:
             yield from _stale_trigger(rule, event)
     for table, cleaned in CLEANED.items():
         steps = " ".join(f"DELETE FROM {child} WHERE {condition.format(row='OLD')};" for child, condition in cleaned)
+        steps = f"{BEFORE_CLEANING.get(table, '').format(row='OLD')} {steps}"
         name = f"{PREFIX}clean_{table}"
         yield _function(name, f"{steps} RETURN NULL;")
         yield f"CREATE TRIGGER {name} AFTER DELETE ON {table} FOR EACH ROW EXECUTE FUNCTION {name}()"

@@ -7,7 +7,7 @@ from collections.abc import Iterator
 import sqlalchemy as sa
 
 from registry.store.sheets import SHEETS
-from registry.store.stale_rules import CLEANED, PREFIX, RULES, VERSIONED, Rule
+from registry.store.stale_rules import BEFORE_CLEANING, CLEANED, PREFIX, RULES, VERSIONED, Rule
 
 NULL_NUMBER = "CAST(NULL AS REAL)"
 NULL_TEXT = "CAST(NULL AS TEXT)"
@@ -41,7 +41,8 @@ def trigger_statements() -> Iterator[str]:
         for event in rule.events:
             yield _stale_trigger(rule, event)
     for table, cleaned in CLEANED.items():
-        steps = [f"DELETE FROM {child} WHERE {condition.format(row='OLD')};" for child, condition in cleaned]
+        steps = [before.format(row="OLD")] if (before := BEFORE_CLEANING.get(table)) else []
+        steps += [f"DELETE FROM {child} WHERE {condition.format(row='OLD')};" for child, condition in cleaned]
         if table == "sample":
             steps.append("UPDATE sample SET duplicate_of = NULL WHERE duplicate_of = OLD.sample_id;")
         yield f"CREATE TRIGGER {PREFIX}clean_{table} AFTER DELETE ON {table} BEGIN\n  " + "\n  ".join(steps) + "\nEND"

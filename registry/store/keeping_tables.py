@@ -61,8 +61,9 @@ reference_value = table(
     sa.Column("value", Number, nullable=False),
     sa.Column("unit", Words, nullable=False),
     sa.Column("uncertainty", Number),
+    sa.Column("uncertainty_type", Words),
     *words("status source", nullable=False),
-    sa.UniqueConstraint("reference_material_id", "analyte", "unit"),
+    sa.UniqueConstraint("reference_material_id", "analyte", "unit", "source"),
 )
 
 #: The catalogue as rows: rewritten at create and upgrade, read by the views.

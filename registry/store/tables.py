@@ -9,6 +9,7 @@ from __future__ import annotations
 import sqlalchemy as sa
 
 from registry.petrology.analytes import CHOSEN_COLUMNS
+from registry.store.control_tables import control_outcome, control_state, stale_batch
 from registry.store.judgement_tables import criterion, target, target_version, verdict, verdict_change
 from registry.store.keeping_tables import (
     account,
@@ -26,6 +27,14 @@ from registry.store.keeping_tables import (
     warning_kind,
 )
 from registry.store.sheets import DERIVED_COLUMNS, DERIVED_TEXT_COLUMNS
+from registry.store.suite_tables import (
+    area_derived,
+    intrusion_derived,
+    mass_change,
+    stale_group,
+    suite_outlier,
+    suite_row,
+)
 from registry.store.table_parts import (
     NAMING,
     link,
@@ -45,18 +54,23 @@ __all__ = [
     "account",
     "aliquot",
     "area",
+    "area_derived",
     "audit_entry",
     "batch",
     "batch_column",
     "cause_kind",
     "column_guide_row",
     "composition",
+    "control_outcome",
+    "control_state",
     "convention_set",
     "criterion",
     "derived",
     "import_guard",
     "intrusion",
+    "intrusion_derived",
     "lithology_interval",
+    "mass_change",
     "metadata",
     "quantity",
     "reading_recipe",
@@ -67,6 +81,10 @@ __all__ = [
     "setting",
     "site",
     "stale",
+    "stale_group",
+    "suite_outlier",
+    "suite_row",
+    "stale_batch",
     "survey",
     "target",
     "target_version",
@@ -81,6 +99,7 @@ area = table(
     sa.Column("name", Words, nullable=False, unique=True),
     sa.Column("epsg", Whole),
     *numbers("heat_flow_mw_m2 surface_temperature_c conductivity_w_m_k heat_production_uw_m3 heat_production_depth_m"),
+    sa.Column("moho_depth_m", Number),
     row_version(),
 )
 site = table(
@@ -126,6 +145,7 @@ intrusion = table(
     sa.Column("shape", Words),
     *numbers("half_width_m volume_km3 depth_to_top_m emplacement_depth_m age_ma age_sigma_ma country_density_kg_m3"),
     sa.Column("mapped", Whole),
+    *words("parent_sample fresh_sample"),
     row_version(),
     one_of("shape", "sphere", "slab", "cylinder"),
     sa.CheckConstraint("mapped BETWEEN 0 AND 1", name="mapped"),
@@ -193,6 +213,7 @@ aliquot = table(
     sa.Column("line_no", Whole, nullable=False),
     sa.Column("kind", Words, nullable=False),
     sa.Column("repeat_no", Whole, nullable=False, server_default=sa.text("0")),
+    sa.Column("control_text", Words),
     one_of("kind", "original", "repeat", "control"),
 )
 sa.Index(None, aliquot.c.sample_id)

@@ -1,0 +1,64 @@
+"""Blanks: against the detection limit, and against the sample measured before them.
+
+Common practice, no source: a blank above five times the detection limit is a warning, above ten times a failure; more
+than one per cent of the sample before it is carry-over worth naming. A blank that is a rock (quartz sand) holds
+something of most elements: where the values of its material are registered, only the excess over them counts.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import ArrayLike, NDArray
+
+from registry.petrology.analytes import QUALIFIER_BELOW
+from registry.petrology.quotients import Floats, floats, quotient
+from registry.quality.states import FAILED, NOT_JUDGED, PASSED, WARNED
+
+WARN_AT, FAIL_AT = 5.0, 10.0
+CARRY_OVER_PERCENT = 1.0
+#: A sample before that is not this much richer than the blank's excess does not explain it.
+RICHER = 10.0
+
+
+@dataclass(frozen=True)
+class BlankResult:
+    """Blanks (n,): state codes, excess over the material's own content in detection limits, carry-over in per cent.
+
+    ``carried`` marks those whose excess a much richer sample before them may explain.
+    """
+
+    states: NDArray[np.uint8]
+    multiples: Floats
+    carry_over_percent: Floats
+    carried: NDArray[np.bool_]
+
+
+def judge_blanks(
+    found: ArrayLike,
+    qualifiers: ArrayLike,
+    detection_limit: ArrayLike,
+    before: ArrayLike,
+    background: ArrayLike = 0.0,
+    background_deviation: ArrayLike = 0.0,
+) -> BlankResult:
+    """Judge blanks; everything (n,) or broadcast, in one unit. ``before`` is the result of the line before (or NaN).
+
+    The limits are the background, three of its deviations, and five or ten detection limits. A result below the
+    detection limit passes; without a detection limit nothing is judged.
+    """
+    value, limit, preceding, own, spread = floats(found, detection_limit, before, background, background_deviation)
+    below = np.asarray(qualifiers) == QUALIFIER_BELOW
+    value, limit, preceding, own, spread, below = np.broadcast_arrays(value, limit, preceding, own, spread, below)
+    allowed = own + 3.0 * spread
+    excess = np.where(below, 0.0, np.maximum(value - allowed, 0.0))
+    multiples = quotient(excess, limit)
+    states = np.full(value.shape, NOT_JUDGED, dtype=np.uint8)
+    judged = ~np.isnan(value) & (limit > 0.0)
+    states[judged] = PASSED
+    states[judged & (multiples > WARN_AT)] = WARNED
+    states[judged & (multiples > FAIL_AT)] = FAILED
+    share = 100.0 * quotient(np.where(below, 0.0, value - own), preceding)
+    carried = (states > PASSED) & (preceding > RICHER * excess) & (excess > 0.0)
+    return BlankResult(states, multiples, share, carried)

@@ -1,0 +1,105 @@
+"""From the control results of a column to the state of its analyte in the batch, with the reasons in words."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+import numpy as np
+
+from registry.quality.assessment import BLANK, REFERENCE, Controls, Outcome
+from registry.quality.duplicates import too_many
+from registry.quality.states import FAILED, FAILS, PASSES, REMARKS, WARNED
+from registry.quality.trends import bias, least_squares
+
+#: A bias or drift is named where it exceeds so many of its standard errors and so many per cent (a drift: over the
+#: lines it was seen on), and rests on so many results. Common practice, no source.
+ERRORS_TO_NAME, PERCENT_TO_NAME = 4.0, 5.0
+RESULTS_FOR_BIAS, RESULTS_FOR_DRIFT = 5, 10
+
+
+@dataclass(frozen=True)
+class AnalyteState:
+    """One analyte of one batch: state code, remarks, counts of judged controls, bias and drift in per cent.
+
+    Bias is the mean of 100 (found - expected)/expected over the reference materials, drift its slope per 100 lines;
+    NaN where there are too few. ``precision_s0`` (in the column's unit) and ``precision_k`` are Thompson and
+    Howarth's, NaN below 50 pairs.
+    """
+
+    state: int
+    remarks: str
+    references: int
+    blanks: int
+    pairs: int
+    bias_percent: float
+    bias_error_percent: float
+    drift_percent: float
+    drift_error_percent: float
+    precision_s0: float
+    precision_k: float
+
+
+def state_of_analyte(controls: Controls, outcome: Outcome) -> AnalyteState | None:
+    """The state of a column; None where none of its control results could be judged.
+
+    A failed reference material or blank fails it, and so do duplicates of which more exceed the 90th percentile line
+    than chance explains (1 %); a warning is a remark.
+    """
+    judged = outcome.states > 0
+    if not judged.any():
+        return None
+    kinds = controls.kinds
+    remarks: list[str] = []
+    fails = False
+    for rows, words in (((kinds == REFERENCE), "reference material"), ((kinds == BLANK), "blank")):
+        for state, verb in ((FAILED, "failed"), (WARNED, "warned")):
+            marked = np.flatnonzero(rows & (outcome.states == state))
+            fails |= state == FAILED and len(marked) > 0
+            remarks += [_about(controls, outcome, row, words, verb) for row in marked.tolist()[:3]]
+            if len(marked) > 3:
+                remarks.append(f"{len(marked) - 3} more {words} results {verb}")
+    pairs = ~((kinds == REFERENCE) | (kinds == BLANK)) & judged
+    if too_many(outcome.pairs_above_ninetieth, outcome.pairs_judged, 0.10):
+        fails = True
+        remarks.append(
+            f"{outcome.pairs_above_ninetieth} of {outcome.pairs_judged} pairs exceed the line that nine in ten keep "
+            "at the precision asked for"
+        )
+    beyond = np.flatnonzero(pairs & (outcome.states == WARNED))
+    remarks += [_about(controls, outcome, row, "duplicate", "warned") for row in beyond.tolist()[:3]]
+    if len(beyond) > 3:
+        remarks.append(f"{len(beyond) - 3} more pairs of duplicates warned")
+    measured = (kinds == REFERENCE) & ~np.isnan(outcome.z)
+    difference = 100.0 * (outcome.found[measured] - outcome.expected[measured]) / outcome.expected[measured]
+    mean, drift = bias(difference), least_squares(controls.line_no[measured] / 100.0, difference)
+    if mean.n >= RESULTS_FOR_BIAS and abs(mean.mean) > max(PERCENT_TO_NAME, ERRORS_TO_NAME * mean.error):
+        remarks.append(f"bias {mean.mean:+.2g} % (standard error {mean.error:.2g}) over {mean.n} reference materials")
+    span = float(np.ptp(controls.line_no[measured])) / 100.0 if measured.any() else 0.0
+    seen = drift.n >= RESULTS_FOR_DRIFT and abs(drift.slope) > ERRORS_TO_NAME * drift.slope_error
+    if seen and abs(drift.slope) * span > PERCENT_TO_NAME:
+        remarks.append(f"drift {drift.slope:+.2g} % a hundred lines (standard error {drift.slope_error:.2g})")
+    fit = outcome.precision
+    return AnalyteState(
+        FAILS if fails else REMARKS if remarks else PASSES,
+        "; ".join(remarks),
+        int(((kinds == REFERENCE) & judged).sum()),
+        int(((kinds == BLANK) & judged).sum()),
+        outcome.pairs_judged,
+        mean.mean,
+        mean.error,
+        drift.slope,
+        drift.slope_error,
+        float("nan") if fit is None else fit.s_0,
+        float("nan") if fit is None else fit.k,
+    )
+
+
+def _about(controls: Controls, outcome: Outcome, row: int, words: str, verb: str) -> str:
+    named = controls.materials[row]
+    z = outcome.z[row]
+    score = f", z {z:+.2f}" if not np.isnan(z) else ""
+    expected = f" for {outcome.expected[row]:.4g}" if not np.isnan(outcome.expected[row]) else ""
+    return (
+        f"{words} {named + ' ' if named else ''}{verb} on line {controls.line_no[row]}: found "
+        f"{outcome.found[row]:.4g}{expected} {outcome.column.unit}{score} ({outcome.rules[row]})"
+    )
