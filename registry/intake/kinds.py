@@ -49,6 +49,7 @@ FIELDS: dict[str, tuple[Field, ...]] = {
         _field("conductivity_w_m_k", NUMBER, "conductivity, thermal conductivity", 0.1, 10),
         _field("heat_production_uw_m3", NUMBER, "heat production, a0, crustal heat production", 0, 100),
         _field("heat_production_depth_m", NUMBER, "heat production depth, heat production scale depth", 0, 100_000),
+        _field("moho_depth_m", NUMBER, "moho, moho depth, crustal thickness", 3000, 100_000),
     ),
     "sites": (
         _field("site_code", TEXT, _SITE + ", code, name", required=True),
@@ -92,6 +93,8 @@ FIELDS: dict[str, tuple[Field, ...]] = {
         _field("age_sigma_ma", NUMBER, "age sigma, age error, age uncertainty, sigma age", 0, 4600),
         _field("country_density_kg_m3", NUMBER, "country density, country rock density, wall rock density", 1000, 4000),
         _field("mapped", TRUTH, "is mapped, mapped or inferred"),
+        _field("parent_sample", TEXT, "primitive sample, parent composition"),
+        _field("fresh_sample", TEXT, "unaltered sample, fresh reference"),
     ),
     "samples": (
         _field("sample_code", TEXT, "sample, sample id, sampleid, sample no, sample number, sample name, field id,"

@@ -7,7 +7,16 @@ from collections.abc import Iterator
 import sqlalchemy as sa
 
 from registry.store.sheets import SHEETS
-from registry.store.stale_rules import BEFORE_CLEANING, CLEANED, PREFIX, RULES, VERSIONED, Rule
+from registry.store.stale_rules import (
+    BEFORE_CLEANING,
+    CLEANED,
+    GROUP_RULES,
+    PREFIX,
+    RULES,
+    VERSIONED,
+    GroupRule,
+    Rule,
+)
 
 NULL_NUMBER = "CAST(NULL AS double precision)"
 NULL_TEXT = "CAST(NULL AS text)"
@@ -41,7 +50,7 @@ def trigger_statements() -> Iterator[str]:
     Inserts and deletes are seen a statement at a time through transition tables (a copy of millions of results would
     crawl otherwise), updates row by row where a watched column changes.
     """
-    for rule in RULES:
+    for rule in (*RULES, *GROUP_RULES):
         for event in rule.events:
             yield from _stale_trigger(rule, event)
     for table, cleaned in CLEANED.items():
@@ -62,7 +71,10 @@ def _function(name: str, body: str) -> str:
     return f"CREATE FUNCTION {name}() RETURNS trigger LANGUAGE plpgsql AS $body$ BEGIN {body} END $body$"
 
 
-def _mark(touched: str, level: int) -> str:
+def _mark(rule: Rule, touched: str) -> str:
+    if isinstance(rule, GroupRule):
+        return rule.mark(touched)
+    level = rule.level
     raised = f"UPDATE stale SET level = 1 WHERE level > 1 AND sample_id IN ({touched}); " if level == 1 else ""
     return raised + (
         f"INSERT INTO stale (sample_id, level) SELECT s.sample_id, {level} FROM sample AS s "
@@ -72,14 +84,14 @@ def _mark(touched: str, level: int) -> str:
 
 
 def _stale_trigger(rule: Rule, event: str) -> Iterator[str]:
-    name = f"{PREFIX}stale_{rule.table}_{event.lower()}"
+    name = f"{PREFIX}stale_{rule.name}_{event.lower()}"
     guard = "IF EXISTS (SELECT 1 FROM import_guard) THEN RETURN NULL; END IF;"
     if event == "UPDATE":
-        marks = " ".join(_mark(rule.select(row), rule.level) for row in ("OLD", "NEW"))
+        marks = " ".join(_mark(rule, rule.select(row)) for row in ("OLD", "NEW"))
         changed = " OR ".join(f"OLD.{column} IS DISTINCT FROM NEW.{column}" for column in rule.watched)
         when = f"FOR EACH ROW WHEN ({changed})"
     else:
-        marks = _mark(rule.select("changed", "changed"), rule.level)
+        marks = _mark(rule, rule.select("changed", "changed"))
         table = "NEW" if event == "INSERT" else "OLD"
         when = f"REFERENCING {table} TABLE AS changed FOR EACH STATEMENT"
     yield _function(name, f"{guard} {marks} RETURN NULL;")

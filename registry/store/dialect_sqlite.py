@@ -7,7 +7,16 @@ from collections.abc import Iterator
 import sqlalchemy as sa
 
 from registry.store.sheets import SHEETS
-from registry.store.stale_rules import BEFORE_CLEANING, CLEANED, PREFIX, RULES, VERSIONED, Rule
+from registry.store.stale_rules import (
+    BEFORE_CLEANING,
+    CLEANED,
+    GROUP_RULES,
+    PREFIX,
+    RULES,
+    VERSIONED,
+    GroupRule,
+    Rule,
+)
 
 NULL_NUMBER = "CAST(NULL AS REAL)"
 NULL_TEXT = "CAST(NULL AS TEXT)"
@@ -37,7 +46,7 @@ def spelled(number: str) -> str:
 
 def trigger_statements() -> Iterator[str]:
     """Every CREATE TRIGGER: stale samples, rows that go with their parent, row versions."""
-    for rule in RULES:
+    for rule in (*RULES, *GROUP_RULES):
         for event in rule.events:
             yield _stale_trigger(rule, event)
     for table, cleaned in CLEANED.items():
@@ -63,6 +72,9 @@ def _stale_trigger(rule: Rule, event: str) -> str:
     steps = []
     for row in {"INSERT": ("NEW",), "UPDATE": ("OLD", "NEW"), "DELETE": ("OLD",)}[event]:
         touched = rule.select(row)
+        if isinstance(rule, GroupRule):
+            steps.append(rule.mark(touched))
+            continue
         if rule.level == 1:
             steps.append(f"UPDATE stale SET level = 1 WHERE level > 1 AND sample_id IN ({touched});")
         steps.append(
@@ -71,7 +83,7 @@ def _stale_trigger(rule: Rule, event: str) -> str:
             "AND NOT EXISTS (SELECT 1 FROM stale AS x WHERE x.sample_id = s.sample_id);"
         )
     return (
-        f"CREATE TRIGGER {PREFIX}stale_{rule.table}_{event.lower()} AFTER {event} ON {rule.table} WHEN {when} BEGIN\n  "
+        f"CREATE TRIGGER {PREFIX}stale_{rule.name}_{event.lower()} AFTER {event} ON {rule.table} WHEN {when} BEGIN\n  "
         + "\n  ".join(steps)
         + "\nEND"
     )

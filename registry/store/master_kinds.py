@@ -50,7 +50,7 @@ MASTER_KINDS = {
         ("name",),
         _same(
             "epsg heat_flow_mw_m2 surface_temperature_c conductivity_w_m_k heat_production_uw_m3 "
-            "heat_production_depth_m",
+            "heat_production_depth_m moho_depth_m",
             area="name",
         ),
     ),
@@ -85,7 +85,7 @@ MASTER_KINDS = {
         ("name",),
         _same(
             "shape half_width_m volume_km3 depth_to_top_m emplacement_depth_m age_ma age_sigma_ma "
-            "country_density_kg_m3 mapped",
+            "country_density_kg_m3 mapped parent_sample fresh_sample",
             intrusion="name",
         ),
         (_AREA,),

@@ -25,6 +25,11 @@ class Rule:
     watched: tuple[str, ...]
     events: tuple[str, ...] = ("INSERT", "UPDATE", "DELETE")
 
+    @property
+    def name(self) -> str:
+        """What its triggers are called after."""
+        return self.table
+
     def select(self, row: str, extra_source: str = "") -> str:
         """SELECT of the ids of the samples that ``row`` touches (those that exist)."""
         source = f"{extra_source}, {self.source}" if extra_source else self.source
@@ -40,6 +45,14 @@ class GroupRule(Rule):
     @property
     def name(self) -> str:
         return f"{self.kind}_by_{self.table}"
+
+    def mark(self, touched: str) -> str:
+        """The statement that puts the ids selected by ``touched`` on the list."""
+        return (
+            f"INSERT INTO stale_group (kind, group_id) SELECT '{self.kind}', s.{self.kind}_id FROM {self.kind} AS s "
+            f"WHERE s.{self.kind}_id IN ({touched}) AND NOT EXISTS "
+            f"(SELECT 1 FROM stale_group AS x WHERE x.kind = '{self.kind}' AND x.group_id = s.{self.kind}_id);"
+        )
 
 
 def _watched(names: str) -> tuple[str, ...]:
