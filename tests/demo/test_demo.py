@@ -271,3 +271,13 @@ def test_postgresql_holds_the_same_cells_and_verdicts(view: sqlite3.Connection, 
             found = sorted(tuple(row) for row in connection.exec_driver_sql(query))
             assert found == expected
     engine.dispose()
+
+
+def test_check_passes_while_samples_wait_for_their_certificate(tmp_path: Path) -> None:
+    """Samples are entered when they are bagged; the results of half of them come weeks later."""
+    path = tmp_path / "waiting.sqlite"
+    run("create", "--registry", str(path))
+    run("import", *map(str, seed_demo.files()[:6]), "--registry", str(path))
+    run("check", "--registry", str(path))
+    run("import", str(seed_demo.files()[6]), "--registry", str(path))
+    run("check", "--registry", str(path))
