@@ -171,7 +171,8 @@ def _derived(connection: sa.Connection) -> list[Finding]:
             "derived values",
             "samples without any that are not marked stale",
             "SELECT count(*) FROM sample AS s "
-            "WHERE EXISTS (SELECT 1 FROM aliquot AS a WHERE a.sample_id = s.sample_id) AND NOT EXISTS (SELECT 1 FROM derived AS d WHERE d.sample_id = s.sample_id) "
+            "WHERE EXISTS (SELECT 1 FROM aliquot AS a WHERE a.sample_id = s.sample_id) "
+            "AND NOT EXISTS (SELECT 1 FROM derived AS d WHERE d.sample_id = s.sample_id) "
             "AND NOT EXISTS (SELECT 1 FROM stale AS x WHERE x.sample_id = s.sample_id)",
             again,
         ),
