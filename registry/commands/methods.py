@@ -9,11 +9,17 @@ from registry.commands.options import json_option, say
 
 @click.command()
 @click.option("--self-test", is_flag=True, help="Recompute every check value; exit 1 if one is off.")
+@click.option("--markdown", is_flag=True, help="Print the table of quantities as README.md holds it.")
 @json_option
-def methods(self_test: bool, as_json: bool) -> int:
+def methods(self_test: bool, markdown: bool, as_json: bool) -> int:
     """List every derived quantity: name, unit, method, source, range, standard error, status."""
     if self_test:
         return _self_test(as_json)
+    if markdown:
+        from registry.methods_table import methods_table
+
+        click.echo(methods_table())
+        return 0
     from registry.petrology.catalogue import METHODS
     from registry.petrology.references import REFERENCES
 
@@ -30,7 +36,7 @@ def methods(self_test: bool, as_json: bool) -> int:
                 f"{'' if limits.high is None else limits.high}"
                 for limits in method.calibration
             )
-            or "not stated",
+            or "no range stated",
             "standard_error": method.standard_error,
             "status": method.status,
         }

@@ -1,0 +1,38 @@
+"""README.md holds the table of quantities that the catalogue gives: nothing is missing, nothing is out of date."""
+
+from __future__ import annotations
+
+from pathlib import Path
+
+import pytest
+
+from registry.cli import main
+from registry.methods_table import BEGIN, END, methods_table, short_citation
+from registry.petrology.catalogue import METHOD_BY_KEY, QUANTITIES
+
+README = (Path(__file__).resolve().parents[2] / "README.md").read_text(encoding="utf-8")
+
+
+def test_readme_table_is_what_the_catalogue_gives() -> None:
+    assert README.count(BEGIN) == README.count(END) == 1
+    found = README.split(BEGIN)[1].split(END)[0].strip()
+
+    assert found == methods_table(), "renew it with: plutonbook methods --markdown"
+
+
+def test_methods_table_names_every_quantity_once() -> None:
+    words = methods_table().replace("|", " ").split()
+    for quantity in QUANTITIES:
+        assert words.count(f"`{quantity.name}`") == 1, quantity.name
+
+
+def test_methods_markdown_prints_the_table(capsys: pytest.CaptureFixture[str]) -> None:
+    with pytest.raises(SystemExit, match="^0$"):
+        main(["methods", "--markdown"])
+
+    assert capsys.readouterr().out == methods_table() + "\n"
+
+
+def test_short_citation_gives_authors_and_year_or_the_opening_words() -> None:
+    assert short_citation(METHOD_BY_KEY["liquidus_beattie"].source) == "Beattie, P. 1993"
+    assert short_citation("convention") == "Convention of this register"
