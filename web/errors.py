@@ -2,8 +2,8 @@
 
 from __future__ import annotations
 
-from flask import Flask, render_template, request
-from werkzeug.exceptions import HTTPException
+from flask import Flask, Response, render_template, request
+from werkzeug.exceptions import HTTPException, SecurityError
 
 from registry.errors import PlutonbookError, RegistryBusy
 
@@ -38,6 +38,13 @@ def _http(fault: HTTPException) -> tuple[str, int, dict[str, str]]:
     return (*_page(status, fault.name, sentence), headers)
 
 
+def _foreign_host(fault: SecurityError) -> Response:
+    """Asked under another name than this machine's: no page, for no address can be built for that name."""
+    return Response(
+        "This site answers on this machine only, under localhost or 127.0.0.1.\n", 400, mimetype="text/plain"
+    )
+
+
 def _busy(fault: RegistryBusy) -> tuple[str, int]:
     return _page(503, "The registry is busy", str(fault))
 
@@ -58,6 +65,7 @@ def _unexpected(fault: Exception) -> tuple[str, int]:
 def register(app: Flask) -> None:
     """Answer every error in the site's own words."""
     app.register_error_handler(Missing, _missing)
+    app.register_error_handler(SecurityError, _foreign_host)
     app.register_error_handler(HTTPException, _http)
     app.register_error_handler(RegistryBusy, _busy)
     app.register_error_handler(PlutonbookError, _refused)

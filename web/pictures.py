@@ -6,7 +6,7 @@ words beside it, so that colour is never the only sign.
 
 from __future__ import annotations
 
-from collections.abc import Mapping
+from collections.abc import Iterable, Mapping
 from dataclasses import dataclass
 
 from flask import Flask
@@ -110,6 +110,12 @@ def norm_segments(norm: Mapping[str, float | None]) -> list[Segment]:
             segments.append(Segment(mineral, amount, round(x, 2), round(amount * scale, 2)))
             x += amount * scale
     return segments
+
+
+def minerals_of(bars: Iterable[Iterable[Segment]]) -> list[Mineral]:
+    """The minerals that stand in any of the bars, in the order of the bar."""
+    present = {segment.mineral for bar in bars for segment in bar}
+    return [mineral for mineral in MINERALS if mineral in present]
 
 
 def pattern_kinds() -> list[tuple[str, str, str, str]]:

@@ -151,7 +151,9 @@ def _computed(
     beside: dict[str, list[str]] = {}
     for name, owner in BESIDE.items():
         if row.get(name):
-            beside.setdefault(owner, []).append(str(row[name]).replace("_", " "))
+            model = quantities.get(f"liquidus_{row[name]}_c")
+            words = model["label"] if model else str(row[name]).replace("_", " ")
+            beside.setdefault(owner, []).append(words)
     present: list[dict[str, Any]] = []
     for name, value in row.items():
         quantity = quantities.get(name)

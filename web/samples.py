@@ -24,12 +24,13 @@ from registry.store.reading.filters import (
 from registry.store.reading.session import query_only
 from registry.store.reading.targets import target_names
 from web import numbers, wording
-from web.pictures import norm_segments
+from web.pictures import minerals_of, norm_segments
 from web.reading import offered_columns, registry_connection
 
 blueprint = Blueprint("samples", __name__)
 #: Stored values of these columns stand for words.
 VERDICT_COLUMNS = ("best_verdict",)
+CONTROL_KINDS = ("reference_material", "blank", "duplicate")
 #: A column of words up to this long is not broken into lines.
 SHORT_WORDS = 24
 
@@ -83,6 +84,7 @@ def list_page() -> Any:
     if asked.target and asked.columns == DEFAULT_COLUMNS:
         shown = [column for column in shown if column.name not in ("best_target", *VERDICT_COLUMNS)]
     heads = _heads(asked, shown, targets)
+    rows = _rows(page.rows, shown, asked, targets, heads)
     pairs = asked.arguments()
     addresses = {
         "first_address": _address(pairs),
@@ -107,7 +109,8 @@ def list_page() -> Any:
         sortable=shown,
         other_faults=_other_faults(asked),
         heads=heads,
-        rows=_rows(page.rows, shown, asked, targets, heads),
+        rows=rows,
+        minerals=minerals_of(segments for row in rows for segments in row["cells"][:1]),
         any_stale=any(row["is_stale"] for row in page.rows),
         rows_per_page=reading.ROWS_PER_PAGE,
         **addresses,
@@ -204,7 +207,12 @@ def _rows(
         head["short"] = max(map(len, cells), default=0) <= SHORT_WORDS
         blocks.append(numbers.aligned(cells) if column.numeric else cells)
     return [
-        {"code": row["sample_code"], "is_stale": row["is_stale"], "cells": cells}
+        {
+            "code": row["sample_code"],
+            "control": row["kind"].replace("_", " ") if row["kind"] in CONTROL_KINDS else "",
+            "is_stale": row["is_stale"],
+            "cells": cells,
+        }
         for row, cells in zip(rows, zip(*blocks, strict=True), strict=True)
     ]
 

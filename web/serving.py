@@ -9,6 +9,7 @@ from waitress.server import create_server
 from web import create_app
 
 THREADS = 8
+LOOPBACK = ("127.0.0.1", "localhost", "::1")
 
 
 def serve(registry: str, host: str, port: int, announce: Callable[[str], object]) -> None:
@@ -16,7 +17,11 @@ def serve(registry: str, host: str, port: int, announce: Callable[[str], object]
 
     ``port`` 0 takes a free one. OSError where the port cannot be used.
     """
-    server = create_server(create_app(registry), host=host, port=port, threads=THREADS, ident=None)
+    app = create_app(registry)
+    if host in LOOPBACK:
+        # a page of another site whose name was pointed at this machine is refused
+        app.config["TRUSTED_HOSTS"] = ["localhost", "127.0.0.1", "[::1]"]
+    server = create_server(app, host=host, port=port, threads=THREADS, ident=None)
     announce(f"http://{server.effective_host}:{server.effective_port}/")  # type: ignore[attr-defined]
     try:
         server.run()

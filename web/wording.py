@@ -86,6 +86,7 @@ def readable(text: str) -> str:
         return "is " + text.removeprefix("= ").replace(", ", " or ")
     for written, printed in _PRINTED:
         text = text.replace(written, printed)
+    text = re.sub(r"([≥≤<>]) (?=[\d-])", "\\1\N{NO-BREAK SPACE}", text)
     return formula(_COLUMN.sub(lambda found: column_words(found.group()), text))
 
 

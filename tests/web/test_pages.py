@@ -3,8 +3,12 @@
 from __future__ import annotations
 
 import re
+import subprocess
+import sys
 from html import unescape
 from html.parser import HTMLParser
+from http.client import HTTPConnection
+from pathlib import Path
 
 import pytest
 from flask import Flask
@@ -13,6 +17,7 @@ from flask.testing import FlaskClient
 from registry.store.engine import Registry, reading, writing
 from web.security import HEADERS
 
+ROOT = Path(__file__).resolve().parents[2]
 PAGES = (
     "/", "/samples", "/samples.csv", "/samples/PB-001", "/samples/PB-003", "/samples/PB-020", "/batches",
     "/batches/Q-2041", "/targets", "/targets/porphyry_copper", "/targets/radiogenic_heat", "/methods", "/intrusions",
@@ -239,3 +244,26 @@ def test_pages_fault_in_the_program_is_told_without_a_traceback(app: Flask, monk
     assert answer.status_code == 500
     assert "fault in the program" in answer.text
     assert "secret detail" not in answer.text and "Traceback" not in answer.text
+
+
+def test_serving_on_this_machine_refuses_a_foreign_host_name(invented_registry: Path) -> None:
+    program = (
+        "import sys; from web.serving import serve; serve(sys.argv[1], '127.0.0.1', 0, lambda a: print(a, flush=True))"
+    )
+    server = subprocess.Popen(
+        [sys.executable, "-c", program, str(invented_registry)], stdout=subprocess.PIPE, text=True, cwd=ROOT
+    )
+    try:
+        assert server.stdout is not None
+        address = server.stdout.readline().strip().rstrip("/")
+        for host, status in (("127.0.0.1", 200), ("localhost:8000", 200), ("elsewhere.example", 400)):
+            connection = HTTPConnection(address.removeprefix("http://"), timeout=30)
+            connection.request("GET", "/batches", headers={"Host": host})
+            answer = connection.getresponse()
+            assert (host, answer.status) == (host, status)
+            assert b"Traceback" not in answer.read()
+            connection.close()
+    finally:
+        server.terminate()
+        server.wait(timeout=30)
+        server.stdout.close() if server.stdout else None

@@ -17,8 +17,8 @@ KINDS = ("core", "chips", "outcrop", "float", "unknown", "reference_material", "
 #: By the number that ``verdict.verdict`` and ``derived.best_verdict`` store.
 VERDICTS = VERDICT_WORDS
 DEFAULT_COLUMNS = (
-    "site_code", "from_m", "to_m", "intrusion", "lithology", "sio2_wt", "mgo_wt", "differentiation_index",
-    "tas_plutonic", "best_target", "best_verdict",
+    "best_verdict", "best_target", "site_code", "from_m", "to_m", "intrusion", "lithology", "sio2_wt", "mgo_wt",
+    "differentiation_index", "tas_plutonic",
 )  # fmt: skip
 #: The order by a target's score, which exists once a target is chosen.
 SCORE = "score"
@@ -203,7 +203,8 @@ def _columns(arguments: Mapping[str, Sequence[str]], columns: Columns, problems:
         problems["columns"] = f"{len(chosen)} columns are too many for a page; choose at most {MOST_COLUMNS}."
         chosen = chosen[:MOST_COLUMNS]
     default = tuple(name for name in DEFAULT_COLUMNS if name in columns)
-    return DEFAULT_COLUMNS if not chosen or chosen == default else chosen
+    # a form gives its ticks in the order of the views
+    return DEFAULT_COLUMNS if not chosen or set(chosen) == set(default) else chosen
 
 
 def parse_filter(
