@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import re
 from dataclasses import dataclass
 
 import numpy as np
@@ -10,6 +11,7 @@ from registry.intake.codes import CodeColumn
 from registry.intake.findings import Findings
 from registry.intake.layout import SEARCH_ROWS, WideLayout, find_header_row, find_wide_layout
 from registry.intake.long import LongLayout, find_long_layout, gather
+from registry.intake.methods import speaks_of_method
 from registry.intake.names import read_heading
 from registry.intake.sources import GridSource, Source
 
@@ -48,7 +50,8 @@ def _analytes_down(rows: list[list[str]]) -> tuple[int, int]:
         for row in rows:
             if position < len(row) and 0 < len(row[position]) <= 40:
                 heading = read_heading(row[position])
-                if heading.analyte is not None:
+                plain = heading.method is None or speaks_of_method(heading.method)
+                if heading.analyte is not None and plain and not re.search(r"\.\d+$", row[position]):
                     found.add((heading.analyte, heading.method))
         if len(found) > best and any(len(analyte) > 1 for analyte, _ in found):
             best, choice = len(found), position

@@ -14,7 +14,7 @@ from registry.intake.units import canonical_unit, foreign_unit, split_unit
 #: Title lines looked through for the headings.
 SEARCH_ROWS = 80
 _LOWER_LIMIT = re.compile(
-    r"(?i)\b(l\.?o\.?d|ll?d|ldl|d\.?l|mdl|lod|loq|(lower )?(detection|reporting)([ _]limits?)?"
+    r"(?i)\b(l\.?o\.?[drq]|ll?d|ldl|d\.?l|mdl|lod|loq|(lower )?(detection|reporting)([ _]limits?)?"
     r"|lower limits?|det\.? ?lim\w*)\b"
 )
 _UPPER_LIMIT = re.compile(r"(?i)\b(upper ?(detection|reporting)?[ _]?limits?|udl|uol|max(imum)? limit|upper)\b")

@@ -38,6 +38,9 @@ _IRON = re.compile(
 )
 #: Headings that look like an analyte and are something else in the trade's tables.
 _NOT_ANALYTES = {"no", "id"}
+_RATIO = re.compile(r"\(?\s*([A-Za-z]\w*?)\s*/\s*([A-Z][A-Za-z0-9]*?)(?:[*#)]|N$|$)")
+#: What may follow an analyte without a unit: a code with letters, not the number of a sample (``B-12``, ``C-7A``).
+_CODE_WITH_LETTERS = re.compile(r".*[A-Za-z]{2}|(?i:4a|ar|fa|ir)\b")
 _METHOD_WORD = re.compile(
     r"(?i)p?xrf|i?naa|icp|icpms|icpoes|icpaes|ms|oes|aes|aas|fa\d*|fus\w*|titr\w*|4a\w*|ar|aqua|regia|acid|four|fire|assay|ise|ir|comb\w*"
 )
@@ -114,10 +117,13 @@ def _within(text: str, with_unit: bool) -> tuple[str, str | None] | None:
     if duplicate and analyte_symbol(duplicate[1]) is not None:
         return str(analyte_symbol(duplicate[1])), None
     # only a heading that begins with the analyte in its own case, or one of a few method words around it
-    if "/" in text and len(words) > 1 and all(analyte_symbol(word) for word in words):
+    ratio = _RATIO.match(text)
+    if ratio and analyte_symbol(ratio[1]) is not None and analyte_symbol(ratio[2]) is not None:
         return None  # a ratio
     for length in range(min(4, len(words)), 0, -1):
         symbol, rest = analyte_symbol(" ".join(words[:length])), words[length:]
+        if rest and not with_unit and not _CODE_WITH_LETTERS.match(" ".join(rest)):
+            continue
         in_lower_case = with_unit and rest and all(_METHOD_WORD.fullmatch(word) for word in rest)
         if symbol is not None and (in_lower_case or _written_as(words[:length], symbol, rest)) and rest != ["situ"]:
             return symbol, " ".join(rest) or None

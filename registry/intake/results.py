@@ -85,11 +85,14 @@ def read_results(
         control = next((place for place in others if _CONTROL.fullmatch(layout.labels[place])), None)
     reader = WideReader(
         columns, decimal, findings, code_position=layout.code.position, control_position=control,
-        qualifier_positions=qualifier_positions, negative_means_below=options.negative_means_below,
+        qualifier_positions=qualifier_positions,
+        width=layout.width, negative_means_below=options.negative_means_below,
     )  # fmt: skip
     in_headings = sum(cell.count("_") for row in preview[: layout.first_row] for cell in row)
     watch = arranged.underscores and (source is not given or underscores > in_headings)
     body = reader.read(source, layout.first_row, arranged.row_bound, watch)
+    if control is not None and not re.search(r"(?i)q[ac]|control|check", layout.labels[control]):
+        body.control = [said if said and _CONTROL_WORD.search(said) else None for said in body.control]
     columns, body = _judge_texts(columns, body, decimal, findings)
     columns, body = _drop_empty(columns, body, understood)
     used = {column.position for column in columns} | {layout.code.position} | set(qualifier_positions)

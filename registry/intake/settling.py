@@ -17,6 +17,8 @@ from registry.petrology.digestion import DIGESTIONS
 #: Without a stated unit these are oxides in wt% and trace elements in ppm by common practice of the trade.
 _BY_CUSTOM_WT = frozenset(OXIDE_SYMBOLS) - {"S", "F", "Cl"} | {"Fe2O3T", "FeOT", "Fe2O3", "FeO", "Total", "H2O"}
 _BY_CUSTOM_PPM = frozenset(ELEMENT_SYMBOLS) - {"Au", "Ag", "Pt", "Pd", "Cu", "Pb", "Zn", "Ni", "Re", "B", "Li"}
+#: Weighed or summed, not dissolved.
+_WEIGHED = ("Total", "LOI", "H2O", "H2O+", "H2O-")
 _KNOWN_DIGESTIONS = tuple(name for name in DIGESTIONS if name and name != "unknown_without_silica")
 
 
@@ -165,7 +167,7 @@ def _settle_unit(column: ResultColumn, foreign: str | None, stated: str | None, 
 
 
 def _say_unknown_digestions(columns: list[ResultColumn], findings: Findings) -> None:
-    unknown = [column.header for column in columns if column.digestion == "unknown" and column.analyte != "Total"]
+    unknown = [column.header for column in columns if column.digestion == "unknown" and column.analyte not in _WEIGHED]
     if not unknown:
         return
     named = ", ".join(unknown[:6]) + (f" and {len(unknown) - 6} more" if len(unknown) > 6 else "")

@@ -47,6 +47,10 @@ class Chunk:
         except IndexError:
             return [row[position] if position < len(row) else "" for row in self.rows]
 
+    def rows_beyond(self, width: int) -> list[int]:
+        """The rows with more than ``width`` cells."""
+        return [place for place, row in enumerate(self.rows) if len(row) > width]
+
     def after(self, count: int) -> Chunk:
         """This chunk without its first ``count`` rows."""
         return Chunk(self.rows[count:], self.lines[count:])
@@ -80,6 +84,9 @@ class PlainChunk(Chunk):
             except IndexError:
                 pass
         return super().column(position)
+
+    def rows_beyond(self, width: int) -> list[int]:
+        return [place for place, text in enumerate(self.texts) if text.count(self.separator) >= width]
 
     def after(self, count: int) -> PlainChunk:
         return PlainChunk(self.texts[count:], self.lines[count:], self.separator)

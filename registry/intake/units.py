@@ -11,7 +11,7 @@ CANONICAL_UNITS = tuple(WT_PERCENT_PER_UNIT)
 
 _SPELLINGS = {
     "wt%": "% wt% %wt wtpct pct wt wtpercent percent percentage weight% weightpercent weightpct mass% masspercent m%"
-    " m/m% %m/m w/w% %w/w %(m/m) %(w/w) g/100g percentwt",
+    " m/m% %m/m w/w% %w/w %(m/m) %(w/w) g/100g percentwt gew-% gew% masse-% masse% ma-%",
     "ppm": "ppm ppmw ppmwt ppms mg/kg mgkg-1 mgkg^-1 ug/g ugg-1 ugg^-1 mcg/g g/t gpt g/tonne g/metrictonne grams/tonne"
     " gramspertonne g/mt gt-1 partspermillion",
     "ppb": "ppb ppbw ug/kg ugkg-1 mcg/kg mg/t ng/g ngg-1 ngg^-1 partsperbillion mg/tonne",

@@ -31,7 +31,7 @@ from registry.petrology.analytes import WT_PERCENT_PER_UNIT
 
 _SUMMARY_ROW = re.compile(
     r"(?i)\s*(means?|averages?|avg\.?|totals?|sums?|std\.? ?dev\.?\w*|standard deviation|minimum|maximum|min\.?|max\.?"
-    r"|medians?|counts?|(lower |upper )?(detection|reporting) ?limits?|l\.?o\.?d\.?|lld|ldl|mdl|udl"
+    r"|medians?|counts?|(lower |upper )?(detection|reporting) ?limits?|l\.?o\.?[drq]\.?|lld|ldl|mdl|udl"
     r"|units?|methods?|analytes?|number of (samples|results)|rsd|percentiles?|\d+(th|st|nd|rd) percentile|end( of .*)?"
     r"|.*end of (report|file|certificate).*)"
     r"\s*[:%]?\s*"
@@ -82,12 +82,13 @@ class WideReader:
         code_position: int,
         control_position: int | None = None,
         qualifier_positions: dict[int, int] | None = None,
+        width: int,
         negative_means_below: bool = False,
     ) -> None:
         self.columns, self.findings, self.decimal = columns, findings, decimal
         self.code_position, self.control_position = code_position, control_position
         self.qualifier_positions = qualifier_positions or {}
-        self.negative_means_below = negative_means_below
+        self.negative_means_below, self.width = negative_means_below, width
         self.block = BlockReader([column.position for column in columns], decimal)
         self.texts: dict[int, Texts] = {}
         self.passed_over: list[str] = []
@@ -146,6 +147,8 @@ class WideReader:
             values[negative] *= -1
         for position, column in self.qualifier_positions.items():
             self._apply_qualifiers(chunk, position, column, values, qualifiers)
+        for row in chunk.rows_beyond(self.width):
+            self._say_beyond(chunk.rows[row][self.width :], int(lines[row]))
         codes = chunk.column(self.code_position)
         keep: NDArray[np.bool_] = np.ones(len(chunk), bool)
         numberless: NDArray[np.bool_] = np.asarray(np.isnan(values).all(axis=1))
@@ -161,6 +164,19 @@ class WideReader:
             if keep[row]:
                 self._take_words(texts[row], row, int(lines[row]), values, qualifiers)
         return values, qualifiers, codes, keep
+
+    def _say_beyond(self, cells: list[str], line: int) -> None:
+        filled = [cell.strip() for cell in cells if cell.strip()]
+        if not filled:
+            return
+        numbers = all(self.block.cell(text).state == NUMBER for text in filled)
+        self.findings.add(
+            "the row has more cells than the table has headings", row=line, found=", ".join(filled),
+            expected=f"{self.width} cells",
+            remedy="see whether a decimal comma or a comma in a text is not in quotation marks"
+            if numbers else "the surplus is not read; give it a heading if it is needed",
+            severity="problem" if numbers else "warning",
+        )  # fmt: skip
 
     def _summary_rows(self, codes: list[str], lines: NDArray[np.int64], keep: NDArray[np.bool_]) -> NDArray[np.bool_]:
         """Rows of means, totals or limits under the data, told by what stands in the code column."""

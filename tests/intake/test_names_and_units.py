@@ -74,8 +74,9 @@ def test_iron_in_every_usual_spelling_is_told_total_from_plain(spelling, symbol)
 
 @pytest.mark.parametrize(
     "text",
-    ["Sample ID", "Depth (m)", "From", "To", "No", "In situ", "Co/Ni", "Comment", "Notes on U", "as received", "mg#",
-     "Weight (kg)", "REE", "Unnamed: 4", "ME-ICP41", "Hole ID", ""],
+    ["Sample ID", "Depth (m)", "B-12", "C-7A", "U 235", "From", "To", "No", "In situ", "Co/Ni", "Eu/Eu*", "(La/Yb)N",
+     "La/YbN", "K2O+Na2O", "Comment", "Notes on U", "as received", "mg#", "Weight (kg)", "REE", "Unnamed: 4",
+     "ME-ICP41", "Hole ID", ""],
 )  # fmt: skip
 def test_heading_that_is_no_analyte_stays_none(text):
     assert read_heading(text).analyte is None

@@ -154,9 +154,16 @@ def test_trailing_blank_rows_and_columns_vanish():
     assert [column.analyte for column in table.columns] == ["SiO2", "Zr"]
 
 
-def test_rows_too_short_or_too_long_keep_their_cells():
-    table = table_of(read("Sample,SiO2 (%),Zr (ppm)\nA,60\nB,61,181,9,9\n"))
-    np.testing.assert_array_equal(table.values, [[60, np.nan], [61, 181]])
+def test_rows_too_short_or_with_a_remark_behind_keep_their_cells():
+    reading = read("Sample,SiO2 (%),Zr (ppm)\nA,60\nB,61,181,fresh,\n")
+    np.testing.assert_array_equal(table_of(reading).values, [[60, np.nan], [61, 181]])
+    assert any("surplus is not read" in line for line in sentences(reading, "warning"))
+
+
+def test_unquoted_decimal_comma_is_a_problem_and_not_a_smaller_number():
+    reading = read("Sample,Cu (ppm)\nA,1,25\nB,2,5\n")
+    assert [problem.row for problem in reading.problems if problem.severity == "problem"] == [2, 3]
+    assert all("not in quotation marks" in line for line in sentences(reading))
 
 
 def test_embedded_line_breaks_keep_the_editors_line_numbers():
@@ -237,6 +244,8 @@ def test_repeated_codes_are_kept_and_listed():
 def test_control_column_is_handed_on_by_line():
     table = table_of(read("Sample,QA/QC,Cu (ppm)\nA,,5\nB,BLANK,0.1\nC,DUPL OF A,5.1\n"))
     assert table.control_text == [None, "BLANK", "DUPL OF A"]
+    table = table_of(read("Sample,Type,Cu (ppm)\nA,granite,5\nB,Blank,0.1\n"))
+    assert table.control_text == [None, "Blank"]
 
 
 def test_words_for_no_result_use_a_known_detection_limit():
