@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-import math
 from collections.abc import Sequence
 
 from flask import Flask
@@ -41,7 +40,7 @@ def derived(value: float | None, unit: str = "1") -> str:
         return (f"{value:.2f}" if abs(value) >= 0.005 else "0.00").replace("-", MINUS)
     if not 1e-3 <= abs(value) < 1e7:
         return _scientific(value)
-    decimals = max(0, 2 - math.floor(math.log10(abs(value))))
+    decimals = max(0, 2 - int(f"{value:.2e}".partition("e")[2]))
     return f"{value:.{decimals}f}".replace("-", MINUS)
 
 
