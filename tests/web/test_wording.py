@@ -12,8 +12,8 @@ from web.wording import column_words, formula, joined, readable, short_source
 @pytest.mark.parametrize(
     ("value", "spelled"),
     [
-        (65.2, "65.2"), (0.48, "0.48"), (1200.0, "1200"), (0.0005, "0.0005"), (-3.5, f"{MINUS}3.5"), (0.0, "0"), (None, ""),
-        (0.1 + 0.2, "0.3"), (2.5e-7, f"2.50 {TIMES} 10⁻⁷"), (32633, "32633"),
+        (65.2, "65.2"), (0.48, "0.48"), (1200.0, "1200"), (0.0005, "0.0005"), (-3.5, f"{MINUS}3.5"), (0.0, "0"),
+        (0.1 + 0.2, "0.3"), (2.5e-7, f"2.50 {TIMES} 10⁻⁷"), (32633, "32633"), (None, ""),
     ],
 )  # fmt: skip
 def test_reported_number_keeps_its_digits(value: float | None, spelled: str) -> None:
@@ -24,8 +24,8 @@ def test_reported_number_keeps_its_digits(value: float | None, spelled: str) -> 
     ("value", "unit", "spelled"),
     [
         (55.8123, "1", "55.8"), (0.011123, "1", "0.0111"), (1943.2, "1", "1943"), (1151.6, "degC", "1152"),
-        (12.3456, "wt%", "12.35"), (2.06e-4, "m/yr", f"2.06 {TIMES} 10⁻⁴"), (-0.5, "1", f"{MINUS}0.500"), (None, "1", ""),
-        (9.999, "1", "10.0"),
+        (12.3456, "wt%", "12.35"), (2.06e-4, "m/yr", f"2.06 {TIMES} 10⁻⁴"), (-0.5, "1", f"{MINUS}0.500"),
+        (9.999, "1", "10.0"), (None, "1", ""),
     ],
 )  # fmt: skip
 def test_derived_number_has_three_digits(value: float | None, unit: str, spelled: str) -> None:
