@@ -27,7 +27,7 @@ def test_methods_table_names_every_quantity_once() -> None:
 
 
 def test_methods_markdown_prints_the_table(capsys: pytest.CaptureFixture[str]) -> None:
-    with pytest.raises(SystemExit, match="^0$"):
+    with pytest.raises(SystemExit, match=r"^0$"):
         main(["methods", "--markdown"])
 
     assert capsys.readouterr().out == methods_table() + "\n"
