@@ -6,7 +6,9 @@ from importlib.resources import files as _resources
 from pathlib import Path
 
 #: In the order in which they are imported; results by certificate.
-MASTER_FILES = ("areas.csv", "sites.csv", "surveys.csv", "intervals.csv", "intrusions.csv", "samples.csv")
+MASTER_FILES = (
+    "areas.csv", "sites.csv", "surveys.csv", "intervals.csv", "intrusions.csv", "samples.csv", "reference_materials.csv",
+)  # fmt: skip
 
 
 def files() -> list[Path]:

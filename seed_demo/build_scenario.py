@@ -25,6 +25,7 @@ from seed_demo.district import (
     HOLES,
     INTRUSIONS,
     OUTCROPS,
+    ControlMaterial,
     Hole,
     Unit,
 )
@@ -47,6 +48,9 @@ SAMPLE_COLUMNS = (
     "sample_code", "sample_kind", "site_code", "from_m", "to_m", "intrusion", "lithology", "texture", "alteration",
     "collected_on", "duplicate_of", "reference_material", "magnetic_susceptibility_si", "density_kg_m3",
     "pulp_available",
+)  # fmt: skip
+CERTIFICATE_COLUMNS = (
+    "reference_material", "analyte", "value", "unit", "uncertainty", "uncertainty_type", "status", "source",
 )  # fmt: skip
 
 
@@ -123,10 +127,38 @@ def _control(code: str, what: str, certificate: str, before: Bag) -> Bag:
         row = _sample_row(code, "duplicate", duplicate_of=before.row["sample_code"])
         return Bag(row, certificate, before.rock)
     material = CONTROL_MATERIALS[what]
+    row = _sample_row(code, material.kind, reference_material=material.name)
+    return Bag(row, certificate, _powder(material))
+
+
+def _powder(material: ControlMaterial) -> Composition:
     rock = dict(material.composition) | {"LOI": 0.35, "S": 0.01}
     rock["FeO"] = rock["Fe2O3T"] * 0.5
-    named = material.name if material.kind == "reference_material" else ""
-    return Bag(_sample_row(code, material.kind, reference_material=named), certificate, rock)
+    return rock
+
+
+def control_values() -> list[dict[str, object]]:
+    """Invented certificates of the district's own materials: true values with a deviation between laboratories.
+
+    1.2 % of a major (0.4 % of SiO2) or 4.6 % of a trace, and a fifth of the poorer laboratory's detection limit: chosen
+    so that one certificate passes and the other passes with remarks.
+    """
+    limits: dict[str, float] = {}
+    for layout in LAYOUTS.values():
+        for column in layout.columns:
+            limits[column.analyte] = max(limits.get(column.analyte, 0.0), column.limit / column.scale)
+    rows = []
+    for material in CONTROL_MATERIALS.values():
+        for analyte, value in _powder(material).items():
+            if value <= 0.0:
+                continue
+            wt = analyte in MAJORS or analyte in ("LOI", "S", "FeO")
+            relative = 0.004 if analyte == "SiO2" else 0.012 if wt else 0.046
+            deviation = relative * value + 0.2 * limits.get(analyte, 0.0)
+            row = (material.name, analyte, f"{value:.4g}", "wt%" if wt else "ppm", f"{deviation:.2g}", "SD")
+            said = (*row, "certified" if material.kind == "reference_material" else "information", "invented")
+            rows.append(dict(zip(CERTIFICATE_COLUMNS, said, strict=True)))
+    return rows
 
 
 def bags() -> list[Bag]:
@@ -211,6 +243,7 @@ def scenario() -> dict[str, bytes]:
         ),
         "intrusions.csv": _table(INTRUSION_COLUMNS, [_renamed(each, intrusion="name") for each in INTRUSIONS]),
         "samples.csv": _table(SAMPLE_COLUMNS, [bag.row for bag in all_bags]),
+        "reference_materials.csv": _table(CERTIFICATE_COLUMNS, control_values()),
     }
     for name, layout in LAYOUTS.items():
         lines = [(str(bag.row["sample_code"]), bag.rock) for bag in all_bags if bag.certificate == name]

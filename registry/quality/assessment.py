@@ -209,8 +209,8 @@ def _judge_blanks(
     deviation = np.where(np.isnan(deviation), 0.0, deviation)
     judged = blanks.judge_blanks(outcome.found[rows], signs[rows], limit, before[rows], background, deviation)
     outcome.expected[rows] = background
-    top = background + 3.0 * deviation + blanks.FAIL_AT * limit
-    outcome.low[rows], outcome.high[rows] = 0.0, top
+    top = background + 3.0 * deviation + (blanks.FAIL_AT * limit if limit > 0.0 else 0.0)
+    outcome.low[rows], outcome.high[rows] = 0.0, np.where(top > 0.0, top, np.nan)
     is_major = column.unit == "wt%" and column.analyte not in _JUDGED_IN_WT
     for position, row in enumerate(rows.tolist()):
         if own[position] is None and is_major:
@@ -223,6 +223,8 @@ def _judge_blanks(
         outcome.states[row] = state
         if state == NOT_JUDGED:
             outcome.rules[row] = "no detection limit is known for this column"
+        elif state > PASSED and np.isnan(judged.multiples[position]):
+            outcome.rules[row] = "above the content of its material by more than three deviations"
         elif state > PASSED:
             over = " over the content of its material" if own[position] is not None else ""
             text = f"{judged.multiples[position]:.3g} times the detection limit{over}, allowed "

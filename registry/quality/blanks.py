@@ -46,7 +46,8 @@ def judge_blanks(
     """Judge blanks; everything (n,) or broadcast, in one unit. ``before`` is the result of the line before (or NaN).
 
     The limits are the background, three of its deviations, and five or ten detection limits. A result below the
-    detection limit passes; without a detection limit nothing is judged.
+    detection limit passes. Without a detection limit a blank of known content is judged by its three deviations alone
+    (above them it is a warning), any other not at all.
     """
     value, limit, preceding, own, spread = floats(found, detection_limit, before, background, background_deviation)
     below = np.asarray(qualifiers) == QUALIFIER_BELOW
@@ -55,8 +56,11 @@ def judge_blanks(
     excess = np.where(below, 0.0, np.maximum(value - allowed, 0.0))
     multiples = quotient(excess, limit)
     states = np.full(value.shape, NOT_JUDGED, dtype=np.uint8)
-    judged = ~np.isnan(value) & (limit > 0.0)
+    there = ~np.isnan(value)
+    judged = there & (limit > 0.0)
     states[judged] = PASSED
+    by_content = there & ~judged & (own > 0.0)
+    states[by_content] = np.where(excess[by_content] > 0.0, WARNED, PASSED)
     states[judged & (multiples > WARN_AT)] = WARNED
     states[judged & (multiples > FAIL_AT)] = FAILED
     share = 100.0 * quotient(np.where(below, 0.0, value - own), preceding)

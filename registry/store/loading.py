@@ -77,10 +77,11 @@ def samples_with_derived(connection: sa.Connection, sample_ids: Any) -> np.ndarr
     return np.array([row[0] for row in rows], dtype=np.int64)
 
 
-def load_blocks(connection: sa.Connection, sample_ids: Any) -> list[StoredBlock]:
+def load_blocks(connection: sa.Connection, sample_ids: Any, held: np.ndarray | None = None) -> list[StoredBlock]:
     """The results of samples (ids ascending) in active batches, a block a batch and repeat.
 
-    Newer is the batch reported later, then received later, then imported later.
+    Newer is the batch reported later, then received later, then imported later. ``held`` are ids of batch columns
+    whose results are left out.
     """
     ids = np.asarray(sample_ids, dtype=np.int64)
     lines = raw_rows.select(
@@ -102,6 +103,8 @@ def load_blocks(connection: sa.Connection, sample_ids: Any) -> list[StoredBlock]
         aliquots[:, 3],
     )
     found = raw_rows.numbers_of(results, 4)
+    if held is not None and len(held):
+        found = found[~np.isin(found[:, 1], held)]
     columns = _columns(connection, np.unique(aliquots[:, 0]))
     newness = _newness(connection)
     by_aliquot = np.argsort(aliquots[:, 3], kind="stable")

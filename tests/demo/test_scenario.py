@@ -30,8 +30,8 @@ def test_scenario_rebuilt_equals_the_files_in_the_folder_byte_for_byte(tmp_path:
 
 def test_files_come_in_the_order_of_import() -> None:
     names = [path.name for path in seed_demo.files()]
-    assert names[:6] == list(seed_demo.MASTER_FILES)
-    assert names[6:] == ["results_A417.csv", "results_K88.csv"]
+    assert names[:7] == list(seed_demo.MASTER_FILES)
+    assert names[7:] == ["results_A417.csv", "results_K88.csv"]
 
 
 def test_files_missing_folder_content_is_named(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> None:

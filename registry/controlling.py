@@ -1,0 +1,343 @@
+"""Control samples: which lines they are, how they came out, and what that does to a batch and to the composition.
+
+One mechanism: an import judges the controls of its batch before it computes the rocks; every other change marks the
+control samples stale (or their batch, where a line vanished), and the drain settles those batches first.
+"""
+
+from __future__ import annotations
+
+from collections import Counter
+from collections.abc import Mapping, Sequence
+from typing import Any
+
+import numpy as np
+
+from registry.errors import PlutonbookError
+from registry.petrology.conventions import Conventions
+from registry.quality import duplicates, recognising
+from registry.quality.assessment import DUPLICATE, LAB_REPEAT, Column, Controls, Outcome, judge_batch
+from registry.quality.recognising import Patterns, Spoken, material_of, read_control_text
+from registry.quality.shipped import ReferenceValue, shipped_values
+from registry.quality.states import STATE_WORDS
+from registry.quality.trends import bias, least_squares
+from registry.quality.verdicts import AnalyteState, state_of_analyte
+from registry.store import masters, quality_rows, reference_values, stale, target_rows
+from registry.store.quality_rows import StoredLine
+
+DAYS_PER_YEAR = 365.25
+
+
+def settle(connection: Any) -> int:
+    """Judge anew the batches whose controls may have changed, before anything is derived; how many.
+
+    Samples of the kind ``unknown`` whose code fits a pattern of the user become controls. Where other analytes fail
+    now than before and the convention holds failed ones back, the samples of the batch are marked stale.
+    """
+    patterns = read_patterns(connection)
+    if patterns:
+        _rename_unknown(connection, patterns)
+    touched = quality_rows.touched_batches(connection)
+    if not touched:
+        return 0
+    hold = _holds(connection)
+    for batch_id in touched:
+        if assess(connection, batch_id, patterns) and hold:
+            stale.mark(connection, quality_rows.samples_of_batch(connection, batch_id), stale.DERIVE)
+    quality_rows.clear_batches(connection)
+    return len(touched)
+
+
+def assess(connection: Any, batch_id: int, patterns: Patterns | None = None) -> bool:
+    """Judge the controls of a batch and store what came out; whether other columns fail than before."""
+    patterns = read_patterns(connection) if patterns is None else patterns
+    controls = load_controls(connection, batch_id, patterns)
+    outcomes = judge_batch(controls, _values_of(connection, controls)) if len(controls) else []
+    states = [(outcome.column, state_of_analyte(controls, outcome)) for outcome in outcomes]
+    quality_rows.replace_outcomes(connection, batch_id, _outcome_columns(controls, outcomes))
+    rows = [_state_row(column, state) for column, state in states if state is not None]
+    return quality_rows.replace_states(connection, batch_id, rows)
+
+
+def load_controls(connection: Any, batch_id: int, patterns: Patterns) -> Controls:
+    """What the store holds of the controls of a batch, as the quality functions take it."""
+    stored = quality_rows.control_lines(connection, batch_id)
+    spoken = [read_control_text(line.control_text) for line in stored]
+    named = {said.duplicate_of for said in spoken if said.duplicate_of}
+    known = masters.sample_ids(connection, named) if named else {}
+    kept: list[tuple[StoredLine, str, Spoken, int | None]] = []
+    for line, said in zip(stored, spoken, strict=True):
+        kind, original = _kind_and_original(line, said, known)
+        if kind is not None:
+            kept.append((line, kind, said, original))
+    materials = reference_values.material_names(connection)
+    columns = [
+        Column(c.column_id, c.analyte, c.unit, c.digestion, c.detection_limit)
+        for c in quality_rows.batch_columns(connection, batch_id)
+    ]
+    column_ids = [column.column_id for column in columns]
+    aliquots = np.array([line.aliquot_id for line, *_ in kept], dtype=np.int64)
+    line_no = np.array([line.line_no for line, *_ in kept], dtype=np.int64)
+    kinds = np.array([kind for _, kind, *_ in kept], dtype=object)
+    values, signs = quality_rows.results_of(connection, aliquots, column_ids)
+    originals = {original for *_, original in kept if original is not None}
+    first = quality_rows.first_lines(connection, batch_id, originals) if originals else {}
+    partners = np.array(
+        [first.get(original, 0) if original is not None else 0 for *_, original in kept], dtype=np.int64
+    )
+    partners[partners == aliquots] = 0
+    partner, partner_signs = quality_rows.results_of(connection, partners, column_ids)
+    before = np.zeros(len(kept), dtype=np.int64)
+    blank = kinds == recognising.BLANK
+    if blank.any():
+        before[blank] = quality_rows.lines_before(connection, batch_id, line_no[blank])
+    preceding, _ = quality_rows.results_of(connection, before, column_ids)
+    return Controls(
+        columns,
+        aliquots,
+        line_no,
+        kinds,
+        np.array([_material(line, kind, materials, patterns) for line, kind, *_ in kept], dtype=object),
+        np.array([_stage(line, kind, said, patterns) for line, kind, said, _ in kept], dtype=object),
+        values,
+        signs,
+        partner,
+        partner_signs,
+        preceding,
+    )
+
+
+def _kind_and_original(line: StoredLine, said: Spoken, known: Mapping[str, int]) -> tuple[str | None, int | None]:
+    original = known.get(said.duplicate_of) if said.duplicate_of else None
+    if line.kind in (recognising.BLANK, recognising.REFERENCE_MATERIAL):
+        return line.kind, None
+    if line.kind == DUPLICATE:
+        return DUPLICATE, line.duplicate_of or original
+    if line.repeat_no > 0:
+        return LAB_REPEAT, line.sample_id
+    if said.kind == DUPLICATE and original is not None:
+        return DUPLICATE, original
+    return None, None
+
+
+def _material(line: StoredLine, kind: str, materials: Sequence[str], patterns: Patterns) -> str | None:
+    if kind not in (recognising.BLANK, recognising.REFERENCE_MATERIAL):
+        return None
+    if line.reference_material or kind == recognising.BLANK:
+        return material_of(line.reference_material, "", materials)
+    pattern = patterns.compiled.get(recognising.REFERENCE_MATERIAL)
+    match = pattern.search(line.code) if pattern is not None else None
+    if match is not None and match.lastindex:
+        return material_of(match["material"] if "material" in match.groupdict() else match[1], line.code, materials)
+    return material_of(None, line.code, materials)
+
+
+def _stage(line: StoredLine, kind: str, said: Spoken, patterns: Patterns) -> str:
+    if kind == LAB_REPEAT:
+        return "lab"
+    return said.stage if said.stage != "unknown" else patterns.stage_of(line.code)
+
+
+def _values_of(connection: Any, controls: Controls) -> dict[str, list[ReferenceValue]]:
+    names = {name for name in controls.materials.tolist() if name is not None}
+    stored = reference_values.values_of(connection, names) if names else {}
+    return {
+        name: [
+            ReferenceValue(
+                name, row.analyte, row.value, row.unit, row.uncertainty, row.uncertainty_type, row.status, row.source
+            )
+            for row in rows
+        ]
+        for name, rows in stored.items()
+    }
+
+
+def _outcome_columns(controls: Controls, outcomes: Sequence[Outcome]) -> dict[str, Any]:
+    """Every judged result as rows of ``control_outcome``, in key order."""
+    if not outcomes:
+        return {"aliquot_id": np.zeros(0, dtype=np.int64)}
+    there = np.stack([outcome.there for outcome in outcomes], axis=1)
+    line, place = np.nonzero(there)
+    order = np.argsort(controls.aliquot_ids[line], kind="stable")
+    line, place = line[order], place[order]
+
+    def taken(name: str) -> Any:
+        return np.stack([getattr(outcome, name) for outcome in outcomes], axis=1)[line, place]
+
+    column_ids = np.array([outcome.column.column_id for outcome in outcomes], dtype=np.int64)
+    return {
+        "aliquot_id": controls.aliquot_ids[line],
+        "column_id": column_ids[place],
+        "kind": controls.kinds[line],
+        "material": controls.materials[line],
+        "expected": taken("expected"),
+        "found": taken("found"),
+        "z": taken("z"),
+        "limit_low": taken("low"),
+        "limit_high": taken("high"),
+        "state": taken("states"),
+        "rule": taken("rules"),
+        "source": taken("sources"),
+    }
+
+
+def _state_row(column: Column, state: AnalyteState) -> dict[str, Any]:
+    numbers = {
+        "bias_percent": state.bias_percent,
+        "bias_error_percent": state.bias_error_percent,
+        "drift_percent": state.drift_percent,
+        "drift_error_percent": state.drift_error_percent,
+        "precision_s0": state.precision_s0,
+        "precision_k": state.precision_k,
+    }
+    return {
+        "column_id": column.column_id,
+        "state": state.state,
+        "remarks": state.remarks,
+        "reference_results": state.references,
+        "blank_results": state.blanks,
+        "pairs": state.pairs,
+        **{name: None if np.isnan(value) else value for name, value in numbers.items()},
+    }
+
+
+def read_patterns(connection: Any) -> Patterns:
+    """The user's code patterns; PlutonbookError names a setting that cannot be used."""
+    try:
+        return Patterns(target_rows.read_settings(connection))
+    except ValueError as fault:
+        raise PlutonbookError(str(fault)) from fault
+
+
+def _rename_unknown(connection: Any, patterns: Patterns) -> None:
+    kinds: dict[str, list[int]] = {}
+    for sample_id, code in quality_rows.stale_unknown_samples(connection):
+        kind = patterns.kind_of(code)
+        if kind is not None:
+            kinds.setdefault(kind, []).append(sample_id)
+    quality_rows.set_kinds(connection, kinds)
+
+
+def kinds_of_new(codes: Sequence[str], said: Mapping[str, Spoken], patterns: Patterns) -> dict[str, list[str]]:
+    """New sample codes by the kind to create them with: what the certificate says, else a pattern, else ``unknown``."""
+    kinds: dict[str, list[str]] = {}
+    for code in codes:
+        spoken = said.get(code)
+        kind = (spoken.kind if spoken is not None else None) or (patterns.kind_of(code) if patterns else None)
+        kinds.setdefault(kind or "unknown", []).append(code)
+    return kinds
+
+
+def _holds(connection: Any) -> bool:
+    from registry.judging import read_conventions
+
+    return read_conventions(connection).failed_control == "hold"
+
+
+def held_columns(connection: Any, conventions: Conventions, batch_id: int | None = None) -> np.ndarray:
+    """Ids of the batch columns that stay out of the composition, int64: the failed ones where the convention holds."""
+    if conventions.failed_control != "hold":
+        return np.zeros(0, dtype=np.int64)
+    return quality_rows.failed_columns(connection, batch_id)
+
+
+def ship_reference_values(connection: Any) -> int:
+    """Bring the shipped reference values in; how many were new. A second call changes nothing."""
+    rows = [vars(value) for value in shipped_values()]
+    return reference_values.upsert_values(connection, rows).added
+
+
+def state_of_batch(connection: Any, batch_id: int) -> list[str]:
+    """Sentences on the controls of a batch: how many, its state, and what failed or was remarked; none without any."""
+    from registry.store.reading.controls import analyte_states, control_counts
+
+    counts = control_counts(connection, batch_id)
+    if not counts:
+        return []
+    states = analyte_states(connection, batch_id)
+    words = {"reference_material": "reference materials", "lab_repeat": "repeats of the laboratory"}
+    listed = ", ".join(f"{number:,} {words.get(kind, kind + 's')}" for kind, number in counts.items())
+    lines = [f"controls: {listed}"]
+    if not states:
+        return [*lines, "none of them could be judged (no reference values, detection limits or originals)"]
+    tally = Counter(state["state"] for state in states)
+    told = ", ".join(f"{tally[word]} {'analyte' if tally[word] == 1 else 'analytes'} {word}" for word in tally)
+    lines.append(f"batch {_worst(states)}: {told}")
+    for state in states:
+        if state["state"] != STATE_WORDS[0] and len(lines) < 12:
+            lines.append(f"{state['analyte']} {state['state']}: {state['remarks']}")
+    return lines
+
+
+def _worst(states: Sequence[Mapping[str, Any]]) -> str:
+    return max((state["state"] for state in states), key=STATE_WORDS.index)
+
+
+def trends(connection: Any, materials: Sequence[str]) -> list[dict[str, Any]]:
+    """Bias and drift over time, one dict a material, analyte, unit and laboratory, over all active batches.
+
+    ``bias_percent`` is the mean of 100 (found - expected)/expected with its standard error, ``drift_percent_per_year``
+    the least-squares slope over the dates with its own (None where there are too few); ``points`` are the results.
+    """
+    groups: dict[tuple[Any, ...], list[tuple[Any, ...]]] = {}
+    for row in quality_rows.history(connection, materials):
+        groups.setdefault(row[:4], []).append(row)
+    return [_trend(key, rows) for key, rows in groups.items()]
+
+
+def _trend(key: tuple[Any, ...], rows: Sequence[tuple[Any, ...]]) -> dict[str, Any]:
+    difference = np.array([100.0 * (row[7] - row[8]) / row[8] for row in rows])
+    days = np.array([np.datetime64(row[4]) for row in rows], dtype="datetime64[D]")
+    line = least_squares((days - days.min()).astype(np.float64) / DAYS_PER_YEAR, difference)
+    mean = bias(difference)
+    material, analyte, unit, lab = key
+    return {
+        "material": material,
+        "analyte": analyte,
+        "unit": unit,
+        "lab": lab,
+        "results": mean.n,
+        "first_on": str(days.min()),
+        "last_on": str(days.max()),
+        "bias_percent": _known(mean.mean),
+        "bias_error_percent": _known(mean.error),
+        "drift_percent_per_year": _known(line.slope),
+        "drift_error_percent_per_year": _known(line.slope_error),
+        "points": [
+            {"day": row[4], "batch": row[5], "line_no": row[6], "found": row[7], "expected": row[8], "z": row[9]}
+            for row in rows
+        ],
+    }
+
+
+def precisions(connection: Any) -> list[dict[str, Any]]:
+    """Precision by analyte, unit, laboratory and kind of pair over all active batches.
+
+    Thompson and Howarth's s_0, k and detection limit where there are 50 pairs or more, else None for these; the mean
+    half relative difference in any case.
+    """
+    groups: dict[tuple[Any, ...], list[tuple[float, float]]] = {}
+    for *key, original, duplicate in quality_rows.pairs(connection):
+        groups.setdefault(tuple(key), []).append((original, duplicate))
+    found = []
+    for (analyte, unit, lab, kind), values in groups.items():
+        first, second = np.array(values, dtype=np.float64).T
+        fit = duplicates.fit_precision(first, second)
+        half = duplicates.half_relative_difference(first, second)
+        found.append(
+            {
+                "analyte": analyte,
+                "unit": unit,
+                "lab": lab,
+                "kind": kind,
+                "pairs": len(values),
+                "mean_half_difference_percent": _known(float(np.nanmean(half))) if (~np.isnan(half)).any() else None,
+                "s_0": None if fit is None else fit.s_0,
+                "k": None if fit is None else fit.k,
+                "detection_limit": None if fit is None else _known(duplicates.detection_limit_of(fit.s_0, fit.k)),
+            }
+        )
+    return found
+
+
+def _known(value: float) -> float | None:
+    return None if np.isnan(value) else float(value)
