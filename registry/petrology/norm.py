@@ -64,7 +64,8 @@ def cipw_norm(oxides: Mapping[str, ArrayLike]) -> dict[str, Array]:
     broadcast.
 
     Range: igneous rocks; the norm exists for any oxide analysis and is then a mere recasting.
-    Source: [kelsey1965]; [cox1979] appendix 3; mean masses [verma2003] (steps from memory).
+    Source: [cross1902], [washington1917]; steps of [kelsey1965] and [cox1979] appendix 3; mean masses [verma2003],
+    weights of apatite, pyrite and fluorite that close [pruseth2009] (steps from memory).
     """
     arrays = norm_inputs(oxides)
     shape = arrays["sio2_wt"].shape
