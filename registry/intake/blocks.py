@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import re
 from array import array
 from collections.abc import Iterator
 from itertools import chain, repeat
@@ -69,19 +70,13 @@ class BlockReader:
                 if below is None:
                     return None
                 text = text.replace(below_sign, separator)
-        if not by_sign:
+        values = self._load(text, separator, len(chunk))
+        if values is None and not by_sign:
             for word in _BLANK_WORDS:
                 if separator + word + separator in text or separator + word + "\n" in text:
                     text = _filled(text.replace(separator + word + "\n", separator + "\n"), separator, word)
-        if separator + separator in text or separator + "\n" in text:
-            text = _filled(text.replace(separator + "\n", separator + "nan\n"), separator, "")
-        try:
-            values = np.loadtxt(
-                text.split("\n")[:-1], delimiter=separator, usecols=self.positions, comments=None, ndmin=2
-            )
-        except (ValueError, IndexError):
-            return None
-        if values.shape != (len(chunk), self.width) or np.isinf(values).any():
+            values = self._load(text, separator, len(chunk))
+        if values is None:
             return None
         if by_sign:
             qualifiers = (np.signbit(values) & ~np.isnan(values)).astype(np.uint8)
@@ -92,17 +87,34 @@ class BlockReader:
             qualifiers = np.zeros(values.shape, np.uint8)
         return values, qualifiers
 
-    def _places_below(self, text: str, separator: str, count: int) -> NDArray[np.bool_] | None:
-        """Which cells (k, m) begin with ``<``; None if the rows are not all of one width."""
-        signs = np.frombuffer(text.encode(), np.uint8)  # in UTF-8 these signs are bytes of their own
-        ends = np.flatnonzero((signs == ord(separator)) | (signs == 10))
-        width, rest = divmod(len(ends), count)
-        if rest or not (signs[ends[width - 1 :: width]] == 10).all() or (signs[ends] == 10).sum() != count:
+    def _load(self, text: str, separator: str, count: int) -> Numbers | None:
+        """The numbers of a text in which only blank cells are no numbers; None if that is not so."""
+        if separator + separator in text or separator + "\n" in text:
+            text = _filled(text.replace(separator + "\n", separator + "nan\n"), separator, "")
+        try:
+            values = np.loadtxt(
+                text.split("\n")[:-1], delimiter=separator, usecols=self.positions, comments=None, ndmin=2
+            )
+        except (ValueError, IndexError):
             return None
-        marked = np.flatnonzero((signs[1:] == ord("<")) & (signs[:-1] == ord(separator))) + 1
-        whole = np.zeros(count * width, bool)
-        whole[np.searchsorted(ends, marked)] = True
-        return whole.reshape(count, width)[:, self.positions] if max(self.positions) < width else None
+        return None if values.shape != (count, self.width) or np.isinf(values).any() else values
+
+    def _places_below(self, text: str, separator: str, count: int) -> NDArray[np.bool_] | None:
+        """Which analyte cells (k, m) begin with ``<``."""
+        lines = text.split("\n")[:-1]
+        if len(lines) != count:
+            return None
+        ends = np.cumsum(np.fromiter(map(len, lines), np.int64, count) + 1)
+        found = np.fromiter((match.start() for match in re.finditer(re.escape(separator + "<"), text)), np.int64)
+        rows = np.searchsorted(ends, found, side="right")
+        starts = found - (ends[rows] - np.fromiter(map(len, lines), np.int64, count)[rows] - 1)
+        index = {position: column for column, position in enumerate(self.positions)}
+        below = np.zeros((count, self.width), bool)
+        for row, offset in zip(rows.tolist(), starts.tolist(), strict=True):
+            column = index.get(lines[row].count(separator, 0, offset) + 1)
+            if column is not None:
+                below[row, column] = True
+        return below
 
     def _read_cells(self, chunk: Chunk, watch_underscores: bool) -> tuple[Numbers, Marks, list[tuple[int, int, str]]]:
         reach = max(self.positions) + 1

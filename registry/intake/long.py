@@ -6,6 +6,7 @@ import re
 from array import array
 from collections.abc import Callable
 from dataclasses import dataclass, field
+from functools import lru_cache
 
 from registry.intake.cells import NO_QUALIFIER, QUALIFIER_CODES
 from registry.intake.codes import heading_score
@@ -72,25 +73,26 @@ def _folded(text: str) -> str:
 def find_long_layout(rows: list[list[str]]) -> LongLayout | None:
     """The headings of a long table within the first rows: a sample code, an analyte and a value column."""
     for index, row in enumerate(rows[:SEARCH_ROWS]):
-        roles: dict[str, int] = {}
-        best = 0.0
-        unit = None
-        for position, cell in enumerate(row):
-            bare = re.sub(r"\s*[(\[][^()\[\]]*[)\]]\s*$", "", _folded(cell))
-            for role, pattern in _COMPILED.items():
-                if bare and pattern.fullmatch(bare) and role not in roles:
-                    roles[role] = position
-                    bracket = re.search(r"[(\[]([^()\[\]]*)[)\]]", cell)
-                    if role == "value" and bracket:
-                        unit = canonical_unit(bracket.group(1))
-                    break
-            else:
-                score = heading_score(cell)
-                if score > best:
-                    best, roles["sample"] = score, position
-        if {"sample", "analyte", "value"} <= roles.keys():
-            return LongLayout(index, roles, [cell.strip() for cell in row], unit)
+        told = [_role(cell) if cell and not cell[0].isdigit() else None for cell in row]
+        if "analyte" not in told or "value" not in told:
+            continue
+        roles = {role: told.index(role) for role in _ROLES if role in told}
+        scores = [0.0 if role else heading_score(cell) for role, cell in zip(told, row, strict=True)]
+        if max(scores) <= 0:
+            continue
+        roles["sample"] = scores.index(max(scores))
+        bracket = re.search(r"[(\[]([^()\[\]]*)[)\]]", row[roles["value"]])
+        return LongLayout(
+            index, roles, [cell.strip() for cell in row], canonical_unit(bracket.group(1)) if bracket else None
+        )
     return None
+
+
+@lru_cache(maxsize=4096)
+def _role(cell: str) -> str | None:
+    """What a heading of a long table says its column holds."""
+    bare = re.sub(r"\s*[(\[][^()\[\]]*[)\]]\s*$", "", _folded(cell))
+    return next((role for role, pattern in _COMPILED.items() if bare and pattern.fullmatch(bare)), None)
 
 
 def gather(source: Source, layout: LongLayout, findings: Findings) -> Gathered:
