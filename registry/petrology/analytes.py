@@ -6,13 +6,15 @@ from dataclasses import dataclass
 
 from registry.petrology.constants import FE2O3_FROM_FEO, oxide_from_element
 
-OXIDE_SYMBOLS = (
-    "SiO2 TiO2 Al2O3 MnO MgO CaO Na2O K2O P2O5 Cr2O3 NiO V2O3 BaO SrO ZrO2 Li2O LOI H2O+ H2O- CO2 S SO3 F Cl"
-).split()
-ELEMENT_SYMBOLS = (
-    "Li Be B Sc V Cr Co Ni Cu Zn Ga Ge As Rb Sr Y Zr Nb Mo Ag Cd In Sn Sb Te Cs Ba La Ce Pr Nd Sm Eu Gd Tb Dy Ho "
-    "Er Tm Yb Lu Hf Ta W Re Tl Pb Bi Th U Au Pt Pd"
-).split()
+OXIDE_SYMBOLS = [
+    "SiO2", "TiO2", "Al2O3", "MnO", "MgO", "CaO", "Na2O", "K2O", "P2O5", "Cr2O3", "NiO", "V2O3", "BaO", "SrO",
+    "ZrO2", "Li2O", "LOI", "H2O+", "H2O-", "CO2", "S", "SO3", "F", "Cl",
+]  # fmt: skip
+ELEMENT_SYMBOLS = [
+    "Li", "Be", "B", "Sc", "V", "Cr", "Co", "Ni", "Cu", "Zn", "Ga", "Ge", "As", "Rb", "Sr", "Y", "Zr", "Nb", "Mo",
+    "Ag", "Cd", "In", "Sn", "Sb", "Te", "Cs", "Ba", "La", "Ce", "Pr", "Nd", "Sm", "Eu", "Gd", "Tb", "Dy", "Ho",
+    "Er", "Tm", "Yb", "Lu", "Hf", "Ta", "W", "Re", "Tl", "Pb", "Bi", "Th", "U", "Au", "Pt", "Pd",
+]  # fmt: skip
 
 
 def _oxide_column(symbol: str) -> str:
