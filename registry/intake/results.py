@@ -9,7 +9,7 @@ from dataclasses import dataclass
 import numpy as np
 
 from registry.intake.arrangement import arrange
-from registry.intake.cells import NUMBER, decimal_sign, parse_cell
+from registry.intake.cells import decimal_sign
 from registry.intake.checks import check_units, check_values
 from registry.intake.codes import choose_code_column, tidy_codes
 from registry.intake.findings import Findings
@@ -18,12 +18,12 @@ from registry.intake.readings import ReadingOptions, ResultColumn, ResultTable
 from registry.intake.recipes import ColumnChoice, Recipe
 from registry.intake.settling import settle_columns
 from registry.intake.sources import Source
+from registry.intake.texts import CONTROL_WORD, judge_texts
 from registry.intake.titles import read_titles
 from registry.intake.units import canonical_unit, split_unit
 from registry.intake.wide import WideBody, WideReader
 
 _CONTROL = re.compile(r"(?i)\W*(qa ?[/&-]? ?qc|qc|control|sample[ _]?(type|kind|class)|type|qc[ _]?type|check type)\W*")
-_CONTROL_WORD = re.compile(r"(?i)\b(blanks?|blk|dupl?\w*|triplicate|standards?|std|crm|reference material|qa/?qc)\b")
 _QUALIFIER = re.compile(r"(?i)(?P<of>.*?)[\s_\-]*" + QUALIFIER_WORD.pattern.removeprefix("(?i)"))
 
 
@@ -92,8 +92,8 @@ def read_results(
     watch = arranged.underscores and (source is not given or underscores > in_headings)
     body = reader.read(source, layout.first_row, arranged.row_bound, watch)
     if control is not None and not re.search(r"(?i)q[ac]|control|check", layout.labels[control]):
-        body.control = [said if said and _CONTROL_WORD.search(said) else None for said in body.control]
-    columns, body = _judge_texts(columns, body, decimal, findings)
+        body.control = [said if said and CONTROL_WORD.search(said) else None for said in body.control]
+    columns, body = judge_texts(columns, body, decimal, findings)
     columns, body = _drop_empty(columns, body, understood)
     used = {column.position for column in columns} | {layout.code.position} | set(qualifier_positions)
     ignored = [layout.labels[place] for place in range(layout.width) if place not in used and layout.labels[place]]
@@ -167,60 +167,6 @@ def _qualifier_columns(
         if index is not None and index not in found.values():
             found[place] = index
     return found
-
-
-def _judge_texts(
-    columns: list[ResultColumn], body: WideBody, decimal: str, findings: Findings
-) -> tuple[list[ResultColumn], WideBody]:
-    """Texts in analyte columns: a column of texts is misplaced (warning), a text among numbers is a problem."""
-    dropped = []
-    for index, texts in sorted(body.texts.items()):
-        column = columns[index]
-        numbers = int(np.isfinite(body.values[:, index]).sum())
-        pairs = texts.pairs()
-        first_line, first_text = pairs[0]
-        if len(pairs) > 4 * numbers:
-            findings.warn(
-                "texts stand where numbers are expected; they are not taken as results",
-                row=first_line, column=column.header,
-                found=f"{first_text.strip()} ({len(pairs)} texts, {numbers} numbers)", expected="numbers",
-                remedy="move the texts to a column of their own, or ignore the column in a recipe",
-            )  # fmt: skip
-            _take_control_words(body, pairs)
-            if numbers == 0:
-                dropped.append(index)
-            continue
-        for line, text in pairs:
-            findings.add(
-                "a text stands where a number is expected", row=line, column=column.header, found=text.strip(),
-                expected="a number, <number, >number, or a word for no result", remedy=_text_cause(text, decimal),
-            )  # fmt: skip
-    if not dropped:
-        return columns, body
-    kept = [index for index in range(len(columns)) if index not in dropped]
-    body.values, body.qualifiers = body.values[:, kept], body.qualifiers[:, kept]
-    return [columns[index] for index in kept], body
-
-
-def _take_control_words(body: WideBody, pairs: list[tuple[int, str]]) -> None:
-    """A misplaced text that names a control sample (``Blank Sample``) still says so of its line."""
-    said = {line: text.strip() for line, text in pairs if _CONTROL_WORD.search(text)}
-    if not said:
-        return
-    control = body.control or [None] * len(body.lines)
-    body.control = [
-        "; ".join(filter(None, (one, said.get(line)))) or None
-        for one, line in zip(control, body.lines.tolist(), strict=True)
-    ]
-
-
-def _text_cause(text: str, decimal: str) -> str:
-    other = "," if decimal == "." else "."
-    if parse_cell(text, other).state == NUMBER:
-        return f"the rest of the file has the decimal sign '{decimal}'; write this number with it"
-    if re.search(r"(?i)\b(jan|feb|mar|apr|may|jun|jul|aug|sep|oct|nov|dec)[a-z]*\b|\d{4}-\d\d-\d\d", text):
-        return "a spreadsheet seems to have turned a number into a date; take it from the laboratory's original"
-    return "correct the cell or leave it blank"
 
 
 def _drop_empty(
