@@ -62,8 +62,12 @@ def insert_aliquots(
     line_no: Any,
     kinds: Sequence[str],
     repeat_no: Any,
+    control_text: Sequence[str | None] | None = None,
 ) -> np.ndarray:
-    """Insert one aliquot a line of a certificate (all arrays (n,)); their ids, int64 (n,), ascending."""
+    """Insert one aliquot a line of a certificate (all arrays (n,)); their ids, int64 (n,), ascending.
+
+    ``control_text`` is what the certificate says of the lines (``BLANK``), None where it says nothing.
+    """
     ids = allocate_ids(connection, "aliquot", len(sample_ids))
     columns: dict[str, Any] = {
         "aliquot_id": ids,
@@ -73,6 +77,8 @@ def insert_aliquots(
         "kind": np.asarray(kinds, dtype=object),
         "repeat_no": repeat_no,
     }
+    if control_text is not None:
+        columns["control_text"] = np.asarray(control_text, dtype=object)
     sqlite = raw_rows.is_sqlite(connection)
     raw_rows.insert(
         connection, "aliquot", list(columns), [cells(name, column, sqlite) for name, column in columns.items()]
@@ -147,9 +153,17 @@ def censored(qualifiers: np.ndarray) -> list[str | None]:
 
 
 def write_composition(
-    connection: sa.Connection, sample_ids: Any, values: np.ndarray, qualifiers: np.ndarray, digestions: np.ndarray
+    connection: sa.Connection,
+    sample_ids: Any,
+    values: np.ndarray,
+    qualifiers: np.ndarray,
+    digestions: np.ndarray,
+    fresh: bool = False,
 ) -> None:
-    """Upsert compositions: values float64, qualifier and digestion codes uint8, each (81, n)."""
+    """Upsert compositions: values float64, qualifier and digestion codes uint8, each (81, n).
+
+    ``fresh`` (here and below): the samples have no such rows yet, so that nothing needs to be looked up.
+    """
     sqlite = raw_rows.is_sqlite(connection)
     filled = {
         name: cells(name, column, sqlite)
@@ -164,7 +178,7 @@ def write_composition(
         "censored": censored(qualifiers),
     }
     cleared = [name for name in CHOSEN_COLUMNS if name not in filled]
-    raw_rows.upsert(connection, "composition", ("sample_id",), list(columns), list(columns.values()), cleared)
+    raw_rows.upsert(connection, "composition", ("sample_id",), list(columns), list(columns.values()), cleared, fresh)
 
 
 def write_derived(
@@ -177,6 +191,7 @@ def write_derived(
     method_version: str,
     best_target: np.ndarray | None = None,
     best_verdict: np.ndarray | None = None,
+    fresh: bool = False,
 ) -> None:
     """Upsert derived rows: ``columns`` by name (n,), float64 or object with None; what is not given becomes NULL.
 
@@ -201,13 +216,14 @@ def write_derived(
         rows["best_target"] = best_target.tolist()
         rows["best_verdict"] = [codes.get(word) for word in best_verdict.tolist()]
     cleared = [name for name in (*DERIVED_COLUMNS, "best_target", "best_verdict") if name not in rows]
-    raw_rows.upsert(connection, "derived", ("sample_id",), list(rows), list(rows.values()), cleared)
+    raw_rows.upsert(connection, "derived", ("sample_id",), list(rows), list(rows.values()), cleared, fresh)
 
 
 def write_verdicts(
     connection: sa.Connection,
     sample_ids: np.ndarray,
     judged_targets: Sequence[tuple[int, int, Judged]],
+    fresh: bool = False,
 ) -> None:
     """Upsert the verdicts of several targets on n samples; where ``judged`` is false earlier verdicts are deleted.
 
@@ -221,7 +237,7 @@ def write_verdicts(
         by_mask.setdefault(np.asarray(entry[2].judged, dtype=bool).tobytes(), []).append(entry)
     for mask, entries in by_mask.items():
         judged = np.frombuffer(mask, dtype=bool)
-        if not judged.all():
+        if not judged.all() and not fresh:
             targets = ", ".join(str(int(target_id)) for target_id, _, _ in entries)
             raw_rows.select(
                 connection, f"DELETE FROM verdict WHERE target_id IN ({targets}) AND sample_id {{ids}}", ids[~judged]
@@ -229,7 +245,13 @@ def write_verdicts(
         parts = [_verdict_columns(ids, judged, *entry, sqlite) for entry in entries]
         columns = {name: _interleaved([part[name] for part in parts]) for name in parts[0]}
         raw_rows.upsert(
-            connection, "verdict", ("sample_id", "target_id"), list(columns), list(columns.values()), ("probability",)
+            connection,
+            "verdict",
+            ("sample_id", "target_id"),
+            list(columns),
+            list(columns.values()),
+            ("probability",),
+            fresh,
         )
 
 

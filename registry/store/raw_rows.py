@@ -16,6 +16,8 @@ import sqlalchemy as sa
 
 #: Variables bound in one multi-row statement (SQLite allows 32,766).
 VARIABLES_AT_A_TIME = 400
+#: Columns of a row that still goes many to a statement.
+NARROW = 6
 
 
 def cells(name: str, column: Any, sqlite: bool) -> list[Any]:
@@ -75,9 +77,12 @@ def insert(connection: sa.Connection, table: str, names: Sequence[str], columns:
 
 
 def _insert_sqlite(driver: Any, table: str, listed: str, width: int, columns: Sequence[list[Any]]) -> None:
-    """Many rows a statement: half the time of one row a statement for narrow rows."""
-    rows_each = max(1, VARIABLES_AT_A_TIME // width)
+    """Many rows a statement take half the time for narrow rows, and twice for wide ones: those go one by one."""
     one = f"({', '.join('?' * width)})"
+    if width > NARROW:
+        driver.executemany(f"INSERT INTO {table} ({listed}) VALUES {one}", zip(*columns, strict=True))
+        return
+    rows_each = max(1, VARIABLES_AT_A_TIME // width)
     flat: list[Any] = [None] * (width * len(columns[0]))
     for position, column in enumerate(columns):
         flat[position::width] = column
@@ -99,12 +104,17 @@ def upsert(
     names: Sequence[str],
     columns: Sequence[list[Any]],
     cleared: Sequence[str] = (),
+    fresh: bool = False,
 ) -> None:
     """Insert rows given by columns, or overwrite those with the same ``keys``.
 
     ``names`` are the columns' names, keys among them; ``cleared`` are further columns, set to NULL.
+    ``fresh``: no row has one of these keys yet, so the rows are simply inserted.
     """
     if not columns or not columns[0]:
+        return
+    if fresh:
+        insert(connection, table, names, columns)
         return
     changed = [name for name in names if name not in keys]
     updates = [f"{name} = excluded.{name}" for name in changed] + [f"{name} = NULL" for name in cleared]

@@ -1,0 +1,123 @@
+"""Computing beside writing: a large import derives and judges in a child process while its parent stores.
+
+The child is this module run by the same interpreter (not ``multiprocessing``, which would run the caller's own script
+again): it takes pickled chunks on its standard input and gives pickled results on its standard output.
+"""
+
+from __future__ import annotations
+
+import os
+import pickle
+import subprocess
+import sys
+from collections import deque
+from collections.abc import Iterable, Iterator, Sequence
+from concurrent.futures import Future, ThreadPoolExecutor
+from contextlib import suppress
+from types import TracebackType
+from typing import Any, BinaryIO
+
+from registry.petrology.conventions import Conventions
+from registry.pipeline import CHUNK_SIZE, Chunk, Computed, compute
+
+#: Below so many samples a child process would take longer to start than it saves.
+WORTH_A_CHILD = 2 * CHUNK_SIZE
+#: Chunks computed ahead of the writer; each finished one holds about 70 MB.
+AHEAD = 1
+
+
+class Computations:
+    """Computes chunks in order. With ``child`` they are computed ahead in a process of their own.
+
+    ``with Computations(chunks, ...) as computations:`` begins at once; iterating gives ``(chunk, computed)``. The
+    chunks are drawn from their iterable in the calling process, at most ``AHEAD`` before they are needed.
+    """
+
+    def __init__(
+        self, chunks: Iterable[Chunk], definitions: Sequence[Any], conventions: Conventions, child: bool
+    ) -> None:
+        self._chunks = iter(chunks)
+        self._rules = (tuple(definitions), conventions)
+        self._wanted = child
+        self._child: subprocess.Popen[bytes] | None = None
+        self._pool: ThreadPoolExecutor | None = None
+        self._waiting: deque[tuple[Chunk, Future[Computed]]] = deque()
+
+    def __enter__(self) -> Computations:
+        if self._wanted:
+            path = os.pathsep.join(entry for entry in sys.path if entry)
+            self._child = subprocess.Popen(
+                [sys.executable, "-m", "registry.computing"],
+                stdin=subprocess.PIPE,
+                stdout=subprocess.PIPE,
+                env={**os.environ, "PYTHONPATH": path},
+            )
+            self._pool = ThreadPoolExecutor(1)
+            self._pool.submit(self._tell, self._rules)
+            self._fill()
+        return self
+
+    def __exit__(
+        self, kind: type[BaseException] | None, error: BaseException | None, trace: TracebackType | None
+    ) -> None:
+        if self._child is not None and kind is not None:
+            self._child.kill()
+        if self._pool is not None:
+            self._pool.shutdown(wait=True, cancel_futures=True)
+        if self._child is not None:
+            for stream in (self._child.stdin, self._child.stdout):
+                if stream is not None:
+                    with suppress(BrokenPipeError):
+                        stream.close()
+            self._child.wait()
+
+    def __iter__(self) -> Iterator[tuple[Chunk, Computed]]:
+        if self._pool is None:
+            for chunk in self._chunks:
+                yield chunk, compute(chunk, *self._rules)
+            return
+        while self._waiting:
+            chunk, future = self._waiting.popleft()
+            computed = future.result()
+            self._fill()
+            yield chunk, computed
+
+    def _fill(self) -> None:
+        while self._pool is not None and len(self._waiting) < AHEAD:
+            chunk = next(self._chunks, None)
+            if chunk is None:
+                return
+            self._waiting.append((chunk, self._pool.submit(self._ask, chunk)))
+
+    def _tell(self, message: Any) -> None:
+        assert self._child is not None and self._child.stdin is not None
+        pickle.dump(message, self._child.stdin, pickle.HIGHEST_PROTOCOL)
+        self._child.stdin.flush()
+
+    def _ask(self, chunk: Chunk) -> Computed:
+        assert self._child is not None and self._child.stdout is not None
+        self._tell(chunk)
+        answer = pickle.load(self._child.stdout)
+        if isinstance(answer, Exception):
+            raise answer
+        return answer
+
+
+def _serve(requests: BinaryIO, answers: BinaryIO) -> None:
+    """The child: rules first, then chunks until the parent closes the pipe."""
+    try:
+        definitions, conventions = pickle.load(requests)
+        while True:
+            chunk = pickle.load(requests)
+            try:
+                answer: Any = compute(chunk, definitions, conventions)
+            except Exception as error:  # handed to the parent, which raises it
+                answer = error
+            pickle.dump(answer, answers, pickle.HIGHEST_PROTOCOL)
+            answers.flush()
+    except EOFError:
+        return
+
+
+if __name__ == "__main__":
+    _serve(sys.stdin.buffer, sys.stdout.buffer)
