@@ -1,0 +1,24 @@
+"""Near misses of sample codes. The codes are invented."""
+
+from __future__ import annotations
+
+import pytest
+
+from registry.intake.matching import near_misses
+
+KNOWN = ["BH1-001", "BH1-012", "S16", "A1-12", "Q 7"]
+
+
+@pytest.mark.parametrize(
+    ("code", "meant"),
+    [("bh1-001", "BH1-001"),
+     ("BH1/1", "BH1-001"), ("BH 01 012", "BH1-012"), ("S016", "S16"), ("S-16", "S16"), ("q7", "Q 7"),
+     ("BH1\u2013001", "BH1-001")],
+)  # fmt: skip
+def test_code_that_differs_in_case_spaces_zeros_or_dashes_is_suggested(code, meant):
+    assert near_misses([code], KNOWN) == {code: [meant]}
+
+
+@pytest.mark.parametrize("code", ["A11-2", "BH1-002", "T16", "S160", "BH1-001"])
+def test_code_that_is_another_or_known_as_written_has_no_near_miss(code):
+    assert near_misses([code], KNOWN) == {}
