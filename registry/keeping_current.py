@@ -8,7 +8,7 @@ from sqlalchemy.exc import SQLAlchemyError
 
 from registry.errors import PlutonbookError
 from registry.refresh import SMALL_REFRESH, drain
-from registry.store import stale
+from registry.store import stale, stale_groups
 from registry.store.engine import reading, writing
 
 
@@ -19,7 +19,7 @@ def refresh_a_few(registry: Any, limit: int = SMALL_REFRESH) -> int:
     """
     try:
         with reading(registry) as connection:
-            if not stale.pending(connection, 1):
+            if not stale.pending(connection, 1) and not stale_groups.any_pending(connection):
                 return 0
         with writing(registry, what="a small refresh", wait_s=0.0) as connection:
             return drain(connection, limit=limit)

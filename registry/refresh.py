@@ -9,11 +9,13 @@ import numpy as np
 
 from registry.choice import Block, ColumnUse, choose
 from registry.clock import now
+from registry.controlling import held_columns, settle
 from registry.judging import Rules, read_rules
 from registry.pipeline import CHUNK_SIZE, METHOD_VERSION, Chunk, Computed, compute
-from registry.store import bulk, loading, sample_context, stale
+from registry.store import bulk, loading, quality_rows, sample_context, stale, stale_groups
 from registry.store.engine import Registry, reading, writing
 from registry.store.sheets import DERIVED_COLUMNS
+from registry.suites import refresh_groups
 
 #: A reading page refreshes at most this many samples by itself.
 SMALL_REFRESH = 200
@@ -30,6 +32,7 @@ def drain(
 
     ``cause`` is written beside each verdict that changes; ``progress("computing", done, all)`` is called by chunks.
     """
+    settle(connection)
     rules: Rules | None = None
     done = 0
     total = stale.count(connection) if progress is not None else 0
@@ -45,11 +48,14 @@ def drain(
         judge = [sample_id for sample_id, level in pending if level != DERIVE]
         derive = _ever_analysed(connection, derive)
         if derive:
-            recompute(connection, recompose(connection, derive), rules, cause, rewrite_composition=True)
+            held = held_columns(connection, rules.conventions)
+            recompute(connection, recompose(connection, derive, held), rules, cause, rewrite_composition=True)
         if judge:
             recompute(connection, loading.load_composition(connection, judge), rules, cause)
         stale.clear(connection, [sample_id for sample_id, _ in pending])
         done += len(pending)
+    if limit is None or not stale.pending(connection, 1):
+        refresh_groups(connection)
     return done
 
 
@@ -63,11 +69,13 @@ def _ever_analysed(connection: Any, sample_ids: Sequence[int]) -> list[int]:
 def refresh_registry(registry: Registry, everything: bool = False, cause: str = "refresh") -> int:
     """Recompute what is stale, or every sample; how many were done. Nothing stale: the registry is not even locked."""
     with reading(registry) as connection:
-        if not everything and not stale.pending(connection, 1):
+        waiting = bool(stale.pending(connection, 1)) or stale_groups.any_pending(connection)
+        if not everything and not waiting and not quality_rows.any_batch_named(connection):
             return 0
     with writing(registry, what="a refresh") as connection:
         if everything:
             stale.mark_all(connection)
+            stale_groups.mark_all(connection)
         return drain(connection, cause)
 
 
@@ -81,8 +89,8 @@ def changes_since(connection: Any, change_id: int) -> int:
     return bulk.count_verdict_changes(connection, change_id)
 
 
-def recompose(connection: Any, sample_ids: Sequence[int]) -> loading.Composition:
-    """The composition of samples, chosen anew from their active results."""
+def recompose(connection: Any, sample_ids: Sequence[int], held: np.ndarray | None = None) -> loading.Composition:
+    """The composition of samples, chosen anew from their active results, without those of ``held`` batch columns."""
     ids = np.asarray(sorted(sample_ids), dtype=np.int64)
     blocks = [
         Block(
@@ -93,7 +101,7 @@ def recompose(connection: Any, sample_ids: Sequence[int]) -> loading.Composition
             block.newness,
             block.repeat,
         )
-        for block in loading.load_blocks(connection, ids)
+        for block in loading.load_blocks(connection, ids, held)
     ]
     return composed(ids, blocks)
 
@@ -104,28 +112,37 @@ def composed(ids: np.ndarray, blocks: Sequence[Block]) -> loading.Composition:
     return loading.Composition(ids, values, qualifiers, digestions)
 
 
-def recompute(
-    connection: Any,
-    composition: loading.Composition,
-    rules: Rules,
-    cause: str,
-    *,
-    rewrite_composition: bool = False,
-    log_changes: bool = True,
-) -> Computed:
-    """Derive and judge one chunk of samples and write all of it; the computed arrays."""
+def chunk_of(connection: Any, composition: loading.Composition) -> Chunk:
+    """The chunk of samples that the pipeline takes: their composition and what is known around them."""
     ids = composition.sample_ids
     context = sample_context.load_context(connection, ids)
-    chunk = Chunk(ids, composition.values, composition.qualifiers, composition.digestions, context)
+    return Chunk(ids, composition.values, composition.qualifiers, composition.digestions, context)
+
+
+def recompute(
+    connection: Any, composition: loading.Composition, rules: Rules, cause: str, *, rewrite_composition: bool = False
+) -> None:
+    """Derive and judge one chunk of samples, write all of it and log the verdicts that changed."""
+    chunk = chunk_of(connection, composition)
     computed = compute(chunk, rules.definitions, rules.conventions)
     if rewrite_composition:
-        bulk.write_composition(connection, ids, composition.values, composition.qualifiers, composition.digestions)
-    write_computed(connection, ids, computed, rules, cause if log_changes else None)
-    return computed
+        bulk.write_composition(connection, chunk.sample_id, chunk.values, chunk.qualifiers, chunk.digestions)
+        stale_groups.mark_of_samples(connection, chunk.sample_id)
+    before = bulk.verdicts_of(connection, chunk.sample_id)
+    write_computed(connection, chunk.sample_id, computed, rules)
+    bulk.log_verdict_changes(connection, before, bulk.verdicts_of(connection, chunk.sample_id), cause, now())
 
 
-def write_computed(connection: Any, ids: np.ndarray, computed: Computed, rules: Rules, cause: str | None) -> None:
-    """Write derived rows and verdicts; with a ``cause`` the verdicts that changed are logged (a first one is not)."""
+def write_fresh(connection: Any, chunk: Chunk, computed: Computed, rules: Rules) -> None:
+    """Write composition, derived rows and verdicts of samples that had none: first verdicts are no changes."""
+    ids = chunk.sample_id
+    bulk.write_composition(connection, ids, chunk.values, chunk.qualifiers, chunk.digestions, fresh=True)
+    write_computed(connection, ids, computed, rules, fresh=True)
+    stale_groups.mark_of_samples(connection, ids)
+
+
+def write_computed(connection: Any, ids: np.ndarray, computed: Computed, rules: Rules, fresh: bool = False) -> None:
+    """Write derived rows and verdicts; ``fresh``: there are none yet."""
     bulk.write_derived(
         connection,
         ids,
@@ -136,12 +153,7 @@ def write_computed(connection: Any, ids: np.ndarray, computed: Computed, rules: 
         str(METHOD_VERSION),
         best_target=computed.best_target,
         best_verdict=computed.best_verdict,
+        fresh=fresh,
     )
-    before = bulk.verdicts_of(connection, ids) if cause is not None else {}
-    bulk.write_verdicts(
-        connection,
-        ids,
-        [(rules.target_ids[code], rules.version_ids[code], verdicts) for code, verdicts in computed.verdicts.items()],
-    )
-    if cause is not None:
-        bulk.log_verdict_changes(connection, before, bulk.verdicts_of(connection, ids), cause, now())
+    judged = [(rules.target_ids[code], rules.version_ids[code], part) for code, part in computed.verdicts.items()]
+    bulk.write_verdicts(connection, ids, judged, fresh=fresh)

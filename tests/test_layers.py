@@ -239,6 +239,8 @@ def test_layers_forward_arrow_passes(path: str, source: str) -> None:
 def test_modules_stay_short() -> None:
     found = []
     for name in PYTHON_FILES:
+        if name.startswith("migrations/versions/"):
+            continue  # one revision is one step of the schema's history, however many tables it makes
         lines = (ROOT / name).read_text(encoding="utf-8").count("\n")
         limit = LONGEST_TEST_MODULE_LINES if name.startswith("tests/") else LONGEST_MODULE_LINES
         if lines > limit:

@@ -95,7 +95,7 @@ _SHALLOW = _whole_words(SHALLOW_INTRUSION_WORDS)
 _DESTROYED = _whole_words(DESTROYED_MAGNETITE_WORDS)
 
 
-def _plain(text: object) -> str:
+def plain_text(text: object) -> str:
     """Lower case, negated words taken out; an empty text for anything that is not a text."""
     if not isinstance(text, str):
         return ""
@@ -103,7 +103,7 @@ def _plain(text: object) -> str:
 
 
 def _read_rock(lithology: object, texture: object) -> tuple[bool, bool, bool, bool, bool, bool]:
-    text = f"{_plain(lithology)} ; {_plain(texture)}"
+    text = f"{plain_text(lithology)} ; {plain_text(texture)}"
     extrusive = bool(_ERUPTION.search(text)) or (bool(_LAVA.search(text)) and not _SHALLOW.search(text))
     blank = not any(isinstance(word, str) and word.strip() for word in (lithology, texture))
     return (
@@ -145,6 +145,6 @@ def logged_words(
     flags = np.array([_read_rock(*pair) for pair in rocks], dtype=np.bool_).reshape(-1, len(LOGGED_NAMES))
     result = dict(zip(LOGGED_NAMES, flags[rock_codes].T, strict=True))
     alteration_codes, alterations = _codes(alteration)
-    destroyed = np.array([bool(_DESTROYED.search(_plain(text))) for text in alterations], dtype=np.bool_)
+    destroyed = np.array([bool(_DESTROYED.search(plain_text(text))) for text in alterations], dtype=np.bool_)
     result["logged_destroyed_magnetite"] = result["logged_destroyed_magnetite"] | destroyed[alteration_codes]
     return result

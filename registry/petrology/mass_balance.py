@@ -8,72 +8,45 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import ArrayLike
 
-from registry.petrology.constants import molar_mass
 from registry.petrology.melt_composition import Array
+from registry.petrology.minerals import BALANCED_OXIDES, mineral_composition_wt
 
-#: Oxides that are balanced, all iron as FeO.
-BALANCED_OXIDES = (
-    "sio2_wt", "tio2_wt", "al2o3_wt", "feot_wt", "mno_wt", "mgo_wt", "cao_wt", "na2o_wt", "k2o_wt", "p2o5_wt",
-)  # fmt: skip
-_FORMULA = {
-    "sio2_wt": "SiO2", "tio2_wt": "TiO2", "al2o3_wt": "Al2O3", "feot_wt": "FeO", "mno_wt": "MnO", "mgo_wt": "MgO",
-    "cao_wt": "CaO", "na2o_wt": "Na2O", "k2o_wt": "K2O", "p2o5_wt": "P2O5",
-}  # fmt: skip
-#: Stoichiometric minerals by mol of oxide a formula unit (OH left out); compositions common in magmas, by formula.
-MINERALS: Mapping[str, Mapping[str, float]] = {
-    "olivine_fo80": {"mgo_wt": 1.6, "feot_wt": 0.4, "sio2_wt": 1.0},
-    "clinopyroxene": {"cao_wt": 0.9, "mgo_wt": 0.8, "feot_wt": 0.25, "al2o3_wt": 0.05, "sio2_wt": 1.95},
-    "orthopyroxene_en75": {"mgo_wt": 1.5, "feot_wt": 0.5, "sio2_wt": 2.0},
-    "plagioclase_an70": {"cao_wt": 0.7, "na2o_wt": 0.15, "al2o3_wt": 0.85, "sio2_wt": 2.3},
-    "plagioclase_an30": {"cao_wt": 0.3, "na2o_wt": 0.35, "al2o3_wt": 0.65, "sio2_wt": 2.7},
-    "alkali_feldspar": {"k2o_wt": 0.35, "na2o_wt": 0.15, "al2o3_wt": 0.5, "sio2_wt": 3.0},
-    "quartz": {"sio2_wt": 1.0},
-    "hornblende": {
-        "cao_wt": 1.8,
-        "na2o_wt": 0.3,
-        "mgo_wt": 3.0,
-        "feot_wt": 1.6,
-        "al2o3_wt": 1.0,
-        "tio2_wt": 0.2,
-        "sio2_wt": 6.4,
-    },
-    "biotite": {"k2o_wt": 0.5, "mgo_wt": 1.5, "feot_wt": 1.2, "al2o3_wt": 0.65, "tio2_wt": 0.2, "sio2_wt": 2.75},
-    "magnetite": {"feot_wt": 3.0},
-    "ilmenite": {"feot_wt": 1.0, "tio2_wt": 1.0},
-    "apatite": {"cao_wt": 10.0 / 3.0, "p2o5_wt": 1.0},
-}
 _ENTRY_TOLERANCE = 1e-10
 #: Rounds of the active-set iteration allowed for each column.
 _ROUNDS_PER_COLUMN = 30
+#: Residual sums of squares below which a fit is good, and fair (common practice, no source).
+GOOD_MISFIT_WT2, FAIR_MISFIT_WT2 = 1.0, 4.0
 
 
 @dataclass(frozen=True)
 class MassBalance:
     """Liquid left (fraction of the parent's mass), minerals taken out (fractions), and the misfit.
 
-    ``residuals`` by oxide in wt% (parent less model); ``residual_sum_of_squares`` in wt%2: below about 1 the fit is
-    usually taken as good (common practice).
+    ``residuals`` by oxide in wt% (parent less model); ``residual_sum_of_squares`` in wt%2. ``decided`` False where
+    the minerals alone make the daughter with a good fit: then any share of liquid fits and the fraction says nothing.
     """
 
     liquid_fraction: float
     minerals: Mapping[str, float]
     residuals: Mapping[str, float]
     residual_sum_of_squares: float
+    decided: bool
 
-
-def mineral_composition_wt(name: str) -> dict[str, float]:
-    """wt% of the balanced oxides in a mineral of the table, closed to 100. ValueError for a name not in it."""
-    if name not in MINERALS:
-        raise ValueError(f"mass balance: no mineral '{name}'; the table holds {sorted(MINERALS)}")
-    masses = {oxide: moles * molar_mass(_FORMULA[oxide]) for oxide, moles in MINERALS[name].items()}
-    total = sum(masses.values())
-    return {oxide: 100.0 * masses.get(oxide, 0.0) / total for oxide in BALANCED_OXIDES}
+    @property
+    def quality(self) -> str:
+        """``good`` below 1 wt%2, ``fair`` below 4, else ``poor`` (common practice, no source)."""
+        misfit = self.residual_sum_of_squares
+        return "good" if misfit < GOOD_MISFIT_WT2 else "fair" if misfit < FAIR_MISFIT_WT2 else "poor"
 
 
 def balance_fractionation(
-    parent_wt: Mapping[str, float], daughter_wt: Mapping[str, float], minerals: Sequence[str]
+    parent_wt: Mapping[str, float],
+    daughter_wt: Mapping[str, float],
+    minerals: Sequence[str] | Mapping[str, Mapping[str, float]],
 ) -> MassBalance:
     """Fit parent = F daughter + sum of minerals with no negative amount, by least squares over the balanced oxides.
+
+    ``minerals`` are names of the table of minerals, or compositions (wt% by oxide, closed to 100) by name.
 
     Parent and daughter are closed to 100 here (all iron as FeO) before the fit; MnO, TiO2 and P2O5 may be left out of
     both. Source [bryan1969]; non-negative least squares [lawson1974] chapter 23. ValueError where an oxide is missing
@@ -83,15 +56,18 @@ def balance_fractionation(
     parent, daughter = (
         _closed(rock, oxides, name) for rock, name in ((parent_wt, "parent"), (daughter_wt, "daughter"))
     )
-    columns = [daughter, *(np.array([mineral_composition_wt(name)[oxide] for oxide in oxides]) for name in minerals)]
+    phases = minerals if isinstance(minerals, Mapping) else {name: mineral_composition_wt(name) for name in minerals}
+    columns = [daughter, *(np.array([phase[oxide] for oxide in oxides]) for phase in phases.values())]
     matrix = np.column_stack(columns)
     amounts = non_negative_least_squares(matrix, parent)
     residual = parent - matrix @ amounts
+    alone = daughter - matrix[:, 1:] @ non_negative_least_squares(matrix[:, 1:], daughter)
     return MassBalance(
         liquid_fraction=float(amounts[0]),
-        minerals=dict(zip(minerals, amounts[1:].tolist(), strict=True)),
+        minerals=dict(zip(phases, amounts[1:].tolist(), strict=True)),
         residuals=dict(zip(oxides, residual.tolist(), strict=True)),
         residual_sum_of_squares=float(residual @ residual),
+        decided=float(alone @ alone) >= GOOD_MISFIT_WT2,
     )
 
 
@@ -107,6 +83,8 @@ def non_negative_least_squares(matrix: ArrayLike, target: ArrayLike) -> Array:
     if not (np.isfinite(a).all() and np.isfinite(b).all()):
         raise ValueError("least squares: a value is missing or infinite; give finite numbers only")
     x = np.zeros(a.shape[1])
+    if x.size == 0:
+        return x
     free = np.zeros(a.shape[1], dtype=bool)
     scale = _ENTRY_TOLERANCE * max(1.0, float(np.abs(a.T @ b).max(initial=0.0)))
     for _ in range(_ROUNDS_PER_COLUMN * a.shape[1]):

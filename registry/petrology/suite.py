@@ -1,4 +1,4 @@
-"""How far the rocks of one intrusion are fractionated or what part of a source they melted from.
+"""How far the rocks of one intrusion are fractionated and what part of a source they melted from.
 
 A suite is a small set of samples (rows). Concentrations are keyed by column name; NaN is missing.
 """
@@ -13,36 +13,36 @@ from numpy.typing import ArrayLike
 
 from registry.petrology.melt_composition import Array, positive
 from registry.petrology.melting import batch_melt_fraction, rayleigh_liquid_fraction
+from registry.petrology.suite_trend import FEWEST_SAMPLES, rank_correlation
 
-#: Elements taken as incompatible (D near zero) in basic to intermediate suites, common practice, no source.
+#: Elements that may be incompatible (D near zero); each suite shows which of them are. Common practice, no source.
 INCOMPATIBLE_COLUMNS = (
-    "th_ppm",
-    "nb_ppm",
-    "la_ppm",
-    "zr_ppm",
-    "u_ppm",
-    "ta_ppm",
-    "hf_ppm",
-    "ce_ppm",
-    "rb_ppm",
-    "k2o_wt",
-)
+    "th_ppm", "nb_ppm", "la_ppm", "zr_ppm", "u_ppm", "ta_ppm", "hf_ppm", "ce_ppm", "nd_ppm", "rb_ppm", "k2o_wt",
+)  # fmt: skip
 #: The best of them: how many elements that rise most steadily are used.
 _BEST_ELEMENTS = 4
-_FEWEST_SAMPLES = 4
+#: Least rank correlation with the index of differentiation of an element that rises (common practice, no source).
+_LEAST_RISE = 0.3
+#: Bulk partition coefficients of melting spinel lherzolite [workman2005], from memory.
+LHERZOLITE_D = {
+    "th_ppm": 0.001, "u_ppm": 0.0011, "nb_ppm": 0.0034, "ta_ppm": 0.0034, "la_ppm": 0.01, "ce_ppm": 0.022,
+    "nd_ppm": 0.031, "zr_ppm": 0.033, "hf_ppm": 0.035,
+}  # fmt: skip
 
 
-def most_primitive_sample(mgo_wt: ArrayLike, sio2_wt: ArrayLike, not_a_liquid: ArrayLike) -> int | None:
-    """Row of the most primitive liquid of a suite: greatest MgO, then least SiO2; None where there is none.
+def most_primitive_sample(
+    mg_number: ArrayLike, mgo_wt: ArrayLike, sio2_wt: ArrayLike, may_be_parent: ArrayLike
+) -> int | None:
+    """Row of the most primitive liquid of a suite, None where there is none; arrays (n,), oxides volatile-free wt%.
 
-    Arrays (n,): anhydrous wt%, and whether a sample is no liquid (cumulates never are parents). Common practice.
+    Greatest Mg-number (all iron as FeO), then greatest MgO, then least SiO2, among the rows that ``may_be_parent``
+    (fit, unaltered, no cumulate, no control). Common practice, no source.
     """
-    mgo = np.where(np.asarray(not_a_liquid, dtype=bool), np.nan, np.asarray(mgo_wt, dtype=np.float64))
-    sio2 = np.asarray(sio2_wt, dtype=np.float64)
-    known = np.flatnonzero(~np.isnan(mgo) & ~np.isnan(sio2))
+    mg, mgo, sio2 = (np.asarray(values, dtype=np.float64) for values in (mg_number, mgo_wt, sio2_wt))
+    known = np.flatnonzero(np.asarray(may_be_parent, dtype=bool) & ~np.isnan(mg) & ~np.isnan(mgo) & ~np.isnan(sio2))
     if known.size == 0:
         return None
-    order = np.lexsort((sio2[known], -mgo[known]))
+    order = np.lexsort((sio2[known], -mgo[known], -mg[known]))
     return int(known[order[0]])
 
 
@@ -61,17 +61,21 @@ def rayleigh_fractions(
     parent: int,
     partition_coefficients: Mapping[str, float] | None = None,
     columns: Sequence[str] = INCOMPATIBLE_COLUMNS,
+    rises_with: ArrayLike | None = None,
 ) -> LiquidFractions:
     """Rayleigh liquid fraction of every sample of a suite against its parent row, median, least and greatest.
 
-    ``concentrations`` arrays (n,) by column; bulk ``partition_coefficients`` default to 0 (then F is a minimum of
-    crystallisation). The elements used are at most four of ``columns``, those whose logarithms rise together best:
-    the highest median correlation with the others. NaN where an element is below the parent's or missing.
-    Source [rayleigh1896]; the choice of elements is common practice.
+    ``concentrations`` arrays (n,) by column; bulk ``partition_coefficients`` default to 0 (then F is a maximum, and
+    1 - F the least that crystallised). The elements are those of ``best_incompatible`` that the parent has. NaN where
+    an element is below the parent's or missing. Source [rayleigh1896].
     """
-    chosen = best_incompatible(concentrations, columns)
-    coefficients = partition_coefficients or {}
     n = len(next(iter(concentrations.values()))) if concentrations else 0  # type: ignore[arg-type]
+    chosen = tuple(
+        column
+        for column in best_incompatible(concentrations, columns, rises_with)
+        if not np.isnan(positive(concentrations[column])[parent])
+    )
+    coefficients = partition_coefficients or {}
     if not chosen:
         empty = np.full(n, np.nan)
         return LiquidFractions(empty, empty.copy(), empty.copy(), ())
@@ -83,24 +87,34 @@ def rayleigh_fractions(
 
 
 def best_incompatible(
-    concentrations: Mapping[str, ArrayLike], columns: Sequence[str] = INCOMPATIBLE_COLUMNS
+    concentrations: Mapping[str, ArrayLike],
+    columns: Sequence[str] = INCOMPATIBLE_COLUMNS,
+    rises_with: ArrayLike | None = None,
 ) -> tuple[str, ...]:
-    """At most four columns whose logarithms rise together best (highest median correlation), best first.
+    """At most four columns whose logarithms rise together one for one, best first.
 
-    Columns with fewer than four numbers or without spread are left out; with one usable column it is that one.
+    Wholly incompatible elements rise alike: against each other their logarithms have slope 1. Each pair scores its
+    correlation less how far the slope (ratio of the standard deviations) is from 1, |ln slope|; an element scores the
+    median over the others and is used above 0. Columns with fewer than four numbers or without spread are left out,
+    and, where ``rises_with`` (n,) is given (an index of differentiation), those whose rank correlation with it is
+    below 0.3: what falls is no incompatible element in this suite. With one usable column it is that one.
+    Common practice, no source.
     """
     usable = []
     for column in columns:
         if column in concentrations:
             logs = np.log(positive(concentrations[column]))
             known = logs[~np.isnan(logs)]
-            if known.size >= _FEWEST_SAMPLES and np.ptp(known) > 0.0:
-                usable.append((column, logs))
+            if known.size < FEWEST_SAMPLES or np.ptp(known) == 0.0:
+                continue
+            if rises_with is not None and not rank_correlation(logs, rises_with) >= _LEAST_RISE:
+                continue
+            usable.append((column, logs))
     if len(usable) < 2:
         return tuple(column for column, _ in usable)
     scores = []
     for column, logs in usable:
-        others = [_correlation(logs, other) for name, other in usable if name != column]
+        others = [_agreement(logs, other) for name, other in usable if name != column]
         scores.append(float(np.median(others)))
     order = sorted(range(len(usable)), key=lambda position: -scores[position])
     return tuple(usable[position][0] for position in order[:_BEST_ELEMENTS] if scores[position] > 0.0)
@@ -127,29 +141,6 @@ def batch_melt_fractions(
     return LiquidFractions(*_median_and_ends(np.array(rows)), columns)
 
 
-@dataclass(frozen=True)
-class TrendQuality:
-    """How well a suite lies on one line of descent: squared correlation of log elements with silica, and n."""
-
-    r_squared: float
-    samples: int
-    word: str
-
-
-def trend_quality(sio2_wt: ArrayLike, fraction: ArrayLike) -> TrendQuality:
-    """Quality of a suite's trend: squared correlation of ln F (liquid left) with SiO2.
-
-    ``good`` from 0.8, ``fair`` from 0.5, ``poor`` below, ``too_few_samples`` under four (common practice).
-    """
-    logs, sio2 = np.log(positive(fraction)), np.asarray(sio2_wt, dtype=np.float64)
-    known = ~np.isnan(logs) & ~np.isnan(sio2)
-    count = int(known.sum())
-    if count < _FEWEST_SAMPLES:
-        return TrendQuality(float("nan"), count, "too_few_samples")
-    r_squared = _correlation(logs, sio2) ** 2
-    return TrendQuality(r_squared, count, "good" if r_squared >= 0.8 else "fair" if r_squared >= 0.5 else "poor")
-
-
 def _median_and_ends(rows: Array) -> tuple[Array, Array, Array]:
     ordered = np.sort(rows, axis=0)
     count = np.sum(~np.isnan(rows), axis=0)
@@ -158,8 +149,10 @@ def _median_and_ends(rows: Array) -> tuple[Array, Array, Array]:
     return 0.5 * (ordered[last // 2, at] + ordered[(last + 1) // 2, at]), ordered[0], ordered[last, at]
 
 
-def _correlation(first: Array, second: Array) -> float:
+def _agreement(first: Array, second: Array) -> float:
+    """Correlation less the distance of the slope from 1; -1 where the two share too few numbers or have no spread."""
     known = ~np.isnan(first) & ~np.isnan(second)
-    if known.sum() < 3 or np.ptp(first[known]) == 0.0 or np.ptp(second[known]) == 0.0:
-        return 0.0
-    return float(np.corrcoef(first[known], second[known])[0, 1])
+    if known.sum() < FEWEST_SAMPLES or np.ptp(first[known]) == 0.0 or np.ptp(second[known]) == 0.0:
+        return -1.0
+    one, two = first[known], second[known]
+    return float(np.corrcoef(one, two)[0, 1] - abs(np.log(np.std(one) / np.std(two))))

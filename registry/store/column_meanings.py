@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+from registry.store.group_meanings import GROUP_MEANINGS
+
 Words = tuple[str, str, str, str]
 _ENTERED, _COUNTED = "entered", "computed by the register"
 _SOURCE, _OWN = "as entered", "this register"
@@ -67,10 +69,33 @@ MEANINGS: dict[str, Words] = {
     "changed_at": _counted("text", "when, in UTC"),
     "verdict_from": _counted("text", "verdict before"),
     "verdict_to": _counted("text", "verdict after"),
-    "kind": _counted("text", "kind of control", "not yet computed"),
-    "expected": _counted("1", "expected value in the unit of the reference value", "not yet computed"),
-    "found": _counted("1", "value found", "not yet computed"),
-    "z": _counted("1", "distance from the expected value in its uncertainty", "not yet computed"),
+    "kind": _counted(
+        "text", "reference_material, blank, duplicate or lab_repeat", "sample list, certificate or code pattern"
+    ),
+    "expected": _counted(
+        "in the column unit",
+        "certified value; for a blank the content of its material; for a duplicate its original",
+        "converted to the analyte and unit of the column",
+    ),
+    "found": _entered("in the column unit", "value reported for the control"),
+    "z": (
+        "1",
+        "distance from the expected value in the deviation allowed; for a pair, in that of its difference",
+        "certificate's deviation, else with the Horwitz function; pairs by s_0 + k c",
+        "ISO 13528; Thompson & Howarth 1978",
+    ),
+    "material": _counted("text", "registered material the control is of", "as named, else found in the code"),
+    "limit_low": _counted("in the column unit", "lower limit: three deviations; for a pair, 99 % of good ones"),
+    "limit_high": _counted(
+        "in the column unit",
+        "upper limit: three deviations; for a pair, 99 % of good ones; for a blank, ten detection limits over its own",
+    ),
+    "rule": (
+        "text",
+        "the rule that was broken, or why nothing was judged",
+        "limits at two and three deviations and rules on runs, in line order",
+        "Shewhart 1931; Westgard et al. 1981",
+    ),
     "state": _counted("text", "state"),
     "lab": _entered("text", "laboratory"),
     "file_name": _entered("text", "name of the imported file"),
@@ -79,23 +104,10 @@ MEANINGS: dict[str, Words] = {
     "half_width_m": _entered("m", "radius, or half the thickness of a slab"),
     "age_ma": _entered("Ma", "age"),
     "samples": _counted("1", "number of samples from this intrusion", "counted"),
-    "trend_quality": _counted("text", "how well its samples form one series", "not yet computed"),
     "heat_flow_mw_m2": _entered("mW/m2", "surface heat flow"),
     "surface_temperature_c": _entered("degC", "mean temperature of the ground surface"),
     "conductivity_w_m_k": _entered("W/(m K)", "thermal conductivity of the crust"),
     "heat_production_depth_m": _entered("m", "depth scale of crustal heat production"),
-    "mantle_heat_flow_mw_m2": _counted("mW/m2", "heat flow from below the crust", "not yet computed"),
-    "wet_granite_solidus_depth_km": _counted("km", "depth where wet granite would melt", "not yet computed"),
-    "geotherm_cause": _counted("text", "why the geotherm is not computed", "not yet computed"),
-    "model": _counted("text", "model of the suite", "not yet computed"),
-    "quality": _counted("text", "how well the model fits", "not yet computed"),
-    "quantity": _counted("text", "what the model gives", "not yet computed"),
-    "reference_sample": _counted("text", "fresh rock compared with", "not yet computed"),
-    "component": _counted("text", "oxide or element", "not yet computed"),
-    "change_wt": _counted("wt%", "gain or loss", "not yet computed"),
-    "change_percent": _counted("%", "gain or loss relative to the fresh rock", "not yet computed"),
-    "isocon_slope": _counted("1", "slope of the isocon", "not yet computed"),
-    "immobile_components": _counted("text", "components the isocon was drawn through", "not yet computed"),
     "view_name": _counted("text", "view"),
     "unit": _counted("text", "unit of the value"),
     "meaning": _counted("text", "what the column says"),
@@ -111,7 +123,8 @@ BY_VIEW: dict[tuple[str, str], Words] = {
     ("result_sheet", "value"): _entered("in the column unit", "value as reported; with a qualifier, the limit"),
     ("result_sheet", "unit"): _entered("text", "unit of the value as reported"),
     ("batch_sheet", "state"): _counted("text", "active, superseded or withdrawn; only active ones count"),
-    ("control_sheet", "state"): _counted("text", "passed, warned or failed", "not yet computed"),
+    ("control_sheet", "state"): _counted("text", "passed, warned, failed or not judged", "rules on the controls"),
+    ("control_sheet", "source"): _counted("text", "where the expected value and its deviation are from", "certificate"),
     ("verdict_sheet", "provisional"): _counted("1", "1 where any threshold it rests on is provisional"),
     ("reason_sheet", "value"): _counted("in the criterion's unit", "value the criterion was asked of"),
     ("reason_sheet", "source"): _counted("text", "where the threshold is from", "target definition"),
@@ -119,10 +132,7 @@ BY_VIEW: dict[tuple[str, str], Words] = {
     ("warning_sheet", "text"): _counted("text", "the remark in words, with its number"),
     ("change_sheet", "cause"): _counted("text", "batch, edit, setting or version that changed it"),
     ("area_sheet", "heat_production_uw_m3"): _entered("uW/m3", "crustal heat production at the surface"),
-    ("intrusion_sheet", "heat_x_thickness_mw_m2"): _counted(
-        "mW/m2", "heat production times thickness, the mean of its samples", "mean of heat_x_thickness of its samples"
-    ),
-    ("suite_sheet", "unit"): _counted("text", "unit of the value", "not yet computed"),
+    **GROUP_MEANINGS,
     ("column_guide", "method"): _counted("text", "how the value comes about"),
     ("column_guide", "unit"): _counted("text", "unit; text for words, 1 for pure numbers"),
 }

@@ -19,6 +19,9 @@ CONTROL_KINDS = ("reference_material", "blank", "duplicate")
 VERDICT_WORDS = ("favourable", "possible", "unfavourable", "undecided")
 #: Outcome words by the letter of the packed reasons.
 OUTCOME_WORDS = {"m": "met", "r": "near", "n": "not met", "u": "unknown"}
+#: Words for the state of one control result, and of an analyte in a batch, by stored code.
+CONTROL_STATE_WORDS = ("not judged", "passed", "warned", "failed")
+ANALYTE_STATE_WORDS = ("passes", "passes with remarks", "fails")
 
 VOLATILE_FREE_COLUMNS = _names(
     "sio2_vf_wt tio2_vf_wt al2o3_vf_wt fe2o3_vf_wt feo_vf_wt feot_vf_wt mno_vf_wt mgo_vf_wt cao_vf_wt "
@@ -134,7 +137,9 @@ SHEETS: dict[str, tuple[str, ...]] = {
     "warning_sheet": _per_sample("code column_name value text"),
     "cause_sheet": _per_sample("column_name cause text"),
     "change_sheet": _per_sample("target changed_at verdict_from verdict_to cause"),
-    "control_sheet": _names("batch analyte kind expected found z state"),
+    "control_sheet": _names(
+        "batch analyte kind expected found z state line_no sample_code material limit_low limit_high rule source"
+    ),
     "batch_sheet": _names("batch lab state file_name sha256"),
     "intrusion_sheet": _names(
         "intrusion area shape half_width_m age_ma theta_centre theta_centre_low theta_centre_high "
@@ -142,7 +147,10 @@ SHEETS: dict[str, tuple[str, ...]] = {
     ),
     "area_sheet": _names(
         "area heat_flow_mw_m2 surface_temperature_c conductivity_w_m_k heat_production_uw_m3 "
-        "heat_production_depth_m mantle_heat_flow_mw_m2 wet_granite_solidus_depth_km geotherm_cause"
+        "heat_production_depth_m mantle_heat_flow_mw_m2 wet_granite_solidus_depth_km geotherm_cause moho_depth_m "
+        "crust_heating_needed_c crust_heating_depth_km crust_decompression crust_water moho_temperature_c "
+        "mantle_heating_needed_c mantle_water_needed_wt dry_peridotite_solidus_depth_km mantle_decompression "
+        "mantle_decompression_needed_gpa mantle_decompression_depth_km mantle_cause"
     ),
     "suite_sheet": _names("intrusion model quantity value unit quality cause"),
     "mass_change_sheet": _per_sample(

@@ -173,9 +173,7 @@ GROUP_RULES = (
         _watched("shape half_width_m volume_km3 depth_to_top_m age_ma age_sigma_ma parent_sample fresh_sample"),
         ("INSERT", "UPDATE"),
     ),
-    GroupRule(
-        "setting", "q.intrusion_id", "intrusion AS q", "{row}.name IS NOT NULL", 1, _watched("name value")
-    ),
+    GroupRule("setting", "q.intrusion_id", "intrusion AS q", "{row}.name IS NOT NULL", 1, _watched("name value")),
     GroupRule(
         "area",
         "q.area_id",

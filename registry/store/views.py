@@ -7,11 +7,13 @@ from typing import Any
 
 import sqlalchemy as sa
 
-from registry.petrology.analytes import CHOSEN_COLUMNS, QUALIFIER_SIGNS
+from registry.petrology.analytes import ANALYTES, CHOSEN_COLUMNS, QUALIFIER_SIGNS
+from registry.petrology.mass_change import COMPONENT_COLUMNS
 from registry.store import dialect_postgresql, dialect_sqlite, tables
 from registry.store.sheets import (
     BODY_COLUMNS,
     CONTROL_KINDS,
+    CONTROL_STATE_WORDS,
     DERIVED_COLUMNS,
     DERIVED_SHEETS,
     OUTCOME_WORDS,
@@ -23,6 +25,7 @@ _SITE = "LEFT JOIN site AS k ON k.site_id = s.site_id"
 _INTRUSION = "LEFT JOIN intrusion AS i ON i.intrusion_id = s.intrusion_id"
 _COMPOSITION = "LEFT JOIN composition AS c ON c.sample_id = s.sample_id"
 _DERIVED = "LEFT JOIN derived AS d ON d.sample_id = s.sample_id"
+_COLUMN_OF_ANALYTE = {symbol: analyte.column for symbol, analyte in ANALYTES.items() if analyte.column is not None}
 #: How the packed reasons begin a text that names what would have to be known.
 _LACKING = "missing: "
 _JUDGED = "s.kind NOT IN (" + ", ".join(f"'{kind}'" for kind in CONTROL_KINDS) + ")"
@@ -163,7 +166,8 @@ def _expanded_sheets(
         "warning_sheet": (
             {**sample, "code": "w.code", "column_name": "w.column_name", "value": value, "text": said},
             f"derived AS d JOIN sample AS s ON s.sample_id = d.sample_id {_COMPOSITION} JOIN warning_kind AS w ON "
-            "substr(d.warnings, CAST(w.position AS integer) + 1, 1) = '1'",
+            f"substr(d.warnings, CAST(w.position AS integer) + 1, 1) = '1' UNION ALL {_far_samples(sample)} "
+            f"UNION ALL {_failed_controls(sample)}",
         ),
         "cause_sheet": (
             {**sample, "column_name": "q.name", "cause": "w.code", "text": "w.text"},
@@ -171,6 +175,40 @@ def _expanded_sheets(
             f"JOIN cause_kind AS w ON w.letter = {letter} AND w.code <> 'value_present'",
         ),
     }
+
+
+def _far_samples(sample: dict[str, str]) -> str:
+    """The remarks on samples far from the rest of their intrusion, as rows of the warning sheet."""
+    said = {
+        **sample,
+        "code": "'chemistry_far_from_intrusion'",
+        "column_name": "'intrusion'",
+        "value": "o.distance",
+        "text": "o.text",
+    }
+    columns = ", ".join(said[column] for column in SHEETS["warning_sheet"])
+    return f"SELECT {columns} FROM suite_outlier AS o JOIN sample AS s ON s.sample_id = o.sample_id"
+
+
+def _failed_controls(sample: dict[str, str]) -> str:
+    """The remarks on values whose analyte failed its control in their batch, by the convention ``failed_control``."""
+    held = "EXISTS (SELECT 1 FROM setting AS g WHERE g.name = 'convention.failed_control' AND g.value = '\"hold\"')"
+    ignored = held.replace("hold", "ignore")
+    said = {
+        **sample,
+        "code": "'failed_control'",
+        "column_name": f"coalesce({_words('b.analyte', _COLUMN_OF_ANALYTE)}, b.analyte)",
+        "value": "r.value",
+        "text": "b.analyte || ' failed its control in batch ' || h.code || "
+        f"CASE WHEN {held} THEN ' and is held out of the composition: ' ELSE ': ' END || f.remarks",
+    }
+    columns = ", ".join(said[column] for column in SHEETS["warning_sheet"])
+    return (
+        f"SELECT {columns} FROM control_state AS f JOIN batch AS h ON h.batch_id = f.batch_id AND h.state = 'active' "
+        "JOIN batch_column AS b ON b.batch_column_id = f.column_id JOIN aliquot AS a ON a.batch_id = f.batch_id "
+        f"JOIN sample AS s ON s.sample_id = a.sample_id AND {_JUDGED} JOIN result AS r ON r.aliquot_id = a.aliquot_id "
+        f"AND r.column_id = f.column_id AND r.value IS NOT NULL WHERE f.state = 2 AND NOT {ignored}"
+    )
 
 
 def _place_of(column: str) -> str | None:
@@ -186,13 +224,12 @@ def _is_text(column: sa.Column[Any]) -> bool:
 
 
 def _register_sheets(dialect: Any, sample: dict[str, str]) -> dict[str, tuple[dict[str, str], str]]:
-    """What was entered: results, batches, intrusions, areas; and the sheets whose methods come later."""
-    number, text = dialect.NULL_NUMBER, dialect.NULL_TEXT
-    nothing = "(SELECT 1 AS one) AS n WHERE 1 = 0"
-    of_body = f"sample AS s JOIN derived AS d ON d.sample_id = s.sample_id AND {_JUDGED} "
-    of_body += "WHERE s.intrusion_id = i.intrusion_id"
+    """Results, batches and controls; intrusions, areas, suites and altered samples with what was computed of them."""
+    components = " UNION ALL ".join(
+        f"SELECT {position} AS position, '{column}' AS component" for position, column in enumerate(COMPONENT_COLUMNS)
+    )
+    change_wt = dialect.packed_number("m.changes", "wt", "q.position")
     signs = {code: sign for code, sign in enumerate(QUALIFIER_SIGNS) if sign}
-    later = {column: number for column in ("change_wt", "change_percent", "isocon_slope", "quantity", "value", "z")}
     return {
         "result_sheet": (
             {
@@ -209,35 +246,53 @@ def _register_sheets(dialect: Any, sample: dict[str, str]) -> dict[str, tuple[di
         ),
         "batch_sheet": ({"batch": "h.code", **_each("h", "lab state file_name sha256")}, "batch AS h"),
         "control_sheet": (
-            {**{column: text for column in SHEETS["control_sheet"]}, "expected": number, "found": number, "z": number},
-            nothing,
+            {
+                **_each("o", "kind expected found z material limit_low limit_high rule source"),
+                "batch": "h.code",
+                "analyte": "b.analyte",
+                "state": _words("o.state", dict(enumerate(CONTROL_STATE_WORDS))),
+                "line_no": "a.line_no",
+                "sample_code": "s.code",
+            },
+            "control_outcome AS o JOIN batch AS h ON h.batch_id = o.batch_id JOIN batch_column AS b ON "
+            "b.batch_column_id = o.column_id JOIN aliquot AS a ON a.aliquot_id = o.aliquot_id "
+            "JOIN sample AS s ON s.sample_id = a.sample_id",
         ),
         "intrusion_sheet": (
             {
                 **_each("i", "shape half_width_m age_ma"),
-                **{name: f"(SELECT max(d.{name}) FROM {of_body})" for name in BODY_COLUMNS[:3]},
+                **_each("e", (*BODY_COLUMNS, "trend_quality")),
                 "intrusion": "i.name",
                 "area": "a.name",
-                "heat_x_thickness_mw_m2": f"(SELECT avg(d.heat_x_thickness_mw_m2) FROM {of_body})",
                 "samples": "(SELECT count(*) FROM sample AS s WHERE s.intrusion_id = i.intrusion_id)",
-                "trend_quality": text,
             },
-            "intrusion AS i LEFT JOIN area AS a ON a.area_id = i.area_id",
+            "intrusion AS i LEFT JOIN area AS a ON a.area_id = i.area_id "
+            "LEFT JOIN intrusion_derived AS e ON e.intrusion_id = i.intrusion_id",
         ),
         "area_sheet": (
             {
-                **_each("a", SHEETS["area_sheet"][1:6]),
+                **_each("e", SHEETS["area_sheet"][6:]),
+                **_each("a", (*SHEETS["area_sheet"][1:6], "moho_depth_m")),
                 "area": "a.name",
-                "mantle_heat_flow_mw_m2": number,
-                "wet_granite_solidus_depth_km": number,
-                "geotherm_cause": "'not_yet_computed'",
+                "geotherm_cause": "CASE WHEN e.area_id IS NULL THEN 'not_yet_computed' ELSE e.geotherm_cause END",
             },
-            "area AS a",
+            "area AS a LEFT JOIN area_derived AS e ON e.area_id = a.area_id",
         ),
-        "suite_sheet": ({**{column: text for column in SHEETS["suite_sheet"]}, "value": number}, nothing),
+        "suite_sheet": (
+            {**_each("r", SHEETS["suite_sheet"][1:]), "intrusion": "i.name"},
+            "suite_row AS r JOIN intrusion AS i ON i.intrusion_id = r.intrusion_id",
+        ),
         "mass_change_sheet": (
-            {**{column: text for column in SHEETS["mass_change_sheet"]}, **later, **sample},
-            "sample AS s WHERE 1 = 0",
+            {
+                **_each("m", "reference_sample isocon_slope immobile_components cause"),
+                **sample,
+                "component": "q.component",
+                "change_wt": change_wt,
+                "change_percent": dialect.packed_number("m.changes", "percent", "q.position"),
+            },
+            # a sample without an isocon has one row that says why
+            f"mass_change AS m JOIN sample AS s ON s.sample_id = m.sample_id LEFT JOIN ({components}) AS q ON "
+            f"m.cause IS NULL AND {change_wt} IS NOT NULL",
         ),
         "column_guide": (_each("g", SHEETS["column_guide"]), "column_guide_row AS g"),
     }

@@ -38,6 +38,8 @@ TOPICS = (
     "ascent",
     "heat",
     "fitness",
+    "consistency",
+    "logged",
 )
 
 #: Causes that any quantity can have; a method adds its own. The letter stands in ``derived.causes``.
