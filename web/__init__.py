@@ -1,28 +1,52 @@
-"""The site: pages over one registry, read without ever writing to it."""
+"""The site: pages over one registry; what changes it goes through the use cases, from this machine alone."""
 
 from __future__ import annotations
 
 import secrets
+import zlib
+from typing import Any
 
 from flask import Flask
 from flask_wtf import CSRFProtect
 
 from registry.store.reading.session import open_for_reading
-from web import batches, errors, methods, numbers, pictures, places, sample, samples, security, targets, wording
+from web import (
+    batches,
+    errors,
+    importing,
+    methods,
+    numbers,
+    pictures,
+    places,
+    sample,
+    samples,
+    security,
+    targets,
+    wording,
+    writing,
+)
 
 __all__ = ["create_app"]
 
 
-def create_app(registry_path_or_url: str) -> Flask:
+def create_app(registry_path_or_url: str, writable: bool = False, drafts: Any = None) -> Flask:
     """The Flask application over the registry at a path or SQLAlchemy URL.
+
+    ``writable``: whether the pages may change the registry (there are no accounts: only where this machine alone can
+    ask). ``drafts`` is the folder for files on their way in; None: the user's own.
 
     Raises the sentence of ``open_registry`` where there is no registry or it is of another version.
     """
     app = Flask(__name__)
-    # Signs nothing that outlives the process: no page keeps a session yet.
+    # Signs nothing that outlives the process: the session holds the token of the forms only.
     app.config["SECRET_KEY"] = secrets.token_bytes(32)
+    # Cookies know no ports: two registries served on one machine must not take each other's.
+    app.config["SESSION_COOKIE_NAME"] = f"plutonbook-{zlib.crc32(registry_path_or_url.encode()):08x}"
+    app.config["SESSION_COOKIE_SAMESITE"] = "Strict"
+    app.config["WTF_CSRF_TIME_LIMIT"] = None
     app.extensions["registry"] = open_for_reading(registry_path_or_url)
     app.jinja_env.trim_blocks = app.jinja_env.lstrip_blocks = True
+    writing.guard(app, writable)
     CSRFProtect(app)
     security.protect(app)
     numbers.register(app)
@@ -31,4 +55,5 @@ def create_app(registry_path_or_url: str) -> Flask:
     errors.register(app)
     for part in (samples, sample, batches, targets, methods, places):
         app.register_blueprint(part.blueprint)
+    importing.register(app, drafts)
     return app

@@ -5,7 +5,7 @@ from __future__ import annotations
 from flask import Flask, Response, render_template, request
 from werkzeug.exceptions import HTTPException, SecurityError
 
-from registry.errors import PlutonbookError, RegistryBusy
+from registry.errors import NotFound, PlutonbookError, RegistryBusy
 
 
 class Missing(Exception):
@@ -28,7 +28,8 @@ def _http(fault: HTTPException) -> tuple[str, int, dict[str, str]]:
     known = {
         404: f"This site has no page at {request.path}.",
         405: f"The page at {request.path} can only be read; nothing is sent to it.",
-        413: "What was sent is too large.",
+        413: "What was sent is larger than the 200 MB that this page takes. Send fewer files at once, or read a large "
+        "file on the command line: plutonbook import FILE.",
     }
     status = fault.code or 500
     headers = {}
@@ -50,7 +51,11 @@ def _busy(fault: RegistryBusy) -> tuple[str, int]:
 
 
 def _refused(fault: PlutonbookError) -> tuple[str, int]:
-    return _page(400, "This could not be shown", str(fault))
+    sentence = str(fault)
+    sentence = sentence[:1].upper() + sentence[1:]
+    if isinstance(fault, NotFound):
+        return _page(404, "Not found", sentence)
+    return _page(400, "This could not be done" if request.method == "POST" else "This could not be shown", sentence)
 
 
 def _unexpected(fault: Exception) -> tuple[str, int]:

@@ -17,7 +17,7 @@ def serve(registry: str, host: str, port: int, announce: Callable[[str], object]
 
     ``port`` 0 takes a free one. OSError where the port cannot be used.
     """
-    app = create_app(registry)
+    app = create_app(registry, writable=host in LOOPBACK)
     if host in LOOPBACK:
         # a page of another site whose name was pointed at this machine is refused
         app.config["TRUSTED_HOSTS"] = ["localhost", "127.0.0.1", "[::1]"]

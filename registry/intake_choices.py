@@ -1,0 +1,149 @@
+"""What was understood of a file, as plain words and lists that a page can show and that a person can correct."""
+
+from __future__ import annotations
+
+from collections.abc import Mapping, Sequence
+from dataclasses import dataclass, replace
+from typing import Any
+
+from registry.intake import KINDS, ColumnChoice, Reading, Recipe
+from registry.intake.units import CANONICAL_UNITS
+from registry.petrology.analytes import ANALYTES, CHOSEN_INDEX, WT_PERCENT_PER_UNIT
+from registry.petrology.digestion import (
+    CARRIES,
+    DIGESTION_CODE,
+    DIGESTION_WORDS,
+    DIGESTIONS,
+    MINIMUM,
+    REFUSED,
+    settle_unknown,
+)
+
+KIND_NAMES = KINDS
+UNIT_NAMES = CANONICAL_UNITS
+ANALYTE_NAMES = tuple(ANALYTES)
+TIMES = "\N{MULTIPLICATION SIGN}"
+DIGESTION_NAMES = tuple(name for name in DIGESTIONS if name and name != "unknown_without_silica")
+
+
+@dataclass(frozen=True)
+class ColumnWish:
+    """What a person says of one column."""
+
+    header: str
+    analyte: str
+    unit: str
+    method: str
+    digestion: str
+    ignore: bool
+
+
+def describe_reading(reading: Reading) -> dict[str, Any]:
+    """A reading as JSON values: kind, rows, sentences, problems, columns with how each is used, and its recipe."""
+    table, master = reading.results, reading.master
+    silica = table is not None and any(column.analyte == "SiO2" for column in table.columns)
+    columns = [
+        {
+            "header": column.header,
+            "analyte": column.analyte,
+            "unit": column.unit,
+            "method": column.method or "",
+            "digestion": column.digestion,
+            "detection_limit": column.detection_limit,
+            "ignore": False,
+            "use": use_words(column.analyte, column.unit, column.digestion, silica),
+        }
+        for column in (table.columns if table is not None else ())
+    ]
+    return {
+        "kind": reading.kind,
+        "part": reading.part,
+        "rows": len(table) if table is not None else len(master) if master is not None else 0,
+        "ok": reading.ok,
+        "understood": [text for text in reading.understood if not text.startswith("column '") or " is " not in text],
+        "problems": [problem.as_dict() for problem in reading.problems],
+        "refused_rows": len(reading.refused_lines),
+        "whole_file_refused": reading.whole_file_refused,
+        "columns": columns,
+        "read": list(master.columns) if master is not None else [],
+        "ignored": list(table.ignored if table is not None else master.ignored if master is not None else ()),
+        "sample_header": table.sample_header if table is not None else None,
+        "certificate": table.certificate if table is not None else None,
+        "lab": table.lab if table is not None else None,
+        "recipe": None if reading.recipe is None else reading.recipe.to_json(),
+    }
+
+
+def use_words(analyte: str, unit: str, digestion: str, reports_silica: bool) -> str:
+    """How a column enters the composition: its place, the conversion, and what its digestion makes of it."""
+    known = ANALYTES.get(analyte)
+    if known is None or unit not in WT_PERCENT_PER_UNIT:
+        return ""
+    if known.column is None:
+        return "kept as a result only"
+    factor = WT_PERCENT_PER_UNIT[unit] / WT_PERCENT_PER_UNIT[known.unit] * known.factor
+    words = known.column + ("" if abs(factor - 1.0) < 1e-9 else f" = value {TIMES} {factor:.4g}")
+    code = int(settle_unknown(DIGESTION_CODE[digestion], reports_silica))
+    carried = int(CARRIES[code, CHOSEN_INDEX[known.column]])
+    if carried == REFUSED:
+        return f"not used: {DIGESTION_WORDS[code]} does not carry it"
+    return words + (f"; a minimum by {DIGESTION_WORDS[code]}" if carried == MINIMUM else "")
+
+
+def ignored_columns(recipe: str | None, shown: Sequence[Mapping[str, Any]]) -> list[dict[str, Any]]:
+    """The columns that a recipe leaves out, in the same form as those shown, so that they can be taken in again."""
+    if recipe is None:
+        return []
+    known = {column["header"] for column in shown}
+    return [
+        {
+            "header": header,
+            "analyte": choice.analyte or "",
+            "unit": choice.unit or "",
+            "method": choice.method or "",
+            "digestion": choice.digestion or "unknown",
+            "detection_limit": None,
+            "ignore": choice.ignore,
+            "use": "left out" if choice.ignore else "no results in it",
+        }
+        for header, choice in Recipe.from_json(recipe).columns.items()
+        if header not in known
+    ]
+
+
+def recipe_from(made: str | None, chosen: str | None) -> Recipe:
+    """The recipe of a reading (JSON) with the settings of the one it was read with; an empty one for none."""
+    recipe = Recipe() if made is None else Recipe.from_json(made)
+    given = Recipe() if chosen is None else Recipe.from_json(chosen)
+    return replace(
+        recipe,
+        columns={**recipe.columns, **given.columns},
+        shape=recipe.shape or given.shape,
+        sample_header=given.sample_header or recipe.sample_header,
+        separator=given.separator,
+        decimal=given.decimal,
+    )
+
+
+def corrected_recipe(
+    recipe: Recipe, wishes: Sequence[ColumnWish], sample_header: str, separator: str, decimal: str
+) -> Recipe:
+    """The recipe of a reading with what a person says of its columns put in; empty words leave it to the intake."""
+    columns = {
+        wish.header: ColumnChoice(
+            wish.analyte or None, wish.unit or None, wish.method or None, wish.digestion or None, wish.ignore
+        )
+        for wish in wishes
+    }
+    return replace(
+        recipe,
+        columns={**recipe.columns, **columns},
+        sample_header=sample_header or recipe.sample_header,
+        separator=separator or None,
+        decimal=decimal or None,
+    )
+
+
+def recipe_text(recipe: Recipe) -> str:
+    """A recipe as JSON."""
+    return recipe.to_json()

@@ -1,0 +1,157 @@
+"""The import form: from what a person sent to the choices of a draft, and from a draft to what the page shows."""
+
+from __future__ import annotations
+
+import re
+from collections.abc import Mapping, Sequence
+from typing import Any
+
+from werkzeug.datastructures import MultiDict
+
+from registry.import_drafts import Draft, DraftFile
+from registry.intake_choices import ColumnWish, corrected_recipe, ignored_columns, recipe_from, recipe_text
+
+SEPARATORS = {"": "as understood", ",": "comma", ";": "semicolon", "\t": "tab", "|": "vertical bar"}
+DECIMALS = {"": "as understood", ".": "point", ",": "comma"}
+DIPS = {"": "negative, as is usual", "down": "positive downwards (they are turned)", "up": "positive upwards"}
+#: What the command line calls a thing, and where it stands on this page.
+_PAGE_WORDS = (
+    (re.compile(r"use --add-to (.+?)(?=, else|$)"), r"choose “a further part of” \1 below"),
+    (re.compile(r"use --supersede"), "choose “it corrects an earlier certificate” below"),
+    (re.compile(r"use --create-samples( to add it with the kind 'unknown')?"), "tick “Add unknown samples” below"),
+    (re.compile(r"in a (reading )?recipe"), "in the columns below"),
+    (re.compile(r"correct the recipe"), "correct it in the columns below"),
+    (re.compile(r"name the kind when importing the file"), "choose under “What it holds”"),
+    (re.compile(r"name the one to read"), "choose it under “Sheet or part”"),
+    (re.compile(r"--add-to names"), "this is to be added to"),
+    (re.compile(r"--supersede: "), "nothing to correct: "),
+    (re.compile(r"without --supersede"), "as a certificate of its own"),
+    (re.compile(r"with --batch|--batch"), "under “Batch code” below"),
+    (re.compile(r"'plutonbook batches' lists the batches"), "see under Batches"),
+    (re.compile(r"use 'plutonbook restore-batch (.+?)' to let it count again"), r"restore batch \1 on its page"),
+)
+
+
+def page_words(text: str | None) -> str:
+    """A sentence of the import with the options of the command line said as the fields of the page."""
+    text = text or ""
+    for pattern, words in _PAGE_WORDS:
+        text = pattern.sub(words, text)
+    return text[:1].upper() + text[1:]
+
+
+def take_options(draft: Draft, form: Mapping[str, str]) -> bool:
+    """Put the options of the form into the draft; True if any is another than before."""
+    place = form.get("place", "new")
+    options = {
+        "batch": form.get("batch", "").strip() or None,
+        "lab": form.get("lab", "").strip() or None,
+        "code_prefix": form.get("code_prefix", "").strip(),
+        "create_samples": "create_samples" in form,
+        "keep_going": "keep_going" in form,
+        "supersede": place == "supersede",
+        "add_to": (form.get("add_to") or None) if place == "add" else None,
+    }
+    changed = any((draft.options.get(name) or None) != (value or None) for name, value in options.items())
+    draft.options = options
+    return changed
+
+
+def take_choices(file: DraftFile, number: int, form: MultiDict[str, str]) -> bool:
+    """Put what the form says of one file into it; True if anything is another than shown."""
+    if f"kind-{number}" not in form:
+        return False
+    before = (file.kind, file.recipe, file.sheet, file.negative_means_below, file.positive_dips, file.unit)
+    looked = file.looked or {}
+    kind = form.get(f"kind-{number}") or None
+    if kind != looked.get("kind"):
+        file.kind = kind
+    sheet = form.get(f"sheet-{number}") or None
+    if sheet != file.sheet:
+        file.sheet, file.recipe, file.recipe_name = sheet, None, None
+    file.negative_means_below = f"negative-{number}" in form
+    file.positive_dips = form.get(f"dips-{number}") or None
+    file.unit = form.get(f"unit-{number}") or None
+    if sheet == before[2]:
+        _take_recipe(file, number, form)
+    return before != (
+        file.kind, file.recipe, file.sheet, file.negative_means_below, file.positive_dips, file.unit,
+    )  # fmt: skip
+
+
+def _take_recipe(file: DraftFile, number: int, form: MultiDict[str, str]) -> None:
+    shown = {column["header"]: column for column in shown_columns(file)}
+    fill = form.get(f"fill-{number}", "")
+    wishes, changed = [], False
+    fields = ("header", "analyte", "unit_of", "method", "digestion", "which")
+    rows = zip(*(form.getlist(f"{field}-{number}") for field in fields), strict=False)
+    for header, analyte, unit, method, digestion, which in rows:
+        ignore = f"ignore-{number}-{which}" in form
+        if digestion == "unknown" and fill:
+            digestion = fill
+        wish = ColumnWish(header, analyte.strip(), unit, method.strip(), digestion, ignore)
+        wishes.append(wish)
+        said = shown.get(header)
+        changed |= said is None or (wish.analyte, wish.unit, wish.method, wish.digestion, wish.ignore) != (
+            said["analyte"], said["unit"], said["method"], said["digestion"], said["ignore"],
+        )  # fmt: skip
+    recipe = current_recipe(file)
+    said = {"sample_header": code_column(file), "separator": recipe.separator or "", "decimal": recipe.decimal or ""}
+    wanted = {name: form.get(f"{name}-{number}", said[name]) for name in said}
+    if changed or wanted != said:
+        file.recipe = recipe_text(corrected_recipe(recipe, wishes, **wanted))
+
+
+def current_recipe(file: DraftFile) -> Any:
+    """The recipe that a file was last read with, completed by what was understood."""
+    return recipe_from((file.looked or {}).get("recipe"), file.recipe)
+
+
+def code_column(file: DraftFile) -> str:
+    return (file.looked or {}).get("sample_header") or ""
+
+
+def shown_columns(file: DraftFile) -> list[dict[str, Any]]:
+    """The columns of a file of results as the page lists them: those read, then those left out."""
+    columns = list((file.looked or {}).get("columns", ()))
+    return columns + ignored_columns(file.recipe, columns)
+
+
+def grouped_problems(problems: Sequence[Mapping[str, Any]]) -> list[dict[str, Any]]:
+    """Equal faults together: what, what was expected and what to do once, and each place with what was found there."""
+    groups: dict[tuple[Any, ...], dict[str, Any]] = {}
+    for problem in problems:
+        key = (problem["severity"], problem["what"], problem["expected"], problem["remedy"])
+        group = groups.setdefault(
+            key,
+            {
+                "severity": problem["severity"],
+                "what": page_words(problem["what"]),
+                "expected": problem["expected"],
+                "remedy": page_words(problem["remedy"]),
+                "places": [],
+            },
+        )
+        place = {name: problem[name] for name in ("row", "column", "found")}
+        if any(value is not None for value in place.values()):
+            group["places"].append(place)
+    return list(groups.values())
+
+
+def problems_of(draft: Draft, file: DraftFile, severity: str) -> list[dict[str, Any]]:
+    """The faults of one file, those found on reading it and those found on storing it, grouped."""
+    looked = list((file.looked or {}).get("problems", ()))
+    stored = [problem for problem in draft.problems if _is_of(problem["file"], file.name)]
+    every = looked + [problem for problem in stored if problem not in looked]
+    return grouped_problems([problem for problem in every if problem["severity"] == severity])
+
+
+def other_problems(draft: Draft) -> list[dict[str, Any]]:
+    """Faults that name none of the files."""
+    return grouped_problems(
+        [p for p in draft.problems if not any(_is_of(p["file"], file.name) for file in draft.files)]
+    )
+
+
+def _is_of(named: str, file: str) -> bool:
+    return named == file or named.startswith(f"{file} [")

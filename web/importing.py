@@ -1,0 +1,226 @@
+"""Importing: files are sent, shown as they were understood, corrected, and stored in the background."""
+
+from __future__ import annotations
+
+from typing import Any
+
+from flask import Blueprint, Flask, abort, current_app, jsonify, redirect, render_template, request, url_for
+from werkzeug.datastructures import FileStorage
+
+from registry import reading_recipes
+from registry.errors import PlutonbookError
+from registry.import_drafts import DONE, Draft, DraftFolder, state_folder
+from registry.import_jobs import ImportJobs
+from registry.intake_choices import ANALYTE_NAMES, DIGESTION_NAMES, KIND_NAMES, UNIT_NAMES
+from registry.store.reading import batches as batches_reading
+from registry.store.reading import targets as targets_reading
+from registry.store.reading.session import query_only
+from web import import_form
+from web.errors import Missing
+
+blueprint = Blueprint("importing", __name__)
+LARGEST_UPLOAD_BYTES = 200 * 1024 * 1024
+#: A quick import is shown as done at once; a longer one shows its progress.
+PATIENCE_S = 1.5
+MOST_FILES = 50
+STATE_WORDS = {
+    "waiting": "waiting", "reading": "being read", "read": "read, not stored", "storing": "being stored",
+    "done": "stored", "refused": "has problems", "failed": "failed",
+}  # fmt: skip
+
+
+def register(app: Flask, drafts: Any = None) -> None:
+    """Keep the drafts of the application's registry in a folder (``drafts``, else the user's own) and run its jobs."""
+    registry = app.extensions["registry"]
+    folder = DraftFolder(drafts or state_folder(registry.url))
+    app.extensions["imports"] = ImportJobs(registry, folder)
+    app.config["MAX_CONTENT_LENGTH"] = LARGEST_UPLOAD_BYTES
+    # a table of 2,000 columns has some 12,000 fields
+    app.config["MAX_FORM_PARTS"] = 50_000
+    app.config["MAX_FORM_MEMORY_SIZE"] = 8 * 1024 * 1024
+    app.jinja_env.filters["page_words"] = import_form.page_words
+    app.jinja_env.globals["state_words"] = lambda state: STATE_WORDS[state]
+    app.register_blueprint(blueprint)
+
+
+def _jobs() -> ImportJobs:
+    jobs: ImportJobs = current_app.extensions["imports"]
+    return jobs
+
+
+def _found(draft_id: str) -> Draft:
+    draft = _jobs().find(draft_id)
+    if draft is None:
+        raise Missing("import", draft_id, [("Import", url_for("importing.start"))])
+    return draft
+
+
+@blueprint.get("/import")
+def start() -> Any:
+    jobs = _jobs()
+    saved = reading_recipes.list_recipes(jobs.registry)
+    drafts = jobs.all() if current_app.config["WRITABLE"] else []
+    return render_template(
+        "import.html", section="Import", drafts=drafts, saved=saved, limit=LARGEST_UPLOAD_BYTES, kinds=KIND_NAMES
+    )
+
+
+@blueprint.post("/import")
+def send() -> Any:
+    sent = [file for file in request.files.getlist("files") if file.filename]
+    if not sent:
+        abort(400, "No file was chosen. Go back, choose at least one and send it again.")
+    if len(sent) > MOST_FILES:
+        abort(400, f"At most {MOST_FILES} files are taken at once; {len(sent)} were sent.")
+    jobs = _jobs()
+    draft = jobs.folder.create([(file.filename or "", _writer(file)) for file in sent])
+    kind = request.form.get("kind")
+    for file in draft.files:
+        file.kind = kind if kind in KIND_NAMES else None
+    jobs.look(draft)
+    return _shown_soon(draft)
+
+
+def _writer(file: FileStorage) -> Any:
+    return lambda path: file.save(path)
+
+
+def _shown_soon(draft: Draft) -> Any:
+    _jobs().wait(draft.draft_id, PATIENCE_S)
+    return redirect(url_for("importing.page", draft_id=draft.draft_id), 303)
+
+
+@blueprint.post("/import/readings")
+def forget() -> Any:
+    reading_recipes.forget_recipe(_jobs().registry, request.form.get("name", ""))
+    return redirect(url_for("importing.start"), 303)
+
+
+@blueprint.get("/import/<draft_id>")
+def page(draft_id: str) -> Any:
+    return _page(_found(draft_id))
+
+
+def _page(draft: Draft, notice: str = "", fault: str = "") -> Any:
+    jobs = _jobs()
+    names, batches = {}, []
+    with query_only(jobs.registry) as connection:
+        if not draft.under_way:
+            names = targets_reading.target_names(connection)
+        if not draft.under_way and draft.state != DONE:
+            batches = [row["code"] for row in batches_reading.batch_list(connection) if row["state"] == "active"]
+    ended = draft.under_way or draft.state == DONE
+    files = [] if ended else [_file_view(draft, number) for number in range(len(draft.files))]
+    return render_template(
+        "import_draft.html",
+        section="Import",
+        draft=draft,
+        sentence=jobs.waits_for(draft),
+        files=files,
+        others=import_form.other_problems(draft),
+        target_names=names,
+        batches=batches,
+        notice=notice,
+        fault=fault,
+        kinds=KIND_NAMES,
+        units=UNIT_NAMES,
+        analytes=ANALYTE_NAMES,
+        digestions=DIGESTION_NAMES,
+        separators=import_form.SEPARATORS,
+        decimals=import_form.DECIMALS,
+        dips=import_form.DIPS,
+        keep_going_there=True,
+    )
+
+
+def _file_view(draft: Draft, number: int) -> dict[str, Any]:
+    file = draft.files[number]
+    looked = file.looked or {}
+    recipe = import_form.current_recipe(file)
+    return {
+        "number": number,
+        "file": file,
+        "looked": looked,
+        "problems": import_form.problems_of(draft, file, "problem"),
+        "warnings": import_form.problems_of(draft, file, "warning"),
+        "columns": import_form.shown_columns(file),
+        "code": import_form.code_column(file),
+        "headings": [heading for heading in dict.fromkeys(recipe.shape) if heading],
+        "recipe": recipe,
+        "sheets": file.parts,
+        "proposed": reading_recipes.proposed_names(_jobs().registry, recipe.shape),
+    }
+
+
+@blueprint.post("/import/<draft_id>")
+def change(draft_id: str) -> Any:
+    draft = _found(draft_id)
+    jobs, form = _jobs(), request.form
+    action, _, argument = form.get("do", "read").partition(":")
+    if draft.under_way or draft.state == DONE:
+        return redirect(url_for("importing.page", draft_id=draft_id), 303)
+    if action == "drop":
+        jobs.folder.delete(draft_id)
+        return redirect(url_for("importing.start"), 303)
+    changed = import_form.take_options(draft, form)
+    for number, file in enumerate(draft.files):
+        changed |= import_form.take_choices(file, number, form)
+    if action == "save":
+        return _save_reading(draft, argument)
+    if action in ("use", "plain"):
+        _use_reading(draft, argument, action == "use")
+    elif action == "store" and not changed:
+        jobs.store(draft)
+        return _shown_soon(draft)
+    jobs.look(draft)
+    return _shown_soon(draft)
+
+
+def _number(draft: Draft, text: str) -> int:
+    if not text.isdecimal() or int(text) >= len(draft.files):
+        abort(400, "The form names a file that is not part of this import.")
+    return int(text)
+
+
+def _use_reading(draft: Draft, argument: str, use: bool) -> None:
+    """Read a file with the saved reading chosen in its form, or without any."""
+    file = draft.files[number := _number(draft, argument)]
+    file.recipe_name = request.form.get(f"saved-{number}") if use else None
+    file.recipe = None
+    if file.recipe_name is not None:
+        file.recipe = reading_recipes.find_recipe(_jobs().registry, file.recipe_name).to_json()
+
+
+def _save_reading(draft: Draft, argument: str) -> Any:
+    """Keep the reading of one file under a name; what was changed is read again first, so that it is seen."""
+    file = draft.files[number := _number(draft, argument)]
+    name = " ".join(request.form.get(f"name-{number}", "").split())
+    jobs = _jobs()
+    try:
+        replaced = reading_recipes.save_recipe(jobs.registry, name, import_form.current_recipe(file))
+    except PlutonbookError as fault:
+        return _page(draft, fault=str(fault)), 400
+    file.recipe_name = name
+    jobs.look(draft)
+    jobs.wait(draft.draft_id, PATIENCE_S)
+    draft = _found(draft.draft_id)
+    if draft.under_way:
+        return redirect(url_for("importing.page", draft_id=draft.draft_id), 303)
+    said = "was replaced" if replaced else "is saved"
+    return _page(draft, notice=f"The reading “{name}” {said}; a file with the same headings will propose it.")
+
+
+@blueprint.get("/import/<draft_id>/state.json")
+def state(draft_id: str) -> Any:
+    draft = _jobs().find(draft_id)
+    if draft is None:
+        return jsonify(error=f"There is no import {draft_id}."), 404
+    return jsonify(
+        state=draft.state,
+        sentence=_jobs().waits_for(draft),
+        done=draft.done,
+        total=draft.total,
+        under_way=draft.under_way,
+        started_at=draft.started_at,
+        ended_at=draft.ended_at,
+    )
