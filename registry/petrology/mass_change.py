@@ -96,7 +96,8 @@ def component_changes(fresh: ArrayLike, altered: ArrayLike, slope: ArrayLike) ->
     """Gain (+) or loss (-) of components against the original rock: in the components' unit, and in % of the original.
 
     ``fresh`` (m,), ``altered`` (m, n), ``slope`` (n,): altered / slope - fresh, mass per mass of original rock. The
-    percentage is NaN where the fresh rock has none. Source [grant1986], equation 4 (from memory).
+    percentage is NaN where the fresh rock has none. Gresens' equation [gresens1967] in the form of [grant1986], from
+    memory: C altered = (M fresh / M altered) (C fresh + change).
     Example: fresh 2, altered 3, slope 0.75 -> +2.0, 100 %.
     """
     before = np.asarray(fresh, dtype=np.float64)[:, None]
