@@ -7,7 +7,8 @@ from pathlib import Path
 
 #: In the order in which they are imported; results by certificate.
 MASTER_FILES = (
-    "areas.csv", "sites.csv", "surveys.csv", "intervals.csv", "intrusions.csv", "samples.csv", "reference_materials.csv",
+    "areas.csv", "sites.csv", "surveys.csv", "intervals.csv", "intrusions.csv", "samples.csv",
+    "reference_materials.csv",
 )  # fmt: skip
 
 

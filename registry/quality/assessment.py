@@ -24,6 +24,9 @@ from registry.quality.substances import conversion
 REFERENCE, BLANK, DUPLICATE, LAB_REPEAT = "reference_material", "blank", "duplicate", "lab_repeat"
 #: Majors of a rock used as a blank are no contamination; sulphur is judged.
 _JUDGED_IN_WT = {"S", "SO3"}
+#: A certified value below so many detection limits is too close to them to be judged, unless the result is as far off.
+#: Common practice, no source.
+CLOSE_TO_LIMIT = 5.0
 
 
 @dataclass(frozen=True)
@@ -144,7 +147,7 @@ def _judge_column(
         material: expectation(column, values.get(material, ()))
         for material in {m for m in controls.materials.tolist() if m is not None}
     }
-    _judge_references(controls, outcome, signs, known, whole)
+    _judge_references(controls, outcome, signs, known, whole, limit)
     _judge_blanks(controls, outcome, signs, known, limit, controls.before[:, place])
     return _judge_duplicates(
         controls, outcome, signs, controls.partner[:, place], controls.partner_qualifiers[:, place], limit
@@ -157,6 +160,7 @@ def _judge_references(
     signs: NDArray[np.uint8],
     known: Mapping[str, Expectation | None],
     whole: bool,
+    limit: float,
 ) -> None:
     """z-scores in the order of the lines; the run rules over all materials and over each of its own."""
     rows = np.flatnonzero((controls.kinds == REFERENCE) & outcome.there)
@@ -178,6 +182,10 @@ def _judge_references(
         return
     # a result beyond the laboratory's limits says something only where the limit itself is already too far
     open_side = ((signs == QUALIFIER_BELOW) & (outcome.z > -2.0)) | ((signs == QUALIFIER_ABOVE) & (outcome.z < 2.0))
+    reach = CLOSE_TO_LIMIT * limit
+    close = rows[((outcome.expected < reach) & (np.abs(outcome.found - outcome.expected) <= reach))[rows]]
+    outcome.rules[close] = f"expected below {CLOSE_TO_LIMIT:g} detection limits"
+    outcome.z[close] = np.nan
     undecided = rows[open_side[rows]]
     outcome.rules[undecided] = "outside the laboratory's limits, compatible with the expected value"
     outcome.z[undecided] = np.nan

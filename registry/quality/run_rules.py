@@ -11,7 +11,7 @@ import math
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
 
-from registry.petrology.quotients import Floats
+from registry.petrology.quotients import Floats, floats, quotient
 from registry.quality.states import FAILED, PASSED, WARNED
 
 #: In the order in which a broken one is named: the strongest evidence first.
@@ -30,9 +30,8 @@ D2_OF_TWO = 2.0 / math.sqrt(math.pi)
 
 def z_scores(found: ArrayLike, expected: ArrayLike, deviation: ArrayLike) -> Floats:
     """(found - expected)/deviation, shape (n,), NaN where one is missing or the deviation is not above 0."""
-    spread = np.asarray(deviation, dtype=np.float64)
-    with np.errstate(invalid="ignore", divide="ignore"):
-        return (np.asarray(found, dtype=np.float64) - expected) / np.where(spread > 0.0, spread, np.nan)
+    value, centre, spread = floats(found, expected, deviation)
+    return quotient(value - centre, spread)
 
 
 def broken_rules(z: ArrayLike) -> dict[str, NDArray[np.bool_]]:

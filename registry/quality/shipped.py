@@ -2,7 +2,8 @@
 
 ``data/reference_materials.csv`` was copied second-hand from the publication named in each row, and tested: smooth rare
 earths, Nb/Ta, Zr/Hf, Y/Ho, oxide sums, and each uncertainty against Horwitz' function. Uncertainties that failed (more
-than twice it, or zero) were left out, which the note beside the value says. Compare with the certificate that came with
+than twice it, or zero) were left out, which the note beside the value says; values that were slips are not there.
+Compare with the certificate that came with
 the powder, and import that one: it goes before these.
 """
 

@@ -196,9 +196,7 @@ def set_kinds(connection: sa.Connection, kinds: dict[str, list[int]]) -> None:
     """Give samples another kind, by kind; a trigger marks them stale."""
     for kind, ids in kinds.items():
         for part in raw_rows.in_parts(ids, 500):
-            connection.execute(
-                sa.update(tables.sample).where(tables.sample.c.sample_id.in_(part)).values(kind=kind)
-            )
+            connection.execute(sa.update(tables.sample).where(tables.sample.c.sample_id.in_(part)).values(kind=kind))
 
 
 def set_originals(connection: sa.Connection, originals: dict[int, int]) -> None:
@@ -213,9 +211,10 @@ def set_originals(connection: sa.Connection, originals: dict[int, int]) -> None:
 
 
 def history(connection: sa.Connection, materials: Sequence[str]) -> list[tuple[Any, ...]]:
-    """Judged results of materials in active batches: (material, analyte, unit, lab, day, batch, line, found, expected, z).
+    """Judged results of materials in active batches, oldest first.
 
-    ``day`` is the date the batch was reported, else received, else imported; oldest first.
+    Each is (material, analyte, unit, lab, day, batch, line, found, expected, z); ``day`` is the date
+    the batch was reported, else received, else imported.
     """
     condition = "IN (SELECT value FROM json_each(?))" if raw_rows.is_sqlite(connection) else "= ANY(%s)"
     given: Any = json.dumps(list(materials)) if raw_rows.is_sqlite(connection) else list(materials)

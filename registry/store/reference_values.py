@@ -46,8 +46,9 @@ def upsert_values(connection: sa.Connection, rows: Sequence[Mapping[str, Any]]) 
             connection.execute(
                 sa.update(_value).where(_value.c.reference_value_id == before.reference_value_id).values(**said)
             )
+            about = f"{row['material']} {row['analyte']}"
             changed.changes += [
-                f"{row['material']} {row['analyte']}: {name} {_spelled(getattr(before, name))} -> {_spelled(said[name])}"
+                f"{about}: {name} {_spelled(getattr(before, name))} -> {_spelled(said[name])}"
                 for name in _SAID
                 if said[name] != getattr(before, name)
             ]

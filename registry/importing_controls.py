@@ -1,0 +1,76 @@
+"""What a file of results says of its control samples, and what its columns say of each other."""
+
+from __future__ import annotations
+
+from typing import Any
+
+import numpy as np
+
+from registry.controlling import kinds_of_new, read_patterns
+from registry.intake import ResultTable
+from registry.petrology.analytes import QUALIFIER_BELOW
+from registry.quality.assessment import Column
+from registry.quality.columns import disagreeing_columns
+from registry.quality.recognising import Spoken, read_control_text
+from registry.store import masters, quality_rows
+
+
+def spoken_of(codes: list[str], table: ResultTable, prefix: str) -> dict[str, Spoken]:
+    """What the certificate says of sample codes that it calls controls."""
+    if not any(table.control_text):
+        return {}
+    said: dict[str, Spoken] = {}
+    for code, text in zip(codes, table.control_text, strict=True):
+        spoken = read_control_text(text)
+        if spoken.kind is not None:
+            of = f"{prefix}{spoken.duplicate_of}" if spoken.duplicate_of else None
+            said.setdefault(code, Spoken(spoken.kind, of, spoken.stage))
+    return said
+
+
+def add_samples(connection: Any, missing: list[str], said: dict[str, Spoken], known: dict[str, int]) -> int:
+    """Add samples that the registry lacks, controls as such, link duplicates, fill ``known``; how many controls."""
+    kinds = kinds_of_new(missing, said, read_patterns(connection))
+    for kind, codes in kinds.items():
+        known.update(masters.add_samples(connection, codes, kind))
+    duplicates = {code: said[code].duplicate_of for code in kinds.get("duplicate", ()) if code in said}
+    originals = masters.sample_ids(connection, {of for of in duplicates.values() if of})
+    linked = {known[code]: originals[of] for code, of in duplicates.items() if of in originals and of != code}
+    quality_rows.set_originals(connection, linked)
+    return len(missing) - len(kinds.get("unknown", ()))
+
+
+def call_known_controls(connection: Any, said: dict[str, Spoken], known: dict[str, int], new: set[str]) -> None:
+    """Samples that were registered with the kind 'unknown' become the controls that the certificate calls them."""
+    codes = {code: spoken for code, spoken in said.items() if code not in new}
+    unknown = set(masters.samples_of_kinds(connection, ("unknown",)).tolist()) if codes else set()
+    kinds: dict[str, list[int]] = {}
+    for code, spoken in codes.items():
+        # a duplicate under the code of its original is a repeated line, not another sample
+        if known[code] in unknown and spoken.kind is not None and spoken.kind != "duplicate":
+            kinds.setdefault(spoken.kind, []).append(known[code])
+    quality_rows.set_kinds(connection, kinds)
+
+
+def limit_reported(values: np.ndarray, qualifiers: np.ndarray) -> float | None:
+    """The detection limit of a column as its own cells tell it: the limit that stands most often behind ``<``."""
+    limits = values[qualifiers == QUALIFIER_BELOW]
+    limits = limits[~np.isnan(limits)]
+    if not len(limits):
+        return None
+    distinct, counts = np.unique(limits, return_counts=True)
+    return float(distinct[counts.argmax()])
+
+
+def columns_that_disagree(table: ResultTable) -> list[str]:
+    """Sentences on columns of one metal that differ in the file (MnO beside Mn)."""
+    columns = [
+        Column(
+            place, column.analyte, column.unit, column.digestion,
+            column.detection_limit
+            if column.detection_limit is not None
+            else limit_reported(table.values[:, place], table.qualifiers[:, place]),
+        )
+        for place, column in enumerate(table.columns)
+    ]  # fmt: skip
+    return disagreeing_columns(columns, table.values, table.qualifiers, table.line_no)
