@@ -6,6 +6,7 @@ from pathlib import Path
 from typing import Any
 
 from registry.clock import now
+from registry.controlling import ship_reference_values
 from registry.errors import PlutonbookError
 from registry.judging import install_shipped_definitions
 from registry.refresh import refresh_registry
@@ -21,6 +22,7 @@ def found(path_or_url: str | Path, demo: bool = False) -> Registry:
 
     def fill(connection: Any) -> None:
         install_shipped_definitions(connection, tuple(load_definitions().values()))
+        ship_reference_values(connection)
         target_rows.write_setting(connection, "created_at", now())
         if demo:
             target_rows.write_setting(connection, DEMO_MARK, "1")
@@ -34,6 +36,7 @@ def bring_up_to_date(path_or_url: str | Path) -> dict[str, Any]:
 
     def fill(connection: Any) -> None:
         changed.extend(install_shipped_definitions(connection, tuple(load_definitions().values())))
+        ship_reference_values(connection)
 
     before, saved = schema.upgrade(path_or_url, fill)
     registry = open_registry(path_or_url)

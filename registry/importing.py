@@ -4,13 +4,15 @@ from __future__ import annotations
 
 from collections.abc import Callable, Mapping, Sequence
 from concurrent.futures import Future, ThreadPoolExecutor
-from dataclasses import asdict, dataclass, field
+from dataclasses import asdict, dataclass, field, replace
 from pathlib import Path
 from typing import Any
 
-from registry.errors import InputProblems, NotFound, PlutonbookError, Problem, UsageError
-from registry.importing_results import ResultsReport, store_results
-from registry.intake import KINDS, Reading, ReadingOptions, read_file
+from registry.errors import InputProblems, NotFound, Problem, UsageError
+from registry.importing_certificates import store_certificates
+from registry.importing_results import ResultsReport, store_results, unknown_codes
+from registry.intake import KINDS, MasterTable, Reading, ReadingOptions, read_file
+from registry.keeping_going import SetAside
 from registry.refresh import changes_since, drain, last_change
 from registry.store import batches, masters
 from registry.store.engine import Registry, writing
@@ -34,11 +36,6 @@ class ImportOptions:
     add_to: str | None = None
     code_prefix: str = ""
 
-    def refuse_what_is_not_there(self) -> None:
-        """UsageError for options that this version does not have yet, with what to do meanwhile."""
-        if self.keep_going:
-            raise UsageError("--keep-going is not there yet; correct the rows that are reported and import again")
-
 
 @dataclass(frozen=True)
 class FileChoice:
@@ -60,11 +57,15 @@ class FileReport:
     added: int = 0
     changes: list[str] = field(default_factory=list)
     results: ResultsReport | None = None
+    refused: int = 0
+    refused_file: str | None = None
 
     def lines(self) -> list[str]:
         lines = [f"{self.file}: {self.kind}, {_count(self.rows, 'row')}"]
         lines += [f"  understood: {sentence}" for sentence in self.understood]
         lines += [f"  remark: {sentence}" for sentence in self.remarks]
+        if self.refused:
+            lines.append(f"  refused: {_count(self.refused, 'row')}" + self._where_refused())
         if self.results is not None:
             lines += [f"  {sentence}" for sentence in self.results.lines()]
         else:
@@ -73,6 +74,12 @@ class FileReport:
             if len(self.changes) > 20:
                 lines.append(f"  ... and {len(self.changes) - 20:,} more changes")
         return lines
+
+    def _where_refused(self) -> str:
+        if self.refused_file is None:
+            return ""
+        text = f", saved with the reasons in {self.refused_file}; correct them there and import that file"
+        return text if self.results is None else f"{text} with --add-to '{self.results.batch}'"
 
 
 @dataclass
@@ -108,10 +115,15 @@ class ImportReport:
 
 @dataclass(frozen=True)
 class _File:
-    """The bytes of a file, and what they are compressed to."""
+    """A file, its bytes, and what they are compressed to."""
 
+    path: Path
     data: bytes
     compressed: Future[bytes]
+
+
+#: Certificates of reference materials go before the results that they judge.
+_ORDER = sorted(KINDS, key=lambda kind: kind == "results")
 
 
 class _NothingWritten(Exception):
@@ -139,24 +151,27 @@ def import_files(
     Raises InputProblems with every problem of every file (then nothing was written), NotFound for a missing file.
     """
     options = options or ImportOptions()
-    options.refuse_what_is_not_there()
     contents = [(path, _bytes_of(path)) for path in paths]
     with ThreadPoolExecutor(1) as pool:  # zlib works beside the reading: it needs no interpreter
-        files = [_File(data, pool.submit(batches.compress, data)) for _, data in contents]
+        files = [_File(path, data, pool.submit(batches.compress, data)) for path, data in contents]
         readings: list[tuple[Reading, _File]] = []
         for (path, data), file in zip(contents, files, strict=True):
             progress("reading", len(readings), len(paths))
             choice = (choices or {}).get(path, FileChoice())
-            reading = read_file(path.name, data, choice.kind or options.kind, choice.reading)
+            how = choice.reading or ReadingOptions()
+            if options.keep_going:
+                how = replace(how, listed=len(data))  # every row is told its own reason
+            reading = read_file(path.name, data, choice.kind or options.kind, how)
             if on_read is not None:
                 on_read(path, reading)
             readings.append((reading, file))
-    readings.sort(key=lambda pair: KINDS.index(pair[0].kind) if pair[0].kind in KINDS else len(KINDS))
+    readings.sort(key=lambda pair: _ORDER.index(pair[0].kind) if pair[0].kind in _ORDER else len(_ORDER))
+    asides = [SetAside.of(file.path, file.data, reading) if options.keep_going else None for reading, file in readings]
     unreadable = [problem for reading, _ in readings for problem in reading.problems if not reading.ok]
     report: ImportReport | None = None
     try:
-        with writing(registry, what=f"an import of {_count(len(paths), 'file')}", tell=tell) as connection:
-            report = _store(connection, readings, options, unreadable, progress)
+        with writing(registry, what=f"an import of {_count(len(paths), 'file')}", tell=tell, bulk=True) as connection:
+            report = _store(connection, readings, asides, options, unreadable, progress)
             if options.dry_run:
                 raise _NothingWritten
     except _NothingWritten:
@@ -168,6 +183,7 @@ def import_files(
 def _store(
     connection: Any,
     readings: Sequence[tuple[Reading, _File]],
+    asides: Sequence[SetAside | None],
     options: ImportOptions,
     problems: list[Problem],
     progress: Progress,
@@ -177,16 +193,20 @@ def _store(
     results = sum(reading.kind == "results" for reading, _ in readings)
     if options.batch and results > 1:
         raise UsageError(f"--batch names one batch, but {results} files hold results; import them one by one")
-    for reading, contents in readings:
+    for (reading, contents), aside in zip(readings, asides, strict=True):
         if problems:
             break  # what follows may name what a faulty file was to bring: its complaints would mislead
-        report, done, faults = _store_one(connection, reading, contents, options, progress)
+        report, done, faults = _store_one(connection, reading, contents, aside, options, progress)
         reports.append(report)
         computed += done
         problems = [*problems, *faults]
     if problems:
         raise InputProblems(problems)
     computed += drain(connection, cause=_cause(reports), progress=progress)
+    for report, aside in zip(reports, asides, strict=True):
+        if aside is not None and aside.reasons:
+            report.refused = len(aside.reasons)
+            report.refused_file = None if options.dry_run else str(aside.save())
     return ImportReport(
         reports,
         computed,
@@ -198,30 +218,50 @@ def _store(
 
 
 def _store_one(
-    connection: Any, reading: Reading, contents: _File, options: ImportOptions, progress: Progress
+    connection: Any,
+    reading: Reading,
+    contents: _File,
+    aside: SetAside | None,
+    options: ImportOptions,
+    progress: Progress,
 ) -> tuple[FileReport, int, list[Problem]]:
     """Store one good reading; its report, how many samples were computed, and the problems met on the way."""
     kind = reading.kind or ""
     remarks = [problem.sentence() for problem in reading.warnings]
     if reading.results is not None:
+        if aside is not None and not options.create_samples:
+            aside.add(unknown_codes(connection, reading.file, reading.results, options.code_prefix))
+            aside.drop()
         report = FileReport(reading.file, kind, len(reading.results), reading.understood, remarks)
         report.results, done, faults = store_results(
             connection, reading.file, reading.results, contents.data, contents.compressed, options, progress
         )
         return report, done, faults
-    if kind == "reference-materials":
-        raise PlutonbookError(
-            f"{reading.file}: certificates of reference materials cannot be imported yet; import the other files "
-            "without it"
-        )
     table = reading.master
     assert table is not None
     report = FileReport(reading.file, kind, len(table), reading.understood, remarks)
-    outcome = masters.upsert(connection, kind, _prefixed(table.rows, options.code_prefix), table.line_no, reading.file)
+    if kind == "reference-materials":
+        changed, faults = store_certificates(connection, table, reading.file)
+        report.added, report.changes = changed.added, changed.changes
+        return report, 0, faults
+    outcome = _upserted(connection, kind, table, reading.file, aside, options)
     report.added, report.changes = outcome.added, outcome.changes
     faults = [problem for problem in outcome.problems if problem.severity == "problem"]
     report.remarks += [problem.sentence() for problem in outcome.problems if problem.severity != "problem"]
     return report, 0, faults
+
+
+def _upserted(
+    connection: Any, kind: str, table: MasterTable, file: str, aside: SetAside | None, options: ImportOptions
+) -> masters.Outcome:
+    """Bring master data in; with ``aside`` the rows that have problems are set aside until the rest goes through."""
+    while True:
+        rows = _prefixed(table.rows, options.code_prefix)
+        outcome = masters.upsert(connection, kind, rows, table.line_no, file)
+        faults = [problem for problem in outcome.problems if problem.severity == "problem"]
+        if aside is None or not faults or aside.add(faults):
+            return outcome
+        aside.drop()
 
 
 def _prefixed(rows: dict[str, list[Any]], prefix: str) -> dict[str, list[Any]]:

@@ -3,20 +3,31 @@
 from __future__ import annotations
 
 import hashlib
-from collections.abc import Callable
+from collections.abc import Callable, Iterator
 from concurrent.futures import Future
-from dataclasses import dataclass
+from dataclasses import dataclass, field
 from pathlib import Path
 from typing import TYPE_CHECKING, Any
 
 import numpy as np
 
+from registry import controlling
 from registry.choice import Block, ColumnUse
 from registry.clock import now
+from registry.computing import WORTH_A_CHILD, Computations
 from registry.errors import Problem
+from registry.importing_controls import (
+    add_samples,
+    call_known_controls,
+    columns_that_disagree,
+    limit_reported,
+    spoken_of,
+)
 from registry.intake import ResultTable
-from registry.pipeline import CHUNK_SIZE
-from registry.refresh import recompute
+from registry.judging import read_rules
+from registry.pipeline import CHUNK_SIZE, Chunk
+from registry.quality.recognising import Spoken
+from registry.refresh import chunk_of, composed, write_fresh
 from registry.store import batches, bulk, loading, masters, stale
 
 if TYPE_CHECKING:
@@ -24,6 +35,8 @@ if TYPE_CHECKING:
 
 #: Lines of results stored between two reports of progress.
 LINES_AT_A_TIME = 8192
+#: Unknown sample codes that are listed one by one.
+LISTED_CODES = 20
 CONTROL_KINDS = ("reference_material", "blank", "duplicate")
 
 
@@ -37,15 +50,22 @@ class ResultsReport:
     censored: int
     new_samples: int
     repeats: int
+    new_controls: int = 0
+    controls: list[str] = field(default_factory=list)
+    remarks: list[str] = field(default_factory=list)
 
     def lines(self) -> list[str]:
         text = f"batch {self.batch}: {self.aliquots:,} lines, {self.results:,} results ({self.censored:,} censored)"
         if self.repeats:
             text += f", {self.repeats:,} repeated lines"
         lines = [text]
-        if self.new_samples:
-            lines.append(f"{self.new_samples:,} samples were added with the kind 'unknown'")
-        return lines
+        if self.new_samples > self.new_controls:
+            lines.append(f"{self.new_samples - self.new_controls:,} samples were added with the kind 'unknown'")
+        if self.new_controls:
+            lines.append(
+                f"{self.new_controls:,} control samples were added, as the certificate or their code calls them"
+            )
+        return [*lines, *(f"remark: {remark}" for remark in self.remarks), *self.controls]
 
 
 def store_results(
@@ -69,23 +89,29 @@ def store_results(
     missing = [sample for sample in dict.fromkeys(codes) if sample not in known]
     empty = ResultsReport(code, 0, 0, 0, 0, 0)
     if missing and not options.create_samples:
-        problems += _unknown_codes(connection, file, table, codes, known)
+        problems += _first_of(unknown_codes(connection, file, table, options.code_prefix), file)
     if problems:
         return empty, 0, problems
-    if missing:
-        known.update(masters.add_samples(connection, missing, "unknown"))
+    said = spoken_of(codes, table, options.code_prefix)
+    new_controls = add_samples(connection, missing, said, known) if missing else 0
+    call_known_controls(connection, said, known, set(missing))
     sample_ids = np.array([known[sample] for sample in codes], dtype=np.int64)
     fresh_ids = _without_results(connection, sample_ids)
-    batch_id, column_ids = _store_batch(connection, file, table, data, compressed.result(), place, options)
     repeat_no = _repeat_numbers(sample_ids)
-    with bulk.guarded(connection):
+    kinds = _aliquot_kinds(connection, sample_ids, repeat_no, codes, said)
+    controlled = "control" in kinds or bool((repeat_no > 0).any())
+    rules = read_rules(connection)
+    if controlled and rules.conventions.failed_control == "hold":
+        fresh_ids = fresh_ids[:0]  # what is held back is known once the controls are judged: the drain computes all
+    chunks = _fresh_chunks(connection, table, sample_ids, repeat_no, fresh_ids)
+    worth_a_child = len(fresh_ids) >= WORTH_A_CHILD
+    with (
+        bulk.guarded(connection),
+        Computations(chunks, rules.definitions, rules.conventions, worth_a_child) as computations,
+    ):
+        batch_id, column_ids = _store_batch(connection, file, table, data, compressed.result(), place, options)
         aliquot_ids = bulk.insert_aliquots(
-            connection,
-            sample_ids,
-            batch_id,
-            table.line_no,
-            _aliquot_kinds(connection, sample_ids, repeat_no),
-            repeat_no,
+            connection, sample_ids, batch_id, table.line_no, kinds, repeat_no, table.control_text if said else None
         )
         results = 0
         for start in range(0, len(aliquot_ids), LINES_AT_A_TIME):
@@ -93,13 +119,23 @@ def store_results(
             part = slice(start, start + LINES_AT_A_TIME)
             values, qualifiers = table.values[part], table.qualifiers[part]
             results += bulk.insert_results(connection, aliquot_ids[part], column_ids, values, qualifiers)
-        computed = _compute_fresh(connection, table, sample_ids, repeat_no, fresh_ids, progress)
+        done = 0
+        for chunk, computed in computations:
+            progress("computing", done, len(fresh_ids))
+            write_fresh(connection, chunk, computed, rules)
+            stale.clear(connection, chunk.sample_id.tolist())
+            done += len(chunk)
+    if controlled:
+        controlling.assess(connection, batch_id)
     if place.supersedes is not None:
         batches.supersede(connection, place.supersedes, batch_id)
     stale.mark(connection, np.setdiff1d(sample_ids, fresh_ids).tolist(), stale.DERIVE)
     censored = int((table.qualifiers > 0).sum())
-    report = ResultsReport(code, len(table), results, censored, len(missing), int((repeat_no > 0).sum()))
-    return report, computed, []
+    report = ResultsReport(code, len(table), results, censored, len(missing), int((repeat_no > 0).sum()), new_controls)
+    report.remarks = columns_that_disagree(table)
+    if controlled:
+        report.controls = controlling.state_of_batch(connection, batch_id)
+    return report, len(fresh_ids), []
 
 
 @dataclass(frozen=True)
@@ -165,14 +201,14 @@ def _successor(
     return _Place(batches.free_code(connection, code, " corrected "), supersedes=other["batch_id"]), []
 
 
-def _unknown_codes(
-    connection: Any, file: str, table: ResultTable, codes: list[str], known: dict[str, int]
-) -> list[Problem]:
-    listed = 20
+def unknown_codes(connection: Any, file: str, table: ResultTable, prefix: str = "") -> list[Problem]:
+    """One problem a line whose sample code is not in the registry, with a near code where there is one."""
+    codes = [f"{prefix}{code}" for code in table.sample_codes]
+    known = masters.sample_ids(connection, set(codes))
     rows = [position for position, code in enumerate(codes) if code not in known]
-    near = masters.near_codes(connection, [codes[position] for position in rows[:listed]])
+    near = masters.near_codes(connection, [codes[position] for position in rows[:LISTED_CODES]])
     problems = []
-    for position in rows[:listed]:
+    for position in rows:
         suggestion = near.get(codes[position])
         hint = f"did you mean '{suggestion}'? " if suggestion else ""
         problems.append(
@@ -186,15 +222,19 @@ def _unknown_codes(
                 remedy=hint + "import the sample list first, or use --create-samples to add it with the kind 'unknown'",
             )
         )
-    if len(rows) > listed:
-        problems.append(
-            Problem(
-                file,
-                f"{len(rows) - listed:,} more lines have sample codes that are not in the registry",
-                remedy="import the sample list first, or use --create-samples",
-            )
-        )
     return problems
+
+
+def _first_of(problems: list[Problem], file: str) -> list[Problem]:
+    """The first problems of many alike, and one that counts the rest."""
+    if len(problems) <= LISTED_CODES:
+        return problems
+    rest = Problem(
+        file,
+        f"{len(problems) - LISTED_CODES:,} more lines have sample codes that are not in the registry",
+        remedy="import the sample list first, or use --create-samples",
+    )
+    return [*problems[:LISTED_CODES], rest]
 
 
 def _store_batch(
@@ -228,9 +268,11 @@ def _store_batch(
                 "unit": column.unit,
                 "method": column.method,
                 "digestion": column.digestion,
-                "detection_limit": column.detection_limit,
+                "detection_limit": column.detection_limit
+                if column.detection_limit is not None
+                else limit_reported(table.values[:, place], table.qualifiers[:, place]),
             }
-            for column in table.columns
+            for place, column in enumerate(table.columns)
         ],
     )
     return batch_id, np.asarray(column_ids, dtype=np.int64)
@@ -253,30 +295,24 @@ def _repeat_numbers(sample_ids: np.ndarray) -> np.ndarray:
     return numbers
 
 
-def _aliquot_kinds(connection: Any, sample_ids: np.ndarray, repeat_no: np.ndarray) -> list[str]:
-    controls = set(masters.samples_of_kinds(connection, CONTROL_KINDS))
+def _aliquot_kinds(
+    connection: Any, sample_ids: np.ndarray, repeat_no: np.ndarray, codes: list[str], said: dict[str, Spoken]
+) -> list[str]:
+    controls = set(masters.samples_of_kinds(connection, CONTROL_KINDS).tolist())
+    if said:
+        controls |= {sample_id for sample_id, code in zip(sample_ids.tolist(), codes, strict=True) if code in said}
     return [
         "control" if sample_id in controls else ("repeat" if repeat else "original")
         for sample_id, repeat in zip(sample_ids.tolist(), repeat_no.tolist(), strict=True)
     ]
 
 
-def _compute_fresh(
-    connection: Any,
-    table: ResultTable,
-    sample_ids: np.ndarray,
-    repeat_no: np.ndarray,
-    fresh_ids: np.ndarray,
-    progress: Callable[[str, int, int], None],
-) -> int:
-    """Compose, derive and judge the samples that have these results only."""
-    from registry.judging import read_rules
-    from registry.refresh import composed
-
-    rules = read_rules(connection)
+def _fresh_chunks(
+    connection: Any, table: ResultTable, sample_ids: np.ndarray, repeat_no: np.ndarray, fresh_ids: np.ndarray
+) -> Iterator[Chunk]:
+    """The samples that have these results only, composed from the arrays in hand, a chunk at a time."""
     uses = [ColumnUse(column.analyte, column.unit, column.digestion) for column in table.columns]
     for start in range(0, len(fresh_ids), CHUNK_SIZE):
-        progress("computing", start, len(fresh_ids))
         ids = fresh_ids[start : start + CHUNK_SIZE]
         position = np.searchsorted(ids, sample_ids)
         inside = (position < len(ids)) & (ids[np.minimum(position, len(ids) - 1)] == sample_ids)
@@ -284,6 +320,4 @@ def _compute_fresh(
         for repeat in range(int(repeat_no[inside].max(initial=-1)) + 1):
             rows = np.flatnonzero(inside & (repeat_no == repeat))
             blocks.append(Block(uses, position[rows], table.values[rows], table.qualifiers[rows], 0, repeat))
-        recompute(connection, composed(ids, blocks), rules, "", rewrite_composition=True, log_changes=False)
-        stale.clear(connection, ids.tolist())
-    return len(fresh_ids)
+        yield chunk_of(connection, composed(ids, blocks))

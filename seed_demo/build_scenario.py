@@ -147,7 +147,7 @@ def control_values() -> list[dict[str, object]]:
     for layout in LAYOUTS.values():
         for column in layout.columns:
             limits[column.analyte] = max(limits.get(column.analyte, 0.0), column.limit / column.scale)
-    rows = []
+    rows: list[dict[str, object]] = []
     for material in CONTROL_MATERIALS.values():
         for analyte, value in _powder(material).items():
             if value <= 0.0:
