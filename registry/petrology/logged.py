@@ -1,4 +1,4 @@
-"""What the geologist's words say about a sample: cumulate, plutonic, extrusive, porphyritic, magnetite destroyed.
+"""What the geologist's words say of a sample: cumulate, plutonic, extrusive, porphyritic, magnetite destroyed, glass.
 
 The lists are rock names as the trade uses them (common practice, no source); the cumulate words are the decision of
 the liquidus route (which rock is not a liquid). Words are compared whole, in lower case, with their plurals; hyphens,
@@ -20,7 +20,9 @@ Decisions:
 from __future__ import annotations
 
 import re
+from collections import defaultdict
 from collections.abc import Hashable, Iterable, Sequence
+from itertools import count
 from typing import TypeVar
 
 import numpy as np
@@ -34,6 +36,7 @@ LOGGED_NAMES = (
     "logged_extrusive",
     "logged_porphyritic",
     "logged_destroyed_magnetite",
+    "logged_glass",
     "logged_blank",
 )
 
@@ -75,6 +78,8 @@ DESTROYED_MAGNETITE_WORDS = (
     *_words("phyllic argillic sericite sericitic sericitised sericitized sericitisation sericitization qsp"),
     *_words("greisen greisenised greisenized greisenisation greisenization"),
 )
+#: Rocks that are quenched liquid.
+GLASS_WORDS = _words("glass obsidian perlite pitchstone tachylite")
 #: Prefixes that leave a rock what it is, written together or apart (``leucogranite``, ``meta-basalt``).
 PREFIXES = "meta|micro|leuco|mela|alkali"
 
@@ -92,6 +97,7 @@ _PLUTONIC = _whole_words(PLUTONIC_WORDS)
 _LAVA = _whole_words(LAVA_NAMES)
 _ERUPTION = _whole_words(ERUPTION_WORDS)
 _SHALLOW = _whole_words(SHALLOW_INTRUSION_WORDS)
+_GLASS = _whole_words(GLASS_WORDS)
 _DESTROYED = _whole_words(DESTROYED_MAGNETITE_WORDS)
 
 
@@ -102,7 +108,7 @@ def plain_text(text: object) -> str:
     return _NEGATED.sub(" ", text.lower().replace("_", " ")).strip()
 
 
-def _read_rock(lithology: object, texture: object) -> tuple[bool, bool, bool, bool, bool, bool]:
+def _read_rock(lithology: object, texture: object) -> tuple[bool, ...]:
     text = f"{plain_text(lithology)} ; {plain_text(texture)}"
     extrusive = bool(_ERUPTION.search(text)) or (bool(_LAVA.search(text)) and not _SHALLOW.search(text))
     blank = not any(isinstance(word, str) and word.strip() for word in (lithology, texture))
@@ -112,14 +118,15 @@ def _read_rock(lithology: object, texture: object) -> tuple[bool, bool, bool, bo
         extrusive,
         bool(_PORPHYRITIC.search(text)),
         bool(_DESTROYED.search(text)),
+        bool(_GLASS.search(text)),
         blank,
     )
 
 
-def _codes(keys: Iterable[Key]) -> tuple[NDArray[np.intp], list[Key]]:
-    """Integer code of each key by first appearance, and the distinct keys."""
-    seen: dict[Key, int] = {}
-    codes = np.fromiter((seen.setdefault(key, len(seen)) for key in keys), dtype=np.intp)
+def distinct_codes(keys: Iterable[Key]) -> tuple[NDArray[np.intp], list[Key]]:
+    """Integer code of each key by first appearance, and the distinct keys. Without a step of Python a key."""
+    seen: defaultdict[Key, int] = defaultdict(count().__next__)
+    codes = np.fromiter(map(seen.__getitem__, keys), dtype=np.intp)
     return codes, list(seen)
 
 
@@ -128,7 +135,7 @@ def logged_words(
     texture: Sequence[object] | NDArray[np.object_],
     alteration: Sequence[object] | NDArray[np.object_],
 ) -> dict[str, NDArray[np.bool_]]:
-    """Read the log: six boolean arrays of shape (n,) by the names of ``LOGGED_NAMES``.
+    """Read the log: seven boolean arrays of shape (n,) by the names of ``LOGGED_NAMES``.
 
     ``lithology``, ``texture`` and ``alteration`` hold free text, shape (n,), None for missing. Each distinct text is
     read once. ``logged_blank`` is true where lithology and texture are both empty. ``logged_destroyed_magnetite``
@@ -141,10 +148,10 @@ def logged_words(
             f"lithology, texture and alteration have {lengths[0]}, {lengths[1]} and {lengths[2]} rows; "
             "give one text (or None) a sample in each"
         )
-    rock_codes, rocks = _codes(zip(lithology, texture, strict=True))
+    rock_codes, rocks = distinct_codes(zip(lithology, texture, strict=True))
     flags = np.array([_read_rock(*pair) for pair in rocks], dtype=np.bool_).reshape(-1, len(LOGGED_NAMES))
     result = dict(zip(LOGGED_NAMES, flags[rock_codes].T, strict=True))
-    alteration_codes, alterations = _codes(alteration)
+    alteration_codes, alterations = distinct_codes(alteration)
     destroyed = np.array([bool(_DESTROYED.search(plain_text(text))) for text in alterations], dtype=np.bool_)
     result["logged_destroyed_magnetite"] = result["logged_destroyed_magnetite"] | destroyed[alteration_codes]
     return result

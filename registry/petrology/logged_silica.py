@@ -14,7 +14,7 @@ from collections.abc import Mapping, Sequence
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
 
-from registry.petrology.logged import PREFIXES, plain_text
+from registry.petrology.logged import PREFIXES, distinct_codes, plain_text
 from registry.petrology.melt_composition import Array
 
 #: Rock name -> least and greatest volatile-free SiO2, wt%.
@@ -61,9 +61,8 @@ def logged_silica_window(
 
     Texts or None; each distinct pair is read once.
     """
-    seen: dict[tuple[object, object], int] = {}
-    codes = np.fromiter((seen.setdefault(pair, len(seen)) for pair in zip(lithology, alteration, strict=True)), np.intp)
-    windows = np.array([_window(*pair) for pair in seen], dtype=np.float64).reshape(-1, 2)
+    codes, pairs = distinct_codes(zip(lithology, alteration, strict=True))
+    windows = np.array([_window(*pair) for pair in pairs], dtype=np.float64).reshape(-1, 2)
     return windows[codes, 0], windows[codes, 1]
 
 

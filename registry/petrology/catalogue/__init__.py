@@ -38,6 +38,7 @@ TOPICS = (
     "ascent",
     "heat",
     "fitness",
+    "kinds_of_analysis",
     "consistency",
     "logged",
 )
