@@ -13,7 +13,7 @@ from numpy.typing import ArrayLike
 
 from registry.petrology.geotherm import geotherm_exponential_c
 from registry.petrology.melt_composition import Array, positive
-from registry.petrology.melting import wet_granite_solidus
+from registry.petrology.melting import WET_GRANITE, wet_granite_solidus
 from registry.petrology.melting_conditions import (
     ALREADY_MELTS,
     BY_DECOMPRESSION,
@@ -29,6 +29,8 @@ DEEPEST_M = 100_000.0
 _STEP_M = 100.0
 #: Why the mantle columns are empty, besides the causes of the geotherm.
 MANTLE_CAUSES = ("moho_depth_not_known", "colder_than_the_saturated_solidus_at_the_moho")
+#: Why no melting depth is given though there is a geotherm.
+CRUST_TOO_COLD, CRUST_TOO_THIN = "crust_colder_than_solidus", "crust_thinner_than_the_granite_solidus_begins"
 NUMBERS = (
     "mantle_heat_flow_mw_m2", "wet_granite_solidus_depth_km", "crust_heating_needed_c", "crust_heating_depth_km",
     "moho_temperature_c", "mantle_heating_needed_c", "mantle_water_needed_wt", "dry_peridotite_solidus_depth_km",
@@ -76,8 +78,11 @@ def area_melting(
 def _one_area(q0: float, surface: float, k: float, heat: float, scale: float, moho: float) -> dict[str, Any]:
     entered = bool(positive(moho) > 0.0)
     base = moho if entered else MOHO_DEPTH_M
-    geotherm = area_geotherm(q0, surface, k, heat, scale, base)
+    too_thin = lithostatic_pressure_gpa(base, base) < WET_GRANITE[0][0]
+    geotherm = area_geotherm(q0, surface, k, heat, scale, MOHO_DEPTH_M if too_thin else base)
     found: dict[str, Any] = {name: values[0] for name, values in geotherm.items()}
+    if too_thin and found["geotherm_cause"] in (None, CRUST_TOO_COLD):
+        found.update(wet_granite_solidus_depth_km=np.nan, geotherm_cause=CRUST_TOO_THIN)
     depth = np.arange(0.0, base + _STEP_M, _STEP_M)
     depth = np.append(depth[depth < base], base)
     temperature = geotherm_exponential_c(depth, q0, surface, k, heat, scale)

@@ -99,7 +99,7 @@ def sample_mass_change(connection: Connection, sample_id: int) -> list[dict[str,
 
 
 def area_summary(connection: Connection, name: str) -> dict[str, Any] | None:
-    """An area's row of ``area_sheet`` and its ``intrusions`` (rows of ``intrusion_sheet``); None where there is none."""
+    """An area's row of ``area_sheet`` and its ``intrusions`` (of ``intrusion_sheet``); None where there is none."""
     found = _rows(connection, "SELECT * FROM area_sheet WHERE area = :name", name=name)
     if not found:
         return None
