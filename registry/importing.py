@@ -10,8 +10,8 @@ from typing import Any
 
 from registry.errors import InputProblems, NotFound, Problem, UsageError
 from registry.importing_certificates import store_certificates
-from registry.importing_results import ResultsReport, store_results, unknown_codes
-from registry.intake import KINDS, MasterTable, Reading, ReadingOptions, read_file
+from registry.importing_results import ResultsReport, StoredBatch, store_results, unknown_codes
+from registry.intake import KINDS, MasterTable, Reading, ReadingOptions, read_all
 from registry.keeping_going import SetAside
 from registry.refresh import changes_since, drain, last_change
 from registry.store import batches, masters
@@ -113,13 +113,14 @@ class ImportReport:
         return asdict(self)
 
 
-@dataclass(frozen=True)
+@dataclass
 class _File:
-    """A file, its bytes, and what they are compressed to."""
+    """A file, its bytes, what they are compressed to, and the batch of its first table of results once stored."""
 
     path: Path
     data: bytes
     compressed: Future[bytes]
+    batch: StoredBatch | None = None
 
 
 #: Certificates of reference materials go before the results that they judge.
@@ -161,10 +162,10 @@ def import_files(
             how = choice.reading or ReadingOptions()
             if options.keep_going:
                 how = replace(how, listed=len(data))  # every row is told its own reason
-            reading = read_file(path.name, data, choice.kind or options.kind, how)
-            if on_read is not None:
-                on_read(path, reading)
-            readings.append((reading, file))
+            for reading in read_all(path.name, data, choice.kind or options.kind, how):
+                if on_read is not None:
+                    on_read(path, reading)
+                readings.append((reading, file))
     readings.sort(key=lambda pair: _ORDER.index(pair[0].kind) if pair[0].kind in _ORDER else len(_ORDER))
     asides = [SetAside.of(file.path, file.data, reading) if options.keep_going else None for reading, file in readings]
     unreadable = [problem for reading, _ in readings for problem in reading.problems if not reading.ok]
@@ -189,8 +190,9 @@ def _store(
     progress: Progress,
 ) -> ImportReport:
     before = last_change(connection)
-    reports, computed = [], 0
-    results = sum(reading.kind == "results" for reading, _ in readings)
+    reports: list[FileReport] = []
+    computed = 0
+    results = len({file.path for reading, file in readings if reading.kind == "results"})
     if options.batch and results > 1:
         raise UsageError(f"--batch names one batch, but {results} files hold results; import them one by one")
     for (reading, contents), aside in zip(readings, asides, strict=True):
@@ -232,14 +234,15 @@ def _store_one(
         if aside is not None and not options.create_samples:
             aside.add(unknown_codes(connection, reading.file, reading.results, options.code_prefix))
             aside.drop()
-        report = FileReport(reading.file, kind, len(reading.results), reading.understood, remarks)
+        report = FileReport(reading.place, kind, len(reading.results), reading.understood, remarks)
         report.results, done, faults = store_results(
-            connection, reading.file, reading.results, contents.data, contents.compressed, options, progress
+            connection, reading, contents.data, contents.compressed, options, progress, contents.batch
         )
+        contents.batch = contents.batch or report.results.stored
         return report, done, faults
     table = reading.master
     assert table is not None
-    report = FileReport(reading.file, kind, len(table), reading.understood, remarks)
+    report = FileReport(reading.place, kind, len(table), reading.understood, remarks)
     if kind == "reference-materials":
         changed, faults = store_certificates(connection, table, reading.file)
         report.added, report.changes = changed.added, changed.changes

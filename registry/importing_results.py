@@ -6,12 +6,12 @@ import hashlib
 from collections.abc import Callable, Iterator
 from concurrent.futures import Future
 from dataclasses import dataclass, field
-from pathlib import Path
 from typing import TYPE_CHECKING, Any
 
 import numpy as np
 
 from registry import controlling
+from registry.batch_places import Place, place_of
 from registry.choice import Block, ColumnUse
 from registry.clock import now
 from registry.computing import WORTH_A_CHILD, Computations
@@ -23,7 +23,7 @@ from registry.importing_controls import (
     limit_reported,
     spoken_of,
 )
-from registry.intake import ResultTable
+from registry.intake import Reading, ResultTable
 from registry.judging import read_rules
 from registry.pipeline import CHUNK_SIZE, Chunk
 from registry.quality.recognising import Spoken
@@ -40,6 +40,14 @@ LISTED_CODES = 20
 CONTROL_KINDS = ("reference_material", "blank", "duplicate")
 
 
+@dataclass(frozen=True)
+class StoredBatch:
+    """The batch that a table of results was stored as."""
+
+    batch_id: int
+    code: str
+
+
 @dataclass
 class ResultsReport:
     """What was stored of one file of results."""
@@ -53,6 +61,7 @@ class ResultsReport:
     new_controls: int = 0
     controls: list[str] = field(default_factory=list)
     remarks: list[str] = field(default_factory=list)
+    stored: StoredBatch | None = None
 
     def lines(self) -> list[str]:
         text = f"batch {self.batch}: {self.aliquots:,} lines, {self.results:,} results ({self.censored:,} censored)"
@@ -70,19 +79,25 @@ class ResultsReport:
 
 def store_results(
     connection: Any,
-    file: str,
-    table: ResultTable,
+    reading: Reading,
     data: bytes,
     compressed: Future[bytes],
     options: ImportOptions,
     progress: Callable[[str, int, int], None],
+    within: StoredBatch | None = None,
 ) -> tuple[ResultsReport, int, list[Problem]]:
     """Store one table of results and compute its samples; a report, how many were computed, and the problems.
 
     Samples without other results are composed, derived and judged from the arrays in hand; those that had results
-    are marked stale, and the caller's drain computes them from all of theirs.
+    are marked stale, and the caller's drain computes them from all of theirs. ``within``: the batch of an earlier
+    table of the same file (another sheet), which this one becomes a part of.
     """
-    place, problems = _place_of(connection, file, table, hashlib.sha256(data).hexdigest(), options)
+    table, file = reading.results, reading.file
+    assert table is not None
+    if within is None:
+        place, problems = place_of(connection, file, table, hashlib.sha256(data).hexdigest(), options)
+    else:
+        place, problems = Place(f"{within.code}/{reading.part}", part_of=within.batch_id), []
     code = place.code
     codes = [f"{options.code_prefix}{sample}" for sample in table.sample_codes]
     known = masters.sample_ids(connection, set(codes))
@@ -109,7 +124,9 @@ def store_results(
         bulk.guarded(connection),
         Computations(chunks, rules.definitions, rules.conventions, worth_a_child) as computations,
     ):
-        batch_id, column_ids = _store_batch(connection, file, table, data, compressed.result(), place, options)
+        batch_id, column_ids = _store_batch(
+            connection, file, table, (data, compressed.result()) if within is None else None, place, options
+        )
         aliquot_ids = bulk.insert_aliquots(
             connection, sample_ids, batch_id, table.line_no, kinds, repeat_no, table.control_text if said else None
         )
@@ -133,72 +150,10 @@ def store_results(
     censored = int((table.qualifiers > 0).sum())
     report = ResultsReport(code, len(table), results, censored, len(missing), int((repeat_no > 0).sum()), new_controls)
     report.remarks = columns_that_disagree(table)
+    report.stored = StoredBatch(batch_id, code)
     if controlled:
         report.controls = controlling.state_of_batch(connection, batch_id)
     return report, len(fresh_ids), []
-
-
-@dataclass(frozen=True)
-class _Place:
-    """Where a file of results goes: the code of its batch, the batch it is a part of, the batch it supersedes."""
-
-    code: str
-    part_of: int | None = None
-    supersedes: int | None = None
-
-
-def _place_of(
-    connection: Any, file: str, table: ResultTable, sha256: str, options: ImportOptions
-) -> tuple[_Place, list[Problem]]:
-    """The place of a file among the batches, or the problems that keep it out."""
-    code = options.batch or table.certificate or Path(file).stem
-    same = batches.find_by_hash(connection, sha256)
-    if same is not None:
-        remedy = (
-            f"use 'plutonbook restore-batch {same['batch']}' to let it count again"
-            if same["state"] == "withdrawn"
-            else "nothing needs to be done"
-        )
-        what = f"the same bytes were imported before, as batch '{same['batch']}' ({same['state']})"
-        return _Place(code), [Problem(file, what, remedy=remedy)]
-    if options.add_to:
-        return _part(connection, file, options)
-    by_certificate = batches.find_by_certificate(connection, table.certificate) if table.certificate else None
-    other = batches.find_batch(connection, code) or by_certificate
-    if options.supersede:
-        return _successor(connection, file, code, other, options)
-    if other is None:
-        return _Place(code), []
-    problem = Problem(
-        file,
-        f"certificate or batch '{code}' is in the registry already, from another file ({other['file_name']})",
-        remedy="if this is a corrected certificate use --supersede, if it is another part of the same one use "
-        f"--add-to {other['batch']}, else give it a code of its own with --batch",
-    )
-    return _Place(code), [problem]
-
-
-def _part(connection: Any, file: str, options: ImportOptions) -> tuple[_Place, list[Problem]]:
-    parent = batches.find_batch(connection, options.add_to or "")
-    if parent is None or parent["state"] != "active":
-        what = f"--add-to names batch '{options.add_to}', which is " + (
-            "not in the registry" if parent is None else parent["state"]
-        )
-        return _Place(""), [Problem(file, what, remedy="'plutonbook batches' lists the batches; name an active one")]
-    code = options.batch or batches.free_code(connection, parent["batch"], "/")
-    return _Place(code, part_of=parent["part_of"] or parent["batch_id"]), []
-
-
-def _successor(
-    connection: Any, file: str, code: str, other: dict[str, Any] | None, options: ImportOptions
-) -> tuple[_Place, list[Problem]]:
-    while other is not None and other["state"] == "superseded" and other["superseded_by"]:
-        other = batches.find_by_id(connection, other["superseded_by"])
-    if other is None:
-        what = f"--supersede: no batch has the code or certificate number '{code}'"
-        remedy = "name the batch that this file corrects with --batch, or import it without --supersede"
-        return _Place(code), [Problem(file, what, remedy=remedy)]
-    return _Place(batches.free_code(connection, code, " corrected "), supersedes=other["batch_id"]), []
 
 
 def unknown_codes(connection: Any, file: str, table: ResultTable, prefix: str = "") -> list[Problem]:
@@ -241,9 +196,8 @@ def _store_batch(
     connection: Any,
     file: str,
     table: ResultTable,
-    data: bytes,
-    compressed: bytes,
-    place: _Place,
+    contents: tuple[bytes, bytes] | None,
+    place: Place,
     options: ImportOptions,
 ) -> tuple[int, np.ndarray]:
     batch_id = batches.insert_batch(
@@ -253,8 +207,8 @@ def _store_batch(
         certificate=table.certificate,
         part_of=place.part_of,
         file_name=file,
-        data=data,
-        compressed=compressed,
+        data=None if contents is None else contents[0],
+        compressed=None if contents is None else contents[1],
         imported_at=now(),
     )
     column_ids = batches.insert_columns(

@@ -361,3 +361,75 @@ def test_second_file_of_a_certificate_is_added_to_it_and_goes_with_it(
 def test_supersede_without_an_earlier_certificate_says_so(founded_registry: Registry, averages: list[Path]) -> None:
     with pytest.raises(InputProblems, match="no batch has the code or certificate number 'averages'"):
         import_files(founded_registry, averages, ImportOptions(supersede=True))
+
+
+def test_keep_going_stores_good_rows_and_saves_bad_ones_to_be_corrected(
+    founded_registry: Registry, tmp_path: Path
+) -> None:
+    """Invented rows: an unknown area and an unknown site, an impossible value and an unknown code."""
+    samples = write(
+        tmp_path, "samples.csv", "sample_code,sample_kind,site_code\nA,outcrop,\nB,outcrop,NOWHERE\nC,core,\n"
+    )
+    results = write(tmp_path, "T.csv", "Sample,SiO2 (%),MnO (%)\nA,65.1,0.1\nC,64.0,3002\nZ,50.0,0.2\n")
+
+    report = import_files(founded_registry, [samples, results], ImportOptions(keep_going=True))
+
+    refused = {file.file: (file.refused, file.refused_file) for file in report.files}
+    assert refused["samples.csv"][0] == 1 and refused["T.csv"][0] == 2
+    codes = rows(founded_registry, "SELECT sample_code FROM sample_sheet ORDER BY 1")
+    assert codes == [{"sample_code": "A"}, {"sample_code": "C"}]
+    saved = (tmp_path / "T.refused.csv").read_text(encoding="utf-8-sig")
+    assert saved.splitlines()[0] == "Sample,SiO2 (%),MnO (%),why refused"
+    assert "C,64.0,3002," in saved and "Z,50.0,0.2," in saved and "not in the registry" in saved
+    assert "NOWHERE" in (tmp_path / "samples.refused.csv").read_text(encoding="utf-8-sig")
+
+    corrected = write(tmp_path, "T.refused.csv", saved.replace("3002", "0.3").replace("Z,", "A,"))
+    import_files(founded_registry, [corrected], ImportOptions(add_to="T"))
+    composed = rows(founded_registry, "SELECT sample_code, sio2_wt, mno_wt FROM composition_sheet ORDER BY 1")
+    assert composed[1] == {"sample_code": "C", "sio2_wt": 64.0, "mno_wt": 0.3}
+
+
+def test_keep_going_in_a_dry_run_saves_nothing(founded_registry: Registry, tmp_path: Path) -> None:
+    samples = write(tmp_path, "samples.csv", "sample_code,sample_kind\nA,outcrop\nB,meteorite\n")
+
+    report = import_files(founded_registry, [samples], ImportOptions(keep_going=True, dry_run=True))
+
+    assert report.files[0].refused == 1
+    assert not (tmp_path / "samples.refused.csv").exists()
+    assert rows(founded_registry, "SELECT count(*) AS n FROM sample_sheet") == [{"n": 0}]
+
+
+def test_keep_going_cannot_save_a_file_that_is_faulty_as_a_whole(founded_registry: Registry, tmp_path: Path) -> None:
+    with pytest.raises(InputProblems, match="empty"):
+        import_files(founded_registry, [write(tmp_path, "e.csv", "")], ImportOptions(keep_going=True))
+
+
+def test_workbook_with_two_sheets_of_results_becomes_one_batch_with_a_part(
+    founded_registry: Registry, tmp_path: Path
+) -> None:
+    """Invented: majors on one sheet, traces on the other, the sample list on a third."""
+    from openpyxl import Workbook
+
+    book = Workbook()
+    book.active.title = "Majors"
+    for row in (["Sample", "SiO2 (%)", "K2O (%)", "MgO (%)"], ["A", 70.1, 4.0, 0.5], ["B", 69.0, 4.2, 0.7]):
+        book.active.append(row)
+    traces = book.create_sheet("Traces")
+    for row in (["Sample", "Rb (ppm)", "Sr (ppm)", "Y (ppm)"], ["A", 200, 100, 25], ["B", "<5", 300, 20]):
+        traces.append(row)
+    listed = book.create_sheet("List")
+    for row in (["sample_code", "sample_kind"], ["A", "outcrop"], ["B", "outcrop"]):
+        listed.append(row)
+    path = tmp_path / "C-5.xlsx"
+    book.save(path)
+
+    import_files(founded_registry, [path])
+
+    found = rows(founded_registry, "SELECT sample_code, rb_sr FROM index_sheet ORDER BY 1")
+    assert found[0] == {"sample_code": "A", "rb_sr": 2.0}
+    batches = rows(founded_registry, "SELECT batch FROM batch_sheet ORDER BY 1")
+    assert batches == [{"batch": "C-5"}, {"batch": "C-5/Traces"}]
+    set_state(founded_registry, "C-5", "withdrawn")
+    assert rows(founded_registry, "SELECT rb_sr FROM index_sheet") == [{"rb_sr": None}] * 2
+    with pytest.raises(InputProblems, match="same bytes"):
+        import_files(founded_registry, [path])

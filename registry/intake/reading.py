@@ -5,7 +5,7 @@ from __future__ import annotations
 from registry.intake import kinds
 from registry.intake.arrangement import LONG, TURNED, tell_arrangement
 from registry.intake.containers import BadContainer, Part, foreign_file, is_workbook, unpack
-from registry.intake.encodings import tell_encoding
+from registry.intake.encodings import Encoding, tell_encoding
 from registry.intake.findings import Findings
 from registry.intake.layout import find_header_row
 from registry.intake.master import header_row, read_master
@@ -111,7 +111,7 @@ def _read_text(reading: Reading, data: bytes, options: ReadingOptions, findings:
         what, remedy = foreign or ("not a text file", "save the table as CSV and read that file")
         findings.add(f"the file is {what}", expected="a table as delimited text (CSV) or .xlsx", remedy=remedy)
         return
-    separator = (options.recipe and options.recipe.separator) or tell_separator(data, encoding, _known_headings)
+    separator = separator_of(data, encoding, options)
     reading.understood.append(f"encoding {encoding.words}; separator {_SEPARATOR_WORDS.get(separator, separator)}")
     if encoding.errors == "replace":
         findings.warn(
@@ -120,6 +120,11 @@ def _read_text(reading: Reading, data: bytes, options: ReadingOptions, findings:
     source = DelimitedSource(data, encoding, separator)
     bound = data.count(b"\n") + data.count(b"\r") + 2
     _read_table(reading, source, options, findings, bound, data.count(b"_"))
+
+
+def separator_of(data: bytes, encoding: Encoding, options: ReadingOptions) -> str:
+    """What parts the cells of a text file: the recipe's word, else told from the headings."""
+    return (options.recipe and options.recipe.separator) or tell_separator(data, encoding, _known_headings)
 
 
 def _read_table(

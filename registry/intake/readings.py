@@ -112,6 +112,11 @@ class Reading:
     part: str | None = None
 
     @property
+    def place(self) -> str:
+        """The file, and the sheet or member where it holds several tables."""
+        return self.file if self.part is None else f"{self.file} [{self.part}]"
+
+    @property
     def ok(self) -> bool:
         return not any(problem.severity == "problem" for problem in self.problems)
 
