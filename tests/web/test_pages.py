@@ -23,6 +23,7 @@ PAGES = (
     "/batches/Q-2041", "/targets", "/targets/porphyry_copper", "/targets/radiogenic_heat", "/methods", "/intrusions",
     "/sites", "/samples?sio2_wt_min=abc", "/samples/none", "/batches/none", "/targets/none", "/nowhere",
     "/static/site.css", "/static/site.js", "/static/favicon.svg", "/import", "/import/none", "/import/none/state.json",
+    "/batch/file/Q-2041", "/batch/withdraw/Q-2041",
 )  # fmt: skip
 
 
@@ -91,9 +92,10 @@ def test_pages_writing_to_a_reading_route_is_refused_with_headers(app: Flask) ->
             assert answer.headers["X-Frame-Options"] == "DENY"
 
 
-@pytest.mark.parametrize(
-    "address", [page for page in PAGES if not page.startswith(("/static", "/samples.csv", "/import/none/state"))]
-)
+NOT_PAGES = ("/static", "/samples.csv", "/import/none/state")
+
+
+@pytest.mark.parametrize("address", [page for page in PAGES if not page.startswith(NOT_PAGES)])
 def test_pages_hold_nothing_inline_or_foreign_and_ordered_headings(client: FlaskClient, address: str) -> None:
     page = Page(client.get(address).text)
     assert page.faults == []

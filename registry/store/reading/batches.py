@@ -14,8 +14,8 @@ def batch_list(connection: Connection) -> list[dict[str, Any]]:
     rows = connection.execute(
         text(
             """
-            SELECT batch.code, batch.lab, batch.certificate, batch.received_on, batch.reported_on, batch.imported_at,
-                batch.imported_by, batch.file_name, batch.state, counted.lines, counted.samples
+            SELECT batch.batch_id, batch.code, batch.lab, batch.certificate, batch.received_on, batch.reported_on,
+                batch.imported_at, batch.imported_by, batch.file_name, batch.state, counted.lines, counted.samples
             FROM batch LEFT JOIN (
                 SELECT batch_id, count(*) AS lines, count(DISTINCT sample_id) AS samples FROM aliquot GROUP BY batch_id
             ) AS counted ON counted.batch_id = batch.batch_id
@@ -34,8 +34,9 @@ def find_batch(connection: Connection, code: str) -> dict[str, Any] | None:
                 """
                 SELECT batch.batch_id, batch.code, batch.lab, batch.certificate, batch.received_on, batch.reported_on,
                     batch.imported_at, batch.imported_by, batch.file_name, batch.sha256, batch.state,
-                    newer.code AS superseded_by
+                    newer.code AS superseded_by, whole.code AS part_of, batch.file_bytes IS NOT NULL AS has_file
                 FROM batch LEFT JOIN batch AS newer ON newer.batch_id = batch.superseded_by
+                LEFT JOIN batch AS whole ON whole.batch_id = batch.part_of
                 WHERE batch.code = :code
                 """
             ),
@@ -45,6 +46,21 @@ def find_batch(connection: Connection, code: str) -> dict[str, Any] | None:
         .first()
     )
     return None if row is None else dict(row)
+
+
+def batch_relatives(connection: Connection, batch_id: int) -> dict[str, list[str]]:
+    """Codes of the batches that this one supersedes (``supersedes``) and of its further parts (``parts``)."""
+    rows = connection.execute(
+        text(
+            "SELECT code, superseded_by, part_of FROM batch WHERE superseded_by = :batch_id OR part_of = :batch_id "
+            "ORDER BY batch_id"
+        ),
+        {"batch_id": batch_id},
+    ).all()
+    return {
+        "supersedes": [row.code for row in rows if row.superseded_by == batch_id],
+        "parts": [row.code for row in rows if row.part_of == batch_id],
+    }
 
 
 def batch_columns(connection: Connection, batch_id: int) -> list[dict[str, Any]]:
