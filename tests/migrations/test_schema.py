@@ -200,7 +200,8 @@ def test_upgrade_that_orphans_rows_is_undone_and_says_which(
 ) -> None:
     fill(sqlite_registry)
     with_planted(monkeypatch, planted_revision(tmp_path / "planted", "op.execute('DELETE FROM site')"))
-    with pytest.raises(RuntimeError, match=r"would leave 3 rows that point at missing rows \(sample -> site, survey -> site\)"):
+    sentence = r"would leave 3 rows that point at missing rows \(sample -> site, survey -> site\)"
+    with pytest.raises(RuntimeError, match=sentence):
         schema.upgrade(sqlite_registry)
     with sqlite_registry.reader.connect() as connection:
         assert connection.exec_driver_sql("SELECT count(*) FROM site").scalar() == 1

@@ -236,8 +236,9 @@ def test_check_of_a_damaged_page_says_so(demo: Registry) -> None:
     demo.close()
     assert demo.path is not None
     content = bytearray(demo.path.read_bytes())
-    start = len(content) // 2 // 4096 * 4096
-    content[start : start + 4096] = bytes(4096)
+    page = int.from_bytes(content[16:18], "big")  # SQLite's file format: page size in the header
+    start = len(content) // 2 // page * page
+    content[start : start + page] = bytes(page)
     demo.path.write_bytes(content)
     assert [line for line in findings(demo) if line.startswith("file: ")] != []
 

@@ -135,6 +135,19 @@ def test_guard_keeps_the_triggers_silent_and_goes_with_the_block(filled: Registr
         assert connection.exec_driver_sql("SELECT count(*) FROM import_guard").scalar() == 0
 
 
+def test_triggers_stand_again_after_the_guard_and_after_an_error_in_it(filled: Registry) -> None:
+    edit = "INSERT INTO result (aliquot_id, column_id, value) VALUES (2, {}, 2.0)"
+    with pytest.raises(RuntimeError, match="planted"), writing(filled) as connection, bulk.guarded(connection):
+        connection.exec_driver_sql(edit.format(2))
+        raise RuntimeError("planted")
+    with writing(filled) as connection:
+        with bulk.guarded(connection):
+            connection.exec_driver_sql(edit.format(7))
+        assert stale.pending(connection) == []
+        connection.exec_driver_sql(edit.format(2))
+    assert marked(filled) == {"B": 1}
+
+
 def test_deleted_parents_take_their_rows_with_them(filled: Registry) -> None:
     with writing(filled) as connection:
         connection.exec_driver_sql("UPDATE sample SET duplicate_of = 1 WHERE code = 'D'")
