@@ -209,12 +209,12 @@ def _mass_changes(
     rows = rows[[suite.codes[row] != label for row in rows.tolist()]] if rows.size else rows
     altered = {name: suite.numbers[name][rows] for name in names}
     lines = isocon(fresh, altered)
-    change, percent = component_changes(
+    changes = component_changes(
         [fresh[name] for name in COMPONENT_COLUMNS], [altered[name] for name in COMPONENT_COLUMNS], lines.slope
     )
     in_wt = np.array([1e-4 if name.endswith("_ppm") else 1.0 for name in COMPONENT_COLUMNS])[:, None]
     causes = [missing or cause for cause in lines.cause.tolist()]
-    packed = suite_rows.packed_changes(change * in_wt, percent)
+    packed = suite_rows.packed_changes(changes["change"] * in_wt, changes["percent"])
     symbols = [symbol(name) for name in lines.components]
     patterns: dict[bytes, str] = {}
     told: list[str | None] = []

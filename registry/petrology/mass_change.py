@@ -92,8 +92,8 @@ def isocon(
     )
 
 
-def component_changes(fresh: ArrayLike, altered: ArrayLike, slope: ArrayLike) -> tuple[Array, Array]:
-    """Gain (+) or loss (-) of components against the original rock: in the components' unit, and in % of the original.
+def component_changes(fresh: ArrayLike, altered: ArrayLike, slope: ArrayLike) -> dict[str, Array]:
+    """Gain (+) or loss (-) of components: ``change`` in the components' unit, ``percent`` of what was there.
 
     ``fresh`` (m,), ``altered`` (m, n), ``slope`` (n,): altered / slope - fresh, mass per mass of original rock. The
     percentage is NaN where the fresh rock has none. Gresens' equation [gresens1967] in the form of [grant1986], from
@@ -102,7 +102,7 @@ def component_changes(fresh: ArrayLike, altered: ArrayLike, slope: ArrayLike) ->
     """
     before = np.asarray(fresh, dtype=np.float64)[:, None]
     change = np.asarray(altered, dtype=np.float64) / positive(slope) - before
-    return change, 100.0 * change / positive(before)
+    return {"change": change, "percent": 100.0 * change / positive(before)}
 
 
 def immobile_alkalinity(nb_y: ArrayLike) -> NDArray[np.object_]:
