@@ -7,7 +7,7 @@ from __future__ import annotations
 
 from dataclasses import dataclass, field
 
-from seed_demo.differentiation import Composition, average, batch_melt_traces, fractionated, mixed
+from seed_demo.differentiation import Composition, accumulated, average, batch_melt_traces, fractionated, mixed
 
 
 @dataclass(frozen=True)
@@ -33,6 +33,11 @@ class Suite:
     melted_source: str | None = None
     residue: Composition = field(default_factory=dict)
     melted: float = 0.0
+    #: Where the rocks are cumulates: crystals by mass share, ranges of trapped liquid and of sulphide, magma per sulphide.
+    cumulus: Composition = field(default_factory=dict)
+    trapped: tuple[float, float] = (0.0, 0.0)
+    sulphide: tuple[float, float] = (0.0, 0.0)
+    r_factor: float = 0.0
 
     def parent_magma(self) -> Composition:
         """Majors of the parent's average; traces its own, or those of a batch melt of ``melted_source``."""
@@ -41,15 +46,33 @@ class Suite:
             composition |= batch_melt_traces(average(self.melted_source), self.residue, self.melted)
         return composition
 
-    def magma(self, progress: float, recharge: float) -> Composition:
-        """The liquid at ``progress`` (0-1) along the suite with ``recharge`` (0-1) of the recharge range mixed in."""
+    def liquid(self, progress: float) -> Composition:
+        """The melt at ``progress`` (0-1) along the suite."""
         low, high = self.crystallised
-        liquid = fractionated(self.parent_magma(), self.assemblage, low + progress * (high - low))
-        if self.recharge is not None:
-            least, most = self.recharge_share
-            liquid = mixed(liquid, average(self.recharge), least + recharge * (most - least))
-        return liquid
+        return fractionated(self.parent_magma(), self.assemblage, low + progress * (high - low))
 
+    def rock(self, progress: float, second: float, third: float) -> Composition:
+        """The fresh rock at ``progress``: the liquid with recharge mixed in, or a cumulate of it ("S" then given too).
+
+        ``second`` (0-1) is where in the range of recharge or trapped liquid it lies, ``third`` (0-1) where in the
+        range of sulphide; sulphide gathers unevenly, so that most rocks have little.
+        """
+        liquid = self.liquid(progress)
+        if self.recharge is not None:
+            liquid = mixed(liquid, average(self.recharge), _within(self.recharge_share, second))
+        if not self.cumulus:
+            return liquid
+        sulphide = _within(self.sulphide, third * third)
+        return accumulated(liquid, self.cumulus, _within(self.trapped, second), sulphide, self.r_factor)
+
+
+def _within(limits: tuple[float, float], share: float) -> float:
+    return limits[0] + share * (limits[1] - limits[0])
+
+
+#: What crystallised of the layered intrusion's magma while the lower, ultramafic part formed, and after it.
+_ULTRAMAFIC_STAGE = {"olivine_88": 0.36, "bronzite": 0.62, "chromite": 0.015, "sulphide": 0.001}
+_MAFIC_STAGE = {"olivine_88": 0.14, "bronzite": 0.50, "bytownite_75": 0.32, "augite": 0.03, "sulphide": 0.001}
 
 SUITES: dict[str, Suite] = {
     # Wet, oxidised arc magma: amphibole and magnetite early, plagioclase held back; andesite mixed in.
@@ -108,6 +131,150 @@ SUITES: dict[str, Suite] = {
         loi_wt=0.7,
         sulphur_wt=0.01,
     ),
+    # Crustal melt of a metapelite, little of it melted; far fractionated, reduced by the carbon of its source.
+    "tin_granite": Suite(
+        parent="granite",
+        melted_source="metapelite",
+        residue={
+            "plagioclase_25": 0.22, "k_feldspar": 0.05, "quartz": 0.38, "biotite_40": 0.27, "garnet": 0.08,
+            "cool_zircon": 0.0003, "monazite": 0.0002, "sulphide": 0.002,
+        },
+        melted=0.22,
+        assemblage={
+            "plagioclase_25": 0.43, "k_feldspar": 0.16, "quartz": 0.27, "biotite_40": 0.13, "ilmenite": 0.002,
+            "apatite": 0.004, "cool_zircon": 0.0003, "monazite": 0.00025, "sulphide": 0.001,
+        },
+        crystallised=(0.30, 0.62),
+        ferric_ratio=0.18,
+        susceptibility_si=0.00012,
+        density_kg_m3=2620.0,
+        lithology="biotite granite",
+        texture="medium-grained, sparse K-feldspar megacrysts",
+        loi_wt=0.8,
+        sulphur_wt=0.01,
+    ),
+    # A small melt of the same kind of source by breakdown of muscovite; mica, feldspars and quartz leave nearly all of it.
+    "rare_metal_leucogranite": Suite(
+        parent="leucogranite",
+        melted_source="metapelite",
+        residue={
+            "plagioclase_25": 0.17, "k_feldspar": 0.06, "quartz": 0.38, "biotite_40": 0.30, "garnet": 0.09,
+            "cool_zircon": 0.0003, "monazite": 0.0003, "sulphide": 0.002,
+        },
+        melted=0.12,
+        assemblage={
+            "plagioclase_25": 0.12, "plagioclase_10": 0.12, "k_feldspar": 0.31, "quartz": 0.34, "muscovite": 0.085,
+            "biotite_40": 0.025, "ilmenite": 0.0005, "apatite": 0.001, "cool_zircon": 0.0003, "monazite": 0.0002,
+        },
+        crystallised=(0.35, 0.75),
+        ferric_ratio=0.25,
+        susceptibility_si=0.00005,
+        density_kg_m3=2610.0,
+        lithology="muscovite leucogranite",
+        texture="fine-grained to pegmatitic",
+        loi_wt=0.8,
+        sulphur_wt=0.005,
+    ),
+    # Rhyolite from a melt of the middle crust, with feldspars, quartz and a little biotite and magnetite taken out.
+    "young_rhyolite": Suite(
+        parent="rhyolite",
+        melted_source="middle_crust",
+        residue={
+            "plagioclase_45": 0.50, "quartz": 0.10, "hornblende": 0.12, "orthopyroxene": 0.16, "clinopyroxene": 0.08,
+            "magnetite": 0.03, "apatite": 0.003, "zircon": 0.0002, "sulphide": 0.001,
+        },
+        melted=0.25,
+        assemblage={
+            "plagioclase_25": 0.44, "k_feldspar": 0.20, "quartz": 0.22, "biotite": 0.09, "magnetite": 0.04,
+            "ilmenite": 0.003, "apatite": 0.003, "zircon": 0.0003, "sulphide": 0.0005,
+        },
+        crystallised=(0.0, 0.25),
+        ferric_ratio=0.5,
+        susceptibility_si=0.004,
+        density_kg_m3=2420.0,
+        lithology="rhyolite",
+        texture="flow-banded, feldspar-phyric",
+        loi_wt=1.3,
+        sulphur_wt=0.01,
+    ),
+    # A continental tholeiite, ponded in a sill: plagioclase, augite and olivine; never saturated in sulphide.
+    "gabbro_sill": Suite(
+        parent="basalt",
+        assemblage={"bytownite_65": 0.58, "augite": 0.22, "olivine_78": 0.20},
+        crystallised=(0.0, 0.30),
+        ferric_ratio=0.3,
+        susceptibility_si=0.02,
+        density_kg_m3=2960.0,
+        lithology="gabbro",
+        texture="ophitic",
+        loi_wt=1.0,
+        sulphur_wt=0.04,
+    ),
+    # The layered intrusion from its floor up. Its magma took crust up below; sulphide melt settled first on the floor.
+    "layered_contact": Suite(
+        parent="magnesian_basaltic_andesite",
+        assemblage=_ULTRAMAFIC_STAGE,
+        crystallised=(0.0, 0.06),
+        cumulus={"bronzite": 0.6, "bytownite_75": 0.4},
+        trapped=(0.25, 0.45),
+        sulphide=(0.004, 0.05),
+        r_factor=600.0,
+        ferric_ratio=0.15,
+        susceptibility_si=0.002,
+        density_kg_m3=3080.0,
+        lithology="norite",
+        texture="medium-grained, blebs of sulphide",
+        loi_wt=0.9,
+        sulphur_wt=0.01,
+    ),
+    "layered_ultramafic": Suite(
+        parent="magnesian_basaltic_andesite",
+        assemblage=_ULTRAMAFIC_STAGE,
+        crystallised=(0.02, 0.14),
+        cumulus={"olivine_88": 0.80, "bronzite": 0.18, "chromite": 0.015},
+        trapped=(0.08, 0.2),
+        sulphide=(0.0005, 0.006),
+        r_factor=3000.0,
+        ferric_ratio=0.2,
+        susceptibility_si=0.006,
+        density_kg_m3=3280.0,
+        lithology="harzburgite",
+        texture="cumulate, poikilitic orthopyroxene",
+        loi_wt=2.0,
+        sulphur_wt=0.01,
+    ),
+    "layered_pyroxenite": Suite(
+        parent="magnesian_basaltic_andesite",
+        assemblage=_ULTRAMAFIC_STAGE,
+        crystallised=(0.12, 0.24),
+        cumulus={"bronzite": 0.94, "augite": 0.05, "chromite": 0.006},
+        trapped=(0.1, 0.2),
+        sulphide=(0.001, 0.012),
+        r_factor=2000.0,
+        ferric_ratio=0.15,
+        susceptibility_si=0.0015,
+        density_kg_m3=3260.0,
+        lithology="orthopyroxenite",
+        texture="cumulate, granular",
+        loi_wt=0.8,
+        sulphur_wt=0.01,
+    ),
+    "layered_norite": Suite(
+        parent="magnesian_basaltic_andesite",
+        assemblage=_MAFIC_STAGE,
+        crystallised=(0.20, 0.40),
+        cumulus={"bronzite": 0.45, "bytownite_75": 0.50, "augite": 0.05},
+        trapped=(0.08, 0.2),
+        sulphide=(0.0002, 0.002),
+        r_factor=6000.0,
+        ferric_ratio=0.15,
+        susceptibility_si=0.001,
+        density_kg_m3=2980.0,
+        lithology="norite",
+        texture="cumulate, laminated plagioclase",
+        loi_wt=0.7,
+        sulphur_wt=0.01,
+    ),
 }  # fmt: skip
 
 
@@ -141,4 +308,16 @@ ALTERATIONS: dict[str, Alteration] = {
     ),
     "chloritic": Alteration("chloritic", {"CaO": 0.85, "Na2O": 0.95, "MgO": 1.1, "Zn": 1.5}, 2.4, 0.05, 0.5),
     "weathered": Alteration("weathered", {"CaO": 0.7, "Na2O": 0.8, "Sr": 0.85, "U": 0.55}, 2.6, 0.0, 0.6),
+    "greisen": Alteration(
+        "greisen",
+        {"Na2O": 0.2, "CaO": 0.8, "K2O": 0.85, "Fe2O3T": 1.3, "Li": 2.2, "Rb": 1.6, "Cs": 1.5, "Sr": 0.5, "Ba": 0.5,
+         "Sn": 12.0, "W": 8.0, "F": 5.0, "Cu": 6.0, "Zn": 2.0},
+        1.9,
+        0.1,
+        0.2,
+    ),
+    "serpentinised": Alteration("serpentinised", {"CaO": 0.7, "Na2O": 0.6, "Sr": 0.7, "Ba": 0.7}, 9.0, 0.02, -0.7),
+    "argillic": Alteration(
+        "argillic", {"Na2O": 0.35, "CaO": 0.4, "MgO": 1.2, "K2O": 0.9, "Sr": 0.5, "Cs": 1.8, "Li": 2.0}, 4.8, 0.5, 1.2
+    ),
 }  # fmt: skip

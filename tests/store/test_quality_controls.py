@@ -8,7 +8,8 @@ from typing import Any
 import pytest
 
 from registry.batching import set_state
-from registry.controlling import precisions, ship_reference_values, trends
+from registry.control_history import precisions, trends
+from registry.controlling import ship_reference_values
 from registry.errors import InputProblems, PlutonbookError
 from registry.importing import ImportOptions, ImportReport, import_files
 from registry.refresh import refresh_registry
@@ -84,7 +85,7 @@ def test_control_sheet_holds_every_control_of_a_good_batch(any_registry: Registr
         assert batch_state(connection, 1) == "passes"
         assert batch_states(connection) == {1: {"state": "passes", "failing": 0}}
     (results,) = [file.results for file in report.files if file.results is not None]
-    assert results.controls[0] == "controls: 2 reference materials, 1 duplicates, 1 blanks"
+    assert results.controls[0] == "controls: 2 reference materials, 1 duplicate, 1 blank"
 
 
 def test_certified_element_is_compared_with_the_reported_oxide(any_registry: Registry, tmp_path: Path) -> None:

@@ -9,6 +9,7 @@ from typing import Any
 import numpy as np
 
 from registry.petrology.catalogue.records import Cause, Method, Quantity, Range, Warning
+from registry.petrology.quotients import is_absent
 
 __all__ = [
     "CAUSES",
@@ -65,7 +66,7 @@ def _range_warning(method: Method) -> Warning | None:
                 mask |= column < limits.low
             if limits.high is not None:
                 mask |= column > limits.high
-        present = ~np.isnan(value) if value.dtype.kind == "f" else value.astype(bool)
+        present = ~np.isnan(value) if value.dtype.kind == "f" else ~is_absent(value)
         return mask & present
 
     spelled = "; ".join(f"{limits.column} {_spell(limits)}" for limits in ranges)
