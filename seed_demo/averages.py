@@ -107,8 +107,9 @@ def _mixed(share: float, first: dict[str, float], second: dict[str, float]) -> d
 MINERALS: dict[str, dict[str, float]] = {
     "plagioclase_55": _mixed(0.55, _ANORTHITE, _ALBITE),
     "plagioclase_45": _mixed(0.45, _ANORTHITE, _ALBITE),
-    "plagioclase_25": _mixed(0.25, _ANORTHITE, _ALBITE),
-    "plagioclase_10": _mixed(0.10, _ANORTHITE, _ALBITE),
+    "oligoclase_30": _mixed(0.30, _ANORTHITE, _ALBITE),
+    "oligoclase_25": _mixed(0.25, _ANORTHITE, _ALBITE),
+    "oligoclase_10": _mixed(0.10, _ANORTHITE, _ALBITE),
     # Minerals of basaltic melts; olivine and calcic plagioclase by stoichiometry, the number is mol% Fo or An.
     "bytownite_75": _mixed(0.75, _ANORTHITE, _ALBITE),
     "bytownite_65": _mixed(0.65, _ANORTHITE, _ALBITE),
@@ -123,7 +124,7 @@ MINERALS: dict[str, dict[str, float]] = {
     "clinopyroxene": _numbers("SiO2 51.4 TiO2 0.5 Al2O3 2.5 Fe2O3T 10.2 MnO 0.3 MgO 14.9 CaO 19.8 Na2O 0.4"),
     "orthopyroxene": _numbers("SiO2 52.6 TiO2 0.3 Al2O3 1.5 Fe2O3T 20.0 MnO 0.5 MgO 23.6 CaO 1.5"),
     "biotite": _numbers("SiO2 37.9 TiO2 3.5 Al2O3 15.2 Fe2O3T 21.3 MnO 0.2 MgO 12.1 Na2O 0.2 K2O 9.6"),
-    "biotite_40": _numbers("SiO2 36.2 TiO2 2.9 Al2O3 16.8 Fe2O3T 27.0 MnO 0.3 MgO 8.2 Na2O 0.2 K2O 9.4"),
+    "siderophyllite": _numbers("SiO2 36.2 TiO2 2.9 Al2O3 16.8 Fe2O3T 27.0 MnO 0.3 MgO 8.2 Na2O 0.2 K2O 9.4"),
     "muscovite": _numbers("SiO2 46.0 TiO2 0.5 Al2O3 34.5 Fe2O3T 2.2 MgO 0.6 Na2O 0.6 K2O 10.6"),
     "magnetite": _numbers("TiO2 6.0 Al2O3 1.5 Fe2O3T 91.5 MgO 1.0"),
     "ilmenite": _numbers("TiO2 50.5 Fe2O3T 47.5 MnO 2.0"),
@@ -151,9 +152,15 @@ PARTITION: dict[str, dict[str, float]] = {
         **_rare_earths(0.25, 0.09, 1.0, 0.05),
         **_numbers("Sr 3.0 Ba 0.45 Rb 0.07 Cs 0.05 Y 0.06 Ga 1.0 Pb 0.5 Li 0.3 Be 0.4"),
     },
+    # Sodic plagioclase in cool acid melts: Sr and Ba by Blundy & Wood 1991, Geochim. Cosmochim. Acta 55, 193-209, at
+    # An25 and 750 C; Eu as in rhyolites, Nash & Crecraft 1985, Geochim. Cosmochim. Acta 49, 2309-2322.
+    "oligoclase": {
+        **_rare_earths(0.35, 0.12, 3.0, 0.06),
+        **_numbers("Sr 9.0 Ba 1.0 Rb 0.08 Cs 0.05 Y 0.1 Ga 1.0 Pb 0.7 Li 0.15 Be 0.4"),
+    },
     "k_feldspar": {
-        **_rare_earths(0.06, 0.02, 1.1, 0.01),
-        **_numbers("Sr 3.9 Ba 6.0 Rb 0.6 Cs 0.1 Pb 1.0 Ga 0.8 Li 0.05"),
+        **_rare_earths(0.06, 0.02, 3.0, 0.01),
+        **_numbers("Sr 4.5 Ba 6.0 Rb 0.6 Cs 0.1 Pb 1.0 Ga 0.8 Li 0.05"),
     },
     "quartz": {"Li": 0.2},
     "hornblende": {
@@ -178,29 +185,47 @@ PARTITION: dict[str, dict[str, float]] = {
             "Ga 1.5 Cu 0.5 F 1.5"
         ),
     },
+    # Iron-rich biotite of cool peraluminous melts: alkalis by Icenhower & London 1995, Am. Mineral. 80, 1229-1251; Nb, Ta
+    # after Acosta-Vigil et al. 2010, J. Petrol. 51, 785-821; transition metals as in rhyolites (Nash & Crecraft 1985).
+    "siderophyllite": {
+        **_rare_earths(0.05, 0.1, 0.15, 0.15),
+        **_numbers(
+            "Rb 2.0 Ba 7.0 Cs 0.5 Sr 0.2 Nb 3.7 Ta 1.4 Zr 0.2 V 30 Sc 12 Cr 25 Co 25 Ni 25 Zn 12 Sn 1.0 W 0.3 Li 1.2 "
+            "Ga 2.0 Cu 0.5 F 1.6"
+        ),
+    },
     # Raimbault & Burnol 1998, Can. Mineral. 36, 767-782: micas and acid melts rich in rare metals.
-    "muscovite": _numbers("Rb 1.8 Ba 2.5 Cs 0.3 Li 0.8 Be 0.7 Nb 3.5 Ta 0.4 Sn 1.0 W 1.4 Ga 1.5 V 5 Sc 3 Cr 5 Zn 3 F 0.8"),
+    "muscovite": _numbers(
+        "Rb 1.8 Ba 2.5 Cs 0.3 Li 0.8 Be 0.7 Nb 3.5 Ta 0.4 Sn 1.0 W 1.4 Ga 1.5 V 5 Sc 3 Cr 5 Zn 3 F 0.8"
+    ),
     "magnetite": _numbers("V 20 Sc 2 Cr 50 Co 10 Ni 10 Zn 8 Nb 0.6 Ta 0.5 Zr 0.3 Y 0.3 Sn 1.0 Mo 0.5 Ga 2 Cu 1.0"),
     "ilmenite": _numbers("V 12 Sc 5 Cr 5 Co 8 Ni 5 Zn 5 Nb 20 Ta 25 Zr 1.0 Hf 1.0 W 3 Sn 1.0"),
     "garnet": {**_rare_earths(0.02, 5.0, 0.5, 30.0), **_numbers("Y 20 Sc 15 V 5 Cr 10 Co 3 Ni 1 Zn 3 Zr 0.6 Hf 0.5")},
-    "sulphide": _numbers("Cu 800 Ni 200 Co 60 Zn 5 Mo 5 Pb 5 Pt 15000 Pd 20000 Au 4000"),
+    # Peach, Mathez & Keays 1990, Geochim. Cosmochim. Acta 54, 3379-3389.
+    "sulphide": _numbers("Cu 1000 Ni 500 Co 60 Zn 5 Mo 5 Pb 5 Pt 15000 Pd 20000 Au 4000"),
     "apatite": {**_rare_earths(15.0, 28.0, 15.0, 10.0), **_numbers("Y 22 Sr 1.5 Th 1.5 U 1.5 F 20")},
     "zircon": {**_rare_earths(1.0, 20.0, 5.0, 250.0), **_numbers("Zr 3000 Hf 2500 Th 25 U 90 Y 80 Nb 10 Ta 10 Sc 60")},
     # At saturation in a cool melt with about 100 ppm Zr; hafnon dissolves better (Linnen & Keppler 2002, GCA 66, 3293).
     "cool_zircon": {
-        **_rare_earths(1.0, 20.0, 5.0, 250.0), **_numbers("Zr 5000 Hf 2750 Th 25 U 90 Y 80 Nb 10 Ta 10 Sc 60"),
+        **_rare_earths(1.0, 20.0, 5.0, 250.0),
+        **_numbers("Zr 5000 Hf 2750 Th 25 U 90 Y 80 Nb 10 Ta 10 Sc 60"),
     },
     "allanite": {**_rare_earths(1500.0, 300.0, 100.0, 15.0), **_numbers("Th 300 U 20 Y 60")},
     # Monazite at saturation in a cool peraluminous melt; Rapp & Watson 1986, CMP 94, 304-316, for its solubility.
     "monazite": {**_rare_earths(7000.0, 2500.0, 300.0, 120.0), **_numbers("Th 6000 U 300 Y 500")},
     # Basaltic melts.
     "olivine": _numbers("Ni 9 Co 5 Cr 0.7 Sc 0.2 V 0.06 Zn 0.9 Cu 0.1"),
-    "bronzite": {**_rare_earths(0.005, 0.06, 0.05, 0.25), **_numbers("Ni 4 Co 2.8 Cr 6 Sc 1.2 V 0.7 Zn 0.9 Y 0.15 Cu 0.1")},
+    "bronzite": {
+        **_rare_earths(0.005, 0.06, 0.05, 0.25),
+        **_numbers("Ni 4 Co 2.8 Cr 6 Sc 1.2 V 0.7 Zn 0.9 Y 0.15 Cu 0.1"),
+    },
     "augite": {
-        **_rare_earths(0.08, 0.55, 0.45, 0.5), **_numbers("Ni 2.2 Co 1.2 Cr 8 Sc 3 V 2 Zn 0.6 Sr 0.1 Y 0.5 Zr 0.12 Hf 0.25"),
+        **_rare_earths(0.08, 0.55, 0.45, 0.5),
+        **_numbers("Ni 2.2 Co 1.2 Cr 8 Sc 3 V 2 Zn 0.6 Sr 0.1 Y 0.5 Zr 0.12 Hf 0.25"),
     },
     "bytownite": {
-        **_rare_earths(0.12, 0.06, 0.5, 0.03), **_numbers("Sr 1.8 Ba 0.25 Rb 0.06 Pb 0.4 Ga 0.9 Y 0.03 Li 0.2 Be 0.3"),
+        **_rare_earths(0.12, 0.06, 0.5, 0.03),
+        **_numbers("Sr 1.8 Ba 0.25 Rb 0.06 Pb 0.4 Ga 0.9 Y 0.03 Li 0.2 Be 0.3"),
     },
     "chromite": _numbers("Ni 6 Co 4 V 4 Zn 4 Sc 0.2 Ga 5 Pt 2"),
 }

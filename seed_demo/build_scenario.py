@@ -71,11 +71,12 @@ def rock_in_bag(
     Real variation within a body: 1.5 % of each major, 5 % of each trace. Majors with LOI and S sum to 100 (all iron as
     Fe2O3); FeO from the suite's ferric ratio, which alteration raises.
     """
-    magma = suite.magma(min(max(progress + 0.06 * normal(rng), 0.0), 1.0), rng.random())
-    rock = {name: value * (1.0 + (0.015 if name in MAJORS else 0.05) * normal(rng)) for name, value in magma.items()}
+    fresh = suite.rock(min(max(progress + 0.06 * normal(rng), 0.0), 1.0), rng.random(), rng.random())
+    sulphide_sulphur = fresh.pop("S", 0.0)
+    rock = {name: value * (1.0 + (0.015 if name in MAJORS else 0.05) * normal(rng)) for name, value in fresh.items()}
     ferric = suite.ferric_ratio * 10 ** (0.06 * normal(rng))
     loi = suite.loi_wt * 10 ** (0.1 * normal(rng))
-    sulphur = suite.sulphur_wt * 10 ** (0.25 * normal(rng))
+    sulphur = sulphide_sulphur + suite.sulphur_wt * 10 ** (0.25 * normal(rng))
     susceptibility = suite.susceptibility_si * 10 ** (0.15 * normal(rng))
     density = suite.density_kg_m3 * (1.0 + 0.004 * normal(rng))
     if alteration is not None:

@@ -12,7 +12,7 @@ from seed_demo.differentiation import Composition, accumulated, average, batch_m
 
 @dataclass(frozen=True)
 class Suite:
-    """One magma series.
+    """One magma series, or the cumulates of one.
 
     ``assemblage`` in mass shares by mineral; ``crystallised`` and ``recharge_share`` are the ranges that samples span.
     ``ferric_ratio`` is Fe2O3/FeO by weight, ``susceptibility_si`` the median of fresh rock; both scatter.
@@ -114,12 +114,12 @@ SUITES: dict[str, Suite] = {
         parent="granite",
         melted_source="metapelite",
         residue={
-            "plagioclase_25": 0.24, "k_feldspar": 0.08, "quartz": 0.33, "biotite": 0.3, "garnet": 0.05,
+            "oligoclase_25": 0.24, "k_feldspar": 0.08, "quartz": 0.33, "biotite": 0.3, "garnet": 0.05,
             "zircon": 0.0002, "allanite": 0.00015, "sulphide": 0.002,
         },
         melted=0.33,
         assemblage={
-            "plagioclase_25": 0.44, "k_feldspar": 0.18, "quartz": 0.24, "biotite": 0.12, "ilmenite": 0.003,
+            "oligoclase_25": 0.44, "k_feldspar": 0.18, "quartz": 0.24, "biotite": 0.12, "ilmenite": 0.003,
             "apatite": 0.0025, "zircon": 0.0004, "allanite": 0.0003, "sulphide": 0.001,
         },
         crystallised=(0.05, 0.35),
@@ -136,13 +136,13 @@ SUITES: dict[str, Suite] = {
         parent="granite",
         melted_source="metapelite",
         residue={
-            "plagioclase_25": 0.22, "k_feldspar": 0.05, "quartz": 0.38, "biotite_40": 0.27, "garnet": 0.08,
-            "cool_zircon": 0.0003, "monazite": 0.0002, "sulphide": 0.002,
+            "oligoclase_25": 0.22, "k_feldspar": 0.05, "quartz": 0.38, "siderophyllite": 0.27, "garnet": 0.08,
+            "cool_zircon": 0.0003, "monazite": 0.0002, "sulphide": 0.004,
         },
         melted=0.22,
         assemblage={
-            "plagioclase_25": 0.43, "k_feldspar": 0.16, "quartz": 0.27, "biotite_40": 0.13, "ilmenite": 0.002,
-            "apatite": 0.004, "cool_zircon": 0.0003, "monazite": 0.00025, "sulphide": 0.001,
+            "oligoclase_30": 0.43, "k_feldspar": 0.16, "quartz": 0.27, "siderophyllite": 0.13, "ilmenite": 0.001,
+            "apatite": 0.002, "cool_zircon": 0.0003, "monazite": 0.00025, "sulphide": 0.002,
         },
         crystallised=(0.30, 0.62),
         ferric_ratio=0.18,
@@ -158,15 +158,15 @@ SUITES: dict[str, Suite] = {
         parent="leucogranite",
         melted_source="metapelite",
         residue={
-            "plagioclase_25": 0.17, "k_feldspar": 0.06, "quartz": 0.38, "biotite_40": 0.30, "garnet": 0.09,
+            "oligoclase_25": 0.17, "k_feldspar": 0.06, "quartz": 0.38, "siderophyllite": 0.30, "garnet": 0.09,
             "cool_zircon": 0.0003, "monazite": 0.0003, "sulphide": 0.002,
         },
         melted=0.12,
         assemblage={
-            "plagioclase_25": 0.12, "plagioclase_10": 0.12, "k_feldspar": 0.31, "quartz": 0.34, "muscovite": 0.085,
-            "biotite_40": 0.025, "ilmenite": 0.0005, "apatite": 0.001, "cool_zircon": 0.0003, "monazite": 0.0002,
+            "oligoclase_25": 0.06, "oligoclase_10": 0.18, "k_feldspar": 0.31, "quartz": 0.34, "muscovite": 0.085,
+            "siderophyllite": 0.024, "ilmenite": 0.0003, "apatite": 0.001, "cool_zircon": 0.0003, "monazite": 0.0002,
         },
-        crystallised=(0.35, 0.75),
+        crystallised=(0.30, 0.68),
         ferric_ratio=0.25,
         susceptibility_si=0.00005,
         density_kg_m3=2610.0,
@@ -185,7 +185,7 @@ SUITES: dict[str, Suite] = {
         },
         melted=0.25,
         assemblage={
-            "plagioclase_25": 0.44, "k_feldspar": 0.20, "quartz": 0.22, "biotite": 0.09, "magnetite": 0.04,
+            "oligoclase_25": 0.44, "k_feldspar": 0.20, "quartz": 0.22, "biotite": 0.09, "magnetite": 0.04,
             "ilmenite": 0.003, "apatite": 0.003, "zircon": 0.0003, "sulphide": 0.0005,
         },
         crystallised=(0.0, 0.25),
