@@ -4,28 +4,25 @@ from __future__ import annotations
 
 import csv
 import io
-from collections.abc import Iterable, Iterator, Mapping, Sequence
+from collections.abc import Iterator, Mapping, Sequence
 from typing import Any
-from urllib.parse import urlencode
 
-from flask import Blueprint, Response, current_app, redirect, render_template, request, stream_with_context, url_for
+from flask import Blueprint, Response, current_app, redirect, render_template, stream_with_context
 
 from registry.store.reading import samples as reading
 from registry.store.reading.columns import Column, Columns
 from registry.store.reading.filters import (
-    ADDING_ARGUMENTS,
     DEFAULT_COLUMNS,
-    KINDS,
     SCORE,
     VERDICTS,
     Filter,
-    parse_filter,
 )
 from registry.store.reading.session import query_only
 from registry.store.reading.targets import target_names
 from web import numbers, wording
 from web.pictures import minerals_of, norm_segments
 from web.reading import offered_columns, registry_connection
+from web.sentence import address, arguments_of_request, asked_filter, sentence_context, unsettled
 
 blueprint = Blueprint("samples", __name__)
 #: Stored values of these columns stand for words.
@@ -35,28 +32,6 @@ CONTROL_KINDS = ("reference_material", "blank", "duplicate")
 SHORT_WORDS = 24
 
 
-def _asked(arguments: Mapping[str, Sequence[str]], columns: Columns, targets: Mapping[str, str]) -> Filter:
-    return parse_filter(arguments, columns, list(targets))
-
-
-def _arguments() -> dict[str, list[str]]:
-    return {name: request.args.getlist(name) for name in request.args}
-
-
-def _address(pairs: Iterable[tuple[str, str]], endpoint: str = "samples.list_page", **more: str) -> str:
-    query = urlencode([*pairs, *more.items()], safe=",")
-    return url_for(endpoint) + (f"?{query}" if query else "")
-
-
-def _unsettled(arguments: Mapping[str, Sequence[str]]) -> bool:
-    """True for an address that a form wrote: empty fields, the fields that add a condition, a list of ticks."""
-    return (
-        any(name in arguments for name in ADDING_ARGUMENTS)
-        or any(not value for values in arguments.values() for value in values)
-        or len(arguments.get("columns", ())) > 1
-    )
-
-
 @blueprint.get("/")
 def start() -> Any:
     return list_page()
@@ -64,10 +39,10 @@ def start() -> Any:
 
 @blueprint.get("/samples")
 def list_page() -> Any:
-    arguments = _arguments()
+    arguments = arguments_of_request()
     with registry_connection() as connection:
         columns, targets = offered_columns(connection), target_names(connection)
-        asked = _asked(arguments, columns, targets)
+        asked = asked_filter(arguments, columns, targets)
         problems = dict(asked.problems) | reading.names_not_found(connection, asked)
         place, problem = _place(arguments)
         if problem:
@@ -75,8 +50,8 @@ def list_page() -> Any:
         if problems:
             asked = Filter(**{**vars(asked), "problems": problems})
             page = reading.Page(0, [], None, None)
-        elif _unsettled(arguments):
-            return redirect(_address(asked.arguments()))
+        elif unsettled(arguments):
+            return redirect(address(asked.arguments()))
         else:
             page = reading.page_of_samples(connection, asked, columns, place=place)
         choices = reading.choices(connection)
@@ -87,32 +62,25 @@ def list_page() -> Any:
     rows = _rows(page.rows, shown, asked, targets, heads)
     pairs = asked.arguments()
     addresses = {
-        "first_address": _address(pairs),
-        "csv_address": _address(pairs, "samples.csv_file"),
-        "next_address": page.next and _address(pairs, after=page.next.token()),
-        "previous_address": page.previous and _address(pairs, before=page.previous.token()),
+        "first_address": address(pairs),
+        "csv_address": address(pairs, "samples.csv_file"),
+        "next_address": page.next and address(pairs, after=page.next.token()),
+        "previous_address": page.previous and address(pairs, before=page.previous.token()),
     }
     body = render_template(
         "samples.html",
         section="Samples",
         title="Samples",
-        asked=asked,
         page=page,
-        words=_words(asked, columns, targets),
         choices=choices,
-        kinds=KINDS,
-        verdict_words=VERDICTS,
-        targets=targets,
-        typed={name: values[-1] for name, values in arguments.items() if values},
         groups=[(wording.VIEW_WORDS[view], members) for view, members in columns.by_view()],
-        numeric_groups=_numeric_groups(columns),
         sortable=shown,
-        other_faults=_other_faults(asked),
         heads=heads,
         rows=rows,
         minerals=minerals_of(segments for row in rows for segments in row["cells"][:1]),
         any_stale=any(row["is_stale"] for row in page.rows),
         rows_per_page=reading.ROWS_PER_PAGE,
+        **sentence_context(asked, arguments, columns, targets),
         **addresses,
     )
     return body, 400 if asked.problems else 200
@@ -126,35 +94,6 @@ def _place(arguments: Mapping[str, Sequence[str]]) -> tuple[reading.Place | None
             except reading.BadPlace as fault:
                 return None, str(fault)
     return None, None
-
-
-def _words(asked: Filter, columns: Columns, targets: Mapping[str, str]) -> dict[str, Any]:
-    adding = {name for name in ("add_column", "add_min", "add_max") if name in asked.problems}
-    if not asked.text:
-        adding |= {"text"} & set(asked.problems)
-    if not (asked.target or asked.verdict):
-        adding |= {"target", "verdict"} & set(asked.problems)
-    return {
-        "kind": wording.kind_words(asked),
-        "place": wording.place_words(asked),
-        "verdict": wording.verdict_words(asked, targets) if asked.target or asked.verdict else "",
-        "ranges": {limit.column.name: wording.range_words(limit) for limit in asked.ranges},
-        "sort": wording.sort_words(asked, columns),
-        "adding_fault": bool(adding),
-    }
-
-
-def _numeric_groups(columns: Columns) -> list[tuple[str, list[Column]]]:
-    groups = [(wording.VIEW_WORDS[view], [c for c in members if c.numeric]) for view, members in columns.by_view()]
-    return [(words, members) for words, members in groups if members]
-
-
-def _other_faults(asked: Filter) -> list[str]:
-    """Sentences of faults that have no field on the page."""
-    fields = {"text", "area", "site", "intrusion", "kind", "target", "verdict", "sort", "descending"}
-    fields |= {"add_column", "add_min", "add_max"}
-    fields |= {f"{limit.column.name}_{end}" for limit in asked.ranges for end in ("min", "max")}
-    return [sentence for name, sentence in asked.problems.items() if name not in fields]
 
 
 def _heads(asked: Filter, shown: Sequence[Column], targets: Mapping[str, str]) -> list[dict[str, Any]]:
@@ -185,7 +124,7 @@ def _head(asked: Filter, name: str, label: str, unit: str, meaning: str, kind: s
         "kind": kind,
         "numeric": kind == "number",
         "sorted": ("descending" if asked.descending else "ascending") if sorted_by else "",
-        "address": _address(turned.arguments()) if name else "",
+        "address": address(turned.arguments()) if name else "",
     }
 
 
@@ -244,7 +183,7 @@ def csv_file() -> Any:
     """The filtered set, all of it, as comma-separated values; raw numbers, names of the sample views at the head."""
     with registry_connection() as connection:
         columns, targets = offered_columns(connection), target_names(connection)
-        asked = _asked(_arguments(), columns, targets)
+        asked = asked_filter(arguments_of_request(), columns, targets)
         problems = dict(asked.problems) | reading.names_not_found(connection, asked)
     if problems:
         return Response("\n".join(problems.values()) + "\n", 400, mimetype="text/plain")
