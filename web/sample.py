@@ -9,6 +9,7 @@ from urllib.parse import urlencode
 from flask import Blueprint, render_template, url_for
 
 from registry.explain import explain_sample
+from registry.reported import reported_lines
 from registry.store.reading import methods as methods_reading
 from registry.store.reading import sample as reading
 from registry.store.reading.columns import Columns
@@ -74,6 +75,18 @@ def page(code: str) -> Any:
         results=_by_batch(results),
         changes=changes,
     )
+
+
+@blueprint.get("/reported/<path:code>")
+def reported(code: str) -> Any:
+    """The cells of the certificates as the laboratory wrote them."""
+    with registry_connection() as connection:
+        found = reading.find_sample(connection, code)
+        if found is None:
+            near = [(name, url_for("sample.reported", code=name)) for name in reading.near_codes(connection, code)]
+            raise Missing("sample", code, near)
+        lines = reported_lines(connection, found["sample_id"])
+    return render_template("reported.html", section="Samples", sample=found, lines=lines)
 
 
 def _facts(found: Mapping[str, Any]) -> list[tuple[str, str, str]]:

@@ -42,7 +42,7 @@ def refused_rows(data: bytes, reading: Reading, reasons: Mapping[int, str], firs
 
     ``reasons`` by file line. Raises PlutonbookError for a table turned on its side, whose lines are columns.
     """
-    source = _source(data, reading)
+    source = source_of(data, reading)
     rows, _ = source.preview(200)
     if reading.results is not None and tell_arrangement(rows) == TURNED:
         raise PlutonbookError(
@@ -68,7 +68,8 @@ def refused_rows(data: bytes, reading: Reading, reasons: Mapping[int, str], firs
     return out.getvalue()
 
 
-def _source(data: bytes, reading: Reading) -> Source:
+def source_of(data: bytes, reading: Reading) -> Source:
+    """The rows of cells that a reading was made from, to be gone through again."""
     options = ReadingOptions(recipe=reading.recipe)
     for part in unpack(data, options.unpacked_limit_bytes):
         if is_workbook(part.data):

@@ -34,6 +34,24 @@ def _rows(connection: Connection, sql: str, **bound: Any) -> list[dict[str, Any]
     return [dict(row) for row in connection.execute(text(sql), bound).mappings()]
 
 
+def reported_places(connection: Connection, sample_id: int) -> list[dict[str, Any]]:
+    """Every result of a sample with the place of its cell in the file it came in."""
+    return _rows(
+        connection,
+        """
+        SELECT batch.batch_id, batch.code AS batch, batch.state, batch.file_name, aliquot.line_no,
+            batch_column.position, batch_column.header, batch_column.analyte, batch_column.unit, result.value,
+            result.qualifier
+        FROM aliquot JOIN batch ON batch.batch_id = aliquot.batch_id
+        JOIN result ON result.aliquot_id = aliquot.aliquot_id
+        JOIN batch_column ON batch_column.batch_column_id = result.column_id
+        WHERE aliquot.sample_id = :sample_id
+        ORDER BY batch.batch_id, aliquot.line_no, batch_column.position
+        """,
+        sample_id=sample_id,
+    )
+
+
 def find_sample(connection: Connection, code: str) -> dict[str, Any] | None:
     """The sample of this code with its site, area and intrusion; None where there is none."""
     rows = _rows(
