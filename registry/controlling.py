@@ -259,8 +259,8 @@ def state_of_batch(connection: Any, batch_id: int) -> list[str]:
     if not states:
         return [*lines, "none of them could be judged (no reference values, detection limits or originals)"]
     tally = Counter(state["state"] for state in states)
-    told = ", ".join(f"{tally[word]} {'analyte' if tally[word] == 1 else 'analytes'} {word}" for word in tally)
-    lines.append(f"batch {_worst(states)}: {told}")
+    told = ", ".join(f"{tally[word]} of {len(states)} analytes: {word}" for word in STATE_WORDS if tally[word])
+    lines.append(f"batch {_worst(states)} ({told})")
     for state in states:
         if state["state"] != STATE_WORDS[0] and len(lines) < 12:
             lines.append(f"{state['analyte']} {state['state']}: {state['remarks']}")

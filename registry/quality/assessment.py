@@ -219,7 +219,9 @@ def _judge_blanks(
     outcome.expected[rows] = background
     top = background + 3.0 * deviation + (blanks.FAIL_AT * limit if limit > 0.0 else 0.0)
     outcome.low[rows], outcome.high[rows] = 0.0, np.where(top > 0.0, top, np.nan)
-    is_major = column.unit == "wt%" and column.analyte not in _JUDGED_IN_WT
+    analyte = ANALYTES.get(column.analyte)
+    in_wt = column.unit == "wt%" or (analyte is not None and (analyte.column or "").endswith("_wt"))
+    is_major = in_wt and column.analyte not in _JUDGED_IN_WT
     for position, row in enumerate(rows.tolist()):
         if own[position] is None and is_major:
             outcome.rules[row] = "a major of the blank's own rock; register the values of its material to judge it"

@@ -55,8 +55,13 @@ def _compare(
         return []
     worst = int(np.nanargmax(difference))
     compared = int((~np.isnan(difference)).sum())
+    same = one.analyte == other.analyte
+    pair = f"two columns of {one.analyte}" if same else f"{one.analyte} and {other.analyte}"
+    worst_line = (
+        f"line {line_no[worst]}: {values[worst]:.4g} {one.unit} against {converted[worst]:.4g} from "
+        f"{'the other' if same else other.analyte}, {difference[worst]:.3g} %"
+    )
     return [
-        f"{one.analyte} and {other.analyte} differ by more than {DUPLICATE_PERCENT:g} % in {int(differ.sum()):,} of "
-        f"{compared:,} lines (line {line_no[worst]}: {values[worst]:.4g} {one.unit} against {converted[worst]:.4g} "
-        f"from {other.analyte}, {difference[worst]:.3g} %): check the units and the columns"
+        f"{pair} differ by more than {DUPLICATE_PERCENT:g} % in {int(differ.sum()):,} of {compared:,} lines "
+        f"({worst_line}): check the units and the columns"
     ]

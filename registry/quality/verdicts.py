@@ -8,7 +8,7 @@ import numpy as np
 
 from registry.quality.assessment import BLANK, REFERENCE, Controls, Outcome
 from registry.quality.duplicates import too_many
-from registry.quality.states import FAILED, FAILS, PASSES, REMARKS, WARNED
+from registry.quality.states import FAILED, FAILS, PASSED, PASSES, REMARKS, WARNED
 from registry.quality.trends import bias, least_squares
 
 #: A bias or drift is named where it exceeds so many of its standard errors and so many per cent (a drift: over the
@@ -58,6 +58,7 @@ def state_of_analyte(controls: Controls, outcome: Outcome) -> AnalyteState | Non
             remarks += [_about(controls, outcome, row, words, verb) for row in marked.tolist()[:3]]
             if len(marked) > 3:
                 remarks.append(f"{len(marked) - 3} more {words} results {verb}")
+    remarks += _own_content(controls, outcome)
     pairs = ~((kinds == REFERENCE) | (kinds == BLANK)) & judged
     if too_many(outcome.pairs_above_ninetieth, outcome.pairs_judged, 0.10):
         fails = True
@@ -92,6 +93,22 @@ def state_of_analyte(controls: Controls, outcome: Outcome) -> AnalyteState | Non
         float("nan") if fit is None else fit.s_0,
         float("nan") if fit is None else fit.k,
     )
+
+
+def _own_content(controls: Controls, outcome: Outcome) -> list[str]:
+    """A hint where three blanks or more, all above their limit, agree: that is what they are made of, not what came in.
+
+    Agreement within a factor of 1.5, common practice, no source; the state stays as it is.
+    """
+    blank = (controls.kinds == BLANK) & (outcome.states > 0) & (outcome.expected == 0.0)
+    found = outcome.found[blank]
+    if len(found) < 3 or not (outcome.states[blank] > PASSED).all() or found.max() > 1.5 * found.min():
+        return []
+    held = f"{found.min():.4g} to {found.max():.4g} {outcome.column.unit}"
+    return [
+        f"all {len(found)} blanks hold {held}: if that is their own content, register the values of their "
+        "material and name it in the sample list"
+    ]
 
 
 def _about(controls: Controls, outcome: Outcome, row: int, words: str, verb: str) -> str:
