@@ -8,6 +8,7 @@ from __future__ import annotations
 
 import json
 import math
+from collections.abc import Sequence
 from dataclasses import dataclass
 from functools import lru_cache
 from typing import Any
@@ -85,22 +86,45 @@ def explain_sample(connection: Any, sample_id: int) -> list[Conclusion]:
     return [_conclusion(row, sample, conventions) for row in rows]
 
 
+def explain_chosen(connection: Any, chosen: Sequence[tuple[int, str]]) -> dict[tuple[int, str], Conclusion]:
+    """The conclusions on some (sample id, target code), worked out together; pairs without a verdict are left out."""
+    known = _known_of_several(connection, sorted({sample_id for sample_id, _ in chosen}))
+    found = {}
+    for sample_id in known:
+        wanted = {target for other, target in chosen if other == sample_id}
+        for row in reading.verdict_rows(connection, sample_id):
+            if row["target"] in wanted:
+                found[sample_id, row["target"]] = _conclusion(row, *known[sample_id])
+    return found
+
+
 def _known_of(connection: Any, sample_id: int) -> tuple[dict[str, Any], Conventions]:
-    """Everything known of a sample by name, None for missing, and the conventions it was computed under."""
-    stored = reading.derived_row(connection, sample_id)
-    conventions = Conventions.from_dict(json.loads(stored.pop("conventions", None) or "{}"))
-    composition = loading.load_composition(connection, [sample_id])
-    context = loading.load_context(connection, [sample_id])
-    packed = (composition.values, composition.qualifiers, composition.digestions)
-    computed = compute(Chunk(composition.sample_ids, *packed, context), (), conventions)
-    columns = {
-        **dict(zip(CHOSEN_COLUMNS, composition.values, strict=True)),
-        **computed.derived,
-        **context,
-    }
-    known = {name: _plain(column[0]) for name, column in columns.items()}
-    known.update({name: value for name, value in stored.items() if value is not None})
-    return known, conventions
+    return _known_of_several(connection, [sample_id])[sample_id]
+
+
+def _known_of_several(connection: Any, sample_ids: Sequence[int]) -> dict[int, tuple[dict[str, Any], Conventions]]:
+    """Everything known of samples by name, None for missing, and the conventions each was computed under."""
+    stored = {sample_id: reading.derived_row(connection, sample_id) for sample_id in sample_ids}
+    groups: dict[str, list[int]] = {}
+    for sample_id, row in stored.items():
+        groups.setdefault(row.pop("conventions", None) or "{}", []).append(sample_id)
+    found = {}
+    for text, ids in groups.items():
+        conventions = Conventions.from_dict(json.loads(text))
+        composition = loading.load_composition(connection, ids)
+        context = loading.load_context(connection, ids)
+        packed = (composition.values, composition.qualifiers, composition.digestions)
+        computed = compute(Chunk(composition.sample_ids, *packed, context), (), conventions)
+        columns = {
+            **dict(zip(CHOSEN_COLUMNS, composition.values, strict=True)),
+            **computed.derived,
+            **context,
+        }
+        for place, sample_id in enumerate(composition.sample_ids.tolist()):
+            known = {name: _plain(column[place]) for name, column in columns.items()}
+            known.update({name: value for name, value in stored[sample_id].items() if value is not None})
+            found[sample_id] = known, conventions
+    return found
 
 
 def _plain(value: Any) -> Any:

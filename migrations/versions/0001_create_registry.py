@@ -231,7 +231,7 @@ verdict = table(
     sa.CheckConstraint("reasons::jsonb IS NOT NULL", name="reasons").ddl_if(dialect="postgresql"), counted=False,
     rowid=False,
 )
-sa.Index(None, verdict.c.target_id, verdict.c.verdict)
+sa.Index(None, verdict.c.target_id, verdict.c.verdict, verdict.c.sample_id, verdict.c.score_min)
 verdict_change = table(
     "verdict_change", own_id("verdict_change_id"), sa.Column("sample_id", whole, nullable=False),
     sa.Column("target_id", whole, nullable=False), sa.Column("changed_at", words, nullable=False),

@@ -54,6 +54,13 @@ class Registry:
     def reader(self) -> sa.Engine:
         return self.engine(foreign_keys=True, query_only=True)
 
+    @cached_property
+    def watcher(self) -> sa.Engine:
+        """One connection of its own, always the same: it tells whether others have changed the registry."""
+        if self.path is None:
+            return self.reader
+        return _sqlite_engine(self.path, foreign_keys=True, query_only=True, pool_size=1, max_overflow=0)
+
     def engine(self, foreign_keys: bool, query_only: bool) -> sa.Engine:
         """A new engine on this registry; the store alone calls it."""
         if self.path is None:
@@ -62,7 +69,7 @@ class Registry:
 
     def close(self) -> None:
         """Give back every connection (a file may then be moved or deleted)."""
-        for name in ("writer", "bulk_writer", "reader"):
+        for name in ("writer", "bulk_writer", "reader", "watcher"):
             engine = self.__dict__.pop(name, None)
             if engine is not None:
                 engine.dispose()
@@ -162,8 +169,8 @@ def _connect_file(path: Path) -> sqlite3.Connection:
     )
 
 
-def _sqlite_engine(path: Path, foreign_keys: bool, query_only: bool) -> sa.Engine:
-    engine = sa.create_engine("sqlite://", creator=lambda: _connect_file(path), poolclass=sa.pool.QueuePool)
+def _sqlite_engine(path: Path, foreign_keys: bool, query_only: bool, **pool: int) -> sa.Engine:
+    engine = sa.create_engine("sqlite://", creator=lambda: _connect_file(path), poolclass=sa.pool.QueuePool, **pool)
 
     @sa.event.listens_for(engine, "connect")
     def _prepare(connection: sqlite3.Connection, _record: Any) -> None:

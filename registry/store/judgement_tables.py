@@ -54,7 +54,8 @@ verdict = table(
     counted=False,
     rowid=False,
 )
-sa.Index(None, verdict.c.target_id, verdict.c.verdict)
+#: Covers the ranking of intrusions by a target; ``sample_id`` before the score keeps an import appending.
+sa.Index(None, verdict.c.target_id, verdict.c.verdict, verdict.c.sample_id, verdict.c.score_min)
 #: A log: it outlives the sample it names, so it holds no foreign key.
 verdict_change = table(
     "verdict_change",

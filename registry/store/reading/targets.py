@@ -50,3 +50,15 @@ def criteria(connection: Connection, target_version_id: int) -> list[dict[str, A
         {"version": target_version_id},
     )
     return [dict(row) for row in rows.mappings()]
+
+
+def active_targets(connection: Connection) -> list[dict[str, Any]]:
+    """Targets with the text of their active definition: ``target_id code name version definition``, in their order."""
+    rows = connection.execute(
+        text(
+            "SELECT target.target_id, target.code, target.name, target_version.version, target_version.definition "
+            "FROM target JOIN target_version ON target_version.target_id = target.target_id "
+            "AND target_version.active = 1 ORDER BY target.target_id"
+        )
+    )
+    return [dict(row) for row in rows.mappings()]

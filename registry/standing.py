@@ -1,0 +1,150 @@
+"""How the samples of an intrusion or site stand to each target: counts, the best of them, what to assay next."""
+
+from __future__ import annotations
+
+import re
+import statistics
+from collections import Counter
+from collections.abc import Iterable, Sequence
+from dataclasses import dataclass
+from typing import Any
+
+from registry.explain import MISSING, Conclusion, explain_chosen, read_definition
+from registry.store.reading import intrusions as reading
+from registry.store.reading import targets as targets_reading
+from registry.store.sheets import VERDICT_WORDS
+from registry.targets.definition import Criterion, TargetDefinition
+
+#: Best samples named for each target.
+BEST_NAMED = 3
+_RANK = {0: 0, 1: 1, 3: 2, 2: 3}
+_LACKING = re.compile(rf'"(\d+)":"{MISSING}([^"]*)"')
+_CAUSE = re.compile(r'"cause":"([^"]*)"')
+
+
+@dataclass(frozen=True)
+class Lacking:
+    """What undecided samples lack: its name and remedy in words, in how many it is open, the points it opens in all."""
+
+    name: str
+    remedy: str
+    samples: int
+    points: int
+
+
+@dataclass(frozen=True)
+class Best:
+    """One of the best samples: its code, verdict in words and score as shares of the points."""
+
+    sample_id: int
+    code: str
+    verdict: str
+    score_min: float | None
+    score_max: float | None
+
+
+@dataclass(frozen=True)
+class Standing:
+    """The samples of one place against one target. ``conclusion`` is that of the best sample."""
+
+    target: str
+    name: str
+    counts: dict[str, int]
+    samples: int
+    median_score: float | None
+    best_score: float | None
+    best: tuple[Best, ...]
+    lacking: tuple[Lacking, ...]
+    causes: tuple[tuple[str, int], ...]
+    cautions: tuple[str, ...]
+    conclusion: Conclusion | None = None
+
+    @property
+    def leading(self) -> str | None:
+        """The best verdict among the samples; None where none was judged."""
+        order = ("favourable", "possible", "undecided", "unfavourable")
+        return next((word for word in order if self.counts.get(word)), None)
+
+
+def standings(connection: Any, column: str, key: int, explained: bool = True) -> list[Standing]:
+    """The standing for every target of the samples with that ``intrusion_id`` or ``site_id`` (``column``).
+
+    The target with the best verdict comes first, then by median score. ``explained``: with the conclusion on the best
+    sample of each target.
+    """
+    targets = targets_reading.active_targets(connection)
+    rows = reading.judged_samples(connection, column, key)
+    by_target: dict[int, list[tuple[Any, ...]]] = {target["target_id"]: [] for target in targets}
+    for row in rows:
+        if row[0] in by_target:
+            by_target[row[0]].append(row)
+    leaders = {
+        target_id: sorted(part, key=lambda row: (_RANK[row[1]], -(row[2] or 0.0), -(row[3] or 0.0), row[4]))[
+            :BEST_NAMED
+        ]
+        for target_id, part in by_target.items()
+    }
+    codes = reading.sample_codes(connection, sorted({row[4] for part in leaders.values() for row in part}))
+    conclusions: dict[tuple[int, str], Conclusion] = {}
+    if explained:
+        wanted = [(leaders[t["target_id"]][0][4], t["code"]) for t in targets if leaders[t["target_id"]]]
+        conclusions = explain_chosen(connection, wanted)
+    found = [
+        _standing(target, by_target[target["target_id"]], leaders[target["target_id"]], codes, conclusions)
+        for target in targets
+    ]
+    order = {"favourable": 0, "possible": 1, "undecided": 2, "unfavourable": 3, None: 4}
+    return sorted(found, key=lambda one: (order[one.leading], -(one.median_score or 0.0)))
+
+
+def _standing(
+    target: dict[str, Any],
+    rows: Sequence[tuple[Any, ...]],
+    leaders: Sequence[tuple[Any, ...]],
+    codes: dict[int, str],
+    conclusions: dict[tuple[int, str], Conclusion],
+) -> Standing:
+    definition = read_definition(target["definition"])
+    counted = Counter(row[1] for row in rows)
+    scores = [row[2] for row in rows if row[2] is not None]
+    lacking, causes = lacking_of(definition, (row[5] for row in rows if row[5] is not None))
+    return Standing(
+        target=target["code"],
+        name=target["name"],
+        counts={word: counted.get(code, 0) for code, word in enumerate(VERDICT_WORDS)},
+        samples=len(rows),
+        median_score=statistics.median(scores) if scores else None,
+        best_score=max(scores) if scores else None,
+        best=tuple(Best(row[4], codes[row[4]], VERDICT_WORDS[row[1]], row[2], row[3]) for row in leaders),
+        lacking=lacking,
+        causes=causes,
+        cautions=definition.cautions,
+        conclusion=conclusions.get((leaders[0][4], target["code"])) if leaders else None,
+    )
+
+
+def lacking_of(
+    definition: TargetDefinition, reasons: Iterable[str]
+) -> tuple[tuple[Lacking, ...], tuple[tuple[str, int], ...]]:
+    """What the samples of these packed reasons lack, dearest first, and the causes of not being judged with counts.
+
+    The points of a criterion count once for each thing it lacks in a sample, as on the page of the sample itself.
+    """
+    weights = {
+        position: item.weight if isinstance(item, Criterion) else 0 for position, item in enumerate(definition.tests)
+    }
+    points: Counter[str] = Counter()
+    samples: Counter[str] = Counter()
+    causes: Counter[str] = Counter()
+    for packed in reasons:
+        named: set[str] = set()
+        for position, names in _LACKING.findall(packed):
+            for name in names.split(", "):
+                points[name] += weights.get(int(position), 0)
+                named.add(name)
+        samples.update(named)
+        if cause := _CAUSE.search(packed):
+            causes[cause.group(1)] += 1
+    lacking = [Lacking(name, definition.supply.get(name, ""), samples[name], points[name]) for name in samples]
+    lacking.sort(key=lambda one: (-one.points, -one.samples, one.name))
+    return tuple(lacking), tuple(causes.most_common())
