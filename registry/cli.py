@@ -13,6 +13,8 @@ COMMANDS = {
     "create": ("registries", "create"),
     "upgrade": ("registries", "upgrade"),
     "check": ("registries", "check"),
+    "backup": ("registries", "backup"),
+    "recover": ("registries", "recover"),
     "import": ("data", "import_"),
     "refresh": ("data", "refresh"),
     "export": ("data", "export"),

@@ -2,12 +2,13 @@
 
 from __future__ import annotations
 
+import shutil
 from pathlib import Path
 from typing import Any
 
 from registry.clock import now
 from registry.controlling import ship_reference_values
-from registry.errors import PlutonbookError
+from registry.errors import PlutonbookError, UsageError
 from registry.judging import install_shipped_definitions
 from registry.refresh import refresh_registry
 from registry.store import schema, target_rows
@@ -84,3 +85,25 @@ def build_demo(path_or_url: str) -> list[str]:
         f"Built the demo registry {path or 'on PostgreSQL'}: every name and number in it is invented.",
         *report.summary(),
     ]
+
+
+def put_back(path_or_url: str | Path, saved: Path) -> Path | None:
+    """Put a backup in a registry's place; where the registry that stood there was moved to, None if none did.
+
+    The backup is looked at first: raises what ``open_registry`` raises where it is no registry. UsageError on
+    PostgreSQL, whose own tools do this.
+    """
+    _, path = place_of(path_or_url)
+    if path is None:
+        raise UsageError("a PostgreSQL registry is restored with the server's own pg_restore")
+    open_registry(saved, any_revision=True).close()
+    kept = None
+    if path.exists():
+        stamp = now().replace(":", "").replace("-", "")
+        kept = path.with_name(f"{path.stem}-replaced-{stamp}{path.suffix}")
+        for ending in ("", "-wal", "-shm"):
+            part = path.with_name(path.name + ending)
+            if part.exists():
+                part.rename(kept.with_name(kept.name + ending))
+    shutil.copyfile(saved, path)
+    return kept

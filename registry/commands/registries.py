@@ -1,6 +1,8 @@
-"""``plutonbook create``, ``upgrade`` and ``check``."""
+"""``plutonbook create``, ``upgrade``, ``check``, ``backup`` and ``recover``."""
 
 from __future__ import annotations
+
+from pathlib import Path
 
 import click
 
@@ -52,3 +54,32 @@ def check(ctx: click.Context, registry_path: str | None, as_json: bool) -> int:
     lines = [f"{finding['subject']}: {finding['found']}; {finding['remedy']}" for finding in findings]
     say({"findings": findings}, lines or ["Nothing to complain of."], as_json)
     return 1 if findings else 0
+
+
+@click.command()
+@click.argument("file", type=click.Path(path_type=Path))
+@registry_option
+@json_option
+def backup(registry_path: str | None, file: Path, as_json: bool) -> None:
+    """Write a clean copy of the registry to FILE, also while others work in it."""
+    from registry.store import schema
+    from registry.store.engine import open_registry
+
+    schema.backup(open_registry(registry_named(registry_path), any_revision=True), file)
+    say({"backup": str(file)}, [f"The registry is copied to {file}."], as_json)
+
+
+@click.command()
+@click.argument("file", type=click.Path(path_type=Path))
+@registry_option
+@json_option
+def recover(registry_path: str | None, file: Path, as_json: bool) -> None:
+    """Put the backup FILE in the registry's place; what stood there is kept beside it."""
+    from registry.founding import put_back
+
+    path = registry_named(registry_path)
+    kept = put_back(path, file)
+    lines = [f"{path} is the backup {file} again."]
+    if kept is not None:
+        lines.append(f"What stood there before lies in {kept}.")
+    say({"registry": path, "kept": None if kept is None else str(kept)}, lines, as_json)

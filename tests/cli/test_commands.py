@@ -182,3 +182,21 @@ def test_what_is_not_there_yet_or_contradicts_exits_2(
 ) -> None:
     assert run(*arguments, "--registry", path) == 2
     assert capsys.readouterr().err.startswith("plutonbook: ")
+
+
+def test_backup_is_put_back_and_what_stood_there_is_kept(
+    path: Path, files: list[Path], tmp_path: Path, capsys: pytest.CaptureFixture
+) -> None:
+    run("import", *files, "--registry", path)
+    saved = tmp_path / "saved.sqlite"
+    assert run("backup", saved, "--registry", path) == 0
+    assert run("backup", saved, "--registry", path) == 1
+    path.write_bytes(b"damaged")
+
+    assert run("recover", saved, "--registry", path) == 0
+    assert run("batches", "--registry", path) == 0
+    assert run("recover", files[0], "--registry", path) == 1
+    captured = capsys.readouterr()
+    assert "C-1  active" in captured.out
+    assert "not an SQLite file" in captured.err
+    assert len(list(tmp_path.glob("registry-replaced-*.sqlite"))) == 1
