@@ -30,6 +30,8 @@ MOST_SAMPLES_SEARCHED = 2000
 #: Few samples scatter more than chi-square says: limits raised by simulation so that at most about 3 in 1000 samples
 #: of one normal population, or of a straight trend with noise, lie beyond them (recomputed by the tests).
 _LIMIT_RISE = 60.0
+#: Least spread of a log-ratio that counts: what sampling and analysis alone make of majors (common practice).
+LEAST_SPREAD = 0.02
 _DEVIATION_LIMIT, _DEVIATION_RISE = 4.0, 50.0
 #: Above this share of far samples the body is not one population, and none of them is called far.
 LARGEST_FAR_SHARE = 0.10
@@ -76,7 +78,8 @@ def squared_distances(points: ArrayLike) -> Array:
 
     Middle and spread are those of the half of the points with the least determinant of its covariance, found by
     concentration steps from two fixed starts (so that the same points always give the same answer), reweighted once
-    at the 97.5 % point and scaled so that the median distance is that of chi-square. Meant for 10 p points or more.
+    at the 97.5 % point and scaled down to the median of chi-square. No direction counts as narrower than 0.02, the
+    noise of log-ratios of majors. Meant for 10 p points or more.
     Source [rousseeuw1999]; [filzmoser2008] for log-ratios. ValueError for more than ten coordinates.
     """
     x = np.asarray(points, dtype=np.float64)
@@ -85,15 +88,15 @@ def squared_distances(points: ArrayLike) -> Array:
         raise ValueError(f"robust distance: {p} coordinates; the table of chi-square holds {len(CHI_SQUARE_50)}")
     centred = x - np.median(x, axis=0)
     spread = 1.4826 * np.median(np.abs(centred), axis=0)
-    scaled = centred / np.where(spread > 0.0, spread, 1.0)
-    searched = scaled[:: max(1, n // MOST_SAMPLES_SEARCHED)]
+    searched = centred[:: max(1, n // MOST_SAMPLES_SEARCHED)]
     half = (len(searched) + p + 1) // 2
-    length = np.sqrt((searched**2).sum(axis=1))
-    signs = searched / np.where(length > 0.0, length, 1.0)[:, None]
-    starts = (length**2, _mahalanobis(searched, np.zeros(p), np.cov(signs, rowvar=False))[0])
+    scaled = searched / np.maximum(spread, LEAST_SPREAD)
+    length = np.sqrt((scaled**2).sum(axis=1))
+    signs = scaled / np.where(length > 0.0, length, 1.0)[:, None]
+    starts = (length**2, _mahalanobis(scaled, np.zeros(p), np.cov(signs, rowvar=False))[0])
     _, distances = min((_concentrated(searched, start, half) for start in starts), key=lambda found: found[0])
     close = searched[_calibrated(distances, p) <= CHI_SQUARE_975[p - 1]]
-    return _calibrated(_mahalanobis(scaled, close.mean(axis=0), np.cov(close, rowvar=False))[0], p)
+    return _calibrated(_mahalanobis(centred, close.mean(axis=0), np.cov(close, rowvar=False))[0], p)
 
 
 def distances_from_body(analyses: ArrayLike, components: tuple[str, ...] = COMPARED_OXIDES) -> Distances:
@@ -101,8 +104,8 @@ def distances_from_body(analyses: ArrayLike, components: tuple[str, ...] = COMPA
 
     From 10 (k - 1) complete analyses on, ``squared_distances`` of their log-ratios against the 99.9 % point of
     chi-square; with fewer, the greatest deviation of a centred log-ratio in units of its median deviation (x 1.4826),
-    against 4 + 50/n. Under 8 nothing is far. Sources [rousseeuw1999], [filzmoser2008], [aitchison1986]; the limits
-    for few samples were found by simulation.
+    not below 0.02, against 4 + 50/n. Under 8 nothing is far. Sources [rousseeuw1999], [filzmoser2008],
+    [aitchison1986]; the limits for few samples were found by simulation.
     """
     parts = np.asarray(analyses, dtype=np.float64).reshape(-1, len(components))
     n, k = parts.shape
@@ -118,7 +121,7 @@ def distances_from_body(analyses: ArrayLike, components: tuple[str, ...] = COMPA
     logs = np.log(known) - np.log(known).mean(axis=1, keepdims=True)
     offset = np.abs(logs - np.median(logs, axis=0))
     scale = 1.4826 * np.median(offset, axis=0)
-    deviation = offset / np.where(scale > 0.0, scale, 1.0)
+    deviation = offset / np.maximum(scale, LEAST_SPREAD)
     by_component = count < SAMPLES_PER_DIMENSION * (k - 1)
     if by_component:
         limit = _DEVIATION_LIMIT + _DEVIATION_RISE / count
@@ -149,14 +152,14 @@ def _concentrated(x: Array, distances: Array, half: int) -> tuple[float, Array]:
 
 
 def _mahalanobis(x: Array, centre: Array, covariance: Array) -> tuple[Array, float]:
-    """Squared distances and the determinant; directions without spread count by a ten-millionth of the widest."""
+    """Squared distances and the determinant; directions without spread count by the noise."""
     values, vectors = np.linalg.eigh(np.atleast_2d(covariance))
-    values = np.maximum(values, max(float(values[-1]), 1e-12) * 1e-7)
+    values = np.maximum(values, LEAST_SPREAD**2)
     turned = (x - centre) @ vectors
     return (turned**2 / values).sum(axis=1), float(np.prod(values))
 
 
 def _calibrated(squared: Array, p: int) -> Array:
-    """Squared distances scaled so that their median is that of chi-square with p degrees of freedom."""
+    """Squared distances scaled down so that their median is at most that of chi-square with p degrees of freedom."""
     middle = float(np.median(squared))
-    return squared * (CHI_SQUARE_50[p - 1] / middle) if middle > 0.0 else squared
+    return squared * min(1.0, CHI_SQUARE_50[p - 1] / middle) if middle > 0.0 else squared

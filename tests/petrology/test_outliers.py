@@ -134,6 +134,14 @@ def test_distances_do_not_depend_on_the_order_of_samples(seed: int, n: int) -> N
     np.testing.assert_allclose(distances_from_body(rocks[order]).distance, distances_from_body(rocks).distance[order])
 
 
+@pytest.mark.parametrize("n", [12, 100])
+def test_smooth_suite_without_noise_has_no_far_samples(n: int) -> None:
+    """Deviations below the noise of analyses are none, however regular the suite."""
+    logs = np.log(DACITE) + np.outer(np.linspace(0.0, 1.0, n), np.log(RHYOLITE / DACITE))
+
+    assert not distances_from_body(100.0 * np.exp(logs) / np.exp(logs).sum(axis=1, keepdims=True)).far.any()
+
+
 def test_identical_rocks_are_not_far_from_each_other() -> None:
     assert not distances_from_body(np.tile(DACITE, (100, 1))).far.any()
     assert not distances_from_body(np.tile(DACITE, (20, 1))).far.any()
@@ -145,7 +153,7 @@ def test_squared_distances_of_normal_points_follow_chi_square() -> None:
     points = generator.normal(size=(4000, 5)) @ generator.normal(size=(5, 5))
     found = squared_distances(points)
 
-    assert np.median(found) == pytest.approx(CHI_SQUARE_50[4], rel=1e-9)
+    assert np.median(found) == pytest.approx(CHI_SQUARE_50[4], rel=0.02)
     assert np.quantile(found, 0.975) == pytest.approx(CHI_SQUARE_975[4], rel=0.06)
 
 
