@@ -11,6 +11,7 @@ from sqlalchemy import Connection, text
 
 from registry.petrology.analytes import CHOSEN_INDEX
 from registry.petrology.digestion import DIGESTION_LETTERS, DIGESTIONS, carries
+from registry.store import raw_rows
 from registry.store.reading.samples import NORM_ORDER
 from registry.store.sheets import CONTROL_KINDS, DERIVED_COLUMNS, VERDICT_WORDS
 
@@ -56,6 +57,12 @@ def _rows(connection: Connection, sql: str, **bound: Any) -> list[dict[str, Any]
     return [dict(row) for row in connection.execute(text(sql), bound).mappings()]
 
 
+def _grouping(column: str) -> str:
+    if column not in ("intrusion_id", "site_id"):
+        raise ValueError(f"samples are grouped by intrusion_id or site_id, not by {column!r}")
+    return column
+
+
 def find_intrusion(connection: Connection, name: str) -> dict[str, Any] | None:
     """The intrusion of this name with its area and what was computed of it; None where there is none."""
     rows = _rows(
@@ -86,10 +93,8 @@ def near_intrusions(connection: Connection, name: str, limit: int = 6) -> list[s
 
 def kinds_of_samples(connection: Connection, column: str, key: int) -> dict[str, int]:
     """How many samples of each kind one intrusion (``intrusion_id``) or site (``site_id``) has."""
-    if column not in ("intrusion_id", "site_id"):
-        raise ValueError(f"samples are grouped by intrusion_id or site_id, not by {column!r}")
     rows = connection.execute(
-        text(f"SELECT kind, count(*) FROM sample WHERE {column} = :key GROUP BY kind ORDER BY count(*) DESC, kind"),
+        text(f"SELECT kind, count(*) FROM sample WHERE {_grouping(column)} = :key GROUP BY kind ORDER BY count(*) DESC, kind"),
         {"key": key},
     )
     return {row[0]: row[1] for row in rows}
@@ -100,17 +105,12 @@ def judged_samples(connection: Connection, column: str, key: int) -> list[tuple[
 
     (target id, verdict code, score_min, score_max, sample id, packed reasons where undecided or else None).
     """
-    if column not in ("intrusion_id", "site_id"):
-        raise ValueError(f"samples are grouped by intrusion_id or site_id, not by {column!r}")
-    rows = connection.execute(
-        text(
-            "SELECT v.target_id, v.verdict, v.score_min, v.score_max, v.sample_id, "
-            "CASE WHEN v.verdict = 3 THEN v.reasons END FROM sample AS s JOIN verdict AS v ON v.sample_id = s.sample_id "
-            f"WHERE s.{column} = :key AND s.kind NOT IN ({CONTROLS})"
-        ),
-        {"key": key},
+    return raw_rows.select(
+        connection,
+        "SELECT v.target_id, v.verdict, v.score_min, v.score_max, v.sample_id, "
+        "CASE WHEN v.verdict = 3 THEN v.reasons END FROM sample AS s JOIN verdict AS v ON v.sample_id = s.sample_id "
+        f"WHERE s.{_grouping(column)} = {int(key)} AND s.kind NOT IN ({CONTROLS})",
     )
-    return list(map(tuple, rows))
 
 
 def sample_codes(connection: Connection, sample_ids: Sequence[int]) -> dict[int, str]:
@@ -129,17 +129,15 @@ def scores_by_intrusion(connection: Connection, target_id: int) -> dict[int, dic
     scored), ``scored`` how many were. Reads every verdict on the target: keep the answer.
     """
     # read along the index of the target's verdicts, sample by sample: a hundred thousand rows of verdict stay unread
-    rows = connection.execute(
-        text(
-            "SELECT s.intrusion_id, v.verdict, v.score_min FROM verdict AS v CROSS JOIN sample AS s "
-            "WHERE s.sample_id = v.sample_id AND v.target_id = :target AND s.intrusion_id IS NOT NULL "
-            f"AND s.kind NOT IN ({CONTROLS})"
-        ),
-        {"target": target_id},
-    ).fetchall()
+    rows = raw_rows.select(
+        connection,
+        "SELECT s.intrusion_id, v.verdict, v.score_min FROM verdict AS v CROSS JOIN sample AS s "
+        f"WHERE s.sample_id = v.sample_id AND v.target_id = {int(target_id)} AND s.intrusion_id IS NOT NULL "
+        f"AND s.kind NOT IN ({CONTROLS})",
+    )
     if not rows:
         return {}
-    table = np.array(rows, dtype=np.float64)
+    table = np.array(list(zip(*rows, strict=True)), dtype=np.float64).T
     table = table[np.argsort(table[:, 0], kind="stable")]
     starts = np.flatnonzero(np.r_[True, table[1:, 0] != table[:-1, 0]])
     found = {}
@@ -163,14 +161,12 @@ def composition_ranges(
     derived = [name for name in names if name in DERIVED_COLUMNS]
     chosen = [name for name in names if name not in DERIVED_COLUMNS]
     selected = ", ".join([*(f"d.{name}" for name in derived), *(f"c.{name}" for name in chosen)])
-    rows = connection.execute(
-        text(
-            f"SELECT s.sample_id, c.qualifiers, c.digestions, {selected} FROM sample AS s "
-            "JOIN derived AS d ON d.sample_id = s.sample_id JOIN composition AS c ON c.sample_id = s.sample_id "
-            f"WHERE s.{column} = :key AND s.kind NOT IN ({CONTROLS})"
-        ),
-        {"key": key},
-    ).fetchall()
+    rows = raw_rows.select(
+        connection,
+        f"SELECT s.sample_id, c.qualifiers, c.digestions, {selected} FROM sample AS s "
+        "JOIN derived AS d ON d.sample_id = s.sample_id JOIN composition AS c ON c.sample_id = s.sample_id "
+        f"WHERE s.{_grouping(column)} = {int(key)} AND s.kind NOT IN ({CONTROLS})",
+    )
     if not rows:
         return {}, []
     ids, signs, letters, *columns = zip(*rows, strict=True)
@@ -253,8 +249,6 @@ def norms_of(connection: Connection, sample_ids: Sequence[int]) -> dict[int, dic
 
 def sample_rows(connection: Connection, column: str, key: int, limit: int = SAMPLES_SHOWN) -> list[dict[str, Any]]:
     """The first samples by site and depth, then code, with rock name, verdict in words and whether they are stale."""
-    if column not in ("intrusion_id", "site_id"):
-        raise ValueError(f"samples are grouped by intrusion_id or site_id, not by {column!r}")
     rows = _rows(
         connection,
         f"""
@@ -264,7 +258,7 @@ def sample_rows(connection: Connection, column: str, key: int, limit: int = SAMP
         FROM sample AS s LEFT JOIN site AS k ON k.site_id = s.site_id
         LEFT JOIN intrusion AS i ON i.intrusion_id = s.intrusion_id
         LEFT JOIN derived AS d ON d.sample_id = s.sample_id LEFT JOIN stale AS z ON z.sample_id = s.sample_id
-        WHERE s.{column} = :key ORDER BY k.code, s.from_m, s.code LIMIT :n
+        WHERE s.{_grouping(column)} = :key ORDER BY k.code, s.from_m, s.code LIMIT :n
         """,
         key=key,
         n=limit,
