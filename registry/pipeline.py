@@ -16,6 +16,7 @@ from registry.petrology.analytes import CHOSEN_COLUMNS, CHOSEN_INDEX, QUALIFIER_
 from registry.petrology.catalogue import CAUSES, METHODS, QUANTITIES, WARNINGS, Method
 from registry.petrology.conventions import Conventions
 from registry.petrology.logged import logged_words
+from registry.petrology.quotients import is_absent
 from registry.targets.engine import CONTROL_KINDS, Verdicts, best, judge_all
 
 #: Samples computed at a time: keeps the temporaries in the processor's cache and the memory bounded.
@@ -130,8 +131,14 @@ def workspace_of(chunk: Chunk, conventions: Conventions) -> dict[str, Any]:
         workspace[name] = chunk.context.get(name, np.zeros(n, dtype=bool))
     workspace.update(logged_words(workspace["lithology"], workspace["texture"], workspace["alteration"]))
     workspace["is_plutonic"] = workspace["has_intrusion"] | workspace["logged_plutonic"]
-    workspace["is_control"] = np.isin(workspace["sample_kind"].astype("U20"), CONTROL_KINDS)
+    workspace["is_control"] = _is_control(workspace["sample_kind"])
     return workspace
+
+
+def _is_control(sample_kind: np.ndarray) -> np.ndarray:
+    kinds, inverse = np.zeros(len(sample_kind), dtype=bool), np.flatnonzero(~is_absent(sample_kind))
+    kinds[inverse] = [kind in CONTROL_KINDS for kind in sample_kind[inverse].tolist()]
+    return kinds
 
 
 def is_missing(column: np.ndarray) -> np.ndarray:
@@ -139,7 +146,7 @@ def is_missing(column: np.ndarray) -> np.ndarray:
     if column.dtype.kind == "f":
         return np.isnan(column)
     if column.dtype.kind == "O":
-        return np.equal(column, None).astype(bool)  # type: ignore[call-overload]
+        return is_absent(column)
     return np.zeros(column.shape, dtype=bool)
 
 
@@ -163,28 +170,35 @@ def _evaluate(workspace: dict[str, Any], n: int) -> np.ndarray:
 
 def _explain(method: Method, workspace: dict[str, Any], causes: np.ndarray, n: int) -> None:
     """Give each missing output of a method the letter of its cause."""
-    letters: np.ndarray | None = None
-    for output in method.outputs:
-        missing = is_missing(workspace[output.name])
-        if not missing.any():
-            continue
-        if letters is None:
-            letters = _letters(method, workspace, n)
-        position = _QUANTITY_POSITION[output.name]
-        causes[:, position] = np.where(missing, letters, _DOT)
+    missing = {output.name: is_missing(workspace[output.name]) for output in method.outputs}
+    missing = {name: rows for name, rows in missing.items() if rows.any()}
+    if not missing:
+        return
+    rows = np.flatnonzero(np.logical_or.reduce(list(missing.values())))
+    letters = np.full(n, _DOT, dtype=np.uint8)
+    letters[rows] = _letters(method, workspace, rows, n)
+    for name, mask in missing.items():
+        causes[:, _QUANTITY_POSITION[name]] = np.where(mask, letters, _DOT)
 
 
-def _letters(method: Method, workspace: dict[str, Any], n: int) -> np.ndarray:
-    incomplete = np.zeros(n, dtype=bool)
+def _letters(method: Method, workspace: dict[str, Any], rows: np.ndarray, n: int) -> np.ndarray:
+    """Letters of the causes for the rows named: the first cause that holds, else an input that is missing."""
+
+    def of(name: str) -> Any:
+        column = workspace[name]
+        return column if len(rows) == n or not isinstance(column, np.ndarray) else column[rows]
+
+    letters = np.full(len(rows), ord(CAUSES["not_applicable"][0]), dtype=np.uint8)
+    open_ = np.ones(len(rows), dtype=bool)
+    for cause in method.causes:
+        holds = open_ & cause.mask(*(of(name) for name in cause.inputs))
+        letters[holds] = ord(CAUSES[cause.code][0])
+        open_ &= ~holds
+        if not open_.any():
+            return letters
     for name in method.inputs:
-        if name in method.optional or name == "conventions" or ":" in name:
-            continue
-        column = workspace.get(name)
-        incomplete |= True if column is None else is_missing(column)
-    letters = np.where(incomplete, ord(CAUSES["missing_input"][0]), ord(CAUSES["not_applicable"][0]))
-    for cause in reversed(method.causes):
-        mask = cause.mask(*(workspace[name] for name in cause.inputs))
-        letters = np.where(mask, ord(CAUSES[cause.code][0]), letters)
+        if name not in method.optional and name != "conventions" and ":" not in name:
+            letters[open_ & (is_missing(of(name)) if name in workspace else True)] = ord(CAUSES["missing_input"][0])
     return letters
 
 
@@ -192,8 +206,9 @@ def _warn(workspace: dict[str, Any], n: int) -> np.ndarray:
     marks = np.full((n, len(WARNINGS)), ord("0"), dtype=np.uint8)
     absent = np.full(n, np.nan)
     for position, warning in enumerate(WARNINGS):
-        mask = warning.mask(*(workspace.get(name, absent) for name in warning.inputs))
-        marks[:, position] += np.asarray(mask, dtype=bool)
+        mask = np.asarray(warning.mask(*(workspace.get(name, absent) for name in warning.inputs)), dtype=bool)
+        if mask.any():
+            marks[:, position] += mask
     return marks
 
 

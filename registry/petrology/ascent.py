@@ -10,6 +10,7 @@ from numpy.typing import ArrayLike, NDArray
 
 from registry.petrology.constants import GRAVITY_M_PER_S2, SECONDS_PER_YEAR
 from registry.petrology.melt_composition import Array, not_negative, positive
+from registry.petrology.quotients import is_absent
 
 REACHES_SURFACE = "likely reaches the surface"
 MARGINAL = "marginal"
@@ -107,7 +108,7 @@ def ascent_cause(
 ) -> NDArray[np.object_]:
     """Why there is no ascent outcome, object array (n,): one of ``ASCENT_CAUSES``; None where there is one."""
     words = np.array([*ASCENT_CAUSES, None], dtype=object)
-    missing = ~np.asarray(outcome, dtype=object).astype(bool)  # None, not a word
+    missing = is_absent(np.atleast_1d(outcome))
     no_liquidus = np.isnan(np.asarray(liquidus_c, dtype=np.float64))
     no_depth = np.isnan(not_negative(emplacement_depth_m))
     no_density = np.isnan(np.asarray(density_contrast_kg_m3, dtype=np.float64))

@@ -11,6 +11,7 @@ from typing import Any
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
 
+from registry.petrology.broken_lines import broken_line
 from registry.petrology.classification import GRANITE_Q_WT
 from registry.petrology.quotients import Floats, floats, labels, log10_positive
 
@@ -46,16 +47,13 @@ TA_YB_RIDGE: Line = ((5.0, 1.0), (100.0, 7.0))
 def _height(log_x: Floats, line: Line) -> Floats:
     """log10 y of a broken line at log10 x; its first and last stretch are carried on straight."""
     x, y = np.log10(np.array(line)).T
-    inner = np.interp(log_x, x, y)
-    first = y[0] + (log_x - x[0]) * (y[1] - y[0]) / (x[1] - x[0])
-    last = y[-1] + (log_x - x[-1]) * (y[-1] - y[-2]) / (x[-1] - x[-2])
-    return np.select([log_x < x[0], log_x > x[-1]], [first, last], default=inner)
+    return broken_line(log_x, x, y, extended=True)
 
 
 def _abscissa(log_y: Floats, line: Line) -> Floats:
     """log10 x of a steep broken line at log10 y, held beyond its ends; corners in order of rising y."""
     x, y = np.log10(np.array(line)).T
-    return np.interp(log_y, y, x)
+    return broken_line(log_y, y, x)
 
 
 def line_height(x_ppm: ArrayLike, line: Line) -> Floats:

@@ -8,10 +8,13 @@ from numpy.typing import ArrayLike, NDArray
 from registry.petrology.constants import oxide_from_element
 from registry.petrology.conventions import Conventions
 from registry.petrology.melt_composition import Array, by_silica_class, not_negative, positive
+from registry.petrology.quotients import is_absent
 
 CUBIC_M_PER_CUBIC_KM = 1e9
 #: Shapes of a body that the heat of an intrusion knows.
 SHAPES = ("sphere", "slab", "cylinder")
+#: Thickness (a sphere's mean chord) over half-width; a cylinder's length is not known.
+THICKNESS_OF_HALF_WIDTH = {"sphere": 4.0 / 3.0, "slab": 2.0, "cylinder": np.nan}
 #: Causes of a missing heat production, in the order in which they are looked for.
 HEAT_CAUSES = ("u_missing", "th_missing", "k2o_missing", "density_unknown")
 
@@ -68,6 +71,17 @@ def heat_production_cause(
     return words[cause]
 
 
+def shape_codes(intrusion_shape: ArrayLike) -> NDArray[np.intp]:
+    """1, 2, ... by the place in ``SHAPES``, 0 for None or another word; shape (n,)."""
+    shape = np.atleast_1d(np.asarray(intrusion_shape, dtype=object))
+    code = np.zeros(shape.shape, dtype=np.intp)
+    rows = np.flatnonzero(~is_absent(shape))
+    known = shape[rows]
+    for position, name in enumerate(SHAPES if rows.size else (), start=1):
+        code[rows[np.asarray(known == name, dtype=bool)]] = position
+    return code
+
+
 def sphere_radius_m(volume_km3: ArrayLike) -> Array:
     """Radius (m) of a sphere from its volume (km3); a volume alone fixes no other shape."""
     volume = positive(volume_km3) * CUBIC_M_PER_CUBIC_KM
@@ -78,8 +92,11 @@ def effective_half_width_m(intrusion_shape: ArrayLike, half_width_m: ArrayLike, 
     """Half-width (m) of a body: as given (slab half thickness, cylinder and sphere radius), else a sphere's from its
     volume; NaN where neither fixes it. ``intrusion_shape`` is an object array of ``SHAPES`` or None."""
     given = positive(half_width_m)
+    from_volume = np.isnan(given) & (np.asarray(volume_km3) > 0.0)
+    if not from_volume.any():
+        return given
     is_sphere = np.asarray(intrusion_shape, dtype=object) == "sphere"
-    return np.where(np.isnan(given) & is_sphere, sphere_radius_m(volume_km3), given)
+    return np.where(from_volume & is_sphere, sphere_radius_m(volume_km3), given)
 
 
 def heat_x_thickness_mw_m2(
@@ -89,6 +106,6 @@ def heat_x_thickness_mw_m2(
 
     NaN for a cylinder, whose length is not known, and for an unknown shape. Source: derivable; a uniform A.
     """
-    shape = np.asarray(intrusion_shape, dtype=object)
-    factor = np.where(shape == "slab", 2.0, np.where(shape == "sphere", 4.0 / 3.0, np.nan))
+    code = shape_codes(intrusion_shape)
+    factor = np.array([np.nan, *(THICKNESS_OF_HALF_WIDTH[shape] for shape in SHAPES)])[code]
     return np.asarray(heat_production_uw_m3, dtype=np.float64) * factor * positive(half_width_m) * 1e-3

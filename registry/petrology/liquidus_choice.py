@@ -55,12 +55,28 @@ def olivine_models_in_range(sio2_wt: ArrayLike, mgo_wt: ArrayLike) -> dict[str, 
 
 def median_low_high(values: Array) -> tuple[Array, Array, Array]:
     """Median, least and greatest of the numbers present in each column of ``values`` (models, n); NaN where none is."""
-    ordered = np.sort(values, axis=0)  # NaN goes last
-    count = np.sum(~np.isnan(values), axis=0)
-    last = np.maximum(count - 1, 0)
-    columns = np.arange(values.shape[1])
-    median = 0.5 * (ordered[last // 2, columns] + ordered[(last + 1) // 2, columns])
-    return median, ordered[0], ordered[last, columns]
+    missing = np.isnan(values)
+    ordered = np.where(missing, np.inf, values)  # what is missing goes last
+    count, n = ordered.shape
+    lesser = np.empty(n)
+    for turn in range(count):  # neighbours change places until all stand in order: whole rows at a time
+        for upper in range(turn % 2, count - 1, 2):
+            np.minimum(ordered[upper], ordered[upper + 1], out=lesser)
+            np.maximum(ordered[upper], ordered[upper + 1], out=ordered[upper + 1])
+            ordered[upper] = lesser
+    last = np.maximum(count - 1 - np.add.reduce(missing, axis=0, dtype=np.intp), 0)
+    columns, flat = np.arange(n), ordered.ravel()
+
+    def of_row(which: NDArray[np.intp]) -> Array:
+        return np.take(flat, which * n + columns)
+
+    found = ordered[0] < np.inf
+    median = 0.5 * (of_row(last >> 1) + of_row((last + 1) >> 1))
+    return (
+        np.where(found, median, np.nan),
+        np.where(found, ordered[0], np.nan),
+        np.where(found, of_row(last), np.nan),
+    )
 
 
 def choose_liquidus(

@@ -49,14 +49,17 @@ def _norm_of_chunk(wt: Mapping[str, Array], out: Array, take: Take) -> None:
     possible = np.ones(out.shape[1], dtype=bool)
     for array in wt.values():
         possible &= (array >= 0.0) & (array < np.inf)
-    wt = {name: np.where(possible, array, 0.0) for name, array in wt.items()}
+    if not possible.all():
+        wt = {name: np.where(possible, array, 0.0) for name, array in wt.items()}
     cations = _cations(allot_minerals(norm_moles(wt, take)[0], take))
     total = sum(cations[name.removesuffix("_wt")] for name in NORM_MINERALS if name.removesuffix("_wt") in cations)
     factor = 100.0 / np.where(possible & (total > 0.0), total, np.nan)
     for position, column in enumerate(CATION_COLUMNS):
         if (amount := cations.get(column.removesuffix("_cat"))) is not None:
             np.multiply(amount, factor, out=out[position])
-    out[:, np.isnan(factor)] = np.nan
+    impossible = np.isnan(factor)
+    if impossible.any():
+        out[:, impossible] = np.nan
 
 
 def _cations(minerals: Minerals) -> dict[str, Array]:

@@ -37,6 +37,12 @@ def log10_positive(values: ArrayLike) -> Floats:
     return result
 
 
+def is_absent(words: Any) -> NDArray[np.bool_]:
+    """True where an object array holds None, shape kept: told by address, which is many times faster than comparing."""
+    column = np.ascontiguousarray(words, dtype=object)
+    return np.ndarray(column.shape, np.intp, buffer=column) == id(None)
+
+
 def labels(codes: ArrayLike, names: Sequence[str]) -> Any:
     """Object array of ``names[code]``; None where the code is -1."""
     table = np.array([*names, None], dtype=object)

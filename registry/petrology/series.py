@@ -7,6 +7,7 @@ from typing import Any
 import numpy as np
 from numpy.typing import ArrayLike
 
+from registry.petrology.broken_lines import broken_line
 from registry.petrology.quotients import Floats, floats, labels, quotient
 
 Points = tuple[tuple[float, ...], tuple[float, ...]]
@@ -42,9 +43,7 @@ ALKALINITY = ("subalkaline", "alkaline")
 
 def _extended(silica: Floats, points: Points) -> Floats:
     """A broken line, carried on straight beyond its last corner."""
-    x, y = points
-    beyond = y[-1] + (silica - x[-1]) * ((y[-1] - y[-2]) / (x[-1] - x[-2]))
-    return np.where(silica > x[-1], beyond, np.interp(silica, x, y))
+    return broken_line(silica, *points, extended=True)
 
 
 def k2o_series(sio2_vf_wt: ArrayLike, k2o_vf_wt: ArrayLike) -> Any:
@@ -66,7 +65,7 @@ def k2o_series_iugs(sio2_vf_wt: ArrayLike, k2o_vf_wt: ArrayLike) -> Any:
     """low-K, medium-K or high-K by the two straight lines, SiO2 48-68 only, shape (n,). Source [lemaitre2002]."""
     silica, k2o = floats(sio2_vf_wt, k2o_vf_wt)
     lines = (K2O_LOW_MEDIUM_IUGS, K2O_MEDIUM_HIGH_IUGS)
-    code = sum((k2o >= np.interp(silica, *line)).astype(np.intp) for line in lines)
+    code = sum((k2o >= broken_line(silica, *line)).astype(np.intp) for line in lines)
     usable = (silica >= 48.0) & (silica <= 68.0) & np.isfinite(k2o)
     return labels(np.where(usable, code, -1), K2O_SERIES_IUGS)
 
@@ -93,7 +92,7 @@ def afm_divide_f(m_percent: ArrayLike, divide: str = "irvine1971") -> Floats:
     corners = AFM_DIVIDES[divide]
     drawn_m, drawn_f = [corner[2] for corner in corners], [corner[1] for corner in corners]
     inside = (m >= drawn_m[0]) & (m <= drawn_m[-1])
-    return np.where(inside, np.interp(m, drawn_m, drawn_f), np.nan)
+    return np.where(inside, broken_line(m, drawn_m, drawn_f), np.nan)
 
 
 def afm_series(

@@ -13,6 +13,7 @@ from typing import Any
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
 
+from registry.petrology.broken_lines import broken_line, first_code
 from registry.petrology.quotients import Floats, floats, labels, quotient
 
 #: Field codes in order; the letters of [lebas1986]. U is the undrawn corner.
@@ -79,37 +80,37 @@ def _line(silica: Floats, corners: tuple[tuple[float, float], tuple[float, float
 
 def _steps(
     silica: Floats, alkalis: Floats, parts: tuple[tuple[tuple[float, float], tuple[float, float]], ...]
-) -> NDArray[np.intp]:
+) -> NDArray[np.int8]:
     """How many of the parting lines a point has reached or passed."""
-    steps = np.zeros(silica.shape, dtype=np.intp)
+    steps = np.zeros(silica.shape, dtype=np.int8)
     for corners in parts:
         steps += alkalis >= _line(silica, corners)
     return steps
 
 
-def tas_field(sio2_vf_wt: ArrayLike, alkalis_vf_wt: ArrayLike) -> NDArray[np.intp]:
+def tas_field(sio2_vf_wt: ArrayLike, alkalis_vf_wt: ArrayLike) -> NDArray[np.int8]:
     """Code of the field (index into ``FIELDS``), shape (n,); -1 where a value is missing or impossible.
 
     ``alkalis_vf_wt`` is Na2O + K2O; both wt% of the volatile-free analysis. Source [lebas1986].
     """
     silica, total = floats(sio2_vf_wt, alkalis_vf_wt)
     s, a = silica + EDGE_WT, total + EDGE_WT
-    below = np.select(
+    below = first_code(
         [s < 41.0, s < 45.0, s < 52.0, s < 57.0, s < 63.0, (s < 69.0) | (a < 77.0 - s + EDGE_WT)],
         [_U, _PC, _B, _O1, _O2, _O3],
-        default=_R,
+        _R,
     )
     s_field = _S1 + _steps(s, a, _S_PARTS)
     u_field = _U1 + _steps(s, a, _U_PARTS)
-    is_foidite = np.where(s < 41.0, a >= 3.0, (s < 52.5) & (a >= np.interp(s, *_FOIDITE_TOP)))
-    is_u = np.where(s < 45.0, a >= 3.0, (s < 61.0) & (a >= np.interp(s, *_UNDERSATURATED)))
-    is_s = (s >= 45.0) & (s < 69.0) & (a >= np.interp(s, *_ALKALINE))
-    field = np.select([is_foidite, is_u, is_s], [_F, u_field, s_field], default=below)
+    is_foidite = np.where(s < 41.0, a >= 3.0, (s < 52.5) & (a >= broken_line(s, *_FOIDITE_TOP)))
+    is_u = np.where(s < 45.0, a >= 3.0, (s < 61.0) & (a >= broken_line(s, *_UNDERSATURATED)))
+    is_s = (s >= 45.0) & (s < 69.0) & (a >= broken_line(s, *_ALKALINE))
+    field = first_code([is_foidite, is_u, is_s], [_F, u_field, s_field], below)
     sane = (silica >= 0.0) & (silica <= 100.0) & (total >= 0.0) & (total <= 100.0)
-    return np.where(sane, field, -1)
+    return np.where(sane, field, np.int8(-1))
 
 
-def high_magnesium_code(silica: Floats, alkalis: Floats, mgo: Floats, tio2: Floats) -> NDArray[np.intp]:
+def high_magnesium_code(silica: Floats, alkalis: Floats, mgo: Floats, tio2: Floats) -> NDArray[np.int8]:
     """Code of komatiite, meimechite, picrite or boninite in ``VOLCANIC_NAMES``, -1 for none. [lemaitre2002].
 
     SiO2 30-52: MgO above 18 and alkalis below 2 give komatiite (TiO2 below 1) or meimechite (above 1), else MgO above
@@ -117,7 +118,7 @@ def high_magnesium_code(silica: Floats, alkalis: Floats, mgo: Floats, tio2: Floa
     """
     low_silica = (silica >= 30.0) & (silica < 52.0)
     very_magnesian = low_silica & (mgo > 18.0) & (alkalis < 2.0)
-    return np.select(
+    return first_code(
         [
             very_magnesian & (tio2 < 1.0),
             very_magnesian & (tio2 > 1.0),
@@ -125,14 +126,14 @@ def high_magnesium_code(silica: Floats, alkalis: Floats, mgo: Floats, tio2: Floa
             (silica > 52.0) & (mgo > 8.0) & (tio2 < 0.5),
         ],
         [_KOMATIITE, _MEIMECHITE, _PICRITE, _BONINITE],
-        default=-1,
+        -1,
     )
 
 
-def _subname_code(field: NDArray[np.intp], na2o: Floats, k2o: Floats, nepheline: Floats) -> NDArray[np.intp]:
+def _subname_code(field: NDArray[np.int8], na2o: Floats, k2o: Floats, nepheline: Floats) -> NDArray[np.int8]:
     sodic = na2o - 2.0 >= k2o - EDGE_WT
     known_nepheline = np.isfinite(nepheline)
-    return np.select(
+    return first_code(
         [
             (field == _B) & known_nepheline & (nepheline > 0.0),
             (field == _B) & known_nepheline,
@@ -140,7 +141,7 @@ def _subname_code(field: NDArray[np.intp], na2o: Floats, k2o: Floats, nepheline:
             (field >= _S1) & (field <= _S3),
         ],
         [0, 1, 2 + 2 * (field - _S1), 3 + 2 * (field - _S1)],
-        default=-1,
+        -1,
     )
 
 
@@ -175,7 +176,7 @@ def tas_names(
     olivine = np.asarray(ol_wt, dtype=np.float64)
     is_t, is_u1 = field == _T, field == _U1
     poor, rich = quartz < QUARTZ_DIVIDES_T, quartz >= QUARTZ_DIVIDES_T
-    volcanic = np.select(
+    volcanic = first_code(
         [
             is_t & poor,
             is_t & rich,
@@ -183,15 +184,13 @@ def tas_names(
             is_u1 & (olivine >= OLIVINE_DIVIDES_U1),
         ],
         [_TRACHYTE, _TRACHYDACITE, _TEPHRITE, _BASANITE],
-        default=field,
+        field,
     )
     high_magnesium = high_magnesium_code(silica, alkalis, mgo, tio2)
     is_lava = ~(np.asarray(is_plutonic, dtype=bool) | np.asarray(logged_cumulate, dtype=bool))
     volcanic = np.where(is_lava & (high_magnesium >= 0) & (field >= 0), high_magnesium, volcanic)
     peridotite = (silica >= 30.0) & (silica < 52.0) & (mgo > 18.0) & (alkalis < 2.0) & (field >= 0)
-    plutonic = np.select(
-        [peridotite, is_t & poor, is_t & rich], [_PERIDOTITE, _SYENITE, _QUARTZ_MONZONITE], default=field
-    )
+    plutonic = first_code([peridotite, is_t & poor, is_t & rich], [_PERIDOTITE, _SYENITE, _QUARTZ_MONZONITE], field)
     nepheline = np.asarray(ne_wt, dtype=np.float64)
     return {
         "tas_volcanic": labels(volcanic, VOLCANIC_NAMES),

@@ -172,10 +172,10 @@ def test_tas_names_many_rows_equal_single_rows(points):
 
 def test_tas_subname_of_a_field_without_one_has_its_cause():
     cause = METHOD_BY_KEY["tas"].causes[0]
-    na2o, silica = np.array([3.0, 3.0, np.nan]), np.array([60.0, 49.0, 60.0])
+    names = np.array(["andesite", "basalt", None], dtype=object)
 
     assert cause.code == "no_subname"
-    assert cause.mask(na2o, np.ones(3), silica).tolist() == [True, False, False]
+    assert cause.mask(names, np.array([0.0, np.nan, np.nan])).tolist() == [True, False, False]
 
 
 @pytest.mark.parametrize(

@@ -17,6 +17,7 @@ from registry.petrology.ascent import (
 from registry.petrology.catalogue.records import Cause, Method, Quantity, Warning
 from registry.petrology.catalogue.saturation import WORKSPACE
 from registry.petrology.heat import effective_half_width_m
+from registry.petrology.quotients import is_absent
 
 _SHEET = "melt_sheet"
 _BODY = ("intrusion_shape", "half_width_m", "volume_km3")
@@ -59,7 +60,7 @@ def _no_depth(depth: Any) -> Any:
 
 
 def _word_present(word: Any) -> Any:
-    return word.astype(bool)  # a word, not None
+    return ~is_absent(word)
 
 
 _NO_LIQUIDUS = Cause(

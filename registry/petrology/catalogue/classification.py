@@ -8,6 +8,7 @@ import numpy as np
 
 from registry.petrology import classification, granite_fields, redox_series, series, tas
 from registry.petrology.catalogue.records import Cause, Method, Quantity, Range, Warning
+from registry.petrology.quotients import is_absent
 
 _SHEET = "class_sheet"
 _ALKALIS_VF = ("na2o_vf_wt", "k2o_vf_wt")
@@ -39,10 +40,9 @@ def _too_alkalic(na2o: Any, k2o: Any) -> Any:
     return na2o + k2o > series.ALKALINE_DIVIDE_USABLE_TO_WT
 
 
-def _without_subname(na2o: Any, k2o: Any, silica: Any) -> Any:
-    field = tas.tas_field(silica, na2o + k2o)
-    has = (field == tas.FIELDS.index("B")) | np.isin(field, [tas.FIELDS.index(name) for name in ("S1", "S2", "S3")])
-    return (field >= 0) & ~has
+def _without_subname(names: Any, nepheline: Any) -> Any:
+    """Named, and the norm that the sub-names of basalt ask for is there: only a field without sub-names is left."""
+    return ~is_absent(names) & ~np.isnan(nepheline)
 
 
 def _off_diagram(rb: Any, y: Any, nb: Any) -> Any:
@@ -78,7 +78,7 @@ METHODS = (
         note="Volatile-free. On a vertical edge the field of higher SiO2, on any other the one of higher alkalis. "
         "Names of high-Mg lavas are not given to plutonic rocks or cumulates.",
         causes=(Cause("no_subname", "the rock's TAS field has no sub-names", _without_subname,
-                      ("na2o_vf_wt", "k2o_vf_wt", "sio2_vf_wt")),),
+                      ("tas_volcanic", "ne_wt")),),
     ),
     Method(
         "a_type", "A-type granite", classification.a_type, ("ga_al_10000", "zr_nb_ce_y", "q_wt"),
@@ -167,7 +167,7 @@ METHODS = (
 
 
 def _has(words: Any) -> Any:
-    return words.astype(bool)
+    return ~is_absent(words)
 
 
 def _k2o_line_extended(words: Any, silica: Any) -> Any:

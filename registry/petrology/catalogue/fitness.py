@@ -82,7 +82,8 @@ _INPUTS = (
 def _state_of_major(values: Any, digestion: Any) -> NDArray[np.int64]:
     """State codes; ``values`` NaN with a digestion means that this digestion refused it."""
     missing = np.isnan(values)
-    codes = np.nan_to_num(np.asarray(digestion, dtype=np.float64)).astype(np.int64)
+    codes = np.asarray(digestion)
+    codes = np.nan_to_num(codes).astype(np.int64) if codes.dtype.kind == "f" else codes
     state = np.broadcast_to(_STATE_OF_DIGESTION[codes], missing.shape)
     return np.where(missing, np.where(codes == NONE, _NOT_REPORTED, _FIRST_BAD + codes), state)
 
@@ -140,9 +141,9 @@ def fitness(*columns: Any) -> dict[str, Any]:
     total, loi, mgo_vf, conventions = columns[14:]
     n = len(np.atleast_1d(majors[0]))
     total, loi, mgo_vf = (np.broadcast_to(np.asarray(v, dtype=np.float64), (n,)) for v in (total, loi, mgo_vf))
-    key = np.zeros(n, dtype=np.int64)
+    combination = np.zeros(n, dtype=np.int64)
     for values, digestion in zip(majors, digestions, strict=True):
-        key = key * _STATES + _state_of_major(np.broadcast_to(values, (n,)), digestion)
+        combination = combination * _STATES + _state_of_major(np.broadcast_to(values, (n,)), digestion)
     screens = (
         total_too_low(total, loi, conventions),
         total_too_high(total, conventions),
@@ -152,13 +153,23 @@ def fitness(*columns: Any) -> dict[str, Any]:
         loi_high(loi, mgo_vf, conventions),
         loi_not_reported(total, loi),
     )
+    combinations, code = _distinct(combination)
     for failed in screens:
-        key = key * 2 + failed
-    distinct, inverse = np.unique(key, return_inverse=True)
-    found = [_judge(code) for code in distinct.tolist()]
-    words = np.array([FITNESS_WORDS[state] for state, _ in found], dtype=object)
-    causes = np.array([cause for _, cause in found], dtype=object)
-    return {"fitness": words[inverse], "fitness_cause": causes[inverse]}
+        code = code * 2 + failed
+    words, causes = np.full((2, len(combinations) << len(screens)), None, dtype=object)
+    for each in np.flatnonzero(np.bincount(code, minlength=len(words))).tolist():
+        which, marks = divmod(each, 1 << len(screens))
+        state, causes[each] = _judge((combinations[which] << len(screens)) + marks)
+        words[each] = FITNESS_WORDS[state]
+    return {"fitness": words[code], "fitness_cause": causes[code]}
+
+
+def _distinct(values: NDArray[np.int64]) -> tuple[list[int], NDArray[np.int64]]:
+    """Distinct values and where each stands among them; a batch has mostly one, which needs no sorting."""
+    if values.size and (values == values[0]).all():
+        return [int(values[0])], np.zeros(values.shape, dtype=np.int64)
+    distinct, inverse = np.unique(values, return_inverse=True)
+    return distinct.tolist(), inverse.astype(np.int64)
 
 
 def _judge(key: int) -> tuple[int, str | None]:
@@ -210,7 +221,7 @@ def _about_digestion(code: int, names: list[str], listed: str) -> str:
 def _unknown_digestion(*digestions: Any) -> Any:
     mask: Any = False
     for codes in digestions:
-        mask = mask | (codes == UNKNOWN) | (codes == UNKNOWN_WITHOUT_SILICA)
+        mask = mask | (codes >= UNKNOWN)  # the two kinds of unknown are the last codes
     return mask
 
 

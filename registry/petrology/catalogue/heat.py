@@ -11,12 +11,14 @@ from registry.petrology.catalogue.saturation import WORKSPACE
 from registry.petrology.digestion import FOUR_ACID, UNKNOWN_WITHOUT_SILICA
 from registry.petrology.heat import (
     SHAPES,
+    THICKNESS_OF_HALF_WIDTH,
     effective_half_width_m,
     heat_production_cause,
     heat_production_rybach,
     heat_x_thickness_mw_m2,
     potassium_wt,
     rock_density_kg_m3,
+    shape_codes,
 )
 from registry.petrology.intrusion_heat import theta_centre_interval
 
@@ -39,9 +41,7 @@ def _theta(
 ) -> dict[str, Any]:
     """theta of each sample's intrusion, reckoned once a body."""
     radius = effective_half_width_m(shape, half_width, volume)
-    code = np.zeros(radius.shape)
-    for position, name in enumerate(SHAPES, start=1):
-        code[shape == name] = position
+    code = shape_codes(shape)
     result = {name: np.full(radius.shape, np.nan) for name in _THETA}
     known = np.flatnonzero((code > 0) & ~np.isnan(radius) & (age >= 0.0))
     if known.size:
@@ -87,13 +87,12 @@ def _is_present(value: Any) -> Any:
 
 
 def _incomplete(shape: Any, half_width: Any, volume: Any, age: Any) -> Any:
-    has_shape = (shape == "slab") | (shape == "sphere") | (shape == "cylinder")
-    return ~has_shape | np.isnan(effective_half_width_m(shape, half_width, volume)) | ~(age >= 0.0)
+    return (shape_codes(shape) == 0) | np.isnan(effective_half_width_m(shape, half_width, volume)) | ~(age >= 0.0)
 
 
 def _no_thickness(shape: Any, half_width: Any, volume: Any) -> Any:
-    flat = (shape == "slab") | (shape == "sphere")
-    return ~flat | np.isnan(effective_half_width_m(shape, half_width, volume))
+    lengthless = np.isnan(np.array([np.nan, *(THICKNESS_OF_HALF_WIDTH[name] for name in SHAPES)])[shape_codes(shape)])
+    return lengthless | np.isnan(effective_half_width_m(shape, half_width, volume))
 
 
 def _sigma_assumed(theta: Any, sigma: Any) -> Any:
@@ -101,7 +100,8 @@ def _sigma_assumed(theta: Any, sigma: Any) -> Any:
 
 
 def _upper_bound(theta: Any, shape: Any, depth: Any) -> Any:
-    return ~np.isnan(theta) & ((shape == "cylinder") | ~(depth >= 0.0))
+    upper = ~np.isnan(theta)
+    return upper & (~(depth >= 0.0) | (shape_codes(shape) == 1 + SHAPES.index("cylinder"))) if upper.any() else upper
 
 
 METHODS = (

@@ -48,7 +48,12 @@ def _mafic(mgo: Any, plutonic: Any) -> Any:
 
 def _spot(total: Any, *others: Any) -> Any:
     """Majors, but neither a loss on ignition nor a single trace element."""
-    return ~np.isnan(total) & np.logical_and.reduce([np.isnan(each) for each in others])
+    result = ~np.isnan(total)
+    for each in others:  # after the loss on ignition there is mostly no row left
+        result &= np.isnan(each)
+        if not result.any():
+            break
+    return result
 
 
 def _carbonate(value: Any, co2: Any, conventions: Any) -> Any:

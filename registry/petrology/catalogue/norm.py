@@ -9,9 +9,11 @@ import numpy as np
 
 from registry.petrology.catalogue.records import Cause, Method, Quantity, Warning
 from registry.petrology.closure import CLOSED_OXIDES, volatile_free_name
+from registry.petrology.constants import molar_mass
 from registry.petrology.conventions import Conventions
 from registry.petrology.norm import NORM_END_MEMBERS, NORM_MINERALS, cipw_norm
 from registry.petrology.norm_cation import cation_norm
+from registry.petrology.norm_sequence import CAO_PER_P2O5
 from registry.petrology.norm_warnings import NORM_WARNING_TEXTS, SMALLEST_WT, norm_shortfalls
 
 _CLOSED = tuple(volatile_free_name(column) for column in CLOSED_OXIDES)
@@ -89,6 +91,15 @@ _VOLATILE_OF = {
 }
 
 
+def _may_fall_short(values: Any, residual: Any) -> Any:
+    """Rows with a residual, or with parts of one that may cancel: P2O5 beyond lime stands against missing silica."""
+    given = dict(zip(_INPUTS, values, strict=True))
+    if _admitted(given["conventions"]):
+        return ~np.isnan(residual)
+    phosphorus = given["p2o5_vf_wt"] * (CAO_PER_P2O5 * molar_mass("CaO") / molar_mass("P2O5"))
+    return (np.abs(residual) > SMALLEST_WT) | (phosphorus > given["cao_vf_wt"])
+
+
 def _shortfall(code: str) -> Callable[..., Any]:
     def mask(*inputs: Any) -> Any:
         *values, residual = inputs
@@ -97,8 +108,13 @@ def _shortfall(code: str) -> Callable[..., Any]:
             code == "oxygen_set_free" and not admitted
         ):
             return np.zeros(np.shape(residual), dtype=bool)
-        oxides = norm_oxides_of_sample(tuple(values))
-        return norm_shortfalls(oxides, {"norm_residual_wt": residual})[code] > SMALLEST_WT
+        result = np.zeros(np.shape(residual), dtype=bool)
+        rows = np.flatnonzero(_may_fall_short(values, residual))
+        if rows.size:
+            few = tuple(value[rows] if isinstance(value, np.ndarray) else value for value in values)
+            shortfalls = norm_shortfalls(norm_oxides_of_sample(few), {"norm_residual_wt": residual[rows]})
+            result[rows] = shortfalls[code] > SMALLEST_WT
+        return result
 
     return mask
 

@@ -10,15 +10,14 @@ import numpy as np
 
 from registry.petrology.analytes import CHOSEN_INDEX
 from registry.petrology.catalogue.records import Cause, Method, Quantity, Warning
-from registry.petrology.digestion import CARRIES, DIGESTIONS, FUSION, INAA, MINIMUM, XRF
+from registry.petrology.digestion import CARRIES, FUSION, INAA, MINIMUM, XRF
 from registry.petrology.trace import RATIOS, ce_anomaly, element_ratio, eu_anomaly, zr_nb_ce_y
 
 _SHEET = "index_sheet"
 ZERO_DENOMINATOR = "the denominator is zero: a ratio is not defined"
 
 #: Digestions that count as one kind: total methods of the whole rock.
-_KIND = np.arange(len(DIGESTIONS), dtype=np.uint8)
-_KIND[[XRF, INAA]] = FUSION
+_ONE_KIND = (FUSION, XRF, INAA)
 
 
 def _denominator_is_zero(denominator: Any) -> Any:
@@ -29,26 +28,36 @@ def _any_is_zero(*columns: Any) -> Any:
     return np.logical_or.reduce([column <= 0.0 for column in columns])
 
 
+def _one_of(digestion: Any, codes: tuple[int, ...]) -> Any:
+    mask = np.zeros(np.shape(digestion), dtype=bool)
+    for code in codes:
+        mask |= digestion == code
+    return mask
+
+
 def _two_digestions(value: Any, *digestions: Any) -> Any:
-    first, *others = (_KIND[digestion] for digestion in digestions)
+    first, *others = digestions
     differ = np.logical_or.reduce([first != other for other in others])
+    if not differ.any():
+        return differ
     known = np.logical_and.reduce([digestion > 0 for digestion in digestions])
-    return differ & known & ~np.isnan(value)
+    one_kind = np.logical_and.reduce([_one_of(digestion, _ONE_KIND) for digestion in digestions])
+    return differ & known & ~one_kind & ~np.isnan(value)
 
 
 def _from_censored(value: Any, *qualifiers: Any) -> Any:
     return np.logical_or.reduce([qualifier > 0 for qualifier in qualifiers]) & ~np.isnan(value)
 
 
-def _from_partial(value: Any, *digestions: Any, tables: tuple[Any, ...]) -> Any:
-    minimum = [table[digestion] for table, digestion in zip(tables, digestions, strict=True)]
+def _from_partial(value: Any, *digestions: Any, partial_codes: tuple[tuple[int, ...], ...]) -> Any:
+    minimum = [_one_of(digestion, codes) for digestion, codes in zip(digestions, partial_codes, strict=True)]
     return np.logical_or.reduce(minimum) & ~np.isnan(value)
 
 
 def measured_together(quantity: str, label: str, columns: tuple[str, ...]) -> tuple[Warning, ...]:
     """Remarks on a quantity of several measured columns: two digestions, a partial one, a censored member."""
     digestions = tuple(f"digestion:{column}" for column in columns)
-    tables = tuple(CARRIES[:, CHOSEN_INDEX[column]] == MINIMUM for column in columns)
+    minimum = tuple(tuple(np.flatnonzero(CARRIES[:, CHOSEN_INDEX[column]] == MINIMUM).tolist()) for column in columns)
     return (
         Warning(
             f"{quantity}_partial_digestion",
@@ -56,7 +65,7 @@ def measured_together(quantity: str, label: str, columns: tuple[str, ...]) -> tu
             quantity,
             f"{label} {{value}} rests on a digestion that leaves part of an element in the residue: that value is a "
             "minimum, so the true figure may lie on either side; re-assay by fusion",
-            partial(_from_partial, tables=tables),
+            partial(_from_partial, partial_codes=minimum),
             (quantity, *digestions),
         ),
         Warning(
