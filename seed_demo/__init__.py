@@ -1,4 +1,4 @@
-"""An invented district as the CSV files a team would have; ``README.txt`` beside them says how it was made."""
+"""An invented district as the files a team would have; ``README.txt`` beside them says how it was made."""
 
 from __future__ import annotations
 
@@ -13,17 +13,17 @@ MASTER_FILES = (
 
 
 def files() -> list[Path]:
-    """The CSV files of the scenario as paths: master data in the order of import, then the certificates by name.
+    """The files of the scenario as paths: master data in the order of import, then the certificates by name.
 
     FileNotFoundError, naming the file, where the installation lacks one.
     """
     folder = Path(str(_resources(__name__)))
     found = [folder / name for name in MASTER_FILES]
-    found += sorted(folder.glob("results_*.csv"))
+    found += sorted(folder.glob("results_*.*"))
     missing = [path.name for path in found if not path.is_file()]
     if missing or len(found) == len(MASTER_FILES):
         raise FileNotFoundError(
-            f"{folder}: the demo scenario lacks {', '.join(missing) or 'results_*.csv'}; install Plutonbook again, "
+            f"{folder}: the demo scenario lacks {', '.join(missing) or 'results_*'}; install Plutonbook again, "
             "or run python -m seed_demo.build_scenario in a clone"
         )
     return found

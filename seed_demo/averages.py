@@ -185,8 +185,8 @@ PARTITION: dict[str, dict[str, float]] = {
             "Ga 1.5 Cu 0.5 F 1.5"
         ),
     },
-    # Iron-rich biotite of cool peraluminous melts: alkalis by Icenhower & London 1995, Am. Mineral. 80, 1229-1251; Nb, Ta
-    # after Acosta-Vigil et al. 2010, J. Petrol. 51, 785-821; transition metals as in rhyolites (Nash & Crecraft 1985).
+    # Iron-rich biotite of cool peraluminous melts: alkalis by Icenhower & London 1995, Am. Mineral. 80, 1229-1251;
+    # Nb, Ta after Acosta-Vigil et al. 2010, J. Petrol. 51, 785-821; transition metals by Nash & Crecraft 1985.
     "siderophyllite": {
         **_rare_earths(0.05, 0.1, 0.15, 0.15),
         **_numbers(

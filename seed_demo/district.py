@@ -1,6 +1,7 @@
-"""The invented district as data: areas, intrusions, holes, outcrops and the certificates their samples went to.
+"""The invented district as data: areas, intrusions, control materials, and the pairs of bags that were mixed up.
 
-No name here is a real place, person or company; the coordinates lie in the open ocean on purpose.
+No name here is a real place, person or company; the coordinates lie in the open ocean on purpose. Holes and outcrops
+stand in modules of their own.
 """
 
 from __future__ import annotations
@@ -30,11 +31,12 @@ class Intrusion:
     area: str
     suite: str
     shape: str
-    half_width_m: float
     depth_to_top_m: float
     emplacement_depth_m: float
     age_ma: float
     age_sigma_ma: float
+    half_width_m: float | None = None
+    volume_km3: float | None = None
     country_density_kg_m3: float | None = None
 
 
@@ -42,7 +44,8 @@ class Intrusion:
 class Unit:
     """A stretch of core: what was logged from ``from_m`` to ``to_m``. ``intrusion`` None is country rock, not sampled.
 
-    ``progress`` is where in its suite the rock lies (0-1) at both ends; ``alteration`` a key of ``suites.ALTERATIONS``.
+    ``progress`` is where in its suite the rock lies (0-1) at both ends; ``alteration`` a key of
+    ``alterations.ALTERATIONS``; ``suite`` and ``certificates`` where they are not those of the body and the hole.
     """
 
     from_m: float
@@ -53,10 +56,14 @@ class Unit:
     progress: tuple[float, float] = (0.5, 0.5)
     alteration: str | None = None
     intensity: float = 0.0
+    suite: str | None = None
+    certificates: tuple[str, ...] = ()
 
 
 @dataclass(frozen=True)
 class Hole:
+    """A drill hole; ``surveys`` of (depth, azimuth, dip), a sample of 1 m every ``spacing_m``."""
+
     code: str
     area: str
     easting: float
@@ -72,6 +79,8 @@ class Hole:
 
 @dataclass(frozen=True)
 class Outcrop:
+    """A station: one sample for each ``progress``; ``kind`` of the samples is outcrop or float."""
+
     code: str
     area: str
     easting: float
@@ -79,9 +88,10 @@ class Outcrop:
     elevation_m: float
     certificate: str
     intrusion: str
+    suite: str | None
     progress: tuple[float, ...]
-    weathered: float = 0.0
-    kind: str = "outcrop"
+    weathered: float
+    kind: str
 
 
 @dataclass(frozen=True)
@@ -95,116 +105,24 @@ class ControlMaterial:
 
 AREAS = (
     Area("Quellmar", 64.0, 9.0, 2.6, 1.4, 9000.0),
+    # An old belt of granites, stretched again: hence the heat flow and the young domes.
     Area("Ostrevel", 91.0, 8.0, 3.1, 2.2, 8000.0),
 )
 INTRUSIONS = (
-    Intrusion("Kestrin stock", "Quellmar", "fertile_arc_porphyry", "cylinder", 420.0, 0.0, 3200.0, 61.5, 0.8),
-    Intrusion("Vantry pluton", "Quellmar", "ordinary_arc_granodiorite", "sphere", 3100.0, 0.0, 6500.0, 94.0, 1.6,
-              2720.0),
-    Intrusion("Ostrevel granite", "Ostrevel", "hot_granite", "slab", 2600.0, 0.0, 7000.0, 287.0, 3.0, 2690.0),
-)  # fmt: skip
-HOLES = (
-    Hole(
-        "KD001",
-        "Quellmar",
-        482310.0,
-        5573140.0,
-        412.0,
-        342.0,
-        (
-            (0.0, 62.0, -65.0),
-            (60.0, 62.6, -64.4),
-            (120.0, 63.5, -63.8),
-            (180.0, 64.1, -63.1),
-            (240.0, 65.2, -62.3),
-            (300.0, 66.0, -61.7),
-            (342.0, 66.4, -61.2),
-        ),
-        9.0,
-        100,
-        "A417",
-        (
-            Unit(0.0, 14.0, "overburden", "soil and blocks"),
-            Unit(14.0, 118.0, "dacite porphyry", "hornblende-biotite-plagioclase phyric", "Kestrin stock", (0.1, 0.5)),
-            Unit(
-                118.0,
-                176.0,
-                "dacite porphyry",
-                "sericite-quartz-pyrite, sheeted veins",
-                "Kestrin stock",
-                (0.4, 0.6),
-                "phyllic",
-                0.9,
-            ),
-            Unit(
-                176.0,
-                236.0,
-                "dacite porphyry",
-                "secondary biotite, K-feldspar in veins",
-                "Kestrin stock",
-                (0.3, 0.5),
-                "potassic",
-                0.8,
-            ),
-            Unit(236.0, 342.0, "dacite porphyry", "fresh, magnetite in groundmass", "Kestrin stock", (0.5, 0.95)),
-        ),
-    ),
-    Hole(
-        "KD002",
-        "Quellmar",
-        482905.0,
-        5572660.0,
-        398.0,
-        318.0,
-        (
-            (0.0, 245.0, -60.0),
-            (80.0, 245.9, -59.1),
-            (160.0, 247.0, -58.4),
-            (240.0, 248.2, -57.2),
-            (318.0, 249.0, -56.6),
-        ),
-        9.0,
-        200,
-        "K88",
-        (
-            Unit(0.0, 8.0, "overburden", "soil"),
-            Unit(8.0, 126.0, "dacite porphyry", "hornblende phyric", "Kestrin stock", (0.2, 0.8)),
-            Unit(126.0, 150.0, "hornfels", "dark, biotite; contact zone"),
-            Unit(
-                150.0, 262.0, "granodiorite", "equigranular, pyroxene cores in amphibole", "Vantry pluton", (0.3, 0.7)
-            ),
-            Unit(262.0, 318.0, "granodiorite", "chlorite along joints", "Vantry pluton", (0.6, 0.9), "chloritic", 0.8),
-        ),
-    ),
-    Hole(
-        "OD001",
-        "Ostrevel",
-        503480.0,
-        5561220.0,
-        655.0,
-        264.0,
-        ((0.0, 0.0, -90.0), (130.0, 12.0, -89.2), (264.0, 15.0, -88.6)),
-        10.0,
-        300,
-        "K88",
-        (
-            Unit(0.0, 6.0, "overburden", "grus"),
-            Unit(6.0, 30.0, "biotite granite", "weathered joints", "Ostrevel granite", (0.2, 0.3), "weathered", 0.8),
-            Unit(30.0, 264.0, "biotite granite", "K-feldspar megacrysts", "Ostrevel granite", (0.1, 0.95)),
-        ),
-    ),
-)
-OUTCROPS = (
-    Outcrop("Q001", "Quellmar", 482150.0, 5573320.0, 440.0, "A417", "Kestrin stock", (0.15, 0.4)),
-    Outcrop("Q002", "Quellmar", 482640.0, 5572980.0, 431.0, "A417", "Kestrin stock", (0.7,)),
-    Outcrop("Q003", "Quellmar", 481890.0, 5572705.0, 405.0, "A417", "Kestrin stock", (0.55,), 0.7),
-    Outcrop("Q004", "Quellmar", 484120.0, 5571480.0, 377.0, "A417", "Vantry pluton", (0.05, 0.2)),
-    Outcrop("Q005", "Quellmar", 485260.0, 5570905.0, 362.0, "A417", "Vantry pluton", (0.45,)),
-    Outcrop("Q006", "Quellmar", 483975.0, 5570110.0, 350.0, "A417", "Vantry pluton", (0.65, 0.95)),
-    Outcrop("Q007", "Quellmar", 486030.0, 5572240.0, 371.0, "A417", "Vantry pluton", (0.35,)),
-    Outcrop("O001", "Ostrevel", 502870.0, 5561890.0, 671.0, "K88", "Ostrevel granite", (0.05, 0.3)),
-    Outcrop("O002", "Ostrevel", 504410.0, 5560430.0, 702.0, "K88", "Ostrevel granite", (0.6,)),
-    Outcrop("O003", "Ostrevel", 505150.0, 5562075.0, 688.0, "K88", "Ostrevel granite", (0.8,), 0.9),
+    Intrusion("Kestrin stock", "Quellmar", "fertile_arc_porphyry", "cylinder", 0.0, 3200.0, 61.5, 0.8, 420.0),
+    Intrusion("Vantry pluton", "Quellmar", "ordinary_arc_granodiorite", "sphere", 0.0, 6500.0, 94.0, 1.6, 3100.0,
+              country_density_kg_m3=2720.0),
+    Intrusion("Marrowan complex", "Quellmar", "layered_norite", "slab", 0.0, 8000.0, 1112.0, 6.0, 1300.0,
+              country_density_kg_m3=2740.0),
+    Intrusion("Hebrun sill", "Quellmar", "gabbro_sill", "slab", 0.0, 1500.0, 121.0, 1.5, 65.0,
+              country_density_kg_m3=2550.0),
+    Intrusion("Ostrevel granite", "Ostrevel", "hot_granite", "slab", 0.0, 7000.0, 287.0, 3.0, 2600.0,
+              country_density_kg_m3=2690.0),
+    Intrusion("Corvane granite", "Ostrevel", "tin_granite", "sphere", 0.0, 4500.0, 279.0, 2.5, 1900.0),
+    Intrusion("Ysker leucogranite", "Ostrevel", "rare_metal_leucogranite", "slab", 0.0, 9000.0, 281.0, 3.0, 300.0),
+    # The chamber below the domes: its volume is ten times theirs (Smith & Shaw 1975, from memory); its half-width is
+    # not known otherwise.
+    Intrusion("Drisk feeder", "Ostrevel", "young_rhyolite", "sphere", 2500.0, 5000.0, 0.06, 0.008, None, 60.0),
 )  # fmt: skip
 
 _SAND = dict.fromkeys(average("andesite"), 0.0) | {
@@ -212,10 +130,21 @@ _SAND = dict.fromkeys(average("andesite"), 0.0) | {
     "K2O": 0.07, "P2O5": 0.004, "Zr": 14.0, "Ba": 9.0, "Sr": 3.0, "La": 1.1, "Ce": 2.2, "Nd": 0.9, "Y": 0.8,
     "Rb": 1.5, "Th": 0.4, "U": 0.1, "Cr": 4.0, "Cu": 1.5, "Zn": 2.0,
 }  # fmt: skip
-#: Inserted in this order, one every tenth bag; ``duplicate`` repeats the bag before it.
-CONTROL_ROTA = ("QRM-A", "duplicate", "blank", "QRM-G")
 CONTROL_MATERIALS = {
     "QRM-A": ControlMaterial("QRM-A", "reference_material", average("andesite")),
     "QRM-G": ControlMaterial("QRM-G", "reference_material", average("metapelite") | average("granite")),
+    "QRM-M": ControlMaterial("QRM-M", "reference_material", average("magnesian_basaltic_andesite")),
     "blank": ControlMaterial("quartz sand", "blank", _SAND),
 }
+#: Controls by certificate, one after every eighth rock, in this order; ``duplicate`` repeats the bag before it. What is
+#: dissolved in acid is no test of materials whose total content is known.
+CONTROL_ROTA = {
+    "A417": ("QRM-A", "duplicate", "blank", "QRM-G"),
+    "K88": ("QRM-G", "duplicate", "blank", "QRM-A"),
+    "T506": ("QRM-M", "duplicate", "blank", "QRM-M"),
+    "B2231": ("QRM-G", "blank", "duplicate", "QRM-G"),
+    "W77": ("QRM-G", "duplicate", "blank", "QRM-G"),
+    "Z19": ("duplicate", "blank"),
+}
+#: Bags exchanged on purpose before they were sent: under each code stands the analysis of the other.
+SWAPPED = (("KD002-206", "OD001-312"), ("Q021a", "H004a"))
