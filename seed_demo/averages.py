@@ -186,17 +186,20 @@ PARTITION: dict[str, dict[str, float]] = {
         ),
     },
     # Iron-rich biotite of cool peraluminous melts: alkalis by Icenhower & London 1995, Am. Mineral. 80, 1229-1251;
-    # Nb, Ta after Acosta-Vigil et al. 2010, J. Petrol. 51, 785-821; transition metals by Nash & Crecraft 1985.
+    # Nb, Ta after Acosta-Vigil et al. 2010, J. Petrol. 51, 785-821; transition metals by Nash & Crecraft 1985;
+    # F by Icenhower & London 1997, Contrib. Mineral. Petrol. 127, 17-29; Sn such that biotite keeps most of the tin of
+    # a metapelite until it breaks down itself (Wolf et al. 2018, Lithos 310-311, 20-30).
     "siderophyllite": {
         **_rare_earths(0.05, 0.1, 0.15, 0.15),
         **_numbers(
-            "Rb 2.0 Ba 7.0 Cs 0.5 Sr 0.2 Nb 3.7 Ta 1.4 Zr 0.2 V 30 Sc 12 Cr 25 Co 25 Ni 25 Zn 12 Sn 1.0 W 0.3 Li 1.2 "
-            "Ga 2.0 Cu 0.5 F 1.6"
+            "Rb 2.0 Ba 7.0 Cs 0.5 Sr 0.2 Nb 3.7 Ta 1.4 Zr 0.2 V 30 Sc 12 Cr 25 Co 25 Ni 25 Zn 12 Sn 2.0 W 0.3 Li 1.2 "
+            "Ga 2.0 Cu 0.5 F 3.0"
         ),
     },
-    # Raimbault & Burnol 1998, Can. Mineral. 36, 767-782: micas and acid melts rich in rare metals.
+    # Raimbault & Burnol 1998, Can. Mineral. 36, 767-782: micas and acid melts rich in rare metals; Sn
+    # as in the biotite beside it.
     "muscovite": _numbers(
-        "Rb 1.8 Ba 2.5 Cs 0.3 Li 0.8 Be 0.7 Nb 3.5 Ta 0.4 Sn 1.0 W 1.4 Ga 1.5 V 5 Sc 3 Cr 5 Zn 3 F 0.8"
+        "Rb 1.8 Ba 2.5 Cs 0.3 Li 0.8 Be 0.7 Nb 3.5 Ta 0.4 Sn 2.0 W 1.4 Ga 1.5 V 5 Sc 3 Cr 5 Zn 3 F 0.8"
     ),
     "magnetite": _numbers("V 20 Sc 2 Cr 50 Co 10 Ni 10 Zn 8 Nb 0.6 Ta 0.5 Zr 0.3 Y 0.3 Sn 1.0 Mo 0.5 Ga 2 Cu 1.0"),
     "ilmenite": _numbers("V 12 Sc 5 Cr 5 Co 8 Ni 5 Zn 5 Nb 20 Ta 25 Zr 1.0 Hf 1.0 W 3 Sn 1.0"),
