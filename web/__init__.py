@@ -12,6 +12,7 @@ from flask_wtf import CSRFProtect
 from registry.store.reading.session import open_for_reading
 from web import (
     batches,
+    diagrams,
     errors,
     importing,
     methods,
@@ -53,7 +54,7 @@ def create_app(registry_path_or_url: str, writable: bool = False, drafts: Any = 
     pictures.register(app)
     wording.register(app)
     errors.register(app)
-    for part in (samples, sample, batches, targets, methods, places):
+    for part in (samples, sample, diagrams, batches, targets, methods, places):
         app.register_blueprint(part.blueprint)
     importing.register(app, drafts)
     return app

@@ -64,6 +64,7 @@ def list_page() -> Any:
     addresses = {
         "first_address": address(pairs),
         "csv_address": address(pairs, "samples.csv_file"),
+        "diagrams_address": address(pairs, "diagrams.page"),
         "next_address": page.next and address(pairs, after=page.next.token()),
         "previous_address": page.previous and address(pairs, before=page.previous.token()),
     }
