@@ -169,6 +169,16 @@ def test_intrusion_sheet_holds_heat_trend_and_count(district: Registry) -> None:
     assert value(district, "samples", "samples_used", "Green stock")[3] == "no_computed_samples"
 
 
+def test_samples_and_their_intrusion_keep_the_same_heat(district: Registry) -> None:
+    """What a sample's verdict is told and what the intrusion shows come from one function."""
+    names = ("theta_centre", "theta_centre_low", "theta_centre_high")
+    of_samples = rows(district, f"SELECT DISTINCT {', '.join(names)} FROM derived")
+    of_body = rows(district, f"SELECT {', '.join(names)} FROM intrusion_sheet WHERE intrusion = 'Grey sill'")
+
+    assert len(of_samples) == 1
+    np.testing.assert_allclose(of_samples[0], of_body[0], rtol=1e-12)
+
+
 def test_every_row_has_a_value_or_a_cause(district: Registry) -> None:
     found = rows(district, "SELECT model, quantity, value, cause FROM suite_sheet")
 
@@ -341,7 +351,8 @@ def test_swapped_sample_is_remarked_and_not_changed(district: Registry) -> None:
         drain(connection)
     found = rows(
         district,
-        "SELECT sample_code, code, value, text FROM warning_sheet WHERE substr(code, 1, 10) = 'chemistry_' ORDER BY code",
+        "SELECT sample_code, code, value, text FROM warning_sheet "
+        "WHERE substr(code, 1, 10) = 'chemistry_' ORDER BY code",
     )
 
     assert [row[:2] for row in found] == [

@@ -168,6 +168,12 @@ def _derived(connection: sa.Connection) -> list[Finding]:
             "run 'plutonbook refresh'",
         ),
         (
+            "intrusions and areas",
+            "stale: something changed since they were computed",
+            "SELECT count(*) FROM stale_group",
+            "run 'plutonbook refresh'",
+        ),
+        (
             "derived values",
             "samples without any that are not marked stale",
             "SELECT count(*) FROM sample AS s "

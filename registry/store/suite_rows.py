@@ -84,8 +84,16 @@ def load_bodies(connection: sa.Connection, intrusion_ids: Any) -> Bodies:
 
 
 def load_suites(connection: sa.Connection, intrusion_ids: Any) -> dict[int, Suite]:
-    """The computed samples of these intrusions, by intrusion id; one without any is left out."""
+    """The computed samples of these intrusions, by intrusion id; one without any is left out.
+
+    The ids are looked up first, so that the wide rows are read in the order in which they lie in the file.
+    """
     controls = ", ".join(f"'{kind}'" for kind in CONTROL_KINDS)
+    members = raw_rows.select(
+        connection,
+        f"SELECT sample_id FROM sample WHERE kind NOT IN ({controls}) AND intrusion_id {{ids}}",
+        intrusion_ids,
+    )
     columns = [
         "s.intrusion_id", "s.sample_id", "s.code", "s.alteration", "d.fitness", "c.qualifiers", "c.digestions",
         *(f"d.{name}" for name in DERIVED_NUMBERS),
@@ -94,9 +102,8 @@ def load_suites(connection: sa.Connection, intrusion_ids: Any) -> dict[int, Suit
     rows = raw_rows.select(
         connection,
         f"SELECT {', '.join(columns)} FROM sample AS s JOIN derived AS d ON d.sample_id = s.sample_id "
-        f"JOIN composition AS c ON c.sample_id = s.sample_id WHERE s.kind NOT IN ({controls}) "
-        "AND s.intrusion_id {ids} ORDER BY s.intrusion_id, s.sample_id",
-        intrusion_ids,
+        "JOIN composition AS c ON c.sample_id = s.sample_id WHERE s.sample_id {ids} ORDER BY s.sample_id",
+        sorted(row[0] for row in members),
     )
     if not rows:
         return {}
@@ -109,19 +116,19 @@ def load_suites(connection: sa.Connection, intrusion_ids: Any) -> dict[int, Suit
     chosen[~sure] = np.nan
     numbers = {**derived, **dict(zip(CHOSEN_NUMBERS, chosen, strict=True))}
     body, sample_ids = np.array(bodies, dtype=np.int64), np.array(ids, dtype=np.int64)
-    starts = np.flatnonzero(np.r_[True, body[1:] != body[:-1]]).tolist()
-    found = {}
     words, changed = _words(fitness), _words(alteration)
-    for start, stop in zip(starts, [*starts[1:], len(body)], strict=True):
-        part = slice(start, stop)
-        found[int(body[start])] = Suite(
-            sample_ids[part],
-            list(codes[part]),
-            {name: column[part] for name, column in numbers.items()},
-            words[part],
-            changed[part],
+    order = np.argsort(body, kind="stable")
+    ends = np.flatnonzero(np.diff(body[order])) + 1
+    return {
+        int(body[rows_of[0]]): Suite(
+            sample_ids[rows_of],
+            [codes[row] for row in rows_of.tolist()],
+            {name: column[rows_of] for name, column in numbers.items()},
+            words[rows_of],
+            changed[rows_of],
         )
-    return found
+        for rows_of in np.split(order, ends)
+    }
 
 
 def write_intrusions(connection: sa.Connection, ids: np.ndarray, columns: Mapping[str, Any]) -> None:
