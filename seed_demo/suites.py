@@ -1,9 +1,9 @@
 """The suites of the district as data: parent, what crystallised, how much, how oxidised, what the log calls it.
 
 Written down before anything was judged, from what the petrology of such rocks says. One thing was mended after the
-first judging, when the leucogranite stood before the tin granite for tin: biotite had let go of tin and fluorine in cool
-melts as in hot ones, against the literature (``averages.PARTITION``), and the tin granite had been given a cool melt's
-residue. No number was chosen to please a threshold.
+first judging, when the leucogranite stood before the tin granite for tin: biotite had let go of tin and fluorine in
+cool melts as in hot ones, against the literature (``averages.PARTITION``), and the tin granite had been given the
+residue of a cool melt. No number was chosen to please a threshold.
 """
 
 from __future__ import annotations
