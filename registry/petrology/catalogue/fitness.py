@@ -218,6 +218,10 @@ def _about_digestion(code: int, names: list[str], listed: str) -> str:
     return f"{listed} by {words}: fusion or XRF is needed"
 
 
+#: What is weighed or added up, not digested.
+_WEIGHED = ("total_reported_wt", "loi_wt", "h2o_plus_wt", "h2o_minus_wt")
+
+
 def _unknown_digestion(*digestions: Any) -> Any:
     mask: Any = False
     for codes in digestions:
@@ -282,6 +286,6 @@ WARNINGS = (
     Warning(
         "digestion_unknown", "fitness", None,
         "the digestion of at least one column is not known; name it in the import",
-        _unknown_digestion, tuple(f"digestion:{column}" for column in CHOSEN_COLUMNS),
+        _unknown_digestion, tuple(f"digestion:{column}" for column in CHOSEN_COLUMNS if column not in _WEIGHED),
     ),
 )  # fmt: skip
