@@ -5,7 +5,7 @@ from __future__ import annotations
 import re
 import statistics
 from collections import Counter
-from collections.abc import Iterable, Sequence
+from collections.abc import Collection, Iterable, Sequence
 from dataclasses import dataclass
 from typing import Any
 
@@ -17,7 +17,8 @@ from registry.targets.definition import Criterion, TargetDefinition
 
 #: Best samples named for each target.
 BEST_NAMED = 3
-_RANK = {0: 0, 1: 1, 3: 2, 2: 3}
+#: Favourable samples come before possible ones, and those before all others, which only their scores tell apart.
+_RANK = {0: 0, 1: 1, 2: 2, 3: 2}
 _LACKING = re.compile(rf'"(\d+)":"{MISSING}([^"]*)"')
 _CAUSE = re.compile(r'"cause":"([^"]*)"')
 
@@ -61,16 +62,20 @@ class Standing:
 
     @property
     def leading(self) -> str | None:
-        """The best verdict among the samples; None where none was judged."""
-        order = ("favourable", "possible", "undecided", "unfavourable")
-        return next((word for word in order if self.counts.get(word)), None)
+        """The word for all samples: the best verdict, but undecided only where that is most of them; None: no sample."""
+        if not self.samples:
+            return None
+        word = next((word for word in ("favourable", "possible") if self.counts[word]), None)
+        return word or ("undecided" if 2 * self.counts["undecided"] > self.samples else "unfavourable")
 
 
-def standings(connection: Any, column: str, key: int, explained: bool = True) -> list[Standing]:
+def standings(
+    connection: Any, column: str, key: int, explained: Collection[str] = VERDICT_WORDS
+) -> list[Standing]:
     """The standing for every target of the samples with that ``intrusion_id`` or ``site_id`` (``column``).
 
-    The target with the best verdict comes first, then by median score. ``explained``: with the conclusion on the best
-    sample of each target.
+    The target with the best verdict comes first, then by median score. The best sample's conclusion is worked out
+    where its verdict is one of ``explained``.
     """
     targets = targets_reading.active_targets(connection)
     rows = reading.judged_samples(connection, column, key)
@@ -85,10 +90,10 @@ def standings(connection: Any, column: str, key: int, explained: bool = True) ->
         for target_id, part in by_target.items()
     }
     codes = reading.sample_codes(connection, sorted({row[4] for part in leaders.values() for row in part}))
-    conclusions: dict[tuple[int, str], Conclusion] = {}
-    if explained:
-        wanted = [(leaders[t["target_id"]][0][4], t["code"]) for t in targets if leaders[t["target_id"]]]
-        conclusions = explain_chosen(connection, wanted)
+    firsts = [(leaders[target["target_id"]][0], target["code"]) for target in targets if leaders[target["target_id"]]]
+    conclusions = explain_chosen(
+        connection, [(row[4], code) for row, code in firsts if VERDICT_WORDS[row[1]] in explained]
+    )
     found = [
         _standing(target, by_target[target["target_id"]], leaders[target["target_id"]], codes, conclusions)
         for target in targets

@@ -13,15 +13,17 @@ from registry.store.reading.session import open_for_reading
 from web import (
     batches,
     diagrams,
+    editing,
     errors,
     importing,
+    intrusions,
     methods,
     numbers,
     pictures,
-    places,
     sample,
     samples,
     security,
+    sites,
     targets,
     wording,
     writing,
@@ -54,7 +56,7 @@ def create_app(registry_path_or_url: str, writable: bool = False, drafts: Any = 
     pictures.register(app)
     wording.register(app)
     errors.register(app)
-    for part in (samples, sample, diagrams, batches, targets, methods, places):
+    for part in (samples, sample, diagrams, batches, targets, methods, intrusions, sites, editing):
         app.register_blueprint(part.blueprint)
     importing.register(app, drafts)
     return app

@@ -112,6 +112,11 @@ def digestion_words(code: str) -> str:
     return known.get(code, code.replace("_", " "))
 
 
+def lower_first(words: str) -> str:
+    """Words as they stand within a sentence: the first letter small, symbols further on as they are."""
+    return words[:1].lower() + words[1:]
+
+
 def register(app: Flask) -> None:
     """Make the spellings known to the templates."""
     app.jinja_env.filters.update(
@@ -121,6 +126,7 @@ def register(app: Flask) -> None:
         unit_words=unit_words,
         short_source=short_source,
         digestion_words=digestion_words,
+        lower_first=lower_first,
     )
 
 
@@ -156,8 +162,7 @@ def verdict_words(asked: Filter, targets: Mapping[str, str]) -> str:
     """``porphyry copper favourable or possible``."""
     words = joined(asked.verdict, "or") if asked.verdict else ""
     if asked.target:
-        name = targets[asked.target]
-        name = name[:1].lower() + name[1:]
+        name = lower_first(targets[asked.target])
         return f"{name} {words}" if words else f"judged for {name}"
     return f"{words} as best verdict"
 

@@ -14,7 +14,7 @@ from registry.petrology.analytes import CHOSEN_COLUMNS
 from registry.refresh import drain
 from registry.store import tables
 from registry.store.engine import Registry, reading, writing
-from registry.store.reading import batches, methods, places, sample, targets
+from registry.store.reading import batches, intrusions, methods, places, sample, targets
 from registry.store.sheets import VERDICT_WORDS
 from registry.targets.definition import load_definitions
 
@@ -132,13 +132,14 @@ def test_targets_and_places_count_verdicts(connection: Any) -> None:
         assert sum(target["counts"].values()) == 1
         assert targets.criteria(connection, target["target_version_id"])
     bodies = {row["name"]: row for row in places.intrusion_list(connection)}
-    assert bodies["Aster stock"]["samples"] == 1 == sum(bodies["Aster stock"][word] for word in VERDICT_WORDS)
-    assert bodies["Brock gabbro"]["samples"] == 0
-    assert [(row["code"], row["samples"]) for row in places.site_list(connection)] == [("DH-1", 1)]
-    for table, name in (("intrusion", "Aster stock"), ("site", "DH-1")):
-        found = places.verdicts_by_target(connection, table, name)
-        assert len(found) == len(targets.target_names(connection))
-        assert all(sum(entry["counts"].values()) == 1 for entry in found)
+    assert {name: row["samples"] for name, row in bodies.items()} == {"Aster stock": 1, "Brock gabbro": 0}
+    sites = places.site_list(connection)
+    assert [(row["code"], row["samples"]) for row in sites] == [("DH-1", 1)]
+    assert sum(places.best_verdicts_by_site(connection)[sites[0]["site_id"]].values()) == 1
+    for target in targets.active_targets(connection):
+        scores = intrusions.scores_by_intrusion(connection, target["target_id"])
+        assert list(scores) == [bodies["Aster stock"]["intrusion_id"]]
+        assert sum(scores[bodies["Aster stock"]["intrusion_id"]]["counts"].values()) == 1
 
 
 def test_methods_give_unit_and_source_of_every_quantity(connection: Any) -> None:

@@ -1,4 +1,4 @@
-"""Intrusions and sites: the lists with counts of samples and verdicts, and one of each."""
+"""The lists of intrusions and sites, with counts of samples and verdicts."""
 
 from __future__ import annotations
 
@@ -8,30 +8,22 @@ from sqlalchemy import Connection, text
 
 from registry.store.sheets import VERDICT_WORDS
 
-_COUNTED = ", ".join(
-    f"sum(CASE WHEN derived.best_verdict = {code} THEN 1 ELSE 0 END) AS {word}"
-    for code, word in enumerate(VERDICT_WORDS)
-)
-
 
 def _rows(connection: Connection, sql: str, **bound: Any) -> list[dict[str, Any]]:
     return [dict(row) for row in connection.execute(text(sql), bound).mappings()]
 
 
 def intrusion_list(connection: Connection) -> list[dict[str, Any]]:
-    """Every intrusion with its shape, age, number of samples and the best verdicts on them."""
+    """Every intrusion with its shape, size and age, and how many samples are named after it."""
     return _rows(
         connection,
-        f"""
-        SELECT intrusion.name, area.name AS area, intrusion.shape, intrusion.half_width_m, intrusion.volume_km3,
-            intrusion.depth_to_top_m, intrusion.age_ma, intrusion.age_sigma_ma, intrusion.mapped,
-            coalesce(counted.samples, 0) AS samples, counted.favourable, counted.possible, counted.unfavourable,
-            counted.undecided
+        """
+        SELECT intrusion.intrusion_id, intrusion.name, area.name AS area, intrusion.shape, intrusion.half_width_m,
+            intrusion.volume_km3, intrusion.depth_to_top_m, intrusion.age_ma, intrusion.age_sigma_ma,
+            intrusion.mapped, coalesce(counted.samples, 0) AS samples
         FROM intrusion LEFT JOIN area ON area.area_id = intrusion.area_id
         LEFT JOIN (
-            SELECT sample.intrusion_id, count(*) AS samples, {_COUNTED}
-            FROM sample LEFT JOIN derived ON derived.sample_id = sample.sample_id
-            WHERE sample.intrusion_id IS NOT NULL GROUP BY sample.intrusion_id
+            SELECT intrusion_id, count(*) AS samples FROM sample WHERE intrusion_id IS NOT NULL GROUP BY intrusion_id
         ) AS counted ON counted.intrusion_id = intrusion.intrusion_id
         ORDER BY intrusion.name
         """,
@@ -39,43 +31,30 @@ def intrusion_list(connection: Connection) -> list[dict[str, Any]]:
 
 
 def site_list(connection: Connection) -> list[dict[str, Any]]:
-    """Every site with its position, depth, number of samples and the best verdicts on them."""
+    """Every site with its position, depth and how many samples come from it."""
     return _rows(
         connection,
-        f"""
-        SELECT site.code, site.kind, area.name AS area, site.longitude, site.latitude, site.elevation_m, site.depth_m,
-            coalesce(counted.samples, 0) AS samples, counted.favourable, counted.possible, counted.unfavourable,
-            counted.undecided
+        """
+        SELECT site.site_id, site.code, site.kind, area.name AS area, site.longitude, site.latitude, site.elevation_m,
+            site.depth_m, coalesce(counted.samples, 0) AS samples
         FROM site LEFT JOIN area ON area.area_id = site.area_id
-        LEFT JOIN (
-            SELECT sample.site_id, count(*) AS samples, {_COUNTED}
-            FROM sample LEFT JOIN derived ON derived.sample_id = sample.sample_id
-            WHERE sample.site_id IS NOT NULL GROUP BY sample.site_id
-        ) AS counted ON counted.site_id = site.site_id
+        LEFT JOIN (SELECT site_id, count(*) AS samples FROM sample WHERE site_id IS NOT NULL GROUP BY site_id)
+            AS counted ON counted.site_id = site.site_id
         ORDER BY site.code
         """,
     )
 
 
-def verdicts_by_target(connection: Connection, table: str, name: str) -> list[dict[str, Any]]:
-    """Counts of verdicts by target over the samples of one intrusion (``table`` 'intrusion') or site ('site')."""
-    key, column = {"intrusion": ("intrusion_id", "name"), "site": ("site_id", "code")}[table]
-    rows = _rows(
-        connection,
-        f"""
-        SELECT target.code, target.name, verdict.verdict, count(*) AS samples, max(verdict.score_min) AS best_score
-        FROM {table} JOIN sample ON sample.{key} = {table}.{key}
-        JOIN verdict ON verdict.sample_id = sample.sample_id JOIN target ON target.target_id = verdict.target_id
-        WHERE {table}.{column} = :name
-        GROUP BY target.target_id, target.code, target.name, verdict.verdict ORDER BY target.target_id
-        """,
-        name=name,
-    )
-    found: dict[str, dict[str, Any]] = {}
-    for row in rows:
-        entry = found.setdefault(
-            row["code"], {"code": row["code"], "name": row["name"], "counts": dict.fromkeys(VERDICT_WORDS, 0)}
+def best_verdicts_by_site(connection: Connection) -> dict[int, dict[str, int]]:
+    """How many samples of each site have which best verdict. Reads every derived row: keep the answer."""
+    found: dict[int, dict[str, int]] = {}
+    rows = connection.execute(
+        text(
+            "SELECT sample.site_id, derived.best_verdict, count(*) AS n FROM sample JOIN derived ON "
+            "derived.sample_id = sample.sample_id WHERE sample.site_id IS NOT NULL AND derived.best_verdict IS NOT NULL "
+            "GROUP BY sample.site_id, derived.best_verdict"
         )
-        entry["counts"][VERDICT_WORDS[row["verdict"]]] = row["samples"]
-        entry["best_score"] = max(entry.get("best_score") or 0.0, row["best_score"] or 0.0)
-    return list(found.values())
+    )
+    for site_id, verdict, number in rows:
+        found.setdefault(site_id, {})[VERDICT_WORDS[verdict]] = number
+    return found

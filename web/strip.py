@@ -1,0 +1,256 @@
+"""The down-hole strip: depth, logged rocks, chosen values and verdicts beside one another, as numbers to draw.
+
+Every part has the height of the hole in pixels and a width in per cent, so that it needs no inline style and fits a
+telephone. A rock is told by its label first, then by hatching, then by colour.
+"""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Mapping, Sequence
+from dataclasses import dataclass
+from typing import Any
+
+LEAST_HEIGHT, GREATEST_HEIGHT, PIXELS_PER_METRE = 320, 960, 2.0
+TICK_PIXELS, LABEL_PIXELS, MARK_PIXELS = 48, 13, 15
+LONGEST_LABEL = 19
+#: Values that spread over more than this ratio are drawn on a logarithmic scale.
+LOGARITHMIC_FROM = 100.0
+#: Room above the first and below the last depth, so that marks are not cut.
+EDGE = 8
+
+#: Families of rocks by words of their names, the first that fits: (words, colour, pattern).
+FAMILIES = (
+    (("vein", "breccia", "fault", "gouge"), "black", "dots"),
+    (("pegmat", "aplit"), "pink", "rise"),
+    (("granodior", "tonal", "adamell", "trondhj"), "orange", "cross"),
+    (("dunit", "peridot", "harzburg", "lherzol", "wehrl", "serpent", "pyroxen", "hornblendit", "komati"), "blue", ""),
+    (("gabbro", "norit", "troctol", "anorthos", "doler", "diabas"), "green", "cross"),
+    (("basalt", "picrit", "amphibol", "greenst"), "green", "upright"),
+    (("monzon", "syenit", "monzo"), "vermilion", "rise"),
+    (("diorit",), "orange", "rise"),
+    (("granit", "leucogran"), "vermilion", "cross"),
+    (("rhyol", "dacit", "ignimb", "obsid"), "yellow", "dots"),
+    (("andesit", "trachy", "latit", "phonol", "volcan", "tuff", "lava", "porphyr"), "yellow", "rise"),
+    (("limest", "marble", "dolom", "carbon", "skarn", "calc"), "sky", "level"),
+    (("schist", "gneiss", "slate", "phyll", "hornfels", "quartzite", "migmat"), "paper", "fall"),
+    (("sandst", "shale", "silts", "mudst", "conglom", "greywacke", "argill", "chert"), "paper", "dots"),
+    (("overburden", "soil", "till", "gravel", "alluv", "saprol", "no core", "lost"), "paper", "level"),
+)
+OTHER = ("paper", "upright")
+PATTERNS = {
+    "rise": "M-1,1 l2,-2 M0,8 l8,-8 M7,9 l2,-2", "fall": "M-1,7 l2,2 M0,0 l8,8 M7,-1 l2,2", "upright": "M2,0 v8 M6,0 v8",
+    "level": "M0,2 h8 M0,6 h8", "cross": "M4,1 v6 M1,4 h6", "dots": "",
+}  # fmt: skip
+STROKES = {"black": "black", "paper": "soft", "blue": "light"}
+
+
+@dataclass(frozen=True)
+class Block:
+    """One logged interval: where it stands, how it is filled, its label (empty where there is no room) and words."""
+
+    y: float
+    height: float
+    fill: str
+    colour: str
+    label: str
+    label_y: float
+    words: str
+
+
+@dataclass(frozen=True)
+class Point:
+    """One value: its depth and place in pixels and per cent, its interval, the words, and where its line begins."""
+
+    x: float
+    y: float
+    top: float
+    bottom: float
+    words: str
+    code: str
+    from_x: float | None = None
+    from_y: float | None = None
+
+
+@dataclass(frozen=True)
+class Track:
+    """One value down the hole. ``low`` and ``high`` are the ends of its scale."""
+
+    column: Any
+    low: float
+    high: float
+    logarithmic: bool
+    points: tuple[Point, ...]
+    missing: int
+
+
+@dataclass(frozen=True)
+class Mark:
+    """The best verdict of the samples that share a place on the strip; ``code`` where there is one alone."""
+
+    y: float
+    word: str
+    words: str
+    code: str | None
+
+
+@dataclass(frozen=True)
+class Strip:
+    """Everything beside everything, ``height`` pixels high, from depth 0 to ``depth_m``."""
+
+    height: float
+    depth_m: float
+    ticks: tuple[tuple[float, str], ...]
+    blocks: tuple[Block, ...]
+    tracks: tuple[Track, ...]
+    marks: tuple[Mark, ...]
+    patterns: tuple[tuple[str, str, str, str], ...]
+    fine: bool
+
+
+def rock_fill(lithology: str | None) -> tuple[str, str]:
+    """Colour and pattern of a rock name."""
+    plain = (lithology or "").casefold()
+    for words, colour, pattern in FAMILIES:
+        if any(word in plain for word in words):
+            return colour, pattern
+    return OTHER
+
+
+def build_strip(
+    depth_m: float | None,
+    intervals: Sequence[Mapping[str, Any]],
+    samples: Sequence[Mapping[str, Any]],
+    columns: Sequence[Any],
+) -> Strip | None:
+    """The strip of a hole; None where nothing of it has a depth.
+
+    ``samples`` as ``strip_samples`` gives them, ``columns`` those of ``value_0`` and on.
+    """
+    depths = [depth_m or 0.0, *(row["to_m"] for row in intervals)]
+    depths += [_bottom(row) for row in samples]
+    deepest = max(depths)
+    if deepest <= 0.0:
+        return None
+    inner = min(GREATEST_HEIGHT, max(LEAST_HEIGHT, PIXELS_PER_METRE * deepest))
+    scale = inner / deepest
+
+    def at(depth: float) -> float:
+        return round(EDGE + depth * scale, 2)
+
+    fills = dict.fromkeys(rock_fill(row["lithology"]) for row in intervals)
+    return Strip(
+        height=inner + 2 * EDGE,
+        depth_m=deepest,
+        ticks=tuple((at(depth), f"{depth:g}") for depth in _ticks(deepest, TICK_PIXELS / scale)),
+        blocks=tuple(_block(row, at) for row in intervals),
+        tracks=tuple(_track(place, column, samples, at) for place, column in enumerate(columns)),
+        marks=_marks(samples, at),
+        patterns=tuple((colour, pattern, PATTERNS[pattern], STROKES.get(colour, "ink")) for colour, pattern in fills if pattern),
+        fine=len(samples) > inner / 6,
+    )
+
+
+def _top(row: Mapping[str, Any]) -> float:
+    return float(row["to_m"] if row["from_m"] is None else row["from_m"])
+
+
+def _bottom(row: Mapping[str, Any]) -> float:
+    return float(row["from_m"] if row["to_m"] is None else row["to_m"])
+
+
+def _ticks(deepest: float, least_step: float) -> list[float]:
+    """Round depths from 0, at least that many metres apart."""
+    power = 10.0 ** math.floor(math.log10(least_step))
+    step = next(factor * power for factor in (1, 2, 5, 10) if factor * power >= least_step * 0.999)
+    return [number * step for number in range(int(deepest / step) + 1)]
+
+
+def _block(row: Mapping[str, Any], at: Any) -> Block:
+    colour, pattern = rock_fill(row["lithology"])
+    top, bottom = at(row["from_m"]), at(row["to_m"])
+    name = row["lithology"] or "not named"
+    label = name if len(name) <= LONGEST_LABEL else name[: LONGEST_LABEL - 1].rstrip() + "…"
+    words = f"{row['from_m']:g} to {row['to_m']:g} m: {name}" + (f", {row['description']}" if row["description"] else "")
+    return Block(
+        y=top,
+        height=round(bottom - top, 2),
+        fill=f"url(#rock-{colour}-{pattern})" if pattern else "",
+        colour=colour,
+        label=label if bottom - top >= LABEL_PIXELS else "",
+        label_y=round((top + bottom) / 2 + 4, 2),
+        words=words,
+    )
+
+
+def _track(place: int, column: Any, samples: Sequence[Mapping[str, Any]], at: Any) -> Track:
+    known = [row for row in samples if row[f"value_{place}"] is not None]
+    values = [float(row[f"value_{place}"]) for row in known]
+    if not values:
+        return Track(column, 0.0, 0.0, False, (), len(samples))
+    low, high, logarithmic = _scale(min(values), max(values))
+
+    def across(value: float) -> float:
+        if logarithmic:
+            share = math.log(value / low) / math.log(high / low)
+        else:
+            share = (value - low) / (high - low)
+        return round(4.0 + 92.0 * share, 2)
+
+    points: list[Point] = []
+    for row, value in zip(known, values, strict=True):
+        top, bottom = at(_top(row)), at(_bottom(row))
+        before = points[-1] if points else None
+        span = f"{_top(row):g} to {_bottom(row):g} m" if bottom > top else f"{_top(row):g} m"
+        points.append(
+            Point(
+                x=across(value),
+                y=round((top + bottom) / 2, 2),
+                top=top,
+                bottom=bottom,
+                words=f"{row['code']}, {span}: {value:.4g}",
+                code=row["code"],
+                from_x=before.x if before else None,
+                from_y=before.y if before else None,
+            )
+        )
+    return Track(column, low, high, logarithmic, tuple(points), len(samples) - len(known))
+
+
+def _scale(least: float, greatest: float) -> tuple[float, float, bool]:
+    """Round ends around the values, and whether the scale is logarithmic."""
+    if least > 0.0 and greatest / least > LOGARITHMIC_FROM:
+        return 10.0 ** math.floor(math.log10(least)), 10.0 ** math.ceil(math.log10(greatest)), True
+    if least == greatest:
+        room = abs(least) * 0.1 or 1.0
+        least, greatest = least - room, greatest + room
+    power = 10.0 ** math.floor(math.log10(greatest - least))
+    step = next(f * power for f in (0.1, 0.2, 0.25, 0.5, 1.0, 2.0) if (greatest - least) / (f * power) <= 6.0)
+    low, high = math.floor(least / step + 1e-9) * step, math.ceil(greatest / step - 1e-9) * step
+    return float(f"{low:.6g}"), float(f"{high:.6g}"), False
+
+
+def _marks(samples: Sequence[Mapping[str, Any]], at: Any) -> tuple[Mark, ...]:
+    """One mark a place of ``MARK_PIXELS``; samples too close to be told apart share the best of their verdicts."""
+    order = ("favourable", "possible", "undecided", "unfavourable")
+    groups: list[list[tuple[float, Mapping[str, Any]]]] = []
+    for row in samples:
+        if row["verdict"] is None:
+            continue
+        y = (at(_top(row)) + at(_bottom(row))) / 2
+        if groups and y - groups[-1][0][0] < MARK_PIXELS:
+            groups[-1].append((y, row))
+        else:
+            groups.append([(y, row)])
+    marks = []
+    for group in groups:
+        counted = {word: sum(row["verdict"] == word for _, row in group) for word in order}
+        word = next(word for word in order if counted[word])
+        first, last = group[0][1], group[-1][1]
+        if len(group) == 1:
+            words = f"{first['code']}, {_top(first):g} to {_bottom(first):g} m: {word}"
+        else:
+            told = ", ".join(f"{number} {name}" for name, number in counted.items() if number)
+            words = f"{_top(first):g} to {_bottom(last):g} m: {told}"
+        marks.append(Mark(round(group[0][0], 2), word, words, first["code"] if len(group) == 1 else None))
+    return tuple(marks)
