@@ -86,7 +86,7 @@ def models(suite: Suite, sorted_members: Members, parent_sample: str | None) -> 
         *_trend(trend),
         _series(of),
     ]
-    parent, said, cause = _parent(suite, usable, parent_sample)
+    parent, said, cause = _parent(suite, sorted_members, parent_sample)
     if parent is None:
         blanks = (
             ("fractionation", "parent_mg_number", "1"),
@@ -152,8 +152,9 @@ def _series(of: dict[str, np.ndarray]) -> Row:
     return Row("series", "alkali_lime_index", index, "wt%", alkali_lime_word(index))
 
 
-def _parent(suite: Suite, usable: np.ndarray, named: str | None) -> tuple[int | None, str, str | None]:
+def _parent(suite: Suite, sorted_members: Members, named: str | None) -> tuple[int | None, str, str | None]:
     """Row of the parent, how it was chosen, or the cause of there being none."""
+    usable = sorted_members.usable
     if named:
         if named not in suite.codes:
             return None, "", "named_parent_is_no_computed_sample_of_this_intrusion"
@@ -161,7 +162,8 @@ def _parent(suite: Suite, usable: np.ndarray, named: str | None) -> tuple[int | 
         aside = "" if usable[row] else ", though it is altered, unfit, a cumulate or far from the rest"
         return row, f"sample {named}, named as the parent{aside}", None
     if usable.sum() < FEWEST_SAMPLES:
-        return None, "", "fewer_than_4_samples"
+        mostly_cumulates = 2 * sorted_members.cumulate.sum() > len(suite)
+        return None, "", "cumulates_are_no_liquids" if mostly_cumulates else "fewer_than_4_samples"
     numbers = suite.numbers
     row_or_none = most_primitive_sample(
         numbers["mg_number_total_iron"], numbers["mgo_vf_wt"], numbers["sio2_vf_wt"], usable

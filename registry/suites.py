@@ -63,7 +63,8 @@ def _refresh_intrusions(connection: Any, intrusion_ids: list[int], conventions: 
         else:
             sorted_members = members(suite, conventions)
             modelled, trend = models(suite, sorted_members, bodies.parent_sample[place])
-            trends.append(trend.sentence())
+            few = trend.word == "too_few_samples"
+            trends.append(f"{trend.sentence()}; {sorted_members.sentence()}" if few else trend.sentence())
             found = modelled + found
             far.append(_far(suite, sorted_members, intrusion_id, bodies.names[place]))
             changes.append(_mass_changes(suite, sorted_members, intrusion_id, bodies.fresh_sample[place]))

@@ -331,6 +331,17 @@ def test_suite_of_three_samples_gives_the_cause(district: Registry) -> None:
     assert value(district, "population", "far_samples")[3] == "fewer_than_8_complete_analyses"
 
 
+def test_suite_of_cumulates_says_that_they_are_no_liquids(district: Registry) -> None:
+    with writing(district) as connection:
+        connection.exec_driver_sql("UPDATE sample SET lithology = 'layered gabbro' WHERE code > 'A01'")
+        drain(connection)
+
+    assert value(district, "fractionation", "liquid_fraction_most_evolved")[3] == "cumulates_are_no_liquids"
+    said = rows(district, "SELECT trend_quality FROM intrusion_sheet WHERE intrusion = 'Grey sill'")[0][0]
+    assert said.startswith("too few samples: 2 of the 4 needed; 2 of 10 samples used;")
+    assert "8 cumulates or no liquids" in said
+
+
 def test_controls_and_partial_digestions_do_not_enter_the_suite(district: Registry) -> None:
     with writing(district) as connection:
         add_samples(connection, ["BLANK1"], 1, **{"kind": "blank"})
@@ -360,7 +371,7 @@ def test_swapped_sample_is_remarked_and_not_changed(district: Registry) -> None:
         ("SW1", "chemistry_far_from_intrusion"),
     ]
     assert found[0][2] == pytest.approx(72.9, abs=0.3) and "SiO2 72.863 wt%" in found[0][3]
-    assert found[1][2] > 8.0 and "among the 11 compared samples of Grey sill (limit 8.5)" in found[1][3]
+    assert found[1][2] > 8.0 and "among the 11 compared samples of Grey sill (limit 9.5)" in found[1][3]
     with reading(district) as connection:
         (far,) = far_samples(connection)
         (logged,) = disagreeing_samples(connection)

@@ -32,7 +32,7 @@ MOST_SAMPLES_SEARCHED = 2000
 _LIMIT_RISE = 60.0
 #: Least spread of a log-ratio that counts: what sampling and analysis alone make of majors (common practice).
 LEAST_SPREAD = 0.02
-_DEVIATION_LIMIT, _DEVIATION_RISE = 4.0, 50.0
+_DEVIATION_LIMIT, _DEVIATION_RISE = 5.0, 50.0
 #: Above this share of far samples the body is not one population, and none of them is called far.
 LARGEST_FAR_SHARE = 0.10
 _STEPS = 50
@@ -104,7 +104,7 @@ def distances_from_body(analyses: ArrayLike, components: tuple[str, ...] = COMPA
 
     From 10 (k - 1) complete analyses on, ``squared_distances`` of their log-ratios against the 99.9 % point of
     chi-square; with fewer, the greatest deviation of a centred log-ratio in units of its median deviation (x 1.4826),
-    not below 0.02, against 4 + 50/n. Under 8 nothing is far. Sources [rousseeuw1999], [filzmoser2008],
+    not below 0.02, against 5 + 50/n. Under 8 nothing is far. Sources [rousseeuw1999], [filzmoser2008],
     [aitchison1986]; the limits for few samples were found by simulation.
     """
     parts = np.asarray(analyses, dtype=np.float64).reshape(-1, len(components))

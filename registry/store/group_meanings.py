@@ -105,7 +105,8 @@ GROUP_MEANINGS: dict[tuple[str, str], Words] = {
     ),
     ("suite_sheet", "cause"): _of("text", "why there is no value", "first reason that holds", _PRACTICE),
     ("mass_change_sheet", "reference_sample"): _of(
-        "text", "fresh rock compared with: a sample's code, or the median of the fresh samples of the same intrusion",
+        "text", "fresh rock compared with: a sample's code, or the median of the fresh samples of the same intrusion; "
+        "what the rock differed in before it was altered counts as change",
         "the intrusion's fresh_sample, else the median", _PRACTICE,
     ),
     ("mass_change_sheet", "component"): _of("text", "oxide or element", "as analysed", "as entered"),
