@@ -169,14 +169,24 @@ def _evaluate(workspace: dict[str, Any], n: int) -> np.ndarray:
 
 
 def _explain(method: Method, workspace: dict[str, Any], causes: np.ndarray, n: int) -> None:
-    """Give each missing output of a method the letter of its cause."""
-    missing = {output.name: is_missing(workspace[output.name]) for output in method.outputs}
-    missing = {name: rows for name, rows in missing.items() if rows.any()}
+    """Give each missing output of a method the letter of its cause; what is infinite goes missing here."""
+    missing, infinite = {}, np.zeros(n, dtype=bool)
+    for output in method.outputs:
+        column = workspace[output.name]
+        is_number = column.dtype.kind == "f"
+        absent = ~np.isfinite(column) if is_number else is_missing(column)
+        if not absent.any():
+            continue
+        missing[output.name] = absent
+        if is_number and (beyond := np.isinf(column)).any():
+            workspace[output.name] = np.where(beyond, np.nan, column)
+            infinite |= beyond
     if not missing:
         return
     rows = np.flatnonzero(np.logical_or.reduce(list(missing.values())))
     letters = np.full(n, _DOT, dtype=np.uint8)
     letters[rows] = _letters(method, workspace, rows, n)
+    letters[infinite] = ord(CAUSES["beyond_numbers"][0])
     for name, mask in missing.items():
         causes[:, _QUANTITY_POSITION[name]] = np.where(mask, letters, _DOT)
 

@@ -1,7 +1,7 @@
 """Counts the elementwise steps of the catalogue: computes one chunk on arrays that report what is done to them.
 
 Run as a process of its own, since it lets numpy's makers of arrays give the reporting kind. Counted are the ufuncs that
-give one value a sample, the others of numpy's functions that do (``where``, ``interp``, ...), and look-ups in a table.
+give one value a sample, the others of numpy's functions that do (``where``, ``isin``, ...), and look-ups of numbers and words in a table.
 Not counted are comparisons of words, copies, and what numpy does inside a function of its own.
 """
 
@@ -26,8 +26,8 @@ class Reporting(np.ndarray):
         if "out" in kwargs:
             kwargs["out"] = tuple(plain(part) for part in kwargs["out"])
         result = getattr(ufunc, method)(*plain(inputs), **{name: plain(value) for name, value in kwargs.items()})
-        if np.shape(result) == (ROWS,) and np.dtype(object) != getattr(result, "dtype", None):
-            kinds = "".join(np.asarray(part).dtype.kind for part in inputs) if method == "__call__" else "b"
+        kinds = "".join(np.asarray(part).dtype.kind for part in inputs) if method == "__call__" else "b"
+        if np.shape(result) == (ROWS,) and "O" not in kinds:
             times = 1 if method == "__call__" else max(len(inputs[0]) - 1, 1)
             STEPS[f"{ufunc.__name__} {kinds}"] += times
         return reporting(result)
@@ -42,7 +42,7 @@ class Reporting(np.ndarray):
     def __getitem__(self, key: Any) -> Any:
         result = super().__getitem__(key)
         if isinstance(key, np.ndarray) and np.shape(result) == (ROWS,):
-            STEPS["look-up"] += 1
+            STEPS["word" if result.dtype == np.dtype(object) else "look-up"] += 1
         return result
 
 
@@ -53,7 +53,7 @@ def plain(part: Any) -> Any:
 
 
 def reporting(part: Any) -> Any:
-    if isinstance(part, np.ndarray) and part.dtype != object:
+    if isinstance(part, np.ndarray):
         return part.view(Reporting)
     return type(part)(reporting(each) for each in part) if isinstance(part, list | tuple) else part
 

@@ -49,6 +49,7 @@ GENERAL_CAUSES = (
     ("missing_input", "an analyte it needs was not reported, not determined or not carried by the digestion"),
     ("not_yet_computed", "this method is not computed by this version"),
     ("not_applicable", "not defined for this rock"),
+    ("beyond_numbers", "an input is so large or so small that the result is no number: check the unit of its column"),
 )
 _LETTERS = "abcdefghijklmnopqrstuvwxyzABCDEFGHIJKLMNOPQRSTUVWXYZ0123456789"
 
