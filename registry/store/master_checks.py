@@ -12,6 +12,7 @@ import sqlalchemy as sa
 from registry.errors import Problem
 from registry.store import master_positions, raw_rows, tables
 from registry.store.master_kinds import MasterKind, Reference
+from registry.store.near_codes import near_misses
 
 Rows = dict[str, list[Any]]
 Known = Mapping[tuple[Any, ...], Mapping[str, Any]]
@@ -68,6 +69,8 @@ def check(
         problems += master_positions.check_systems(stored["epsg"], lines, file)
     if spec.kind == "sites":
         problems += master_positions.check_sites(given, stored, known, lines, file)
+    if spec.kind in ("sites", "samples"):
+        problems += master_positions.check_places(connection, given, stored, lines, file)
     if spec.kind in ("surveys", "intervals", "samples"):
         problems += _depths(connection, spec, stored, known, lines, file)
     if spec.kind == "intervals":
@@ -93,7 +96,7 @@ def _keys(
     lines: Sequence[int],
     file: str,
 ) -> list[Problem]:
-    """A key that is blank or stands twice, and codes that differ from registered ones in capitals only."""
+    """A key that is blank or stands twice, and codes that are almost those of registered ones."""
     problems = []
     seen: dict[tuple[Any, ...], int] = {}
     shown = next((name for name, column in spec.columns.items() if column == spec.key[-1]), spec.key[-1])
@@ -118,11 +121,11 @@ def _keys(
                 )
             )
     if len(spec.key) == 1:
-        problems += _capitals(connection, spec, stored[spec.key[0]], shown, known, lines, file)
+        problems += _written_otherwise(connection, spec, stored[spec.key[0]], shown, known, lines, file)
     return problems
 
 
-def _capitals(
+def _written_otherwise(
     connection: sa.Connection,
     spec: MasterKind,
     codes: Sequence[Any],
@@ -131,24 +134,29 @@ def _capitals(
     lines: Sequence[int],
     file: str,
 ) -> list[Problem]:
-    column = tables.metadata.tables[spec.table].c[spec.key[0]]
-    fresh = {code.casefold(): row for row, code in enumerate(codes) if code is not None and (code,) not in known}
+    """New codes that a registered one differs from only in case, spaces, dashes or leading zeros."""
+    fresh = {code: row for row, code in enumerate(codes) if code is not None and (code,) not in known}
     if not fresh:
         return []
-    return [
+    column = tables.metadata.tables[spec.table].c[spec.key[0]]
+    near = near_misses(fresh, connection.execute(sa.select(column)).scalars())
+    warnings = [
         Problem(
             file,
-            f"a registered {spec.noun} differs in capitals only",
-            lines[fresh[code.casefold()]],
+            f"a registered {spec.noun} is written almost the same",
+            lines[fresh[code]],
             shown,
-            codes[fresh[code.casefold()]],
-            f"perhaps '{code}'",
+            code,
+            f"perhaps '{close[0]}'",
             "they are kept apart; correct the code if they are the same",
             "warning",
         )
-        for code in connection.execute(sa.select(column)).scalars()
-        if code.casefold() in fresh and code != codes[fresh[code.casefold()]]
+        for code, close in list(near.items())[:LISTED]
     ]
+    if len(near) > LISTED:
+        what = f"{len(near) - LISTED:,} more codes are almost those of registered ones ({spec.kind})"
+        warnings.append(Problem(file, what, severity="warning"))
+    return warnings
 
 
 def _depths(
@@ -208,7 +216,7 @@ def _depths(
 
 
 def _overlaps(connection: sa.Connection, stored: Rows, lines: Sequence[int], file: str) -> list[Problem]:
-    """New intervals that overlap ones of their hole already stored (within the file the intake warns)."""
+    """Intervals of the file that overlap stored ones of their hole (within the file the intake warns), and gaps."""
     ids = {site for site in stored["site_id"] if site is not None}
     spans: dict[int, list[tuple[float, float, int]]] = defaultdict(list)
     query = "SELECT site_id, from_m, to_m FROM lithology_interval WHERE site_id {ids}"
@@ -221,7 +229,9 @@ def _overlaps(connection: sa.Connection, stored: Rows, lines: Sequence[int], fil
         if (site, start, end) not in own:
             spans[site].append((start, end, 0))
     problems = []
+    gaps: list[Problem] = []
     for intervals in spans.values():
+        gaps += _gaps(sorted(intervals), file)
         for before, after in pairwise(sorted(intervals)):
             if after[0] < before[1] and 0 in (before[2], after[2]) and (before[2] or after[2]):
                 new, old = (after, before) if after[2] else (before, after)
@@ -237,4 +247,30 @@ def _overlaps(connection: sa.Connection, stored: Rows, lines: Sequence[int], fil
                         "warning",
                     )
                 )
-    return problems
+    if len(gaps) > LISTED:
+        more = Problem(file, f"{len(gaps) - LISTED:,} more gaps between intervals", severity="warning")
+        gaps = [*gaps[:LISTED], more]
+    return problems + gaps
+
+
+def _gaps(intervals: Sequence[tuple[float, float, int]], file: str) -> list[Problem]:
+    """A warning for each stretch of a hole that no interval covers, beside an interval of the file."""
+    found = []
+    end, end_line = intervals[0][1], intervals[0][2]
+    for start, stop, line in intervals[1:]:
+        if start > end and (line or end_line):
+            found.append(
+                Problem(
+                    file,
+                    "nothing is logged between two intervals of the hole",
+                    line or end_line,
+                    "from_m",
+                    f"nothing from {end:g} to {start:g} m",
+                    "intervals that join",
+                    "nothing to do where core was lost or not logged; else correct the depths",
+                    "warning",
+                )
+            )
+        if stop >= end:
+            end, end_line = stop, line
+    return found

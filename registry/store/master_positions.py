@@ -15,6 +15,11 @@ Rows = dict[str, list[Any]]
 Known = Mapping[tuple[Any, ...], Mapping[str, Any]]
 #: Equal faults are listed up to this number.
 LISTED = 20
+#: A map is often used a little beyond its zone; so many degrees are remarked on, more are refused. Common practice,
+#: no source.
+DEGREES_BEYOND = 1.5
+#: Degrees by which longitude and latitude may differ from those of easting and northing (about a kilometre).
+DEGREES_APART = 0.01
 
 
 def complete_sites(connection: sa.Connection, stored: Rows, known: Known) -> None:
@@ -96,18 +101,113 @@ def check_sites(given: Rows, stored: Rows, known: Known, lines: Sequence[int], f
                 )
             )
         elif stored["longitude"][row] is None and positions.known_epsg(stored["epsg"][row]):
+            east, north = given["easting"][row], given.get("northing", blank)[row]
             problems.append(
                 Problem(
                     file,
                     f"the coordinates lie outside the system EPSG:{stored['epsg'][row]}",
                     lines[row],
                     "easting",
-                    f"{given['easting'][row]:g}, {given.get('northing', blank)[row]}",
+                    f"{east:.10g}, {north if north is None else format(north, '.10g')}",
                     "coordinates within it",
                     "check the order of easting and northing and the EPSG code",
                 )
             )
     return problems
+
+
+def check_places(
+    connection: sa.Connection, given: Rows, stored: Rows, lines: Sequence[int], file: str
+) -> list[Problem]:
+    """Coordinates outside the area of use of their system or of their area's, and two that name different places.
+
+    ``stored`` may lack ``longitude`` and ``latitude`` (samples); they are then computed.
+    """
+    n = len(lines)
+
+    def column(rows: Rows, name: str) -> np.ndarray:
+        return np.array(rows.get(name, [None] * n), dtype=float)
+
+    east, north, epsg = column(given, "easting"), column(given, "northing"), column(stored, "epsg")
+    lon, lat = positions.longitude_latitude(east, north, epsg)
+    beyond = positions.degrees_outside(lon, lat, epsg)
+    turned = positions.degrees_outside(*positions.longitude_latitude(north, east, epsg), epsg)
+    problems = []
+    for row in np.flatnonzero(beyond > 0.0)[:LISTED].tolist():
+        far = beyond[row] > DEGREES_BEYOND
+        remedy = "check the EPSG code (zone, hemisphere) and the digits of the coordinates"
+        if turned[row] == 0.0:
+            remedy = "easting and northing are probably exchanged: the other way round they lie within it"
+        elif not far:
+            remedy = "nothing to do if the map was carried on beyond its zone; else check the EPSG code"
+        problems.append(
+            Problem(
+                file,
+                f"the coordinates lie {beyond[row]:.3g} degrees outside the area of use of their system",
+                lines[row],
+                "easting",
+                f"{east[row]:.10g}, {north[row]:.10g} (longitude {lon[row]:.4f}, latitude {lat[row]:.4f})",
+                f"a place within {positions.name_of_system(int(epsg[row]))}",
+                remedy,
+                "problem" if far else "warning",
+            )
+        )
+    problems += _counted(int((beyond > 0.0).sum()), "lie outside the area of use of their system", file)
+    own_lon, own_lat = column(given, "longitude"), column(given, "latitude")
+    apart = np.fmax(np.abs((own_lon - lon + 180.0) % 360.0 - 180.0), np.abs(own_lat - lat))
+    for row in np.flatnonzero((apart > DEGREES_APART) & ~(beyond > 0.0))[:LISTED].tolist():
+        problems.append(
+            Problem(
+                file,
+                "longitude and latitude name another place than easting and northing",
+                lines[row],
+                "longitude",
+                f"{own_lon[row]:.5f}, {own_lat[row]:.5f}",
+                f"about {lon[row]:.5f}, {lat[row]:.5f} by EPSG:{int(epsg[row])}",
+                "check the EPSG code and both pairs; give one pair only if in doubt",
+                "warning",
+            )
+        )
+    return problems + _outside_their_area(connection, stored, epsg, (lon, lat), (own_lon, own_lat), lines, file)
+
+
+def _outside_their_area(
+    connection: sa.Connection,
+    stored: Rows,
+    epsg: np.ndarray,
+    computed: tuple[np.ndarray, np.ndarray],
+    entered: tuple[np.ndarray, np.ndarray],
+    lines: Sequence[int],
+    file: str,
+) -> list[Problem]:
+    """Sites of another system than their area's that lie where the area's system is not used: a wrong zone, perhaps."""
+    if not any(area is not None for area in stored.get("area_id", ())):
+        return []
+    systems = {
+        row.area_id: row.epsg for row in connection.execute(sa.select(tables.area.c.area_id, tables.area.c.epsg))
+    }
+    own = np.array([systems.get(area) for area in stored["area_id"]], dtype=float)
+    lon = np.where(np.isnan(entered[0]), computed[0], entered[0])
+    lat = np.where(np.isnan(entered[1]), computed[1], entered[1])
+    far = (positions.degrees_outside(lon, lat, own) > DEGREES_BEYOND) & ~(epsg == own)
+    return [
+        Problem(
+            file,
+            "the site lies where the coordinate system of its area is not used",
+            lines[row],
+            "epsg" if not np.isnan(epsg[row]) else "longitude",
+            f"longitude {lon[row]:.4f}, latitude {lat[row]:.4f}",
+            f"a place within {positions.name_of_system(int(own[row]))}",
+            "check the zone that the EPSG code names, and the area",
+            "warning",
+        )
+        for row in np.flatnonzero(far)[:LISTED].tolist()
+    ]
+
+
+def _counted(number: int, what: str, file: str) -> list[Problem]:
+    """One problem for those beyond the listed ones."""
+    return [Problem(file, f"{number - LISTED:,} more rows {what}")] if number > LISTED else []
 
 
 def mark_own_positions(connection: sa.Connection, codes: Sequence[str], stored: Rows) -> None:

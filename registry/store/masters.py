@@ -9,7 +9,6 @@ from __future__ import annotations
 import unicodedata
 from collections.abc import Collection, Iterable, Mapping, Sequence
 from dataclasses import dataclass, field
-from difflib import get_close_matches
 from typing import Any
 
 import numpy as np
@@ -18,6 +17,7 @@ import sqlalchemy as sa
 from registry.errors import Problem
 from registry.store import bulk, master_checks, master_positions, positions, raw_rows, tables
 from registry.store.master_kinds import MASTER_KINDS, WHOLE_COLUMNS, MasterKind
+from registry.store.near_codes import nearest
 from registry.store.sheets import VERDICT_WORDS
 
 Rows = dict[str, list[Any]]
@@ -103,16 +103,7 @@ def near_names(connection: sa.Connection, reference: Any, codes: Sequence[Any], 
     if not unknown:
         return {}
     column = tables.metadata.tables[reference.table].c[reference.code]
-    return _nearest(unknown, connection.execute(sa.select(column)).scalars())
-
-
-def _nearest(codes: Sequence[str], known: Iterable[str]) -> dict[str, str]:
-    by_fold: dict[str, str] = {}
-    for code in known:
-        by_fold.setdefault(code.casefold(), code)
-    folded = list(by_fold)
-    near = {code: get_close_matches(code.casefold(), folded, n=1, cutoff=0.75) for code in codes}
-    return {code: by_fold[match[0]] for code, match in near.items() if match}
+    return nearest(unknown, connection.execute(sa.select(column)).scalars())
 
 
 def _ids_by_code(connection: sa.Connection, table_name: str, code: str, codes: Collection[str]) -> dict[str, int]:
@@ -213,7 +204,7 @@ def _name(spec: MasterKind, given: Rows, row: int) -> str:
 def _spelled(value: Any) -> str:
     if value is None:
         return "(blank)"
-    return f"{value:g}" if isinstance(value, float) else str(value)
+    return f"{value:.12g}" if isinstance(value, float) else str(value)
 
 
 def _insert(connection: sa.Connection, spec: MasterKind, stored: Rows, rows: list[int]) -> None:
@@ -276,7 +267,7 @@ def add_samples(connection: sa.Connection, codes: Sequence[str], kind: str = "un
 
 def near_codes(connection: sa.Connection, codes: Sequence[str]) -> dict[str, str]:
     """The nearest registered sample code of each code that has one."""
-    return _nearest(codes, connection.execute(sa.select(tables.sample.c.code)).scalars()) if codes else {}
+    return nearest(codes, connection.execute(sa.select(tables.sample.c.code)).scalars()) if codes else {}
 
 
 def samples_of_kinds(connection: sa.Connection, kinds: Sequence[str]) -> np.ndarray:

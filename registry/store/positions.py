@@ -60,6 +60,42 @@ def longitude_latitude(easting: Any, northing: Any, epsg: Any) -> tuple[np.ndarr
     return longitude, latitude
 
 
+def degrees_outside(longitude: Any, latitude: Any, epsg: Any) -> np.ndarray:
+    """How far each place (degrees, WGS 84, all (n,)) lies outside the area of use of its system (EPSG registry).
+
+    In degrees of longitude or latitude, whichever is more; 0 inside, NaN where a number is missing or the system has no
+    area of use.
+    """
+    lon, lat = np.asarray(longitude, dtype=np.float64), np.asarray(latitude, dtype=np.float64)
+    systems = np.asarray(epsg, dtype=np.float64)
+    beyond = np.full(lon.shape, np.nan)
+    given = ~(np.isnan(lon) | np.isnan(lat) | np.isnan(systems))
+    for code in np.unique(systems[given]).astype(int).tolist():
+        crs = _crs(code)
+        area = None if crs is None else crs.area_of_use
+        if area is None:
+            continue
+        rows = given & (systems == code)
+        width = (area.east - area.west) % 360.0 or 360.0  # an area may lie across 180 degrees
+        middle = area.west + 0.5 * width
+        across = np.abs((lon[rows] - middle + 180.0) % 360.0 - 180.0) - 0.5 * width
+        along = np.maximum(area.south - lat[rows], lat[rows] - area.north)
+        beyond[rows] = np.maximum(0.0, np.maximum(across, along))
+    return beyond
+
+
+def name_of_system(code: int) -> str:
+    """The name of a coordinate system and the bounds of its area of use, in words."""
+    crs = _crs(int(code))
+    if crs is None:
+        return f"EPSG:{int(code)}"
+    area = crs.area_of_use
+    if area is None:
+        return f"EPSG:{int(code)}, {crs.name}"
+    bounds = f"{area.west:g} to {area.east:g} degrees of longitude, {area.south:g} to {area.north:g} of latitude"
+    return f"EPSG:{int(code)}, {crs.name}: {bounds}"
+
+
 def locate(connection: sa.Connection, site_ids: Sequence[int | None], from_m: Any, to_m: Any) -> dict[str, np.ndarray]:
     """Positions of n samples from their sites and depths: ``POSITION_COLUMNS`` as arrays (n,), NaN or None unknown.
 

@@ -164,7 +164,7 @@ def test_codes_are_trimmed_and_composed_but_keep_their_case(any_registry: Regist
     (problem,) = second.problems
     assert problem.severity == "warning"
     assert problem.sentence() == (
-        "samples.csv, row 3, column 'sample_code': a registered sample differs in capitals only; "
+        "samples.csv, row 3, column 'sample_code': a registered sample is written almost the same; "
         "found 'KR\u00dcGER-1', expected perhaps 'Kr\u00fcger-1'; "
         "they are kept apart; correct the code if they are the same."
     )

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import pytest
 
-from registry.intake.matching import near_misses
+from registry.store.near_codes import near_misses
 
 KNOWN = ["BH1-001", "BH1-012", "S16", "A1-12", "Q 7"]
 
