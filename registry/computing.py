@@ -1,7 +1,8 @@
 """Computing beside writing: a large import derives and judges in a child process while its parent stores.
 
 The child is this module run by the same interpreter (not ``multiprocessing``, which would run the caller's own script
-again): it takes pickled chunks on its standard input and gives pickled results on its standard output.
+again): it takes pickled chunks on its standard input and gives on its standard output what they came to, as rows
+ready to be taken over (``store.ready_rows``) where the registry can take them, else as pickled arrays.
 """
 
 from __future__ import annotations
@@ -17,31 +18,34 @@ from contextlib import suppress
 from types import TracebackType
 from typing import Any, BinaryIO
 
-from registry.petrology.conventions import Conventions
+from registry.judging import Rules
 from registry.pipeline import CHUNK_SIZE, Chunk, Computed, compute
+from registry.refresh import write_computed
+from registry.store import ready_rows
 
 #: Below so many samples a child process would take longer to start than it saves.
 WORTH_A_CHILD = 2 * CHUNK_SIZE
-#: Chunks computed ahead of the writer; each finished one holds about 70 MB.
-AHEAD = 1
+#: Samples a chunk with a child: the ready rows of one take 18 MB.
+CHILDS_CHUNK_SIZE = CHUNK_SIZE // 4
+#: Chunks computed ahead of the writer.
+AHEAD = 2
 
 
 class Computations:
     """Computes chunks in order. With ``child`` they are computed ahead in a process of their own.
 
-    ``with Computations(chunks, ...) as computations:`` begins at once; iterating gives ``(chunk, computed)``. The
-    chunks are drawn from their iterable in the calling process, at most ``AHEAD`` before they are needed.
+    ``with Computations(chunks, ...) as computations:`` begins at once; iterating gives ``(chunk, outcome)``, the
+    outcome being ``Computed``, or bytes of ready rows where there is a child and ``tables`` says how to make them.
+    The chunks are drawn from their iterable in the calling process, at most ``AHEAD`` before they are needed.
     """
 
-    def __init__(
-        self, chunks: Iterable[Chunk], definitions: Sequence[Any], conventions: Conventions, child: bool
-    ) -> None:
+    def __init__(self, chunks: Iterable[Chunk], rules: Rules, child: bool, tables: Sequence[str] = ()) -> None:
         self._chunks = iter(chunks)
-        self._rules = (tuple(definitions), conventions)
+        self._rules, self._tables = rules, tuple(tables)
         self._wanted = child
         self._child: subprocess.Popen[bytes] | None = None
         self._pool: ThreadPoolExecutor | None = None
-        self._waiting: deque[tuple[Chunk, Future[Computed]]] = deque()
+        self._waiting: deque[tuple[Chunk, Future[Computed | bytes]]] = deque()
 
     def __enter__(self) -> Computations:
         if self._wanted:
@@ -53,7 +57,7 @@ class Computations:
                 env={**os.environ, "PYTHONPATH": path},
             )
             self._pool = ThreadPoolExecutor(1)
-            self._pool.submit(self._tell, self._rules)
+            self._pool.submit(self._tell, (self._rules, self._tables))
             self._fill()
         return self
 
@@ -71,16 +75,16 @@ class Computations:
                         stream.close()
             self._child.wait()
 
-    def __iter__(self) -> Iterator[tuple[Chunk, Computed]]:
+    def __iter__(self) -> Iterator[tuple[Chunk, Computed | bytes]]:
         if self._pool is None:
             for chunk in self._chunks:
-                yield chunk, compute(chunk, *self._rules)
+                yield chunk, compute(chunk, self._rules.definitions, self._rules.conventions)
             return
         while self._waiting:
             chunk, future = self._waiting.popleft()
-            computed = future.result()
+            outcome = future.result()
             self._fill()
-            yield chunk, computed
+            yield chunk, outcome
 
     def _fill(self) -> None:
         while self._pool is not None and len(self._waiting) < AHEAD:
@@ -94,7 +98,7 @@ class Computations:
         pickle.dump(message, self._child.stdin, pickle.HIGHEST_PROTOCOL)
         self._child.stdin.flush()
 
-    def _ask(self, chunk: Chunk) -> Computed:
+    def _ask(self, chunk: Chunk) -> Computed | bytes:
         assert self._child is not None and self._child.stdout is not None
         self._tell(chunk)
         answer = pickle.load(self._child.stdout)
@@ -103,14 +107,23 @@ class Computations:
         return answer
 
 
+def _answer(chunk: Chunk, rules: Rules, tables: Sequence[str]) -> Computed | bytes:
+    computed = compute(chunk, rules.definitions, rules.conventions)
+    if not tables:
+        return computed
+    with ready_rows.beside(tables) as connection:
+        write_computed(connection, chunk.sample_id, computed, rules, fresh=True)
+        return ready_rows.packed(connection)
+
+
 def _serve(requests: BinaryIO, answers: BinaryIO) -> None:
     """The child: rules first, then chunks until the parent closes the pipe."""
     try:
-        definitions, conventions = pickle.load(requests)
+        rules, tables = pickle.load(requests)
         while True:
             chunk = pickle.load(requests)
             try:
-                answer: Any = compute(chunk, definitions, conventions)
+                answer: Any = _answer(chunk, rules, tables)
             except Exception as error:  # handed to the parent, which raises it
                 answer = error
             pickle.dump(answer, answers, pickle.HIGHEST_PROTOCOL)

@@ -14,7 +14,7 @@ from registry import controlling
 from registry.batch_places import Place, place_of
 from registry.choice import Block, ColumnUse
 from registry.clock import now
-from registry.computing import WORTH_A_CHILD, Computations
+from registry.computing import CHILDS_CHUNK_SIZE, WORTH_A_CHILD, Computations
 from registry.errors import Problem
 from registry.importing_controls import (
     add_samples,
@@ -28,7 +28,7 @@ from registry.judging import read_rules
 from registry.pipeline import CHUNK_SIZE, Chunk
 from registry.quality.recognising import Spoken
 from registry.refresh import chunk_of, composed, write_fresh
-from registry.store import batches, bulk, loading, masters, stale
+from registry.store import batches, bulk, loading, masters, ready_rows, stale
 
 if TYPE_CHECKING:
     from registry.importing import ImportOptions
@@ -118,11 +118,13 @@ def store_results(
     rules = read_rules(connection)
     if controlled and rules.conventions.failed_control == "hold":
         fresh_ids = fresh_ids[:0]  # what is held back is known once the controls are judged: the drain computes all
-    chunks = _fresh_chunks(connection, table, sample_ids, repeat_no, fresh_ids)
     worth_a_child = len(fresh_ids) >= WORTH_A_CHILD
+    at_a_time = CHILDS_CHUNK_SIZE if worth_a_child else CHUNK_SIZE
+    chunks = _fresh_chunks(connection, table, sample_ids, repeat_no, fresh_ids, at_a_time)
+    tables = ready_rows.statements_of(connection)
     with (
         bulk.guarded(connection),
-        Computations(chunks, rules.definitions, rules.conventions, worth_a_child) as computations,
+        Computations(chunks, rules, worth_a_child, tables) as computations,
     ):
         batch_id, column_ids = _store_batch(
             connection, file, table, (data, compressed.result()) if within is None else None, place, options
@@ -137,11 +139,12 @@ def store_results(
             values, qualifiers = table.values[part], table.qualifiers[part]
             results += bulk.insert_results(connection, aliquot_ids[part], column_ids, values, qualifiers)
         done = 0
-        for chunk, computed in computations:
+        for chunk, outcome in computations:
             progress("computing", done, len(fresh_ids))
-            write_fresh(connection, chunk, computed, rules)
+            write_fresh(connection, chunk, outcome, rules)
             stale.clear(connection, chunk.sample_id.tolist())
             done += len(chunk)
+        ready_rows.let_go(connection)
     if controlled:
         controlling.assess(connection, batch_id)
     if place.supersedes is not None:
@@ -262,12 +265,17 @@ def _aliquot_kinds(
 
 
 def _fresh_chunks(
-    connection: Any, table: ResultTable, sample_ids: np.ndarray, repeat_no: np.ndarray, fresh_ids: np.ndarray
+    connection: Any,
+    table: ResultTable,
+    sample_ids: np.ndarray,
+    repeat_no: np.ndarray,
+    fresh_ids: np.ndarray,
+    at_a_time: int,
 ) -> Iterator[Chunk]:
     """The samples that have these results only, composed from the arrays in hand, a chunk at a time."""
     uses = [ColumnUse(column.analyte, column.unit, column.digestion) for column in table.columns]
-    for start in range(0, len(fresh_ids), CHUNK_SIZE):
-        ids = fresh_ids[start : start + CHUNK_SIZE]
+    for start in range(0, len(fresh_ids), at_a_time):
+        ids = fresh_ids[start : start + at_a_time]
         position = np.searchsorted(ids, sample_ids)
         inside = (position < len(ids)) & (ids[np.minimum(position, len(ids) - 1)] == sample_ids)
         blocks = []

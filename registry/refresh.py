@@ -12,7 +12,7 @@ from registry.clock import now
 from registry.controlling import held_columns, settle
 from registry.judging import Rules, read_rules
 from registry.pipeline import CHUNK_SIZE, METHOD_VERSION, Chunk, Computed, compute
-from registry.store import bulk, loading, quality_rows, sample_context, stale, stale_groups
+from registry.store import bulk, loading, quality_rows, ready_rows, sample_context, stale, stale_groups
 from registry.store.engine import Registry, reading, writing
 from registry.store.sheets import DERIVED_COLUMNS
 from registry.suites import refresh_groups
@@ -133,11 +133,17 @@ def recompute(
     bulk.log_verdict_changes(connection, before, bulk.verdicts_of(connection, chunk.sample_id), cause, now())
 
 
-def write_fresh(connection: Any, chunk: Chunk, computed: Computed, rules: Rules) -> None:
-    """Write composition, derived rows and verdicts of samples that had none: first verdicts are no changes."""
+def write_fresh(connection: Any, chunk: Chunk, outcome: Computed | bytes, rules: Rules) -> None:
+    """Write composition, derived rows and verdicts of samples that had none: first verdicts are no changes.
+
+    ``outcome``: what was computed, or the rows of it made ready in another process.
+    """
     ids = chunk.sample_id
     bulk.write_composition(connection, ids, chunk.values, chunk.qualifiers, chunk.digestions, fresh=True)
-    write_computed(connection, ids, computed, rules, fresh=True)
+    if isinstance(outcome, bytes):
+        ready_rows.take_over(connection, outcome)
+    else:
+        write_computed(connection, ids, outcome, rules, fresh=True)
     stale_groups.mark_of_samples(connection, ids)
 
 
