@@ -5,6 +5,7 @@ The generated analyses are invented; most are no rocks, and some are absurd on p
 
 from __future__ import annotations
 
+from dataclasses import replace
 from typing import Any
 
 import numpy as np
@@ -14,8 +15,10 @@ from hypothesis import strategies as st
 
 from registry.petrology.analytes import CHOSEN_COLUMNS, CHOSEN_INDEX, OXIDE_COLUMNS
 from registry.petrology.catalogue import CAUSES, METHODS, QUANTITIES, WARNINGS
+from registry.petrology.constants import FE2O3_FROM_FEO, molar_mass
 from registry.petrology.conventions import Conventions
 from registry.petrology.digestion import DIGESTIONS
+from registry.petrology.liquidus_choice import OLIVINE_MODELS
 from registry.pipeline import Chunk, Computed, compute, compute_in_parts, empty_chunk, is_missing
 from tests.strategies import OXIDE_TOPS
 
@@ -191,6 +194,74 @@ def test_parts_of_a_chunk_computed_one_by_one_equal_the_whole(monkeypatch: pytes
     assert [len(part) for part, _ in parts] == [20, 20, 20, 20, 20, 3]
     for start, (_, computed) in zip(range(0, 103, 20), parts, strict=True):
         assert_same(computed, whole, slice(start, start + 20))
+
+
+#: Invented analyses that raise what random ones do not: mineral formulas (as moles of oxide), carbonate, odd losses.
+MINERALS = [
+    {"MgO": 1.9, "FeO": 0.1, "SiO2": 1.0},
+    {"CaO": 0.9, "MgO": 1.0, "FeO": 0.1, "SiO2": 2.0},
+    {"CaO": 0.5, "Na2O": 0.25, "Al2O3": 0.75, "SiO2": 2.5},
+    {"Na2O": 1.5, "K2O": 0.5, "Al2O3": 2.0, "SiO2": 4.0},
+    {"FeO": 3.0, "Al2O3": 1.0, "SiO2": 3.0},
+    {"K2O": 0.5, "MgO": 3.0, "Al2O3": 0.5, "SiO2": 3.0},
+    {"K2O": 0.5, "Al2O3": 1.5, "SiO2": 3.0},
+    {"SiO2": 1.0},
+    {"FeO": 1.0, "TiO2": 1.0},
+    {"CaO": 10.0, "P2O5": 3.0},
+    {"ZrO2": 1.2, "SiO2": 1.0},
+]
+GRANITE = {"SiO2": 71.0, "TiO2": 0.3, "Al2O3": 14.3, "MgO": 0.7, "CaO": 1.8, "Na2O": 3.7, "K2O": 4.1, "FeO": 2.5}
+ODD = [
+    {},
+    {"co2_wt": 30.0},
+    {"loi_wt": -0.5},
+    {"loi_wt": -0.3, "feo_titrated_wt": 1.5},
+    {"la_ppm": 1e308, "yb_ppm": 1e-9},
+]
+
+
+def told_chunk() -> Chunk:
+    chunk = empty_chunk(len(MINERALS) + len(ODD))
+    chunk.digestions[:] = 1
+    weights = [{oxide: amount * molar_mass(oxide) for oxide, amount in mineral.items()} for mineral in MINERALS]
+    for row, analysis in enumerate([*weights, *([GRANITE] * len(ODD))]):
+        total = sum(analysis.values())
+        for oxide in ("SiO2", "TiO2", "Al2O3", "MgO", "CaO", "Na2O", "K2O", "P2O5", "ZrO2"):
+            chunk.values[CHOSEN_INDEX[f"{oxide.lower()}_wt"], row] = 100.0 * analysis.get(oxide, 0.0) / total
+        iron = FE2O3_FROM_FEO * 100.0 * analysis.get("FeO", 0.0) / total
+        chunk.values[CHOSEN_INDEX["fe2o3t_reported_wt"], row] = iron
+    for row, changes in enumerate(ODD, start=len(MINERALS)):
+        for column, value in changes.items():
+            chunk.values[CHOSEN_INDEX[column], row] = value
+    return chunk
+
+
+def test_every_warning_and_every_cause_is_met_by_some_analysis() -> None:
+    """A remark that nothing can raise, or a cause that nothing can have, is dead: take it out or add an analysis."""
+    raised, letters = np.zeros(len(WARNINGS), dtype=bool), set()
+    fixed = replace(DEFAULTS, iron_split="fixed_ratio")
+    computed = [compute(random_chunk(5_000, n, absent=0.05), [], each) for n, each in enumerate(CONVENTION_SETS)]
+    for each in (*computed, compute(told_chunk(), [], fixed)):
+        raised |= (each.warnings == ord("1")).any(axis=0)
+        letters |= {chr(letter) for letter in np.unique(each.causes)}
+
+    assert [warning.code for warning, was in zip(WARNINGS, raised, strict=True) if not was] == []
+    assert [code for code, (letter, _) in CAUSES.items() if letter not in letters] == ["not_yet_computed"]
+
+
+def test_average_granite_by_fusion_raises_only_what_its_log_leaves_open() -> None:
+    """Not every remark on everything: a whole fresh analysis [lemaitre1976b] has few."""
+    chunk = told_chunk().part(len(MINERALS), len(MINERALS) + 1)
+    chunk.values[CHOSEN_INDEX["loi_wt"]], chunk.values[CHOSEN_INDEX["mno_wt"]] = 0.7, 0.05
+    chunk.values[CHOSEN_INDEX["p2o5_wt"]] = 0.12
+    marks = compute(chunk, [], DEFAULTS).warnings[0]
+
+    assert {warning.code for warning, mark in zip(WARNINGS, marks, strict=True) if mark == ord("1")} == {
+        *(f"liquidus_{model}_outside_range" for model in OLIVINE_MODELS),  # acid: no olivine model applies
+        "iron_split_assumed_volcanic",
+        "diapir_radius_assumed",
+        "k2o_series_line_extended",
+    }
 
 
 def test_chunk_of_no_samples_gives_columns_of_no_length() -> None:

@@ -58,16 +58,17 @@ def measured_together(quantity: str, label: str, columns: tuple[str, ...]) -> tu
     """Remarks on a quantity of several measured columns: two digestions, a partial one, a censored member."""
     digestions = tuple(f"digestion:{column}" for column in columns)
     minimum = tuple(tuple(np.flatnonzero(CARRIES[:, CHOSEN_INDEX[column]] == MINIMUM).tolist()) for column in columns)
+    of_minimum = Warning(
+        f"{quantity}_partial_digestion",
+        quantity,
+        quantity,
+        f"{label} {{value}} rests on a digestion that leaves part of an element in the residue: that value is a "
+        "minimum, so the true figure may lie on either side; re-assay by fusion",
+        partial(_from_partial, partial_codes=minimum),
+        (quantity, *digestions),
+    )
     return (
-        Warning(
-            f"{quantity}_partial_digestion",
-            quantity,
-            quantity,
-            f"{label} {{value}} rests on a digestion that leaves part of an element in the residue: that value is a "
-            "minimum, so the true figure may lie on either side; re-assay by fusion",
-            partial(_from_partial, partial_codes=minimum),
-            (quantity, *digestions),
-        ),
+        *((of_minimum,) if any(minimum) else ()),  # alkalis and light rare earths go wholly into every solution
         Warning(
             f"{quantity}_two_digestions",
             quantity,
