@@ -17,9 +17,11 @@ from registry.petrology.intrusion_heat import theta_centre_interval
 from registry.petrology.minerals import fractionating_minerals
 from registry.petrology.outliers import COMPARED_OXIDES
 from registry.refresh import drain, refresh_registry
+from registry.store import stale_groups
 from registry.store.engine import Registry, reading, writing
 from registry.store.reading.outliers import disagreeing_samples, far_samples, suspected_swaps
 from registry.store.reading.suites import area_summaries, area_summary, intrusion_suite, sample_mass_change
+from registry.suites import refresh_groups
 
 OXIDES = {
     "SiO2": 50.5, "TiO2": 1.1, "Al2O3": 15.5, "FeOT": 9.6, "MnO": 0.17, "MgO": 8.6, "CaO": 11.0, "Na2O": 2.4,
@@ -272,6 +274,38 @@ def test_edit_from_a_debian_client_is_computed_by_the_next_refresh(
     assert waiting(registry) == [("intrusion", 1)]
     refresh_registry(registry)
     assert rows(registry, "SELECT theta_centre FROM intrusion_sheet")[0][0] > before
+
+
+@pytest.mark.parametrize(
+    ("columns", "cause"),
+    [
+        ("age_ma = 30", "shape_missing"),
+        ("shape = 'slab', age_ma = 30", "size_missing"),
+        ("shape = 'slab', half_width_m = 500", "age_missing"),
+        ("shape = 'slab', half_width_m = 500, age_ma = -1", "not_applicable"),
+        ("shape = 'cylinder', half_width_m = 500, age_ma = 0.01", None),
+    ],
+)
+def test_cooling_gives_a_cause_or_its_limits(district: Registry, columns: str, cause: str | None) -> None:
+    with writing(district) as connection:
+        connection.exec_driver_sql("UPDATE intrusion SET age_ma = NULL WHERE intrusion_id = 2")
+        connection.exec_driver_sql(f"UPDATE intrusion SET {columns} WHERE intrusion_id = 2")
+        drain(connection)
+    theta, _, quality, found = value(district, "cooling", "theta_centre", "Green stock")
+
+    assert found == cause and (theta is None) == (cause is not None)
+    if cause is None:
+        for said in ("water that moves cools 2 to 10", "10 % taken", "depth to the top not known", "an upper bound"):
+            assert said in quality
+
+
+def test_stale_groups_of_an_unknown_kind_are_refused(district: Registry) -> None:
+    with writing(district) as connection:
+        with pytest.raises(ValueError, match="'lake' is no group of samples; expected one of"):
+            stale_groups.pending(connection, "lake")
+        assert refresh_groups(connection) == 0
+        stale_groups.mark_all(connection)
+        assert refresh_groups(connection) == 4
 
 
 def test_new_results_compute_their_own_intrusion_only(district: Registry) -> None:

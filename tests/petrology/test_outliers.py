@@ -160,3 +160,9 @@ def test_squared_distances_of_normal_points_follow_chi_square() -> None:
 def test_squared_distances_beyond_the_table_are_refused() -> None:
     with pytest.raises(ValueError, match="11 coordinates; the table of chi-square holds 10"):
         squared_distances(np.zeros((200, 11)))
+
+
+def test_squared_distances_end_even_where_the_compact_half_keeps_changing(monkeypatch: pytest.MonkeyPatch) -> None:
+    monkeypatch.setattr("registry.petrology.outliers._STEPS", 1)
+
+    assert np.isfinite(distances_from_body(_body(90, 6)).distance).all()

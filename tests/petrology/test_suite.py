@@ -189,6 +189,8 @@ def test_suite_trend_narrow_or_small_suites_are_not_called_good() -> None:
     few = suite_trend([50.0, 60.0, 70.0, nan], [8.0, 4.0, 1.0, 2.0], [nan] * 4)
     assert (few.word, few.sentence()) == ("too_few_samples", "too few samples: 3 of the 4 needed")
     assert np.isnan(suite_trend([nan], [nan], [nan]).sio2_wt[0])
+    same = suite_trend([50.0, 53.0, 56.0, 60.0], [5.0] * 4, [nan] * 4)
+    assert same.sentence() == "poor: 4 samples, SiO2 50.0-60.0 wt%, MgO 5.0-5.0 wt%"
 
 
 @pytest.mark.parametrize(
