@@ -153,3 +153,30 @@ def lacking_of(
     lacking = [Lacking(name, definition.supply.get(name, ""), samples[name], points[name]) for name in samples]
     lacking.sort(key=lambda one: (-one.points, -one.samples, one.name))
     return tuple(lacking), tuple(causes.most_common())
+
+
+@dataclass(frozen=True)
+class Open:
+    """What opens most undecided verdicts of the registry: in how many verdicts, worth how many points, for whom."""
+
+    name: str
+    remedy: str
+    verdicts: int
+    points: int
+    targets: tuple[str, ...]
+
+
+def dearest_lacking(parts: Iterable[tuple[str, TargetDefinition, Sequence[str]]]) -> list[Open]:
+    """What the undecided verdicts lack over all targets, dearest first; ``parts``: (name, definition, packed reasons)."""
+    points: Counter[str] = Counter()
+    verdicts: Counter[str] = Counter()
+    named: dict[str, list[str]] = {}
+    remedies: dict[str, str] = {}
+    for target, definition, reasons in parts:
+        for one in lacking_of(definition, reasons)[0]:
+            points[one.name] += one.points
+            verdicts[one.name] += one.samples
+            named.setdefault(one.name, []).append(target)
+            remedies.setdefault(one.name, one.remedy)
+    found = [Open(name, remedies[name], verdicts[name], points[name], tuple(named[name])) for name in verdicts]
+    return sorted(found, key=lambda one: (-one.points, -one.verdicts, one.name))

@@ -24,6 +24,7 @@ from web import (
     samples,
     security,
     sites,
+    start,
     targets,
     wording,
     writing,
@@ -56,7 +57,7 @@ def create_app(registry_path_or_url: str, writable: bool = False, drafts: Any = 
     pictures.register(app)
     wording.register(app)
     errors.register(app)
-    for part in (samples, sample, diagrams, batches, targets, methods, intrusions, sites, editing):
+    for part in (start, samples, sample, diagrams, batches, targets, methods, intrusions, sites, editing):
         app.register_blueprint(part.blueprint)
     importing.register(app, drafts)
     return app

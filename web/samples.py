@@ -32,11 +32,6 @@ CONTROL_KINDS = ("reference_material", "blank", "duplicate")
 SHORT_WORDS = 24
 
 
-@blueprint.get("/")
-def start() -> Any:
-    return list_page()
-
-
 @blueprint.get("/samples")
 def list_page() -> Any:
     arguments = arguments_of_request()

@@ -12,8 +12,9 @@ from dataclasses import dataclass
 from typing import Any
 
 LEAST_HEIGHT, GREATEST_HEIGHT, PIXELS_PER_METRE = 320, 960, 2.0
-TICK_PIXELS, LABEL_PIXELS, MARK_PIXELS = 48, 13, 15
-LONGEST_LABEL = 19
+TICK_PIXELS, LABEL_PIXELS, LINE_PIXELS, MARK_PIXELS = 48, 13, 14, 15
+#: Letters of a label, and of each line of it on a telephone.
+LONGEST_LABEL, LONGEST_LINE = 23, 11
 #: Values that spread over more than this ratio are drawn on a logarithmic scale.
 LOGARITHMIC_FROM = 100.0
 #: Room above the first and below the last depth, so that marks are not cut.
@@ -47,7 +48,10 @@ STROKES = {"black": "black", "paper": "soft", "blue": "light"}
 
 @dataclass(frozen=True)
 class Block:
-    """One logged interval: where it stands, how it is filled, its label (empty where there is no room) and words."""
+    """One logged interval: where it stands, how it is filled, its label (empty where there is no room) and words.
+
+    ``lines`` are the label broken for a narrow window, each with its place.
+    """
 
     y: float
     height: float
@@ -55,6 +59,7 @@ class Block:
     colour: str
     label: str
     label_y: float
+    lines: tuple[tuple[float, str], ...]
     words: str
 
 
@@ -170,17 +175,38 @@ def _block(row: Mapping[str, Any], at: Any) -> Block:
     colour, pattern = rock_fill(row["lithology"])
     top, bottom = at(row["from_m"]), at(row["to_m"])
     name = row["lithology"] or "not named"
-    label = name if len(name) <= LONGEST_LABEL else name[: LONGEST_LABEL - 1].rstrip() + "…"
+    middle = (top + bottom) / 2 + 4
+    lines = _lines(name, max(1, int((bottom - top) // LINE_PIXELS))) if bottom - top >= LABEL_PIXELS else []
+    first = middle - LINE_PIXELS * (len(lines) - 1) / 2
     words = f"{row['from_m']:g} to {row['to_m']:g} m: {name}" + (f", {row['description']}" if row["description"] else "")
     return Block(
         y=top,
         height=round(bottom - top, 2),
         fill=f"url(#rock-{colour}-{pattern})" if pattern else "",
         colour=colour,
-        label=label if bottom - top >= LABEL_PIXELS else "",
-        label_y=round((top + bottom) / 2 + 4, 2),
+        label=_shortened(name, LONGEST_LABEL) if lines else "",
+        label_y=round(middle, 2),
+        lines=tuple((round(first + LINE_PIXELS * number, 2), line) for number, line in enumerate(lines)),
         words=words,
     )
+
+
+def _shortened(words: str, longest: int) -> str:
+    return words if len(words) <= longest else words[: longest - 1].rstrip() + "…"
+
+
+def _lines(name: str, most: int) -> list[str]:
+    """A name in at most three lines for a narrow window; what does not fit ends in an ellipsis."""
+    lines: list[str] = []
+    for word in name.split():
+        if lines and len(lines[-1]) + 1 + len(word) <= LONGEST_LINE:
+            lines[-1] += f" {word}"
+        else:
+            lines.append(word)
+    most = min(3, most)
+    if len(lines) > most:
+        lines[most - 1] = " ".join(lines[most - 1 :])
+    return [_shortened(line, LONGEST_LINE) for line in lines[:most]]
 
 
 def _track(place: int, column: Any, samples: Sequence[Mapping[str, Any]], at: Any) -> Track:
