@@ -17,6 +17,7 @@ from collections.abc import Iterator
 from pathlib import Path
 from typing import Any
 
+import openpyxl
 import pytest
 import sqlalchemy as sa
 
@@ -51,19 +52,24 @@ def view(registry: Path) -> Iterator[sqlite3.Connection]:
 
 def certificate_row(name: str, sample: str) -> dict[str, float | str]:
     """One line of a certificate read by hand: numbers, or the text as it stands; headings cut to the analyte."""
-    path = next(path for path in seed_demo.files() if path.name == f"results_{name}.csv")
-    if name == "K88":
-        text, delimiter, point = path.read_bytes().decode("cp1252"), ";", ","
+    path = next(path for path in seed_demo.files() if path.stem == f"results_{name}")
+    point = "."
+    if path.suffix == ".xlsx":
+        sheet = openpyxl.load_workbook(path)["Results"]
+        rows = [["" if cell is None else str(cell) for cell in row] for row in sheet.iter_rows(values_only=True)]
+        heading = rows[0]
     else:
-        text, delimiter, point = path.read_bytes().decode("utf-8-sig"), ",", "."
-    rows = list(csv.reader(io.StringIO(text), delimiter=delimiter))
+        encoding, delimiter = {"K88": ("cp1252", ";"), "T506": ("utf-16", "\t")}.get(name, ("utf-8-sig", ","))
+        rows = list(csv.reader(io.StringIO(path.read_bytes().decode(encoding)), delimiter=delimiter))
+        heading = next(row for row in rows if sum(cell.startswith("SiO2") for cell in row) == 1)
+        point = "," if name == "K88" else "."
     (line,) = [row for row in rows if row[0] == sample]
     found: dict[str, float | str] = {}
-    for heading, cell in zip(rows[0], line, strict=True):
+    for text, cell in zip(heading, line, strict=True):
         try:
-            found[heading.split(" ")[0]] = float(cell.replace(point, "."))
+            found[text.split(" ")[0]] = float(cell.replace(point, "."))
         except ValueError:
-            found[heading.split(" ")[0]] = cell
+            found[text.split(" ")[0]] = cell
     return found
 
 
@@ -75,9 +81,13 @@ def row_of(view: sqlite3.Connection, sheet: str, sample: str) -> sqlite3.Row:
 
 def test_import_stores_every_sample_and_site(view: sqlite3.Connection) -> None:
     kinds = dict(view.execute("SELECT sample_kind, count(*) FROM sample_sheet GROUP BY sample_kind").fetchall())
-    assert kinds == {"core": 97, "outcrop": 14, "reference_material": 10, "blank": 5, "duplicate": 5}
-    assert view.execute("SELECT count(*) FROM site").fetchone()[0] == 13
-    assert view.execute("SELECT count(*) FROM batch_sheet WHERE state = 'active'").fetchone()[0] == 2
+    assert kinds == {
+        "core": 548, "outcrop": 81, "float": 8, "reference_material": 31, "blank": 20, "duplicate": 19,
+    }  # fmt: skip
+    assert view.execute("SELECT count(*) FROM site").fetchone()[0] == 75
+    assert view.execute("SELECT count(*) FROM intrusion_sheet").fetchone()[0] == 8
+    batches = {row[0] for row in view.execute("SELECT batch FROM batch_sheet WHERE state = 'active'")}
+    assert batches == {"results_A417", "results_K88", "results_T506", "B2231", "results_W77", "results_Z19"}
 
 
 def test_import_leaves_nothing_stale(view: sqlite3.Connection) -> None:
@@ -85,18 +95,30 @@ def test_import_leaves_nothing_stale(view: sqlite3.Connection) -> None:
 
 
 def test_results_every_filled_cell_of_the_certificates_is_stored(view: sqlite3.Connection) -> None:
-    filled = 0
-    for name, heads, delimiter in (("A417", 1, ","), ("K88", 3, ";")):
-        path = next(path for path in seed_demo.files() if path.name == f"results_{name}.csv")
-        rows = list(csv.reader(io.StringIO(path.read_bytes().decode("cp1252")), delimiter=delimiter))
-        filled += sum(cell != "" for row in rows[heads:] for cell in row[1:])
-    assert view.execute("SELECT count(*) FROM result_sheet").fetchone()[0] == filled
+    filled = {}
+    for name, heads, encoding, delimiter in (
+        ("results_A417", 1, "utf-8", ","),
+        ("results_K88", 3, "cp1252", ";"),
+        ("results_T506", 2, "utf-16", "\t"),
+        ("B2231", 6, "utf-8", ","),
+    ):
+        path = next(path for path in seed_demo.files() if path.stem.endswith(name))
+        rows = list(csv.reader(io.StringIO(path.read_bytes().decode(encoding)), delimiter=delimiter))
+        filled[name] = sum(cell != "" for row in rows[heads:] for cell in row[1:])
+    sheet = openpyxl.load_workbook(next(path for path in seed_demo.files() if path.suffix == ".xlsx"))["Results"]
+    filled["results_W77"] = sum(
+        cell is not None for row in sheet.iter_rows(min_row=2, min_col=2, values_only=True) for cell in row
+    )
+    path = next(path for path in seed_demo.files() if path.stem == "results_Z19")
+    filled["results_Z19"] = sum(row["Result"] != "" for row in csv.DictReader(io.StringIO(path.read_text("utf-8"))))
+    assert dict(view.execute("SELECT batch, count(*) FROM result_sheet GROUP BY batch").fetchall()) == filled
 
 
 def test_controls_get_no_verdict(view: sqlite3.Connection) -> None:
     judged = {row[0] for row in view.execute("SELECT DISTINCT sample_id FROM verdict_sheet")}
     rocks = {
-        row[0] for row in view.execute("SELECT sample_id FROM sample_sheet WHERE sample_kind IN ('core', 'outcrop')")
+        row[0]
+        for row in view.execute("SELECT sample_id FROM sample_sheet WHERE sample_kind IN ('core', 'outcrop', 'float')")
     }
     assert judged == rocks
 
@@ -124,6 +146,57 @@ def test_composition_cells_of_the_decimal_comma_layout_come_through(view: sqlite
     assert cells["fe2o3t_wt"] == reported["Fe2O3tot"]
     assert (cells["th_ppm"], cells["u_ppm"]) == (reported["Th"], reported["U"])
     assert cells["feo_titrated_wt"] is None and cells["s_wt"] is None and cells["sn_ppm"] is None
+
+
+def test_composition_cells_of_tabs_and_utf_16_come_through(view: sqlite3.Connection) -> None:
+    """Cr2O3 in per cent and precious metals in ppb become ppm."""
+    reported = certificate_row("T506", "MD001-547")
+    cells = row_of(view, "composition_sheet", "MD001-547")
+    assert (cells["mgo_wt"], cells["s_wt"], cells["ni_ppm"]) == (reported["MgO"], reported["S"], reported["Ni"])
+    assert cells["cr2o3_wt"] == reported["Cr2O3"]
+    assert cells["pt_ppm"] == pytest.approx(float(reported["Pt"]) / 1e3, rel=1e-12)
+    assert cells["sn_ppm"] is None and cells["feo_titrated_wt"] is None
+
+
+def test_composition_cells_of_rows_in_odd_order_come_through(view: sqlite3.Connection) -> None:
+    reported = certificate_row("B2231", "CD001-603")
+    cells = row_of(view, "composition_sheet", "CD001-603")
+    for analyte in ("Li", "Sn", "W", "Cs", "Rb"):
+        assert cells[f"{analyte.lower()}_ppm"] == reported[analyte]
+    assert (cells["f_wt"], cells["sio2_wt"]) == (reported["F"], reported["SiO2"])
+    assert (cells["fe2o3t_wt"], cells["feo_titrated_wt"]) == (reported["Fe2O3"], reported["FeO"])
+    methods = dict(
+        view.execute("SELECT analyte, digestion FROM result_sheet WHERE sample_code = 'CD001-603'").fetchall()
+    )
+    assert (methods["Li"], methods["Sn"], methods["SiO2"]) == ("four_acid", "fusion", "xrf")
+
+
+def test_composition_cells_of_the_workbook_come_through(view: sqlite3.Connection) -> None:
+    reported = certificate_row("W77", "DD001-1003")
+    cells = row_of(view, "composition_sheet", "DD001-1003")
+    assert (cells["sio2_wt"], cells["loi_wt"]) == (reported["SiO2"], reported["LOI"])
+    assert (cells["rb_ppm"], cells["li_ppm"]) == (reported["Rb"], reported["Li"])
+
+
+def test_composition_cells_of_one_line_a_result_come_through(view: sqlite3.Connection) -> None:
+    """Elements in per cent become oxides: Al2O3 = 1.8895 Al, MgO = 1.6583 Mg (IUPAC/CIAAW abridged masses)."""
+    path = next(path for path in seed_demo.files() if path.stem == "results_Z19")
+    reported = {
+        row["Analyte"]: row["Result"]
+        for row in csv.DictReader(io.StringIO(path.read_text("utf-8")))
+        if row["Sample"] == "MD003-803"
+    }
+    results = {
+        row[0]: row[1:]
+        for row in view.execute(
+            "SELECT analyte, value, unit, digestion FROM result_sheet WHERE sample_code = 'MD003-803'"
+        )
+    }
+    assert results["Mg"] == (float(reported["Mg"]), "wt%", "four_acid")
+    assert results["Ni"] == (float(reported["Ni"]), "ppm", "four_acid")
+    cells = row_of(view, "composition_sheet", "MD003-803")
+    assert cells["mgo_wt"] == pytest.approx(float(reported["Mg"]) * 40.304 / 24.305, rel=1e-5)
+    assert cells["sio2_wt"] is None and cells["ni_ppm"] == float(reported["Ni"])
 
 
 def test_total_sums_oxides_with_all_iron_ferric_and_loi(view: sqlite3.Connection) -> None:
@@ -185,41 +258,6 @@ def test_altered_core_is_not_judged_by_its_lost_magnetite(view: sqlite3.Connecti
     )
     assert len(series) >= 5
     assert "ilmenite" not in series.values()
-
-
-def mean_scores(view: sqlite3.Connection, target: str) -> list[tuple[str, float]]:
-    return [
-        (row[0], row[1])
-        for row in view.execute(
-            "SELECT s.intrusion, avg(v.score_min) FROM verdict_sheet AS v JOIN sample_sheet AS s USING (sample_id)"
-            " WHERE v.target = ? AND s.intrusion IS NOT NULL GROUP BY s.intrusion ORDER BY 2 DESC",
-            (target,),
-        )
-    ]
-
-
-def test_fertile_stock_leads_for_porphyry_copper(view: sqlite3.Connection) -> None:
-    ranked = mean_scores(view, "porphyry_copper")
-    assert ranked[0][0] == "Kestrin stock"
-    favourable = dict(
-        view.execute(
-            "SELECT s.intrusion, count(*) FROM verdict_sheet AS v JOIN sample_sheet AS s USING (sample_id)"
-            " WHERE v.target = 'porphyry_copper' AND v.verdict = 'favourable' GROUP BY s.intrusion"
-        ).fetchall()
-    )
-    assert favourable.get("Kestrin stock", 0) > sum(n for name, n in favourable.items() if name != "Kestrin stock")
-
-
-def test_hot_granite_leads_for_radiogenic_heat(view: sqlite3.Connection) -> None:
-    ranked = mean_scores(view, "radiogenic_heat")
-    assert ranked[0][0] == "Ostrevel granite"
-    verdicts = dict(
-        view.execute(
-            "SELECT s.intrusion, count(*) FROM verdict_sheet AS v JOIN sample_sheet AS s USING (sample_id)"
-            " WHERE v.target = 'radiogenic_heat' AND v.verdict = 'favourable' GROUP BY s.intrusion"
-        ).fetchall()
-    )
-    assert set(verdicts) == {"Ostrevel granite"}
 
 
 def test_core_without_traces_names_what_is_missing(view: sqlite3.Connection) -> None:
