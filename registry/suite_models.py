@@ -249,7 +249,10 @@ def _mass_balance(suite: Suite, parent: int, daughter: int | None) -> list[Row]:
         return [Row(model, "liquid_fraction", np.nan, "1", None, "missing_input")]
     first, last = ({oxide: value for oxide, value in rock.items() if oxide not in missing} for rock in rocks)
     phases = fractionating_minerals(first["sio2_wt"], float(mg_numbers.mean()))
-    fit = balance_fractionation(first, last, phases)
+    try:
+        fit = balance_fractionation(first, last, phases)
+    except ArithmeticError:  # one odd pair of rocks must not stop an import
+        return [Row(model, "liquid_fraction", np.nan, "1", None, "least_squares_did_not_end")]
     if not fit.decided:
         return [Row(model, "liquid_fraction", np.nan, "1", None, "minerals_alone_make_the_daughter")]
     used = ", ".join(name for name, share in fit.minerals.items() if share > 0.0) or "none"

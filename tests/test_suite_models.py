@@ -121,6 +121,12 @@ def test_granite_that_minerals_alone_make_has_no_mass_balance() -> None:
     assert row(of, "mass_balance", "liquid_fraction").cause == "minerals_alone_make_the_daughter"
 
 
+def test_mass_balance_that_does_not_end_is_a_cause_and_no_fault(monkeypatch: pytest.MonkeyPatch) -> None:
+    monkeypatch.setattr("registry.petrology.mass_balance._ROUNDS_PER_COLUMN", 0)
+
+    assert row(suite(), "mass_balance", "liquid_fraction").cause == "least_squares_did_not_end"
+
+
 def test_mass_balance_leaves_out_an_oxide_that_one_rock_lacks() -> None:
     without = suite(p2o5_vf_wt=np.full(N, np.nan))
     said = row(without, "mass_balance", "liquid_fraction").quality
