@@ -19,7 +19,8 @@ Label = tuple[str, float, float]
 
 @dataclass(frozen=True)
 class Axis:
-    """A quantity or a sum of them along one side. ``low`` and ``high`` None: fitted to the points."""
+    """A quantity or a sum of them along one side. ``low`` and ``high`` None: fitted to the points, ``high`` at least
+    up to ``reach``."""
 
     columns: tuple[str, ...]
     label: str
@@ -27,6 +28,7 @@ class Axis:
     low: float | None = None
     high: float | None = None
     is_log: bool = False
+    reach: float | None = None
 
     @property
     def words(self) -> str:
@@ -103,10 +105,11 @@ _TAS_SILICA = replace(_SILICA, low=37.0, high=80.0)
 _GRANITES = (
     "For granites with more than 5 % quartz. Granites after a collision lie in all fields, as the source itself says."
 )
+_SR_Y = Axis(("sr_y",), "Sr/Y", "", 0.0, reach=100.0)
 _SR_Y_LIMITS = (
     Layer(
-        (((0.0, 20.0), (18.0, 20.0), (18.0, 300.0)),),
-        (("adakite-like", 9.0, 225.0),),
+        (((0.0, 20.0), (18.0, 20.0), (18.0, 1000.0)),),
+        (("adakite-like", 9.0, 92.0),),
         "box of adakite-like rocks: Sr/Y from 20, Y up to 18 ppm",
         REFERENCES["richards2007"] + " The same paper doubts what the box says of origin and ore.",
         "from memory",
@@ -191,11 +194,11 @@ _ALL = (
     _granite("granite_ta_yb", "Ta and Yb", _ppm("yb_ppm", low=0.1, high=100), _ppm("ta_ppm", low=0.05, high=50)),
     Diagram(
         "sr_y", "Sr/Y against Y", "Sr/Y and Y", "Suites", Axis(("y_ppm",), "Y", "ppm", 0.0, 60.0),
-        Axis(("sr_y",), "Sr/Y", "", 0.0, 250.0), _SR_Y_LIMITS, _SR_Y_NOTE,
+        _SR_Y, _SR_Y_LIMITS, _SR_Y_NOTE,
     ),
     Diagram(
         "sr_y_sio2", "Sr/Y against silica", "Sr/Y and SiO2", "Suites", replace(_SILICA, low=45.0, high=80.0),
-        Axis(("sr_y",), "Sr/Y", "", 0.0, 250.0),
+        _SR_Y,
         (replace(_SR_Y_LIMITS[1], lines=(((45.0, 35.0), (80.0, 35.0)),)),), _SR_Y_NOTE,
     ),
     *_HARKER,

@@ -104,6 +104,8 @@ def _ends(axis: Axis, found: Floats, whole: bool) -> tuple[float, float]:
             fitted = (max(least - margin, 0.0) if least >= 0.0 else least - margin), most + margin
         low = fitted[0] if low is None else min(low, fitted[0] if whole else low)
         high = fitted[1] if high is None else max(high, fitted[1] if whole else high)
+    if axis.high is None and axis.reach is not None:
+        high = axis.reach if high is None else max(high, axis.reach)
     return (0.0 if low is None else low), (1.0 if high is None else high)
 
 

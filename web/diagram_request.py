@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Mapping, Sequence
+from collections.abc import Collection, Mapping, Sequence
 from typing import Any
 
 from registry.diagrams import ALIASES, DIAGRAMS, FIRST, PANELS, Diagram, Panels
@@ -12,6 +12,17 @@ from web import wording
 from web.sentence import address
 
 MOST_MARKED = 20
+#: Diagrams that the page of a sample leads to.
+BESIDE_A_SAMPLE = (
+    "tas_plutonic",
+    "tas_volcanic",
+    "k2o_sio2",
+    "afm",
+    "alumina",
+    "granite_rb_y_nb",
+    "sr_y",
+    "harker_mgo",
+)
 ENDS = ("x_from", "x_to", "y_from", "y_to")
 OWN = ("diagram", "by", "mark", "whole", "table", *ENDS)
 GROUP_WORDS = {
@@ -102,3 +113,16 @@ def picker(asked: Filter, choice: Choice) -> list[tuple[str, list[dict[str, Any]
                  "current": drawn.key == choice.key}  # fmt: skip
         groups.setdefault(drawn.group, []).append(entry)
     return list(groups.items())
+
+
+def where_it_plots(code: str, intrusion: str | None, known: Collection[str]) -> list[tuple[str, str]]:
+    """(words, address) of the diagrams that can show a sample whose ``known`` columns have values."""
+    among = [("intrusion", intrusion)] if intrusion else []
+    return [
+        (
+            wording.formula(diagram.short),
+            address([*among, ("diagram", diagram.key), ("mark", code)], "diagrams.page"),
+        )
+        for diagram in (DIAGRAMS[key] for key in BESIDE_A_SAMPLE)
+        if all(column in known for column in diagram.columns)
+    ]

@@ -14,6 +14,7 @@ from registry.store.reading import methods as methods_reading
 from registry.store.reading import sample as reading
 from registry.store.reading.columns import Columns
 from web import numbers
+from web.diagram_request import where_it_plots
 from web.errors import Missing
 from web.pictures import norm_segments
 from web.reading import offered_columns, registry_connection
@@ -65,6 +66,7 @@ def page(code: str) -> Any:
         iron=_iron(sheets["composition_sheet"]),
         composition_remarks=[text for name, texts in remarks.items() if name not in quantities for text in texts],
         remarks=remarks,
+        plots=where_it_plots(found["code"], found["intrusion"], _known(sheets)),
         norm=norm,
         segments=norm_segments({name[:-3]: norm[name] for name in norm if name.endswith("_wt")}),
         norm_causes=_causes_of(causes, ("norm_total_wt", "q_wt")),
@@ -75,6 +77,10 @@ def page(code: str) -> Any:
         results=_by_batch(results),
         changes=changes,
     )
+
+
+def _known(sheets: Mapping[str, Mapping[str, Any]]) -> set[str]:
+    return {name for row in sheets.values() for name, value in row.items() if value is not None}
 
 
 @blueprint.get("/reported/<path:code>")

@@ -99,7 +99,7 @@ def diagram_rows(
         bound["shown_target"] = group.target
     where = f" WHERE {' AND '.join(clauses)}" if clauses else ""
     statement = f"SELECT {', '.join(parts)} FROM {joins}{where} ORDER BY sample.sample_id LIMIT {MOST_SAMPLES}"
-    return [tuple(row) for row in connection.execute(text(statement), bound)]
+    return list(connection.execute(text(statement), bound).all())
 
 
 def point_details(connection: Connection, keys: Sequence[int]) -> dict[int, dict[str, Any]]:
