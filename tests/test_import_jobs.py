@@ -1,0 +1,281 @@
+"""Imports in the background: one at a time, with progress that outlives the page and the process. Data are invented."""
+
+from __future__ import annotations
+
+import json
+import os
+import threading
+import time
+from collections.abc import Callable, Iterator
+from pathlib import Path
+from typing import Any
+
+import pytest
+
+from registry import import_jobs
+from registry.errors import NotFound, UsageError
+from registry.import_drafts import Draft, DraftFolder, safe_name, state_folder
+from registry.import_jobs import ImportJobs
+from registry.importing import ImportOptions, import_files
+from registry.intake import ColumnChoice, Recipe, read_file
+from registry.intake_choices import describe_reading, use_words
+from registry.reading_recipes import find_recipe, forget_recipe, list_recipes, proposed_names, save_recipe
+from registry.store.engine import Registry, reading, writing
+
+TEXT = "Sample,SiO2 XRF (%),Zr XRF (ppm)\nA,60.1,150\nB,61.2,160\nA,60.2,151\n"
+
+
+def written(text: str) -> Callable[[Path], Any]:
+    return lambda path: path.write_text(text)
+
+
+@pytest.fixture
+def jobs(founded_registry: Registry, tmp_path: Path) -> Iterator[ImportJobs]:
+    yield ImportJobs(founded_registry, DraftFolder(tmp_path / "drafts"))
+
+
+def draft_of(jobs: ImportJobs, text: str = TEXT, name: str = "r.csv", **options: Any) -> Draft:
+    draft = jobs.folder.create([(name, written(text))])
+    draft.options = options
+    return draft
+
+
+def ended(jobs: ImportJobs, draft: Draft, seconds: float = 60) -> Draft:
+    found = jobs.wait(draft.draft_id, seconds)
+    assert found is not None and not found.under_way
+    return found
+
+
+def batches(registry: Registry) -> list[str]:
+    with reading(registry) as connection:
+        return [row[0] for row in connection.exec_driver_sql("SELECT code FROM batch ORDER BY batch_id")]
+
+
+def test_job_looks_first_and_stores_then(jobs: ImportJobs) -> None:
+    draft = draft_of(jobs, create_samples=True)
+    assert jobs.look(draft)
+    looked = ended(jobs, draft)
+    assert (looked.state, batches(jobs.registry)) == ("read", [])
+    assert looked.report is not None and looked.report["dry_run"]
+    assert looked.files[0].looked is not None
+    assert [column["analyte"] for column in looked.files[0].looked["columns"]] == ["SiO2", "Zr"]
+
+    jobs.store(looked)
+    stored = ended(jobs, looked)
+    assert (stored.state, batches(jobs.registry)) == ("done", ["r"])
+    assert stored.report is not None
+    assert stored.report["files"][0]["results"]["aliquots"] == 3
+    assert not jobs.folder.paths(stored)[0].exists(), "the registry holds the file now"
+    assert jobs.folder.load(draft.draft_id) == stored
+
+
+def test_job_with_problems_lists_them_and_stores_nothing(jobs: ImportJobs) -> None:
+    draft = draft_of(jobs)
+    jobs.store(draft)
+    refused = ended(jobs, draft)
+    assert refused.state == "refused"
+    assert [problem["found"] for problem in refused.problems] == ["A", "B", "A"]
+    assert batches(jobs.registry) == []
+
+
+def test_job_fault_of_the_program_is_a_sentence_and_the_next_job_runs(
+    jobs: ImportJobs, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    def broken(*_arguments: Any, **_more: Any) -> None:
+        raise RuntimeError("planted")
+
+    monkeypatch.setattr(import_jobs, "import_files", broken)
+    draft = draft_of(jobs)
+    jobs.look(draft)
+    failed = ended(jobs, draft)
+    assert failed.state == "failed"
+    assert "a fault in the program and not in your data" in failed.sentence and "planted" not in failed.sentence
+    monkeypatch.undo()
+    failed.options = {"create_samples": True}
+    assert jobs.look(failed)
+    assert ended(jobs, failed).state == "read"
+
+
+def test_job_wrong_use_is_a_sentence(jobs: ImportJobs) -> None:
+    draft = jobs.folder.create([("a.csv", written(TEXT)), ("b.csv", written(TEXT.replace("150", "155")))])
+    draft.options = {"batch": "X", "create_samples": True}
+    jobs.store(draft)
+    failed = ended(jobs, draft)
+    assert failed.state == "failed" and "names one batch" in failed.sentence
+
+
+def test_job_waits_for_another_writer_and_says_what_holds_the_registry(jobs: ImportJobs) -> None:
+    draft = draft_of(jobs, create_samples=True)
+    with writing(jobs.registry, what="an invented upheaval"):
+        jobs.store(draft)
+        until = time.monotonic() + 20
+        while "invented upheaval" not in draft.sentence and time.monotonic() < until:
+            time.sleep(0.05)
+        assert draft.state == "waiting"
+        assert "is held by an invented upheaval since" in draft.sentence
+        with reading(jobs.registry) as connection:
+            assert connection.exec_driver_sql("SELECT count(*) FROM sample").scalar() == 0
+    assert ended(jobs, draft).state == "done"
+
+
+def test_second_job_waits_and_names_the_first(jobs: ImportJobs, monkeypatch: pytest.MonkeyPatch) -> None:
+    go_on = threading.Event()
+    real = import_jobs.import_files
+
+    def slow(*arguments: Any, **more: Any) -> Any:
+        more["progress"]("storing", 8_192, 100_000)
+        assert go_on.wait(60)
+        return real(*arguments, **more)
+
+    monkeypatch.setattr(import_jobs, "import_files", slow)
+    first, second = draft_of(jobs, create_samples=True), draft_of(jobs, TEXT.replace("150", "9"), "second.csv")
+    jobs.store(first)
+    jobs.look(second)
+    assert not jobs.look(second), "it is under way already"
+    saved: dict[str, Any] = {}
+    until = time.monotonic() + 20
+    while saved.get("state") != "storing" and time.monotonic() < until:
+        time.sleep(0.01)
+        saved = json.loads((jobs.folder.place / first.draft_id / "draft.json").read_text())
+    assert (first.state, first.done, first.total) == ("storing", 8_192, 100_000)
+    assert first.sentence == "Storing: 8,192 of 100,000 lines of results."
+    assert "Waits until the import of r.csv" in jobs.waits_for(second)
+    assert (saved["state"], saved["done"]) == ("storing", 8_192), "a reload finds the progress in the side file"
+    go_on.set()
+    assert ended(jobs, first).state == "done"
+    assert ended(jobs, second).state == "read", "its samples are there now"
+
+
+def test_work_of_a_stopped_program_is_told_as_failed(jobs: ImportJobs) -> None:
+    draft = draft_of(jobs)
+    draft.state = "storing"
+    jobs.folder.save(draft)
+    found = jobs.find(draft.draft_id)
+    assert found is not None
+    assert found.state == "failed" and "stored whole or not at all" in found.sentence
+    assert jobs.all()[0].state == "failed"
+
+
+def test_work_of_another_living_program_is_left_alone(jobs: ImportJobs, monkeypatch: pytest.MonkeyPatch) -> None:
+    draft = draft_of(jobs)
+    draft.state = "storing"
+    monkeypatch.setattr(os, "getpid", lambda: 1)  # the first process lives as long as the machine
+    jobs.folder.save(draft)
+    monkeypatch.undo()
+    found = jobs.find(draft.draft_id)
+    assert found is not None and found.state == "storing"
+
+
+def test_drafts_are_deleted_after_a_day(jobs: ImportJobs) -> None:
+    old, new = draft_of(jobs), draft_of(jobs)
+    mark = jobs.folder.place / old.draft_id / "draft.json"
+    os.utime(mark, (time.time() - 25 * 3600,) * 2)
+    assert jobs.folder.clean() == 1
+    assert jobs.find(old.draft_id) is None
+    assert jobs.find(new.draft_id) is not None
+
+
+@pytest.mark.parametrize("name", ["../escape", "", "a" * 15, "a" * 17, "AAAAAAAA/AAAAAAA"])
+def test_draft_id_that_is_none_finds_nothing(jobs: ImportJobs, name: str) -> None:
+    draft_of(jobs)
+    assert jobs.find(name) is None
+    jobs.folder.delete(name)
+    assert len(jobs.all()) == 1
+
+
+@pytest.mark.parametrize(
+    ("sent", "kept"),
+    [
+        ("plain.csv", "plain.csv"),
+        ("C:\\data\\a b.csv", "a b.csv"),
+        ("/etc/passwd", "passwd"),
+        ("..", "file"),
+        ("", "file"),
+        ("tab\there\x00.csv", "tabhere.csv"),
+        ("é" * 200 + ".csv", "é" * 116 + ".csv"),
+    ],
+)
+def test_file_name_is_freed_of_folders_and_kept_short(sent: str, kept: str) -> None:
+    assert safe_name(sent) == kept
+    assert len(safe_name(sent).encode()) <= 240
+
+
+def test_state_folder_follows_the_standard_and_the_registry(monkeypatch: pytest.MonkeyPatch, tmp_path: Path) -> None:
+    """XDG Base Directory Specification 0.8: XDG_STATE_HOME, else ~/.local/state."""
+    monkeypatch.setenv("XDG_STATE_HOME", str(tmp_path))
+    one, other = state_folder("sqlite:///a"), state_folder("sqlite:///b")
+    assert one != other and one.is_relative_to(tmp_path / "plutonbook")
+    monkeypatch.delenv("XDG_STATE_HOME")
+    monkeypatch.setenv("HOME", str(tmp_path))
+    assert state_folder("sqlite:///a").is_relative_to(tmp_path / ".local" / "state")
+    assert not (tmp_path / "plutonbook").exists(), "nothing is made before a file comes"
+
+
+def test_import_reports_progress_in_order(founded_registry: Registry, tmp_path: Path) -> None:
+    path = tmp_path / "r.csv"
+    path.write_text(TEXT)
+    told: list[tuple[str, int, int]] = []
+    seen: list[str | None] = []
+    import_files(
+        founded_registry,
+        [path],
+        ImportOptions(create_samples=True),
+        progress=lambda *what: told.append(what),
+        on_read=lambda _path, reading: seen.append(reading.kind),
+    )
+    assert seen == ["results"]
+    assert told[0] == ("reading", 0, 1)
+    assert ("storing", 0, 3) in told and ("computing", 0, 2) in told
+    assert [what for what, _, _ in told] == sorted(
+        (what for what, _, _ in told), key=["reading", "storing", "computing"].index
+    )
+    assert all(0 <= done <= total for _, done, total in told)
+
+
+def test_use_of_a_column_names_place_conversion_and_what_the_digestion_makes_of_it() -> None:
+    """Cr from Cr2O3: 2 x 51.9961 / 151.9904 (CIAAW 2021 atomic weights, recomputed) = 0.6842."""
+    assert use_words("MgO", "wt%", "xrf", True) == "mgo_wt"
+    assert use_words("MgO", "ppm", "xrf", True).endswith("0.0001")
+    assert use_words("Zr", "ppm", "four_acid", True) == "zr_ppm; a minimum by four-acid digestion"
+    assert use_words("SiO2", "wt%", "aqua_regia", True) == "not used: aqua regia does not carry it"
+    assert use_words("Hg", "ppb", "aqua_regia", False) == "kept as a result only"
+    assert use_words("Zr", "", "xrf", True) == ""
+
+
+def test_description_of_a_reading_is_plain_json() -> None:
+    described = describe_reading(read_file("r.csv", TEXT.encode()))
+    assert json.loads(json.dumps(described)) == described
+    assert described["rows"] == 3
+    assert described["sample_header"] == "Sample"
+    assert not any(text.startswith("column 'SiO2") for text in described["understood"])
+
+
+RECIPE = Recipe(shape=("Sample", "Au"), columns={"Au": ColumnChoice(unit="ppb", digestion="fire_assay")})
+
+
+def test_saved_reading_is_found_by_name_and_by_shape(founded_registry: Registry) -> None:
+    assert not save_recipe(founded_registry, " Invented  lab ", RECIPE)
+    found = find_recipe(founded_registry, "Invented lab")
+    assert (found.columns, found.name) == (RECIPE.columns, "Invented lab")
+    assert proposed_names(founded_registry, ("Sample", "Au")) == ["Invented lab"]
+    assert proposed_names(founded_registry, ("Au", "Sample")) == proposed_names(founded_registry, ()) == []
+    assert save_recipe(founded_registry, "Invented lab", RECIPE)
+    save_recipe(founded_registry, "a newer one", RECIPE)
+    assert proposed_names(founded_registry, ("Sample", "Au")) == ["a newer one", "Invented lab"]
+    assert [row["name"] for row in list_recipes(founded_registry)] == ["Invented lab", "a newer one"]
+    forget_recipe(founded_registry, "Invented lab")
+    with pytest.raises(NotFound, match="no saved reading 'Invented lab'"):
+        find_recipe(founded_registry, "Invented lab")
+    with pytest.raises(NotFound, match="no saved reading 'Invented lab'"):
+        forget_recipe(founded_registry, "Invented lab")
+
+
+@pytest.mark.parametrize("name", ["", "  ", "x" * 81, "bell\x07"])
+def test_saved_reading_needs_a_printable_name(founded_registry: Registry, name: str) -> None:
+    with pytest.raises(UsageError, match="1 to 80 printable characters"):
+        save_recipe(founded_registry, name, RECIPE)
+
+
+def test_saved_reading_needs_a_shape(founded_registry: Registry) -> None:
+    with pytest.raises(UsageError, match="knows no headings"):
+        save_recipe(founded_registry, "shapeless", Recipe())

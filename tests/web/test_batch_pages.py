@@ -1,0 +1,140 @@
+"""Batches as pages: states, controls, file, digestions, withdrawing and restoring. All data are invented."""
+
+from __future__ import annotations
+
+import sqlite3
+from collections.abc import Iterator
+from pathlib import Path
+from typing import Any
+
+import pytest
+
+from tests.web.import_site import MAJORS, Site, form_fields
+from web import control_charts
+
+
+@pytest.fixture
+def site(founded_registry_file: Path, tmp_path: Path) -> Iterator[Site]:
+    made = Site(founded_registry_file, tmp_path)
+    yield made
+    made.close()
+
+
+def rows(site: Site, query: str) -> list[tuple[Any, ...]]:
+    connection = sqlite3.connect(site.path)
+    found = connection.execute(query).fetchall()
+    connection.close()
+    return found
+
+
+def test_batch_page_gives_the_file_back_byte_for_byte(site: Site) -> None:
+    page = site.client.get("/batches/majors").text
+    assert 'href="/batch/file/majors"' in page
+    answer = site.client.get("/batch/file/majors")
+    assert answer.data == MAJORS.encode()
+    assert answer.headers["Content-Disposition"] == "attachment; filename=majors.csv"
+    assert answer.headers["X-Content-Type-Options"] == "nosniff"
+    missing = site.client.get("/batch/file/none")
+    assert missing.status_code == 404 and "no batch" in missing.text
+
+
+def test_batch_withdrawn_and_restored_tells_first_what_it_touches(site: Site) -> None:
+    verdicts = rows(site, "SELECT sample_id, target_id, verdict FROM verdict ORDER BY 1, 2")
+    page = site.client.get("/batch/withdraw/majors").text
+    assert "<strong>3 samples</strong> are computed anew" in page
+    assert "nothing is changed yet" in page
+    assert rows(site, "SELECT state FROM batch") == [("active",)]
+    assert rows(site, "SELECT count(*) FROM verdict_change") == [(0,)]
+
+    answer = site.client.post("/batch/withdraw/majors", data=form_fields(page))
+    assert answer.status_code == 303
+    page = site.client.get(answer.headers["Location"]).text
+    assert "Batch majors is withdrawn: 3 samples recomputed" in page
+    assert "its results are kept and not used" in page
+    changed = rows(site, "SELECT count(*) FROM verdict_change")[0][0]
+    assert f"{changed} verdict" in page
+    assert rows(site, "SELECT sio2_wt FROM composition") == [(None,)] * 3
+    assert "is withdrawn already" in site.client.get("/batch/withdraw/majors").text
+
+    page = site.client.get("/batch/restore/majors").text
+    site.client.post("/batch/restore/majors", data=form_fields(page))
+    assert rows(site, "SELECT state FROM batch") == [("active",)]
+    assert rows(site, "SELECT sample_id, target_id, verdict FROM verdict ORDER BY 1, 2") == verdicts
+
+
+def test_batch_digestions_are_changed_after_confirmation(site: Site) -> None:
+    """Aqua regia does not carry SiO2 (methods of digestion): stating it takes silica out of the composition."""
+    form = form_fields(site.client.get("/batches/majors").text)
+    position = rows(site, "SELECT position FROM batch_column WHERE analyte = 'SiO2'")[0][0]
+    form.setlist(f"digestion-{position}", ["aqua_regia"])
+    page = site.client.post("/batch/digestions/majors", data=form).text
+    assert "1 column gets another digestion" in page
+    assert rows(site, "SELECT digestion FROM batch_column WHERE analyte = 'SiO2'") == [("xrf",)]
+    confirm = form_fields(page)
+    confirm.setlist("do", ["confirmed"])
+    answer = site.client.post("/batch/digestions/majors", data=confirm)
+    assert answer.status_code == 303
+    assert rows(site, "SELECT digestion FROM batch_column WHERE analyte = 'SiO2'") == [("aqua_regia",)]
+    assert rows(site, "SELECT sio2_wt FROM composition") == [(None,)] * 3
+    assert rows(site, "SELECT count(*) FROM stale") == [(0,)]
+
+
+def test_batch_digestion_that_is_unknown_or_unchanged_says_so(site: Site) -> None:
+    form = form_fields(site.client.get("/batches/majors").text)
+    answer = site.client.post("/batch/digestions/majors", data=form, follow_redirects=True)
+    assert "No digestion is another than before" in answer.text
+    form.setlist("digestion-1", ["boiling"])
+    answer = site.client.post("/batch/digestions/majors", data=form)
+    assert answer.status_code == 400 and "There is no digestion &#39;boiling&#39;" in answer.text
+
+
+def test_batch_list_says_states_in_words(site: Site) -> None:
+    assert '<td data-label="State">in use</td>' in site.client.get("/batches").text
+    page = site.client.get("/batch/withdraw/majors").text
+    site.client.post("/batch/withdraw/majors", data=form_fields(page))
+    assert '<td data-label="State">withdrawn</td>' in site.client.get("/batches").text
+
+
+def point(line: int, z: float | None, state: str = "passed", **more: Any) -> dict[str, Any]:
+    return {
+        "line_no": line, "sample_code": f"C-{line}", "kind": "reference_material", "material": "QRM", "found": 10.0,
+        "expected": 9.0, "z": z, "limit_low": None, "limit_high": None, "state": state, "rule": None, "source": None,
+        **more,
+    }  # fmt: skip
+
+
+def analyte(points: list[dict[str, Any]], state: str | None = "passes") -> dict[str, Any]:
+    return {"analyte": "Zr", "unit": "ppm", "state": state, "series": points}
+
+
+def test_chart_puts_deviations_at_their_heights_and_marks_what_lies_beyond() -> None:
+    drawn = control_charts.chart(analyte([point(2, 0.0), point(12, 3.0), point(22, -9.1, "failed")]))
+    first, second, third = drawn["points"]
+    assert first["y"] == control_charts.height_of(0) == (control_charts.TOP + control_charts.BOTTOM) / 2
+    assert second["y"] == control_charts.height_of(3) < first["y"]
+    assert (third["y"], third["beyond"], third["word"]) == (control_charts.BOTTOM, "down", "failed")
+    assert second["x"] == (first["x"] + third["x"]) / 2
+    assert "deviation -9.10, failed" in third["title"]
+
+
+def test_chart_sets_blanks_by_thirds_of_the_way_to_their_limit() -> None:
+    blank = point(5, None, kind="blank", found=2.0, expected=1.0, limit_high=4.0)
+    assert control_charts.deviation(blank) == 1.0
+    assert control_charts.deviation({**blank, "limit_high": None}) is None
+    assert control_charts.deviation({**blank, "found": None}) is None
+    drawn = control_charts.chart(analyte([blank]))
+    assert drawn["points"][0]["shape"] == "square"
+
+
+def test_chart_of_many_controls_keeps_every_one_that_did_not_pass() -> None:
+    points = [point(line, 0.1, "warned" if line % 100 == 0 else "passed") for line in range(1, 1_001)]
+    drawn = control_charts.chart(analyte(points))
+    assert len(drawn["points"]) <= control_charts.MOST_POINTS
+    assert sum(one["state"] == "warned" for one in drawn["points"]) == 10
+    assert drawn["left_out"] == 1_000 - len(drawn["points"])
+
+
+def test_charts_stand_with_the_worst_state_first() -> None:
+    controls = {"analytes": [analyte([], "passes"), analyte([], None), analyte([point(3, 4, "failed")], "fails")]}
+    assert list(control_charts.charts(controls)) == ["fails", "passes", "not judged"]
+    assert control_charts.conspicuous(controls)[0] == 1
