@@ -1,136 +1,17 @@
-"""Whole intrusions and areas, from results to the views, on both engines. All rocks and places are invented.
-
-The suite is made forward: a basalt loses plagioclase, pyroxene and olivine, its incompatible elements rise as 1/F.
-"""
+"""Whole intrusions and areas, from results to the views, on both engines. All rocks and places are invented."""
 
 from __future__ import annotations
 
-import subprocess
-from collections.abc import Callable
-from typing import Any
-
 import numpy as np
 import pytest
-import sqlalchemy as sa
 
 from registry.petrology.intrusion_heat import theta_centre_interval
-from registry.petrology.minerals import fractionating_minerals
 from registry.petrology.outliers import COMPARED_OXIDES
 from registry.refresh import drain, refresh_registry
-from registry.store import stale_groups
 from registry.store.engine import Registry, reading, writing
 from registry.store.reading.outliers import disagreeing_samples, far_samples, suspected_swaps
 from registry.store.reading.suites import area_summaries, area_summary, intrusion_suite, sample_mass_change
-from registry.suites import refresh_groups
-
-OXIDES = {
-    "SiO2": 50.5, "TiO2": 1.1, "Al2O3": 15.5, "FeOT": 9.6, "MnO": 0.17, "MgO": 8.6, "CaO": 11.0, "Na2O": 2.4,
-    "K2O": 0.5, "P2O5": 0.13,
-}  # fmt: skip
-COLUMNS = {
-    "SiO2": "sio2_wt", "TiO2": "tio2_wt", "Al2O3": "al2o3_wt", "FeOT": "feot_wt", "MnO": "mno_wt", "MgO": "mgo_wt",
-    "CaO": "cao_wt", "Na2O": "na2o_wt", "K2O": "k2o_wt", "P2O5": "p2o5_wt",
-}  # fmt: skip
-TRACES = {"Th": 0.6, "Nb": 4.0, "La": 6.0, "Zr": 80.0, "U": 0.2, "Y": 22.0, "Hf": 2.0, "Ce": 15.0, "Nd": 9.0, "Rb": 9.0}
-SHARES = {"olivine": 0.2, "clinopyroxene": 0.35, "anorthite": 0.28, "albite": 0.12, "magnetite": 0.05}
-LEFT = np.linspace(1.0, 0.62, 10)
-
-
-def liquids() -> list[dict[str, float]]:
-    """Ten liquids: the parent less what crystallised, closed to 99.5 with 0.5 % loss on ignition."""
-    phases = fractionating_minerals(50.5, 61.5)
-    parent = np.array([OXIDES[name] for name in OXIDES]) * 100.0 / sum(OXIDES.values())
-    solid = np.sum([share * np.array([phases[p][COLUMNS[o]] for o in OXIDES]) for p, share in SHARES.items()], axis=0)
-    made = []
-    for left in LEFT:
-        liquid = (parent - (1.0 - left) * solid) / left
-        assert (liquid > 0.0).all()
-        rock = dict(zip(OXIDES, 0.995 * liquid, strict=True))
-        made.append({**rock, "LOI": 0.5, **{name: value / left for name, value in TRACES.items()}})
-    return made
-
-
-def store(connection: sa.Connection, rocks: dict[str, dict[str, float]], batch: str, digestion: str = "fusion") -> None:
-    """Insert one batch with these rocks by sample code; the samples must be there."""
-    number = connection.exec_driver_sql("SELECT coalesce(max(batch_id), 0) + 1 FROM batch").scalar()
-    connection.execute(
-        sa.text("INSERT INTO batch (batch_id, code, imported_at) VALUES (:n, :code, '2026-01-01T00:00:00Z')"),
-        {"n": number, "code": batch},
-    )
-    analytes = list(next(iter(rocks.values())))
-    for position, name in enumerate(analytes):
-        unit = "ppm" if name in TRACES else "wt%"
-        connection.execute(
-            sa.text(
-                "INSERT INTO batch_column (batch_column_id, batch_id, position, analyte, unit, digestion) "
-                "VALUES (:id, :n, :p, :a, :u, :d)"
-            ),
-            {"id": 1000 * number + position, "n": number, "p": position, "a": name, "u": unit, "d": digestion},
-        )
-    for line, (code, rock) in enumerate(rocks.items(), 1):
-        aliquot = 1000 * number + line
-        connection.execute(
-            sa.text(
-                "INSERT INTO aliquot (aliquot_id, sample_id, batch_id, line_no, kind) "
-                "SELECT :id, sample_id, :n, :line, 'original' FROM sample WHERE code = :code"
-            ),
-            {"id": aliquot, "n": number, "line": line, "code": code},
-        )
-        connection.execute(
-            sa.text("INSERT INTO result (aliquot_id, column_id, value) VALUES (:a, :c, :v)"),
-            [{"a": aliquot, "c": 1000 * number + p, "v": rock[name]} for p, name in enumerate(analytes)],
-        )
-
-
-def add_samples(connection: sa.Connection, codes: list[str], intrusion: int, **columns: str) -> None:
-    row = {"kind": "core", **columns}
-    names = ", ".join(row)
-    for code in codes:
-        connection.execute(
-            sa.text(f"INSERT INTO sample (code, intrusion_id, {names}) VALUES (:code, :i, :{', :'.join(row)})"),
-            {"code": code, "i": intrusion, **row},
-        )
-
-
-@pytest.fixture
-def district(any_registry: Registry) -> Registry:
-    """A gabbro sill of ten liquids, one altered rock, and a second body without samples."""
-    with writing(any_registry) as connection:
-        connection.exec_driver_sql(
-            "INSERT INTO area (name, heat_flow_mw_m2, surface_temperature_c, conductivity_w_m_k, "
-            "heat_production_uw_m3, heat_production_depth_m, moho_depth_m) "
-            "VALUES ('North Block', 60, 10, 2.5, 2, 10000, 35000)"
-        )
-        connection.exec_driver_sql("INSERT INTO area (name, heat_flow_mw_m2) VALUES ('South Block', 60)")
-        connection.exec_driver_sql(
-            "INSERT INTO intrusion (name, area_id, shape, half_width_m, depth_to_top_m, age_ma, age_sigma_ma) "
-            "VALUES ('Grey sill', 1, 'slab', 400, 1500, 0.05, 0.01)"
-        )
-        connection.exec_driver_sql("INSERT INTO intrusion (name, age_ma) VALUES ('Green stock', 30)")
-        codes = [f"A{number:02d}" for number in range(len(LEFT))]
-        add_samples(connection, codes, 1, lithology="gabbro")
-        store(connection, dict(zip(codes, liquids(), strict=True)), "K1")
-        drain(connection)
-    return any_registry
-
-
-def rows(registry: Registry, sql: str) -> list[Any]:
-    with reading(registry) as connection:
-        return list(connection.exec_driver_sql(sql).fetchall())
-
-
-def value(registry: Registry, model: str, quantity: str, intrusion: str = "Grey sill") -> tuple[Any, ...]:
-    found = rows(
-        registry,
-        f"SELECT value, unit, quality, cause FROM suite_sheet WHERE intrusion = '{intrusion}' AND model = '{model}' "
-        f"AND quantity = '{quantity}'",
-    )
-    assert len(found) == 1, (model, quantity, found)
-    return tuple(found[0])
-
-
-def waiting(registry: Registry) -> list[tuple[str, int]]:
-    return [tuple(row) for row in rows(registry, "SELECT kind, group_id FROM stale_group ORDER BY kind, group_id")]
+from tests.suites.grey_sill import LEFT, OXIDES, SHARES, TRACES, add_samples, liquids, rows, store, value
 
 
 def test_fractionation_made_forward_is_found_in_the_view(district: Registry) -> None:
@@ -211,71 +92,6 @@ def test_registry_that_was_never_computed_says_so(any_registry: Registry) -> Non
     assert rows(any_registry, "SELECT geotherm_cause FROM area_sheet") == [("heat_flow_missing",)]
 
 
-EDITS = [
-    ("UPDATE intrusion SET age_ma = 0.1 WHERE intrusion_id = 1", [("intrusion", 1)]),
-    ("UPDATE intrusion SET parent_sample = 'A03' WHERE intrusion_id = 2", [("intrusion", 2)]),
-    ("UPDATE intrusion SET name = 'Blue stock' WHERE intrusion_id = 2", []),
-    ("INSERT INTO intrusion (name) VALUES ('Red plug')", [("intrusion", 3)]),
-    ("UPDATE sample SET intrusion_id = 2 WHERE code = 'A04'", [("intrusion", 1), ("intrusion", 2)]),
-    ("UPDATE sample SET intrusion_id = NULL WHERE code = 'A04'", [("intrusion", 1)]),
-    ("UPDATE sample SET code = 'B04' WHERE code = 'A04'", [("intrusion", 1)]),
-    ("DELETE FROM sample WHERE code = 'A04'", [("intrusion", 1)]),
-    ("UPDATE area SET heat_flow_mw_m2 = 80 WHERE area_id = 1", [("area", 1)]),
-    ("UPDATE area SET moho_depth_m = 30000 WHERE area_id = 2", [("area", 2)]),
-    ("UPDATE area SET name = 'Far Block' WHERE area_id = 2", []),
-    ("INSERT INTO area (name) VALUES ('East Block')", [("area", 3)]),
-    (
-        "INSERT INTO setting (name, value) VALUES ('convention.thermal_diffusivity_m2_s', '2e-6')",
-        [("intrusion", 1), ("intrusion", 2)],
-    ),
-]
-
-
-@pytest.mark.parametrize(("edit", "marked"), EDITS)
-def test_edit_marks_exactly_the_groups_it_touches(district: Registry, edit: str, marked: list[tuple[str, int]]) -> None:
-    assert waiting(district) == []
-    with writing(district) as connection:
-        connection.exec_driver_sql(edit)
-    assert waiting(district) == marked
-    refresh_registry(district)
-    assert waiting(district) == []
-
-
-@pytest.mark.parametrize("engine", ["sqlite", pytest.param("postgresql", marks=pytest.mark.postgresql)])
-def test_edit_from_a_debian_client_is_computed_by_the_next_refresh(
-    engine: str, request: pytest.FixtureRequest, client_program: Callable[[str], str]
-) -> None:
-    registry: Registry = request.getfixturevalue(f"{engine}_registry")
-    with writing(registry) as connection:
-        connection.exec_driver_sql(
-            "INSERT INTO intrusion (name, shape, half_width_m, depth_to_top_m, age_ma, age_sigma_ma) "
-            "VALUES ('Grey sill', 'slab', 400, 1500, 0.05, 0.01)"
-        )
-        drain(connection)
-    before = rows(registry, "SELECT theta_centre FROM intrusion_sheet")[0][0]
-    edit = "UPDATE intrusion SET age_ma = 0.005"
-    if engine == "sqlite":
-        command = [client_program("sqlite3"), str(registry.path), edit]
-    else:
-        url = sa.make_url(registry.url)
-        command = [
-            client_program("psql"),
-            "-q",
-            "-h",
-            str(url.query["host"]),
-            "-U",
-            "plutonbook",
-            "-d",
-            str(url.database),
-        ]
-        command += ["-c", edit]
-    subprocess.run(command, check=True, capture_output=True, timeout=60)
-
-    assert waiting(registry) == [("intrusion", 1)]
-    refresh_registry(registry)
-    assert rows(registry, "SELECT theta_centre FROM intrusion_sheet")[0][0] > before
-
-
 @pytest.mark.parametrize(
     ("columns", "cause"),
     [
@@ -297,47 +113,6 @@ def test_cooling_gives_a_cause_or_its_limits(district: Registry, columns: str, c
     if cause is None:
         for said in ("water that moves cools 2 to 10", "10 % taken", "depth to the top not known", "an upper bound"):
             assert said in quality
-
-
-def test_stale_groups_of_an_unknown_kind_are_refused(district: Registry) -> None:
-    with writing(district) as connection:
-        with pytest.raises(ValueError, match="'lake' is no group of samples; expected one of"):
-            stale_groups.pending(connection, "lake")
-        assert refresh_groups(connection) == 0
-        stale_groups.mark_all(connection)
-        assert refresh_groups(connection) == 4
-
-
-def test_new_results_compute_their_own_intrusion_only(district: Registry) -> None:
-    with writing(district) as connection:
-        connection.exec_driver_sql("UPDATE intrusion_derived SET trend_quality = 'left alone' WHERE intrusion_id = 2")
-        add_samples(connection, ["A10"], 1)
-        store(connection, {"A10": liquids()[4]}, "K2")
-        drain(connection)
-
-    assert value(district, "samples", "samples_used")[0] == 11.0
-    assert rows(district, "SELECT trend_quality FROM intrusion_derived WHERE intrusion_id = 2") == [("left alone",)]
-
-
-def test_small_refresh_leaves_groups_until_their_samples_are_done(district: Registry) -> None:
-    with writing(district) as connection:
-        connection.exec_driver_sql("UPDATE sample SET lithology = 'dolerite'")
-        assert drain(connection, limit=4) == 4
-        assert connection.exec_driver_sql("SELECT count(*) FROM stale_group").scalar() == 1
-        drain(connection, limit=100)
-        assert connection.exec_driver_sql("SELECT count(*) FROM stale_group").scalar() == 0
-
-
-def test_deleted_intrusion_and_area_take_their_rows_along(district: Registry) -> None:
-    with writing(district) as connection:
-        connection.exec_driver_sql("DELETE FROM sample")
-        connection.exec_driver_sql("DELETE FROM intrusion WHERE intrusion_id = 1")
-        connection.exec_driver_sql("DELETE FROM area WHERE area_id = 1")
-
-    for table in ("intrusion_derived", "suite_row"):
-        assert rows(district, f"SELECT DISTINCT intrusion_id FROM {table}") == [(2,)]
-    assert rows(district, "SELECT area_id FROM area_derived") == [(2,)]
-    assert waiting(district) == []
 
 
 def test_named_parent_is_used_and_a_wrong_name_gives_the_cause(district: Registry) -> None:
@@ -503,15 +278,3 @@ def test_altered_sample_that_leaves_its_intrusion_leaves_no_rows(district: Regis
         ]
         connection.exec_driver_sql("DELETE FROM sample WHERE code = 'ALT1'")
         assert connection.exec_driver_sql("SELECT count(*) FROM mass_change").scalar() == 0
-
-
-def test_intrusion_page_is_stale_between_edit_and_refresh(district: Registry) -> None:
-    with writing(district) as connection:
-        connection.exec_driver_sql("UPDATE intrusion SET age_ma = 1 WHERE intrusion_id = 2")
-    with reading(district) as connection:
-        sill, stock = intrusion_suite(connection, "Grey sill"), intrusion_suite(connection, "Green stock")
-        assert intrusion_suite(connection, "No such body") is None
-
-    assert sill is not None and stock is not None
-    assert (sill["is_stale"], stock["is_stale"]) == (False, True)
-    assert [model["code"] for model in sill["models"]][:3] == ["samples", "population", "trend"]
