@@ -69,9 +69,7 @@ class Standing:
         return word or ("undecided" if 2 * self.counts["undecided"] > self.samples else "unfavourable")
 
 
-def standings(
-    connection: Any, column: str, key: int, explained: Collection[str] = VERDICT_WORDS
-) -> list[Standing]:
+def standings(connection: Any, column: str, key: int, explained: Collection[str] = VERDICT_WORDS) -> list[Standing]:
     """The standing for every target of the samples with that ``intrusion_id`` or ``site_id`` (``column``).
 
     The target with the best verdict comes first, then by median score. The best sample's conclusion is worked out

@@ -23,6 +23,7 @@ from web import (
     sample,
     samples,
     security,
+    settings,
     sites,
     start,
     targets,
@@ -57,7 +58,7 @@ def create_app(registry_path_or_url: str, writable: bool = False, drafts: Any = 
     pictures.register(app)
     wording.register(app)
     errors.register(app)
-    for part in (start, samples, sample, diagrams, batches, targets, methods, intrusions, sites, editing):
+    for part in (start, samples, sample, diagrams, batches, targets, methods, intrusions, sites, settings, editing):
         app.register_blueprint(part.blueprint)
     importing.register(app, drafts)
     return app

@@ -59,7 +59,9 @@ def list_page() -> Any:
         targets = targets_reading.active_targets(connection)
         chosen = next((target for target in targets if target["code"] == asked), None)
         if asked and chosen is None:
-            raise Missing("target", asked, [(one["name"], url_for(".list_page", target=one["code"])) for one in targets])
+            raise Missing(
+                "target", asked, [(one["name"], url_for(".list_page", target=one["code"])) for one in targets]
+            )
         rows = places_reading.intrusion_list(connection)
         if chosen is not None:
             standing = scores(connection, chosen["target_id"])

@@ -107,10 +107,14 @@ def _facts(found: Mapping[str, Any]) -> list[tuple[str, str, str]]:
     site_kind = {"drill_hole": "drill hole", "outcrop": "outcrop"}.get(found["site_kind"], "")
     entries = [
         ("Kind", (found["kind"] or "").replace("_", " "), ""),
-        ("Site", found["site_code"] and f"{found['site_code']} ({site_kind})", _list_of("site", found["site_code"])),
+        (
+            "Site",
+            found["site_code"] and f"{found['site_code']} ({site_kind})",
+            _page_of("sites.page", code=found["site_code"]),
+        ),
         ("Depth", depth, ""),
         ("Area", found["area"], _list_of("area", found["area"])),
-        ("Intrusion", found["intrusion"], _list_of("intrusion", found["intrusion"])),
+        ("Intrusion", found["intrusion"], _page_of("intrusions.page", name=found["intrusion"])),
         ("Lithology", found["lithology"], ""),
         ("Texture", found["texture"], ""),
         ("Alteration", found["alteration"], ""),
@@ -129,6 +133,10 @@ def _facts(found: Mapping[str, Any]) -> list[tuple[str, str, str]]:
 
 def _list_of(argument: str, name: str | None) -> str:
     return f"{url_for('samples.list_page')}?{urlencode({argument: name})}" if name else ""
+
+
+def _page_of(endpoint: str, **name: str | None) -> str:
+    return url_for(endpoint, **name) if all(name.values()) else ""  # type: ignore[arg-type]
 
 
 def _sample_address(code: str | None) -> str:

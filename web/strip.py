@@ -151,7 +151,9 @@ def build_strip(
         blocks=tuple(_block(row, at) for row in intervals),
         tracks=tuple(_track(place, column, samples, at) for place, column in enumerate(columns)),
         marks=_marks(samples, at),
-        patterns=tuple((colour, pattern, PATTERNS[pattern], STROKES.get(colour, "ink")) for colour, pattern in fills if pattern),
+        patterns=tuple(
+            (colour, pattern, PATTERNS[pattern], STROKES.get(colour, "ink")) for colour, pattern in fills if pattern
+        ),
         fine=len(samples) > inner / 6,
     )
 
@@ -178,7 +180,9 @@ def _block(row: Mapping[str, Any], at: Any) -> Block:
     middle = (top + bottom) / 2 + 4
     lines = _lines(name, max(1, int((bottom - top) // LINE_PIXELS))) if bottom - top >= LABEL_PIXELS else []
     first = middle - LINE_PIXELS * (len(lines) - 1) / 2
-    words = f"{row['from_m']:g} to {row['to_m']:g} m: {name}" + (f", {row['description']}" if row["description"] else "")
+    words = f"{row['from_m']:g} to {row['to_m']:g} m: {name}" + (
+        f", {row['description']}" if row["description"] else ""
+    )
     return Block(
         y=top,
         height=round(bottom - top, 2),

@@ -49,7 +49,7 @@ _NAMES = {
 _UNIT_ENDS = ("_wt", "_ppm", "_ma", "_m", "_km3", "_mw_m2", "_uw_m3", "_kg_m3", "_si", "_c")
 _UNITS = {
     "C": "°C", "degC": "°C", "uW/m3": "µW/m³", "kg/m3": "kg/m³", "mW/m2": "mW/m²", "km3": "km³",
-    "log10(Pa s)": "log₁₀ Pa s",
+    "log10(Pa s)": "log₁₀ Pa s", "log10": "log₁₀", "m2/s": "m²/s",
 }  # fmt: skip
 _PRINTED = (
     ("+-", "±"), (">=", "≥"), ("<=", "≤"), (" - ", " \N{MINUS SIGN} "), ("uW/m3", "µW/m³"), ("mW/m2", "mW/m²"),

@@ -41,3 +41,17 @@ def verdict_changes(connection: Connection, after_id: int, limit: int = CHANGES_
 
 def _word(stored: int | None) -> str | None:
     return None if stored is None else VERDICTS[stored]
+
+
+def changes_by_kind(connection: Connection, after_id: int) -> list[tuple[str, str | None, str | None, int]]:
+    """(target's name, verdict before, verdict after, how many) of the changes after that id, targets in their order."""
+    rows = connection.execute(
+        text(
+            "SELECT target.name, change.verdict_from, change.verdict_to, count(*) AS n FROM verdict_change AS change "
+            "JOIN target ON target.target_id = change.target_id WHERE change.verdict_change_id > :after_id "
+            "GROUP BY target.target_id, target.name, change.verdict_from, change.verdict_to "
+            "ORDER BY target.target_id, n DESC"
+        ),
+        {"after_id": after_id},
+    )
+    return [(row[0], _word(row[1]), _word(row[2]), row[3]) for row in rows]

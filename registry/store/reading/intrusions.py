@@ -94,7 +94,9 @@ def near_intrusions(connection: Connection, name: str, limit: int = 6) -> list[s
 def kinds_of_samples(connection: Connection, column: str, key: int) -> dict[str, int]:
     """How many samples of each kind one intrusion (``intrusion_id``) or site (``site_id``) has."""
     rows = connection.execute(
-        text(f"SELECT kind, count(*) FROM sample WHERE {_grouping(column)} = :key GROUP BY kind ORDER BY count(*) DESC, kind"),
+        text(
+            f"SELECT kind, count(*) FROM sample WHERE {_grouping(column)} = :key GROUP BY kind ORDER BY count(*) DESC, kind"
+        ),
         {"key": key},
     )
     return {row[0]: row[1] for row in rows}

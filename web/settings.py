@@ -1,0 +1,110 @@
+"""The settings: every convention with its unit, meaning and choices; a change is foreseen before it is made."""
+
+from __future__ import annotations
+
+from collections.abc import Mapping
+from typing import Any
+
+from flask import Blueprint, current_app, redirect, render_template, request, session, url_for
+
+from registry import settings
+from registry.petrology.catalogue.records import Convention
+from web.reading import registry_connection
+
+blueprint = Blueprint("settings", __name__)
+#: Words of the choices.
+CHOICE_WORDS = {
+    "le_maitre": "by the rock (Le Maitre 1976)", "middlemost": "by its field (Middlemost 1989)",
+    "fixed_ratio": "one ratio for all", "kress_carmichael": "from an oxygen buffer (Kress and Carmichael 1991)",
+    "almeev": "Almeev et al. 2007", "medard_grove": "Medard and Grove 2008",
+    "falloon_danyushevsky": "Falloon and Danyushevsky 2000", "hold": "left out", "mark": "used and marked",
+    "ignore": "used without a word", "yes": "yes", "no": "no",
+}  # fmt: skip
+_LABELS = {
+    "iron_split": "Split of iron", "iron_fixed_ratio": "The one ratio", "iron_buffer": "Oxygen buffer",
+    "iron_buffer_shift": "Distance from the buffer", "norm_co2_as_calcite": "Calcite in the norm",
+    "norm_sulphur_as_pyrite": "Pyrite in the norm", "norm_halogens": "Fluorite and halite in the norm",
+    "censored_substitute": "Share of the limit", "h2o_ultrabasic_wt": "Water, ultrabasic",
+    "h2o_basic_wt": "Water, basic", "h2o_intermediate_wt": "Water, intermediate", "h2o_acid_wt": "Water, acid",
+    "pressure_gpa": "Pressure", "water_depression": "Effect of water", "wall_rock_viscosity_pa_s": "Wall rock viscosity",
+    "diapir_radius_m": "Radius of a diapir", "dyke_width_m": "Width of a dyke",
+    "country_density_kg_m3": "Country rock density", "thermal_diffusivity_m2_s": "Thermal diffusivity",
+    "density_acid_kg_m3": "Density, acid", "density_intermediate_kg_m3": "Density, intermediate",
+    "density_basic_kg_m3": "Density, basic", "density_ultrabasic_kg_m3": "Density, ultrabasic",
+    "total_warn_low_wt": "Total, remarked below", "total_warn_high_wt": "Total, remarked above",
+    "total_fail_low_wt": "Total, unfit below", "total_fail_high_wt": "Total, unfit above",
+    "loi_warn_wt": "Loss on ignition, remarked above", "loi_fail_wt": "Loss on ignition, unfit above",
+    "loi_exempt_mgo_vf_wt": "Exempt above MgO of", "sulphur_warn_wt": "Sulphur, remarked above",
+    "magnetite_series_si": "Magnetite series from", "failed_control": "Failed controls",
+}  # fmt: skip
+
+
+def label(name: str) -> str:
+    """What a convention is called at its field."""
+    return _LABELS.get(name, name.replace("_", " "))
+
+
+def choices_of(record: Convention) -> list[tuple[str, str]]:
+    """(value, words) of what may be chosen; empty for numbers."""
+    values = (settings.YES, settings.NO) if isinstance(record.default, bool) else record.choices
+    return [(value, CHOICE_WORDS.get(value, value)) for value in values]
+
+
+def typed_form(value: Any) -> str:
+    """A value as it stands in its field."""
+    if isinstance(value, bool):
+        return settings.YES if value else settings.NO
+    if isinstance(value, float):
+        return f"{value:g}" if float(f"{value:g}") == value else repr(value)
+    return str(value)
+
+
+@blueprint.get("/settings")
+def page() -> Any:
+    return _page({}, {}, done=session.pop("settings_done", None) if "settings_done" in session else None)
+
+
+@blueprint.post("/settings")
+def change() -> Any:
+    registry = current_app.extensions["registry"]
+    with registry_connection() as connection:
+        before = settings.current(connection)
+    typed = {name: request.form[name] for name in settings.CONVENTIONS if name in request.form}
+    values, faults = settings.read_typed(typed, before)
+    if faults:
+        return _page(typed, faults), 400
+    if not values:
+        return _page(typed, {}, unchanged=True)
+    changes = _changes(before, values)
+    # what was foreseen is sent back with the form: fields typed since are foreseen again first
+    if request.form.get("do") != "change" or request.form.get("seen") != "; ".join(changes):
+        return _page(typed, {}, foreseen=settings.foresee(registry, values), changes=changes)
+    told = settings.change(registry, values)
+    session["settings_done"] = {"changes": changes, "verdicts": told.verdicts, "waiting": told.waiting}
+    return redirect(url_for("settings.page"), 303)
+
+
+def _changes(before: Mapping[str, Any], values: Mapping[str, Any]) -> list[str]:
+    def words(name: str, value: Any) -> str:
+        typed = typed_form(value)
+        unit = settings.CONVENTIONS[name].unit
+        return CHOICE_WORDS.get(typed, typed) + (f" {unit}" if unit not in ("1", "text") else "")
+
+    return [f"{label(name)}: {words(name, before[name])} → {words(name, value)}" for name, value in values.items()]
+
+
+def _page(typed: Mapping[str, str], faults: Mapping[str, str], **more: Any) -> str:
+    with registry_connection() as connection:
+        current = settings.current(connection)
+    return render_template(
+        "settings.html",
+        section="Settings",
+        groups=settings.CONVENTION_GROUPS,
+        shown={name: typed.get(name, typed_form(value)) for name, value in current.items()},
+        faults=faults,
+        label=label,
+        choices_of=choices_of,
+        typed_form=typed_form,
+        choice_words=CHOICE_WORDS,
+        **{"done": None, "foreseen": None, "changes": [], "unchanged": False, **more},
+    )
