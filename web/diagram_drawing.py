@@ -292,13 +292,12 @@ def triangle_frame() -> dict[str, Any]:
     return {"grid_lines": lines, "grid_texts": texts}
 
 
-def axis_words(diagram: Diagram) -> dict[str, Any]:
-    """Titles of the axes with formulae in print."""
-    return {
-        "x": formula(diagram.x.words),
-        "y": formula(diagram.y.words),
-        "a": formula(diagram.apex_a.words) if diagram.apex_a else "",
-    }
+def axis_words(diagram: Diagram) -> dict[str, str]:
+    """Titles of the axes with formulae in print; the corners of a triangle have no unit."""
+    if diagram.apex_a is not None:
+        corners = zip("xya", diagram.axes, strict=True)
+        return {side: formula(axis.label) for side, axis in corners}
+    return {"x": formula(diagram.x.words), "y": formula(diagram.y.words)}
 
 
 def used_symbols(entries: Iterable[Entry], marked: Iterable[str]) -> list[Symbol]:

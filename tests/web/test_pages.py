@@ -23,7 +23,7 @@ PAGES = (
     "/batches/Q-2041", "/targets", "/targets/porphyry_copper", "/targets/radiogenic_heat", "/methods", "/intrusions",
     "/sites", "/samples?sio2_wt_min=abc", "/samples/none", "/batches/none", "/targets/none", "/nowhere",
     "/static/site.css", "/static/site.js", "/static/favicon.svg", "/import", "/import/none", "/import/none/state.json",
-    "/batch/file/Q-2041", "/batch/withdraw/Q-2041", "/reported/PB-001", "/reported/none",
+    "/batch/file/Q-2041", "/batch/withdraw/Q-2041", "/reported/PB-001", "/reported/none", "/diagrams",
 )  # fmt: skip
 
 
