@@ -28,13 +28,28 @@ def drain(
     limit: int | None = None,
     progress: Callable[[str, int, int], None] | None = None,
 ) -> int:
-    """Compute what is stale, at most ``limit`` samples, inside the caller's transaction; how many were done.
+    """Compute what is stale, inside the caller's transaction; how many samples were computed or judged.
 
-    ``cause`` is written beside each verdict that changes; ``progress("computing", done, all)`` is called by chunks.
+    See ``drained_samples``.
+    """
+    return len(drained_samples(connection, cause, limit, progress))
+
+
+def drained_samples(
+    connection: Any,
+    cause: str = "edited",
+    limit: int | None = None,
+    progress: Callable[[str, int, int], None] | None = None,
+) -> np.ndarray:
+    """Compute what is stale, inside the caller's transaction; ids of the samples computed or judged, int64.
+
+    At most ``limit`` stale samples are dealt with; those that were never analysed have nothing to compute and are not
+    among the ids. ``cause`` is written beside each verdict that changes; ``progress("computing", done, all)`` is called
+    by chunks.
     """
     settle(connection)
     rules: Rules | None = None
-    done = 0
+    done, computed = 0, [np.zeros(0, dtype=np.int64)]
     total = stale.count(connection) if progress is not None else 0
     while limit is None or done < limit:
         size = CHUNK_SIZE if limit is None else min(CHUNK_SIZE, limit - done)
@@ -44,9 +59,10 @@ def drain(
         if progress is not None:
             progress("computing", done, total)
         rules = rules or read_rules(connection)
-        derive = [sample_id for sample_id, level in pending if level == DERIVE]
-        judge = [sample_id for sample_id, level in pending if level != DERIVE]
-        derive = _ever_analysed(connection, derive)
+        analysed = set(_ever_analysed(connection, [sample_id for sample_id, _ in pending]))
+        derive = [sample_id for sample_id, level in pending if level == DERIVE and sample_id in analysed]
+        judge = [sample_id for sample_id, level in pending if level != DERIVE and sample_id in analysed]
+        computed.append(np.array(sorted(analysed), dtype=np.int64))
         if derive:
             held = held_columns(connection, rules.conventions)
             recompute(connection, recompose(connection, derive, held), rules, cause, rewrite_composition=True)
@@ -56,7 +72,7 @@ def drain(
         done += len(pending)
     if limit is None or not stale.pending(connection, 1):
         refresh_groups(connection)
-    return done
+    return np.concatenate(computed)
 
 
 def _ever_analysed(connection: Any, sample_ids: Sequence[int]) -> list[int]:

@@ -315,7 +315,18 @@ def test_check_passes_while_samples_wait_for_their_certificate(tmp_path: Path) -
     """Samples are entered when they are bagged; the results of half of them come weeks later."""
     path = tmp_path / "waiting.sqlite"
     run("create", "--registry", str(path))
-    run("import", *map(str, seed_demo.files()[:6]), "--registry", str(path))
+    said = run("import", *map(str, seed_demo.files()[:7]), "--registry", str(path))
+    assert "nothing was computed or judged" in said
     run("check", "--registry", str(path))
-    run("import", str(seed_demo.files()[6]), "--registry", str(path))
+    said = run("import", str(seed_demo.files()[7]), "--registry", str(path))
+    assert "Computed and judged 139 samples" in said
     run("check", "--registry", str(path))
+    said = run("import", *map(str, seed_demo.files()[:7]), "--registry", str(path))
+    assert "nothing was computed or judged" in said
+
+
+def test_import_counts_a_sample_of_two_certificates_once(tmp_path: Path) -> None:
+    path = tmp_path / "twice.sqlite"
+    run("create", "--registry", str(path))
+    said = run("import", *map(str, seed_demo.files()), "--registry", str(path))
+    assert "Computed and judged 707 samples" in said
