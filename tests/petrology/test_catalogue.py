@@ -6,6 +6,7 @@ import re
 import sqlite3
 from collections import Counter, defaultdict
 from contextlib import closing
+from dataclasses import replace
 from pathlib import Path
 from typing import Any
 
@@ -21,6 +22,7 @@ from registry.petrology.catalogue import (
     WARNINGS,
     Method,
     Range,
+    _ordered,
 )
 from registry.petrology.catalogue.records import STATUSES
 from registry.petrology.references import REFERENCES
@@ -151,6 +153,21 @@ def test_citations_in_docstrings_and_notes_are_known_references() -> None:
     text = "\n".join(path.read_text(encoding="utf-8") for path in PACKAGE.rglob("*.py"))
 
     assert set(re.findall(r"\[([a-z]+\d{4}[a-z]?)\]", text)) <= set(REFERENCES)
+
+
+def test_methods_that_wait_for_each_other_are_refused_by_name() -> None:
+    def method(key: str, needs: str, gives: str) -> Method:
+        return replace(METHODS[0], key=key, inputs=(needs,), outputs=(replace(QUANTITIES[0], name=gives),))
+
+    with pytest.raises(ValueError, match=r"methods wait for each other: \['one', 'two'\]"):
+        _ordered([method("free", "x", "y"), method("one", "b", "a"), method("two", "a", "b")])
+
+
+def test_methods_stand_behind_those_whose_outputs_they_read() -> None:
+    known: set[str] = set()
+    for method in METHODS:
+        assert not (set(method.inputs) - known) & set(DERIVED_COLUMNS), method.key
+        known |= {output.name for output in method.outputs}
 
 
 def test_causes_have_letters_of_their_own_and_words() -> None:

@@ -10,6 +10,7 @@ import pytest
 
 from registry.petrology.analytes import CHOSEN_INDEX
 from registry.petrology.catalogue import QUANTITIES, WARNINGS
+from registry.petrology.catalogue.conventions import CONVENTION_GROUPS
 from registry.petrology.constants import FEO_FROM_FE2O3
 from registry.petrology.conventions import Conventions
 from registry.petrology.digestion import DIGESTION_CODE
@@ -161,3 +162,22 @@ def test_conventions_go_to_a_dictionary_and_back() -> None:
     conventions = Conventions(iron_split="middlemost", pressure_gpa=0.4)
 
     assert Conventions.from_dict(conventions.as_dict()) == conventions
+
+
+def test_convention_records_cover_every_convention_once_with_its_default() -> None:
+    records = [record for _, group in CONVENTION_GROUPS for record in group]
+
+    assert sorted(record.name for record in records) == sorted(field.name for field in fields(Conventions))
+    for record in records:
+        default = getattr(Conventions(), record.name)
+        assert record.default == default and type(record.default) is type(default), record.name
+        assert record.unit and record.meaning
+        assert not record.choices or default in record.choices
+        assert record.low is None or record.high is None or record.low <= default <= record.high
+
+
+@pytest.mark.parametrize(("name", "known"), [("iron_split", SPLITS), ("iron_buffer", FROST_BUFFERS)])
+def test_convention_choices_are_those_that_the_formulas_know(name: str, known: Any) -> None:
+    record = next(record for _, group in CONVENTION_GROUPS for record in group if record.name == name)
+
+    assert set(record.choices) == set(known)

@@ -3,7 +3,6 @@
 from __future__ import annotations
 
 import importlib
-from collections.abc import Callable
 from typing import Any
 
 import numpy as np
@@ -118,16 +117,10 @@ def _ordered(methods: list[Method]) -> tuple[Method, ...]:
 
 
 def _cause_letters(methods: tuple[Method, ...]) -> dict[str, tuple[str, str]]:
-    table: dict[str, tuple[str, str]] = {}
-    general = [Cause(code, text, _never, ()) for code, text in GENERAL_CAUSES]
-    for cause in (*general, *(cause for method in methods for cause in method.causes)):
-        if cause.code not in table:
-            table[cause.code] = (_LETTERS[len(table)], cause.text)
-    return table
-
-
-def _never(*_: Any) -> Any:
-    return False
+    texts = dict(GENERAL_CAUSES)
+    for cause in (cause for method in methods for cause in method.causes):
+        texts.setdefault(cause.code, cause.text)
+    return {code: (letter, text) for letter, (code, text) in zip(_LETTERS[: len(texts)], texts.items(), strict=True)}
 
 
 METHODS, WARNINGS = _collect()
@@ -136,4 +129,3 @@ METHOD_BY_KEY: dict[str, Method] = {method.key: method for method in METHODS}
 METHOD_OF_QUANTITY: dict[str, Method] = {output.name: method for method in METHODS for output in method.outputs}
 #: code -> (letter in ``derived.causes``, text). A dot there means that the value is present.
 CAUSES = _cause_letters(METHODS)
-CauseMask = Callable[..., Any]

@@ -59,7 +59,8 @@ def _theta(
 
 def _first_of_each(keys: Any) -> tuple[Any, Any]:
     """Where each distinct key stands first, and for each key which of them it is; a few keys need no sorting."""
-    inverse, first = np.full(keys.shape, -1), []
+    first: list[int] = []
+    inverse = np.full(keys.shape, -1)
     for which in range(FEW_BODIES):
         position = int(np.argmax(inverse < 0))
         if inverse[position] >= 0:
