@@ -22,6 +22,8 @@ ALLOWED_TOP_LEVEL = {
 }  # fmt: skip
 OWN_PACKAGES = {"registry", "migrations", "web", "seed_demo"}
 LONGEST_MODULE_LINES, LONGEST_TEST_MODULE_LINES = 320, 500
+#: One revision is one step of the schema's history; the first makes every table.
+LONGEST_REVISION_LINES = 500
 VAGUE_MODULE_NAMES = {"utils", "util", "helpers", "helper", "common", "manager", "managers", "misc"}
 #: Spelt backwards, so that this file does not hold them: nothing in the project cites where its idea came from.
 FORBIDDEN_WORDS = [
@@ -239,10 +241,10 @@ def test_layers_forward_arrow_passes(path: str, source: str) -> None:
 def test_modules_stay_short() -> None:
     found = []
     for name in PYTHON_FILES:
-        if name.startswith("migrations/versions/"):
-            continue  # one revision is one step of the schema's history, however many tables it makes
         lines = (ROOT / name).read_text(encoding="utf-8").count("\n")
         limit = LONGEST_TEST_MODULE_LINES if name.startswith("tests/") else LONGEST_MODULE_LINES
+        if name.startswith("migrations/versions/"):
+            limit = LONGEST_REVISION_LINES
         if lines > limit:
             found.append(f"{name}:{lines}: longer than {limit} lines; split it by subject")
     assert not found, "\n" + "\n".join(found)

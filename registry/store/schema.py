@@ -67,6 +67,8 @@ def upgrade(path_or_url: str | Path | Registry, fill: Fill | None = None) -> tup
         raise PlutonbookError(
             f"the registry has schema {before}, made by a newer Plutonbook; this one knows up to {HEAD_REVISION}"
         )
+    with registry.reader.connect() as connection:
+        _check_foreign_keys(connection)
     saved = None
     if registry.path is not None and before != HEAD_REVISION:
         now = datetime.now(UTC).strftime("%Y%m%dT%H%M%SZ")
@@ -170,8 +172,9 @@ def _check_foreign_keys(connection: sa.Connection) -> None:
     if broken:
         places = ", ".join(sorted({f"{row[0]} -> {row[2]}" for row in broken}))
         raise PlutonbookError(
-            f"{len(broken)} rows point at rows that are not there ({places}); nothing was changed. "
-            "'plutonbook check' names them"
+            f"{len(broken):,} rows point at rows that are not there ({places}); nothing was changed. "
+            "'plutonbook check' names them and what to do; such damage comes from INSERT OR REPLACE or DELETE in "
+            "another program"
         )
 
 

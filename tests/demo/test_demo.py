@@ -330,3 +330,24 @@ def test_import_counts_a_sample_of_two_certificates_once(tmp_path: Path) -> None
     run("create", "--registry", str(path))
     said = run("import", *map(str, seed_demo.files()), "--registry", str(path))
     assert "Computed and judged 707 samples" in said
+
+
+def test_upgrade_of_a_damaged_registry_says_so_and_leaves_it(tmp_path: Path) -> None:
+    """INSERT OR REPLACE in another program gives a sample a new id and leaves its results without one."""
+    path = tmp_path / "damaged.sqlite"
+    run("create", "--registry", str(path))
+    run("import", *map(str, seed_demo.files()[:8]), "--registry", str(path))
+    client = sqlite3.connect(path)
+    client.execute("INSERT OR REPLACE INTO sample (code, kind) VALUES ('KD001-103', 'core')")
+    client.commit()
+    client.close()
+    done = subprocess.run(
+        [sys.executable, "-m", "registry.cli", "upgrade", "--registry", str(path)],
+        capture_output=True,
+        text=True,
+        cwd=ROOT,
+    )
+    assert done.returncode == 1
+    assert "rows point at rows that are not there" in done.stderr and "INSERT OR REPLACE" in done.stderr
+    assert "Traceback" not in done.stderr
+    assert [each.name for each in tmp_path.iterdir() if "before" in each.name] == []
