@@ -66,20 +66,42 @@ def choose(n: int, blocks: Sequence[Block]) -> tuple[np.ndarray, np.ndarray, np.
 
     Where every candidate was refused the value stays NaN and the digestion is kept, which tells why.
     """
+    chosen = trace_choice(n, blocks)
+    return chosen.values, chosen.qualifiers, chosen.digestions
+
+
+@dataclass(frozen=True)
+class TracedChoice:
+    """A choice and where it came from: ``source`` int32 (81, n), a position in ``origins``, -1 where no value is.
+
+    ``origins``: block and column position of each candidate.
+    """
+
+    values: np.ndarray
+    qualifiers: np.ndarray
+    digestions: np.ndarray
+    source: np.ndarray
+    origins: list[tuple[Block, int]]
+
+
+def trace_choice(n: int, blocks: Sequence[Block]) -> TracedChoice:
+    """What ``choose`` chooses, and from which block and column each value came."""
     shape = (len(CHOSEN_COLUMNS), n)
     values = np.full(shape, np.nan)
     qualifiers = np.zeros(shape, dtype=np.uint8)
     digestions = np.zeros(shape, dtype=np.uint8)
+    source = np.full(shape, -1, dtype=np.int32)
     candidates = [candidate for block in blocks for candidate in _candidates(block)]
     candidates.sort(key=lambda candidate: candidate.priority)
-    taken = [c for c in candidates if not c.refused]
+    taken = [(number, c) for number, c in enumerate(candidates) if not c.refused]
     for only_above in (False, True):
-        for candidate in taken:
-            _take(candidate, only_above, values, qualifiers, digestions)
+        for number, candidate in taken:
+            where = _take(candidate, only_above, values, qualifiers, digestions)
+            source[candidate.target, where] = number
     for candidate in candidates:
         if candidate.refused:
             _mark_refused(candidate, values, digestions)
-    return values, qualifiers, digestions
+    return TracedChoice(values, qualifiers, digestions, source, [(c.block, c.column) for c in candidates])
 
 
 def _candidates(block: Block) -> list[_Candidate]:
@@ -113,16 +135,18 @@ def _candidates(block: Block) -> list[_Candidate]:
 
 def _take(
     candidate: _Candidate, only_above: bool, values: np.ndarray, qualifiers: np.ndarray, digestions: np.ndarray
-) -> None:
+) -> np.ndarray:
+    """Fill what is still open from one candidate; the positions of the samples that were filled."""
     block, target = candidate.block, candidate.target
     column, signs = block.values[:, candidate.column], block.qualifiers[:, candidate.column]
     usable = np.isnan(values[target, block.sample]) & ~np.isnan(column) & ((signs == QUALIFIER_ABOVE) == only_above)
-    if not usable.any():
-        return
     where = block.sample[usable]
+    if not len(where):
+        return where
     values[target, where] = column[usable] * candidate.factor
     qualifiers[target, where] = signs[usable]
     digestions[target, where] = candidate.digestion
+    return where
 
 
 def _mark_refused(candidate: _Candidate, values: np.ndarray, digestions: np.ndarray) -> None:

@@ -81,10 +81,17 @@ def main(arguments: list[str] | None = None) -> Any:
 
 
 def _show_problems(error: Any) -> None:
-    for problem in error.problems:
+    from registry.import_reports import remarks_in_short
+
+    problems = [problem for problem in error.problems if problem.severity == "problem"]
+    remarks = [problem for problem in error.problems if problem.severity != "problem"]
+    for problem in problems:
         click.echo(problem.sentence(), err=True)
-    count = sum(problem.severity == "problem" for problem in error.problems)
-    click.echo(f"plutonbook: {count} {'problem' if count == 1 else 'problems'}; nothing was written.", err=True)
+    for sentence in remarks_in_short(remarks):
+        click.echo(f"remark: {sentence}", err=True)
+    count = f"{len(problems):,} {'problem' if len(problems) == 1 else 'problems'}"
+    noted = f", {len(remarks):,} {'remark' if len(remarks) == 1 else 'remarks'}" if remarks else ""
+    click.echo(f"plutonbook: {count}{noted}; nothing was written.", err=True)
 
 
 if __name__ == "__main__":

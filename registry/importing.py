@@ -4,16 +4,22 @@ from __future__ import annotations
 
 from collections.abc import Callable, Mapping, Sequence
 from concurrent.futures import Future, ThreadPoolExecutor
-from dataclasses import asdict, dataclass, field, replace
+from dataclasses import dataclass, replace
 from pathlib import Path
 from typing import Any
 
+import numpy as np
+
 from registry.errors import InputProblems, NotFound, Problem, UsageError
+from registry.import_reports import FileReport, ImportReport, counted
 from registry.importing_certificates import store_certificates
-from registry.importing_results import ResultsReport, StoredBatch, store_results, unknown_codes
+from registry.importing_results import LISTED_CODES, StoredBatch, store_results, unknown_codes
 from registry.intake import KINDS, MasterTable, Reading, ReadingOptions, read_all
+from registry.intake.refused import without_lines
+from registry.intake_choices import described_columns
 from registry.keeping_going import SetAside
-from registry.refresh import changes_since, drain, last_change
+from registry.precedence import Earlier, alternatives_within, look_after, look_before
+from registry.refresh import changes_since, drained_samples, last_change
 from registry.store import batches, masters
 from registry.store.engine import Registry, writing
 from registry.store.reading.changes import verdict_changes
@@ -46,74 +52,6 @@ class FileChoice:
 
 
 @dataclass
-class FileReport:
-    """What became of one file."""
-
-    file: str
-    kind: str
-    rows: int
-    understood: list[str]
-    remarks: list[str]
-    added: int = 0
-    changes: list[str] = field(default_factory=list)
-    results: ResultsReport | None = None
-    refused: int = 0
-    refused_file: str | None = None
-
-    def lines(self) -> list[str]:
-        lines = [f"{self.file}: {self.kind}, {_count(self.rows, 'row')}"]
-        lines += [f"  understood: {sentence}" for sentence in self.understood]
-        lines += [f"  remark: {sentence}" for sentence in self.remarks]
-        if self.refused:
-            lines.append(f"  refused: {_count(self.refused, 'row')}" + self._where_refused())
-        if self.results is not None:
-            lines += [f"  {sentence}" for sentence in self.results.lines()]
-        else:
-            lines.append(f"  {self.added:,} new, {len(self.changes):,} changed")
-            lines += [f"  changed: {change}" for change in self.changes[:20]]
-            if len(self.changes) > 20:
-                lines.append(f"  ... and {len(self.changes) - 20:,} more changes")
-        return lines
-
-    def _where_refused(self) -> str:
-        if self.refused_file is None:
-            return ""
-        text = f", saved with the reasons in {self.refused_file}; correct them there and import that file"
-        return text if self.results is None else f"{text} with --add-to '{self.results.batch}'"
-
-
-@dataclass
-class ImportReport:
-    """What an import did, or in a dry run would do."""
-
-    files: list[FileReport]
-    recomputed: int
-    verdicts_changed: int
-    verdicts: dict[str, dict[str, int]]
-    dry_run: bool
-    changes: list[dict[str, Any]] = field(default_factory=list)
-
-    def lines(self) -> list[str]:
-        return [*(line for file in self.files for line in file.lines()), *self._ending()]
-
-    def summary(self) -> list[str]:
-        """One line a file and the verdicts, without what was understood."""
-        return [*(f"{file.file}: {file.kind}, {_count(file.rows, 'row')}" for file in self.files), *self._ending()]
-
-    def _ending(self) -> list[str]:
-        lines = [f"Computed and judged {_count(self.recomputed, 'sample')}."]
-        for target, counts in self.verdicts.items():
-            lines.append(f"  {target}: " + ", ".join(f"{count:,} {word}" for word, count in counts.items()))
-        if self.verdicts_changed:
-            lines.append(f"{_count(self.verdicts_changed, 'earlier verdict')} changed: see change_sheet.")
-        lines.append("Dry run: nothing was written." if self.dry_run else "Stored.")
-        return lines
-
-    def as_dict(self) -> dict[str, Any]:
-        return asdict(self)
-
-
-@dataclass
 class _File:
     """A file, its bytes, what they are compressed to, and the batch of its first table of results once stored."""
 
@@ -125,6 +63,9 @@ class _File:
 
 #: Certificates of reference materials go before the results that they judge.
 _ORDER = sorted(KINDS, key=lambda kind: kind == "results")
+
+
+_NOTHING_COMPUTED = np.zeros(0, dtype=np.int64)
 
 
 class _NothingWritten(Exception):
@@ -171,7 +112,7 @@ def import_files(
     unreadable = [problem for reading, _ in readings for problem in reading.problems if not reading.ok]
     report: ImportReport | None = None
     try:
-        with writing(registry, what=f"an import of {_count(len(paths), 'file')}", tell=tell, bulk=True) as connection:
+        with writing(registry, what=f"an import of {counted(len(paths), 'file')}", tell=tell, bulk=True) as connection:
             report = _store(connection, readings, asides, options, unreadable, progress)
             if options.dry_run:
                 raise _NothingWritten
@@ -191,27 +132,36 @@ def _store(
 ) -> ImportReport:
     before = last_change(connection)
     reports: list[FileReport] = []
-    computed = 0
+    earlier: list[Earlier | None] = []
+    computed = np.zeros(0, dtype=np.int64)
     results = len({file.path for reading, file in readings if reading.kind == "results"})
     if options.batch and results > 1:
         raise UsageError(f"--batch names one batch, but {results} files hold results; import them one by one")
     for (reading, contents), aside in zip(readings, asides, strict=True):
-        if problems:
+        if problems and reading.ok:
             break  # what follows may name what a faulty file was to bring: its complaints would mislead
+        if not reading.ok:
+            problems = [*problems, *_more_faults(connection, reading, options)]
+            break
+        earlier.append(_before(connection, reading, options) if options.dry_run else None)
         report, done, faults = _store_one(connection, reading, contents, aside, options, progress)
         reports.append(report)
-        computed += done
+        computed = np.union1d(computed, done)
         problems = [*problems, *faults]
     if problems:
         raise InputProblems(problems)
-    computed += drain(connection, cause=_cause(reports), progress=progress)
+    computed = np.union1d(computed, drained_samples(connection, cause=_cause(reports), progress=progress))
+    for report, one in zip(reports, earlier, strict=True):
+        if one is not None and report.results is not None:
+            codes = masters.sample_codes(connection, one.sample_ids.tolist())
+            report.precedence = look_after(connection, one, [report.results.batch], codes)
     for report, aside in zip(reports, asides, strict=True):
         if aside is not None and aside.reasons:
             report.refused = len(aside.reasons)
             report.refused_file = None if options.dry_run else str(aside.save())
     return ImportReport(
         reports,
-        computed,
+        len(computed),
         changes_since(connection, before),
         masters.verdict_counts(connection),
         options.dry_run,
@@ -226,15 +176,19 @@ def _store_one(
     aside: SetAside | None,
     options: ImportOptions,
     progress: Progress,
-) -> tuple[FileReport, int, list[Problem]]:
-    """Store one good reading; its report, how many samples were computed, and the problems met on the way."""
+) -> tuple[FileReport, np.ndarray, list[Problem]]:
+    """Store one good reading; its report, ids of the samples computed, and the problems met on the way."""
     kind = reading.kind or ""
-    remarks = [problem.sentence() for problem in reading.warnings]
     if reading.results is not None:
         if aside is not None and not options.create_samples:
             aside.add(unknown_codes(connection, reading.file, reading.results, options.code_prefix))
             aside.drop()
-        report = FileReport(reading.place, kind, len(reading.results), reading.understood, remarks)
+        report = FileReport(reading.place, kind, len(reading.results), reading.understood, reading.warnings)
+        report.columns = described_columns(reading.results)
+        if options.dry_run:
+            report.alternatives = alternatives_within(reading.results)
+        if options.create_samples:
+            report.warnings += _almost_known(connection, reading, options.code_prefix)
         report.results, done, faults = store_results(
             connection, reading, contents.data, contents.compressed, options, progress, contents.batch
         )
@@ -242,16 +196,57 @@ def _store_one(
         return report, done, faults
     table = reading.master
     assert table is not None
-    report = FileReport(reading.place, kind, len(table), reading.understood, remarks)
+    report = FileReport(reading.place, kind, len(table), reading.understood, reading.warnings)
     if kind == "reference-materials":
         changed, faults = store_certificates(connection, table, reading.file)
         report.added, report.changes = changed.added, changed.changes
-        return report, 0, faults
+        return report, _NOTHING_COMPUTED, faults
     outcome = _upserted(connection, kind, table, reading.file, aside, options)
     report.added, report.changes = outcome.added, outcome.changes
     faults = [problem for problem in outcome.problems if problem.severity == "problem"]
-    report.remarks += [problem.sentence() for problem in outcome.problems if problem.severity != "problem"]
-    return report, 0, faults
+    report.warnings += [problem for problem in outcome.problems if problem.severity != "problem"]
+    return report, _NOTHING_COMPUTED, faults
+
+
+def _before(connection: Any, reading: Reading, options: ImportOptions) -> Earlier | None:
+    """Where the values of the samples of a file of results come from before it is stored."""
+    if reading.results is None:
+        return None
+    codes = {f"{options.code_prefix}{code}" for code in reading.results.sample_codes}
+    return look_before(connection, masters.sample_ids(connection, codes).values())
+
+
+def _more_faults(connection: Any, reading: Reading, options: ImportOptions) -> list[Problem]:
+    """What the registry has against the good rows of the first faulty file, so that all of it is told at once."""
+    if reading.whole_file_refused or (reading.master is None and reading.results is None):
+        return []
+    if reading.results is not None:
+        if options.create_samples:
+            return []
+        without_lines(reading, frozenset(reading.refused_lines))
+        return unknown_codes(connection, reading.file, reading.results, options.code_prefix)[:LISTED_CODES]
+    table = reading.master
+    if table is None or table.kind == "reference-materials":
+        return []
+    without_lines(reading, frozenset(reading.refused_lines))
+    return _upserted(connection, table.kind, table, reading.file, None, options).problems
+
+
+def _almost_known(connection: Any, reading: Reading, prefix: str) -> list[Problem]:
+    """Remarks on new sample codes that registered ones differ from only in case, spaces, dashes or leading zeros."""
+    table = reading.results
+    assert table is not None
+    codes = [f"{prefix}{code}" for code in table.sample_codes]
+    near = masters.codes_written_otherwise(connection, codes)
+    rows = {code: row for row, code in reversed(list(enumerate(codes)))}
+    return [
+        Problem(
+            reading.file, "a registered sample is written almost the same; this one is added beside it",
+            row=int(table.line_no[rows[code]]), column=table.sample_header or None, found=code,
+            expected=f"perhaps '{close[0]}'", remedy="correct the code if they are the same", severity="warning",
+        )
+        for code, close in list(near.items())[:LISTED_CODES]
+    ]  # fmt: skip
 
 
 def _upserted(
@@ -293,7 +288,3 @@ def _bytes_of(path: Path) -> bytes:
         raise NotFound(f"there is no file {path}") from error
     except OSError as error:
         raise NotFound(f"{path} cannot be read: {error.strerror}") from error
-
-
-def _count(number: int, word: str) -> str:
-    return f"{number:,} {word}" if number == 1 else f"{number:,} {word}s"

@@ -6,7 +6,7 @@ from collections.abc import Mapping, Sequence
 from dataclasses import dataclass, replace
 from typing import Any
 
-from registry.intake import KINDS, ColumnChoice, Reading, Recipe
+from registry.intake import KINDS, ColumnChoice, Reading, Recipe, ResultTable
 from registry.intake.units import CANONICAL_UNITS
 from registry.petrology.analytes import ANALYTES, CHOSEN_INDEX, WT_PERCENT_PER_UNIT
 from registry.petrology.digestion import (
@@ -41,8 +41,34 @@ class ColumnWish:
 def describe_reading(reading: Reading) -> dict[str, Any]:
     """A reading as JSON values: kind, rows, sentences, problems, columns with how each is used, and its recipe."""
     table, master = reading.results, reading.master
-    silica = table is not None and any(column.analyte == "SiO2" for column in table.columns)
-    columns = [
+    return {
+        "kind": reading.kind,
+        "part": reading.part,
+        "rows": len(table) if table is not None else len(master) if master is not None else 0,
+        "ok": reading.ok,
+        "understood": [text for text in reading.understood if not is_of_column(text)],
+        "problems": [problem.as_dict() for problem in reading.problems],
+        "refused_rows": len(reading.refused_lines),
+        "whole_file_refused": reading.whole_file_refused,
+        "columns": [] if table is None else described_columns(table),
+        "read": list(master.columns) if master is not None else [],
+        "ignored": list(table.ignored if table is not None else master.ignored if master is not None else ()),
+        "sample_header": table.sample_header if table is not None else None,
+        "certificate": table.certificate if table is not None else None,
+        "lab": table.lab if table is not None else None,
+        "recipe": None if reading.recipe is None else reading.recipe.to_json(),
+    }
+
+
+def is_of_column(sentence: str) -> bool:
+    """Whether a sentence of what was understood tells of one column, which the list of columns tells as well."""
+    return sentence.startswith("column '") and " is " in sentence
+
+
+def described_columns(table: ResultTable) -> list[dict[str, Any]]:
+    """The columns of a table of results with how each is used."""
+    silica = any(column.analyte == "SiO2" for column in table.columns)
+    return [
         {
             "header": column.header,
             "analyte": column.analyte,
@@ -53,25 +79,8 @@ def describe_reading(reading: Reading) -> dict[str, Any]:
             "ignore": False,
             "use": use_words(column.analyte, column.unit, column.digestion, silica),
         }
-        for column in (table.columns if table is not None else ())
+        for column in table.columns
     ]
-    return {
-        "kind": reading.kind,
-        "part": reading.part,
-        "rows": len(table) if table is not None else len(master) if master is not None else 0,
-        "ok": reading.ok,
-        "understood": [text for text in reading.understood if not text.startswith("column '") or " is " not in text],
-        "problems": [problem.as_dict() for problem in reading.problems],
-        "refused_rows": len(reading.refused_lines),
-        "whole_file_refused": reading.whole_file_refused,
-        "columns": columns,
-        "read": list(master.columns) if master is not None else [],
-        "ignored": list(table.ignored if table is not None else master.ignored if master is not None else ()),
-        "sample_header": table.sample_header if table is not None else None,
-        "certificate": table.certificate if table is not None else None,
-        "lab": table.lab if table is not None else None,
-        "recipe": None if reading.recipe is None else reading.recipe.to_json(),
-    }
 
 
 def use_words(analyte: str, unit: str, digestion: str, reports_silica: bool) -> str:
@@ -82,7 +91,7 @@ def use_words(analyte: str, unit: str, digestion: str, reports_silica: bool) -> 
     if known.column is None:
         return "kept as a result only"
     factor = WT_PERCENT_PER_UNIT[unit] / WT_PERCENT_PER_UNIT[known.unit] * known.factor
-    words = known.column + ("" if abs(factor - 1.0) < 1e-9 else f" = value {TIMES} {factor:.4g}")
+    words = known.column + ("" if abs(factor - 1.0) < 1e-9 else f" = value {TIMES} {factor:.5g}")
     code = int(settle_unknown(DIGESTION_CODE[digestion], reports_silica))
     carried = int(CARRIES[code, CHOSEN_INDEX[known.column]])
     if carried == REFUSED:

@@ -19,6 +19,8 @@ _PAGE_WORDS = (
     (re.compile(r"use --add-to (.+?)(?=, else|$)"), r"choose “a further part of” \1 below"),
     (re.compile(r"use --supersede"), "choose “it corrects an earlier certificate” below"),
     (re.compile(r"use --create-samples( to add it with the kind 'unknown')?"), "tick “Add unknown samples” below"),
+    (re.compile(r"use --negative-means-below"), "tick “Negative numbers mean below” under “How it was understood”"),
+    (re.compile(r"use --positive-dips down or up"), "choose under “Dips”"),
     (re.compile(r"in a (reading )?recipe"), "in the columns below"),
     (re.compile(r"correct the recipe"), "correct it in the columns below"),
     (re.compile(r"name the kind when importing the file"), "choose under “What it holds”"),

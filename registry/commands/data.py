@@ -25,20 +25,41 @@ KINDS = ["areas", "sites", "surveys", "intervals", "intrusions", "samples", "res
 @click.option("--supersede", is_flag=True, help="This is the corrected certificate: it replaces the earlier file.")
 @click.option("--add-to", metavar="BATCH", help="Another file of this certificate: add its results to the batch.")
 @click.option("--code-prefix", metavar="P", default="", help="Put P before every sample code of the files.")
+@click.option("--recipe", metavar="NAME", help="Read the results as the saved reading NAME says.")
+@click.option("--save-recipe", metavar="NAME", help="Keep this reading of the results under NAME for the next file.")
+@click.option("--unit", metavar="UNIT", help="Unit of result columns that state none (wt%, ppm, ppb, ...).")
+@click.option("--digestion", metavar="DIGESTION", help="Digestion of columns that tell none (four_acid, fusion, ...).")
+@click.option("--negative-means-below", is_flag=True, help="A negative result -x means: below the limit x.")
+@click.option(
+    "--positive-dips", type=click.Choice(["down", "up"]), help="Where the dips of a survey without signs point."
+)
+@click.option("--verbose", is_flag=True, help="Tell every column and every remark one by one.")
 @json_option
-def import_(registry_path: str | None, files: tuple[Path, ...], as_json: bool, **options: Any) -> None:
+def import_(registry_path: str | None, files: tuple[Path, ...], as_json: bool, verbose: bool, **options: Any) -> None:
     """Import areas, sites, surveys, intervals, intrusions, samples and lab results from FILES.
 
     All problems of all files are listed at once, and nothing is written if there is one.
     """
-    from registry.importing import ImportOptions, import_files
+    from registry.importing import FileChoice, ImportOptions, import_files
+    from registry.reading_choices import Readings, reading_options
     from registry.store.engine import open_registry
 
+    how = {name: options.pop(name) for name in _HOW_READ}
     chosen = ImportOptions(**options)
     if chosen.supersede and chosen.add_to:
         raise UsageError("--supersede and --add-to exclude each other: a file replaces a certificate or adds to it")
-    report = import_files(open_registry(registry_named(registry_path)), list(files), chosen)
-    say(report.as_dict(), report.lines(), as_json)
+    if how["save_recipe"] and chosen.dry_run:
+        raise UsageError("--save-recipe and --dry-run exclude each other: a dry run writes nothing")
+    registry = open_registry(registry_named(registry_path))
+    readings = Readings(registry, how["recipe"], how["save_recipe"])
+    choice = FileChoice(reading=reading_options(readings.recipe, **{name: how[name] for name in _HOW_READ[2:]}))
+    report = import_files(registry, list(files), chosen, choices=dict.fromkeys(files, choice), on_read=readings.take)
+    saved = readings.save()
+    say({**report.as_dict(), "saved_recipe": how["save_recipe"]}, [*report.lines(verbose), *saved], as_json)
+
+
+#: The options that say how files are read; the others say how they are stored.
+_HOW_READ = ("recipe", "save_recipe", "unit", "digestion", "negative_means_below", "positive_dips")
 
 
 @click.command()

@@ -2,11 +2,15 @@
 
 from __future__ import annotations
 
+from collections.abc import Callable, Iterable, Iterator
+from typing import Any
+
 import numpy as np
 from numpy.typing import NDArray
 
 from registry.intake.findings import Findings
 from registry.intake.readings import ResultColumn
+from registry.intake.spooled import row_parts
 from registry.petrology.analytes import ANALYTES, ELEMENT_SYMBOLS, OXIDE_SYMBOLS, WT_PERCENT_PER_UNIT
 
 #: Highest content of ordinary rocks and ores of igneous terrains, wt%; above it a warning. Common practice, no source.
@@ -26,58 +30,76 @@ _FAR_CHECKED = (set(OXIDE_SYMBOLS) | set(ELEMENT_SYMBOLS)) - set(
 
 def check_values(
     columns: list[ResultColumn],
-    values: NDArray[np.float64],
-    qualifiers: NDArray[np.uint8],
-    lines: NDArray[np.int64],
+    values: Any,
+    qualifiers: Any,
+    lines: Any,
     findings: Findings,
 ) -> None:
     """Impossible values become problems with their likely cause, unlikely ones warnings. NaN is passed over."""
+    if not len(values):
+        return
     with np.errstate(all="ignore"):
+        parts = [(np.fmax.reduce(rows, axis=0), np.fmin.reduce(rows, axis=0)) for _, rows in row_parts(values)]
+        tops = np.fmax.reduce([top for top, _ in parts])
+        bottoms = np.fmin.reduce([bottom for _, bottom in parts])
         for index, column in enumerate(columns):
             if column.unit:
-                _check_column(column, values[:, index], qualifiers[:, index], lines, findings)
+                _check_column(column, index, values, qualifiers, lines, findings, (tops[index], bottoms[index]))
 
 
 def _check_column(
     column: ResultColumn,
-    value: NDArray[np.float64],
-    qualifier: NDArray[np.uint8],
-    lines: NDArray[np.int64],
+    index: int,
+    values: Any,
+    qualifiers: Any,
+    lines: Any,
     findings: Findings,
+    ends: tuple[float, float],
 ) -> None:
-    if not value.size:
-        return
+    """Look for the values themselves only where the column's ends, (highest, lowest), say that there are any."""
     per_unit = WT_PERCENT_PER_UNIT[column.unit]
     high = _TOTAL_LIMIT_WT if column.analyte == "Total" else 100.0
     low = _GAIN_LIMIT_WT if column.analyte == "LOI" else 0.0
-    top, bottom = np.fmax.reduce(value), np.fmin.reduce(value)
+    top, bottom = ends
     if top * per_unit > high * (1 + 1e-12):
-        for row in np.flatnonzero(value * per_unit > high * (1 + 1e-12)):
-            _say_too_high(column, float(value[row]), high, int(lines[row]), findings)
+        for row, value in _found(values, index, lambda value: value * per_unit > high * (1 + 1e-12)):
+            _say_too_high(column, value, high, int(lines[row]), findings)
     if bottom < low:
-        for row in np.flatnonzero(value < low):
+        for row, value in _found(values, index, lambda value: value < low):
             findings.add(
                 f"{column.analyte} is negative" if column.analyte != "LOI" else "the loss on ignition is impossible",
                 row=int(lines[row]),
                 column=column.header,
-                found=f"{value[row]:g}",
+                found=f"{value:g}",
                 expected=f"{low:g} or more" if low else "0 or more",
-                remedy="if the laboratory writes 'below the detection limit' as a negative number, read the file with "
-                "negative numbers as below the limit; else correct the value",
+                remedy="if the laboratory writes 'below the detection limit' as a negative number, use "
+                "--negative-means-below; else correct the value",
             )
     unlikely = _UNLIKELY_ABOVE_WT.get(column.analyte)
     if unlikely is not None and top * per_unit > unlikely:
-        for row in np.flatnonzero((value * per_unit > unlikely) & (value * per_unit <= 100.0)):
+        for row, value in _found(
+            values, index, lambda value: (value * per_unit > unlikely) & (value * per_unit <= 100.0)
+        ):
             findings.warn(
                 f"{column.analyte} is unlikely for a rock",
                 row=int(lines[row]),
                 column=column.header,
-                found=f"{value[row]:g} {column.unit}",
+                found=f"{value:g} {column.unit}",
                 expected=f"at most about {unlikely:g} wt%",
                 remedy="check unit and decimal sign",
             )
     if column.analyte in _FAR_CHECKED:
-        _check_far(column, value, qualifier, lines, findings, float(top), float(bottom))
+        _check_far(column, index, values, qualifiers, lines, findings, (float(top), float(bottom)))
+
+
+def _found(
+    values: Any, index: int, wanted: Callable[[NDArray[np.float64]], NDArray[np.bool_]]
+) -> Iterator[tuple[int, float]]:
+    """(row, value) of those values of a column that are wanted."""
+    for start, rows in row_parts(values):
+        column = rows[:, index]
+        for row in np.flatnonzero(wanted(column)).tolist():
+            yield start + row, float(column[row])
 
 
 def _say_too_high(column: ResultColumn, value: float, high: float, line: int, findings: Findings) -> None:
@@ -99,43 +121,82 @@ def _say_too_high(column: ResultColumn, value: float, high: float, line: int, fi
 
 def _check_far(
     column: ResultColumn,
-    value: NDArray[np.float64],
-    qualifier: NDArray[np.uint8],
-    lines: NDArray[np.int64],
+    index: int,
+    values: Any,
+    qualifiers: Any,
+    lines: Any,
     findings: Findings,
-    top: float,
-    bottom: float,
+    ends: tuple[float, float],
 ) -> None:
     """Warn of values far from the column's median (of uncensored positive values, at least five)."""
+    top, bottom = ends
     if not top > 0 or (bottom > 0 and top / bottom < _FAR):
         return
-    measured = (qualifier == 0) & (value > 0)
-    if measured.sum() < 5:
+
+    def measured() -> Iterator[tuple[int, NDArray[np.float64], NDArray[np.bool_]]]:
+        for (start, rows), (_, signs) in zip(row_parts(values), row_parts(qualifiers), strict=True):
+            yield start, rows[:, index], (signs[:, index] == 0) & (rows[:, index] > 0)
+
+    median = median_of_parts(lambda: (value[kept] for _, value, kept in measured()))
+    if median is None:
         return
-    some = value[measured]
-    median = float(np.median(some))
-    if some.min() > median / _FAR and some.max() < median * _FAR:
-        return
-    for row in np.flatnonzero(measured & ((value < median / _FAR) | (value > median * _FAR))):
-        findings.warn(
-            f"{column.analyte} is far from the rest of its column",
-            row=int(lines[row]),
-            column=column.header,
-            found=f"{value[row]:g} {column.unit}",
-            expected=f"of the order of {median:g} {column.unit}",
-            remedy="check unit and decimal sign of this value",
-        )
+    for start, value, kept in measured():
+        for row in np.flatnonzero(kept & ((value < median / _FAR) | (value > median * _FAR))).tolist():
+            findings.warn(
+                f"{column.analyte} is far from the rest of its column",
+                row=int(lines[start + row]),
+                column=column.header,
+                found=f"{value[row]:g} {column.unit}",
+                expected=f"of the order of {median:g} {column.unit}",
+                remedy="check unit and decimal sign of this value",
+            )
 
 
-def check_units(columns: list[ResultColumn], values: NDArray[np.float64], findings: Findings) -> None:
+def median_of_parts(parts: Callable[[], Iterable[NDArray[np.float64]]], at_once: int = 100_000) -> float | None:
+    """The median of positive numbers that come in parts, None of fewer than five; more than ``at_once`` never lie here.
+
+    Of many: they are counted in narrow classes of their logarithm, and only those of the middle classes are sorted.
+    """
+    count = sum(len(part) for part in parts())
+    if count < 5:
+        return None
+    if count <= at_once:
+        return float(np.median(np.concatenate(list(parts()))))
+    edges = np.exp2(np.arange(-1074.0, 1025.0) / 1.0)
+    middle = np.array([(count - 1) // 2, count // 2])
+    low, high = 0.0, np.inf
+    below = 0
+    while True:
+        edges = edges[(edges > low) & (edges < high)]
+        counted = np.zeros(len(edges) + 1, np.int64)
+        for part in parts():
+            inside = part[(part >= low) & (part < high)]
+            counted += np.bincount(np.searchsorted(edges, inside, side="right"), minlength=len(edges) + 1)
+        ends = below + np.cumsum(counted)
+        first, last = np.searchsorted(ends, middle, side="right").tolist()
+        bounds = np.concatenate([[low], edges, [high]])
+        below = int(ends[first - 1]) if first else below
+        held = int(ends[last]) - below
+        narrower = (float(bounds[first]), float(bounds[last + 1]))
+        if held <= at_once or narrower == (low, high):
+            some = np.sort(np.concatenate([part[(part >= narrower[0]) & (part < narrower[1])] for part in parts()]))
+            return float(some[middle - below].mean())
+        low, high = narrower
+        edges = np.linspace(low, high, 2049)
+
+
+def check_units(columns: list[ResultColumn], values: Any, findings: Findings) -> None:
     """Warn where a whole column sits far from its usual order: SiO2 as a fraction of one, an oxide in wt% under ppm."""
     with np.errstate(all="ignore"):
         for index, column in enumerate(columns):
             if column.analyte not in ("SiO2", "Al2O3") or not column.unit or column.analyte not in ANALYTES:
                 continue
-            value = values[:, index]
-            top = float(np.fmax.reduce(value)) * WT_PERCENT_PER_UNIT[column.unit] if value.size else np.nan
-            if np.isfinite(value).sum() >= 3 and 0 < top < 1.0:
+            highest, known = np.nan, 0
+            for _, rows in row_parts(values):
+                highest = np.fmax(highest, np.fmax.reduce(rows[:, index])) if len(rows) else highest
+                known += int(np.isfinite(rows[:, index]).sum())
+            top = float(highest) * WT_PERCENT_PER_UNIT[column.unit]
+            if known >= 3 and 0 < top < 1.0:
                 findings.warn(
                     f"all of {column.analyte} is below 1 wt%",
                     column=column.header,

@@ -126,7 +126,7 @@ def _check_dips(
         findings.add(
             "every dip of the file is positive", column=headings["dip_deg"], found=f"{min(dips):g} to {max(dips):g}",
             expected="negative dips for holes that go down",
-            remedy="turn the signs (a hole straight down has -90); if they truly go up, say so on reading",
+            remedy="turn the signs (a hole straight down has -90); else use --positive-dips down or up",
         )  # fmt: skip
 
 

@@ -44,8 +44,10 @@ def settle_columns(
             continue
         method = heading.method
         digestion = next((told for text in (method, heading.header) if text and (told := digestion_in(text))), None)
-        if digestion is None and method is None and stated_digestion:
-            digestion, method = stated_digestion, stated_method
+        if digestion is None and stated_digestion and (method is None or stated_method is None):
+            weighed = heading.heading.analyte in _WEIGHED
+            digestion = None if weighed and stated_method is None else stated_digestion
+            method = method or stated_method
         column = ResultColumn(
             heading.position,
             heading.header,
@@ -167,12 +169,13 @@ def _settle_unit(column: ResultColumn, foreign: str | None, stated: str | None, 
 
 
 def _say_unknown_digestions(columns: list[ResultColumn], findings: Findings) -> None:
-    unknown = [column.header for column in columns if column.digestion == "unknown" and column.analyte not in _WEIGHED]
+    dissolved = [column for column in columns if column.analyte not in _WEIGHED]
+    unknown = [column.header for column in dissolved if column.digestion == "unknown"]
     if not unknown:
         return
     named = ", ".join(unknown[:6]) + (f" and {len(unknown) - 6} more" if len(unknown) > 6 else "")
     findings.warn(
-        f"the digestion is not told for {len(unknown)} of {len(columns)} columns ({named})",
+        f"the digestion is not told for {len(unknown)} of {len(dissolved)} columns ({named})",
         expected="a method row or heading with words such as lithium borate fusion, XRF, four-acid, aqua regia",
         remedy="state it in a method row or in a reading recipe; until then it counts as unknown",
     )

@@ -18,6 +18,7 @@ __all__ = [
     "Composition",
     "StoredBlock",
     "StoredColumn",
+    "batches_by_newness",
     "load_blocks",
     "load_composition",
     "load_context",
@@ -186,6 +187,14 @@ def _newness(connection: sa.Connection) -> dict[int, int]:
         "imported_at, batch_id",
     )
     return {row[0]: rank for rank, row in enumerate(rows)}
+
+
+def batches_by_newness(connection: sa.Connection) -> list[str]:
+    """The codes of all batches from the oldest to the newest: what ``newness`` of a block counts."""
+    ranks = _newness(connection)
+    rows = raw_rows.select(connection, "SELECT batch_id, code FROM batch WHERE batch_id {ids}", list(ranks))
+    codes = dict(rows)
+    return [codes[batch_id] for batch_id in sorted(ranks, key=ranks.__getitem__)]
 
 
 def load_composition(connection: sa.Connection, sample_ids: Any) -> Composition:

@@ -17,7 +17,7 @@ import sqlalchemy as sa
 from registry.errors import Problem
 from registry.store import bulk, master_checks, master_positions, positions, raw_rows, tables
 from registry.store.master_kinds import MASTER_KINDS, WHOLE_COLUMNS, MasterKind
-from registry.store.near_codes import nearest
+from registry.store.near_codes import near_misses, nearest
 from registry.store.sheets import VERDICT_WORDS
 
 Rows = dict[str, list[Any]]
@@ -268,6 +268,16 @@ def add_samples(connection: sa.Connection, codes: Sequence[str], kind: str = "un
 def near_codes(connection: sa.Connection, codes: Sequence[str]) -> dict[str, str]:
     """The nearest registered sample code of each code that has one."""
     return nearest(codes, connection.execute(sa.select(tables.sample.c.code)).scalars()) if codes else {}
+
+
+def codes_written_otherwise(connection: sa.Connection, codes: Sequence[str]) -> dict[str, list[str]]:
+    """Registered sample codes that unregistered ones differ from only in case, spaces, dashes or leading zeros."""
+    return near_misses(codes, connection.execute(sa.select(tables.sample.c.code)).scalars())
+
+
+def sample_codes(connection: sa.Connection, sample_ids: Collection[int]) -> dict[int, str]:
+    """The codes of samples by id."""
+    return dict(raw_rows.select(connection, "SELECT sample_id, code FROM sample WHERE sample_id {ids}", sample_ids))
 
 
 def samples_of_kinds(connection: sa.Connection, kinds: Sequence[str]) -> np.ndarray:
