@@ -74,7 +74,8 @@ def _range_warning(method: Method) -> Warning | None:
         code=f"{method.key}_outside_range",
         column=output.name,
         value_column=ranges[0].column,
-        text=f"outside the range {method.label} was calibrated for ({spelled}); {ranges[0].column} is {{value}}",
+        text=f"outside the range {method.label} was calibrated for ({spelled}); {ranges[0].column} is {{value}}"
+        + (", the others stand in their sheets" if len(ranges) > 1 else ""),
         mask=outside,
         inputs=(output.name, *(limits.column for limits in ranges)),
     )
