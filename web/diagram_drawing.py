@@ -6,6 +6,7 @@ needed: no inline style, no script. Symbols differ by shape as well as by colour
 
 from __future__ import annotations
 
+from collections import Counter
 from collections.abc import Iterable, Mapping, Sequence
 from dataclasses import dataclass
 from typing import Any
@@ -107,11 +108,13 @@ def _symbol(name: str, r: float) -> Symbol:
 
 @dataclass
 class Entry:
-    """One line of the legend. ``address`` leads to the samples of this group alone, where a condition says so."""
+    """One line of the legend. ``address`` leads to the samples of this group alone, where a condition says so; what
+    has more ``depth`` is drawn first, beneath the others."""
 
     name: str
     words: str
     count: int
+    depth: int = 0
     address: str = ""
 
     @property
@@ -123,33 +126,38 @@ class Entry:
         return _symbol(self.name, SMALL_RADIUS)
 
 
-def legend_of(group: Group, words: Sequence[Any], nothing: str) -> tuple[list[Entry], list[str]]:
-    """(legend, symbol name of each point) for the stored group values of the points drawn, in their order.
+def legend_of(
+    group: Group, every: Sequence[Any], drawn: Sequence[Any], nothing: str, fixed: Sequence[str] = ()
+) -> tuple[list[Entry], list[str]]:
+    """(legend, symbol name of each point drawn) from the stored group values of every sample and of those drawn.
 
-    Verdicts stand in their own order; other groups by how many points they have, the smaller ones together.
+    A group has the same symbol in every diagram: by its place among ``fixed`` names where these are few, otherwise by
+    how many samples it has, the smallest together. Verdicts have their own symbols and lie on one another in their
+    order; of other groups the smaller lies on top.
     """
-    counts: dict[Any, int] = {}
-    for value in words:
-        counts[value] = counts.get(value, 0) + 1
-    entries: list[Entry] = []
+    counts = Counter(drawn)
     names: dict[Any, str] = {None: NONE}
     if group.is_verdict:
-        for word in ("favourable", "possible", "undecided", "unfavourable"):
-            stored = VERDICTS.index(word)
-            names[stored] = word
-            if counts.get(stored):
-                entries.append(Entry(word, word, counts[stored]))
+        names |= {VERDICTS.index(word): word for word in _VERDICT_LOOKS}
+        words = {stored: word for stored, word in names.items() if stored is not None}
     else:
-        ranked = sorted((value for value in counts if value is not None), key=lambda value: (-counts[value], value))
-        for place, value in enumerate(ranked[:MOST_GROUPS]):
-            names[value] = str(place)
-            entries.append(Entry(str(place), str(value).replace("_", " "), counts[value]))
-        if rest := ranked[MOST_GROUPS:]:
-            names |= dict.fromkeys(rest, OTHERS)
-            entries.append(Entry(OTHERS, f"{len(rest)} others", sum(counts[value] for value in rest)))
-    if counts.get(None):
+        ranked = list(fixed)
+        if not 0 < len(fixed) <= MOST_GROUPS:
+            size = Counter(every)
+            ranked = sorted((value for value in size if value is not None), key=lambda value: (-size[value], value))
+        names |= {value: str(place) for place, value in enumerate(ranked[:MOST_GROUPS])}
+        words = {value: str(value).replace("_", " ") for value in ranked[:MOST_GROUPS]}
+        names |= dict.fromkeys(ranked[MOST_GROUPS:], OTHERS)
+    entries = [Entry(names[value], word, counts[value]) for value, word in words.items() if counts[value]]
+    others = [value for value, name in names.items() if name == OTHERS and counts[value]]
+    if others:
+        spoken = "1 other" if len(others) == 1 else f"{len(others)} others"
+        entries.append(Entry(OTHERS, spoken, sum(counts[value] for value in others)))
+    if counts[None]:
         entries.append(Entry(NONE, nothing, counts[None]))
-    return entries, [names[value] for value in words]
+    for place, entry in enumerate(entries):
+        entry.depth = place if group.is_verdict else entry.count
+    return entries, [names[value] for value in drawn]
 
 
 @dataclass(frozen=True)
@@ -171,11 +179,11 @@ def percent(across: float, up: float) -> tuple[str, str]:
 
 
 def points_svg(points: Sequence[Point], entries: Sequence[Entry]) -> Markup:
-    """Links to the samples, each a symbol; the group that the legend names first is drawn last, on top."""
-    order = {entry.name: place for place, entry in enumerate(reversed(entries))}
+    """Links to the samples, each a symbol."""
+    depth = {entry.name: entry.depth for entry in entries}
     base = url_for("sample.page", code="x")[:-1]
     parts = []
-    for point in sorted(points, key=lambda point: order.get(point.symbol, 0)):
+    for point in sorted(points, key=lambda point: -depth.get(point.symbol, 0)):
         place = f'x="{point.left}" y="{point.top}"'
         doubt = f'<use href="#d-limit" {place}/>' if point.is_doubtful else ""
         stale = f'<use href="#d-stale" {place}/>' if point.is_stale else ""
@@ -194,7 +202,7 @@ def panel_paths(placed: Placed, symbols: Sequence[str], entries: Sequence[Entry]
         if name:
             members.setdefault(name, []).append(f"M{across[place] * width:.1f} {(1 - up[place]) * height:.1f}")
     parts = []
-    for entry in reversed(entries):
+    for entry in sorted(entries, key=lambda entry: -entry.depth):
         symbol = entry.small_symbol
         for kind, path in symbol.parts:
             drawn = "".join(move + path for move in members.get(entry.name, ()))

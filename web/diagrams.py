@@ -57,7 +57,7 @@ def page() -> Any:
         elif unsettled(arguments):
             return redirect(address([*asked.arguments(), *choice.pairs()], "diagrams.page"))
         choices = samples_reading.choices(connection)
-        drawn = {} if problems else _drawn(connection, asked, choice, columns)
+        drawn = {} if problems else _drawn(connection, asked, choice, columns, choices.get(choice.by, ()))
     context = sentence_context(asked, arguments, columns, targets)
     body = render_template(
         "diagrams.html",
@@ -79,8 +79,9 @@ def page() -> Any:
     return body, 400 if problems else 200
 
 
-def _drawn(connection: Any, asked: Filter, choice: Choice, columns: Columns) -> dict[str, Any]:
-    """Everything below the sentence."""
+def _drawn(connection: Any, asked: Filter, choice: Choice, columns: Columns, fixed: Sequence[str]) -> dict[str, Any]:
+    """Everything below the sentence. ``fixed`` are all names that samples can be grouped by, where they are listed."""
+    nothing = NOTHING_WORDS.get(choice.by, "not judged")
     panels = PANELS.get(choice.key)
     shown = [DIAGRAMS[key] for key in panels.members] if panels else [DIAGRAMS[choice.key]]
     needed = list(dict.fromkeys(name for diagram in shown for name in diagram.columns))
@@ -91,17 +92,17 @@ def _drawn(connection: Any, asked: Filter, choice: Choice, columns: Columns) -> 
     common = {"total": len(every), "diagram": panels or shown[0], "is_panels": panels is not None}
     left_out = _controls_left_out(len(every) - len(rows), asked, choice)
     if panels:
-        return common | _panels(shown, needed, rows, values, choice, asked) | {"left_out": left_out}
+        return common | _panels(shown, needed, rows, values, choice, asked, nothing, fixed) | {"left_out": left_out}
     diagram = shown[0]
     x, y, _ = coordinates(diagram, values)
     window = window_of(diagram, x, y, choice.ends, whole=choice.whole)
     placed = place(diagram, values, window)
     causes = reading.cause_words(connection) if placed.count(MISSING) else {}
     left_out += _left_out(diagram, rows, placed, causes, asked, choice)
-    marked = _marked(connection, diagram, quantities, asked, choice, window, causes)
+    marked = _marked(connection, diagram, quantities, asked, choice, window)
     positions = [place_ for place_, state in enumerate(placed.state.tolist()) if state == DRAWN]
     entries, symbols = drawing.legend_of(
-        choice.group, [rows[p][GROUP] for p in positions], NOTHING_WORDS.get(choice.by, "not judged")
+        choice.group, [row[GROUP] for row in rows], [rows[p][GROUP] for p in positions], nothing, fixed
     )
     _link_entries(entries, rows, positions, symbols, asked, choice)
     found = common | {
@@ -246,7 +247,6 @@ def _csv_address(asked: Filter, diagram: Diagram) -> str:
 
 def _marked(
     connection: Any, diagram: Diagram, quantities: Sequence[Any], asked: Filter, choice: Choice, window: Window,
-    causes: Mapping[str, str],
 ) -> list[dict[str, Any]]:  # fmt: skip
     """The samples of ``mark`` with their places, drawn whether the filter holds them or not."""
     if not choice.mark:
@@ -274,12 +274,18 @@ def _marked(
 
 
 def _panels(
-    shown: Sequence[Diagram], needed: Sequence[str], rows: Sequence[Any], values: Any, choice: Choice, asked: Filter
+    shown: Sequence[Diagram],
+    needed: Sequence[str],
+    rows: Sequence[Any],
+    values: Any,
+    choice: Choice,
+    asked: Filter,
+    nothing: str,
+    fixed: Sequence[str],
 ) -> dict[str, Any]:
     """Small diagrams that share one legend; each leads to its large one."""
-    entries, symbols = drawing.legend_of(
-        choice.group, [row[GROUP] for row in rows], NOTHING_WORDS.get(choice.by, "not judged")
-    )
+    stored = [row[GROUP] for row in rows]
+    entries, symbols = drawing.legend_of(choice.group, stored, stored, nothing, fixed)
     _link_entries(entries, rows, range(len(rows)), symbols, asked, choice)
     width, height = PANEL_SIZE
     drawn = []

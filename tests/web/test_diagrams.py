@@ -15,7 +15,9 @@ from registry.diagrams import DIAGRAMS, PANELS
 from registry.petrology.field_lines import DIAGRAMS as FIELD_LINES
 from registry.petrology.references import REFERENCES
 from registry.store.engine import Registry
+from registry.store.reading.diagrams import Group
 from web import diagrams as page_module
+from web.diagram_drawing import legend_of
 from web.security import CONTENT_SECURITY_POLICY
 from web.wording import formula
 
@@ -131,6 +133,23 @@ def test_groups_differ_by_shape_as_well_as_colour(client: FlaskClient) -> None:
     assert set(shapes) == {"0", "1"}
     assert len(set(shapes.values())) == 2
     assert re.findall(r'draw these alone">([^<]+)</a>', page) == ["Aster stock", "Brock gabbro"]
+
+
+@pytest.mark.parametrize(
+    "query", ["diagram=tas", "diagram=sr_y", "diagram=tas&intrusion=Brock+gabbro", "diagram=harker"]
+)
+def test_an_intrusion_keeps_its_symbol_in_every_diagram_and_filter(client: FlaskClient, query: str) -> None:
+    page = get(client, f"/diagrams?{query}")
+    legend = re.findall(r'<g class="s-(\w+)">.{0,400}?draw these alone">Brock gabbro</a>', page, re.DOTALL)
+    assert legend[-1] == "orange"
+
+
+def test_many_groups_keep_the_largest_and_join_the_rest() -> None:
+    stored = [name for place, name in enumerate("abcdefghijk") for _ in range(20 - place)] + [None]
+    entries, symbols = legend_of(Group("lithology"), stored, stored, "no lithology logged")
+    assert [entry.words for entry in entries] == [*"abcdefgh", "3 others", "no lithology logged"]
+    assert sum(entry.count for entry in entries) == len(stored) == len(symbols)
+    assert symbols[0] == "0" and symbols[-1] == "none" and symbols[-2] == "others"
 
 
 def test_groups_by_verdict_of_a_target_equal_the_list(client: FlaskClient) -> None:
