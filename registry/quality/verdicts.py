@@ -74,11 +74,15 @@ def state_of_analyte(controls: Controls, outcome: Outcome) -> AnalyteState | Non
     difference = 100.0 * (outcome.found[measured] - outcome.expected[measured]) / outcome.expected[measured]
     mean, drift = bias(difference), least_squares(controls.line_no[measured] / 100.0, difference)
     if mean.n >= RESULTS_FOR_BIAS and abs(mean.mean) > max(PERCENT_TO_NAME, ERRORS_TO_NAME * mean.error):
-        remarks.append(f"bias {mean.mean:+.2g} % (standard error {mean.error:.2g}) over {mean.n} reference materials")
+        remarks.append(
+            f"bias {_two_digits(mean.mean, '+')} % (standard error {_two_digits(mean.error)}) over {mean.n} reference materials"
+        )
     span = float(np.ptp(controls.line_no[measured])) / 100.0 if measured.any() else 0.0
     seen = drift.n >= RESULTS_FOR_DRIFT and abs(drift.slope) > ERRORS_TO_NAME * drift.slope_error
     if seen and abs(drift.slope) * span > PERCENT_TO_NAME:
-        remarks.append(f"drift {drift.slope:+.2g} % a hundred lines (standard error {drift.slope_error:.2g})")
+        remarks.append(
+            f"drift {_two_digits(drift.slope, '+')} % a hundred lines (standard error {_two_digits(drift.slope_error)})"
+        )
     fit = outcome.precision
     return AnalyteState(
         FAILS if fails else REMARKS if remarks else PASSES,
@@ -120,3 +124,8 @@ def _about(controls: Controls, outcome: Outcome, row: int, words: str, verb: str
         f"{words} {named + ' ' if named else ''}{verb} on line {controls.line_no[row]}: found "
         f"{outcome.found[row]:.4g}{expected} {outcome.column.unit}{score} ({outcome.rules[row]})"
     )
+
+
+def _two_digits(number: float, sign: str = "") -> str:
+    """Two significant digits, and whole numbers from ten up: -1.8, 0.0013, -100."""
+    return f"{number:{sign},.0f}" if abs(number) >= 10.0 else f"{number:{sign}.2g}"
