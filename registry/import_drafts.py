@@ -39,7 +39,8 @@ _ID = re.compile(r"[A-Za-z0-9_-]{16}")
 class DraftFile:
     """One file of a draft: what the person chose for it, and what was understood when it was last read.
 
-    ``parts`` are the sheets of a workbook or the members of an archive that hold a table, where there are several.
+    ``looked`` holds one description a table; ``parts`` are the sheets of a workbook or the members of an archive that
+    hold a table, where there are several (``sheet`` names the one to read, None: all of them).
     """
 
     name: str
@@ -52,7 +53,7 @@ class DraftFile:
     positive_dips: str | None = None
     unit: str | None = None
     parts: list[str] = field(default_factory=list)
-    looked: dict[str, Any] | None = None
+    looked: list[dict[str, Any]] = field(default_factory=list)
 
     def choice(self) -> FileChoice:
         """The choices as the import takes them."""
@@ -169,9 +170,9 @@ class DraftFolder:
         partial.replace(path)
 
     def drop_files(self, draft: Draft) -> None:
-        """Delete the files sent (the registry keeps what it stored); the report stays."""
+        """Delete the files sent (the registry keeps what it stored); the report and refused rows stay."""
         for path in self.paths(draft):
-            shutil.rmtree(path.parent, ignore_errors=True)
+            path.unlink(missing_ok=True)
 
     def delete(self, draft_id: str) -> None:
         """Delete a draft with its files."""

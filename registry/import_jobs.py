@@ -15,7 +15,7 @@ from registry.clock import now
 from registry.errors import InputProblems, PlutonbookError
 from registry.import_drafts import DONE, FAILED, READ, READING, REFUSED, STORING, WAITING, Draft, DraftFolder
 from registry.importing import ImportOptions, import_files
-from registry.intake import Reading, read_all
+from registry.intake import Reading
 from registry.intake_choices import describe_reading
 from registry.store.engine import Registry
 
@@ -133,6 +133,7 @@ class ImportJobs:
         paths = self.folder.paths(draft)
         number_of = {path: number for number, path in enumerate(paths)}
         saved_at = 0.0
+        begun: set[Path] = set()
 
         def progress(what: str, done: int, total: int) -> None:
             nonlocal saved_at
@@ -149,10 +150,13 @@ class ImportJobs:
 
         def on_read(path: Path, reading: Reading) -> None:
             file = draft.files[number_of[path]]
-            file.looked = describe_reading(reading)
-            if reading.whole_file_refused and reading.part is None and file.sheet is None:
-                parts = [one.part for one in read_all(path.name, path.read_bytes(), file.kind) if one.part is not None]
-                file.parts = parts if len(parts) > 1 else []
+            if path not in begun:
+                begun.add(path)
+                file.looked = []
+                file.parts = [] if file.sheet is None else file.parts
+            file.looked.append(describe_reading(reading))
+            if file.sheet is None and reading.part is not None:
+                file.parts.append(reading.part)
 
         choices = {path: file.choice() for path, file in zip(paths, draft.files, strict=True)}
         options = ImportOptions(**{**draft.options, "dry_run": not draft.storing})

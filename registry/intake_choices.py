@@ -2,10 +2,12 @@
 
 from __future__ import annotations
 
+from collections import Counter
 from collections.abc import Mapping, Sequence
 from dataclasses import dataclass, replace
 from typing import Any
 
+from registry.errors import Problem
 from registry.intake import KINDS, ColumnChoice, Reading, Recipe, ResultTable
 from registry.intake.units import CANONICAL_UNITS
 from registry.petrology.analytes import ANALYTES, CHOSEN_INDEX, WT_PERCENT_PER_UNIT
@@ -23,6 +25,8 @@ KIND_NAMES = KINDS
 UNIT_NAMES = CANONICAL_UNITS
 ANALYTE_NAMES = tuple(ANALYTES)
 TIMES = "\N{MULTIPLICATION SIGN}"
+#: Equal problems that are listed one by one.
+LISTED = 20
 DIGESTION_NAMES = tuple(name for name in DIGESTIONS if name and name != "unknown_without_silica")
 
 
@@ -47,7 +51,7 @@ def describe_reading(reading: Reading) -> dict[str, Any]:
         "rows": len(table) if table is not None else len(master) if master is not None else 0,
         "ok": reading.ok,
         "understood": [text for text in reading.understood if not is_of_column(text)],
-        "problems": [problem.as_dict() for problem in reading.problems],
+        "problems": _listed(reading.problems),
         "refused_rows": len(reading.refused_lines),
         "whole_file_refused": reading.whole_file_refused,
         "columns": [] if table is None else described_columns(table),
@@ -58,6 +62,22 @@ def describe_reading(reading: Reading) -> dict[str, Any]:
         "lab": table.lab if table is not None else None,
         "recipe": None if reading.recipe is None else reading.recipe.to_json(),
     }
+
+
+def _listed(problems: Sequence[Problem]) -> list[dict[str, Any]]:
+    """Problems as dictionaries, of many alike the first; the rest is counted in a last one."""
+    listed: list[dict[str, Any]] = []
+    counts: Counter[tuple[str, str]] = Counter()
+    for problem in problems:
+        group = (problem.severity, problem.what)
+        counts[group] += 1
+        if counts[group] <= LISTED:
+            listed.append(problem.as_dict())
+    for (severity, what), count in counts.items():
+        if count > LISTED:
+            more = Problem(problems[0].file, f"{count - LISTED:,} more of the same kind ({what})", severity=severity)
+            listed.append(more.as_dict())
+    return listed
 
 
 def is_of_column(sentence: str) -> bool:
@@ -99,11 +119,15 @@ def use_words(analyte: str, unit: str, digestion: str, reports_silica: bool) -> 
     return words + (f"; a minimum by {DIGESTION_WORDS[code]}" if carried == MINIMUM else "")
 
 
-def ignored_columns(recipe: str | None, shown: Sequence[Mapping[str, Any]]) -> list[dict[str, Any]]:
-    """The columns that a recipe leaves out, in the same form as those shown, so that they can be taken in again."""
+def ignored_columns(recipe: str | None, shown: Sequence[Mapping[str, Any]], made: str | None) -> list[dict[str, Any]]:
+    """The columns of a table that a recipe leaves out, in the form of those shown, so that they can be taken in again.
+
+    ``recipe`` and ``made`` (the recipe of the reading, which knows the headings of the table) are JSON.
+    """
     if recipe is None:
         return []
     known = {column["header"] for column in shown}
+    headings = None if made is None else set(Recipe.from_json(made).shape)
     return [
         {
             "header": header,
@@ -116,22 +140,31 @@ def ignored_columns(recipe: str | None, shown: Sequence[Mapping[str, Any]]) -> l
             "use": "left out" if choice.ignore else "no results in it",
         }
         for header, choice in Recipe.from_json(recipe).columns.items()
-        if header not in known
+        if header not in known and (headings is None or header in headings)
     ]
 
 
-def recipe_from(made: str | None, chosen: str | None) -> Recipe:
-    """The recipe of a reading (JSON) with the settings of the one it was read with; an empty one for none."""
-    recipe = Recipe() if made is None else Recipe.from_json(made)
+def recipe_from(made: Sequence[str], chosen: str | None) -> Recipe:
+    """The recipe of a file: that of each of its tables (JSON) together, with the settings it was read with."""
+    recipes = [Recipe.from_json(one) for one in made] or [Recipe()]
     given = Recipe() if chosen is None else Recipe.from_json(chosen)
+    columns = {header: choice for recipe in recipes for header, choice in recipe.columns.items()}
+    first = recipes[0]
     return replace(
-        recipe,
-        columns={**recipe.columns, **given.columns},
-        shape=recipe.shape or given.shape,
-        sample_header=given.sample_header or recipe.sample_header,
+        first,
+        columns={**columns, **given.columns},
+        shape=first.shape or given.shape,
+        sample_header=given.sample_header or (first.sample_header if len(recipes) == 1 else None),
         separator=given.separator,
         decimal=given.decimal,
     )
+
+
+def recipe_of_table(made: str | None, chosen: str | None) -> Recipe:
+    """The recipe of one table of a file, to be saved under a name: its own headings and columns only."""
+    recipe = recipe_from([made] if made else [], chosen)
+    own = set(recipe.shape) | (set(Recipe.from_json(made).columns) if made else set())
+    return replace(recipe, columns={header: choice for header, choice in recipe.columns.items() if header in own})
 
 
 def corrected_recipe(

@@ -57,8 +57,8 @@ def test_job_looks_first_and_stores_then(jobs: ImportJobs) -> None:
     looked = ended(jobs, draft)
     assert (looked.state, batches(jobs.registry)) == ("read", [])
     assert looked.report is not None and looked.report["dry_run"]
-    assert looked.files[0].looked is not None
-    assert [column["analyte"] for column in looked.files[0].looked["columns"]] == ["SiO2", "Zr"]
+    assert looked.files[0].looked
+    assert [column["analyte"] for column in looked.files[0].looked[0]["columns"]] == ["SiO2", "Zr"]
 
     jobs.store(looked)
     stored = ended(jobs, looked)

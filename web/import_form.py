@@ -3,13 +3,20 @@
 from __future__ import annotations
 
 import re
-from collections.abc import Mapping, Sequence
+from collections.abc import Iterator, Mapping, Sequence
 from typing import Any
 
 from werkzeug.datastructures import MultiDict
 
 from registry.import_drafts import Draft, DraftFile
-from registry.intake_choices import ColumnWish, corrected_recipe, ignored_columns, recipe_from, recipe_text
+from registry.intake_choices import (
+    ColumnWish,
+    corrected_recipe,
+    ignored_columns,
+    recipe_from,
+    recipe_of_table,
+    recipe_text,
+)
 
 SEPARATORS = {"": "as understood", ",": "comma", ";": "semicolon", "\t": "tab", "|": "vertical bar"}
 DECIMALS = {"": "as understood", ".": "point", ",": "comma"}
@@ -59,15 +66,20 @@ def take_options(draft: Draft, form: Mapping[str, str]) -> bool:
     return changed
 
 
+def table_key(number: int, table: int) -> str:
+    """What the fields of one table of one file end in."""
+    return str(number) if table == 0 else f"{number}.{table}"
+
+
 def take_choices(file: DraftFile, number: int, form: MultiDict[str, str]) -> bool:
     """Put what the form says of one file into it; True if anything is another than shown."""
-    if f"kind-{number}" not in form:
+    if f"file-{number}" not in form:
         return False
     before = (file.kind, file.recipe, file.sheet, file.negative_means_below, file.positive_dips, file.unit)
-    looked = file.looked or {}
-    kind = form.get(f"kind-{number}") or None
-    if kind != looked.get("kind"):
-        file.kind = kind
+    if f"kind-{number}" in form:
+        kind = form.get(f"kind-{number}") or None
+        if len(file.looked) != 1 or kind != file.looked[0]["kind"]:
+            file.kind = kind
     sheet = form.get(f"sheet-{number}") or None
     if sheet != file.sheet:
         file.sheet, file.recipe, file.recipe_name = sheet, None, None
@@ -82,41 +94,51 @@ def take_choices(file: DraftFile, number: int, form: MultiDict[str, str]) -> boo
 
 
 def _take_recipe(file: DraftFile, number: int, form: MultiDict[str, str]) -> None:
-    shown = {column["header"]: column for column in shown_columns(file)}
-    fill = form.get(f"fill-{number}", "")
     wishes, changed = [], False
-    fields = ("header", "analyte", "unit_of", "method", "digestion", "which")
-    rows = zip(*(form.getlist(f"{field}-{number}") for field in fields), strict=False)
-    for header, analyte, unit, method, digestion, which in rows:
-        ignore = f"ignore-{number}-{which}" in form
-        if digestion == "unknown" and fill:
-            digestion = fill
-        wish = ColumnWish(header, analyte.strip(), unit, method.strip(), digestion, ignore)
-        wishes.append(wish)
-        said = shown.get(header)
-        changed |= said is None or (wish.analyte, wish.unit, wish.method, wish.digestion, wish.ignore) != (
-            said["analyte"], said["unit"], said["method"], said["digestion"], said["ignore"],
-        )  # fmt: skip
+    for table in range(len(file.looked)):
+        key = table_key(number, table)
+        said = {column["header"]: column for column in shown_columns(file, table)}
+        for wish in _wishes(key, form):
+            wishes.append(wish)
+            column = said.get(wish.header)
+            changed |= column is None or (wish.analyte, wish.unit, wish.method, wish.digestion, wish.ignore) != (
+                column["analyte"], column["unit"], column["method"], column["digestion"], column["ignore"],
+            )  # fmt: skip
     recipe = current_recipe(file)
-    said = {"sample_header": code_column(file), "separator": recipe.separator or "", "decimal": recipe.decimal or ""}
-    wanted = {name: form.get(f"{name}-{number}", said[name]) for name in said}
-    if changed or wanted != said:
+    shown = {"sample_header": code_column(file), "separator": recipe.separator or "", "decimal": recipe.decimal or ""}
+    wanted = {name: form.get(f"{name}-{number}", shown[name]) for name in shown}
+    if changed or wanted != shown:
+        if len(file.looked) > 1 and wanted["sample_header"] == shown["sample_header"]:
+            wanted["sample_header"] = ""  # each table has a column of its own
         file.recipe = recipe_text(corrected_recipe(recipe, wishes, **wanted))
 
 
-def current_recipe(file: DraftFile) -> Any:
-    """The recipe that a file was last read with, completed by what was understood."""
-    return recipe_from((file.looked or {}).get("recipe"), file.recipe)
+def _wishes(key: str, form: MultiDict[str, str]) -> Iterator[ColumnWish]:
+    """What the form says of the columns of one table."""
+    fill = form.get(f"fill-{key}", "")
+    fields = ("header", "analyte", "unit_of", "method", "digestion", "which")
+    rows = zip(*(form.getlist(f"{field}-{key}") for field in fields), strict=False)
+    for header, analyte, unit, method, digestion, which in rows:
+        if digestion == "unknown" and fill:
+            digestion = fill
+        yield ColumnWish(header, analyte.strip(), unit, method.strip(), digestion, f"ignore-{key}-{which}" in form)
+
+
+def current_recipe(file: DraftFile, table: int | None = None) -> Any:
+    """The recipe that a file, or one of its tables, was last read with, completed by what was understood."""
+    if table is not None:
+        return recipe_of_table(file.looked[table]["recipe"], file.recipe)
+    return recipe_from([looked["recipe"] for looked in file.looked if looked["recipe"]], file.recipe)
 
 
 def code_column(file: DraftFile) -> str:
-    return (file.looked or {}).get("sample_header") or ""
+    return next((looked["sample_header"] for looked in file.looked if looked["sample_header"]), "")
 
 
-def shown_columns(file: DraftFile) -> list[dict[str, Any]]:
-    """The columns of a file of results as the page lists them: those read, then those left out."""
-    columns = list((file.looked or {}).get("columns", ()))
-    return columns + ignored_columns(file.recipe, columns)
+def shown_columns(file: DraftFile, table: int) -> list[dict[str, Any]]:
+    """The columns of a table of results as the page lists them: those read, then those left out."""
+    looked = file.looked[table]
+    return list(looked["columns"]) + ignored_columns(file.recipe, looked["columns"], looked["recipe"])
 
 
 def grouped_problems(problems: Sequence[Mapping[str, Any]]) -> list[dict[str, Any]]:
@@ -142,10 +164,27 @@ def grouped_problems(problems: Sequence[Mapping[str, Any]]) -> list[dict[str, An
 
 def problems_of(draft: Draft, file: DraftFile, severity: str) -> list[dict[str, Any]]:
     """The faults of one file, those found on reading it and those found on storing it, grouped."""
-    looked = list((file.looked or {}).get("problems", ()))
+    looked = [problem for table in file.looked for problem in table["problems"]]
     stored = [problem for problem in draft.problems if _is_of(problem["file"], file.name)]
     every = looked + [problem for problem in stored if problem not in looked]
     return grouped_problems([problem for problem in every if problem["severity"] == severity])
+
+
+def precedence_words(report: Mapping[str, Any]) -> list[str]:
+    """Which results go before which, in sentences: of several columns of the file, and against earlier batches."""
+    told = []
+    for one in report.get("alternatives", ()):
+        taken = ", ".join(f"“{header}” in {number:,} lines" for header, number in one["taken"].items())
+        told.append(f"Several columns for {one['column']}: taken from {taken}.")
+    groups: dict[tuple[bool, str, str], list[str]] = {}
+    for one in report.get("precedence", ()):
+        named = f"{one['column']} ({one['samples']:,} {'sample' if one['samples'] == 1 else 'samples'})"
+        groups.setdefault((one["replaced"], one["earlier"], one["later"]), []).append(named)
+    for (replaced, earlier, later), names in groups.items():
+        said = f"{later} replaces {earlier}" if replaced else f"{earlier} stays before {later}"
+        more = f" and {len(names) - 12} more" if len(names) > 12 else ""
+        told.append(f"{said[:1].upper()}{said[1:]}: {', '.join(names[:12])}{more}.")
+    return told
 
 
 def other_problems(draft: Draft) -> list[dict[str, Any]]:

@@ -2,14 +2,15 @@
 
 from __future__ import annotations
 
+from pathlib import Path
 from typing import Any
 
-from flask import Blueprint, Flask, abort, current_app, jsonify, redirect, render_template, request, url_for
+from flask import Blueprint, Flask, abort, current_app, jsonify, redirect, render_template, request, send_file, url_for
 from werkzeug.datastructures import FileStorage
 
 from registry import reading_recipes
 from registry.errors import PlutonbookError
-from registry.import_drafts import DONE, Draft, DraftFolder, state_folder
+from registry.import_drafts import DONE, Draft, DraftFile, DraftFolder, state_folder
 from registry.import_jobs import ImportJobs
 from registry.intake_choices import ANALYTE_NAMES, DIGESTION_NAMES, KIND_NAMES, UNIT_NAMES
 from registry.store.reading import batches as batches_reading
@@ -39,6 +40,7 @@ def register(app: Flask, drafts: Any = None) -> None:
     app.config["MAX_FORM_PARTS"] = 50_000
     app.config["MAX_FORM_MEMORY_SIZE"] = 8 * 1024 * 1024
     app.jinja_env.filters["page_words"] = import_form.page_words
+    app.jinja_env.filters["precedence_words"] = import_form.precedence_words
     app.jinja_env.globals["state_words"] = lambda state: STATE_WORDS[state]
     app.register_blueprint(blueprint)
 
@@ -129,26 +131,36 @@ def _page(draft: Draft, notice: str = "", fault: str = "") -> Any:
         separators=import_form.SEPARATORS,
         decimals=import_form.DECIMALS,
         dips=import_form.DIPS,
-        keep_going_there=True,
     )
 
 
 def _file_view(draft: Draft, number: int) -> dict[str, Any]:
     file = draft.files[number]
-    looked = file.looked or {}
     recipe = import_form.current_recipe(file)
+    tables = []
+    for table, looked in enumerate(file.looked):
+        own = import_form.current_recipe(file, table)
+        tables.append(
+            {
+                "key": import_form.table_key(number, table),
+                "looked": looked,
+                "columns": import_form.shown_columns(file, table),
+                "proposed": reading_recipes.proposed_names(_jobs().registry, own.shape),
+            }
+        )
+    kinds = {looked["kind"] for looked in file.looked}
     return {
         "number": number,
         "file": file,
-        "looked": looked,
+        "tables": tables,
+        "kind": kinds.pop() if len(kinds) == 1 else None,
+        "kinds": kinds,
+        "ok": all(looked["ok"] for looked in file.looked) and bool(file.looked),
         "problems": import_form.problems_of(draft, file, "problem"),
         "warnings": import_form.problems_of(draft, file, "warning"),
-        "columns": import_form.shown_columns(file),
         "code": import_form.code_column(file),
         "headings": [heading for heading in dict.fromkeys(recipe.shape) if heading],
         "recipe": recipe,
-        "sheets": file.parts,
-        "proposed": reading_recipes.proposed_names(_jobs().registry, recipe.shape),
     }
 
 
@@ -176,28 +188,32 @@ def change(draft_id: str) -> Any:
     return _shown_soon(draft)
 
 
-def _number(draft: Draft, text: str) -> int:
-    if not text.isdecimal() or int(text) >= len(draft.files):
-        abort(400, "The form names a file that is not part of this import.")
-    return int(text)
+def _place(draft: Draft, text: str) -> tuple[DraftFile, int]:
+    """The file and the number of its table that a button of the form names."""
+    number, _, table = text.partition(".")
+    if number.isdecimal() and int(number) < len(draft.files) and (table or "0").isdecimal():
+        file = draft.files[int(number)]
+        if int(table or 0) < len(file.looked):
+            return file, int(table or 0)
+    abort(400, "The form names a file that is not part of this import.")
 
 
 def _use_reading(draft: Draft, argument: str, use: bool) -> None:
     """Read a file with the saved reading chosen in its form, or without any."""
-    file = draft.files[number := _number(draft, argument)]
-    file.recipe_name = request.form.get(f"saved-{number}") if use else None
+    file, _ = _place(draft, argument)
+    file.recipe_name = request.form.get(f"saved-{argument}") if use else None
     file.recipe = None
     if file.recipe_name is not None:
         file.recipe = reading_recipes.find_recipe(_jobs().registry, file.recipe_name).to_json()
 
 
 def _save_reading(draft: Draft, argument: str) -> Any:
-    """Keep the reading of one file under a name; what was changed is read again first, so that it is seen."""
-    file = draft.files[number := _number(draft, argument)]
-    name = " ".join(request.form.get(f"name-{number}", "").split())
+    """Keep the reading of one table under a name; what was changed in it is read again, so that it is seen."""
+    file, table = _place(draft, argument)
+    name = " ".join(request.form.get(f"name-{argument}", "").split())
     jobs = _jobs()
     try:
-        replaced = reading_recipes.save_recipe(jobs.registry, name, import_form.current_recipe(file))
+        replaced = reading_recipes.save_recipe(jobs.registry, name, import_form.current_recipe(file, table))
     except PlutonbookError as fault:
         return _page(draft, fault=str(fault)), 400
     file.recipe_name = name
@@ -208,6 +224,18 @@ def _save_reading(draft: Draft, argument: str) -> Any:
         return redirect(url_for("importing.page", draft_id=draft.draft_id), 303)
     said = "was replaced" if replaced else "is saved"
     return _page(draft, notice=f"The reading “{name}” {said}; a file with the same headings will propose it.")
+
+
+@blueprint.get("/import/<draft_id>/refused/<number>")
+def refused_rows(draft_id: str, number: str) -> Any:
+    """The rows of one file that were not stored, with the reasons; corrected, they can be imported again."""
+    draft = _found(draft_id)
+    files = (draft.report or {}).get("files", [])
+    known = number.isdecimal() and int(number) < len(files)
+    path = Path((files[int(number)]["refused_file"] if known else None) or "")
+    if not path.is_file() or not path.resolve().is_relative_to((_jobs().folder.place / draft.draft_id).resolve()):
+        raise Missing("file of refused rows", draft_id)
+    return send_file(path.resolve(), mimetype="text/csv", as_attachment=True, download_name=path.name)
 
 
 @blueprint.get("/import/<draft_id>/state.json")

@@ -12,6 +12,7 @@ from pathlib import Path
 from typing import Any
 
 import pytest
+from openpyxl import Workbook
 
 from tests.web.import_site import FAULTY, TRACES, Site
 from web import create_app, importing
@@ -82,6 +83,64 @@ def test_import_page_bad_file_tells_each_problem_in_its_place(site: Site) -> Non
     assert 'value="store"' not in page
     site.press(address, "store")
     assert rows(site, "SELECT count(*) FROM aliquot") == before
+
+
+def test_import_page_good_rows_are_stored_and_the_others_offered_with_reasons(site: Site) -> None:
+    address = site.send(("bad.csv", FAULTY + "KD-3,64.0,0.2\n"))
+    site.press(address, "read", keep_going="on")
+    page = site.client.get(address).text
+    assert "2 rows are left out; after storing they are offered" in page
+    site.press(address, "store")
+    assert rows(site, "SELECT count(*) FROM aliquot JOIN batch USING (batch_id) WHERE code = 'bad'") == [(1,)]
+    page = site.client.get(address).text
+    assert f'href="{address}/refused/0"' in page
+    answer = site.client.get(f"{address}/refused/0")
+    text = answer.data.decode("utf-8-sig")
+    assert "3002" in text and "sixty" in text and "KD-3" not in text
+    assert "attachment" in answer.headers["Content-Disposition"]
+    answer.close()
+    for number in ("1", "-1", "x"):
+        assert site.client.get(f"{address}/refused/{number}").status_code == 404
+
+
+def test_import_page_shows_and_stores_every_sheet_of_a_workbook(site: Site) -> None:
+    book = Workbook()
+    first, second = book.active, book.create_sheet("traces")
+    first.title = "majors"
+    for sheet, head, line in (
+        (first, ["Sample", "SiO2 XRF (%)", "MgO XRF (%)"], ["KD-1", 60.5, 2.1]),
+        (second, ["Lab no", "Au (ppb)", "Zr (ppm)"], ["KD-1", 5, 151]),
+    ):
+        sheet.append(head)
+        sheet.append(line)
+    held = io.BytesIO()
+    book.save(held)
+    address = site.send(("book.xlsx", held.getvalue()))
+    page = site.client.get(address).text
+    assert "2 tables: majors (1 row of results), traces (1 row of results)" in page
+    form = site.form(address)
+    assert form.getlist("header-0") == ["SiO2 XRF (%)", "MgO XRF (%)"]
+    assert form.getlist("header-0.1") == ["Au (ppb)", "Zr (ppm)"]
+    form.setlist("fill-0.1", ["four_acid"])
+    form.setlist("name-0.1", ["traces of a book"])
+    form.setlist("do", ["save:0.1"])
+    assert "is saved" in site.client.post(address, data=form).text
+    site.press(address, "store")
+    assert rows(site, "SELECT digestion, count(*) FROM batch_column WHERE header IN ('Au (ppb)', 'Zr (ppm)')") == [
+        ("four_acid", 2)
+    ]
+    later = site.send(("alone.csv", "Lab no,Au (ppb),Zr (ppm)\nKD-2,7,152\n"))
+    assert "traces of a book" in site.client.get(later).text
+    again = site.send(("book.xlsx", held.getvalue()))
+    site.press(again, "read", sheet__0="traces")
+    assert "1 row of results in 2 columns" in site.client.get(again).text
+
+
+def test_import_page_says_which_results_go_before_which(site: Site) -> None:
+    """Fusion goes before XRF of equal rank when its batch is newer: the silica of KD-1 comes from the new file."""
+    page = site.client.get(site.send(("new.csv", "Sample,SiO2 XRF (%),MgO XRF (%)\nKD-1,72.4,0.4\n"))).text
+    assert "Which results go before which" in page
+    assert "sio2_wt (1 sample)" in page and "replaces" in page
 
 
 def test_import_page_unknown_samples_are_named_and_added_on_request(site: Site) -> None:

@@ -22,7 +22,9 @@ PAGES = (
     "/", "/samples", "/samples.csv", "/samples/PB-001", "/samples/PB-003", "/samples/PB-020", "/batches",
     "/batches/Q-2041", "/targets", "/targets/porphyry_copper", "/targets/radiogenic_heat", "/methods", "/intrusions",
     "/sites", "/samples?sio2_wt_min=abc", "/samples/none", "/batches/none", "/targets/none", "/nowhere",
-    "/static/site.css", "/static/site.js", "/static/favicon.svg", "/import", "/import/none", "/import/none/state.json",
+    "/intrusions/Aster stock", "/intrusions?target=tin", "/intrusions/none", "/sites/DH-1", "/sites/OC-7",
+    "/sites/DH-1?value=sr_y&value=mg_number&target=tin", "/sites/none", "/settings", "/edit/sample/PB-001",
+    "/static/site.css", "/static/site.js", "/static/favicon.svg", "/import", "/import/none", "/import/none/state.json", "/import/none/refused/0",
     "/batch/file/Q-2041", "/batch/withdraw/Q-2041", "/reported/PB-001", "/reported/none", "/diagrams",
 )  # fmt: skip
 
@@ -228,7 +230,7 @@ def test_sample_page_links_lead_to_anchors_of_the_methods_page(client: FlaskClie
 def test_places_pages_count_samples_and_verdicts(client: FlaskClient) -> None:
     page = client.get("/intrusions").text
     assert "Aster stock" in page and "20 favourable" in page
-    assert re.search(r"DH-1.*?data-label=\"Samples\" class=\"number\">84<", client.get("/sites").text, re.S)
+    assert re.search(r"DH-1.*?data-label=\"Samples\" class=\"number\"><a [^>]*>84<", client.get("/sites").text, re.S)
 
 
 @pytest.mark.parametrize("address", ["/batches", "/intrusions", "/sites", "/targets"])
