@@ -75,7 +75,8 @@ def state_of_analyte(controls: Controls, outcome: Outcome) -> AnalyteState | Non
     mean, drift = bias(difference), least_squares(controls.line_no[measured] / 100.0, difference)
     if mean.n >= RESULTS_FOR_BIAS and abs(mean.mean) > max(PERCENT_TO_NAME, ERRORS_TO_NAME * mean.error):
         remarks.append(
-            f"bias {_two_digits(mean.mean, '+')} % (standard error {_two_digits(mean.error)}) over {mean.n} reference materials"
+            f"bias {_two_digits(mean.mean, '+')} % (standard error {_two_digits(mean.error)}) over {mean.n} reference "
+            "materials"
         )
     span = float(np.ptp(controls.line_no[measured])) / 100.0 if measured.any() else 0.0
     seen = drift.n >= RESULTS_FOR_DRIFT and abs(drift.slope) > ERRORS_TO_NAME * drift.slope_error
