@@ -10,7 +10,7 @@ from numpy.typing import NDArray
 
 from registry.intake.findings import Findings
 from registry.intake.readings import ResultColumn
-from registry.intake.spooled import row_parts
+from registry.intake.spooled import column_parts, row_parts
 from registry.petrology.analytes import ANALYTES, ELEMENT_SYMBOLS, OXIDE_SYMBOLS, WT_PERCENT_PER_UNIT
 
 #: Highest content of ordinary rocks and ores of igneous terrains, wt%; above it a warning. Common practice, no source.
@@ -96,8 +96,7 @@ def _found(
     values: Any, index: int, wanted: Callable[[NDArray[np.float64]], NDArray[np.bool_]]
 ) -> Iterator[tuple[int, float]]:
     """(row, value) of those values of a column that are wanted."""
-    for start, rows in row_parts(values):
-        column = rows[:, index]
+    for start, column in column_parts(values, index):
         for row in np.flatnonzero(wanted(column)).tolist():
             yield start + row, float(column[row])
 
@@ -134,8 +133,8 @@ def _check_far(
         return
 
     def measured() -> Iterator[tuple[int, NDArray[np.float64], NDArray[np.bool_]]]:
-        for (start, rows), (_, signs) in zip(row_parts(values), row_parts(qualifiers), strict=True):
-            yield start, rows[:, index], (signs[:, index] == 0) & (rows[:, index] > 0)
+        for (start, value), (_, sign) in zip(column_parts(values, index), column_parts(qualifiers, index), strict=True):
+            yield start, value, (sign == 0) & (value > 0)
 
     median = median_of_parts(lambda: (value[kept] for _, value, kept in measured()))
     if median is None:
@@ -153,36 +152,32 @@ def _check_far(
 
 
 def median_of_parts(parts: Callable[[], Iterable[NDArray[np.float64]]], at_once: int = 100_000) -> float | None:
-    """The median of positive numbers that come in parts, None of fewer than five; more than ``at_once`` never lie here.
-
-    Of many: they are counted in narrow classes of their logarithm, and only those of the middle classes are sorted.
-    """
+    """The median of positive numbers that come in parts, None of fewer than five; many never lie in memory together."""
     count = sum(len(part) for part in parts())
     if count < 5:
         return None
     if count <= at_once:
         return float(np.median(np.concatenate(list(parts()))))
-    edges = np.exp2(np.arange(-1074.0, 1025.0) / 1.0)
-    middle = np.array([(count - 1) // 2, count // 2])
-    low, high = 0.0, np.inf
-    below = 0
-    while True:
-        edges = edges[(edges > low) & (edges < high)]
-        counted = np.zeros(len(edges) + 1, np.int64)
+    lower = _of_rank(parts, (count - 1) // 2)
+    if count % 2 or sum(int((part <= lower).sum()) for part in parts()) > count // 2:
+        return lower
+    return 0.5 * (lower + min(float(part[part > lower].min(initial=np.inf)) for part in parts()))
+
+
+def _of_rank(parts: Callable[[], Iterable[NDArray[np.float64]]], rank: int) -> float:
+    """The number of a rank (0 the lowest) among positive ones, which sort as the whole numbers of their bits do."""
+    known = 0
+    for shift in (48, 32, 16, 0):
+        counts = np.zeros(1 << 16, np.int64)
         for part in parts():
-            inside = part[(part >= low) & (part < high)]
-            counted += np.bincount(np.searchsorted(edges, inside, side="right"), minlength=len(edges) + 1)
-        ends = below + np.cumsum(counted)
-        first, last = np.searchsorted(ends, middle, side="right").tolist()
-        bounds = np.concatenate([[low], edges, [high]])
-        below = int(ends[first - 1]) if first else below
-        held = int(ends[last]) - below
-        narrower = (float(bounds[first]), float(bounds[last + 1]))
-        if held <= at_once or narrower == (low, high):
-            some = np.sort(np.concatenate([part[(part >= narrower[0]) & (part < narrower[1])] for part in parts()]))
-            return float(some[middle - below].mean())
-        low, high = narrower
-        edges = np.linspace(low, high, 2049)
+            bits = np.ascontiguousarray(part).view(np.int64)
+            bits = bits if shift == 48 else bits[bits >> (shift + 16) == known]
+            counts += np.bincount((bits >> shift) & 0xFFFF, minlength=1 << 16)
+        ends = np.cumsum(counts)
+        here = int(np.searchsorted(ends, rank, side="right"))
+        rank -= int(ends[here] - counts[here])
+        known = known << 16 | here
+    return float(np.array([known], np.int64).view(np.float64)[0])
 
 
 def check_units(columns: list[ResultColumn], values: Any, findings: Findings) -> None:
@@ -192,9 +187,9 @@ def check_units(columns: list[ResultColumn], values: Any, findings: Findings) ->
             if column.analyte not in ("SiO2", "Al2O3") or not column.unit or column.analyte not in ANALYTES:
                 continue
             highest, known = np.nan, 0
-            for _, rows in row_parts(values):
-                highest = np.fmax(highest, np.fmax.reduce(rows[:, index])) if len(rows) else highest
-                known += int(np.isfinite(rows[:, index]).sum())
+            for _, value in column_parts(values, index):
+                highest = np.fmax(highest, np.fmax.reduce(value, initial=np.nan))
+                known += int(np.isfinite(value).sum())
             top = float(highest) * WT_PERCENT_PER_UNIT[column.unit]
             if known >= 3 and 0 < top < 1.0:
                 findings.warn(

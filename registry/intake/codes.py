@@ -4,7 +4,11 @@ from __future__ import annotations
 
 import re
 import unicodedata
+from collections.abc import Sequence
 from dataclasses import dataclass
+from typing import Any
+
+from registry.intake.spooled import PackedTexts, parts_of
 
 _SAMPLE = r"(samples?|smpl|smp|specimen|spec|field|feild|lab|laboratory|client|rock|station sample)"
 _ID = r"(id|ids|no|no\.|nos|number|num|nr|code|codes|name|names|ref|reference|identification|identifier"
@@ -23,6 +27,7 @@ _EATEN = re.compile(
     r"|\d{4}-\d\d-\d\d( 00:00:00)?|\d(\.\d+)?e\+\d{1,3})$"
 )
 _FLOAT_NOISE = re.compile(r"(?m)^\d+\.0$")
+_NUMERIC = re.compile(r"(?m)^\d+(\.\d+)?$")
 
 
 @dataclass(frozen=True)
@@ -95,22 +100,36 @@ def choose_code_column(
     return CodeColumn(-position, label, doubt)
 
 
-def tidy_codes(codes: list[str]) -> tuple[list[str], int, list[int]]:
+def tidy_codes(codes: Sequence[str]) -> tuple[Sequence[str], int, list[int]]:
     """Codes trimmed and in NFC; the number freed of float noise; positions of codes that look like eaten dates.
 
-    Float noise (``16.0`` for 16) is taken off only where every code that is a number carries it.
+    Float noise (``16.0`` for 16) is taken off only where every code that is a number carries it. PackedTexts come
+    back as PackedTexts, and are gone through in parts.
     """
-    codes = list(map(str.strip, codes))
-    joined = "\n".join(codes)
-    if not joined.isascii():
-        codes = [unicodedata.normalize("NFC", code).replace("\u00a0", " ").strip() for code in codes]
-        joined = "\n".join(codes)
-    freed = 0
-    if _FLOAT_NOISE.search(joined):
-        numbers = [code for code in codes if re.fullmatch(r"\d+(\.\d+)?", code)]
-        if all(code.endswith(".0") for code in numbers):
-            freed = len(numbers)
-            codes = [code[:-2] if _FLOAT_NOISE.fullmatch(code) else code for code in codes]
-            joined = "\n".join(codes)
-    eaten = [position for position, code in enumerate(codes) if _EATEN.match(code)] if _EATEN.search(joined) else []
-    return codes, freed, eaten
+    packed = isinstance(codes, PackedTexts)
+    noisy, clean = 0, True
+    tidy: Any = PackedTexts() if packed else []
+    for part in parts_of(codes):
+        trimmed = list(map(str.strip, part))
+        joined = "\n".join(trimmed)
+        if not joined.isascii():
+            trimmed = [unicodedata.normalize("NFC", code).replace("\u00a0", " ").strip() for code in trimmed]
+            joined = "\n".join(trimmed)
+        if clean and _NUMERIC.search(joined):
+            numbers = [code for code in trimmed if _NUMERIC.fullmatch(code)]
+            noisy += len(numbers)
+            clean = all(code.endswith(".0") for code in numbers)
+        tidy.extend(trimmed)
+    freed = noisy if clean else 0
+    if freed:
+        bare: Any = PackedTexts() if packed else []
+        for part in parts_of(tidy):
+            bare.extend(code[:-2] if _FLOAT_NOISE.fullmatch(code) else code for code in part)
+        tidy = bare
+    eaten: list[int] = []
+    start = 0
+    for part in parts_of(tidy):
+        if _EATEN.search("\n".join(part)):
+            eaten += [start + position for position, code in enumerate(part) if _EATEN.match(code)]
+        start += len(part)
+    return tidy, freed, eaten

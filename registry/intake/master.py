@@ -147,7 +147,7 @@ def _column(
                 "the code looks like a date or number made by a spreadsheet", row=int(lines[place]), column=heading,
                 found=codes[place], remedy="compare with the original list and correct the code",
             )  # fmt: skip
-        cells = codes
+        cells = list(codes)
     values: list[Any] = []
     for text, line in zip(cells, lines.tolist(), strict=True):
         text = text.strip()

@@ -2,6 +2,9 @@
 
 from __future__ import annotations
 
+from collections.abc import Callable
+from pathlib import Path
+
 from registry.intake import kinds
 from registry.intake.arrangement import LONG, TURNED, tell_arrangement
 from registry.intake.containers import BadContainer, Part, foreign_file, is_workbook, unpack
@@ -11,6 +14,7 @@ from registry.intake.layout import find_header_row
 from registry.intake.master import header_row, read_master
 from registry.intake.readings import KINDS, Reading, ReadingOptions
 from registry.intake.results import read_results
+from registry.intake.scanning import scan
 from registry.intake.sources import BrokenTable, DelimitedSource, GridSource, Source, tell_separator
 from registry.intake.workbook import read_sheets
 
@@ -73,6 +77,36 @@ def read_all(name: str, data: bytes, kind: str | None = None, options: ReadingOp
     return readings
 
 
+def read_path(
+    path: Path,
+    kind: str | None = None,
+    options: ReadingOptions | None = None,
+    *,
+    each: Callable[[bytes], object] = bytes,
+    watch: Callable[[int], object] | None = None,
+) -> Reading | None:
+    """``read_file`` for a large file on disk, at a memory that does not grow with it; None: read it the other way.
+
+    Only plain text in ASCII or UTF-8 is read like this. The reading is the same, except that its table of results
+    keeps its numbers in a scratch file. ``each`` is given every block of the file once, in order; ``watch`` is told
+    how many bytes have been read. Raises ValueError for an unknown kind.
+    """
+    if kind is not None and kind not in KINDS:
+        raise ValueError(f"unknown kind of file '{kind}'; known are {', '.join(KINDS)}")
+    options = options or ReadingOptions()
+    seen = scan(path, each)
+    if seen is None:
+        return None
+
+    def read(reading: Reading, findings: Findings) -> None:
+        separator = separator_of(path, seen.encoding, options, seen.quoted)
+        _say_encoding(reading, seen.encoding, separator)
+        source = DelimitedSource(path, seen.encoding, separator, seen.quoted, watch)
+        _read_table(reading, source, options, findings, seen.line_ends + 2, seen.underscores)
+
+    return _read(Reading(path.name, kind), Findings(path.name, options.listed), read)
+
+
 def _holds_a_table(source: Source) -> bool:
     rows, _ = source.preview(100)
     return _tell_kind(rows) != [] and len(rows) > 1
@@ -81,14 +115,21 @@ def _holds_a_table(source: Source) -> bool:
 def _one(
     name: str, part: str | None, data: bytes, source: Source | None, kind: str | None, options: ReadingOptions
 ) -> Reading:
-    findings = Findings(name if part is None else f"{name} [{part}]", options.listed)
-    reading = Reading(name, kind, part=part)
-    try:
+    def read(reading: Reading, findings: Findings) -> None:
         if isinstance(source, GridSource):
             reading.understood.append(f"sheet '{part}' of a workbook")
             _read_table(reading, source, options, findings, len(source.grid) + 1, 1 << 60)
         else:
             _read_text(reading, data, options, findings)
+
+    findings = Findings(name if part is None else f"{name} [{part}]", options.listed)
+    return _read(Reading(name, kind, part=part), findings, read)
+
+
+def _read(reading: Reading, findings: Findings, read: Callable[[Reading, Findings], None]) -> Reading:
+    """Let ``read`` fill the reading; what it found becomes the reading's problems."""
+    try:
+        read(reading, findings)
     except BrokenTable as fault:
         findings.add(fault.what, row=fault.line, remedy=fault.remedy)
         findings.whole_file_refused = True
@@ -112,7 +153,7 @@ def _read_text(reading: Reading, data: bytes, options: ReadingOptions, findings:
         findings.add(f"the file is {what}", expected="a table as delimited text (CSV) or .xlsx", remedy=remedy)
         return
     separator = separator_of(data, encoding, options)
-    reading.understood.append(f"encoding {encoding.words}; separator {_SEPARATOR_WORDS.get(separator, separator)}")
+    _say_encoding(reading, encoding, separator)
     if encoding.errors == "replace":
         findings.warn(
             f"some bytes have no meaning in {encoding.words}", remedy="see whether names with accents came out right"
@@ -122,9 +163,13 @@ def _read_text(reading: Reading, data: bytes, options: ReadingOptions, findings:
     _read_table(reading, source, options, findings, bound, data.count(b"_"))
 
 
-def separator_of(data: bytes, encoding: Encoding, options: ReadingOptions) -> str:
+def _say_encoding(reading: Reading, encoding: Encoding, separator: str) -> None:
+    reading.understood.append(f"encoding {encoding.words}; separator {_SEPARATOR_WORDS.get(separator, separator)}")
+
+
+def separator_of(data: bytes | Path, encoding: Encoding, options: ReadingOptions, quoted: bool | None = None) -> str:
     """What parts the cells of a text file: the recipe's word, else told from the headings."""
-    return (options.recipe and options.recipe.separator) or tell_separator(data, encoding, _known_headings)
+    return (options.recipe and options.recipe.separator) or tell_separator(data, encoding, _known_headings, quoted)
 
 
 def _read_table(

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections.abc import Sequence
 from dataclasses import dataclass, field
 from typing import Any
 
@@ -21,8 +22,8 @@ class ReadingOptions:
     ``recipe`` corrects what was understood; ``sheet`` names one sheet of a workbook or one member of an archive;
     ``negative_means_below`` reads ``-x`` as below the limit x (only on the user's word);
     ``positive_dips`` says of a file of positive dips only that they point ``down`` (they are turned) or
-    ``up``; ``unit`` is the unit of every result column that states none; ``listed`` is how many equal faults are
-    listed one by one;
+    ``up``; ``unit`` and ``digestion`` are those of every result column that states none; ``listed`` is how many equal
+    faults are listed one by one;
     ``unpacked_limit_bytes`` bounds what an archive may unpack to.
     """
 
@@ -31,6 +32,7 @@ class ReadingOptions:
     negative_means_below: bool = False
     positive_dips: str | None = None
     unit: str | None = None
+    digestion: str | None = None
     listed: int = 20
     unpacked_limit_bytes: int = 2_000_000_000
 
@@ -71,15 +73,17 @@ class ResultColumn:
 class ResultTable:
     """Results of one file. ``values`` float64 (n, m), NaN missing, in each column's unit as reported.
 
+    Of a large file on disk (``read_path``) ``values`` and ``qualifiers`` are SpooledArrays, ``line_no`` are
+    SpooledNumbers and ``sample_codes`` PackedTexts: read them by rows or by columns.
     ``qualifiers`` uint8 (n, m): 0 none, 1 below the value, 2 above it (``analytes.QUALIFIER_*``). ``control_text`` is
     what a QA/QC or sample-type column said of the line (``BLANK``, ``DUPL OF ...``), None where it said nothing.
     """
 
     columns: list[ResultColumn]
-    sample_codes: list[str]
-    line_no: NDArray[np.int64]
-    values: NDArray[np.float64]
-    qualifiers: NDArray[np.uint8]
+    sample_codes: Sequence[str]
+    line_no: Any
+    values: Any
+    qualifiers: Any
     certificate: str | None = None
     lab: str | None = None
     ignored: tuple[str, ...] = ()

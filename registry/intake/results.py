@@ -3,7 +3,6 @@
 from __future__ import annotations
 
 import re
-from collections import Counter
 from dataclasses import dataclass
 
 import numpy as np
@@ -18,6 +17,7 @@ from registry.intake.readings import ReadingOptions, ResultColumn, ResultTable
 from registry.intake.recipes import ColumnChoice, Recipe
 from registry.intake.settling import settle_columns
 from registry.intake.sources import Source
+from registry.intake.spooled import repeated, row_parts
 from registry.intake.texts import CONTROL_WORD, judge_texts
 from registry.intake.titles import read_titles
 from registry.intake.units import canonical_unit, split_unit
@@ -69,8 +69,8 @@ def read_results(
     if titles.digestion:
         understood.append(f"the lines above the table state the method for all columns that name none: {titles.method}")
     columns = settle_columns(
-        layout.columns, findings, understood, stated_unit=stated or None, stated_digestion=titles.digestion,
-        stated_method=titles.method, recipe=recipe,
+        layout.columns, findings, understood, stated_unit=stated or None,
+        stated_digestion=titles.digestion or options.digestion, stated_method=titles.method, recipe=recipe,
     )  # fmt: skip
     if not columns:
         findings.add("every analyte column is ignored", remedy="keep at least one in the reading recipe")
@@ -172,8 +172,10 @@ def _qualifier_columns(
 def _drop_empty(
     columns: list[ResultColumn], body: WideBody, understood: list[str]
 ) -> tuple[list[ResultColumn], WideBody]:
-    filled = [bool((~np.isnan(body.values[:, index])).any()) for index in range(len(columns))]
-    if all(filled) or not any(filled):
+    filled = np.zeros(len(columns), bool)
+    for _, rows in row_parts(body.values):
+        filled |= ~np.isnan(rows).all(axis=0)
+    if filled.all() or not filled.any():
         return columns, body
     empty = [column.header for column, some in zip(columns, filled, strict=True) if not some]
     understood.append(f"columns without any result are left out: {', '.join(empty)}")
@@ -234,15 +236,12 @@ def _table(
             remedy="see whether the headings or the sample codes were misunderstood",
         )  # fmt: skip
         return None
-    if len(set(codes)) != len(codes):
-        first = dict(zip(reversed(codes), range(len(codes) - 1, -1, -1), strict=True))
-        for code, times in Counter(codes).items():
-            if times > 1:
-                findings.warn(
-                    "the sample code stands more than once; each line is kept as a repeat",
-                    row=int(body.lines[first[code]]), column=layout.code.header, found=f"{code} ({times} times)",
-                    remedy="if the lines are different samples, correct the codes",
-                )  # fmt: skip
+    for code, (first, times) in repeated(codes).items():
+        findings.warn(
+            "the sample code stands more than once; each line is kept as a repeat",
+            row=int(body.lines[first]), column=layout.code.header, found=f"{code} ({times} times)",
+            remedy="if the lines are different samples, correct the codes",
+        )  # fmt: skip
     check_values(columns, body.values, body.qualifiers, body.lines, findings)
     check_units(columns, body.values, findings)
     understood.append(f"{len(codes)} lines of results in {len(columns)} columns")

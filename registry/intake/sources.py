@@ -4,9 +4,12 @@ from __future__ import annotations
 
 import csv
 import io
-from collections.abc import Callable, Iterator
+from collections.abc import Callable, Iterable, Iterator
 from dataclasses import dataclass
+from functools import cached_property
 from itertools import islice
+from pathlib import Path
+from typing import BinaryIO
 
 import numpy as np
 from numpy.typing import NDArray
@@ -124,27 +127,54 @@ class GridSource(Source):
 
 
 class DelimitedSource(Source):
-    """A delimited text file, read as a stream; without quotation marks a row is a line."""
+    """A delimited text file, read as a stream; without quotation marks a row is a line.
 
-    def __init__(self, data: bytes, encoding: Encoding, separator: str) -> None:
+    ``data``: its bytes, or its path; then it never lies in memory whole, and ``watch`` is told after each chunk how
+    many bytes of it were read.
+    """
+
+    def __init__(
+        self,
+        data: bytes | Path,
+        encoding: Encoding,
+        separator: str,
+        quoted: bool | None = None,
+        watch: Callable[[int], object] | None = None,
+    ) -> None:
         self.data, self.encoding, self.separator = data, encoding, separator
+        self._known_quoted, self.watch = quoted, watch
 
-    def text(self) -> io.TextIOWrapper:
-        return io.TextIOWrapper(
-            io.BytesIO(self.data), encoding=self.encoding.codec, errors=self.encoding.errors, newline=""
-        )
+    @property
+    def on_disk(self) -> bool:
+        return isinstance(self.data, Path)
+
+    @cached_property
+    def quoted(self) -> bool:
+        """Whether a quotation mark stands anywhere."""
+        if self._known_quoted is not None:
+            return self._known_quoted
+        data = self.data.read_bytes() if isinstance(self.data, Path) else self.data
+        return b'"' in data
+
+    def binary(self) -> BinaryIO:
+        return self.data.open("rb") if isinstance(self.data, Path) else io.BytesIO(self.data)
 
     def chunks(self) -> Iterator[Chunk]:
-        return self._quoted() if b'"' in self.data else self._plain()
+        with self.binary() as binary:
+            stream = io.TextIOWrapper(binary, encoding=self.encoding.codec, errors=self.encoding.errors, newline="")
+            for chunk in self._quoted(stream) if self.quoted else self._plain(stream):
+                if self.watch is not None:
+                    self.watch(binary.tell())
+                yield chunk
 
-    def _plain(self) -> Iterator[Chunk]:
-        stream, count = self.text(), 0
+    def _plain(self, stream: Iterable[str]) -> Iterator[Chunk]:
+        stream, count = iter(stream), 0
         while texts := list(islice(stream, CHUNK_ROWS)):
             yield PlainChunk(texts, np.arange(count + 1, count + 1 + len(texts), dtype=np.int64), self.separator)
             count += len(texts)
 
-    def _quoted(self) -> Iterator[Chunk]:
-        reader = csv.reader(self.text(), delimiter=self.separator)
+    def _quoted(self, stream: Iterable[str]) -> Iterator[Chunk]:
+        reader = csv.reader(stream, delimiter=self.separator)
         while True:
             before = reader.line_num
             try:
@@ -175,12 +205,14 @@ def _breaks(cell: str) -> int:
     return cell.replace("\r\n", "\n").replace("\r", "\n").count("\n") if "\n" in cell or "\r" in cell else 0
 
 
-def tell_separator(data: bytes, encoding: Encoding, score: Callable[[list[list[str]]], int]) -> str:
+def tell_separator(
+    data: bytes | Path, encoding: Encoding, score: Callable[[list[list[str]]], int], quoted: bool | None = None
+) -> str:
     """The separator of a delimited file: the one under which most headings are known, then most rows of one width."""
     best, choice = (-1.0, -1.0), ","
     for separator in (",", ";", "\t", "|"):
         try:
-            rows, _ = DelimitedSource(data, encoding, separator).preview(60)
+            rows, _ = DelimitedSource(data, encoding, separator, quoted).preview(60)
         except BrokenTable:
             continue
         widths = [len(row) for row in rows if any(row)]

@@ -9,6 +9,7 @@ import numpy as np
 from registry.intake.cells import NUMBER, parse_cell
 from registry.intake.findings import Findings
 from registry.intake.readings import ResultColumn
+from registry.intake.spooled import column_parts
 from registry.intake.wide import WideBody
 
 #: Words by which a text says that its line is a control sample.
@@ -22,7 +23,7 @@ def judge_texts(
     dropped = []
     for index, texts in sorted(body.texts.items()):
         column = columns[index]
-        numbers = int(np.isfinite(body.values[:, index]).sum())
+        numbers = sum(int(np.isfinite(part).sum()) for _, part in column_parts(body.values, index))
         pairs = texts.pairs()
         first_line, first_text = pairs[0]
         if len(pairs) > 4 * numbers:

@@ -3,9 +3,8 @@
 from __future__ import annotations
 
 import re
-from array import array
-from dataclasses import dataclass, field
 from itertools import compress
+from sys import intern
 
 import numpy as np
 from numpy.typing import NDArray
@@ -25,8 +24,9 @@ from registry.intake.cells import (
 from registry.intake.findings import Findings
 from registry.intake.names import read_heading
 from registry.intake.readings import ResultColumn
-from registry.intake.sources import Chunk, Source
+from registry.intake.sources import Chunk, DelimitedSource, Source
 from registry.intake.units import canonical_unit
+from registry.intake.wide_body import RowsInMemory, SpooledRows, Texts, WideBody
 from registry.petrology.analytes import WT_PERCENT_PER_UNIT
 
 _SUMMARY_ROW = re.compile(
@@ -37,37 +37,6 @@ _SUMMARY_ROW = re.compile(
     r"\s*[:%]?\s*"
 )
 _LETTER_AT_END = re.compile(r"(?m)\D$")
-
-
-@dataclass
-class Texts:
-    """Texts found in one analyte column: the line of each and, by number, which of the distinct texts it is."""
-
-    lines: array[int] = field(default_factory=lambda: array("q"))
-    words: dict[str, int] = field(default_factory=dict)
-    which: array[int] = field(default_factory=lambda: array("q"))
-
-    def add(self, line: int, text: str) -> None:
-        self.lines.append(line)
-        self.which.append(self.words.setdefault(text, len(self.words)))
-
-    def pairs(self) -> list[tuple[int, str]]:
-        """(line, text) of every one."""
-        texts = list(self.words)
-        return [(line, texts[number]) for line, number in zip(self.lines, self.which, strict=True)]
-
-
-@dataclass
-class WideBody:
-    """What the rows held: arrays of the kept rows, codes as written, and the texts set aside."""
-
-    codes: list[str]
-    lines: NDArray[np.int64]
-    values: NDArray[np.float64]
-    qualifiers: NDArray[np.uint8]
-    control: list[str | None]
-    texts: dict[int, Texts]
-    passed_over: list[str]
 
 
 class WideReader:
@@ -95,13 +64,10 @@ class WideReader:
 
     def read(self, source: Source, first_row: int, row_bound: int, watch_underscores: bool) -> WideBody:
         """Read everything from ``first_row`` on; ``row_bound`` is at least the number of rows."""
-        width = len(self.columns)
-        values = np.empty((row_bound, width))
-        qualifiers = np.empty((row_bound, width), np.uint8)
-        lines = np.empty(row_bound, np.int64)
-        codes: list[str] = []
+        on_disk = isinstance(source, DelimitedSource) and source.on_disk
+        kept_rows = SpooledRows(len(self.columns)) if on_disk else RowsInMemory(len(self.columns), row_bound)
         control: list[str | None] = []
-        skip, count = first_row, 0
+        skip = first_row
         for chunk in source.chunks():
             if skip:
                 dropped = min(skip, len(chunk))
@@ -109,18 +75,14 @@ class WideReader:
                 if not len(chunk):
                     continue
             block, marks, said, keep = self._chunk(chunk, watch_underscores)
-            kept = int(keep.sum())
-            everything = kept == len(chunk)
-            stop = count + kept
-            values[count:stop] = block if everything else block[keep]
-            qualifiers[count:stop] = marks if everything else marks[keep]
-            lines[count:stop] = chunk.lines if everything else chunk.lines[keep]
-            codes += said if everything else list(compress(said, keep))
+            if keep.all():
+                kept_rows.add(block, marks, chunk.lines, said)
+            else:
+                kept_rows.add(block[keep], marks[keep], chunk.lines[keep], list(compress(said, keep)))
             if self.control_position is not None:
-                spoken = [text.strip() or None for text in chunk.column(self.control_position)]
-                control += spoken if everything else list(compress(spoken, keep))
-            count = stop
-        return WideBody(codes, lines[:count], values[:count], qualifiers[:count], control, self.texts, self.passed_over)
+                spoken = (intern(text.strip()) or None for text in chunk.column(self.control_position))
+                control += compress(spoken, keep)
+        return kept_rows.body(control, self.texts, self.passed_over)
 
     def _chunk(
         self, chunk: Chunk, watch_underscores: bool
