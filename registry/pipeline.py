@@ -188,7 +188,7 @@ def _explain(method: Method, workspace: dict[str, Any], causes: np.ndarray, n: i
     letters[rows] = _letters(method, workspace, rows, n)
     letters[infinite] = ord(CAUSES["beyond_numbers"][0])
     for name, mask in missing.items():
-        causes[:, _QUANTITY_POSITION[name]] = np.where(mask, letters, _DOT)
+        causes[:, _QUANTITY_POSITION[name]] = letters if len(missing) == 1 else np.where(mask, letters, _DOT)
 
 
 def _letters(method: Method, workspace: dict[str, Any], rows: np.ndarray, n: int) -> np.ndarray:

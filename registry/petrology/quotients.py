@@ -24,17 +24,13 @@ def floats(*columns: ArrayLike) -> list[Floats]:
 def quotient(numerator: ArrayLike, denominator: ArrayLike) -> Floats:
     """numerator / denominator, shape as broadcast; NaN where the denominator is not above zero, never infinite."""
     above, below = floats(numerator, denominator)
-    result = np.full(above.shape, np.nan)
-    np.divide(above, below, out=result, where=below > 0.0)
-    return result
+    return above / np.where(below > 0.0, below, np.nan)
 
 
 def log10_positive(values: ArrayLike) -> Floats:
     """Decimal logarithm; NaN where the value is not above zero."""
     (column,) = floats(values)
-    result = np.full(column.shape, np.nan)
-    np.log10(column, out=result, where=column > 0.0)
-    return result
+    return np.log10(np.where(column > 0.0, column, np.nan))
 
 
 def is_absent(words: Any) -> NDArray[np.bool_]:

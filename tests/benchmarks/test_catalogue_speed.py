@@ -26,9 +26,9 @@ import numpy as np
 def fastest(task):
     times = []
     for _ in range(REPEATS):
-        start = time.perf_counter()
+        start = time.process_time()  # what others do on the machine does not count
         task()
-        times.append(time.perf_counter() - start)
+        times.append(time.process_time() - start)
     return min(times)
 """
 
