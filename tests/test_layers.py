@@ -82,7 +82,7 @@ LAYERS = (
     _layer("web/serving.py", "waitress flask", "web registry.errors"),
     _layer(
         "web/",
-        "flask flask_wtf wtforms werkzeug jinja2 markupsafe plotly orjson",
+        "flask flask_wtf wtforms werkzeug jinja2 markupsafe orjson",
         "web registry.store.reading registry.errors registry.@usecase",
         "sqlite3",
     ),
@@ -91,7 +91,7 @@ LAYERS = (
     _layer("seed_demo/", "numpy", "seed_demo"),
     _layer(
         "tests/",
-        "numpy pandas openpyxl orjson pyproj click sqlalchemy alembic pyarrow flask werkzeug waitress plotly pytest "
+        "numpy pandas openpyxl orjson pyproj click sqlalchemy alembic pyarrow flask werkzeug waitress pytest "
         "tests hypothesis selenium psycopg molmass periodictable markupsafe jinja2",
         "registry migrations web seed_demo",
     ),

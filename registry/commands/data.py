@@ -83,7 +83,13 @@ def refresh(registry_path: str | None, everything: bool, probability: bool, as_j
 @click.command()
 @click.argument("sheet")
 @registry_option
-@click.option("--to", "target", required=True, type=click.Path(path_type=Path), help="The file to write (.csv).")
+@click.option(
+    "--to",
+    "target",
+    required=True,
+    type=click.Path(path_type=Path),
+    help="The file to write: .csv .xlsx .parquet .geojson .gpkg.",
+)
 @click.option("--where", multiple=True, metavar='"COLUMN OP VALUE"', help="Only such rows; may be given many times.")
 @json_option
 def export(registry_path: str | None, sheet: str, target: Path, where: tuple[str, ...], as_json: bool) -> None:

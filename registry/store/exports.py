@@ -23,3 +23,17 @@ def rows_of(
     result = connection.execution_options(stream_results=True).execute(query)
     while rows := result.fetchmany(ROWS_AT_A_TIME):
         yield [tuple(row) for row in rows]
+
+
+def placed_rows_of(
+    connection: sa.Connection, sheet: str, conditions: Sequence[tuple[str, str, float | str]]
+) -> Iterator[list[Any]]:
+    """Lists of ``(longitude, latitude, row)`` of a sheet of samples; those without a position are left out."""
+    positions = {
+        sample_id: (longitude, latitude)
+        for sample_id, longitude, latitude in connection.exec_driver_sql(
+            "SELECT sample_id, longitude, latitude FROM sample WHERE longitude IS NOT NULL AND latitude IS NOT NULL"
+        )
+    }
+    for rows in rows_of(connection, sheet, conditions):
+        yield [(*positions[row[0]], row) for row in rows if row[0] in positions]

@@ -1,0 +1,82 @@
+"""Files for other programs: read back by openpyxl, pyarrow, the json module and Debian's ogrinfo."""
+
+from __future__ import annotations
+
+import json
+import subprocess
+from collections.abc import Callable
+from pathlib import Path
+
+import pytest
+
+from registry.errors import UsageError
+from registry.exporting import export_sheet
+from registry.founding import build_demo
+from registry.store.engine import Registry, open_registry
+from registry.store.sheets import SHEETS
+
+
+@pytest.fixture(scope="module")
+def demo(tmp_path_factory: pytest.TempPathFactory) -> Registry:
+    path = tmp_path_factory.mktemp("export") / "demo.sqlite"
+    build_demo(str(path))
+    return open_registry(path)
+
+
+def test_export_to_xlsx_is_read_back_with_numbers_as_numbers(demo: Registry, tmp_path: Path) -> None:
+    from openpyxl import load_workbook
+
+    target = tmp_path / "out.xlsx"
+    count = export_sheet(demo, "index_sheet", target, ["sr_y >= 20"])
+
+    rows = list(load_workbook(target)["index_sheet"].values)
+    assert rows[0] == SHEETS["index_sheet"]
+    assert len(rows) - 1 == count > 0
+    place = SHEETS["index_sheet"].index("sr_y")
+    assert all(isinstance(row[place], int | float) and row[place] >= 20 for row in rows[1:])
+
+
+def test_export_to_parquet_is_read_back_by_pyarrow(demo: Registry, tmp_path: Path) -> None:
+    parquet = pytest.importorskip("pyarrow.parquet", reason="pyarrow is an extra")
+    target = tmp_path / "out.parquet"
+    count = export_sheet(demo, "verdict_sheet", target)
+
+    table = parquet.read_table(target)
+    assert table.num_rows == count and tuple(table.column_names) == SHEETS["verdict_sheet"]
+
+
+def test_export_to_geojson_holds_points_of_samples(demo: Registry, tmp_path: Path) -> None:
+    """RFC 7946: longitude first, WGS 84."""
+    target = tmp_path / "out.geojson"
+    count = export_sheet(demo, "sample_sheet", target)
+
+    features = json.loads(target.read_text())["features"]
+    assert len(features) == count > 100
+    for feature in features:
+        longitude, latitude = feature["geometry"]["coordinates"]
+        assert longitude == pytest.approx(feature["properties"]["longitude"])
+        assert latitude == pytest.approx(feature["properties"]["latitude"])
+
+
+def test_export_to_geopackage_is_understood_by_ogrinfo(
+    demo: Registry, tmp_path: Path, client_program: Callable[[str], str]
+) -> None:
+    target = tmp_path / "out.gpkg"
+    count = export_sheet(demo, "class_sheet", target)
+
+    said = subprocess.run(
+        [client_program("ogrinfo"), "-so", str(target), "class_sheet"], capture_output=True, text=True, check=True
+    ).stdout
+    assert f"Feature Count: {count}" in said
+    assert "Geometry: Point" in said and "WGS 84" in said
+    assert "tas_plutonic: String" in said
+
+
+def test_export_of_a_sheet_without_samples_to_a_map_is_refused(demo: Registry, tmp_path: Path) -> None:
+    with pytest.raises(UsageError, match="no samples to put on a map"):
+        export_sheet(demo, "column_guide", tmp_path / "out.gpkg")
+
+
+def test_export_to_an_unknown_suffix_names_the_known_ones(demo: Registry, tmp_path: Path) -> None:
+    with pytest.raises(UsageError, match=r"choose one of \.csv, \.xlsx"):
+        export_sheet(demo, "sample_sheet", tmp_path / "out.doc")
