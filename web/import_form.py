@@ -10,6 +10,7 @@ from werkzeug.datastructures import MultiDict
 
 from registry.import_drafts import Draft, DraftFile
 from registry.intake_choices import (
+    WEIGHED,
     ColumnWish,
     corrected_recipe,
     ignored_columns,
@@ -119,7 +120,7 @@ def _wishes(key: str, form: MultiDict[str, str]) -> Iterator[ColumnWish]:
     fields = ("header", "analyte", "unit_of", "method", "digestion", "which")
     rows = zip(*(form.getlist(f"{field}-{key}") for field in fields), strict=False)
     for header, analyte, unit, method, digestion, which in rows:
-        if digestion == "unknown" and fill:
+        if digestion == "unknown" and fill and analyte.strip() not in WEIGHED:
             digestion = fill
         yield ColumnWish(header, analyte.strip(), unit, method.strip(), digestion, f"ignore-{key}-{which}" in form)
 

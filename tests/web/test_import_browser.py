@@ -80,7 +80,7 @@ def test_browser_demo_files_are_read_stored_and_done(window: Any, served: str, s
     main = window.find_element("tag name", "main").text
     samples = re.search(r"(\d+) rows of samples: (\d+) new, 0 changed", main)
     assert samples is not None and samples[1] == samples[2]
-    batch = re.findall(r"Batch (\S+): \d+ lines, [\d\s]+ results, \d+ of them below or above a limit", main)[0]
+    batch = re.findall(r"batch (\S+): \d+ lines, [\d\s]+ results, \d+ of them below or above a limit", main)[0]
     press(window, "store")
     until_text(window, "What was stored")
     sound(window)

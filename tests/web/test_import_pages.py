@@ -40,7 +40,7 @@ def test_import_page_good_file_is_shown_tried_out_and_stored(site: Site) -> None
     page = site.client.get(address).text
     assert "nothing is stored yet" in page
     assert "2 rows of results in 2 columns" in page
-    assert "Batch good: 2 lines, 4 results, 1 of them below or above a limit" in page
+    assert "batch good: 2 lines, 4 results, 1 of them below or above a limit" in page
     assert "zr_ppm" in page
     assert rows(site, "SELECT count(*) FROM batch") == [(1,)]
 
