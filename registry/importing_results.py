@@ -85,8 +85,8 @@ def store_results(
     options: ImportOptions,
     progress: Callable[[str, int, int], None],
     within: StoredBatch | None = None,
-) -> tuple[ResultsReport, int, list[Problem]]:
-    """Store one table of results and compute its samples; a report, how many were computed, and the problems.
+) -> tuple[ResultsReport, np.ndarray, list[Problem]]:
+    """Store one table of results and compute its samples; a report, ids of those computed (int64), and the problems.
 
     Samples without other results are composed, derived and judged from the arrays in hand; those that had results
     are marked stale, and the caller's drain computes them from all of theirs. ``within``: the batch of an earlier
@@ -106,7 +106,7 @@ def store_results(
     if missing and not options.create_samples:
         problems += _first_of(unknown_codes(connection, file, table, options.code_prefix), file)
     if problems:
-        return empty, 0, problems
+        return empty, np.zeros(0, dtype=np.int64), problems
     said = spoken_of(codes, table, options.code_prefix)
     new_controls = add_samples(connection, missing, said, known) if missing else 0
     call_known_controls(connection, said, known, set(missing))
@@ -156,7 +156,7 @@ def store_results(
     report.stored = StoredBatch(batch_id, code)
     if controlled:
         report.controls = controlling.state_of_batch(connection, batch_id)
-    return report, len(fresh_ids), []
+    return report, fresh_ids, []
 
 
 def unknown_codes(connection: Any, file: str, table: ResultTable, prefix: str = "") -> list[Problem]:
