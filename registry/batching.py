@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable, Mapping
+from collections.abc import Callable, Mapping, Sequence
 from typing import Any
 
 from registry.errors import NotFound, PlutonbookError, UsageError
@@ -12,6 +12,8 @@ from registry.store import batches
 from registry.store.engine import Registry, reading, writing
 from registry.store.reading.changes import verdict_changes
 
+#: Weighed or summed, not dissolved.
+WEIGHED = ("Total", "LOI", "H2O", "H2O+", "H2O-")
 #: What a person can say of a column.
 DIGESTION_NAMES = tuple(name for name in DIGESTIONS if name and name != "unknown_without_silica")
 
@@ -56,6 +58,47 @@ def set_digestions(
 
     what, cause = f"a change of batch {code}", f"digestions of batch {code} stated"
     return {"batch": code, **recomputed_after(registry, change, what, cause, dry_run)}
+
+
+def columns_of(registry: Registry, code: str) -> list[dict[str, Any]]:
+    """The columns of a batch: ``position header analyte unit method digestion``; NotFound for an unknown batch."""
+    with reading(registry) as connection:
+        return batches.columns_of(connection, _known(connection, code)["batch_id"])
+
+
+def digestions_from_words(columns: Sequence[Mapping[str, Any]], wishes: Sequence[str]) -> dict[int, str]:
+    """Digestions by column position from ``COLUMN=DIGESTION``; UsageError names what cannot be told.
+
+    COLUMN is a heading as the file has it, an analyte, ``unknown`` (every column that tells none) or ``all``; weighed
+    columns (loss on ignition, totals) are never meant by the last two.
+    """
+    stated: dict[int, str] = {}
+    for wish in wishes:
+        name, sign, word = wish.rpartition("=")
+        if not sign:
+            raise UsageError(f"'{wish}' does not say a digestion; write COLUMN=DIGESTION, as Zr=fusion")
+        digestion = digestion_named(word)
+        dissolved = [column for column in columns if column["analyte"] not in WEIGHED]
+        meant = [column for column in columns if column["header"] == name] or [
+            column for column in columns if column["analyte"].casefold() == name.casefold()
+        ]
+        if name == "all":
+            meant = dissolved
+        elif name == "unknown":
+            meant = [column for column in dissolved if column["digestion"] == "unknown"]
+        if not meant:
+            known = ", ".join(f"'{column['header'] or column['analyte']}'" for column in columns[:30])
+            raise UsageError(f"the batch has no column '{name}'; its columns are {known}")
+        stated |= {column["position"]: digestion for column in meant}
+    return stated
+
+
+def digestion_named(words: str) -> str:
+    """The digestion that words such as ``four-acid`` or ``Four acid`` name; UsageError for none."""
+    name = "_".join(words.casefold().replace("-", " ").replace("_", " ").split())
+    if name not in DIGESTION_NAMES:
+        raise UsageError(f"there is no digestion '{words}'; the digestions are {', '.join(DIGESTION_NAMES)}")
+    return name
 
 
 def recomputed_after(

@@ -245,7 +245,7 @@ def ship_reference_values(connection: Any) -> int:
 
 def state_of_batch(connection: Any, batch_id: int) -> list[str]:
     """Sentences on the controls of a batch: how many, its state, and what failed or was remarked; none without any."""
-    from registry.store.reading.controls import analyte_states, control_counts
+    from registry.store.reading.controls import analyte_states, control_counts, without_certificate
 
     counts = control_counts(connection, batch_id)
     if not counts:
@@ -256,6 +256,15 @@ def state_of_batch(connection: Any, batch_id: int) -> list[str]:
         f"{number:,} {words.get(kind, kind)}{'' if number == 1 else 's'}" for kind, number in counts.items()
     )
     lines = [f"controls: {listed}"]
+    for material in without_certificate(connection, batch_id):
+        named = (
+            f"'{material['material']}'" if material["material"] else f"of sample {material['sample_code']}, not named,"
+        )
+        number = f"{material['lines']:,} {'line' if material['lines'] == 1 else 'lines'}"
+        lines.append(
+            f"reference material {named} has no certificate here ({number} not judged): import its values as "
+            "reference-materials, or name it in the sample list"
+        )
     if not states:
         return [*lines, "none of them could be judged (no reference values, detection limits or originals)"]
     tally = Counter(state["state"] for state in states)

@@ -22,6 +22,7 @@ NAMES_SHOWN, ALIKE_SHOWN = 12, 3
 class FileReport:
     """What became of one file.
 
+    ``warnings`` are those of the reading, ``on_storing`` those that the registry gave rise to.
     ``columns`` are the columns of a file of results and how each enters the composition; ``precedence`` and
     ``alternatives`` (of a dry run) say which results go before which.
     """
@@ -31,6 +32,7 @@ class FileReport:
     rows: int
     understood: list[str]
     warnings: list[Problem]
+    on_storing: list[Problem] = field(default_factory=list)
     added: int = 0
     changes: list[str] = field(default_factory=list)
     results: ResultsReport | None = None
@@ -42,7 +44,7 @@ class FileReport:
 
     @property
     def remarks(self) -> list[str]:
-        return [problem.sentence() for problem in self.warnings]
+        return [problem.sentence() for problem in [*self.warnings, *self.on_storing]]
 
     def lines(self, verbose: bool = False) -> list[str]:
         lines = [f"{self.file}: {self.kind}, {counted(self.rows, 'row')}"]
@@ -87,7 +89,7 @@ class FileReport:
     def as_dict(self) -> dict[str, Any]:
         made = asdict(self)
         del made["warnings"]
-        return {**made, "remarks": self.remarks}
+        return {**made, "remarks": self.remarks, "on_storing": [problem.sentence() for problem in self.on_storing]}
 
 
 @dataclass

@@ -3,24 +3,28 @@
 from __future__ import annotations
 
 from collections.abc import Callable, Mapping, Sequence
-from concurrent.futures import Future, ThreadPoolExecutor
+from concurrent.futures import ThreadPoolExecutor
+from contextlib import ExitStack
 from dataclasses import dataclass, replace
 from pathlib import Path
 from typing import Any
 
 import numpy as np
 
-from registry.errors import InputProblems, NotFound, Problem, UsageError
+from registry.computing import child_at_hand
+from registry.errors import InputProblems, Problem, UsageError
 from registry.import_reports import FileReport, ImportReport, counted
 from registry.importing_certificates import store_certificates
+from registry.importing_controls import called_otherwise
 from registry.importing_results import LISTED_CODES, StoredBatch, store_results, unknown_codes
-from registry.intake import KINDS, MasterTable, Reading, ReadingOptions, read_all
+from registry.intake import KINDS, MasterTable, Reading, ReadingOptions
 from registry.intake.refused import without_lines
 from registry.intake_choices import described_columns
 from registry.keeping_going import SetAside
+from registry.lab_files import LabFile
 from registry.precedence import Earlier, alternatives_within, look_after, look_before
 from registry.refresh import changes_since, drained_samples, last_change
-from registry.store import batches, masters
+from registry.store import masters
 from registry.store.engine import Registry, writing
 from registry.store.reading.changes import verdict_changes
 
@@ -53,12 +57,14 @@ class FileChoice:
 
 @dataclass
 class _File:
-    """A file, its bytes, what they are compressed to, and the batch of its first table of results once stored."""
+    """A file, and the batch of its first table of results once stored."""
 
-    path: Path
-    data: bytes
-    compressed: Future[bytes]
+    file: LabFile
     batch: StoredBatch | None = None
+
+    @property
+    def path(self) -> Path:
+        return self.file.path
 
 
 #: Certificates of reference materials go before the results that they judge.
@@ -93,26 +99,41 @@ def import_files(
     Raises InputProblems with every problem of every file (then nothing was written), NotFound for a missing file.
     """
     options = options or ImportOptions()
-    contents = [(path, _bytes_of(path)) for path in paths]
-    with ThreadPoolExecutor(1) as pool:  # zlib works beside the reading: it needs no interpreter
-        files = [_File(path, data, pool.submit(batches.compress, data)) for path, data in contents]
-        readings: list[tuple[Reading, _File]] = []
-        for (path, data), file in zip(contents, files, strict=True):
-            progress("reading", len(readings), len(paths))
-            choice = (choices or {}).get(path, FileChoice())
-            how = choice.reading or ReadingOptions()
-            if options.keep_going:
-                how = replace(how, listed=len(data))  # every row is told its own reason
-            for reading in read_all(path.name, data, choice.kind or options.kind, how):
-                if on_read is not None:
-                    on_read(path, reading)
-                readings.append((reading, file))
+    with ThreadPoolExecutor(1) as pool, ExitStack() as at_the_end:
+        files = [_File(LabFile(path, pool, whole=options.keep_going)) for path in paths]
+        at_the_end.enter_context(child_at_hand(any(file.file.is_large for file in files)))
+        return _import(registry, files, options, choices or {}, progress, tell, on_read)
+
+
+def _import(
+    registry: Registry,
+    files: Sequence[_File],
+    options: ImportOptions,
+    choices: Mapping[Path, FileChoice],
+    progress: Progress,
+    tell: Callable[[str], Any] | None,
+    on_read: Callable[[Path, Reading], Any] | None,
+) -> ImportReport:
+    readings: list[tuple[Reading, _File]] = []
+    for file in files:
+        progress("reading", len(readings), len(files))
+        choice = choices.get(file.path, FileChoice())
+        how = choice.reading or ReadingOptions()
+        if options.keep_going:
+            how = replace(how, listed=file.file.size)  # every row is told its own reason
+        for reading in file.file.readings(choice.kind or options.kind, how, progress):
+            if on_read is not None:
+                on_read(file.path, reading)
+            readings.append((reading, file))
     readings.sort(key=lambda pair: _ORDER.index(pair[0].kind) if pair[0].kind in _ORDER else len(_ORDER))
-    asides = [SetAside.of(file.path, file.data, reading) if options.keep_going else None for reading, file in readings]
+    asides = [
+        SetAside.of(file.path, file.file.data or b"", reading) if options.keep_going else None
+        for reading, file in readings
+    ]
     unreadable = [problem for reading, _ in readings for problem in reading.problems if not reading.ok]
     report: ImportReport | None = None
     try:
-        with writing(registry, what=f"an import of {counted(len(paths), 'file')}", tell=tell, bulk=True) as connection:
+        with writing(registry, what=f"an import of {counted(len(files), 'file')}", tell=tell, bulk=True) as connection:
             report = _store(connection, readings, asides, options, unreadable, progress)
             if options.dry_run:
                 raise _NothingWritten
@@ -188,11 +209,14 @@ def _store_one(
         if options.dry_run:
             report.alternatives = alternatives_within(reading.results)
         if options.create_samples:
-            report.warnings += _almost_known(connection, reading, options.code_prefix)
+            report.on_storing += _almost_known(connection, reading, options.code_prefix)
         report.results, done, faults = store_results(
-            connection, reading, contents.data, contents.compressed, options, progress, contents.batch
+            connection, reading, contents.file, options, progress, contents.batch
         )
         contents.batch = contents.batch or report.results.stored
+        if not faults and any(reading.results.control_text):
+            codes = [f"{options.code_prefix}{code}" for code in reading.results.sample_codes]
+            report.results.remarks += called_otherwise(connection, codes, reading.results, options.code_prefix)
         return report, done, faults
     table = reading.master
     assert table is not None
@@ -204,7 +228,7 @@ def _store_one(
     outcome = _upserted(connection, kind, table, reading.file, aside, options)
     report.added, report.changes = outcome.added, outcome.changes
     faults = [problem for problem in outcome.problems if problem.severity == "problem"]
-    report.warnings += [problem for problem in outcome.problems if problem.severity != "problem"]
+    report.on_storing += [problem for problem in outcome.problems if problem.severity != "problem"]
     return report, _NOTHING_COMPUTED, faults
 
 
@@ -277,14 +301,3 @@ def _cause(reports: Sequence[FileReport]) -> str:
     if batches:
         return f"batch {', '.join(batches)} imported"
     return f"{', '.join(report.file for report in reports)} imported"
-
-
-def _bytes_of(path: Path) -> bytes:
-    if path.is_dir():
-        raise NotFound(f"{path} is a folder; name the files in it")
-    try:
-        return path.read_bytes()
-    except FileNotFoundError as error:
-        raise NotFound(f"there is no file {path}") from error
-    except OSError as error:
-        raise NotFound(f"{path} cannot be read: {error.strerror}") from error

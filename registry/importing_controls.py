@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections.abc import Iterable
 from typing import Any
 
 import numpy as np
@@ -14,8 +15,11 @@ from registry.quality.columns import disagreeing_columns
 from registry.quality.recognising import Spoken, read_control_text
 from registry.store import masters, quality_rows
 
+#: Contradictions between certificate and sample list that are told one by one.
+CONTRADICTIONS_SHOWN = 10
 
-def spoken_of(codes: list[str], table: ResultTable, prefix: str) -> dict[str, Spoken]:
+
+def spoken_of(codes: Iterable[str], table: ResultTable, prefix: str) -> dict[str, Spoken]:
     """What the certificate says of sample codes that it calls controls."""
     if not any(table.control_text):
         return {}
@@ -50,6 +54,26 @@ def call_known_controls(connection: Any, said: dict[str, Spoken], known: dict[st
         if known[code] in unknown and spoken.kind is not None and spoken.kind != "duplicate":
             kinds.setdefault(spoken.kind, []).append(known[code])
     quality_rows.set_kinds(connection, kinds)
+
+
+def called_otherwise(connection: Any, codes: list[str], table: ResultTable, prefix: str) -> list[str]:
+    """Sentences on registered samples that the certificate calls a control of another kind than they are registered as.
+
+    A rock's line called a duplicate is a repeat of it, and no contradiction.
+    """
+    said = spoken_of(codes, table, prefix)
+    lines = {code: int(line) for code, line in reversed(list(zip(codes, table.line_no.tolist(), strict=True)))}
+    kinds = quality_rows.kinds_of(connection, said)
+    sentences = [
+        f"line {lines[code]}: the certificate calls {code} a {spoken.kind.replace('_', ' ')}, the sample list says "
+        f"{kinds[code].replace('_', ' ')}; it stays what the list says: correct the list if the laboratory is right"
+        for code, spoken in said.items()
+        if spoken.kind is not None and spoken.kind != kinds.get(code, spoken.kind) and spoken.kind != "duplicate"
+    ]
+    if len(sentences) > CONTRADICTIONS_SHOWN:
+        more = f"{len(sentences) - CONTRADICTIONS_SHOWN:,} more samples are controls by the certificate only"
+        sentences = [*sentences[:CONTRADICTIONS_SHOWN], more]
+    return sentences
 
 
 def limit_reported(values: np.ndarray, qualifiers: np.ndarray) -> float | None:

@@ -6,19 +6,11 @@ from pathlib import Path
 from typing import Any
 
 from registry import reading_recipes
+from registry.batching import digestion_named
 from registry.errors import Problem, UsageError
 from registry.intake import Reading, ReadingOptions, Recipe
 from registry.intake.units import CANONICAL_UNITS, canonical_unit
-from registry.intake_choices import DIGESTION_NAMES
 from registry.store.engine import Registry
-
-
-def digestion_named(words: str) -> str:
-    """The digestion that words such as ``four-acid`` or ``Four acid`` name; UsageError for none."""
-    name = "_".join(words.casefold().replace("-", " ").replace("_", " ").split())
-    if name not in DIGESTION_NAMES:
-        raise UsageError(f"there is no digestion '{words}'; the digestions are {', '.join(DIGESTION_NAMES)}")
-    return name
 
 
 def reading_options(

@@ -39,6 +39,7 @@ def page(code: str) -> Any:
         lines, samples = reading.batch_samples(connection, batch["batch_id"])
         relatives = reading.batch_relatives(connection, batch["batch_id"])
         counts = controls_reading.control_counts(connection, batch["batch_id"])
+        uncertified = controls_reading.without_certificate(connection, batch["batch_id"])
         too_many = sum(counts.values()) > MOST_CONTROL_LINES
         controls: dict[str, Any] = {
             "analytes": [],
@@ -56,6 +57,7 @@ def page(code: str) -> Any:
         samples=samples,
         relatives=relatives,
         counts=counts,
+        uncertified=uncertified,
         too_many=too_many,
         control_state=controls["state"],
         charts=control_charts.charts(controls),

@@ -190,7 +190,7 @@ def _say_ignored(
     analytes = {column.position for column in layout.columns}
     plain = []
     for place, label in enumerate(layout.labels):
-        if place in used or not label:
+        if place in used or place == control or not label:
             continue
         rest, unit = split_unit(label)
         if unit is not None and place not in analytes and re.search(r"[A-Z]", rest) and len(rest) < 20:

@@ -12,6 +12,8 @@ import sqlalchemy as sa
 from registry.errors import NotFound, PlutonbookError
 from registry.store import tables
 
+#: Of zlib: its quickest.
+COMPRESSION_LEVEL = 1
 STATES = ("active", "superseded", "withdrawn")
 _batch, _column = tables.batch, tables.batch_column
 
@@ -34,7 +36,7 @@ def insert_batch(
 ) -> int:
     """Insert an active batch; its id. ``data`` are the file's bytes, kept compressed; their hash is computed here.
 
-    ``compressed``: what :func:`compress` made of them, where that was done beforehand.
+    ``compressed``: what :func:`compress` made of them, where that was done beforehand; then their ``sha256`` is enough.
     """
     if data is not None:
         computed = hashlib.sha256(data).hexdigest()
@@ -52,7 +54,7 @@ def insert_batch(
             imported_by=imported_by,
             file_name=file_name,
             sha256=sha256,
-            file_bytes=None if data is None else compressed or compress(data),
+            file_bytes=compressed if compressed is not None or data is None else compress(data),
             state="active",
             part_of=part_of,
         )
@@ -62,7 +64,7 @@ def insert_batch(
 
 def compress(data: bytes) -> bytes:
     """The bytes of a file as they are kept (zlib, its quickest level: a lab file still shrinks to about a third)."""
-    return zlib.compress(data, 1)
+    return zlib.compress(data, COMPRESSION_LEVEL)
 
 
 def insert_columns(connection: sa.Connection, batch_id: int, columns: Sequence[Mapping[str, Any]]) -> list[int]:
@@ -130,6 +132,13 @@ def free_code(connection: sa.Connection, code: str, mark: str) -> str:
 def find_by_id(connection: sa.Connection, batch_id: int) -> dict[str, Any] | None:
     """The batch with this id, None where there is none."""
     return _first(connection, _batch.c.batch_id == batch_id)
+
+
+def columns_of(connection: sa.Connection, batch_id: int) -> list[dict[str, Any]]:
+    """The columns of a batch in file order: ``position header analyte unit method digestion``."""
+    names = ("position", "header", "analyte", "unit", "method", "digestion")
+    query = sa.select(*(_column.c[name] for name in names)).where(_column.c.batch_id == batch_id)
+    return [dict(row._mapping) for row in connection.execute(query.order_by(_column.c.position))]
 
 
 def set_digestions(connection: sa.Connection, batch_id: int, digestions: Mapping[int, str]) -> None:

@@ -106,6 +106,24 @@ def _orphans(connection: sa.Connection) -> list[Finding]:
             "JOIN batch_column AS c ON c.batch_column_id = r.column_id WHERE c.batch_id <> a.batch_id",
         ),
         (
+            "control_outcome",
+            "line of its batch",
+            "SELECT count(*) FROM control_outcome AS o WHERE NOT EXISTS "
+            "(SELECT 1 FROM aliquot AS a WHERE a.aliquot_id = o.aliquot_id AND a.batch_id = o.batch_id)",
+        ),
+        (
+            "control_outcome",
+            "column of its batch",
+            "SELECT count(*) FROM control_outcome AS o WHERE NOT EXISTS "
+            "(SELECT 1 FROM batch_column AS c WHERE c.batch_column_id = o.column_id AND c.batch_id = o.batch_id)",
+        ),
+        (
+            "control_state",
+            "column of its batch",
+            "SELECT count(*) FROM control_state AS f WHERE NOT EXISTS "
+            "(SELECT 1 FROM batch_column AS c WHERE c.batch_column_id = f.column_id AND c.batch_id = f.batch_id)",
+        ),
+        (
             "stale",
             "sample",
             "SELECT count(*) FROM stale AS x WHERE NOT EXISTS "

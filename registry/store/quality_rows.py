@@ -192,6 +192,15 @@ def stale_unknown_samples(connection: sa.Connection) -> list[tuple[int, str]]:
     return [(row[0], row[1]) for row in rows]
 
 
+def kinds_of(connection: sa.Connection, codes: Iterable[str]) -> dict[str, str]:
+    """The kinds of those codes that are samples, by code."""
+    found: dict[str, str] = {}
+    for part in raw_rows.in_parts(sorted(codes), 500):
+        query = sa.select(tables.sample.c.code, tables.sample.c.kind).where(tables.sample.c.code.in_(part))
+        found.update((row.code, row.kind) for row in connection.execute(query))
+    return found
+
+
 def set_kinds(connection: sa.Connection, kinds: dict[str, list[int]]) -> None:
     """Give samples another kind, by kind; a trigger marks them stale."""
     for kind, ids in kinds.items():

@@ -24,6 +24,27 @@ def control_counts(connection: Connection, batch_id: int) -> dict[str, int]:
     return {row[0]: row[1] for row in rows}
 
 
+def without_certificate(connection: Connection, batch_id: int) -> list[dict[str, Any]]:
+    """Reference materials of a batch that no certificate in the registry judges: ``material lines sample_code``.
+
+    ``material`` is the name in the sample list, None where it names none; ``sample_code`` one of its samples.
+    """
+    rows = connection.execute(
+        text(
+            """
+            SELECT s.reference_material AS material, count(*) AS lines, min(s.code) AS sample_code
+            FROM aliquot AS a JOIN sample AS s ON s.sample_id = a.sample_id
+            WHERE a.batch_id = :batch_id AND s.kind = 'reference_material' AND NOT EXISTS (
+                SELECT 1 FROM control_outcome AS o WHERE o.aliquot_id = a.aliquot_id AND o.expected IS NOT NULL
+            )
+            GROUP BY s.reference_material ORDER BY s.reference_material
+            """
+        ),
+        {"batch_id": batch_id},
+    )
+    return [dict(row) for row in rows.mappings()]
+
+
 def analyte_states(connection: Connection, batch_id: int) -> list[dict[str, Any]]:
     """State of every analyte that has judged controls, in file order: ``column_id position analyte unit method
     digestion state remarks reference_results blank_results pairs bias_percent bias_error_percent drift_percent

@@ -1,0 +1,113 @@
+"""Settings by the command line: conventions and the code patterns of control samples, changed with what that does."""
+
+from __future__ import annotations
+
+import json
+from collections.abc import Mapping, Sequence
+from typing import Any
+
+from registry import auditing, settings
+from registry.batching import recomputed_after
+from registry.errors import PlutonbookError, UsageError
+from registry.judging import CONVENTION_PREFIX
+from registry.petrology.catalogue.conventions import CONVENTIONS
+from registry.quality.recognising import PATTERN_NAMES, PATTERN_PREFIX, Patterns
+from registry.store import target_rows
+from registry.store.engine import Registry, reading
+
+_PATTERNS = tuple(PATTERN_PREFIX + name for name in PATTERN_NAMES)
+
+
+def list_settings(registry: Registry) -> list[dict[str, Any]]:
+    """Every setting: ``name value default unit meaning choices``; patterns of control codes last."""
+    with reading(registry) as connection:
+        in_force, stored = settings.current(connection), target_rows.read_settings(connection)
+    rows = [
+        {
+            "name": name,
+            "value": in_force[name],
+            "default": record.default,
+            "unit": record.unit,
+            "meaning": record.meaning,
+            "choices": list(record.choices),
+        }
+        for name, record in CONVENTIONS.items()
+    ]
+    for name in _PATTERNS:
+        what = name.removeprefix(PATTERN_PREFIX).replace("_", " ")
+        meaning = f"Regular expression: a sample of unknown kind whose code it is found in becomes a {what}."
+        value = stored.get(name, "")
+        rows.append({"name": name, "value": value, "default": "", "unit": "1", "meaning": meaning, "choices": []})
+    return rows
+
+
+def change_settings(registry: Registry, wishes: Sequence[str], dry_run: bool = False) -> dict[str, Any]:
+    """Put ``name=value`` settings in force and compute all that hangs on them, in one transaction.
+
+    A value left empty gives a convention its default back and takes a pattern away. Returns ``settings`` (what
+    changed, before and after), ``recomputed verdicts_changed changes``. UsageError names every wish that cannot be met.
+    """
+    conventions, patterns = _sorted_out(wishes)
+    with reading(registry) as connection:
+        before = settings.current(connection)
+        stored = target_rows.read_settings(connection)
+    typed = {name: text or _typed(CONVENTIONS[name].default) for name, text in conventions.items()}
+    values, faults = settings.read_typed(typed, before)
+    if faults:
+        raise UsageError("; ".join(f"{name}: {sentence}" for name, sentence in faults.items()))
+    try:
+        Patterns(patterns)
+    except ValueError as fault:
+        raise UsageError(str(fault)) from fault
+    differing = {name: text for name, text in patterns.items() if text != stored.get(name, "")}
+    changed = {name: [str(before[name]), str(value)] for name, value in values.items()}
+    changed |= {name: [stored.get(name, ""), text] for name, text in differing.items()}
+    if not changed:
+        raise PlutonbookError("these settings stand so already; nothing was changed")
+
+    def change(connection: Any) -> None:
+        for name, value in values.items():
+            target_rows.write_setting(connection, CONVENTION_PREFIX + name, json.dumps(value))
+        for name, text in differing.items():
+            target_rows.write_setting(connection, name, text)
+        for name, (was, now) in changed.items():
+            auditing.note(connection, "setting", name, f"{was or '(none)'} -> {now or '(none)'}")
+
+    report = recomputed_after(registry, change, "a change of the settings", settings.CAUSE, dry_run)
+    return {"settings": changed, **report}
+
+
+def _sorted_out(wishes: Sequence[str]) -> tuple[dict[str, str], dict[str, str]]:
+    """Wishes as (conventions, patterns) by name; a convention may be named with its prefix or without."""
+    conventions: dict[str, str] = {}
+    patterns: dict[str, str] = {}
+    for wish in wishes:
+        name, sign, text = wish.partition("=")
+        name = name.strip().removeprefix(CONVENTION_PREFIX)
+        if not sign:
+            raise UsageError(f"'{wish}' is no setting with its value; write NAME=VALUE")
+        if name in CONVENTIONS:
+            conventions[name] = text.strip()
+        elif name in _PATTERNS:
+            patterns[name] = text.strip()
+        else:
+            raise UsageError(f"there is no setting '{name}'; 'plutonbook settings' lists them")
+    return conventions, patterns
+
+
+def _typed(value: Any) -> str:
+    if isinstance(value, bool):
+        return settings.YES if value else settings.NO
+    return str(value)
+
+
+def shown(settings_: Sequence[Mapping[str, Any]]) -> list[str]:
+    """The settings in lines."""
+    lines = []
+    for row in settings_:
+        unit = "" if row["unit"] in ("1", "", "text") else f" {row['unit']}"
+        choices = f" ({', '.join(row['choices'])})" if row["choices"] else ""
+        changed = "" if row["value"] == row["default"] else f", by default {_typed(row['default']) or 'none'}{unit}"
+        value = _typed(row["value"]) or "none"
+        lines.append(f"{row['name']} = {value}{unit}{changed}  {row['meaning']}{choices}")
+    return lines
