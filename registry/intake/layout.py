@@ -34,6 +34,8 @@ UNIT, METHOD, LOWER, UPPER, ANALYTE, LABELS = (
     "analytes",
     "labels",
 )
+#: What stands beside the analytes of a row and names the row.
+_ROW_LABELS = {METHOD: _METHOD_LABEL, UNIT: _UNIT_LABEL, LOWER: _LOWER_LIMIT, UPPER: _UPPER_LIMIT}
 
 
 @dataclass
@@ -213,6 +215,8 @@ def _assemble(rows: list[list[str]], roles: dict[int, str], first_row: int) -> W
             if not text:
                 continue
             column = columns.get(position)
+            if column is None and (names_row := _ROW_LABELS.get(roles[index])) and names_row.fullmatch(text):
+                continue  # "Method" and "Unit" beside the analytes name their rows and not the column
             if column is None or roles[index] not in (LOWER, UPPER):
                 pieces[position].append(re.sub(r"\s+", " ", text))
             if column is not None:

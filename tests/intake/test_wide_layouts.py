@@ -369,3 +369,8 @@ def test_file_that_is_no_table_is_a_problem_in_a_sentence(data, words):
     assert not reading.ok
     assert reading.whole_file_refused
     assert any(words in line for line in sentences(reading)), sentences(reading)
+
+
+def test_names_of_heading_rows_are_no_part_of_the_code_columns_heading():
+    text = "Method,XRF,Fusion\nDetection limit,0.01,2\nSample ID,SiO2,Zr\nUnits,%,ppm\nA-1,60.1,180\n"
+    assert read_file("stacked.csv", text.encode()).results.sample_header == "Sample ID"
