@@ -1,9 +1,9 @@
 """The whole catalogue against a numpy pass of the same elementwise steps: at most twice as long.
 
 The steps are counted, not guessed (``counted_catalogue.py``). The pass does each of them as often, kind for kind
-(a comparison for a comparison, a logarithm for a logarithm, a word of a table for a word), on plain arrays of the same length and types, each time
-into a new array; it reads no log, finds no causes and writes no warnings. Catalogue and pass run in turn, each in a
-process of its own; the fastest run of each counts.
+(a comparison for a comparison, a logarithm for a logarithm, a word of a table for a word), on plain arrays of the same
+length and types, each time into a new array; it reads no log, finds no causes and writes no warnings. Catalogue and
+pass run in turn, each in a process of its own; the fastest run of each counts, by processor time.
 """
 
 from __future__ import annotations
