@@ -18,6 +18,8 @@ _LOWER_LIMIT = re.compile(
     r"|lower limits?|det\.? ?lim\w*)\b"
 )
 _UPPER_LIMIT = re.compile(r"(?i)\b(upper ?(detection|reporting)?[ _]?limits?|udl|uol|max(imum)? limit|upper)\b")
+#: A title line that states a method or a unit once.
+_STATEMENT = re.compile(r"(?i)\W*[\w ]*\b(methods?|digestion|analysis|units?|results?|technique)\b[\w ]*[:=]\s*\S")
 _UNIT_LABEL = re.compile(r"(?i)^\W*units?\b")
 _METHOD_LABEL = re.compile(r"(?i)\b(method|analys\w+|technique|digest\w*|scheme|procedure|analytical|prep\w*)\b")
 _ANALYTE_LABEL = re.compile(r"(?i)^\W*(analytes?|elements?|oxides?|parameters?|determinands?|symbols?)\b")
@@ -115,6 +117,8 @@ def _role(row: list[str], analytes: dict[int, Heading], below: bool) -> str | No
     ]
     if not inside:
         return None
+    if not below and len(inside) < len(analytes) and any(_STATEMENT.match(text) for text in outside[:1]):
+        return None  # a sentence for the whole table, such as "Method: four-acid digestion, ICP-MS", cut at its commas
     label = " ".join(outside)
     units = sum(canonical_unit(text) is not None or foreign_unit(text) for text in inside)
     states = [parse_cell(text, "." if "," not in text else ",").state for text in inside]

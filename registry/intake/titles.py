@@ -19,6 +19,9 @@ _UNIT = re.compile(
 )
 
 
+_LABEL = re.compile(r"(?i)^\W*(analytical )?(methods?|digestion|analysis|technique)\s*[:=]\s*")
+
+
 @dataclass(frozen=True)
 class Titles:
     certificate: str | None = None
@@ -48,7 +51,7 @@ def read_titles(lines: list[str]) -> Titles:
         digestion = digestion_in(line)
         if digestion:
             digestions.add(digestion)
-            method = line.strip()
+            method = _LABEL.sub("", line.strip())
     return Titles(
         certificate,
         lab,

@@ -219,3 +219,15 @@ def test_container_that_cannot_be_read_is_a_problem_with_a_remedy(data, words):
     (problem,) = problems(read_file("lab", data, options=ReadingOptions(unpacked_limit_bytes=100_000)))
     assert words in problem.what
     assert problem.remedy
+
+
+def test_method_stated_once_above_the_table_is_no_heading_row_though_it_holds_commas() -> None:
+    text = "All results in ppm\nMethod: four-acid digestion, ICP-MS\nSample,Zr,Cu,SiO2 (%)\nA1,180,20,66\n"
+    reading = read_file("certificate.csv", text.encode())
+    assert reading.results is not None
+    assert [(column.analyte, column.unit, column.digestion) for column in reading.results.columns] == [
+        ("Zr", "ppm", "four_acid"),
+        ("Cu", "ppm", "four_acid"),
+        ("SiO2", "wt%", "four_acid"),
+    ]
+    assert reading.results.sample_header == "Sample"
