@@ -18,12 +18,32 @@ from registry.errors import NotFound, PlutonbookError, Problem
 from registry.intake import fields as readers
 from registry.intake import kinds
 from registry.intake.findings import Findings
-from registry.intake.kinds import Field
+from registry.intake.kinds import NUMBER, TRUTH, WORD, Field
 from registry.intake.master_checks import check_rows
 from registry.intake.readings import ReadingOptions
 from registry.recomputing import Consequence, consequence_of, refresh_in_background
 from registry.store import edits, masters
 from registry.store.engine import Registry, reading, writing
+
+__all__ = [
+    "KEY_FIELDS",
+    "KINDS",
+    "NEEDED",
+    "NUMBER",
+    "TRUTH",
+    "WORD",
+    "ChangedMeanwhile",
+    "Edited",
+    "Field",
+    "Record",
+    "Refused",
+    "change",
+    "fields_of",
+    "find",
+    "find_in",
+    "read_typed",
+    "spelled",
+]
 
 #: What can be edited -> the kind of file that brings it in.
 KINDS = {"sample": "samples", "site": "sites", "intrusion": "intrusions", "area": "areas"}
@@ -94,7 +114,7 @@ def find_in(registry: Registry, kind: str, code: str) -> Record:
 def _record(kind: str, code: str, row: Mapping[str, Any]) -> Record:
     values = {one.name: row.get(one.name) for one in fields_of(kind)}
     for one in fields_of(kind):
-        if one.holds == kinds.TRUTH and values[one.name] is not None:
+        if one.holds == TRUTH and values[one.name] is not None:
             values[one.name] = bool(values[one.name])
     return Record(kind, code, int(row["row_version"]), values)
 
@@ -153,14 +173,14 @@ def read_typed(kind: str, typed: Mapping[str, str]) -> tuple[dict[str, Any], dic
 
 
 def _value(one: Field, text: str, faults: dict[str, str]) -> Any:
-    if one.holds == kinds.NUMBER:
+    if one.holds == NUMBER:
         return _number(one, text, faults)
-    if one.holds == kinds.WORD:
+    if one.holds == WORD:
         value: Any = readers.word(text, one.words)
         expected = f"one of {_listed(one.words)}"
     elif one.holds == kinds.DATE:
         value, expected = readers.iso_date(text), "a date such as 2024-05-31"
-    elif one.holds == kinds.TRUTH:
+    elif one.holds == TRUTH:
         value, expected = readers.truth(text), "yes or no"
     else:
         return text
@@ -198,7 +218,7 @@ def _checked(connection: Any, before: Record, changed: Mapping[str, Any], row_id
     table = {KEY_FIELDS[before.kind]: [before.code], **{name: [value] for name, value in after.items()}}
     findings = Findings("form")
     check_rows(plural, table, np.array([1]), {name: name for name in table}, ReadingOptions(), findings, [])
-    faults = {}
+    faults: dict[str, str] = {}
     for problem in findings.problems():
         if problem.severity == "problem":
             faults.setdefault(_shown_at(problem, changed), problem_words(problem))
@@ -209,8 +229,8 @@ def _checked(connection: Any, before: Record, changed: Mapping[str, Any], row_id
         deepest = edits.deepest_m(connection, row_id)
         if deepest is not None and deepest > changed["depth_m"]:
             faults["depth_m"] = (
-                f"A sample, interval or survey of it reaches {deepest:g} m, more than {changed['depth_m']:g} m; correct "
-                "the length, or those depths first."
+                f"A sample, interval or survey of it reaches {deepest:g} m, more than {changed['depth_m']:g} m; "
+                "correct the length, or those depths first."
             )
     if faults:
         raise Refused(faults)

@@ -15,7 +15,7 @@ from registry.recomputing import Consequence, consequence_of, dry_run, refresh_i
 from registry.store import target_rows
 from registry.store.engine import Registry, writing
 
-__all__ = ["CONVENTIONS", "CONVENTION_GROUPS", "change", "current", "foresee", "read_typed"]
+__all__ = ["CONVENTIONS", "CONVENTION_GROUPS", "Convention", "change", "current", "foresee", "read_typed"]
 
 CAUSE = "settings changed"
 YES, NO = "yes", "no"

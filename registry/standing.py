@@ -62,7 +62,7 @@ class Standing:
 
     @property
     def leading(self) -> str | None:
-        """The word for all samples: the best verdict, but undecided only where that is most of them; None: no sample."""
+        """The word for all samples: the best verdict, undecided only where most of them are; None: no sample."""
         if not self.samples:
             return None
         word = next((word for word in ("favourable", "possible") if self.counts[word]), None)
@@ -165,7 +165,7 @@ class Open:
 
 
 def dearest_lacking(parts: Iterable[tuple[str, TargetDefinition, Sequence[str]]]) -> list[Open]:
-    """What the undecided verdicts lack over all targets, dearest first; ``parts``: (name, definition, packed reasons)."""
+    """What the undecided verdicts lack over all targets, dearest first; ``parts``: (name, definition, reasons)."""
     points: Counter[str] = Counter()
     verdicts: Counter[str] = Counter()
     named: dict[str, list[str]] = {}

@@ -8,8 +8,8 @@ from typing import Any
 from flask import Blueprint, abort, current_app, redirect, render_template, request, session, url_for
 
 from registry import editing
+from registry.editing import NUMBER, TRUTH, WORD, Field
 from registry.errors import NotFound
-from registry.intake.kinds import NUMBER, TRUTH, WORD, Field
 from registry.store.reading import editing as reading
 from web.errors import Missing
 from web.reading import registry_connection
@@ -85,7 +85,6 @@ SUGGESTED = {
 }  # fmt: skip
 #: Changes told one by one after saving.
 TOLD = 10
-PAGES = {"sample": "sample.page", "site": "sites.page", "intrusion": "intrusions.page"}
 
 
 def label(name: str) -> str:
@@ -182,10 +181,16 @@ def _form(
         stale=meanwhile,
         done=done,
         label=label,
-        back=url_for(PAGES[record.kind], **{"name" if record.kind == "intrusion" else "code": record.code})
-        if record.kind in PAGES
-        else url_for("start.page"),
+        back=_page_of(record),
     )
+
+
+def _page_of(record: editing.Record) -> str:
+    if record.kind == "sample":
+        return url_for("sample.page", code=record.code)
+    if record.kind == "site":
+        return url_for("sites.page", code=record.code)
+    return url_for("intrusions.page", name=record.code) if record.kind == "intrusion" else url_for("start.page")
 
 
 def _typed_form(value: Any) -> str:
@@ -193,7 +198,7 @@ def _typed_form(value: Any) -> str:
 
 
 def _field(one: Field, shown: str, offered: list[str]) -> dict[str, Any]:
-    """One field as the form draws it: ``choices`` (value, words) for a list, ``offered`` for a text with suggestions."""
+    """One field as the form draws it: ``choices`` (value, words) for a list, ``offered`` for suggestions."""
     choices: list[tuple[str, str]] = []
     if one.holds == WORD:
         choices = [(word, word.replace("_", " ")) for word in one.words]

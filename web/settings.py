@@ -8,7 +8,7 @@ from typing import Any
 from flask import Blueprint, current_app, redirect, render_template, request, session, url_for
 
 from registry import settings
-from registry.petrology.catalogue.records import Convention
+from registry.settings import Convention
 from web.reading import registry_connection
 
 blueprint = Blueprint("settings", __name__)
@@ -26,7 +26,8 @@ _LABELS = {
     "norm_sulphur_as_pyrite": "Pyrite in the norm", "norm_halogens": "Fluorite and halite in the norm",
     "censored_substitute": "Share of the limit", "h2o_ultrabasic_wt": "Water, ultrabasic",
     "h2o_basic_wt": "Water, basic", "h2o_intermediate_wt": "Water, intermediate", "h2o_acid_wt": "Water, acid",
-    "pressure_gpa": "Pressure", "water_depression": "Effect of water", "wall_rock_viscosity_pa_s": "Wall rock viscosity",
+    "pressure_gpa": "Pressure", "water_depression": "Effect of water",
+    "wall_rock_viscosity_pa_s": "Wall rock viscosity",
     "diapir_radius_m": "Radius of a diapir", "dyke_width_m": "Width of a dyke",
     "country_density_kg_m3": "Country rock density", "thermal_diffusivity_m2_s": "Thermal diffusivity",
     "density_acid_kg_m3": "Density, acid", "density_intermediate_kg_m3": "Density, intermediate",

@@ -58,7 +58,7 @@ def page(code: str) -> Any:
         hole = site["kind"] == "drill_hole"
         survey = reading.survey_rows(connection, key) if hole else []
         intervals = reading.interval_rows(connection, key) if hole else []
-        values = reading.strip_samples(connection, key, shown, target and target["target_id"]) if hole else []
+        values = reading.strip_samples(connection, key, shown, target["target_id"] if target else None) if hole else []
         standing = standings(connection, "site_id", key, explained=("favourable", "possible"))
         kinds = samples_reading.kinds_of_samples(connection, "site_id", key)
         samples = samples_reading.sample_rows(connection, "site_id", key, SAMPLES_SHOWN)
@@ -93,7 +93,7 @@ def page(code: str) -> Any:
 def _asked(
     columns: Columns, targets: Sequence[dict[str, Any]]
 ) -> tuple[dict[str, Any] | None, list[Column], list[str]]:
-    """The target whose verdicts stand beside the strip (None: the best of all), the values drawn, and what was wrong."""
+    """The target whose verdicts stand beside the strip (None: the best of all), the values drawn, and faults."""
     faults = []
     code = request.args.get("target", "").strip()
     target = next((one for one in targets if one["code"] == code), None)
@@ -101,7 +101,7 @@ def _asked(
         faults.append(f"There is no target “{code}”; the best verdict of all targets is shown.")
     typed = [name.strip() for name in request.args.getlist("value") if name.strip()]
     names = [name for name in dict.fromkeys(typed) if name != NOTHING] if typed else list(DEFAULT_VALUES)
-    shown = []
+    shown: list[Column] = []
     for name in names:
         column = columns.get(name)
         if column is None or not column.numeric or column.table not in ("derived", "composition", "sample"):

@@ -40,8 +40,9 @@ FAMILIES = (
 )
 OTHER = ("paper", "upright")
 PATTERNS = {
-    "rise": "M-1,1 l2,-2 M0,8 l8,-8 M7,9 l2,-2", "fall": "M-1,7 l2,2 M0,0 l8,8 M7,-1 l2,2", "upright": "M2,0 v8 M6,0 v8",
-    "level": "M0,2 h8 M0,6 h8", "cross": "M4,1 v6 M1,4 h6", "dots": "",
+    "rise": "M-1,1 l2,-2 M0,8 l8,-8 M7,9 l2,-2", "fall": "M-1,7 l2,2 M0,0 l8,8 M7,-1 l2,2",
+    "upright": "M2.5,0 v8 M6.5,0 v8",
+    "level": "M0,2.5 h8 M0,6.5 h8", "cross": "M4.5,1 v7 M1,4.5 h7", "dots": "",
 }  # fmt: skip
 STROKES = {"black": "black", "paper": "soft", "blue": "light"}
 
@@ -221,10 +222,7 @@ def _track(place: int, column: Any, samples: Sequence[Mapping[str, Any]], at: An
     low, high, logarithmic = _scale(min(values), max(values))
 
     def across(value: float) -> float:
-        if logarithmic:
-            share = math.log(value / low) / math.log(high / low)
-        else:
-            share = (value - low) / (high - low)
+        share = math.log(value / low) / math.log(high / low) if logarithmic else (value - low) / (high - low)
         return round(4.0 + 92.0 * share, 2)
 
     points: list[Point] = []

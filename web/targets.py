@@ -10,7 +10,7 @@ from registry.explain import read_definition
 from registry.store.reading import methods as methods_reading
 from registry.store.reading import targets as reading
 from web.errors import Missing
-from web.reading import registry_connection
+from web.reading import offered_columns, registry_connection
 
 blueprint = Blueprint("targets", __name__)
 
@@ -27,10 +27,16 @@ def list_page() -> Any:
 def page(code: str) -> Any:
     with registry_connection() as connection:
         targets = reading.target_list(connection)
-        labels = {row["name"]: row["label"] for row in methods_reading.quantities(connection)}
+        quantities = methods_reading.quantities(connection)
+        offered = offered_columns(connection)
     target = next((target for target in targets if target["code"] == code), None)
     if target is None:
         near = [(other["name"], url_for("targets.page", code=other["code"])) for other in targets]
         raise Missing("target", code, near)
     definition = read_definition(target["definition"])
-    return render_template("target.html", section="Targets", target=target, definition=definition, labels=labels)
+    labels = {row["name"]: row["label"] for row in quantities}
+    units = {name: column.unit for name, column in offered.items()}
+    units |= {row["name"]: row["unit"] for row in quantities}
+    return render_template(
+        "target.html", section="Targets", target=target, definition=definition, labels=labels, units=units
+    )

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import re
 import shutil
 import sqlite3
 from collections.abc import Iterator
@@ -199,3 +200,52 @@ def changed(invented_registry: Path, tmp_path: Path) -> Iterator[tuple[Registry,
     yield registry, application.test_client()
     application.extensions["registry"].close()
     registry.close()
+
+
+class WritableSite:
+    """A client of a site that may write, over a copy of the registry with a logged hole; ``post`` brings the token."""
+
+    def __init__(self, path: Path) -> None:
+        self.path = path
+        self.app = create_app(str(path), writable=True, drafts=path.parent / "drafts")
+        self.client = self.app.test_client()
+
+    def post(self, address: str, **fields: str) -> Any:
+        page = self.client.get(address).text
+        token = re.search(r'name="csrf_token" value="([^"]+)"', page)
+        assert token is not None
+        version = re.search(r'name="row_version" value="([^"]+)"', page)
+        known = {"csrf_token": token[1]} | ({"row_version": version[1]} if version else {})
+        return self.client.post(address, data=known | fields)
+
+    def sql(self, query: str, *bound: Any) -> list[tuple[Any, ...]]:
+        """Rows by sqlite3 alone, beside the program."""
+        connection = sqlite3.connect(self.path)
+        try:
+            rows = connection.execute(query, bound).fetchall()
+            connection.commit()
+        finally:
+            connection.close()
+        return rows
+
+
+@pytest.fixture
+def writable(invented_registry: Path, tmp_path: Path) -> Iterator[WritableSite]:
+    """A site that may write. The log and survey of DH-1 are invented."""
+    site = WritableSite(Path(shutil.copy(invented_registry, tmp_path / "writable.sqlite")))
+    hole = site.sql("SELECT site_id FROM site WHERE code = 'DH-1'")[0][0]
+    for start, end, rock in (
+        (0, 8, "overburden"),
+        (8, 60, "granodiorite"),
+        (60, 140, "very fine grained gabbronorite"),
+    ):
+        site.sql(
+            "INSERT INTO lithology_interval (site_id, from_m, to_m, lithology) VALUES (?, ?, ?, ?)",
+            hole,
+            start,
+            end,
+            rock,
+        )
+    site.sql("INSERT INTO survey (site_id, depth_m, azimuth_deg, dip_deg) VALUES (?, 0, 90, -60)", hole)
+    yield site
+    site.app.extensions["registry"].close()

@@ -45,8 +45,8 @@ def every_page(client: FlaskClient, address: str) -> list[str]:
     return found
 
 
-def test_start_page_answers_with_the_list(client: FlaskClient) -> None:
-    page = get(client, "/")
+def test_samples_page_without_conditions_lists_every_sample(client: FlaskClient) -> None:
+    page = get(client, "/samples")
     assert total(page) == "122"
     assert "PB-001" in codes(page)
 

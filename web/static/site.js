@@ -42,3 +42,17 @@ for (const box of document.querySelectorAll("input[data-narrows]")) {
     for (const group of target.querySelectorAll("fieldset")) group.hidden = !group.querySelector(".check:not([hidden])");
   });
 }
+
+// A link to a place inside something folded unfolds it (browsers that do so by themselves find it open).
+function unfold() {
+  const place = location.hash.length > 1 && document.getElementById(decodeURIComponent(location.hash.slice(1)));
+  if (!place) return;
+  let folded = false;
+  for (let part = place.closest("details"); part; part = part.parentElement.closest("details")) {
+    folded = folded || !part.open;
+    part.open = true;
+  }
+  if (folded) place.scrollIntoView();
+}
+addEventListener("hashchange", unfold);
+unfold();

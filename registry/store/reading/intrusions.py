@@ -39,7 +39,8 @@ class ValueRange:
     """Least, middle and greatest of one column over some samples; None where no value counts.
 
     ``below`` values stand under their limit and are counted at it, ``partial`` ones come from a digestion that leaves
-    part of the element behind and are left out. ``least_sign`` is ``<`` where the least is such a limit.
+    part of the element behind and are left out. ``least_sign`` is ``<`` where the least is such a limit, ``≤`` where
+    some value below its limit may be less still.
     """
 
     column: str
@@ -95,7 +96,7 @@ def kinds_of_samples(connection: Connection, column: str, key: int) -> dict[str,
     """How many samples of each kind one intrusion (``intrusion_id``) or site (``site_id``) has."""
     rows = connection.execute(
         text(
-            f"SELECT kind, count(*) FROM sample WHERE {_grouping(column)} = :key GROUP BY kind ORDER BY count(*) DESC, kind"
+            f"SELECT kind, count(*) FROM sample WHERE {_grouping(column)} = :key GROUP BY kind ORDER BY 2 DESC, 1"
         ),
         {"key": key},
     )
@@ -158,7 +159,7 @@ def scores_by_intrusion(connection: Connection, target_id: int) -> dict[int, dic
 def composition_ranges(
     connection: Connection, column: str, key: int
 ) -> tuple[dict[str, list[ValueRange]], list[tuple[int, float]]]:
-    """Ranges of ``RANGE_COLUMNS`` over the judged samples, by group, and (sample id, differentiation index) ascending."""
+    """Ranges of ``RANGE_COLUMNS`` over the judged samples, by group, and (sample id, differentiation index) upwards."""
     names = [name for group in RANGE_COLUMNS.values() for name in group]
     derived = [name for name in names if name in DERIVED_COLUMNS]
     chosen = [name for name in names if name not in DERIVED_COLUMNS]
@@ -216,7 +217,7 @@ def _chosen_range(name: str, values: np.ndarray, signs: Sequence[str], letters: 
         float(known[order[0]]),
         middle,
         float(known[order[-1]]),
-        "<" if under[order[0]] else "",
+        "<" if under[order[0]] else "≤" if below else "",
         "<" if 2 * below >= known.size else "",
         below,
         int(partial.sum()),

@@ -51,7 +51,8 @@ def best_verdicts_by_site(connection: Connection) -> dict[int, dict[str, int]]:
     rows = connection.execute(
         text(
             "SELECT sample.site_id, derived.best_verdict, count(*) AS n FROM sample JOIN derived ON "
-            "derived.sample_id = sample.sample_id WHERE sample.site_id IS NOT NULL AND derived.best_verdict IS NOT NULL "
+            "derived.sample_id = sample.sample_id WHERE sample.site_id IS NOT NULL "
+            "AND derived.best_verdict IS NOT NULL "
             "GROUP BY sample.site_id, derived.best_verdict"
         )
     )

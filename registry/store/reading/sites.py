@@ -72,7 +72,7 @@ def position_bases(connection: Connection, site_id: int) -> list[tuple[str, int]
 def strip_samples(
     connection: Connection, site_id: int, shown: Sequence[Column], target_id: int | None
 ) -> list[dict[str, Any]]:
-    """The samples with a depth, from the top: ``code from_m to_m verdict value_0 value_1 ...`` in the order of ``shown``.
+    """The samples with a depth, from the top: ``code from_m to_m verdict value_0 value_1 ...``, ordered as ``shown``.
 
     ``verdict`` is the word for the target, or the best of all where it is None; None where none was given. Control
     samples are left out.
