@@ -42,8 +42,10 @@ def _close(*values: Any) -> dict[str, Any]:
     return close_volatile_free(dict(zip(_CLOSE_INPUTS, values, strict=True)))
 
 
-def _no_split(ferric: Any, ferrous: Any, total: Any) -> Any:
-    return np.isfinite(total) & (np.isnan(ferric) | np.isnan(ferrous))
+def _no_split(ferric: Any, ferrous: Any, total: Any, *others: Any) -> Any:
+    """The split alone is wanting: all other majors that the closure needs are there."""
+    complete = ~np.logical_or.reduce([np.isnan(column) for column in others])
+    return complete & np.isfinite(total) & (np.isnan(ferric) | np.isnan(ferrous))
 
 
 def _counted_as_zero(column: Any, closed: Any) -> Any:
@@ -107,7 +109,7 @@ METHODS = (
                 "iron_not_split",
                 "total iron is known but could not be split into ferric and ferrous iron",
                 _no_split,
-                ("fe2o3_wt", "feo_wt", "feot_wt"),
+                ("fe2o3_wt", "feo_wt", "feot_wt", *NEEDED_OXIDES),
             ),
         ),
     ),
