@@ -32,6 +32,9 @@ BESIDE = {
     "heat_production_cause": "heat_production_uw_m3",
 }
 
+#: Warnings that a sample may not be what it is recorded as: they stand before its verdicts.
+DOUBTED_IDENTITY = ("chemistry_far_from_intrusion", "chemistry_disagrees_with_lithology")
+
 
 @blueprint.get("/samples/<path:code>")
 def page(code: str) -> Any:
@@ -59,6 +62,7 @@ def page(code: str) -> Any:
         section="Samples",
         sample=found,
         facts=_facts(found),
+        doubts=[warning["text"] for warning in warnings if warning["code"] in DOUBTED_IDENTITY],
         conclusions=conclusions,
         labels={name: row["label"] for name, row in quantities.items()},
         majors=_majors(chosen, sheets),

@@ -8,6 +8,7 @@ from __future__ import annotations
 
 import sqlite3
 from collections.abc import Iterator
+from pathlib import Path
 
 import pytest
 
@@ -15,6 +16,7 @@ import seed_demo
 from registry.founding import found
 from registry.importing import import_files
 from seed_demo.district import SWAPPED
+from web import create_app
 
 #: The body meant to lead for each target.
 MEANT = {
@@ -28,11 +30,16 @@ MEANT = {
 
 
 @pytest.fixture(scope="module")
-def view(tmp_path_factory: pytest.TempPathFactory) -> Iterator[sqlite3.Connection]:
+def path(tmp_path_factory: pytest.TempPathFactory) -> Path:
     path = tmp_path_factory.mktemp("district") / "district.sqlite"
     registry = found(path)
     import_files(registry, seed_demo.files())
     registry.close()
+    return path
+
+
+@pytest.fixture(scope="module")
+def view(path: Path) -> Iterator[sqlite3.Connection]:
     connection = sqlite3.connect(f"file:{path}?mode=ro", uri=True)
     connection.row_factory = sqlite3.Row
     yield connection
@@ -123,6 +130,15 @@ def test_exchanged_bags_are_remarked_on_both_sides(view: sqlite3.Connection) -> 
     honest = {code: distance for code, distance in said.items() if code not in exchanged}
     assert len(honest) <= 10, "more than a few honest samples are called far"
     assert min(said[code] for code in exchanged) > 2.0 * max(honest.values())
+
+
+def test_page_of_an_exchanged_bag_doubts_it_before_its_verdicts(path: Path) -> None:
+    client = create_app(str(path)).test_client()
+    doubted = client.get("/samples/KD002-206").get_data(as_text=True)
+    assert 0 < doubted.index("a swapped sample, another rock") < doubted.index("What it could be a source of")
+    assert "a swapped sample, another rock" not in client.get("/samples/KD001-103").get_data(as_text=True)
+    start = client.get("/").get_data(as_text=True)
+    assert 0 < start.index("Look again at") < start.index("KD002-206")
 
 
 def test_exchanged_bag_whose_rock_name_disagrees_is_remarked(view: sqlite3.Connection) -> None:
