@@ -89,7 +89,7 @@ class FileReport:
     def as_dict(self) -> dict[str, Any]:
         made = asdict(self)
         del made["warnings"]
-        return {**made, "remarks": self.remarks, "on_storing": [problem.sentence() for problem in self.on_storing]}
+        return {**made, "remarks": self.remarks, "on_storing": [problem.as_dict() for problem in self.on_storing]}
 
 
 @dataclass

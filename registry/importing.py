@@ -19,6 +19,7 @@ from registry.importing_controls import called_otherwise
 from registry.importing_results import LISTED_CODES, StoredBatch, store_results, unknown_codes
 from registry.intake import KINDS, MasterTable, Reading, ReadingOptions
 from registry.intake.refused import without_lines
+from registry.intake.spooled import parts_of
 from registry.intake_choices import described_columns
 from registry.keeping_going import SetAside
 from registry.lab_files import LabFile
@@ -26,6 +27,7 @@ from registry.precedence import Earlier, alternatives_within, look_after, look_b
 from registry.refresh import changes_since, drained_samples, last_change
 from registry.store import masters
 from registry.store.engine import Registry, writing
+from registry.store.near_codes import near_misses
 from registry.store.reading.changes import verdict_changes
 
 #: Called with what is being done (reading, storing, computing), how much of it is done, and of how much.
@@ -214,9 +216,8 @@ def _store_one(
             connection, reading, contents.file, options, progress, contents.batch
         )
         contents.batch = contents.batch or report.results.stored
-        if not faults and any(reading.results.control_text):
-            codes = [f"{options.code_prefix}{code}" for code in reading.results.sample_codes]
-            report.results.remarks += called_otherwise(connection, codes, reading.results, options.code_prefix)
+        if not faults:
+            report.results.remarks += called_otherwise(connection, reading.results, options.code_prefix)
         return report, done, faults
     table = reading.master
     assert table is not None
@@ -260,17 +261,24 @@ def _almost_known(connection: Any, reading: Reading, prefix: str) -> list[Proble
     """Remarks on new sample codes that registered ones differ from only in case, spaces, dashes or leading zeros."""
     table = reading.results
     assert table is not None
-    codes = [f"{prefix}{code}" for code in table.sample_codes]
-    near = masters.codes_written_otherwise(connection, codes)
-    rows = {code: row for row, code in reversed(list(enumerate(codes)))}
-    return [
-        Problem(
-            reading.file, "a registered sample is written almost the same; this one is added beside it",
-            row=int(table.line_no[rows[code]]), column=table.sample_header or None, found=code,
-            expected=f"perhaps '{close[0]}'", remedy="correct the code if they are the same", severity="warning",
-        )
-        for code, close in list(near.items())[:LISTED_CODES]
-    ]  # fmt: skip
+    registered = list(masters.all_sample_codes(connection))
+    remarks: list[Problem] = []
+    start = 0
+    for part in parts_of(table.sample_codes) if registered else ():
+        codes = [f"{prefix}{code}" for code in part]
+        rows = {code: start + row for row, code in reversed(list(enumerate(codes)))}
+        start += len(codes)
+        remarks += [
+            Problem(
+                reading.file, "a registered sample is written almost the same; this one is added beside it",
+                row=int(table.line_no[rows[code]]), column=table.sample_header or None, found=code,
+                expected=f"perhaps '{close[0]}'", remedy="correct the code if they are the same", severity="warning",
+            )
+            for code, close in near_misses(codes, registered).items()
+        ]  # fmt: skip
+        if len(remarks) >= LISTED_CODES:
+            break
+    return remarks[:LISTED_CODES]
 
 
 def _upserted(

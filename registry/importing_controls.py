@@ -56,13 +56,18 @@ def call_known_controls(connection: Any, said: dict[str, Spoken], known: dict[st
     quality_rows.set_kinds(connection, kinds)
 
 
-def called_otherwise(connection: Any, codes: list[str], table: ResultTable, prefix: str) -> list[str]:
+def called_otherwise(connection: Any, table: ResultTable, prefix: str) -> list[str]:
     """Sentences on registered samples that the certificate calls a control of another kind than they are registered as.
 
     A rock's line called a duplicate is a repeat of it, and no contradiction.
     """
-    said = spoken_of(codes, table, prefix)
-    lines = {code: int(line) for code, line in reversed(list(zip(codes, table.line_no.tolist(), strict=True)))}
+    said = spoken_of((f"{prefix}{code}" for code in table.sample_codes), table, prefix)
+    if not said:
+        return []
+    lines: dict[str, int] = {}
+    for code, text, line in zip(table.sample_codes, table.control_text, table.line_no.tolist(), strict=True):
+        if text and f"{prefix}{code}" in said:
+            lines.setdefault(f"{prefix}{code}", line)
     kinds = quality_rows.kinds_of(connection, said)
     sentences = [
         f"line {lines[code]}: the certificate calls {code} a {spoken.kind.replace('_', ' ')}, the sample list says "

@@ -175,7 +175,9 @@ def precedence_words(report: Mapping[str, Any]) -> list[str]:
     """Which results go before which, in sentences: of several columns of the file, and against earlier batches."""
     told = []
     for one in report.get("alternatives", ()):
-        taken = ", ".join(f"“{header}” in {number:,} lines" for header, number in one["taken"].items())
+        taken = ", ".join(
+            f"“{header}” in {number:,} {'line' if number == 1 else 'lines'}" for header, number in one["taken"].items()
+        )
         told.append(f"Several columns for {one['column']}: taken from {taken}.")
     groups: dict[tuple[bool, str, str], list[str]] = {}
     for one in report.get("precedence", ()):

@@ -40,6 +40,7 @@ def register(app: Flask, drafts: Any = None) -> None:
     app.config["MAX_FORM_PARTS"] = 50_000
     app.config["MAX_FORM_MEMORY_SIZE"] = 8 * 1024 * 1024
     app.jinja_env.filters["page_words"] = import_form.page_words
+    app.jinja_env.filters["grouped_problems"] = import_form.grouped_problems
     app.jinja_env.filters["precedence_words"] = import_form.precedence_words
     app.jinja_env.globals["state_words"] = lambda state: STATE_WORDS[state]
     app.register_blueprint(blueprint)

@@ -17,7 +17,7 @@ import sqlalchemy as sa
 from registry.errors import Problem
 from registry.store import bulk, master_checks, master_positions, positions, raw_rows, tables
 from registry.store.master_kinds import MASTER_KINDS, WHOLE_COLUMNS, MasterKind
-from registry.store.near_codes import near_misses, nearest
+from registry.store.near_codes import nearest
 from registry.store.sheets import VERDICT_WORDS
 
 Rows = dict[str, list[Any]]
@@ -270,9 +270,9 @@ def near_codes(connection: sa.Connection, codes: Sequence[str]) -> dict[str, str
     return nearest(codes, connection.execute(sa.select(tables.sample.c.code)).scalars()) if codes else {}
 
 
-def codes_written_otherwise(connection: sa.Connection, codes: Sequence[str]) -> dict[str, list[str]]:
-    """Registered sample codes that unregistered ones differ from only in case, spaces, dashes or leading zeros."""
-    return near_misses(codes, connection.execute(sa.select(tables.sample.c.code)).scalars())
+def all_sample_codes(connection: sa.Connection) -> Iterable[str]:
+    """The code of every registered sample."""
+    return connection.execute(sa.select(tables.sample.c.code)).scalars()
 
 
 def sample_codes(connection: sa.Connection, sample_ids: Collection[int]) -> dict[int, str]:
