@@ -31,10 +31,12 @@ SUITE_WORDS = {
 
 def scores(connection: Any, target_id: int) -> Mapping[int, Mapping[str, Any]]:
     """How the samples of every intrusion stand to a target, by intrusion id; kept until the registry changes."""
-    found: Mapping[int, Mapping[str, Any]] = remembered(
-        ("scores by intrusion", target_id), lambda: reading.scores_by_intrusion(connection, target_id)
-    )
-    return found
+
+    def find() -> Mapping[int, Mapping[str, Any]]:
+        members = remembered("members of intrusions", lambda: reading.members_of_intrusions(connection))
+        return reading.scores_by_intrusion(connection, target_id, members)
+
+    return remembered(("scores by intrusion", target_id), find)
 
 
 def leading_word(counts: Mapping[str, int]) -> str | None:

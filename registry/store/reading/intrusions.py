@@ -95,9 +95,7 @@ def near_intrusions(connection: Connection, name: str, limit: int = 6) -> list[s
 def kinds_of_samples(connection: Connection, column: str, key: int) -> dict[str, int]:
     """How many samples of each kind one intrusion (``intrusion_id``) or site (``site_id``) has."""
     rows = connection.execute(
-        text(
-            f"SELECT kind, count(*) FROM sample WHERE {_grouping(column)} = :key GROUP BY kind ORDER BY 2 DESC, 1"
-        ),
+        text(f"SELECT kind, count(*) FROM sample WHERE {_grouping(column)} = :key GROUP BY kind ORDER BY 2 DESC, 1"),
         {"key": key},
     )
     return {row[0]: row[1] for row in rows}
@@ -125,33 +123,47 @@ def sample_codes(connection: Connection, sample_ids: Sequence[int]) -> dict[int,
     return {row[0]: row[1] for row in rows}
 
 
-def scores_by_intrusion(connection: Connection, target_id: int) -> dict[int, dict[str, Any]]:
+def members_of_intrusions(connection: Connection) -> tuple[np.ndarray, np.ndarray]:
+    """Ids (n,) of the samples that are named after an intrusion, ascending, and those intrusions' ids (n,); int64."""
+    rows = raw_rows.select(
+        connection,
+        f"SELECT sample_id, intrusion_id FROM sample WHERE intrusion_id IS NOT NULL AND kind NOT IN ({CONTROLS}) "
+        "ORDER BY sample_id",
+    )
+    found = raw_rows.numbers_of(rows, 2).astype(np.int64)
+    return found[:, 0], found[:, 1]
+
+
+def scores_by_intrusion(
+    connection: Connection, target_id: int, members: tuple[np.ndarray, np.ndarray] | None = None
+) -> dict[int, dict[str, Any]]:
     """How the samples of every intrusion stand to one target, by intrusion id.
 
     ``counts`` by verdict word, ``best_score`` and ``median_score`` (share of the points met; None where none was
-    scored), ``scored`` how many were. Reads every verdict on the target: keep the answer.
+    scored). ``members`` as ``members_of_intrusions`` gives them, else they are read. Reads every verdict on the
+    target, from the index alone: keep the answer.
     """
-    # read along the index of the target's verdicts, sample by sample: a hundred thousand rows of verdict stay unread
+    samples, bodies = members_of_intrusions(connection) if members is None else members
     rows = raw_rows.select(
-        connection,
-        "SELECT s.intrusion_id, v.verdict, v.score_min FROM verdict AS v CROSS JOIN sample AS s "
-        f"WHERE s.sample_id = v.sample_id AND v.target_id = {int(target_id)} AND s.intrusion_id IS NOT NULL "
-        f"AND s.kind NOT IN ({CONTROLS})",
+        connection, f"SELECT sample_id, verdict, score_min FROM verdict WHERE target_id = {int(target_id)}"
     )
-    if not rows:
+    if not rows or not samples.size:
         return {}
-    table = np.array(list(zip(*rows, strict=True)), dtype=np.float64).T
-    table = table[np.argsort(table[:, 0], kind="stable")]
-    starts = np.flatnonzero(np.r_[True, table[1:, 0] != table[:-1, 0]])
+    ids, verdicts, scores = (np.array(column, dtype=np.float64) for column in zip(*rows, strict=True))
+    places = np.minimum(np.searchsorted(samples, ids), samples.size - 1)
+    named = samples[places] == ids
+    body, verdict, score = bodies[places[named]], verdicts[named].astype(np.int64), scores[named]
+    order = np.argsort(body, kind="stable")
+    body, verdict, score = body[order], verdict[order], score[order]
+    starts = np.flatnonzero(np.r_[True, body[1:] != body[:-1]]) if body.size else np.zeros(0, dtype=np.int64)
     found = {}
-    for part in np.split(table, starts[1:]):
-        counted = np.bincount(part[:, 1].astype(int), minlength=len(VERDICT_WORDS))
-        scores = part[:, 2][~np.isnan(part[:, 2])]
-        found[int(part[0, 0])] = {
+    for start, end in zip(starts.tolist(), [*starts[1:].tolist(), body.size], strict=True):
+        counted = np.bincount(verdict[start:end], minlength=len(VERDICT_WORDS))
+        known = score[start:end][~np.isnan(score[start:end])]
+        found[int(body[start])] = {
             "counts": dict(zip(VERDICT_WORDS, counted.tolist(), strict=True)),
-            "best_score": float(scores.max()) if scores.size else None,
-            "median_score": float(np.median(scores)) if scores.size else None,
-            "scored": int(scores.size),
+            "best_score": float(known.max()) if known.size else None,
+            "median_score": float(np.median(known)) if known.size else None,
         }
     return found
 
