@@ -7,7 +7,7 @@ are what files and other rows refer to.
 from __future__ import annotations
 
 import unicodedata
-from collections.abc import Mapping
+from collections.abc import Iterable, Mapping
 from dataclasses import dataclass, field
 from typing import Any
 
@@ -23,7 +23,7 @@ from registry.intake.master_checks import check_rows
 from registry.intake.readings import ReadingOptions
 from registry.recomputing import Consequence, consequence_of, refresh_in_background
 from registry.store import edits, masters
-from registry.store.engine import Registry, reading, writing
+from registry.store.engine import Registry, writing
 
 __all__ = [
     "KEY_FIELDS",
@@ -40,7 +40,6 @@ __all__ = [
     "change",
     "fields_of",
     "find",
-    "find_in",
     "read_typed",
     "spelled",
 ]
@@ -105,12 +104,6 @@ def find(connection: Any, kind: str, code: str) -> Record:
     return _record(kind, code, row)
 
 
-def find_in(registry: Registry, kind: str, code: str) -> Record:
-    """The same on a connection of its own."""
-    with reading(registry) as connection:
-        return find(connection, kind, code)
-
-
 def _record(kind: str, code: str, row: Mapping[str, Any]) -> Record:
     values = {one.name: row.get(one.name) for one in fields_of(kind)}
     for one in fields_of(kind):
@@ -134,12 +127,19 @@ def change(registry: Registry, kind: str, code: str, row_version: int, typed: Ma
             raise ChangedMeanwhile(before)
         values, faults = read_typed(kind, typed)
         changed = {name: value for name, value in values.items() if value != before.values[name]}
-        if faults or not changed:
-            if faults:
-                raise Refused(faults)
+        if not faults and not changed:
             return Edited()
-        remarks = _checked(connection, before, changed, row["row_id"])
-        told = consequence_of(connection, lambda inside: _apply(inside, before, changed, row["row_id"], remarks), CAUSE)
+        remarks: list[str] = []
+
+        def apply(inside: Any) -> None:
+            # every fault is told at once, whichever check finds it; with any of them nothing is kept
+            found, told = _checked(inside, before, changed, row["row_id"])
+            found = {**_stored(inside, before, changed, row["row_id"], told), **found, **faults}
+            if found:
+                raise Refused(found)
+            remarks.extend(told)
+
+        told = consequence_of(connection, apply, CAUSE)
         words = [f"{name} {spelled(before.values[name])} -> {spelled(value)}" for name, value in changed.items()]
         auditing.note(connection, "edit", f"{kind} {code}", "; ".join(words))
     if told.waiting:
@@ -211,17 +211,16 @@ def _listed(words: tuple[str, ...]) -> str:
     return ", ".join(word.replace("_", " ") for word in words)
 
 
-def _checked(connection: Any, before: Record, changed: Mapping[str, Any], row_id: int) -> list[str]:
-    """Remarks on the row as it would be; Refused where its cells do not go together."""
+def _checked(
+    connection: Any, before: Record, changed: Mapping[str, Any], row_id: int
+) -> tuple[dict[str, str], list[str]]:
+    """(a sentence by field where cells do not go together, remarks) of the row as it would be."""
     after = {**before.values, **changed}
     plural = KINDS[before.kind]
     table = {KEY_FIELDS[before.kind]: [before.code], **{name: [value] for name, value in after.items()}}
     findings = Findings("form")
     check_rows(plural, table, np.array([1]), {name: name for name in table}, ReadingOptions(), findings, [])
-    faults: dict[str, str] = {}
-    for problem in findings.problems():
-        if problem.severity == "problem":
-            faults.setdefault(_shown_at(problem, changed), problem_words(problem))
+    faults, remarks = _sorted(findings.problems(), changed)
     for name in _NAMED_SAMPLES:
         if changed.get(name) and not masters.sample_ids(connection, [changed[name]]):
             faults[name] = f"The registry holds no sample “{changed[name]}”."
@@ -232,9 +231,19 @@ def _checked(connection: Any, before: Record, changed: Mapping[str, Any], row_id
                 f"A sample, interval or survey of it reaches {deepest:g} m, more than {changed['depth_m']:g} m; "
                 "correct the length, or those depths first."
             )
-    if faults:
-        raise Refused(faults)
-    return [problem_words(problem) for problem in findings.problems()]
+    return faults, remarks
+
+
+def _sorted(problems: Iterable[Problem], changed: Mapping[str, Any]) -> tuple[dict[str, str], list[str]]:
+    """Problems as (a sentence by field, the first of each), warnings as remarks."""
+    faults: dict[str, str] = {}
+    remarks = []
+    for problem in problems:
+        if problem.severity == "problem":
+            faults.setdefault(_shown_at(problem, changed), problem_words(problem))
+        else:
+            remarks.append(problem_words(problem))
+    return faults, remarks
 
 
 def _shown_at(problem: Problem, changed: Mapping[str, Any]) -> str:
@@ -252,7 +261,10 @@ def problem_words(problem: Problem) -> str:
     return f"{text}; {problem.remedy}." if problem.remedy else f"{text}."
 
 
-def _apply(connection: Any, before: Record, changed: Mapping[str, Any], row_id: int, remarks: list[str]) -> None:
+def _stored(
+    connection: Any, before: Record, changed: Mapping[str, Any], row_id: int, remarks: list[str]
+) -> dict[str, str]:
+    """Write the changed cells as an import does; a sentence by field where its checks refuse them."""
     plural = KINDS[before.kind]
     edits.empty_cells(connection, plural, row_id, [name for name, value in changed.items() if value is None])
     given = {name: value for name, value in changed.items() if value is not None}
@@ -263,14 +275,10 @@ def _apply(connection: Any, before: Record, changed: Mapping[str, Any], row_id: 
             given |= {name: after[name] for name in group if after.get(name) is not None}
     if given:
         rows = {KEY_FIELDS[before.kind]: [before.code], **{name: [value] for name, value in given.items()}}
-        outcome = masters.upsert(connection, plural, rows, [1], "form")
-        faults: dict[str, str] = {}
-        for problem in outcome.problems:
-            if problem.severity == "problem":
-                faults.setdefault(_shown_at(problem, changed), problem_words(problem))
-            else:
-                remarks.append(problem_words(problem))
+        faults, told = _sorted(masters.upsert(connection, plural, rows, [1], "form").problems, changed)
         if faults:
-            raise Refused(faults)
+            return faults
+        remarks += told
     if _PLACING & set(changed):
         edits.place_samples(connection, plural, row_id)
+    return {}

@@ -113,6 +113,12 @@ def test_edit_faulty_field_is_told_below_it_and_nothing_is_changed(
     assert writable.sql("SELECT count(*) FROM audit_entry") == [(0,)]
 
 
+def test_edit_tells_every_fault_at_once(writable: Any) -> None:
+    answer = writable.post("/edit/sample/PB-002", density_kg_m3="2,7", intrusion="Kestrel", from_m="5", to_m="4")
+    assert {"density_kg_m3", "intrusion", "from_m"} == set(faults(answer.text))
+    assert "3 fields hold what cannot be taken" in answer.text
+
+
 def test_edit_after_another_says_what_stands_now_and_saving_again_takes_effect(writable: Any) -> None:
     page = writable.client.get("/edit/sample/PB-002").text
     first = re.search(r'name="row_version" value="(\d+)"', page).group(1)  # type: ignore[union-attr]
