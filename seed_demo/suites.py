@@ -3,8 +3,8 @@
 Written down before anything was judged, from what the petrology of such rocks says. Mended once the first judging had
 put the leucogranite before the tin granite for tin: biotite and muscovite had let go of tin and fluorine in cool melts
 as in hot ones, against the literature (``averages.PARTITION``), and the tin granite had been given the residue of a
-cool melt. The sense of these changes is the literature's, from memory; the sizes of the coefficients for tin are ours, and
-they were set with that ranking in sight. The other suites stand as they were first judged.
+cool melt. The sense of these changes is the literature's, from memory; the sizes of the coefficients for tin are ours,
+and they were set with that ranking in sight. The other suites stand as they were first judged.
 """
 
 from __future__ import annotations
