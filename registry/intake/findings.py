@@ -65,7 +65,8 @@ class Findings:
             ordered.append(
                 Problem(
                     self.file,
-                    f"{more} more of the same kind ({what}), the last at row {last.row}",
+                    f"{more:,} more of the same kind ({what})"
+                    + ("" if last.row is None else f", the last at row {last.row}"),
                     column=last.column,
                     found=last.found,
                     expected=last.expected,
