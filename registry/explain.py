@@ -18,6 +18,7 @@ import numpy as np
 from registry.margins import Margin, margin
 from registry.petrology.analytes import CHOSEN_COLUMNS
 from registry.petrology.conventions import Conventions
+from registry.petrology.heat import effective_half_width_m
 from registry.pipeline import Chunk, compute
 from registry.store import loading
 from registry.store.reading import sample as reading
@@ -119,6 +120,9 @@ def _known_of_several(connection: Any, sample_ids: Sequence[int]) -> dict[int, t
             **dict(zip(CHOSEN_COLUMNS, composition.values, strict=True)),
             **computed.derived,
             **context,
+            "half_width_m": effective_half_width_m(
+                context["intrusion_shape"], context["half_width_m"], context["volume_km3"]
+            ),
         }
         for place, sample_id in enumerate(composition.sample_ids.tolist()):
             known = {name: _plain(column[place]) for name, column in columns.items()}
