@@ -100,6 +100,14 @@ def standings(connection: Any, column: str, key: int, explained: Collection[str]
     return sorted(found, key=lambda one: (order[one.leading], -(one.median_score or 0.0)))
 
 
+def shared_cautions(found: Sequence[Standing]) -> tuple[str, ...]:
+    """Cautions that every target has, in the order of the first: they need not be said of each."""
+    if not found:
+        return ()
+    common = set.intersection(*(set(one.cautions) for one in found))
+    return tuple(caution for caution in found[0].cautions if caution in common)
+
+
 def _standing(
     target: dict[str, Any],
     rows: Sequence[tuple[Any, ...]],

@@ -8,7 +8,7 @@ from typing import Any
 from flask import Blueprint, render_template, request, url_for
 
 from registry.explain import read_definition
-from registry.standing import standings
+from registry.standing import shared_cautions, standings
 from registry.store.reading import intrusions as reading
 from registry.store.reading import places as places_reading
 from registry.store.reading import suites as suites_reading
@@ -120,6 +120,7 @@ def page(name: str) -> Any:
         standings=[one for one in standing if one.leading != "unfavourable"],
         against=[one for one in standing if one.leading == "unfavourable"],
         judged=any(one.samples for one in standing),
+        shared_cautions=shared_cautions(standing),
         ranges=[
             (group, [(columns[one.column], one, range_bar(one)) for one in members if one.column in columns])
             for group, members in ranges.items()

@@ -7,7 +7,7 @@ from typing import Any
 
 from flask import Blueprint, render_template, request, url_for
 
-from registry.standing import standings
+from registry.standing import shared_cautions, standings
 from registry.store.reading import intrusions as samples_reading
 from registry.store.reading import places as places_reading
 from registry.store.reading import sites as reading
@@ -82,6 +82,7 @@ def page(code: str) -> Any:
         standings=[one for one in standing if one.leading in ("favourable", "possible")],
         others=[one for one in standing if one.samples and one.leading not in ("favourable", "possible")],
         judged=any(one.samples for one in standing),
+        shared_cautions=shared_cautions(standing),
         kinds=kinds,
         total=sum(kinds.values()),
         samples=samples,
