@@ -18,6 +18,8 @@ _LOWER_LIMIT = re.compile(
     r"|lower limits?|det\.? ?lim\w*)\b"
 )
 _UPPER_LIMIT = re.compile(r"(?i)\b(upper ?(detection|reporting)?[ _]?limits?|udl|uol|max(imum)? limit|upper)\b")
+#: Letters, then a number: a sample code, though its letters may be those of a detection limit.
+_CODE_LIKE = re.compile(r"[A-Za-z]+[\s\-_/.]*\d[\w\-./]*")
 #: A title line that states a method or a unit once.
 _STATEMENT = re.compile(r"(?i)\W*[\w ]*\b(methods?|digestion|analysis|units?|results?|technique)\b[\w ]*[:=]\s*\S")
 _UNIT_LABEL = re.compile(r"(?i)^\W*units?\b")
@@ -125,6 +127,8 @@ def _role(row: list[str], analytes: dict[int, Heading], below: bool) -> str | No
     numbers = sum(state in (NUMBER, BELOW, MISSING) for state in states)
     named = sum(read_heading(text).analyte is not None for text in inside)
     if numbers >= 0.5 * len(inside):
+        if any(_CODE_LIKE.fullmatch(text) for text in outside):
+            return None  # a sample called DL-12 or LOD-3 is a sample
         if _UPPER_LIMIT.search(label) and not _LOWER_LIMIT.search(label):
             return UPPER
         if _LOWER_LIMIT.search(label) and len(outside) <= 2:

@@ -374,3 +374,10 @@ def test_file_that_is_no_table_is_a_problem_in_a_sentence(data, words):
 def test_names_of_heading_rows_are_no_part_of_the_code_columns_heading():
     text = "Method,XRF,Fusion\nDetection limit,0.01,2\nSample ID,SiO2,Zr\nUnits,%,ppm\nA-1,60.1,180\n"
     assert read_file("stacked.csv", text.encode()).results.sample_header == "Sample ID"
+
+
+@pytest.mark.parametrize("code", ["DL-1", "LOD-3", "MDL02", "UDL-1", "Upper-1", "MEAN-1", "STD-1", "TOTAL-5", "UNIT-2"])
+def test_sample_whose_code_begins_like_a_heading_row_stays_a_sample(code: str) -> None:
+    reading = read_file("codes.csv", f"Sample,SiO2 (%),Zr (ppm)\n{code},66,180\nA-1,65,170\n".encode())
+    assert reading.results is not None
+    assert reading.results.sample_codes == [code, "A-1"]
