@@ -57,7 +57,8 @@ class Page(HTMLParser):
             self.inside_label += 1
             if given.get("for"):
                 self.labelled.add(given["for"] or "")
-        if tag in ("input", "select", "textarea") and not self.inside_label:
+        seen = given.get("type") != "hidden"  # what nobody sees needs no label
+        if seen and tag in ("input", "select", "textarea") and not self.inside_label:
             self.fields.append((tag, given.get("id")))
 
     def handle_endtag(self, tag: str) -> None:
