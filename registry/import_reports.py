@@ -49,9 +49,8 @@ class FileReport:
     def lines(self, verbose: bool = False) -> list[str]:
         lines = [f"{self.file}: {self.kind}, {counted(self.rows, 'row')}"]
         lines += [f"  understood: {sentence}" for sentence in self._understood(verbose)]
-        lines += [
-            f"  remark: {sentence}" for sentence in (self.remarks if verbose else remarks_in_short(self.warnings))
-        ]
+        remarks = self.remarks if verbose else remarks_in_short([*self.warnings, *self.on_storing])
+        lines += [f"  remark: {sentence}" for sentence in remarks]
         if self.refused:
             lines.append(f"  refused: {counted(self.refused, 'row')}" + self._where_refused())
         if self.results is not None:

@@ -198,7 +198,7 @@ def _outside_their_area(
             "epsg" if not np.isnan(epsg[row]) else "longitude",
             f"longitude {lon[row]:.4f}, latitude {lat[row]:.4f}",
             f"a place within {positions.name_of_system(int(own[row]))}",
-            "check the zone that the EPSG code names, and the area",
+            "check the zone that the EPSG code names, or whether longitude and latitude are exchanged, and the area",
             "warning",
         )
         for row in np.flatnonzero(far)[:LISTED].tolist()

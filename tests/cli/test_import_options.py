@@ -121,3 +121,12 @@ def test_report_as_json_says_what_was_understood_of_every_column(run: Run, file:
     report = json.loads(printed)
     assert [column["use"] for column in report["files"][0]["columns"]] == ["sio2_wt", "cu_ppm"]
     assert any("column 'Cu (ppm)' is Cu in ppm" in sentence for sentence in report["files"][0]["understood"])
+
+
+def test_remarks_of_the_registry_are_printed_with_those_of_the_file(run: Run, file: Callable) -> None:
+    run("import", file("areas.csv", "area,epsg\nNorth Block,32719\n"))
+    text = "site_code,site_kind,area,longitude,latitude\nP-1,outcrop,North Block,-23.95,-69.49\n"
+    code, printed, _ = run("import", file("sites.csv", text), "--dry-run")
+    assert code == 0
+    assert "remark: sites.csv, row 2, column 'longitude': the site lies where the coordinate system" in printed
+    assert "whether longitude and latitude are exchanged" in printed
