@@ -12,9 +12,12 @@ from registry.explain import explain_sample
 from registry.judging import install_shipped_definitions
 from registry.petrology.analytes import CHOSEN_COLUMNS
 from registry.refresh import drain
+from registry.standing import standings
 from registry.store import tables
 from registry.store.engine import Registry, reading, writing
-from registry.store.reading import batches, intrusions, methods, places, sample, targets
+from registry.store.reading import batches, editing, intrusions, methods, places, sample, sites, start, targets
+from registry.store.reading.columns import load_columns
+from registry.store.reading.session import change_mark
 from registry.store.sheets import VERDICT_WORDS
 from registry.targets.definition import load_definitions
 
@@ -146,3 +149,64 @@ def test_methods_give_unit_and_source_of_every_quantity(connection: Any) -> None
     assert all(row["unit"] and row["source"] for row in methods.quantities(connection))
     assert all(row["unit"] and row["source"] for row in methods.column_guide(connection))
     assert methods.warning_kinds(connection)
+
+
+def test_intrusion_and_site_are_read_on_either_engine(connection: Any) -> None:
+    body = intrusions.find_intrusion(connection, "Aster stock")
+    assert body is not None and body["area"] == "North"
+    assert intrusions.find_intrusion(connection, "aster stock") is None
+    assert intrusions.near_intrusions(connection, "aster stock")[0] == "Aster stock"
+    key = body["intrusion_id"]
+    assert intrusions.kinds_of_samples(connection, "intrusion_id", key) == {"core": 1}
+    found = standings(connection, "intrusion_id", key)
+    assert {one.target for one in found} == set(load_definitions())
+    assert all(sum(one.counts.values()) == one.samples == 1 for one in found)
+    assert all(one.conclusion is not None and one.best[0].code == "R-1" for one in found)
+    ranges, ordered = intrusions.composition_ranges(connection, "intrusion_id", key)
+    by_name = {one.column: one for group in ranges.values() for one in group}
+    assert (by_name["sr_ppm"].least, by_name["sr_ppm"].greatest) == (640.0, 640.0)
+    assert (by_name["sn_ppm"].least_sign, by_name["sn_ppm"].below) == ("<", 1)
+    assert (by_name["zr_ppm"].values, by_name["zr_ppm"].partial) == (0, 1)
+    assert intrusions.norms_of(connection, [ordered[0][0]])[ordered[0][0]]["norm"]["q"] > 10
+    assert [row["code"] for row in intrusions.sample_rows(connection, "intrusion_id", key)] == ["R-1"]
+    place = sites.find_site(connection, "DH-1")
+    assert place is not None and place["area"] == "North"
+    assert sites.near_sites(connection, "dh-1") == ["DH-1"]
+    columns = load_columns(connection)
+    target = targets.active_targets(connection)[0]["target_id"]
+    for chosen in (None, target):
+        (row,) = sites.strip_samples(connection, place["site_id"], [columns["sr_y"], columns["sr_ppm"]], chosen)
+        assert (row["code"], row["value_0"], row["value_1"]) == ("R-1", pytest.approx(64.0), 640.0)
+        assert row["verdict"] in VERDICT_WORDS
+    assert sites.survey_rows(connection, place["site_id"]) == sites.interval_rows(connection, place["site_id"]) == []
+
+
+def test_groups_of_samples_are_of_an_intrusion_or_a_site_alone(connection: Any) -> None:
+    with pytest.raises(ValueError, match="grouped by intrusion_id or site_id, not by 'kind'"):
+        intrusions.judged_samples(connection, "kind", 1)
+
+
+def test_start_page_is_read_on_either_engine(connection: Any) -> None:
+    assert start.totals(connection) == {
+        "samples": 1, "controls": 1, "sites": 1, "intrusions": 2, "areas": 1, "batches": 2
+    }  # fmt: skip
+    assert [row["code"] for row in start.last_batches(connection)] == ["Q-2", "Q-1"]
+    assert start.waiting(connection) == {"stale": 0, "without_results": 0}
+    assert start.failed_controls(connection) == start.unfit_samples(connection) == []
+    assert start.is_demo(connection) is False
+    assert start.remarks(connection) == (0, 0, [])
+    undecided = [start.undecided_reasons(connection, one["target_id"]) for one in targets.active_targets(connection)]
+    assert any(undecided)
+    assert editing.names_in_use(connection, "intrusion", "name") == ["Aster stock", "Brock gabbro"]
+
+
+def test_change_mark_stays_until_somebody_commits(any_registry: Registry) -> None:
+    mark = change_mark(any_registry)
+    assert change_mark(any_registry) == mark
+    with writing(any_registry) as writer:
+        _insert(writer, tables.area, name="Elsewhere")
+    later = change_mark(any_registry)
+    assert later != mark
+    with reading(any_registry) as reader:
+        reader.execute(sa.select(tables.area)).all()
+    assert change_mark(any_registry) == later
