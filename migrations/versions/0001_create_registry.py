@@ -133,7 +133,8 @@ intrusion = table(
     "intrusion", own_id("intrusion_id"), sa.Column("name", words, nullable=False, unique=True),
     link("area_id", "area.area_id"), sa.Column("shape", words),
     *reals("half_width_m volume_km3 depth_to_top_m emplacement_depth_m age_ma age_sigma_ma country_density_kg_m3"),
-    sa.Column("mapped", whole), *texts("parent_sample fresh_sample"), row_version(), one_of("shape", "sphere", "slab", "cylinder"),
+    sa.Column("mapped", whole), *texts("parent_sample fresh_sample"), row_version(),
+    one_of("shape", "sphere", "slab", "cylinder"),
     sa.CheckConstraint("mapped BETWEEN 0 AND 1", name="mapped"),
 )
 sa.Index(None, intrusion.c.area_id)

@@ -1,8 +1,8 @@
 """Counts the elementwise steps of the catalogue: computes one chunk on arrays that report what is done to them.
 
 Run as a process of its own, since it lets numpy's makers of arrays give the reporting kind. Counted are the ufuncs that
-give one value a sample, the others of numpy's functions that do (``where``, ``isin``, ...), and look-ups of numbers and words in a table.
-Not counted are comparisons of words, copies, and what numpy does inside a function of its own.
+give one value a sample, the others of numpy's functions that do (``where``, ``isin``, ...), and look-ups of
+numbers and words in a table. Not counted are comparisons of words, copies, and what numpy does inside a function of its own.
 """
 
 from __future__ import annotations

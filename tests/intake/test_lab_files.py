@@ -10,7 +10,7 @@ import pytest
 
 from registry.intake import read_file
 
-FOLDER = Path("/work/shared/data/lab_files")
+FOLDER = Path(__file__).resolve().parents[3] / "shared" / "data" / "lab_files"
 pytestmark = pytest.mark.skipif(not FOLDER.is_dir(), reason="the shared laboratory files are not on this machine")
 
 

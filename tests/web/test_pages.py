@@ -24,7 +24,8 @@ PAGES = (
     "/sites", "/samples?sio2_wt_min=abc", "/samples/none", "/batches/none", "/targets/none", "/nowhere",
     "/intrusions/Aster stock", "/intrusions?target=tin", "/intrusions/none", "/sites/DH-1", "/sites/OC-7",
     "/sites/DH-1?value=sr_y&value=mg_number&target=tin", "/sites/none", "/settings", "/edit/sample/PB-001",
-    "/static/site.css", "/static/site.js", "/static/favicon.svg", "/import", "/import/none", "/import/none/state.json", "/import/none/refused/0",
+    "/static/site.css", "/static/site.js", "/static/favicon.svg", "/import", "/import/none", "/import/none/state.json",
+    "/import/none/refused/0",
     "/batch/file/Q-2041", "/batch/withdraw/Q-2041", "/reported/PB-001", "/reported/none", "/diagrams",
 )  # fmt: skip
 
