@@ -10,7 +10,11 @@ MAJORS = {
     "SiO2": 62.0, "TiO2": 0.7, "Al2O3": 16.0, "Fe2O3T": 5.5, "MnO": 0.1, "MgO": 2.4, "CaO": 4.6, "Na2O": 3.8,
     "K2O": 2.6, "P2O5": 0.2, "LOI": 1.4,
 }  # fmt: skip
-TRACES = ["Li", "Be", "Sc", "V", "Cr", "Co", "Ni", "Cu", "Zn", "Ga", "Rb", "Sr", "Y", "Zr", "Nb", "Mo", "Ag", "Cd", "Sn", "Sb", "Cs", "Ba", "La", "Ce", "Pr", "Nd", "Sm", "Eu", "Gd", "Tb", "Dy", "Ho", "Er", "Tm", "Yb", "Lu", "Hf", "Ta", "W", "Tl", "Pb", "Bi", "Th", "U"]
+WORDS = (
+    "Li Be Sc V Cr Co Ni Cu Zn Ga Rb Sr Y Zr Nb Mo Ag Cd Sn Sb Cs Ba La Ce Pr Nd Sm Eu Gd Tb Dy Ho Er Tm Yb Lu Hf Ta "
+    "W Tl Pb Bi Th U"
+)
+TRACES = WORDS.split()
 COLUMNS = [*(f"{oxide} (%)" for oxide in MAJORS), *(f"{element} (ppm)" for element in TRACES)]
 assert len(COLUMNS) == 55
 

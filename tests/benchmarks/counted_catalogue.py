@@ -2,7 +2,8 @@
 
 Run as a process of its own, since it lets numpy's makers of arrays give the reporting kind. Counted are the ufuncs that
 give one value a sample, the others of numpy's functions that do (``where``, ``isin``, ...), and look-ups of
-numbers and words in a table. Not counted are comparisons of words, copies, and what numpy does inside a function of its own.
+numbers and words in a table. Not counted are comparisons of words, copies, and what numpy does inside a function of its
+own.
 """
 
 from __future__ import annotations
