@@ -14,7 +14,7 @@ import sys
 from collections import deque
 from collections.abc import Iterable, Iterator, Sequence
 from concurrent.futures import Future, ThreadPoolExecutor
-from contextlib import suppress
+from contextlib import contextmanager, suppress
 from types import TracebackType
 from typing import Any, BinaryIO
 
@@ -29,6 +29,41 @@ WORTH_A_CHILD = 2 * CHUNK_SIZE
 CHILDS_CHUNK_SIZE = CHUNK_SIZE // 4
 #: Chunks computed ahead of the writer.
 AHEAD = 2
+
+
+#: Children that are started and wait for their rules.
+_SPARE: deque[subprocess.Popen[bytes]] = deque(maxlen=1)
+
+
+def _start() -> subprocess.Popen[bytes]:
+    path = os.pathsep.join(entry for entry in sys.path if entry)
+    return subprocess.Popen(
+        [sys.executable, "-m", "registry.computing"],
+        stdin=subprocess.PIPE,
+        stdout=subprocess.PIPE,
+        env={**os.environ, "PYTHONPATH": path},
+    )
+
+
+def _end(child: subprocess.Popen[bytes]) -> None:
+    """Close the pipes, which ends the child, and wait for it."""
+    for stream in (child.stdin, child.stdout):
+        if stream is not None:
+            with suppress(BrokenPipeError):
+                stream.close()
+    child.wait()
+
+
+@contextmanager
+def child_at_hand(wanted: bool) -> Iterator[None]:
+    """Start a child before it is needed: while a large file is read it imports what it computes with."""
+    if wanted and not _SPARE:
+        _SPARE.append(_start())
+    try:
+        yield
+    finally:
+        while wanted and _SPARE:
+            _end(_SPARE.pop())
 
 
 class Computations:
@@ -49,13 +84,7 @@ class Computations:
 
     def __enter__(self) -> Computations:
         if self._wanted:
-            path = os.pathsep.join(entry for entry in sys.path if entry)
-            self._child = subprocess.Popen(
-                [sys.executable, "-m", "registry.computing"],
-                stdin=subprocess.PIPE,
-                stdout=subprocess.PIPE,
-                env={**os.environ, "PYTHONPATH": path},
-            )
+            self._child = _SPARE.pop() if _SPARE else _start()
             self._pool = ThreadPoolExecutor(1)
             self._pool.submit(self._tell, (self._rules, self._tables))
             self._fill()
@@ -69,11 +98,7 @@ class Computations:
         if self._pool is not None:
             self._pool.shutdown(wait=True, cancel_futures=True)
         if self._child is not None:
-            for stream in (self._child.stdin, self._child.stdout):
-                if stream is not None:
-                    with suppress(BrokenPipeError):
-                        stream.close()
-            self._child.wait()
+            _end(self._child)
 
     def __iter__(self) -> Iterator[tuple[Chunk, Computed | bytes]]:
         if self._pool is None:
@@ -81,10 +106,18 @@ class Computations:
                 yield chunk, compute(chunk, self._rules.definitions, self._rules.conventions)
             return
         while self._waiting:
-            chunk, future = self._waiting.popleft()
-            outcome = future.result()
-            self._fill()
-            yield chunk, outcome
+            yield self._next()
+
+    def finished(self) -> Iterator[tuple[Chunk, Computed | bytes]]:
+        """Those next in order that the child has done by now: to be written before more is stored."""
+        while self._waiting and self._waiting[0][1].done():
+            yield self._next()
+
+    def _next(self) -> tuple[Chunk, Computed | bytes]:
+        chunk, future = self._waiting.popleft()
+        outcome = future.result()
+        self._fill()
+        return chunk, outcome
 
     def _fill(self) -> None:
         while self._pool is not None and len(self._waiting) < AHEAD:

@@ -139,7 +139,7 @@ class ImportJobs:
             nonlocal saved_at
             draft.sentence = _words(what, done, total, draft)
             draft.done, draft.total = done, total
-            draft.state = STORING if draft.storing and what != "reading" else READING
+            draft.state = STORING if draft.storing and not what.startswith("reading") else READING
             if time.monotonic() - saved_at >= SAVE_EVERY_S:
                 saved_at = time.monotonic()
                 self.folder.save(draft)
@@ -174,6 +174,8 @@ class ImportJobs:
 def _words(what: str, done: int, total: int, draft: Draft) -> str:
     if what == "reading":
         return f"Reading {draft.files[done].name}" + (f", file {done + 1} of {total}." if total > 1 else ".")
+    if what == "reading bytes":
+        return f"Reading: {done / 1e6:,.0f} of {total / 1e6:,.0f} MB."
     verb = {"storing": "Storing", "computing": "Computing and judging"}.get(what, what.capitalize())
     things = "lines of results" if what == "storing" else "samples"
     trial = "" if draft.storing else " on trial"

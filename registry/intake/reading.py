@@ -82,19 +82,18 @@ def read_path(
     kind: str | None = None,
     options: ReadingOptions | None = None,
     *,
-    each: Callable[[bytes], object] = bytes,
     watch: Callable[[int], object] | None = None,
 ) -> Reading | None:
     """``read_file`` for a large file on disk, at a memory that does not grow with it; None: read it the other way.
 
     Only plain text in ASCII or UTF-8 is read like this. The reading is the same, except that its table of results
-    keeps its numbers in a scratch file. ``each`` is given every block of the file once, in order; ``watch`` is told
-    how many bytes have been read. Raises ValueError for an unknown kind.
+    keeps its numbers in a scratch file. ``watch`` is told how many bytes have been read. Raises ValueError for an
+    unknown kind.
     """
     if kind is not None and kind not in KINDS:
         raise ValueError(f"unknown kind of file '{kind}'; known are {', '.join(KINDS)}")
     options = options or ReadingOptions()
-    seen = scan(path, each)
+    seen = scan(path)
     if seen is None:
         return None
 

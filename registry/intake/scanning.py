@@ -3,7 +3,6 @@
 from __future__ import annotations
 
 import codecs
-from collections.abc import Callable
 from dataclasses import dataclass
 from pathlib import Path
 
@@ -23,11 +22,8 @@ class Scan:
     quoted: bool
 
 
-def scan(path: Path, each: Callable[[bytes], object] = bytes) -> Scan | None:
-    """Look through a file; None unless it is plain text in ASCII or UTF-8, which alone are read as a stream.
-
-    ``each`` is given every block as it goes by (to hash and compress the file in the same pass).
-    """
+def scan(path: Path) -> Scan | None:
+    """Look through a file; None unless it is plain text in ASCII or UTF-8, which alone are read as a stream."""
     decoder = codecs.getincrementaldecoder("utf-8")()
     ascii_only, plain, quoted, blank = True, True, False, True
     line_ends = underscores = 0
@@ -45,7 +41,6 @@ def scan(path: Path, each: Callable[[bytes], object] = bytes) -> Scan | None:
             encoding = Encoding("utf-8-sig", "UTF-8 with a byte-order mark")
         block = head
         while block:
-            each(block)
             line_ends += block.count(b"\n") + block.count(b"\r")
             underscores += block.count(b"_")
             quoted = quoted or b'"' in block

@@ -94,7 +94,7 @@ def insert_aliquots(
     sample_ids: np.ndarray,
     batch_id: int,
     line_no: Any,
-    kinds: Sequence[str],
+    kinds: Any,
     repeat_no: Any,
     control_text: Sequence[str | None] | None = None,
 ) -> np.ndarray:

@@ -1,0 +1,126 @@
+"""Whose the lines of a table of results are: the sample of each, how often it stood before, which are controls.
+
+Everything here is held in arrays of numbers, so that a table of a million lines takes some megabytes.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Iterator
+from dataclasses import dataclass, field
+from typing import Any
+
+import numpy as np
+
+from registry.importing_controls import add_samples, call_known_controls, spoken_of
+from registry.intake import ResultTable
+from registry.intake.spooled import parts_of
+from registry.quality.recognising import Spoken
+from registry.store import masters
+
+CONTROL_KINDS = ("reference_material", "blank", "duplicate")
+#: Ids handed to the store in one query.
+IDS_AT_A_TIME = 65_536
+_KINDS = np.array(["original", "repeat", "control"], dtype=object)
+
+
+@dataclass
+class Lines:
+    """The lines of a table, (n,): sample ids int64 (0 where the code is not registered) and, later, the rest."""
+
+    sample_ids: np.ndarray
+    #: codes that the registry lacks, each once, in file order
+    missing: list[str]
+    said: dict[str, Spoken] = field(default_factory=dict)
+    repeat_no: np.ndarray = field(default_factory=lambda: np.zeros(0, dtype=np.int32))
+    is_control: np.ndarray = field(default_factory=lambda: np.zeros(0, dtype=bool))
+    _order: np.ndarray = field(default_factory=lambda: np.zeros(0, dtype=np.int64))
+
+    @property
+    def repeats(self) -> int:
+        return int((self.repeat_no > 0).sum())
+
+    @property
+    def controlled(self) -> bool:
+        """Whether there is something to judge the batch by."""
+        return bool(self.is_control.any() or (self.repeat_no > 0).any())
+
+    def settle_controls(self, connection: Any, table: ResultTable, prefix: str) -> int:
+        """Add the samples that are missing and settle which lines are controls and repeats; how many new controls."""
+        self.said = spoken_of((f"{prefix}{code}" for code in table.sample_codes), table, prefix)
+        known = masters.sample_ids(connection, self.said)
+        new_controls = 0
+        if self.missing:
+            new_controls = add_samples(connection, self.missing, self.said, known)
+            self._fill(table, prefix, known)
+        call_known_controls(connection, self.said, known, set(self.missing))
+        controls = masters.samples_of_kinds(connection, CONTROL_KINDS)
+        # a rock that the certificate calls a blank stays a rock; its second line is a repeat
+        copies = [code for code, spoken in self.said.items() if spoken.duplicate_of not in (None, code)]
+        spoken = np.array([known[code] for code in copies], dtype=np.int64)
+        self.is_control = np.isin(self.sample_ids, np.union1d(controls, spoken))
+        self._order = np.argsort(self.sample_ids, kind="stable")
+        self.repeat_no = _repeat_numbers(self.sample_ids, self._order)
+        return new_controls
+
+    def _fill(self, table: ResultTable, prefix: str, known: dict[str, int]) -> None:
+        """The ids of samples that were added meanwhile."""
+        start = 0
+        for part in parts_of(table.sample_codes):
+            places = start + np.flatnonzero(self.sample_ids[start : start + len(part)] == 0)
+            self.sample_ids[places] = [known[f"{prefix}{part[place - start]}"] for place in places.tolist()]
+            start += len(part)
+
+    def kinds(self, part: slice) -> np.ndarray:
+        """``original``, ``repeat`` or ``control`` of some lines."""
+        return _KINDS[np.where(self.is_control[part], 2, self.repeat_no[part] > 0)]
+
+    def groups(self, ids: np.ndarray, size: int, by_line: bool) -> Iterator[np.ndarray]:
+        """These samples in groups, each ascending: in the order of their ids, or of their first lines.
+
+        The first keeps the tables compact, the second reads a table on disk once from end to end; mostly they agree.
+        """
+        if by_line:
+            first = self._order[np.searchsorted(self.sample_ids[self._order], ids)]
+            ids = ids[np.argsort(first, kind="stable")]
+        for start in range(0, len(ids), size):
+            yield np.sort(ids[start : start + size])
+
+    def rows_of(self, ids: np.ndarray) -> tuple[np.ndarray, np.ndarray]:
+        """The lines of these samples (ascending), and which of the samples each is of."""
+        low = np.searchsorted(self.sample_ids, ids, side="left", sorter=self._order)
+        counts = np.searchsorted(self.sample_ids, ids, side="right", sorter=self._order) - low
+        position = np.repeat(np.arange(len(ids)), counts)
+        within = np.arange(len(position)) - np.repeat(np.cumsum(counts) - counts, counts)
+        return self._order[np.repeat(low, counts) + within], position
+
+
+def resolve(connection: Any, table: ResultTable, prefix: str) -> Lines:
+    """Look the sample codes up."""
+    ids = np.zeros(len(table), dtype=np.int64)
+    missing: dict[str, None] = {}
+    start = 0
+    for part in parts_of(table.sample_codes):
+        codes = [f"{prefix}{code}" for code in part]
+        known = masters.sample_ids(connection, set(codes))
+        ids[start : start + len(codes)] = [known.get(code, 0) for code in codes]
+        if len(known) < len(codes):
+            missing |= dict.fromkeys(code for code in codes if code not in known)
+        start += len(codes)
+    return Lines(ids, list(missing))
+
+
+def raw_parts(ids: np.ndarray) -> Iterator[np.ndarray]:
+    """Ids, some thousands at a time."""
+    for start in range(0, len(ids), IDS_AT_A_TIME):
+        yield ids[start : start + IDS_AT_A_TIME]
+
+
+def _repeat_numbers(sample_ids: np.ndarray, order: np.ndarray) -> np.ndarray:
+    """How often each line's sample stood before in the table: 0 for the first line, 1 for the second; int32."""
+    ordered = sample_ids[order]
+    same = np.r_[False, ordered[1:] == ordered[:-1]]
+    numbers = np.zeros(len(ordered), dtype=np.int32)
+    if same.any():
+        places = np.arange(len(ordered), dtype=np.int32)
+        numbers[order] = places - np.maximum.accumulate(np.where(same, 0, places))
+    return numbers

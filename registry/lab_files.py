@@ -1,0 +1,88 @@
+"""A file on its way into the registry: its bytes or, if it is large, its path; its hash and its compressed bytes."""
+
+from __future__ import annotations
+
+import hashlib
+import zlib
+from collections.abc import Callable
+from concurrent.futures import Executor, Future
+from dataclasses import dataclass
+from pathlib import Path
+
+from registry.errors import NotFound, PlutonbookError
+from registry.intake import Reading, ReadingOptions, read_all, read_path
+from registry.store.batches import COMPRESSION_LEVEL, compress
+
+#: Files from this size on are read as a stream, without ever lying in memory whole.
+LARGE_BYTES = 20_000_000
+_BLOCK = 1 << 20
+
+
+@dataclass(frozen=True)
+class Packed:
+    """The SHA-256 of a file and its compressed bytes."""
+
+    sha256: str
+    compressed: bytes
+
+
+class LabFile:
+    """One file of an import. ``data`` are its bytes, None of a large one that is read as a stream.
+
+    Hash and compression are worked out by ``pool`` beside the reading: zlib needs no interpreter. ``whole``: keep the
+    bytes in any case. Raises NotFound where there is no such file.
+    """
+
+    def __init__(self, path: Path, pool: Executor, whole: bool = False) -> None:
+        self.path = path
+        if path.is_dir():
+            raise NotFound(f"{path} is a folder; name the files in it")
+        try:
+            self._stamp = _stamp(path)
+            self.size = self._stamp[0]
+            self.data = None if self.is_large and not whole else path.read_bytes()
+        except FileNotFoundError as error:
+            raise NotFound(f"there is no file {path}") from error
+        except OSError as error:
+            raise NotFound(f"{path} cannot be read: {error.strerror}") from error
+        self._packed: Future[Packed] = pool.submit(_pack, path, self.data)
+
+    @property
+    def is_large(self) -> bool:
+        return self.size >= LARGE_BYTES
+
+    def packed(self) -> Packed:
+        """Hash and compressed bytes; PlutonbookError where the file was changed since it was first looked at."""
+        packed = self._packed.result()
+        if self.data is None and _stamp(self.path) != self._stamp:
+            raise PlutonbookError(
+                f"{self.path} was changed while it was read; nothing was written. Import it again when it is complete"
+            )
+        return packed
+
+    def readings(
+        self, kind: str | None, options: ReadingOptions, progress: Callable[[str, int, int], None]
+    ) -> list[Reading]:
+        """The tables of the file; a large one reports its progress in bytes."""
+        if self.data is None:
+            reading = read_path(self.path, kind, options, watch=lambda done: progress("reading bytes", done, self.size))
+            if reading is not None:
+                return [reading]
+            self.data = self.path.read_bytes()
+        return read_all(self.path.name, self.data, kind, options)
+
+
+def _stamp(path: Path) -> tuple[int, int]:
+    found = path.stat()
+    return found.st_size, found.st_mtime_ns
+
+
+def _pack(path: Path, data: bytes | None) -> Packed:
+    if data is not None:
+        return Packed(hashlib.sha256(data).hexdigest(), compress(data))
+    digest, packer, pieces = hashlib.sha256(), zlib.compressobj(COMPRESSION_LEVEL), []
+    with path.open("rb") as stream:
+        while block := stream.read(_BLOCK):
+            digest.update(block)
+            pieces.append(packer.compress(block))
+    return Packed(digest.hexdigest(), b"".join([*pieces, packer.flush()]))
