@@ -10,12 +10,14 @@ from typing import Any
 import numpy as np
 import pytest
 
-from registry import importing_results
+from registry import importing_results, lab_files
 from registry.computing import Computations
+from registry.errors import InputProblems, PlutonbookError
 from registry.importing import ImportOptions, import_files
+from registry.intake import spooled
 from registry.judging import read_rules
 from registry.pipeline import empty_chunk
-from registry.store import ready_rows
+from registry.store import batches, ready_rows
 from registry.store.engine import Registry, open_registry, reading, writing
 
 #: Invented: two files of a few samples, with a censored value, a repeat, an incomplete and a control sample.
@@ -49,10 +51,15 @@ def imported(file: Path, to: Path, folder: Path) -> dict[str, list[Any]]:
     return found
 
 
+@pytest.mark.parametrize("large_bytes", [1, 1_000_000])
 def test_import_with_a_child_process_writes_the_rows_of_the_plain_way(
-    founded_registry_file: Path, tmp_path: Path, monkeypatch: pytest.MonkeyPatch
+    founded_registry_file: Path, tmp_path: Path, monkeypatch: pytest.MonkeyPatch, large_bytes: int
 ) -> None:
+    """Read as a stream, two rows a block, or whole; with results stored line by line."""
     plain = imported(founded_registry_file, tmp_path / "plain.sqlite", tmp_path)
+    monkeypatch.setattr(lab_files, "LARGE_BYTES", large_bytes)
+    monkeypatch.setattr(spooled, "BLOCK_ROWS", 2)
+    monkeypatch.setattr(importing_results, "LINES_AT_A_TIME", 1)
     monkeypatch.setattr(importing_results, "WORTH_A_CHILD", 1)
     monkeypatch.setattr(importing_results, "CHILDS_CHUNK_SIZE", 1)
 
@@ -107,3 +114,53 @@ def test_computations_hand_an_error_of_the_child_to_the_parent(founded_registry:
         Computations(iter([broken]), rules, True, tables) as computations,
     ):
         list(computations)
+
+
+def test_import_of_a_large_file_reports_its_bytes_and_keeps_them(
+    founded_registry: Registry, tmp_path: Path, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    monkeypatch.setattr(lab_files, "LARGE_BYTES", 1)
+    path = tmp_path / "first.csv"
+    path.write_text(FIRST)
+    told: list[tuple[str, int, int]] = []
+
+    import_files(founded_registry, [path], ImportOptions(create_samples=True), progress=lambda *what: told.append(what))
+
+    size = path.stat().st_size
+    assert ("reading bytes", size, size) in told
+    with reading(founded_registry) as connection:
+        assert batches.file_of(connection, 1) == path.read_bytes()
+    with pytest.raises(InputProblems, match="same bytes"):
+        import_files(founded_registry, [path], ImportOptions(create_samples=True, batch="2"))
+
+
+def test_import_of_a_large_file_that_changes_meanwhile_is_refused(
+    founded_registry: Registry, tmp_path: Path, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    monkeypatch.setattr(lab_files, "LARGE_BYTES", 1)
+    path = tmp_path / "first.csv"
+    path.write_text(FIRST)
+
+    with pytest.raises(PlutonbookError, match=r"first\.csv was changed while it was read; nothing was written"):
+        import_files(
+            founded_registry,
+            [path],
+            ImportOptions(create_samples=True),
+            on_read=lambda *_: path.write_text(FIRST + "Z,60,,,,,,,,,\n"),
+        )
+    with reading(founded_registry) as connection:
+        assert connection.exec_driver_sql("SELECT count(*) FROM sample").scalar() == 0
+
+
+def test_import_of_a_large_file_that_is_no_plain_text_is_read_whole(
+    founded_registry: Registry, tmp_path: Path, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    monkeypatch.setattr(lab_files, "LARGE_BYTES", 1)
+    path = tmp_path / "first.csv"
+    path.write_bytes(FIRST.replace("A,", "\xc4,").encode("cp1252"))
+
+    import_files(founded_registry, [path], ImportOptions(create_samples=True))
+
+    with reading(founded_registry) as connection:
+        codes = connection.exec_driver_sql("SELECT code FROM sample ORDER BY sample_id").scalars().all()
+        assert codes == ["\xc4", "B", "D"]
