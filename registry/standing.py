@@ -7,6 +7,7 @@ import statistics
 from collections import Counter
 from collections.abc import Collection, Iterable, Sequence
 from dataclasses import dataclass
+from heapq import nlargest
 from typing import Any
 
 from registry.explain import MISSING, Conclusion, explain_chosen, read_definition
@@ -81,12 +82,7 @@ def standings(connection: Any, column: str, key: int, explained: Collection[str]
     for row in rows:
         if row[0] in by_target:
             by_target[row[0]].append(row)
-    leaders = {
-        target_id: sorted(part, key=lambda row: (_RANK[row[1]], -(row[2] or 0.0), -(row[3] or 0.0), row[4]))[
-            :BEST_NAMED
-        ]
-        for target_id, part in by_target.items()
-    }
+    leaders = {target_id: _best_of(part) for target_id, part in by_target.items()}
     codes = reading.sample_codes(connection, sorted({row[4] for part in leaders.values() for row in part}))
     firsts = [(leaders[target["target_id"]][0], target["code"]) for target in targets if leaders[target["target_id"]]]
     conclusions = explain_chosen(
@@ -98,6 +94,17 @@ def standings(connection: Any, column: str, key: int, explained: Collection[str]
     ]
     order = {"favourable": 0, "possible": 1, "undecided": 2, "unfavourable": 3, None: 4}
     return sorted(found, key=lambda one: (order[one.leading], -(one.median_score or 0.0)))
+
+
+def _best_of(rows: Sequence[tuple[Any, ...]]) -> list[tuple[Any, ...]]:
+    """The best few verdicts: by verdict, then least and greatest score, then the older sample."""
+    best: list[tuple[Any, ...]] = []
+    for rank in sorted({_RANK[row[1]] for row in rows}):
+        equals = [row for row in rows if _RANK[row[1]] == rank]
+        best += nlargest(BEST_NAMED - len(best), equals, key=lambda row: (row[2] or 0.0, row[3] or 0.0, -row[4]))
+        if len(best) == BEST_NAMED:
+            break
+    return best
 
 
 def shared_cautions(found: Sequence[Standing]) -> tuple[str, ...]:

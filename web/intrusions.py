@@ -101,8 +101,10 @@ def page(name: str) -> Any:
         key = found["intrusion_id"]
         columns = offered_columns(connection)
         kinds = reading.kinds_of_samples(connection, "intrusion_id", key)
-        standing = standings(connection, "intrusion_id", key)
-        ranges, ordered = reading.composition_ranges(connection, "intrusion_id", key)
+        standing = remembered(("standings of intrusion", key), lambda: standings(connection, "intrusion_id", key))
+        ranges, ordered = remembered(
+            ("ranges of intrusion", key), lambda: reading.composition_ranges(connection, "intrusion_id", key)
+        )
         chosen = reading.spread_evenly(ordered)
         norms = reading.norms_of(connection, [sample_id for sample_id, _ in chosen])
         samples = reading.sample_rows(connection, "intrusion_id", key)

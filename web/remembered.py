@@ -11,7 +11,7 @@ from registry.store.reading.session import change_mark
 
 Found = TypeVar("Found")
 #: Answers kept at most; the oldest goes first.
-MOST_KEPT = 64
+MOST_KEPT = 200
 
 
 def remembered(key: Hashable, find: Callable[[], Found]) -> Found:

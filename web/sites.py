@@ -59,7 +59,10 @@ def page(code: str) -> Any:
         survey = reading.survey_rows(connection, key) if hole else []
         intervals = reading.interval_rows(connection, key) if hole else []
         values = reading.strip_samples(connection, key, shown, target["target_id"] if target else None) if hole else []
-        standing = standings(connection, "site_id", key, explained=("favourable", "possible"))
+        standing = remembered(
+            ("standings of site", key),
+            lambda: standings(connection, "site_id", key, explained=("favourable", "possible")),
+        )
         kinds = samples_reading.kinds_of_samples(connection, "site_id", key)
         samples = samples_reading.sample_rows(connection, "site_id", key, SAMPLES_SHOWN)
         bases = reading.position_bases(connection, key)
