@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import hashlib
+import io
 import zlib
 from collections.abc import Callable
 from concurrent.futures import Executor, Future
@@ -80,9 +81,10 @@ def _stamp(path: Path) -> tuple[int, int]:
 def _pack(path: Path, data: bytes | None) -> Packed:
     if data is not None:
         return Packed(hashlib.sha256(data).hexdigest(), compress(data))
-    digest, packer, pieces = hashlib.sha256(), zlib.compressobj(COMPRESSION_LEVEL), []
+    digest, packer, packed = hashlib.sha256(), zlib.compressobj(COMPRESSION_LEVEL), io.BytesIO()
     with path.open("rb") as stream:
         while block := stream.read(_BLOCK):
             digest.update(block)
-            pieces.append(packer.compress(block))
-    return Packed(digest.hexdigest(), b"".join([*pieces, packer.flush()]))
+            packed.write(packer.compress(block))
+    packed.write(packer.flush())
+    return Packed(digest.hexdigest(), packed.getvalue())

@@ -1,6 +1,6 @@
-"""The whole import against bare sqlite3: at most 2.5 times ``executemany`` of the same long rows, under 1 GB.
+"""The whole import against bare sqlite3 ``executemany`` of the same long rows, under 1 GB of memory.
 
-Each side runs in a process of its own; the figures are ratios within one run.
+Each side runs in processes of its own, in turn; the fastest run of each counts, and the figures are ratios of these.
 """
 
 from __future__ import annotations
@@ -14,7 +14,11 @@ from pathlib import Path
 import pytest
 
 SAMPLES = int(os.environ.get("PLUTONBOOK_BENCHMARK_SAMPLES", "100000"))
-MOST_RATIO, MOST_BYTES = 2.5, 1_000_000_000
+MOST_BYTES = 1_000_000_000
+ROUNDS = 2
+#: Most times the bare time, with two targets and with all seven; reached on two shared cores: 1.5 and 1.9.
+MOST_RATIO = {"two": 2.5, "seven": 2.2}
+TWO = "'porphyry_copper', 'radiogenic_heat'"
 HERE = Path(__file__).parent
 
 BARE = """
@@ -45,12 +49,19 @@ from pathlib import Path
 from registry.founding import found
 from registry.importing import ImportOptions, import_files
 registry = found({path!r})
+if {targets!r} == "two":
+    import sqlite3
+    with sqlite3.connect({path!r}) as db:
+        db.execute("UPDATE target_version SET active = 0 WHERE target_id NOT IN "
+                   "(SELECT target_id FROM target WHERE code IN ({two}))")
+    db.close()
 import_files(registry, [Path({samples!r})])
 before = resource.getrusage(resource.RUSAGE_CHILDREN).ru_maxrss
 start = time.perf_counter()
 report = import_files(registry, [Path({results!r})], ImportOptions(batch="B1"))
 seconds = time.perf_counter() - start
 assert report.recomputed == {n}, report.recomputed
+assert len(report.verdicts) == (2 if {targets!r} == "two" else 7), report.verdicts
 peak = resource.getrusage(resource.RUSAGE_SELF).ru_maxrss + resource.getrusage(resource.RUSAGE_CHILDREN).ru_maxrss
 print(json.dumps({{"seconds": seconds, "peak_bytes": peak * 1024}}))
 """
@@ -65,7 +76,8 @@ def run(code: str) -> dict[str, float]:
 
 
 @pytest.mark.benchmark
-def test_import_of_a_large_batch_stays_near_bare_sqlite(tmp_path: Path, record_property) -> None:
+@pytest.mark.parametrize("targets", ["two", "seven"])
+def test_import_of_a_large_batch_stays_near_bare_sqlite(tmp_path: Path, record_property, targets: str) -> None:
     sys.path.insert(0, str(HERE))
     try:
         from batch_of_results import write_files
@@ -73,13 +85,20 @@ def test_import_of_a_large_batch_stays_near_bare_sqlite(tmp_path: Path, record_p
         sys.path.remove(str(HERE))
     samples, results = write_files(tmp_path, SAMPLES)
     names = {"here": str(HERE), "n": SAMPLES, "samples": str(samples), "results": str(results)}
-    bare = run(BARE.format(path=str(tmp_path / "bare.sqlite"), **names))
-    whole = run(IMPORT.format(path=str(tmp_path / "registry.sqlite"), **names))
-    ratio = whole["seconds"] / bare["seconds"]
+    bare, whole, peak = float("inf"), float("inf"), 0.0
+    for turn in range(ROUNDS):
+        path = tmp_path / f"bare{turn}.sqlite"
+        bare = min(bare, run(BARE.format(path=str(path), **names))["seconds"])
+        path.unlink()
+        path = tmp_path / f"registry{turn}.sqlite"
+        done = run(IMPORT.format(path=str(path), targets=targets, two=TWO, **names))
+        whole, peak = min(whole, done["seconds"]), max(peak, done["peak_bytes"])
+        path.unlink()
+    ratio = whole / bare
     print(
-        f"import {whole['seconds']:.1f} s, bare {bare['seconds']:.1f} s, ratio {ratio:.2f}, "
-        f"peak {whole['peak_bytes'] / 1e6:.0f} MB"
+        f"{targets} targets: import {whole:.1f} s, bare {bare:.1f} s, ratio {ratio:.2f} (limit "
+        f"{MOST_RATIO[targets]:g}), peak {peak / 1e6:.0f} MB"
     )
     record_property("ratio", ratio)
-    assert ratio <= MOST_RATIO
-    assert whole["peak_bytes"] < MOST_BYTES
+    assert ratio <= MOST_RATIO[targets]
+    assert peak < MOST_BYTES
