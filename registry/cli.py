@@ -3,11 +3,14 @@
 from __future__ import annotations
 
 import importlib
+import os
 import sys
 from typing import Any
 
 import click
 
+#: Set in the environment, it shows where in the program an unforeseen fault arose.
+TRACEBACK = "PLUTONBOOK_TRACEBACK"
 #: subcommand -> (module of registry.commands, name of the function there)
 COMMANDS = {
     "create": ("registries", "create"),
@@ -79,7 +82,26 @@ def main(arguments: list[str] | None = None) -> Any:
         sys.exit(error.exit_code)
     except BrokenPipeError:
         sys.exit(141)
+    except Exception as error:
+        if os.environ.get(TRACEBACK):
+            raise
+        click.echo(f"plutonbook: {_unexpected(error)}", err=True)
+        sys.exit(1)
     sys.exit(code if isinstance(code, int) else 0)
+
+
+def _unexpected(error: Exception) -> str:
+    """A fault that nobody foresaw, in words: of the disk and its folders, else of the program."""
+    if isinstance(error, OSError) and error.strerror:
+        named = f"{error.filename}: " if error.filename else ""
+        return f"{named}{error.strerror}; see to the disk or the folder, then repeat this. What was begun is undone."
+    if isinstance(error, MemoryError):
+        return "the memory of this machine does not suffice; import fewer files at once. What was begun is undone."
+    said = " ".join(str(error).split())[:300]
+    return (
+        f"a fault of the program, not of your data ({type(error).__name__}: {said}). What was begun is undone. Please "
+        f"report it with what stands on the screen after {TRACEBACK}=1 is set and the command repeated."
+    )
 
 
 def _show_problems(error: Any) -> None:

@@ -3,15 +3,16 @@
 from __future__ import annotations
 
 import shutil
+from contextlib import suppress
 from pathlib import Path
 from typing import Any
 
 from registry.clock import now
 from registry.controlling import ship_reference_values
-from registry.errors import PlutonbookError, UsageError
+from registry.errors import NotFound, PlutonbookError, UsageError
 from registry.judging import install_shipped_definitions
 from registry.refresh import refresh_registry
-from registry.store import schema, target_rows
+from registry.store import batches, schema, target_rows
 from registry.store.engine import Registry, open_registry, place_of, reading
 from registry.targets.definition import load_definitions
 
@@ -57,6 +58,12 @@ def is_demo(registry: Registry) -> bool:
         return target_rows.read_settings(connection).get(DEMO_MARK) == "1"
 
 
+def _has_batches(registry: Registry) -> bool:
+    """Whether the demo's import went through: a demo that was stopped while it was built holds none."""
+    with reading(registry) as connection:
+        return bool(batches.list_batches(connection))
+
+
 def build_demo(path_or_url: str) -> list[str]:
     """The demo registry at that place, built from ``seed_demo`` by the ordinary import, or used again; what was done.
 
@@ -66,13 +73,22 @@ def build_demo(path_or_url: str) -> list[str]:
     from registry.importing import ImportOptions, import_files
 
     _, path = place_of(path_or_url)
-    if path is not None and path.exists():
-        if not is_demo(open_registry(path_or_url)):
+    place = path or "on PostgreSQL"
+    try:
+        registry = open_registry(path_or_url)
+    except NotFound:
+        registry = found(path_or_url, demo=True)
+    else:
+        if not is_demo(registry):
+            registry.close()
             raise PlutonbookError(
-                f"{path} is a registry of real data, not a demo; give the demo a path of its own with --registry"
+                f"the registry {place} holds real data and is not a demo; give the demo a place of its own with "
+                "--registry"
             )
-        return [f"Using the demo registry {path} again (delete the file to build it anew)."]
-    registry = found(path_or_url, demo=True)
+        if _has_batches(registry):
+            registry.close()
+            remedy = "delete the file" if path is not None else "name an empty database"
+            return [f"Using the demo registry {place} again ({remedy} to build it anew)."]
     try:
         report = import_files(registry, seed_demo.files(), ImportOptions(lab="Invented laboratory"))
     except BaseException:
@@ -82,7 +98,7 @@ def build_demo(path_or_url: str) -> list[str]:
         raise
     registry.close()
     return [
-        f"Built the demo registry {path or 'on PostgreSQL'}: every name and number in it is invented.",
+        f"Built the demo registry {place}: every name and number in it is invented.",
         *report.summary(),
     ]
 
@@ -97,6 +113,15 @@ def put_back(path_or_url: str | Path, saved: Path) -> Path | None:
     if path is None:
         raise UsageError("a PostgreSQL registry is restored with the server's own pg_restore")
     open_registry(saved, any_revision=True).close()
+    fresh = path.with_name(f"{path.name}-coming")
+    try:
+        shutil.copyfile(saved, fresh)
+    except OSError as error:
+        with suppress(OSError):
+            fresh.unlink(missing_ok=True)
+        raise PlutonbookError(
+            f"the backup {saved} could not be copied to {path.parent}: {error.strerror}; nothing was changed"
+        ) from error
     kept = None
     if path.exists():
         stamp = now().replace(":", "").replace("-", "")
@@ -105,5 +130,5 @@ def put_back(path_or_url: str | Path, saved: Path) -> Path | None:
             part = path.with_name(path.name + ending)
             if part.exists():
                 part.rename(kept.with_name(kept.name + ending))
-    shutil.copyfile(saved, path)
+    fresh.rename(path)
     return kept

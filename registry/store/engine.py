@@ -9,7 +9,7 @@ from __future__ import annotations
 
 import sqlite3
 from collections.abc import Callable, Iterator
-from contextlib import contextmanager
+from contextlib import contextmanager, suppress
 from dataclasses import dataclass
 from functools import cached_property
 from pathlib import Path
@@ -19,7 +19,7 @@ from urllib.parse import quote
 import sqlalchemy as sa
 
 from registry.errors import NotFound, PlutonbookError, RegistryBusy, UsageError
-from registry.store import holder
+from registry.store import faults, holder
 
 #: The schema this code reads and writes; the newest revision of ``migrations`` (a test compares both).
 HEAD_REVISION = "0001"
@@ -80,7 +80,12 @@ def place_of(path_or_url: str | Path) -> tuple[str, Path | None]:
     text = str(path_or_url)
     if "://" not in text:
         return f"sqlite:///{text}", Path(text)
-    url = sa.make_url(text)
+    try:
+        url = sa.make_url(text)
+    except (sa.exc.ArgumentError, ValueError) as error:
+        raise UsageError(
+            f"'{text}' is no URL of a database; give the path of a file or postgresql://user@host/database"
+        ) from error
     if url.get_backend_name() == "sqlite":
         if not url.database or url.database == ":memory:":
             raise UsageError(f"'{text}' names no file; a registry is a file or a PostgreSQL database")
@@ -139,8 +144,9 @@ def _file_revision(path: Path) -> str:
             )
         row = connection.execute("SELECT version_num FROM alembic_version").fetchone()
     except sqlite3.DatabaseError as error:
+        told = faults.told(error, path)
         raise PlutonbookError(
-            f"{path} is damaged or unreadable: {error}; restore a backup with 'plutonbook recover'"
+            told or f"{path} is damaged or unreadable: {error}; restore a backup with 'plutonbook recover'"
         ) from error
     finally:
         connection.close()
@@ -239,11 +245,23 @@ def writing(
             if drain is not None:
                 drain(connection)
             connection.commit()
+        except (sa.exc.DBAPIError, sqlite3.Error) as error:
+            _roll_back(connection)
+            told = faults.told(error, registry.path or "")
+            if told is None:
+                raise
+            raise PlutonbookError(f"{told}. Nothing was changed.") from error
         except BaseException:
             connection.rollback()
             raise
         finally:
             holder.leave(registry)
+
+
+def _roll_back(connection: sa.Connection) -> None:
+    """Roll back what may be rolled back already: SQLite does so by itself where the disk is full."""
+    with suppress(sa.exc.DBAPIError, sqlite3.Error):
+        connection.rollback()
 
 
 __all__ = [

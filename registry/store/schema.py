@@ -9,7 +9,7 @@ from __future__ import annotations
 
 import sqlite3
 from collections.abc import Callable, Iterator
-from contextlib import contextmanager
+from contextlib import contextmanager, suppress
 from datetime import UTC, datetime
 from pathlib import Path
 from typing import Any
@@ -93,6 +93,8 @@ def backup(registry: Registry, to: Path) -> None:
     try:
         connection.execute("VACUUM INTO ?", (str(to),))
     except sqlite3.Error as error:
+        with suppress(OSError):
+            to.unlink(missing_ok=True)
         raise PlutonbookError(f"the backup {to} could not be written: {error}; nothing else was changed") from error
     finally:
         connection.close()
@@ -192,5 +194,8 @@ def _new_file(path: Path) -> None:
         finally:
             connection.close()
     except sqlite3.Error as error:
-        path.unlink(missing_ok=True)
-        raise PlutonbookError(f"{path} cannot be created: {error}; check the folder's permissions") from error
+        with suppress(OSError):
+            path.unlink(missing_ok=True)
+        raise PlutonbookError(
+            f"{path} cannot be created: {error}; see whether you may write in the folder and the disk has room"
+        ) from error
