@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
+from itertools import combinations
 
 import numpy as np
 from numpy.typing import NDArray
@@ -14,6 +15,8 @@ from registry.quality.substances import conversion, substance
 
 #: Below so many detection limits two results say little about each other. Common practice, no source.
 DETECTION_LIMITS = 10.0
+#: Up to so many columns of one substance are compared pair by pair, more of them all at once.
+PAIRWISE = 6
 
 
 def disagreeing_columns(
@@ -25,18 +28,54 @@ def disagreeing_columns(
     nor results beyond the laboratory's limits or below ten detection limits.
     """
     reports_silica = any(column.analyte == "SiO2" for column in columns)
+    groups: dict[str, list[int]] = {}
+    for position, column in enumerate(columns):
+        if carried_wholly(column, reports_silica):
+            groups.setdefault(substance(column.analyte)[0], []).append(position)
     told = []
-    for first, one in enumerate(columns):
-        for second in range(first + 1, len(columns)):
-            other = columns[second]
-            if substance(one.analyte)[0] != substance(other.analyte)[0]:
-                continue
+    for positions in groups.values():
+        if len(positions) > PAIRWISE:
+            told += _compare_many(columns, positions, values, qualifiers, line_no)
+            continue
+        for first, second in combinations(positions, 2):
+            one, other = columns[first], columns[second]
             factor = conversion(other.analyte, other.unit, one.analyte, one.unit)
-            if factor is None or not (carried_wholly(one, reports_silica) and carried_wholly(other, reports_silica)):
+            if factor is None:
                 continue
             told += _compare(one, other, values[:, first], values[:, second] * factor,
                              (qualifiers[:, first] == 0) & (qualifiers[:, second] == 0), factor, line_no)  # fmt: skip
     return told
+
+
+def _compare_many(
+    columns: Sequence[Column],
+    positions: Sequence[int],
+    values: Floats,
+    qualifiers: NDArray[np.uint8],
+    line_no: NDArray[np.int64],
+) -> list[str]:
+    """The least against the greatest of a line, where there are too many columns for a sentence on each pair."""
+    one = columns[positions[0]]
+    factors = [conversion(columns[at].analyte, columns[at].unit, one.analyte, one.unit) or np.nan for at in positions]
+    limits = [(columns[at].detection_limit or 0.0) * factor for at, factor in zip(positions, factors, strict=True)]
+    converted = values[:, positions] * factors
+    usable = (qualifiers[:, positions] == 0) & (converted > DETECTION_LIMITS * np.nanmax(limits, initial=0.0))
+    least = np.where(usable, converted, np.inf)
+    most = np.where(usable, converted, -np.inf)
+    several = usable.sum(axis=1) > 1
+    difference = np.full(len(values), np.nan)
+    difference[several] = disagreement_percent(least[several].min(axis=1), most[several].max(axis=1))
+    differ = difference > DUPLICATE_PERCENT
+    if not differ.any():
+        return []
+    worst = int(np.nanargmax(difference))
+    low, high = least[worst].min(), most[worst].max()
+    names = " and ".join(dict.fromkeys(columns[at].analyte for at in positions))
+    return [
+        f"{len(positions):,} columns of {names} differ by more than {DUPLICATE_PERCENT:g} % in {int(differ.sum()):,} "
+        f"of {int(several.sum()):,} lines (line {line_no[worst]}: {low:.4g} against {high:.4g} "
+        f"{one.unit}, {difference[worst]:.3g} %): check the units and the columns"
+    ]
 
 
 def _compare(
