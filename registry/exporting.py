@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import csv
 import re
+import sqlite3
 from collections.abc import Callable, Sequence
 from pathlib import Path
 from typing import Any
@@ -15,6 +16,8 @@ from registry.store import exports
 from registry.store.engine import Registry, reading
 from registry.store.sheets import PER_SAMPLE_SHEETS, SHEETS
 
+#: With these a spreadsheet begins to compute.
+FORMULA_STARTS = tuple("=+-@\t\r")
 Conditions = Sequence[tuple[str, str, float | str]]
 
 _CONDITION = re.compile(r"\s*(\w+)\s*(<=|>=|!=|=|<|>)\s*(.*?)\s*", re.DOTALL)
@@ -45,11 +48,17 @@ def export_sheet(registry: Registry, sheet: str, target: Path, where: Sequence[s
         with reading(registry) as connection:
             count = _WRITERS[suffix](connection, sheet, conditions, partial)
         partial.replace(target)
-    except OSError as error:
-        raise UsageError(f"{target} cannot be written: {error.strerror}; choose another file with --to") from error
+    except (OSError, sqlite3.Error) as error:
+        reason = getattr(error, "strerror", None) or error
+        raise UsageError(f"{target} cannot be written: {reason}; choose another file with --to") from error
     finally:
         partial.unlink(missing_ok=True)
     return count
+
+
+def without_formula(cell: Any) -> Any:
+    """Text that a spreadsheet would run as a formula gets an apostrophe in front; all else stays as it is."""
+    return f"'{cell}" if isinstance(cell, str) and cell[:1] in FORMULA_STARTS else cell
 
 
 def _write_csv(connection: Any, sheet: str, conditions: Conditions, target: Path) -> int:
@@ -58,7 +67,7 @@ def _write_csv(connection: Any, sheet: str, conditions: Conditions, target: Path
         writer = csv.writer(file)
         writer.writerow(SHEETS[sheet])
         for rows in exports.rows_of(connection, sheet, conditions):
-            writer.writerows(rows)
+            writer.writerows([without_formula(cell) for cell in row] for row in rows)
             count += len(rows)
     return count
 
@@ -77,6 +86,8 @@ def _write_xlsx(connection: Any, sheet: str, conditions: Conditions, target: Pat
             f"{len(frame):,} rows are more than a worksheet holds ({MOST_WORKSHEET_ROWS:,}); narrow them with --where "
             "or write .csv or .parquet"
         )
+    words = frame.select_dtypes(exclude="number").columns
+    frame[words] = frame[words].map(without_formula)
     frame.to_excel(target, sheet_name=sheet, index=False, freeze_panes=(1, 2))
     return len(frame)
 

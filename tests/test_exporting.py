@@ -2,17 +2,19 @@
 
 from __future__ import annotations
 
+import csv
 import json
 import subprocess
 from collections.abc import Callable
 from pathlib import Path
 
 import pytest
+import sqlalchemy as sa
 
 from registry.errors import UsageError
 from registry.exporting import export_sheet
 from registry.founding import build_demo
-from registry.store.engine import Registry, open_registry
+from registry.store.engine import Registry, open_registry, writing
 from registry.store.sheets import SHEETS
 
 
@@ -80,3 +82,29 @@ def test_export_of_a_sheet_without_samples_to_a_map_is_refused(demo: Registry, t
 def test_export_to_an_unknown_suffix_names_the_known_ones(demo: Registry, tmp_path: Path) -> None:
     with pytest.raises(UsageError, match=r"choose one of \.csv, \.xlsx"):
         export_sheet(demo, "sample_sheet", tmp_path / "out.doc")
+
+
+@pytest.mark.parametrize("suffix", [".csv", ".xlsx"])
+def test_export_for_spreadsheets_holds_no_text_that_they_would_run_as_a_formula(
+    founded_registry: Registry, tmp_path: Path, suffix: str
+) -> None:
+    """Common practice against formulas smuggled in as texts, no source."""
+    codes = ["=1+2", "@SUM(A1)", "+1", "-2-3", "plain", "007"]
+    with writing(founded_registry) as connection:
+        for code in codes:
+            connection.execute(
+                sa.text("INSERT INTO sample (code, kind, from_m) VALUES (:code, 'core', -1.5)"), {"code": code}
+            )
+    target = tmp_path / f"out{suffix}"
+    assert export_sheet(founded_registry, "sample_sheet", target) == len(codes)
+    if suffix == ".csv":
+        rows = list(csv.reader(target.read_text(encoding="utf-8-sig").splitlines()))
+    else:
+        from openpyxl import load_workbook
+
+        sheet = load_workbook(target)["sample_sheet"]
+        assert all(cell.data_type != "f" for row in sheet for cell in row)
+        rows = [list(row) for row in sheet.values]
+    place = rows[0].index("from_m")
+    assert {row[1] for row in rows[1:]} == {"'=1+2", "'@SUM(A1)", "'+1", "'-2-3", "plain", "007"}
+    assert {float(row[place]) for row in rows[1:]} == {-1.5}  # numbers stay numbers

@@ -9,6 +9,7 @@ from typing import Any
 
 from flask import Blueprint, Response, current_app, redirect, render_template, stream_with_context
 
+from registry.exporting import without_formula
 from registry.store.reading import samples as reading
 from registry.store.reading.columns import Column, Columns
 from registry.store.reading.filters import (
@@ -203,14 +204,9 @@ def _csv_lines(registry: Any, asked: Filter, columns: Columns, shown: Sequence[C
             for column in shown:
                 value = row[column.name]
                 cells.append(_verdict_word(value) if column.name in VERDICT_COLUMNS else value)
-            writer.writerow([*map(_plain, cells), row["is_stale"]])
+            writer.writerow([*map(without_formula, cells), row["is_stale"]])
             if count % 500 == 499:
                 yield buffer.getvalue()
                 buffer.seek(0)
                 buffer.truncate()
     yield buffer.getvalue()
-
-
-def _plain(cell: Any) -> Any:
-    """Text that a spreadsheet would run as a formula gets an apostrophe in front; numbers stay as they are."""
-    return f"'{cell}" if isinstance(cell, str) and cell[:1] in ("=", "+", "-", "@", "\t", "\r") else cell

@@ -215,7 +215,13 @@ def test_samples_csv_holds_the_whole_filtered_set_with_contract_names(client: Fl
 
 
 def test_samples_csv_text_that_looks_like_a_formula_is_held_back(client: FlaskClient) -> None:
-    from web.samples import _plain
+    from registry.exporting import without_formula
 
-    assert [_plain(cell) for cell in ("=1+1", "@x", "granite", -3.5, None)] == ["'=1+1", "'@x", "granite", -3.5, None]
+    assert [without_formula(cell) for cell in ("=1+1", "@x", "granite", -3.5, None)] == [
+        "'=1+1",
+        "'@x",
+        "granite",
+        -3.5,
+        None,
+    ]
     assert client.get("/samples.csv?text=zzz").text.count("\n") == 1
