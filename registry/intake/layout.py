@@ -13,6 +13,8 @@ from registry.intake.units import canonical_unit, foreign_unit, split_unit
 
 #: Title lines looked through for the headings.
 SEARCH_ROWS = 80
+#: So much of the results below a row of limits must lie on the right side of them. Common practice, no source.
+LIMITS_HOLD = 0.9
 _LOWER_LIMIT = re.compile(
     r"(?i)\b(l\.?o\.?[drq]|ll?d|ldl|d\.?l|mdl|lod|loq|(lower )?(detection|reporting)([ _]limits?)?"
     r"|lower limits?|det\.? ?lim\w*)\b"
@@ -147,15 +149,31 @@ def _role(row: list[str], analytes: dict[int, Heading], below: bool) -> str | No
     return None
 
 
-def _unlabelled_limits(row: list[str], analytes: dict[int, Heading]) -> bool:
-    """Numbers only, under analytes only, nothing beside them: detection limits without a label."""
+def _unlabelled_limits(row: list[str], analytes: dict[int, Heading], beneath: list[list[str]]) -> int:
+    """Numbers only, under analytes only, nothing beside them: detection limits without a label, told by what is below.
+
+    -1 where nearly all results below are greater (lower limits), 1 where nearly all are smaller (upper limits), 0 else:
+    then it is a line of results without a code.
+    """
     outside = [cell for position, cell in enumerate(row) if position not in analytes and _clean(cell)]
-    inside = [_clean(row[position]) for position in analytes if position < len(row) and _clean(row[position])]
-    return (
-        not outside
-        and len(inside) >= max(1, 0.5 * len(analytes))
-        and all(parse_cell(text, "." if "," not in text else ",").state == NUMBER for text in inside)
-    )
+    inside = {position: text for position in analytes if position < len(row) and (text := _clean(row[position]))}
+    limits = {position: value for position, text in inside.items() if (value := _number(text)) is not None}
+    if outside or len(inside) < max(1, 0.5 * len(analytes)) or len(limits) < len(inside):
+        return 0
+    pairs = [
+        (value, limit)
+        for line in beneath
+        for position, limit in limits.items()
+        if position < len(line) and (value := _number(_clean(line[position]))) is not None
+    ]
+    if not pairs or sum(value > limit for value, limit in pairs) >= LIMITS_HOLD * len(pairs):
+        return -1
+    return 1 if sum(value < limit for value, limit in pairs) >= LIMITS_HOLD * len(pairs) else 0
+
+
+def _number(text: str) -> float | None:
+    cell = parse_cell(text, "." if "," not in text else ",")
+    return cell.value if cell.state == NUMBER and not cell.qualifier else None
 
 
 def find_wide_layout(rows: list[list[str]]) -> WideLayout | None:
@@ -176,8 +194,8 @@ def find_wide_layout(rows: list[list[str]]) -> WideLayout | None:
             below += 1
             continue
         role = _role(row, analytes, below=True)
-        if role is None and _unlabelled_limits(row, analytes):
-            role = LOWER if LOWER not in roles.values() else UPPER
+        if role is None and (side := _unlabelled_limits(row, analytes, rows[below + 1 : below + 1 + SEARCH_ROWS])):
+            role = LOWER if side < 0 else UPPER
         if role is None and below == index + 1 and _sub_labels(row, analytes):
             role = LABELS
         if role is None:

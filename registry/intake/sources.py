@@ -7,7 +7,7 @@ import io
 from collections.abc import Callable, Iterable, Iterator
 from dataclasses import dataclass
 from functools import cached_property
-from itertools import islice
+from itertools import chain, islice
 from pathlib import Path
 from typing import BinaryIO
 
@@ -95,6 +95,10 @@ class PlainChunk(Chunk):
         return PlainChunk(self.texts[count:], self.lines[count:], self.separator)
 
 
+#: Follows the last line: a cell that swallows it was opened by a quotation mark that nothing closes.
+_END = "\x03"
+
+
 class Source:
     """Rows of cells. ``chunks`` may be called again and starts from the top each time."""
 
@@ -174,7 +178,7 @@ class DelimitedSource(Source):
             count += len(texts)
 
     def _quoted(self, stream: Iterable[str]) -> Iterator[Chunk]:
-        reader = csv.reader(stream, delimiter=self.separator)
+        reader = csv.reader(chain(stream, [_END]), delimiter=self.separator)
         while True:
             before = reader.line_num
             try:
@@ -185,10 +189,14 @@ class DelimitedSource(Source):
                     reader.line_num,
                     "look for a quotation mark that is opened and never closed before this line",
                 ) from fault
+            taken = reader.line_num - before
+            if rows and rows[-1] == [_END]:
+                rows.pop()
+                taken -= 1
             if not rows:
                 return
             lines = np.arange(before + 1, before + 1 + len(rows), dtype=np.int64)
-            if reader.line_num - before != len(rows):  # a cell holds a line break
+            if taken != len(rows):  # a cell holds a line break
                 spans = np.array([1 + sum(map(_breaks, row)) for row in rows], np.int64)
                 lines = before + 1 + np.concatenate(([0], np.cumsum(spans)[:-1]))
                 longest = int(np.argmax(spans))
@@ -198,11 +206,25 @@ class DelimitedSource(Source):
                         int(lines[longest]),
                         "a quotation mark is opened in this row and not closed; close or remove it",
                     )
+            if rows[-1] and rows[-1][-1].endswith(_END):
+                raise BrokenTable(
+                    "a quotation mark is opened and not closed before the file ends",
+                    int(lines[-1]),
+                    "close or remove the quotation mark in this row",
+                )
             yield Chunk(rows, lines)
 
 
 def _breaks(cell: str) -> int:
     return cell.replace("\r\n", "\n").replace("\r", "\n").count("\n") if "\n" in cell or "\r" in cell else 0
+
+
+def _first_row(data: bytes | Path, encoding: Encoding, separator: str) -> list[list[str]]:
+    """The headings of a table that breaks further down, so that its separator can be told and the break be reported."""
+    source = DelimitedSource(data, encoding, separator)
+    with source.binary() as binary, io.TextIOWrapper(binary, encoding.codec, encoding.errors, newline="") as stream:
+        line = stream.readline(1 << 20)
+    return [line.rstrip("\r\n").split(separator)] if line else []
 
 
 def tell_separator(
@@ -214,7 +236,7 @@ def tell_separator(
         try:
             rows, _ = DelimitedSource(data, encoding, separator, quoted).preview(60)
         except BrokenTable:
-            continue
+            rows = _first_row(data, encoding, separator)
         widths = [len(row) for row in rows if any(row)]
         common = max(set(widths), key=lambda width: (widths.count(width), width), default=1)
         regular = widths.count(common) / len(widths) * np.log2(common) if widths else 0.0

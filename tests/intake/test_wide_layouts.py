@@ -381,3 +381,33 @@ def test_sample_whose_code_begins_like_a_heading_row_stays_a_sample(code: str) -
     reading = read_file("codes.csv", f"Sample,SiO2 (%),Zr (ppm)\n{code},66,180\nA-1,65,170\n".encode())
     assert reading.results is not None
     assert reading.results.sample_codes == [code, "A-1"]
+
+
+def test_quotation_mark_never_closed_is_refused_at_its_row_however_short_the_file():
+    reading = read('Sample,SiO2 (%),Zr ppm\nA1,68,150\nA2,"67,140\nA3,66,130\n')
+    assert not reading.ok and reading.whole_file_refused
+    assert sentences(reading) == [
+        "lab.csv, row 3: a quotation mark is opened and not closed before the file ends; close or remove the quotation "
+        "mark in this row."
+    ]
+
+
+@pytest.mark.parametrize("end", ["", "\n", "\r\n"])
+def test_quoted_last_cell_is_read_whole(end):
+    reading = read('Sample,SiO2 (%),Zr ppm,Remark\nA1,68,150,"a, b"\nA2,67,140,"c\nd"' + end)
+    assert reading.ok
+    np.testing.assert_array_equal(reading.results.values, [[68.0, 150.0], [67.0, 140.0]])
+    assert reading.results.line_no.tolist() == [2, 3]
+
+
+def test_line_of_results_without_a_code_is_no_row_of_detection_limits():
+    reading = read("Sample,SiO2 (%),MgO (%),Zr ppm\n,68,1.2,150\nA1,67,1.3,140\nA2,69,1.1,160\n")
+    assert not reading.ok
+    (told,) = [line for line in sentences(reading) if "row 2" in line]
+    assert "no sample code" in told or "without a sample code" in told or "blank" in told
+
+
+def test_unlabelled_row_below_all_results_is_their_detection_limits():
+    reading = read("Sample,SiO2 (%),MgO (%),Zr ppm\n,0.01,0.01,2\nA1,67,1.3,140\nA2,69,<0.01,160\n")
+    assert reading.ok
+    assert [column.detection_limit for column in reading.results.columns] == [0.01, 0.01, 2.0]
