@@ -5,6 +5,9 @@ from __future__ import annotations
 from collections.abc import Sequence
 from dataclasses import asdict, dataclass
 
+#: So many characters of what was found are shown in a sentence.
+MOST_SHOWN = 200
+
 
 @dataclass(frozen=True)
 class Problem:
@@ -31,7 +34,8 @@ class Problem:
             place += f", column '{self.column}'"
         text = f"{place}: {self.what}"
         if self.found is not None:
-            text += f"; found '{self.found}'"
+            found = self.found if len(self.found) <= MOST_SHOWN else f"{self.found[: MOST_SHOWN - 3]}..."
+            text += f"; found '{found}'"
         if self.expected is not None:
             text += f", expected {self.expected}" if self.found is not None else f"; expected {self.expected}"
         if self.remedy is not None:

@@ -26,6 +26,9 @@ _EATEN = re.compile(
     r"|(jan|feb|mar|apr|may|jun|jul|aug|sep|oct|nov|dec)[a-z]*-\d{1,4}"
     r"|\d{4}-\d\d-\d\d( 00:00:00)?|\d(\.\d+)?e\+\d{1,3})$"
 )
+#: A code is written on a bag; longer ones are texts that slipped into the column. Common practice, no source.
+LONGEST_CODE = 100
+_CONTROL = re.compile(r"[\x00-\x1f\x7f-\x9f]")
 _FLOAT_NOISE = re.compile(r"(?m)^\d+\.0$")
 _NUMERIC = re.compile(r"(?m)^\d+(\.\d+)?$")
 
@@ -83,7 +86,7 @@ def choose_code_column(
             continue
         unique = len(set(filled)) / len(filled)
         noise = sum(bool(re.fullmatch(r"\d+\.0", cell)) for cell in filled) / len(filled)
-        wordy = sum(bool(re.search(r"[A-Za-z].*\d|\d.*[A-Za-z]", cell)) for cell in filled) / len(filled)
+        wordy = sum(bool(re.search(r"[A-Za-z]", cell) and re.search(r"\d", cell)) for cell in filled) / len(filled)
         never = 3.0 if _NEVER.fullmatch(_folded(label)) and by_heading < 2 else 0.0
         field_first = 0.1 if re.search(r"(?i)f(ie|ei)ld|sample", label) else 0.0
         score = by_heading + 1.5 * unique + len(filled) / len(cells) + 0.5 * wordy - noise - never + field_first
@@ -98,6 +101,21 @@ def choose_code_column(
     elif len(scored) > 1 and scored[1][2] >= 2 and score - scored[1][0] < 2.0:
         doubt = f"'{scored[1][3]}' could be meant as well"
     return CodeColumn(-position, label, doubt)
+
+
+def unfit_codes(codes: Sequence[str]) -> dict[int, str]:
+    """Positions of codes that nobody can have meant, with what is wrong: far too long, or with a line break in them."""
+    unfit: dict[int, str] = {}
+    start = 0
+    for part in parts_of(codes):
+        if part and (_CONTROL.search("".join(part)) or len(max(part, key=len)) > LONGEST_CODE):
+            for place, code in enumerate(part, start):
+                if len(code) > LONGEST_CODE:
+                    unfit[place] = f"the code has {len(code):,} characters"
+                elif _CONTROL.search(code):
+                    unfit[place] = "the code holds a line break, a tab or another invisible control character"
+        start += len(part)
+    return unfit
 
 
 def tidy_codes(codes: Sequence[str]) -> tuple[Sequence[str], int, list[int]]:

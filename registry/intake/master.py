@@ -9,7 +9,7 @@ import numpy as np
 
 from registry.intake import fields, kinds
 from registry.intake.cells import decimal_sign
-from registry.intake.codes import tidy_codes
+from registry.intake.codes import LONGEST_CODE, tidy_codes, unfit_codes
 from registry.intake.findings import Findings
 from registry.intake.kinds import NEEDS, Field
 from registry.intake.master_checks import check_rows
@@ -142,6 +142,12 @@ def _column(
         codes, freed, eaten = tidy_codes(cells)
         if freed:
             understood.append(f"{freed} codes in column '{heading}' are freed of the '.0' of a spreadsheet")
+        for place, what in unfit_codes(codes).items():
+            findings.add(
+                what, row=int(lines[place]), column=heading, found=codes[place],
+                expected=f"a code of at most {LONGEST_CODE} characters on one line",
+                remedy="see whether a quotation mark or a separator is missing, and correct the code",
+            )  # fmt: skip
         for place in eaten:
             findings.warn(
                 "the code looks like a date or number made by a spreadsheet", row=int(lines[place]), column=heading,

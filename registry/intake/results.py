@@ -10,7 +10,7 @@ import numpy as np
 from registry.intake.arrangement import arrange
 from registry.intake.cells import decimal_sign
 from registry.intake.checks import check_units, check_values
-from registry.intake.codes import choose_code_column, tidy_codes
+from registry.intake.codes import LONGEST_CODE, choose_code_column, tidy_codes, unfit_codes
 from registry.intake.findings import Findings
 from registry.intake.layout import QUALIFIER_WORD, WideLayout
 from registry.intake.readings import ReadingOptions, ResultColumn, ResultTable
@@ -224,6 +224,12 @@ def _table(
         understood.append(
             f"{freed} sample codes such as '{body.codes[0].strip()}' are freed of the '.0' of a spreadsheet"
         )
+    for place, what in unfit_codes(codes).items():
+        findings.add(
+            what, row=int(body.lines[place]), column=layout.code.header, found=codes[place],
+            expected=f"a sample code of at most {LONGEST_CODE} characters on one line",
+            remedy="see whether a quotation mark or a separator is missing, and correct the code",
+        )  # fmt: skip
     for place in eaten:
         findings.warn(
             "the sample code looks like a date or number made by a spreadsheet", row=int(body.lines[place]),

@@ -234,3 +234,9 @@ def test_words_and_truth_values_take_the_trades_synonyms():
     assert word("sill", ("sphere", "slab", "cylinder")) == "slab"
     assert word("grab", ("core", "chips")) is None
     assert (truth("Yes"), truth("0"), truth("maybe")) == (True, False, None)
+
+
+def test_code_that_nobody_can_have_meant_is_refused_in_master_data():
+    reading = read(f"sample_code,sample_kind\n{'A' * 101},core\n{'B' * 100},core\n", "samples")
+    (problem,) = problems(reading)
+    assert problem.row == 2 and problem.what == "the code has 101 characters"

@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+import time
+
 import numpy as np
 import pytest
 
@@ -411,3 +413,20 @@ def test_unlabelled_row_below_all_results_is_their_detection_limits():
     reading = read("Sample,SiO2 (%),MgO (%),Zr ppm\n,0.01,0.01,2\nA1,67,1.3,140\nA2,69,<0.01,160\n")
     assert reading.ok
     assert [column.detection_limit for column in reading.results.columns] == [0.01, 0.01, 2.0]
+
+
+@pytest.mark.parametrize(
+    ("code", "words"),
+    [
+        ("A" * 100_000, "the code has 100,000 characters; found 'AAAA"),
+        ('"A1\nA2"', "the code holds a line break, a tab or another invisible control character"),
+        ("A\x07B", "the code holds a line break, a tab or another invisible control character"),
+    ],
+)
+def test_code_that_nobody_can_have_meant_is_refused_quickly_and_shortly(code, words):
+    started = time.perf_counter()
+    reading = read(f"Sample,SiO2 (%),Zr ppm\n{code},68,150\nB1,67,140\n")
+    (told,) = sentences(reading)
+    assert told.startswith("lab.csv, row 2, column 'Sample': " + words)
+    assert len(told) < 500 and "at most 100 characters on one line" in told
+    assert time.perf_counter() - started < 5.0
