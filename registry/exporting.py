@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import csv
+import io
 import re
 import sqlite3
 from collections.abc import Callable, Sequence
@@ -88,7 +89,9 @@ def _write_xlsx(connection: Any, sheet: str, conditions: Conditions, target: Pat
         )
     words = frame.select_dtypes(exclude="number").columns
     frame[words] = frame[words].map(without_formula)
-    frame.to_excel(target, sheet_name=sheet, index=False, freeze_panes=(1, 2))
+    workbook = io.BytesIO()  # a zip file that cannot be closed on a full disk complains on its own
+    frame.to_excel(workbook, sheet_name=sheet, index=False, freeze_panes=(1, 2))
+    target.write_bytes(workbook.getbuffer())
     return len(frame)
 
 

@@ -108,3 +108,15 @@ def test_export_for_spreadsheets_holds_no_text_that_they_would_run_as_a_formula(
     place = rows[0].index("from_m")
     assert {row[1] for row in rows[1:]} == {"'=1+2", "'@SUM(A1)", "'+1", "'-2-3", "plain", "007"}
     assert {float(row[place]) for row in rows[1:]} == {-1.5}  # numbers stay numbers
+
+
+@pytest.mark.parametrize("suffix", [".csv", ".xlsx", ".geojson"])
+def test_export_to_a_disk_that_is_full_is_told_and_leaves_no_file(
+    demo: Registry, tmp_path: Path, suffix: str, capfd: pytest.CaptureFixture
+) -> None:
+    """Linux's /dev/full stands for the disk."""
+    target = tmp_path / f"out{suffix}"
+    (tmp_path / f".out.part{suffix}").symlink_to("/dev/full")
+    with pytest.raises(UsageError, match="cannot be written: No space left on device"):
+        export_sheet(demo, "sample_sheet", target)
+    assert list(tmp_path.iterdir()) == [] and "Traceback" not in capfd.readouterr().err
