@@ -127,11 +127,9 @@ def _file_revision(path: Path) -> str:
         raise PlutonbookError(f"{path} is a folder; name the registry file in it")
     if not path.exists():
         raise NotFound(f"there is no registry at {path}: 'plutonbook create' makes a new one there")
-    with path.open("rb") as file:
-        start = file.read(16)
-    if start != b"SQLite format 3\0":
-        what = "is empty" if not start else "is not an SQLite file"
-        raise PlutonbookError(f"{path} {what}, so it is not a registry; name another file or create one elsewhere")
+    # SQLite alone may open the file: closing any other descriptor of it drops this process's locks on it
+    if path.stat().st_size == 0:
+        raise PlutonbookError(f"{path} is empty, so it is not a registry; name another file or create one elsewhere")
     try:
         connection = _connect_file(path)
     except sqlite3.Error as error:
@@ -144,6 +142,10 @@ def _file_revision(path: Path) -> str:
             )
         row = connection.execute("SELECT version_num FROM alembic_version").fetchone()
     except sqlite3.DatabaseError as error:
+        if getattr(error, "sqlite_errorcode", None) == sqlite3.SQLITE_NOTADB:
+            raise PlutonbookError(
+                f"{path} is not an SQLite file, so it is not a registry; name another file or create one elsewhere"
+            ) from error
         told = faults.told(error, path)
         raise PlutonbookError(
             told or f"{path} is damaged or unreadable: {error}; restore a backup with 'plutonbook recover'"
