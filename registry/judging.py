@@ -44,6 +44,10 @@ def read_rules(connection: Any) -> Rules:
     )
 
 
+#: How a stored setting is written.
+_WORDS = {float: "a number", int: "a whole number", bool: "true or false", str: "a word in quotation marks"}
+
+
 def read_conventions(connection: Any) -> Conventions:
     """The conventions in force: the defaults, changed by the settings ``convention.<name>``."""
     known: dict[str, Any] = {field.name: type(field.default) for field in fields(Conventions)}
@@ -58,7 +62,8 @@ def read_conventions(connection: Any) -> Conventions:
             chosen[field] = known[field](json.loads(value))
         except (ValueError, TypeError) as fault:
             raise PlutonbookError(
-                f"setting '{name}': found '{value}', expected {known[field].__name__} as JSON; correct or delete it"
+                f"setting '{name}': found '{value}', expected {_WORDS[known[field]]}; "
+                f"DELETE FROM setting WHERE name = '{name}' gives the default back"
             ) from fault
     return Conventions(**chosen)
 

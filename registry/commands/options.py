@@ -31,6 +31,15 @@ def registry_named(registry_path: str | None) -> str:
     return path
 
 
+def without_password(path_or_url: str) -> str:
+    """A registry as it may be printed: a URL without its password."""
+    if "://" not in path_or_url:
+        return path_or_url
+    from sqlalchemy import make_url
+
+    return make_url(path_or_url).render_as_string(hide_password=True)
+
+
 def say(report: dict[str, Any], lines: list[str], as_json: bool) -> None:
     """A report as JSON, or its sentences."""
     if as_json:

@@ -6,7 +6,7 @@ from pathlib import Path
 
 import click
 
-from registry.commands.options import json_option, registry_named, registry_option, say
+from registry.commands.options import json_option, registry_named, registry_option, say, without_password
 
 
 @click.command()
@@ -18,10 +18,11 @@ def create(registry_path: str | None, as_json: bool) -> None:
     from registry.store.engine import HEAD_REVISION
 
     path = registry_named(registry_path)
-    found(path)
+    found(path).close()
+    shown = without_password(path)
     say(
-        {"registry": path, "revision": HEAD_REVISION},
-        [f"Created {path} at revision {HEAD_REVISION}.", "Bring data in with: plutonbook import FILE..."],
+        {"registry": shown, "revision": HEAD_REVISION},
+        [f"Created {shown} at revision {HEAD_REVISION}.", "Bring data in with: plutonbook import FILE..."],
         as_json,
     )
 

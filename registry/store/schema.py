@@ -18,6 +18,7 @@ import sqlalchemy as sa
 from alembic import command
 from alembic.config import Config
 from alembic.runtime.migration import MigrationContext
+from alembic.util import CommandError
 
 from registry.errors import PlutonbookError
 from registry.store import dialect_postgresql, dialect_sqlite, holder, views
@@ -125,10 +126,16 @@ def migrate(connection: sa.Connection, to: str, config: Config | None = None) ->
     config.attributes["connection"] = connection
     context = MigrationContext.configure(connection)
     now = context.get_current_revision() or ""
-    if to != "head" and (to == "base" or to < now):
-        command.downgrade(config, to)
-    else:
-        command.upgrade(config, to)
+    try:
+        if to != "head" and (to == "base" or to < now):
+            command.downgrade(config, to)
+        else:
+            command.upgrade(config, to)
+    except CommandError as error:
+        raise PlutonbookError(
+            f"the registry has schema '{now}', which no version of Plutonbook made ({error}); nothing was changed. "
+            "Restore a backup with 'plutonbook recover'"
+        ) from error
 
 
 def alembic_config() -> Config:
