@@ -13,6 +13,7 @@ from typing import Any
 from registry.explain import MISSING, Conclusion, explain_chosen, read_definition
 from registry.store.reading import intrusions as reading
 from registry.store.reading import targets as targets_reading
+from registry.store.reading.doubts import doubted_samples
 from registry.store.sheets import VERDICT_WORDS
 from registry.targets.definition import Criterion, TargetDefinition
 
@@ -47,7 +48,11 @@ class Best:
 
 @dataclass(frozen=True)
 class Standing:
-    """The samples of one place against one target. ``conclusion`` is that of the best sample."""
+    """The samples of one place against one target. ``conclusion`` is that of the best sample.
+
+    ``doubted`` counts those among ``counts`` whose chemistry stands against their intrusion or their log; none of them
+    is a best sample.
+    """
 
     target: str
     name: str
@@ -59,22 +64,32 @@ class Standing:
     lacking: tuple[Lacking, ...]
     causes: tuple[tuple[str, int], ...]
     cautions: tuple[str, ...]
+    doubted: dict[str, int]
     conclusion: Conclusion | None = None
 
     @property
+    def shares(self) -> tuple[float, float]:
+        """Shares of favourable and of possible samples, those of doubted identity left out."""
+        return reading.shares_of(self.counts, self.doubted)
+
+    @property
     def leading(self) -> str | None:
-        """The word for all samples: the best verdict, undecided only where most of them are; None: no sample."""
+        """The word for all samples: the best verdict, undecided only where most of them are; None: no sample.
+
+        A sample of doubted identity lends its verdict to no place.
+        """
         if not self.samples:
             return None
-        word = next((word for word in ("favourable", "possible") if self.counts[word]), None)
+        word = next((word for word in ("favourable", "possible") if self.counts[word] > self.doubted[word]), None)
         return word or ("undecided" if 2 * self.counts["undecided"] > self.samples else "unfavourable")
 
 
 def standings(connection: Any, column: str, key: int, explained: Collection[str] = VERDICT_WORDS) -> list[Standing]:
     """The standing for every target of the samples with that ``intrusion_id`` or ``site_id`` (``column``).
 
-    The target with the best verdict comes first, then by median score. The best sample's conclusion is worked out
-    where its verdict is one of ``explained``.
+    The target with the greatest share of favourable samples comes first, then of possible ones, then by median score;
+    samples of doubted identity are left out of the shares and never called best. The best sample's conclusion is
+    worked out where its verdict is one of ``explained``.
     """
     targets = targets_reading.active_targets(connection)
     rows = reading.judged_samples(connection, column, key)
@@ -82,18 +97,24 @@ def standings(connection: Any, column: str, key: int, explained: Collection[str]
     for row in rows:
         if row[0] in by_target:
             by_target[row[0]].append(row)
-    leaders = {target_id: _best_of(part) for target_id, part in by_target.items()}
+    doubted = doubted_samples(connection, column, key)
+    leaders = {
+        target_id: _best_of([row for row in part if row[4] not in doubted]) for target_id, part in by_target.items()
+    }
     codes = reading.sample_codes(connection, sorted({row[4] for part in leaders.values() for row in part}))
     firsts = [(leaders[target["target_id"]][0], target["code"]) for target in targets if leaders[target["target_id"]]]
     conclusions = explain_chosen(
         connection, [(row[4], code) for row, code in firsts if VERDICT_WORDS[row[1]] in explained]
     )
     found = [
-        _standing(target, by_target[target["target_id"]], leaders[target["target_id"]], codes, conclusions)
+        _standing(target, by_target[target["target_id"]], leaders[target["target_id"]], codes, conclusions, doubted)
         for target in targets
     ]
     order = {"favourable": 0, "possible": 1, "undecided": 2, "unfavourable": 3, None: 4}
-    return sorted(found, key=lambda one: (order[one.leading], -(one.median_score or 0.0)))
+    return sorted(
+        found,
+        key=lambda one: (-one.shares[0], -one.shares[1], order[one.leading], -(one.median_score or 0.0)),
+    )
 
 
 def _best_of(rows: Sequence[tuple[Any, ...]]) -> list[tuple[Any, ...]]:
@@ -121,10 +142,13 @@ def _standing(
     leaders: Sequence[tuple[Any, ...]],
     codes: dict[int, str],
     conclusions: dict[tuple[int, str], Conclusion],
+    doubted: Collection[int],
 ) -> Standing:
     definition = read_definition(target["definition"])
     counted = Counter(row[1] for row in rows)
+    unsure = Counter(row[1] for row in rows if row[4] in doubted)
     scores = [row[2] for row in rows if row[2] is not None]
+    best_scores = [row[2] for row in rows if row[2] is not None and row[4] not in doubted]
     lacking, causes = lacking_of(definition, (row[5] for row in rows if row[5] is not None))
     return Standing(
         target=target["code"],
@@ -132,11 +156,12 @@ def _standing(
         counts={word: counted.get(code, 0) for code, word in enumerate(VERDICT_WORDS)},
         samples=len(rows),
         median_score=statistics.median(scores) if scores else None,
-        best_score=max(scores) if scores else None,
+        best_score=max(best_scores) if best_scores else None,
         best=tuple(Best(row[4], codes[row[4]], VERDICT_WORDS[row[1]], row[2], row[3]) for row in leaders),
         lacking=lacking,
         causes=causes,
         cautions=definition.cautions,
+        doubted={word: unsure.get(code, 0) for code, word in enumerate(VERDICT_WORDS)},
         conclusion=conclusions.get((leaders[0][4], target["code"])) if leaders else None,
     )
 

@@ -13,6 +13,7 @@ from registry.store.reading import intrusions as reading
 from registry.store.reading import places as places_reading
 from registry.store.reading import suites as suites_reading
 from registry.store.reading import targets as targets_reading
+from registry.store.reading.doubts import doubted_samples
 from web.errors import Missing
 from web.pictures import minerals_of, norm_segments
 from web.ranges import range_bar
@@ -20,7 +21,7 @@ from web.reading import offered_columns, registry_connection
 from web.remembered import remembered
 
 blueprint = Blueprint("intrusions", __name__)
-#: Rank of the best verdict, most interesting first.
+#: Verdicts, most interesting first.
 ORDER = ("favourable", "possible", "undecided", "unfavourable")
 #: Shown at once; the rest folds.
 LACKING_SHOWN = 6
@@ -34,24 +35,26 @@ def scores(connection: Any, target_id: int) -> Mapping[int, Mapping[str, Any]]:
 
     def find() -> Mapping[int, Mapping[str, Any]]:
         members = remembered("members of intrusions", lambda: reading.members_of_intrusions(connection))
-        return reading.scores_by_intrusion(connection, target_id, members)
+        doubted = remembered("samples of doubted identity", lambda: doubted_samples(connection))
+        return reading.scores_by_intrusion(connection, target_id, members, doubted)
 
     return remembered(("scores by intrusion", target_id), find)
 
 
-def leading_word(counts: Mapping[str, int]) -> str | None:
-    """The best verdict that any sample has."""
-    return next((word for word in ORDER if counts.get(word)), None)
+def leading_word(standing: Mapping[str, Any]) -> str | None:
+    """The best verdict that any sample has of which nothing says that it may be another's."""
+    counts, doubted = standing["counts"], standing["doubted"]
+    return next((word for word in ORDER if counts[word] > doubted[word]), None)
 
 
-def ranking_key(entry: Mapping[str, Any]) -> tuple[int, float, float, str]:
-    """Best verdict first, then the median score, then the best one, then the name."""
+def ranking_key(entry: Mapping[str, Any]) -> tuple[bool, float, float, float, float, str]:
+    """Greatest share of favourable samples first, then of possible ones, then median and best score, then the name."""
     standing = entry["standing"]
     if not standing:
-        return (len(ORDER), 0.0, 0.0, entry["name"])
-    word = leading_word(standing["counts"])
-    rank = len(ORDER) if word is None else ORDER.index(word)
-    return (rank, -(standing["median_score"] or 0.0), -(standing["best_score"] or 0.0), entry["name"])
+        return (True, 0.0, 0.0, 0.0, 0.0, entry["name"])
+    favourable, possible = standing["shares"]
+    scores = (-(standing["median_score"] or 0.0), -(standing["best_score"] or 0.0))
+    return (False, -favourable, -possible, *scores, entry["name"])
 
 
 @blueprint.get("/intrusions")
@@ -74,10 +77,10 @@ def list_page() -> Any:
             by_target = [(target, scores(connection, target["target_id"])) for target in targets]
             for row in rows:
                 row["leads"] = [
-                    (target, found["counts"])
+                    (target, found["counts"], found["doubted"])
                     for target, standing in by_target
                     if (found := standing.get(row["intrusion_id"]))
-                    and (found["counts"]["favourable"] or found["counts"]["possible"])
+                    and leading_word(found) in ("favourable", "possible")
                 ]
                 row["judged"] = any(row["intrusion_id"] in standing for _, standing in by_target)
     return render_template(

@@ -59,10 +59,10 @@ def _leading(connection: Any, target: dict[str, Any], bodies: list[dict[str, Any
     standing = scores(connection, target["target_id"])
     ranked = sorted(({**body, "standing": standing.get(body["intrusion_id"])} for body in bodies), key=ranking_key)
     first = ranked[0] if ranked and ranked[0]["standing"] else None
-    word = leading_word(first["standing"]["counts"]) if first else None
+    word = leading_word(first["standing"]) if first else None
     stands_out = word in ("favourable", "possible")
     others = sum(
-        leading_word(body["standing"]["counts"]) in ("favourable", "possible")
+        leading_word(body["standing"]) in ("favourable", "possible")
         for body in ranked[1:]
         if body["standing"] and stands_out
     )

@@ -215,3 +215,37 @@ def test_range_scales_are_ascending_and_positive_where_logarithmic() -> None:
     for name, (low, high, logarithmic) in SCALES.items():
         assert low < high, name
         assert low > 0 or not logarithmic, name
+
+
+def test_intrusions_doubted_sample_lends_no_rank_and_is_no_best_sample(writable: Any) -> None:
+    """One favourable gabbro far from its body: counted and said to be doubted, ranked as if it were not there."""
+    inside = "SELECT sample_id FROM sample WHERE intrusion_id = (SELECT intrusion_id FROM intrusion WHERE name = ?)"
+    tin = writable.sql("SELECT target_id FROM target WHERE code = 'tin'")[0][0]
+    for name in ("Aster stock", "Brock gabbro"):
+        writable.sql(
+            f"UPDATE verdict SET verdict = 2, score_min = 0.1, score_max = 0.1 WHERE sample_id IN ({inside})", name
+        )
+    odd, body, code = writable.sql(
+        "SELECT s.sample_id, s.intrusion_id, s.code FROM sample AS s JOIN verdict AS v ON v.sample_id = s.sample_id "
+        "JOIN intrusion AS i ON i.intrusion_id = s.intrusion_id WHERE i.name = 'Brock gabbro' AND v.target_id = ? "
+        "ORDER BY s.sample_id LIMIT 1",
+        tin,
+    )[0]
+    writable.sql("UPDATE verdict SET verdict = 0, score_min = 0.9 WHERE sample_id = ? AND target_id = ?", odd, tin)
+    page = writable.client.get("/intrusions?target=tin").text
+    assert page.index(">Brock gabbro<") < page.index(">Aster stock<")
+    assert (
+        f'href="/samples/{code}#tin">{code}</a>, its best sample'
+        in writable.client.get("/intrusions/Brock gabbro").text
+    )
+    writable.sql(
+        "INSERT INTO suite_outlier (sample_id, intrusion_id, distance, distance_limit, text) "
+        "VALUES (?, ?, 9.0, 3.5, 'invented remark')",
+        odd, body,
+    )  # fmt: skip
+    page = writable.client.get("/intrusions?target=tin").text
+    assert page.index(">Aster stock<") < page.index(">Brock gabbro<")
+    assert "1 favourable (1 of doubted identity)" in words(page)
+    page = writable.client.get("/intrusions/Brock gabbro").text
+    assert f'href="/samples/{code}#tin"' not in page
+    assert re.search(rf">{code}</a> <abbr class=\"doubt\"", page)

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Mapping, Sequence
+from collections.abc import Collection, Mapping, Sequence
 from dataclasses import dataclass
 from typing import Any
 
@@ -12,6 +12,7 @@ from sqlalchemy import Connection, text
 from registry.petrology.analytes import CHOSEN_INDEX
 from registry.petrology.digestion import DIGESTION_LETTERS, DIGESTIONS, carries
 from registry.store import raw_rows
+from registry.store.reading.doubts import doubted_samples
 from registry.store.reading.samples import NORM_ORDER
 from registry.store.sheets import CONTROL_KINDS, DERIVED_COLUMNS, VERDICT_WORDS
 
@@ -135,12 +136,17 @@ def members_of_intrusions(connection: Connection) -> tuple[np.ndarray, np.ndarra
 
 
 def scores_by_intrusion(
-    connection: Connection, target_id: int, members: tuple[np.ndarray, np.ndarray] | None = None
+    connection: Connection,
+    target_id: int,
+    members: tuple[np.ndarray, np.ndarray] | None = None,
+    doubted: Collection[int] = (),
 ) -> dict[int, dict[str, Any]]:
     """How the samples of every intrusion stand to one target, by intrusion id.
 
     ``counts`` by verdict word, ``best_score`` and ``median_score`` (share of the points met; None where none was
-    scored). ``members`` as ``members_of_intrusions`` gives them, else they are read. Reads every verdict on the
+    scored). The ids in ``doubted`` are told apart in ``doubted`` (counts by word) and left out of ``best_score`` and of
+    ``shares``, those of favourable and of possible samples among all with a verdict. ``members`` as
+    ``members_of_intrusions`` gives them, else they are read. Reads every verdict on the
     target, from the index alone: keep the answer.
     """
     samples, bodies = members_of_intrusions(connection) if members is None else members
@@ -153,19 +159,33 @@ def scores_by_intrusion(
     places = np.minimum(np.searchsorted(samples, ids), samples.size - 1)
     named = samples[places] == ids
     body, verdict, score = bodies[places[named]], verdicts[named].astype(np.int64), scores[named]
+    doubt = np.isin(ids[named], np.fromiter(doubted, dtype=np.float64))
     order = np.argsort(body, kind="stable")
-    body, verdict, score = body[order], verdict[order], score[order]
+    body, verdict, score, doubt = body[order], verdict[order], score[order], doubt[order]
     starts = np.flatnonzero(np.r_[True, body[1:] != body[:-1]]) if body.size else np.zeros(0, dtype=np.int64)
     found = {}
     for start, end in zip(starts.tolist(), [*starts[1:].tolist(), body.size], strict=True):
+        part, sure = score[start:end], ~doubt[start:end]
         counted = np.bincount(verdict[start:end], minlength=len(VERDICT_WORDS))
-        known = score[start:end][~np.isnan(score[start:end])]
+        unsure = np.bincount(verdict[start:end][~sure], minlength=len(VERDICT_WORDS))
+        known, best = part[~np.isnan(part)], part[sure & ~np.isnan(part)]
+        counts = dict(zip(VERDICT_WORDS, counted.tolist(), strict=True))
+        doubts = dict(zip(VERDICT_WORDS, unsure.tolist(), strict=True))
         found[int(body[start])] = {
-            "counts": dict(zip(VERDICT_WORDS, counted.tolist(), strict=True)),
-            "best_score": float(known.max()) if known.size else None,
+            "counts": counts,
+            "doubted": doubts,
+            "shares": shares_of(counts, doubts),
+            "best_score": float(best.max()) if best.size else None,
             "median_score": float(np.median(known)) if known.size else None,
         }
     return found
+
+
+def shares_of(counts: Mapping[str, int], doubted: Mapping[str, int]) -> tuple[float, float]:
+    """Shares of favourable and of possible samples among all with a verdict, those of doubted identity left out."""
+    total = sum(counts.values()) - sum(doubted.values())
+    favourable, possible = (counts[word] - doubted[word] for word in ("favourable", "possible"))
+    return (favourable / total, possible / total) if total else (0.0, 0.0)
 
 
 def composition_ranges(
@@ -263,12 +283,15 @@ def norms_of(connection: Connection, sample_ids: Sequence[int]) -> dict[int, dic
 
 
 def sample_rows(connection: Connection, column: str, key: int, limit: int = SAMPLES_SHOWN) -> list[dict[str, Any]]:
-    """The first samples by site and depth, then code, with rock name, verdict in words and whether they are stale."""
+    """The first samples by site and depth, then code, with rock name, verdict in words and whether they are stale.
+
+    ``is_doubted``: a remark says that the sample may not be what it is recorded as.
+    """
     rows = _rows(
         connection,
         f"""
         SELECT s.code, s.kind, k.code AS site_code, s.from_m, s.to_m, s.lithology, s.alteration, i.name AS intrusion,
-            d.differentiation_index, d.sio2_vf_wt, d.mgo_vf_wt, d.tas_plutonic, d.fitness, d.best_target,
+            s.sample_id, d.differentiation_index, d.sio2_vf_wt, d.mgo_vf_wt, d.tas_plutonic, d.fitness, d.best_target,
             d.best_verdict, CASE WHEN z.sample_id IS NULL THEN 0 ELSE 1 END AS is_stale
         FROM sample AS s LEFT JOIN site AS k ON k.site_id = s.site_id
         LEFT JOIN intrusion AS i ON i.intrusion_id = s.intrusion_id
@@ -278,7 +301,9 @@ def sample_rows(connection: Connection, column: str, key: int, limit: int = SAMP
         key=key,
         n=limit,
     )
+    doubted = doubted_samples(connection, column, key)
     for row in rows:
+        row["is_doubted"] = row["sample_id"] in doubted
         row["best_verdict"] = None if row["best_verdict"] is None else VERDICT_WORDS[row["best_verdict"]]
     return rows
 
