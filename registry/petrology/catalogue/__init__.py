@@ -41,6 +41,7 @@ TOPICS = (
     "kinds_of_analysis",
     "consistency",
     "logged",
+    "melt_remarks",
 )
 
 #: Causes that any quantity can have; a method adds its own. The letter stands in ``derived.causes``.

@@ -132,6 +132,8 @@ METHODS = (
         equation="ln D = 10108/T - 1.16 (M - 1) - 1.48",
         status="from memory",
         calibration=_ZIRCON_RANGES,
+        note="Range of temperature not stated (not seen), so no value is marked as extrapolated; M, SiO2 and A/NK as "
+        "for the first model.",
     ),
     Method(
         key="zircon_saturation_shao",
@@ -144,6 +146,7 @@ METHODS = (
         status="published",
         calibration=_ZIRCON_RANGES,
         standard_error="0.308, 0.066 and 374 on the three coefficients",
+        note="Calibrated 750-1400 C.",
     ),
     Method(
         key="zircon_saturation_usable",

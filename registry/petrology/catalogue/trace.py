@@ -247,7 +247,28 @@ def _strontium_warning(quantity: str, label: str) -> Warning:
     )
 
 
+#: ppm below which one printed decimal of a denominator moves a ratio much. Common practice, no source.
+TA_LOW_PPM, HF_LOW_PPM = 0.5, 1.0
+
+
+def _below(limit: float, value: Any, denominator: Any) -> Any:
+    return (denominator < limit) & ~np.isnan(value)
+
+
+def _rounding_warning(quantity: str, column: str, symbol: str, limit: float) -> Warning:
+    return Warning(
+        f"{quantity}_low_{symbol.lower()}",
+        quantity,
+        column,
+        f"{symbol} {{value}} ppm is so low that its rounding moves {_RATIO_RECORDS[quantity][0]}",
+        partial(_below, limit),
+        (quantity, column),
+    )
+
+
 WARNINGS = (
+    _rounding_warning("nb_ta", "ta_ppm", "Ta", TA_LOW_PPM),
+    _rounding_warning("zr_hf", "hf_ppm", "Hf", HF_LOW_PPM),
     *(
         warning
         for quantity, (numerator, denominator, _) in RATIOS.items()
