@@ -12,6 +12,7 @@ from registry.intake import ResultTable
 from registry.petrology.analytes import QUALIFIER_BELOW
 from registry.quality.assessment import Column
 from registry.quality.columns import disagreeing_columns
+from registry.quality.medians import implausible_columns
 from registry.quality.recognising import Spoken, read_control_text
 from registry.store import masters, quality_rows
 
@@ -92,7 +93,7 @@ def limit_reported(values: np.ndarray, qualifiers: np.ndarray) -> float | None:
 
 
 def columns_that_disagree(table: ResultTable) -> list[str]:
-    """Sentences on columns of one metal that differ in the file (MnO beside Mn)."""
+    """Sentences on columns of one metal that differ in the file (MnO beside Mn), and on medians that no rock has."""
     columns = [
         Column(
             place, column.analyte, column.unit, column.digestion,
@@ -102,4 +103,7 @@ def columns_that_disagree(table: ResultTable) -> list[str]:
         )
         for place, column in enumerate(table.columns)
     ]  # fmt: skip
-    return disagreeing_columns(columns, table.values, table.qualifiers, table.line_no)
+    return [
+        *disagreeing_columns(columns, table.values, table.qualifiers, table.line_no),
+        *implausible_columns(columns, table.values, table.qualifiers),
+    ]

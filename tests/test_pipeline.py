@@ -19,6 +19,7 @@ from registry.petrology.constants import FE2O3_FROM_FEO, molar_mass
 from registry.petrology.conventions import Conventions
 from registry.petrology.digestion import DIGESTIONS
 from registry.petrology.liquidus_choice import OLIVINE_MODELS
+from registry.petrology.plausible import JUDGED_BY_TRACES
 from registry.pipeline import Chunk, Computed, compute, compute_in_parts, empty_chunk, is_missing
 from tests.strategies import OXIDE_TOPS
 

@@ -15,6 +15,8 @@ from registry.quality.trends import bias, least_squares
 #: lines it was seen on), and rests on so many results. Common practice, no source.
 ERRORS_TO_NAME, PERCENT_TO_NAME = 4.0, 5.0
 RESULTS_FOR_BIAS, RESULTS_FOR_DRIFT = 5, 10
+#: Factors between %, ppm and ppb, and how near to one (in decades) a result must lie to be called a slip of unit.
+UNIT_FACTORS, NEAR_A_FACTOR = (1_000, 10_000, 10_000_000), 0.2
 
 
 @dataclass(frozen=True)
@@ -123,8 +125,18 @@ def _about(controls: Controls, outcome: Outcome, row: int, words: str, verb: str
     expected = f" for {outcome.expected[row]:.4g}" if not np.isnan(outcome.expected[row]) else ""
     return (
         f"{words} {named + ' ' if named else ''}{verb} on line {controls.line_no[row]}: found "
-        f"{outcome.found[row]:.4g}{expected} {outcome.column.unit}{score} ({outcome.rules[row]})"
+        f"{outcome.found[row]:.4g}{expected} {outcome.column.unit}{score} ({outcome.rules[row]}){_slip(outcome, row)}"
     )
+
+
+def _slip(outcome: Outcome, row: int) -> str:
+    """A hint where found and expected differ by about a factor that two units differ by."""
+    found, expected = float(outcome.found[row]), float(outcome.expected[row])
+    if not (found > 0.0 and expected > 0.0):
+        return ""
+    decades = abs(float(np.log10(found / expected)))
+    near = next((factor for factor in UNIT_FACTORS if abs(decades - np.log10(factor)) < NEAR_A_FACTOR), None)
+    return "" if near is None else f", off by a factor of about {near:,}: is the unit right?"
 
 
 def _two_digits(number: float, sign: str = "") -> str:

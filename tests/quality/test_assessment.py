@@ -154,3 +154,10 @@ def test_many_columns_of_one_metal_are_compared_at_once_and_told_in_one_sentence
     assert time.perf_counter() - started < 5.0
     values[1, 1200] = 150.0
     assert disagreeing_columns(columns, values, np.zeros(values.shape, dtype=np.uint8), np.array([2, 3, 4])) == []
+
+
+def test_reference_off_by_a_thousand_is_asked_for_its_unit() -> None:
+    _, state = judged(controls(["reference_material"], [0.097], limit=0.001))
+    assert "off by a factor of about 1,000: is the unit right?" in state.remarks
+    _, state = judged(controls(["reference_material"], [150.0]))
+    assert "is the unit right" not in state.remarks

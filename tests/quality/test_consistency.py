@@ -20,7 +20,10 @@ from registry.petrology.consistency import (
 from registry.petrology.constants import FEO_FROM_FE2O3
 from registry.petrology.conventions import Conventions
 from registry.petrology.digestion import DIGESTION_CODE
+from registry.petrology.plausible import JUDGED_BY_TRACES
 from registry.pipeline import empty_chunk, workspace_of
+from registry.quality.assessment import Column
+from registry.quality.medians import implausible_columns
 
 #: BCR-2: Jochum et al. 2016, Geostand. Geoanal. Res. 40, 333-350 (ppm; published).
 BCR_2 = {
@@ -28,6 +31,8 @@ BCR_2 = {
     "Dy": 6.424, "Ho": 1.313, "Er": 3.67, "Tm": 0.5341, "Yb": 3.392, "Lu": 0.5049, "Zr": 186.5, "Hf": 4.972,
     "Nb": 12.44, "Ta": 0.785,
 }  # fmt: skip
+#: The same material; from memory, rounded.
+BCR_2_MORE = {"Sr": 337.0, "Y": 36.0, "Rb": 46.0, "Th": 5.8, "U": 1.68, "V": 418.0, "Sc": 33.5}
 
 
 def told(changes: dict[str, float], digestion: str = "fusion") -> set[str]:
@@ -53,7 +58,7 @@ def test_published_analysis_agrees_with_itself() -> None:
 
 def test_remarks_of_this_topic_are_in_the_catalogue() -> None:
     assert set(WARNINGS) <= set(catalogue.WARNINGS)
-    assert len(WARNINGS) == 21
+    assert len(WARNINGS) == 34
 
 
 @pytest.mark.parametrize("symbol", ["Pr", "Nd", "Sm", "Gd", "Tb", "Dy", "Ho", "Er", "Tm", "Yb"])
@@ -102,3 +107,47 @@ def test_gain_on_ignition_is_told_by_what_iron_can_take_up(loi: float, code: set
     """4 FeO + O2 = 2 Fe2O3: 31.998/(4 x 71.844) = 0.1113 of FeO (IUPAC weights); 10 wt% FeO gain 1.11."""
     np.testing.assert_allclose(31.998 / (4 * 71.844), OXYGEN_PER_FEO, rtol=1e-4)
     assert told({"loi_wt": loi, "fe2o3t_reported_wt": 11.113}) == code
+
+
+@pytest.mark.parametrize("symbol", JUDGED_BY_TRACES)
+def test_trace_wrong_by_a_thousand_or_more_is_told(symbol: str) -> None:
+    """The content of BCR-2 in a unit that is wrong by 10^6 lies outside any rock; as published it does not."""
+    column, published = f"{symbol.lower()}_ppm", {**BCR_2, **BCR_2_MORE}[symbol]
+    code = f"{symbol.lower()}_implausible"
+
+    assert code not in told({column: published})
+    assert code in told({column: published * 1e-6})
+    assert code in told({column: published * 1e6})
+    assert code not in told({column: published * 1e-6, "mgo_wt": 42.0})  # a peridotite may hold so little
+
+
+def test_yttrium_of_a_dacite_in_the_wrong_unit_is_told() -> None:
+    assert "y_implausible" in told({"y_ppm": 0.0097})
+    assert "y_implausible" not in told({"y_ppm": 9.7})
+
+
+def test_medians_of_columns_outside_any_rock_are_told_once_a_column() -> None:
+    columns = [Column(1, "Y", "ppm", "fusion", None), Column(2, "Sr", "ppm", "fusion", None),
+               Column(3, "Cu", "ppm", "fusion", None), Column(4, "Ta", "ppm", "fusion", None)]  # fmt: skip
+    values = np.array([[0.0097, 509.0, 1e-6, 1e-5]] * 3 + [[0.0081, 480.0, 1e-6, 1e-5]] * 3)
+    signs = np.zeros(values.shape, dtype=np.uint8)
+    signs[1:5, 3] = 1  # tantalum is mostly below the limit
+    (sentence,) = implausible_columns(columns, values, signs)
+
+    assert sentence.startswith("Y (ppm): the median is 0.0089 ppm, rocks hold about 0.3 to 3,000 ppm: is the unit")
+
+
+def test_median_in_another_unit_is_compared_in_that_unit() -> None:
+    columns = [Column(1, "Sr", "ppb", "fusion", None), Column(2, "Y2O3", "wt%", "fusion", None)]
+    values = np.array([[509.0, 0.0012]] * 3)
+    told_of = implausible_columns(columns, values, np.zeros(values.shape, dtype=np.uint8))
+    nothing = implausible_columns(columns, values * [1000.0, 1.0], np.zeros(values.shape, dtype=np.uint8))
+
+    assert told_of == []  # 0.509 ppm may be: the bounds are wide
+    assert nothing == []
+
+
+def test_medians_of_peridotite_may_be_low() -> None:
+    columns = [Column(1, "Y", "ppm", "fusion", None), Column(2, "MgO", "wt%", "fusion", None)]
+    values = np.array([[0.04, 42.0]] * 3)
+    assert implausible_columns(columns, values, np.zeros(values.shape, dtype=np.uint8)) == []

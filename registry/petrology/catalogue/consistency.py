@@ -24,6 +24,7 @@ from registry.petrology.consistency import (
     rare_earth_residual,
 )
 from registry.petrology.digestion import CARRIES, MINIMUM
+from registry.petrology.plausible import JUDGED_BY_TRACES, PLAUSIBLE_PPM, is_implausible
 
 METHODS: tuple[Method, ...] = ()
 
@@ -98,6 +99,29 @@ def _one_metal(element: str, oxide: str, formula: str) -> Warning:
     )
 
 
+def _no_rock_holds(ppm: Any, sign: Any, digestion: Any, mgo: Any, sio2: Any, *, symbol: str) -> Any:
+    """Outside what rocks hold; too little by a digestion that leaves part behind is explained by it."""
+    if np.isnan(ppm).all():
+        return np.zeros(np.shape(ppm), dtype=bool)
+    low = PLAUSIBLE_PPM[symbol][0]
+    explained = (ppm < low) & (CARRIES[digestion, CHOSEN_INDEX[f"{symbol.lower()}_ppm"]] == MINIMUM)
+    return is_implausible(ppm, symbol, mgo, sio2) & (sign == 0) & ~explained
+
+
+def _implausible(symbol: str) -> Warning:
+    column = f"{symbol.lower()}_ppm"
+    low, high = PLAUSIBLE_PPM[symbol]
+    return Warning(
+        f"{symbol.lower()}_implausible",
+        column,
+        column,
+        f"{symbol} {{value}} ppm lies outside {low:g} to {high:,.0f} ppm, what silicate rocks hold (common practice, "
+        "no source): check whether the laboratory's unit is %, ppm or ppb before trusting a verdict that rests on it",
+        partial(_no_rock_holds, symbol=symbol),
+        (column, f"qualifier:{column}", f"digestion:{column}", "mgo_wt", "sio2_wt"),
+    )
+
+
 def _gain_on_ignition(loi: Any, iron: Any) -> Any:
     return (loi < 0.0) & ~_more_than_iron_gains(loi, iron)
 
@@ -112,6 +136,7 @@ WARNINGS = (
     _ratio("zr_hf", "Zr/Hf", ("zr_ppm", "hf_ppm"), ZR_HF_LIMITS),
     _ratio("nb_ta", "Nb/Ta", ("nb_ppm", "ta_ppm"), NB_TA_LIMITS),
     *(_one_metal(element, oxide, formula) for element, (oxide, formula) in OXIDE_AND_ELEMENT.items()),
+    *(_implausible(symbol) for symbol in JUDGED_BY_TRACES),
     Warning(
         "loi_negative",
         "loi_wt",
