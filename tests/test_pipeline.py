@@ -218,6 +218,7 @@ ODD = [
     {"loi_wt": -0.5},
     {"loi_wt": -0.3, "feo_titrated_wt": 1.5},
     {"la_ppm": 1e308, "yb_ppm": 1e-9},
+    {f"{symbol.lower()}_ppm": 1e-4 for symbol in JUDGED_BY_TRACES},
     {"zr_ppm": 2000.0},  # zircon of another source: saturated above 892 C by every model
 ]
 
