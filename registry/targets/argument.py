@@ -14,7 +14,7 @@ from registry.petrology.conventions import Conventions
 from registry.petrology.digestion import DIGESTION_LETTERS, DIGESTION_WORDS
 from registry.petrology.intrusion_heat import ASSUMED_AGE_SIGMA
 from registry.petrology.logged import logged_words
-from registry.targets.definition import Criterion, Gate, TargetDefinition
+from registry.targets.definition import Criterion, Gate, Phrase, TargetDefinition
 from registry.targets.engine import TEXT_QUANTITIES, VERDICT_WORDS, is_known, judge
 from registry.targets.evaluation import evaluate
 from registry.targets.grammar import Condition
@@ -155,12 +155,19 @@ class _Argument:
             code = int(np.asarray(self.known.workspace.get(f"digestion:{part}", [0]))[0])
             return DIGESTION_WORDS[code]
         if name == "phrase":
-            phrase = self.definition.phrases[part]
-            letters = [self.outcomes[code] for code in phrase.criteria]
-            if all(letter == "m" for letter in letters):
-                return phrase.met
-            return phrase.not_met if any(letter in "nr" for letter in letters) else phrase.unknown
+            return self._fill_phrase(self.definition.phrases[part])
         raise KeyError(f"the argument of {self.definition.code} asks for '{name}.{part}', which is not known")
+
+    def _fill_phrase(self, phrase: Phrase) -> str:
+        met = [code for code in phrase.criteria if self.outcomes[code] == "m"]
+        failed = [code for code in phrase.criteria if self.outcomes[code] in "nr"]
+        if not failed:
+            return phrase.met if len(met) == len(phrase.criteria) else phrase.unknown
+        if not met or phrase.part is None:
+            return phrase.not_met
+        labels = {item.code: item.label for item in self.definition.tests}
+        named = [" and ".join(labels[code] for code in codes) for codes in (met, failed)]
+        return phrase.part.format(met=named[0], not_met=named[1])
 
     def value_text(self, name: str) -> str:
         """A quantity as it is known: three digits, an interval, a word, or 'not known'."""

@@ -5,6 +5,7 @@ A definition is a screening rule written by geologists; its verdicts are screeni
 
 from __future__ import annotations
 
+import re
 import tomllib
 from collections.abc import Collection, Mapping
 from dataclasses import dataclass, field
@@ -71,12 +72,17 @@ class Contradiction:
 
 @dataclass(frozen=True)
 class Phrase:
-    """Words of the argument that depend on the outcome of ``criteria`` (all met, not all met, or unknown)."""
+    """Words of the argument that depend on the outcome of ``criteria`` (all met, not all met, or unknown).
+
+    ``part`` stands where some are met and others are not, and may name them by ``{met}`` and ``{not_met}``; without it
+    ``not_met`` stands there too.
+    """
 
     criteria: tuple[str, ...]
     met: str
     not_met: str
     unknown: str
+    part: str | None = None
 
 
 @dataclass(frozen=True)
@@ -132,8 +138,12 @@ _KEYS: dict[str, tuple[set[str], set[str]]] = {
     "otherwise": ({"quantity", "test"}, {"near"}),
     "need": ({"any_of", "reason"}, {"strict"}),
     "contradiction": ({"label", "test"}, set()),
-    "phrase": ({"criteria", "met", "not_met", "unknown"}, set()),
+    "phrase": ({"criteria", "met", "not_met", "unknown"}, {"part"}),
 }
+
+
+#: Anything in braces, and a brace alone.
+_BRACED = re.compile(r"\{[^{}]*\}|[{}]")
 
 
 class _Reader:
@@ -217,7 +227,7 @@ def parse_definition(text: str, name: str = "definition", known: Collection[str]
             tests = reader.attempt(f"contradiction {position}", parse_conditions, entry["test"])
             contradictions.append(Contradiction(entry["label"], tests or ()))
     phrases = {
-        key: Phrase(tuple(t["criteria"]), t["met"], t["not_met"], t["unknown"])
+        key: Phrase(tuple(t["criteria"]), t["met"], t["not_met"], t["unknown"], t.get("part"))
         for key, t in table.get("phrase", {}).items()
         if reader.keys("phrase", t, f"phrase '{key}'")
     }
@@ -255,6 +265,9 @@ def faults_of(definition: TargetDefinition, known: Collection[str] | None = None
         strangers = sorted(set(phrase.criteria) - set(codes))
         if strangers:
             faults.append(f"phrase '{key}' names {strangers}, which are no gates or criteria; known are {codes}")
+        strange = sorted(set(_BRACED.findall(phrase.part or "")) - {"{met}", "{not_met}"})
+        if strange:
+            faults.append(f"phrase '{key}': part holds {strange}; it may hold {{met}} and {{not_met}} only")
     if known is not None:
         read = [*definition.quantities(), *(name for need in definition.needs for name in need.any_of)]
         faults += [f"the quantity '{name}' does not exist; see `plutonbook methods`" for name in read
