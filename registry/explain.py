@@ -31,7 +31,12 @@ MISSING = "missing: "
 
 @dataclass(frozen=True)
 class Reason:
-    """One gate or criterion as it came out. ``value`` is the number, ``text`` what is to be said beside or instead."""
+    """One gate or criterion as it came out. ``value`` is the number, ``text`` what is to be said beside or instead.
+
+    Where the quantity of a criterion is not known and another took its place, ``quantity``, ``test``, ``limit`` and
+    ``margin`` are those of the other, and ``instead_of`` names the one it replaces; else it is empty. ``limit_moves``:
+    the limit depends on another quantity of the sample.
+    """
 
     code: str
     label: str
@@ -47,6 +52,8 @@ class Reason:
     provisional: bool
     source: str
     margin: Margin | None
+    instead_of: str
+    limit_moves: bool
 
 
 @dataclass(frozen=True)
@@ -64,6 +71,8 @@ class Conclusion:
     cause: str
     argument: str
     would_turn: tuple[str, ...]
+    failed_rules: tuple[str, ...]
+    near_misses: tuple[str, ...]
     contradictions: tuple[str, ...]
     reasons: tuple[Reason, ...]
     missing: tuple[str, ...]
@@ -155,9 +164,11 @@ def _conclusion(row: dict[str, Any], sample: dict[str, Any], conventions: Conven
         cause=(texts.get("cause") or "") if row["verdict"] == "undecided" else "",
         argument=told["argument"],
         would_turn=tuple(told["would_turn"]),
+        failed_rules=tuple(told["failed_rules"]),
+        near_misses=tuple(told["near_misses"]),
         contradictions=tuple(told["contradictions"]),
         reasons=tuple(
-            _reason(test, letter, value, limit, texts.get(str(position), ""))
+            _reason(test, letter, value, limit, texts.get(str(position), ""), test.code in told["instead"])
             for position, (test, letter, value, limit) in enumerate(outcomes)
         ),
         missing=tuple(told["missing"]),
@@ -167,14 +178,19 @@ def _conclusion(row: dict[str, Any], sample: dict[str, Any], conventions: Conven
     )
 
 
-def _reason(test: Gate | Criterion, letter: str, value: float | None, limit: float | None, text: str) -> Reason:
+def _reason(
+    test: Gate | Criterion, letter: str, value: float | None, limit: float | None, text: str, by_other: bool
+) -> Reason:
     criterion = test if isinstance(test, Criterion) else None
+    asked, near = test.test, criterion.near if criterion else None
+    if by_other and criterion is not None and criterion.otherwise is not None:
+        asked, near = criterion.otherwise, criterion.otherwise_near
     names = tuple(text.removeprefix(MISSING).split(", ")) if text.startswith(MISSING) else ()
     return Reason(
         code=test.code,
         label=test.label,
-        quantity=test.test.quantity,
-        test=test.test.text,
+        quantity=asked.quantity,
+        test=asked.text,
         gate=criterion is None,
         weight=criterion.weight if criterion else 0,
         outcome=OUTCOME_WORDS[letter],
@@ -184,5 +200,7 @@ def _reason(test: Gate | Criterion, letter: str, value: float | None, limit: flo
         missing=names,
         provisional=test.provisional,
         source=test.source,
-        margin=margin(test.test, criterion.near if criterion else None, value, limit, text),
+        margin=margin(asked, near, value, limit, text),
+        instead_of=test.test.quantity if by_other else "",
+        limit_moves=asked.of is not None,
     )

@@ -169,7 +169,7 @@ def _standing(
 def lacking_of(
     definition: TargetDefinition, reasons: Iterable[str]
 ) -> tuple[tuple[Lacking, ...], tuple[tuple[str, int], ...]]:
-    """What the samples of these packed reasons lack, dearest first, and the causes of not being judged with counts.
+    """What the samples of these packed reasons lack, worth most first, and the causes of not being judged with counts.
 
     The points of a criterion count once for each thing it lacks in a sample, as on the page of the sample itself.
     """
@@ -205,7 +205,7 @@ class Open:
 
 
 def dearest_lacking(parts: Iterable[tuple[str, TargetDefinition, Sequence[str]]]) -> list[Open]:
-    """What the undecided verdicts lack over all targets, dearest first; ``parts``: (name, definition, reasons)."""
+    """What the undecided verdicts lack over all targets, worth most first; ``parts``: (name, definition, reasons)."""
     points: Counter[str] = Counter()
     verdicts: Counter[str] = Counter()
     named: dict[str, list[str]] = {}

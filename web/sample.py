@@ -65,6 +65,7 @@ def page(code: str) -> Any:
         doubts=[warning["text"] for warning in warnings if warning["code"] in DOUBTED_IDENTITY],
         conclusions=conclusions,
         labels={name: row["label"] for name, row in quantities.items()},
+        units={name: row["unit"] for name, row in quantities.items()},
         majors=_majors(chosen, sheets),
         traces=[value for value in chosen if value["unit"] == "ppm"],
         iron=_iron(sheets["composition_sheet"]),

@@ -47,6 +47,11 @@ _NAMES = {
     "heat_x_thickness_mw_m2": "heat production times thickness",
 }  # fmt: skip
 _UNIT_ENDS = ("_wt", "_ppm", "_ma", "_m", "_km3", "_mw_m2", "_uw_m3", "_kg_m3", "_si", "_c")
+#: In this order: the longer ends first.
+_UNITS_BY_END = {
+    "_kg_m3": "kg/m3", "_mw_m2": "mW/m2", "_uw_m3": "uW/m3", "_km3": "km3", "_ppm": "ppm", "_wt": "wt%", "_ma": "Ma",
+    "_si": "SI", "_c": "C", "_m": "m",
+}  # fmt: skip
 _UNITS = {
     "C": "°C", "degC": "°C", "uW/m3": "µW/m³", "kg/m3": "kg/m³", "mW/m2": "mW/m²", "km3": "km³",
     "log10(Pa s)": "log₁₀ Pa s", "log10": "log₁₀", "m2/s": "m²/s",
@@ -95,6 +100,13 @@ def unit_words(unit: str) -> str:
     return "" if unit in ("1", "text") else _UNITS.get(unit, unit)
 
 
+def unit_of_column(name: str, units: Mapping[str, str] | None = None) -> str:
+    """The unit of a quantity as it follows a number: from ``units`` by name, else from the end of its column name."""
+    if units and name in units:
+        return unit_after(units[name])
+    return next((unit_after(unit) for end, unit in _UNITS_BY_END.items() if name.endswith(end)), "")
+
+
 def short_source(source: str) -> str:
     """A citation as it stands in running text: ``Frost et al. 2001``; the first words where nobody is cited."""
     cited = _CITED.match(source)
@@ -124,6 +136,7 @@ def register(app: Flask) -> None:
         column_words=column_words,
         readable=readable,
         unit_words=unit_words,
+        unit_of_column=unit_of_column,
         short_source=short_source,
         digestion_words=digestion_words,
         lower_first=lower_first,

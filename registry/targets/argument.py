@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import re
-from collections.abc import Mapping
+from collections.abc import Mapping, Sequence
 from typing import Any
 
 import numpy as np
@@ -15,7 +15,15 @@ from registry.petrology.digestion import DIGESTION_LETTERS, DIGESTION_WORDS
 from registry.petrology.intrusion_heat import ASSUMED_AGE_SIGMA
 from registry.petrology.logged import logged_words
 from registry.targets.definition import Criterion, Gate, Phrase, TargetDefinition
-from registry.targets.engine import TEXT_QUANTITIES, VERDICT_WORDS, is_known, judge
+from registry.targets.engine import (
+    POSSIBLE,
+    TEXT_QUANTITIES,
+    UNDECIDED,
+    VERDICT_WORDS,
+    is_known,
+    judge,
+    verdicts_of_outcomes,
+)
 from registry.targets.evaluation import evaluate
 from registry.targets.grammar import Condition
 from registry.targets.intervals import Known, interval_text
@@ -83,7 +91,9 @@ def argue(
 
     ``sample``: its stored row (composition, derived, context) by column name; ``reasons``: the stored JSON, else it is
     judged here. Returns plain texts: ``verdict argument cause`` (texts, cause may be None) and the lists
-    ``would_turn contradictions missing cautions`` (missing: dearest first, with what supplies it).
+    ``would_turn failed_rules near_misses contradictions missing cautions`` (would_turn: what alone would give another
+    verdict; missing: worth most first, with what supplies it). ``instead`` lists the codes of the criteria that were
+    judged by their other quantity.
     """
     workspace = workspace_of_sample(sample, conventions)
     known = known_of(workspace, 1)
@@ -97,7 +107,8 @@ def argue(
         "verdict": VERDICT_WORDS[code] if code < len(VERDICT_WORDS) else "not judged",
         "argument": page.sentences(),
         "cause": stored.get("texts", {}).get("cause"),
-        "would_turn": page.would_turn(),
+        **page.turning(),
+        "instead": [criterion.code for criterion in definition.criteria if page.by_other(criterion)],
         "contradictions": page.contradictions(),
         "missing": page.missing(),
         "cautions": list(definition.cautions),
@@ -196,7 +207,8 @@ class _Argument:
         sigma, age = self.sample.get("age_sigma_ma"), self.sample.get("age_ma")
         if sigma is None and age is None:
             return NOT_KNOWN
-        return number_text(2.0 * sigma) if sigma is not None else number_text(2.0 * ASSUMED_AGE_SIGMA * float(age or 0))
+        spread = sigma if sigma is not None else ASSUMED_AGE_SIGMA * float(age or 0)
+        return f"{number_text(2.0 * spread)} (2 sigma)"
 
     def _because_missing(self) -> str:
         names = [words.split(" by ")[0] for words, _ in self._missing_inputs()]
@@ -204,26 +216,53 @@ class _Argument:
 
     # what would turn it, what contradicts it, what is missing
 
-    def would_turn(self) -> list[str]:
-        """Failed gates and near misses, the heaviest first."""
-        told = []
-        for gate in self.definition.gates:
-            if self.outcomes[gate.code] == "n":
-                told.append(f"{gate.label}: {self._against(gate)}; while this gate fails the verdict is unfavourable")
+    def turning(self) -> dict[str, list[str]]:
+        """Failed rules and near misses, the heaviest first: ``would_turn`` holds those that alone change the verdict.
+
+        The others stand in ``failed_rules`` and ``near_misses``.
+        """
+        told: dict[str, list[str]] = {"would_turn": [], "failed_rules": [], "near_misses": []}
+        failed = [gate for gate in self.definition.gates if self.outcomes[gate.code] == "n"]
         near = [c for c in self.definition.criteria if self.outcomes[c.code] == "r"]
-        for criterion in sorted(near, key=lambda c: -c.weight):
-            told.append(f"{criterion.label}: {self._against(criterion)}, a near miss worth {criterion.weight} points")
+        items: list[Gate | Criterion] = [*failed, *sorted(near, key=lambda c: -c.weight)]
+        for item, word in zip(items, self._verdicts_if_met(items), strict=True):
+            text = f"{item.label}: {self._against(item)}"
+            if isinstance(item, Criterion):
+                text += f", a near miss worth {item.weight} points" if word else f", worth {item.weight} points"
+            else:
+                text += "; while this rule fails the verdict is unfavourable"
+            if word:
+                told["would_turn"].append(f"{text}; if it were met: {word}")
+            else:
+                told["near_misses" if isinstance(item, Criterion) else "failed_rules"].append(text)
         return told
 
+    def _verdicts_if_met(self, items: Sequence[Gate | Criterion]) -> list[str | None]:
+        """The verdict in words that each item, met alone, would give; None where it is the verdict as it stands."""
+        codes = [item.code for item in self.definition.tests]
+        rows = np.array([[ord(self.outcomes[code]) for code in codes]] * (len(items) + 1), dtype=np.uint8)
+        for row, item in enumerate(items, start=1):
+            rows[row, codes.index(item.code)] = ord("m")
+        now, *then = verdicts_of_outcomes(self.definition, self.known, rows).tolist()
+        same = {now, UNDECIDED} if now == POSSIBLE else {now}  # a possible sample that is left open has gained nothing
+        return [None if code in same else VERDICT_WORDS[code] for code in then]
+
+    def by_other(self, item: Gate | Criterion) -> bool:
+        """Whether a criterion was judged by its other quantity, its own being unknown."""
+        if not isinstance(item, Criterion) or item.otherwise is None:
+            return False
+        own, other = (self.known.number(test.quantity).missing[0] for test in (item.test, item.otherwise))
+        return bool(own and not other)
+
     def _against(self, item: Gate | Criterion) -> str:
-        test = item.test
-        if isinstance(item, Criterion) and item.otherwise and self.known.number(test.quantity).missing[0]:
-            test = item.otherwise
+        test, name = item.test, ""
+        if isinstance(item, Criterion) and item.otherwise is not None and self.by_other(item):
+            test, name = item.otherwise, f"{item.otherwise.quantity} "
         limit = self.limits[item.code]
         asked = test.text if limit is None else f"{test.sign} {number_text(limit)}"
         if test.sign == "between":
             asked = test.text
-        return f"{self.value_text(test.quantity)}, asked for {asked}"
+        return f"{name}{self.value_text(test.quantity)}, asked for {asked}"
 
     def contradictions(self) -> list[str]:
         return [
@@ -233,7 +272,7 @@ class _Argument:
         ]
 
     def missing(self) -> list[str]:
-        """What to determine, dearest first, with the digestion or reading that supplies it."""
+        """What to determine, worth most first, with the digestion or reading that supplies it."""
         return [
             f"{words} (opens {weight} of 100 points)" if weight else f"{words} (needed before it can be judged)"
             for words, weight in self._missing_inputs()

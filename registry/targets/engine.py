@@ -99,6 +99,15 @@ def best(verdicts: Mapping[str, Verdicts], n: int) -> tuple[NDArray[np.object_],
     return best_target, best_verdict
 
 
+def verdicts_of_outcomes(definition: TargetDefinition, known: Known, letters: NDArray[np.uint8]) -> NDArray[np.uint8]:
+    """The verdict codes (k,) that k rows of outcome letters (k, tests) would give one sample, ``known`` with n = 1."""
+    fit, cause = _fitness(known)
+    gates, criteria = letters[:, : len(definition.gates)], letters[:, len(definition.gates) :]
+    score_min, score_max, _ = _scores(criteria, definition.criteria)
+    allowed, exclusion_only, _ = _needs(known, definition.needs, fit, cause)
+    return _decide(definition, gates, score_min, score_max, allowed, exclusion_only)
+
+
 _M, _N, _U = (ord(letter) for letter in "mnu")
 
 
@@ -196,4 +205,5 @@ __all__ = [
     "is_known",
     "judge",
     "judge_all",
+    "verdicts_of_outcomes",
 ]  # fmt: skip

@@ -30,10 +30,10 @@ def test_argue_favourable_porphyry_states_numbers_limits_and_points():
     assert "V/Sc is 11.7 where the line at 64.0 % SiO2 gives 7.86" in told["argument"]
     assert "Redox is magnetite (titrated FeO and magnetic susceptibility)" in told["argument"]
     assert "100 of 100 points are met, 0 unknown, 83 rest on provisional limits" in told["argument"]
-    assert told["would_turn"] == told["contradictions"] == told["missing"] == []
+    assert told["would_turn"] == told["near_misses"] == told["contradictions"] == told["missing"] == []
 
 
-def test_argue_gaps_are_listed_dearest_first_with_what_supplies_them():
+def test_argue_gaps_are_listed_worth_most_first_with_what_supplies_them():
     sample = PORPHYRY | {
         "y_ppm": None,
         "redox_series": None,
@@ -58,7 +58,8 @@ def test_argue_witnesses_of_redox_that_disagree_are_named():
 
 def test_argue_near_miss_and_contradiction_are_shown():
     told = argue(load_definition("porphyry_copper"), PORPHYRY | {"sr_ppm": 330.0, "eu_ppm": 0.5})
-    assert told["would_turn"] == ["Sr over Y: 30.0, asked for >= 35.0, a near miss worth 22 points"]
+    asked = "Sr over Y: 30.0, asked for >= 35.0, a near miss worth 22 points; if it were met: favourable"
+    assert (told["would_turn"], told["near_misses"]) == ([asked], [])
     assert told["contradictions"] == ["Eu/Eu* below 0.6: plagioclase was taken out"]
 
 
@@ -66,6 +67,32 @@ def test_argue_failed_gate_leads_what_would_turn_it():
     told = argue(load_definition("porphyry_copper"), PORPHYRY | {"differentiation_index": 20.0})
     assert told["verdict"] == "unfavourable"
     assert told["would_turn"][0].startswith("Evolved to the porphyry stage: 20.0, asked for >= 35.0")
+    assert told["would_turn"][0].endswith("; if it were met: favourable")
+
+
+def test_argue_two_failed_gates_turn_nothing_alone():
+    told = argue(load_definition("porphyry_copper"), PORPHYRY | {"differentiation_index": 20.0, "nb_ppm": 30.0})
+    assert told["would_turn"] == []
+    assert told["failed_rules"][0].startswith("Evolved to the porphyry stage: ")
+    assert len(told["failed_rules"]) == 2
+
+
+def test_argue_near_miss_that_crosses_a_border_is_told_with_the_verdict_it_gives():
+    """As many criteria met as leave the sample below favourable, the heaviest one nearly."""
+    definition = load_definition("porphyry_copper")
+    points = {criterion.code: criterion.weight for criterion in definition.criteria}
+    stored = {"values": [None] * 11, "thresholds": [35.0] * 11, "texts": {}}
+    heaviest = max(points, key=points.__getitem__)
+    met, total = set(), 0
+    for code, weight in points.items():
+        if code != heaviest and total + weight < 100 * definition.favourable:
+            met.add(code)
+            total += weight
+    assert 100 * definition.favourable - points[heaviest] <= total
+    letters = "".join("r" if c == heaviest else "m" if c in met else "n" for c in points)
+    told = argue(definition, PORPHYRY, stored | {"outcomes": "m" * len(definition.gates) + letters})
+    assert len(told["would_turn"]) == 1 and told["near_misses"] == []
+    assert told["would_turn"][0].endswith(f"a near miss worth {points[heaviest]} points; if it were met: favourable")
 
 
 def test_argue_packed_qualifiers_and_digestions_give_intervals():
@@ -91,7 +118,7 @@ def test_argue_stored_reasons_are_taken_as_they_stand():
     stored = {"outcomes": "mm" + "r" * 9, "values": [None] * 11, "thresholds": [35.0] * 11, "texts": {}}
     told = argue(definition, PORPHYRY, json.dumps(stored))
     assert "0 of 100 points are met" in told["argument"]
-    assert len(told["would_turn"]) == 9
+    assert len(told["near_misses"]) == 9 and told["would_turn"] == []
 
 
 def test_argue_unfit_analysis_gives_the_cause():
@@ -114,7 +141,7 @@ def test_argue_magmatic_heat_gives_the_age_with_two_sigma():
         "body_mapped_or_cored": True,
     }  # fmt: skip
     told = argue(load_definition("magmatic_heat"), sample)
-    assert "shape is sphere, its half-width 2500 m, age 0.100 +- 0.0400 Ma" in told["argument"]
+    assert "shape is sphere, its half-width 2500 m, age 0.100 +- 0.0400 (2 sigma) Ma" in told["argument"]
     assert told["verdict"] == "favourable"
 
 
@@ -129,3 +156,16 @@ def test_workspace_of_sample_replaces_a_censored_value_by_its_substitute():
 )
 def test_number_text_keeps_three_digits(value, text):
     assert number_text(value) == text
+
+
+def test_argue_size_by_the_half_width_names_it_where_the_volume_is_not_known():
+    sample = {
+        "fitness": "fit", "intrusion": "Invented Dome", "intrusion_shape": "slab", "half_width_m": 1200.0,
+        "age_ma": 0.1, "age_sigma_ma": 0.02, "depth_to_top_m": 4500.0, "heat_flow_mw_m2": 140.0, "sio2_vf_wt": 75.0,
+        "body_mapped_or_cored": True,
+    }  # fmt: skip
+    told = argue(load_definition("magmatic_heat"), sample)
+    assert told["instead"] == ["size"]
+    near = [text for text in told["would_turn"] + told["near_misses"] if text.startswith("Size")]
+    assert len(near) == 1 and "half_width_m 1200, asked for >= 1340" in near[0]
+    assert argue(load_definition("magmatic_heat"), sample | {"volume_km3": 20.0})["instead"] == []

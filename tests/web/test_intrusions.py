@@ -105,10 +105,10 @@ def test_intrusion_page_says_the_sentences_of_the_sample_page(client: FlaskClien
     assert sentences.group(1) in part
 
 
-def test_intrusion_page_names_what_its_undecided_samples_lack_dearest_first(client: FlaskClient) -> None:
+def test_intrusion_page_names_what_its_undecided_samples_lack_worth_most_first(client: FlaskClient) -> None:
     """Nothing was analysed for W and F in the invented registry."""
     part = words(entry(client.get("/intrusions/Aster stock").text, "tungsten"))
-    assert "To determine next on its undecided samples, dearest first" in part
+    assert "To determine next on its undecided samples, worth most first" in part
     assert part.index("W by fusion ICP-MS") < part.index("F by fusion and ion-selective electrode")
 
 

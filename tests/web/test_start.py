@@ -39,11 +39,13 @@ def test_start_page_leading_intrusion_is_the_first_of_the_ranking(client: FlaskC
     assert "What stands out" in page and page.count('class="cautions"') == 1
 
 
-def test_start_page_tells_what_is_lacking_dearest_first_and_what_has_no_results(client: FlaskClient) -> None:
+def test_start_page_tells_what_is_lacking_worth_most_first_and_what_has_no_results(client: FlaskClient) -> None:
     text = words(client.get("/").text)
     assert "2 samples that no laboratory has reported on" in text
-    part = text[text.index("To determine next, dearest first") :]
-    assert re.search(r"W by fusion ICP-MS.*?: opens \d+ undecided verdicts? for granite-related tungsten", part)
+    part = text[text.index("To determine next, worth most first") :]
+    assert re.search(r"W by fusion ICP-MS.*?: worth [\d ]+ points in \d+ undecided verdicts? for granite-related", part)
+    shown = [int(re.sub(r"\D", "", number)) for number in re.findall(r": worth ([\d ]+) points? in", part)]
+    assert len(shown) > 1 and shown == sorted(shown, reverse=True)
 
 
 def test_start_page_shows_failed_controls_and_last_batches(writable: Any) -> None:

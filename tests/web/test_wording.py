@@ -6,7 +6,7 @@ import pytest
 
 from web.numbers import MINUS, TIMES, aligned, counted, derived, grouped, reported
 from web.pictures import MINERALS, minerals_of, norm_segments
-from web.wording import column_words, formula, joined, readable, short_source
+from web.wording import column_words, formula, joined, readable, short_source, unit_of_column
 
 
 @pytest.mark.parametrize(
@@ -110,3 +110,11 @@ def test_minerals_are_each_drawn_in_a_way_of_their_own_within_a_group_of_rock_fo
     rock_formers = [mineral for mineral in MINERALS if mineral.group != "accessory"]
     assert len({(mineral.colour, mineral.pattern) for mineral in rock_formers}) == len(rock_formers)
     assert minerals_of([norm_segments({"an": 1.0}), norm_segments({"q": 1.0})])[0].symbol == "q"
+
+
+def test_unit_of_column_follows_the_guide_then_the_end_of_the_name() -> None:
+    assert unit_of_column("differentiation_index", {"differentiation_index": "wt%"}) == "\u00a0wt%"
+    assert [unit_of_column(name) for name in ("depth_to_top_m", "heat_flow_mw_m2", "s_wt", "sn_ppm", "volume_km3")] == [
+        "\u00a0m", "\u00a0mW/m²", "\u00a0wt%", "\u00a0ppm", "\u00a0km³"
+    ]  # fmt: skip
+    assert [unit_of_column(name) for name in ("v_sc", "th_u", "redox_series", "k_rb")] == [""] * 4
