@@ -40,8 +40,9 @@ def packed_text(document: str, key: str, position: str | None = None) -> str:
 
 
 def spelled(number: str) -> str:
-    """A number with at most three decimals, as text."""
-    return f"rtrim(rtrim(CAST(round(CAST({number} AS numeric), 3) AS text), '0'), '.')"
+    """A number rounded to four significant digits, without an exponent, as text; NULL stays NULL."""
+    rounded = f"CAST(to_char(CAST({number} AS double precision), '9.999EEEE') AS numeric)"
+    return f"rtrim(rtrim(CAST(round({rounded}, 12) AS text), '0'), '.')"
 
 
 def trigger_statements() -> Iterator[str]:

@@ -40,8 +40,10 @@ def packed_text(document: str, key: str, position: str | None = None) -> str:
 
 
 def spelled(number: str) -> str:
-    """A number with at most three decimals, as text."""
-    return f"rtrim(rtrim(printf('%.3f', {number}), '0'), '.')"
+    """A number rounded to four significant digits, without an exponent, as text; NULL stays NULL."""
+    rounded = f"CAST(printf('%.3e', {number}) AS REAL)"
+    # printf writes NULL as 0
+    return f"CASE WHEN {number} IS NOT NULL THEN rtrim(rtrim(printf('%.12f', {rounded}), '0'), '.') END"
 
 
 def trigger_statements() -> Iterator[str]:

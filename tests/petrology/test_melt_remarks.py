@@ -69,3 +69,11 @@ def test_zircon_saturation_shao_outside_its_experiments_is_marked_and_boehnke_sa
 def test_ratio_over_a_low_denominator_is_marked_as_moved_by_rounding() -> None:
     assert _raised("nb_ta_low_ta", [28.0, 16.0, np.nan], [0.2, 0.5, 0.2]) == [True, False, False]
     assert _raised("zr_hf_low_hf", [40.0, 40.0, np.nan], [0.9, 1.0, 0.9]) == [True, False, False]
+
+
+def test_range_remark_names_labels_and_units_not_columns() -> None:
+    texts = [warning.text for code, warning in BY_CODE.items() if code.endswith("_outside_range")]
+
+    assert [text for text in texts if "_wt" in text or "_vf" in text or "zircon_m" in text] == []
+    assert "(MgO volatile-free 5 to 11 wt%; " in BY_CODE["liquidus_helz_thornber_outside_range"].text
+    assert "; A/NK from 1); M is {value}" in BY_CODE["zircon_saturation_wh83_outside_range"].text

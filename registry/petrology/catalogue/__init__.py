@@ -54,7 +54,7 @@ GENERAL_CAUSES = (
 _LETTERS = "abcdefghijklmnopqrstuvwxyzABCDEFGHIJKLMNOPQRSTUVWXYZ0123456789"
 
 
-def _range_warning(method: Method) -> Warning | None:
+def _range_warning(method: Method, quantities: dict[str, Quantity]) -> Warning | None:
     ranges = tuple(limits for limits in method.calibration if limits.low is not None or limits.high is not None)
     if not ranges:
         return None
@@ -70,13 +70,17 @@ def _range_warning(method: Method) -> Warning | None:
         present = ~np.isnan(value) if value.dtype.kind == "f" else ~is_absent(value)
         return mask & present
 
-    spelled = "; ".join(f"{limits.column} {_spell(limits)}" for limits in ranges)
+    told = [quantities[limits.column] for limits in ranges]
+    units = ["" if quantity.unit == "1" else f" {quantity.unit}" for quantity in told]
+    spelled = "; ".join(
+        f"{quantity.label} {_spell(limits)}{unit}" for quantity, limits, unit in zip(told, ranges, units, strict=True)
+    )
     return Warning(
         code=f"{method.key}_outside_range",
         column=output.name,
         value_column=ranges[0].column,
-        text=f"outside the range {method.label} was calibrated for ({spelled}); {ranges[0].column} is {{value}}"
-        + (", the others stand in their sheets" if len(ranges) > 1 else ""),
+        text=f"outside the range {method.label} was calibrated for ({spelled}); {told[0].label} is "
+        f"{{value}}{units[0]}" + (", the others stand in their sheets" if len(ranges) > 1 else ""),
         mask=outside,
         inputs=(output.name, *(limits.column for limits in ranges)),
     )
@@ -97,7 +101,8 @@ def _collect() -> tuple[tuple[Method, ...], tuple[Warning, ...]]:
         module = importlib.import_module(f"registry.petrology.catalogue.{topic}")
         methods.extend(module.METHODS)
         warnings.extend(module.WARNINGS)
-    warnings.extend(warning for method in methods if (warning := _range_warning(method)) is not None)
+    told = {output.name: output for method in methods for output in method.outputs}
+    warnings.extend(warning for method in methods if (warning := _range_warning(method, told)) is not None)
     return _ordered(methods), tuple(warnings)
 
 
