@@ -7,8 +7,9 @@ from pathlib import Path
 import pytest
 
 from registry.cli import main
-from registry.methods_table import BEGIN, END, methods_table, short_citation
+from registry.methods_table import BEGIN, END, NO_VIEW, methods_table, short_citation, view_of
 from registry.petrology.catalogue import METHOD_BY_KEY, QUANTITIES
+from registry.store.sheets import ON_THE_WAY_COLUMNS
 
 README = (Path(__file__).resolve().parents[2] / "README.md").read_text(encoding="utf-8")
 
@@ -24,6 +25,12 @@ def test_methods_table_names_every_quantity_once() -> None:
     words = methods_table().replace("|", " ").split()
     for quantity in QUANTITIES:
         assert words.count(f"`{quantity.name}`") == 1, quantity.name
+
+
+def test_methods_table_says_of_what_is_in_no_view_that_it_is_on_the_way() -> None:
+    assert {quantity.name for quantity in QUANTITIES if view_of(quantity.name) == NO_VIEW} == set(ON_THE_WAY_COLUMNS)
+    assert view_of("feot_wt") == "composition_sheet" and view_of("theta_centre") == "intrusion_sheet"
+    assert "| `zircon_m` | on the way, in no view | 1 |" in methods_table()
 
 
 def test_methods_markdown_prints_the_table(capsys: pytest.CaptureFixture[str]) -> None:
