@@ -109,6 +109,8 @@ def _show_problems(error: Any) -> None:
 
     problems = [problem for problem in error.problems if problem.severity == "problem"]
     remarks = [problem for problem in error.problems if problem.severity != "problem"]
+    for line in error.understood:
+        click.echo(line, err=True)
     for problem in problems:
         click.echo(problem.sentence(), err=True)
     for sentence in remarks_in_short(remarks):

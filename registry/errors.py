@@ -67,8 +67,12 @@ class RegistryBusy(PlutonbookError):
 
 
 class InputProblems(PlutonbookError):
-    """The input has problems; nothing of it was written."""
+    """The input has problems; nothing of it was written.
 
-    def __init__(self, problems: Sequence[Problem]) -> None:
+    ``understood``: lines on what was understood of it nevertheless, where somebody asked for that (a dry run).
+    """
+
+    def __init__(self, problems: Sequence[Problem], understood: Sequence[str] = ()) -> None:
         self.problems = list(problems)
+        self.understood = list(understood)
         super().__init__("\n".join(problem.sentence() for problem in self.problems))

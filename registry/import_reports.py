@@ -9,7 +9,8 @@ from typing import Any
 
 from registry.errors import Problem
 from registry.importing_results import ResultsReport
-from registry.intake_choices import TIMES, is_of_column
+from registry.intake import Reading
+from registry.intake_choices import TIMES, described_columns, is_of_column
 from registry.precedence import Alternative, Replacement
 
 #: Lines of one sort that are printed before the rest is counted.
@@ -46,11 +47,15 @@ class FileReport:
     def remarks(self) -> list[str]:
         return [problem.sentence() for problem in [*self.warnings, *self.on_storing]]
 
-    def lines(self, verbose: bool = False) -> list[str]:
+    def reading_lines(self, verbose: bool = False) -> list[str]:
+        """What was understood of the file and what the reading remarks."""
         lines = [f"{self.file}: {self.kind}, {counted(self.rows, 'row')}"]
         lines += [f"  understood: {sentence}" for sentence in self._understood(verbose)]
         remarks = self.remarks if verbose else remarks_in_short([*self.warnings, *self.on_storing])
-        lines += [f"  remark: {sentence}" for sentence in remarks]
+        return [*lines, *(f"  remark: {sentence}" for sentence in remarks)]
+
+    def lines(self, verbose: bool = False) -> list[str]:
+        lines = self.reading_lines(verbose)
         if self.refused:
             lines.append(f"  refused: {counted(self.refused, 'row')}" + self._where_refused())
         if self.results is not None:
@@ -132,6 +137,20 @@ class ImportReport:
 
     def as_dict(self) -> dict[str, Any]:
         return {**asdict(self), "files": [file.as_dict() for file in self.files]}
+
+
+def understood_of(readings: Sequence[Reading]) -> list[str]:
+    """What was understood of the files of an import that is refused, in lines; remarks of files that can be stored."""
+    lines = []
+    for reading in readings:
+        table = reading.results or reading.master
+        if table is None:
+            continue
+        warnings = reading.warnings if reading.ok else []
+        report = FileReport(reading.place, reading.kind or "", len(table), reading.understood, warnings)
+        report.columns = [] if reading.results is None else described_columns(reading.results)
+        lines += report.reading_lines()
+    return lines
 
 
 def columns_in_short(columns: Sequence[Mapping[str, Any]]) -> list[str]:

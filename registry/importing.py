@@ -13,12 +13,12 @@ import numpy as np
 
 from registry.computing import child_at_hand
 from registry.errors import InputProblems, Problem, UsageError
-from registry.import_reports import FileReport, ImportReport, counted
+from registry.import_reports import FileReport, ImportReport, counted, understood_of
 from registry.importing_certificates import store_certificates
 from registry.importing_controls import called_otherwise
+from registry.importing_faults import Rest, may_bring_anything, prefixed
 from registry.importing_results import LISTED_CODES, StoredBatch, store_results, unknown_codes
 from registry.intake import KINDS, MasterTable, Reading, ReadingOptions
-from registry.intake.refused import without_lines
 from registry.intake.spooled import parts_of
 from registry.intake_choices import described_columns
 from registry.keeping_going import SetAside
@@ -156,23 +156,25 @@ def _store(
     before = last_change(connection)
     reports: list[FileReport] = []
     earlier: list[Earlier | None] = []
+    rest = Rest(anything=any(may_bring_anything(reading) for reading, _ in readings))
     computed = np.zeros(0, dtype=np.int64)
     results = len({file.path for reading, file in readings if reading.kind == "results"})
     if options.batch and results > 1:
         raise UsageError(f"--batch names one batch, but {results} files hold results; import them one by one")
     for (reading, contents), aside in zip(readings, asides, strict=True):
-        if problems and reading.ok:
-            break  # what follows may name what a faulty file was to bring: its complaints would mislead
-        if not reading.ok:
-            problems = [*problems, *_more_faults(connection, reading, options)]
-            break
+        if problems or not reading.ok:
+            more = rest.more_faults(connection, reading, options.code_prefix, options.create_samples)
+            problems = [*problems, *more]
+            continue
         earlier.append(_before(connection, reading, options) if options.dry_run else None)
         report, done, faults = _store_one(connection, reading, contents, aside, options, progress)
         reports.append(report)
         computed = np.union1d(computed, done)
+        if faults and reading.master is not None:
+            faults = rest.more_faults(connection, reading, options.code_prefix, options.create_samples) or faults
         problems = [*problems, *faults]
     if problems:
-        raise InputProblems(problems)
+        raise InputProblems(problems, understood_of([reading for reading, _ in readings]) if options.dry_run else ())
     computed = np.union1d(computed, drained_samples(connection, cause=_cause(reports), progress=progress))
     for report, one in zip(reports, earlier, strict=True):
         if one is not None and report.results is not None:
@@ -241,22 +243,6 @@ def _before(connection: Any, reading: Reading, options: ImportOptions) -> Earlie
     return look_before(connection, masters.sample_ids(connection, codes).values())
 
 
-def _more_faults(connection: Any, reading: Reading, options: ImportOptions) -> list[Problem]:
-    """What the registry has against the good rows of the first faulty file, so that all of it is told at once."""
-    if reading.whole_file_refused or (reading.master is None and reading.results is None):
-        return []
-    if reading.results is not None:
-        if options.create_samples:
-            return []
-        without_lines(reading, frozenset(reading.refused_lines))
-        return unknown_codes(connection, reading.file, reading.results, options.code_prefix)[:LISTED_CODES]
-    table = reading.master
-    if table is None or table.kind == "reference-materials":
-        return []
-    without_lines(reading, frozenset(reading.refused_lines))
-    return _upserted(connection, table.kind, table, reading.file, None, options).problems
-
-
 def _almost_known(connection: Any, reading: Reading, prefix: str) -> list[Problem]:
     """Remarks on new sample codes that registered ones differ from only in case, spaces, dashes or leading zeros."""
     table = reading.results
@@ -286,22 +272,12 @@ def _upserted(
 ) -> masters.Outcome:
     """Bring master data in; with ``aside`` the rows that have problems are set aside until the rest goes through."""
     while True:
-        rows = _prefixed(table.rows, options.code_prefix)
+        rows = prefixed(table.rows, options.code_prefix)
         outcome = masters.upsert(connection, kind, rows, table.line_no, file)
         faults = [problem for problem in outcome.problems if problem.severity == "problem"]
         if aside is None or not faults or aside.add(faults):
             return outcome
         aside.drop()
-
-
-def _prefixed(rows: dict[str, list[Any]], prefix: str) -> dict[str, list[Any]]:
-    if not prefix:
-        return rows
-    coded = ("sample_code", "duplicate_of")
-    return {
-        name: [value if value is None else f"{prefix}{value}" for value in column] if name in coded else column
-        for name, column in rows.items()
-    }
 
 
 def _cause(reports: Sequence[FileReport]) -> str:

@@ -23,14 +23,15 @@ from registry.lab_files import LabFile, Packed
 from registry.pipeline import CHUNK_SIZE, Chunk, Computed
 from registry.refresh import chunk_of, composed, write_fresh
 from registry.store import batches, bulk, loading, masters, ready_rows, stale
+from registry.store.near_codes import pattern_of
 
 if TYPE_CHECKING:
     from registry.importing import ImportOptions
 
 #: Lines of results stored between two reports of progress.
 LINES_AT_A_TIME = 8192
-#: Unknown sample codes that are listed one by one.
-LISTED_CODES = 20
+#: Remarks on almost equal sample codes that are listed one by one; unknown codes, before the rest is counted.
+LISTED_CODES, UNKNOWN_LISTED = 20, 5
 
 
 @dataclass(frozen=True)
@@ -96,7 +97,7 @@ def store_results(
         place, problems = Place(f"{within.code}/{reading.part}", part_of=within.batch_id), []
     lines = resolve(connection, table, options.code_prefix)
     if lines.missing and not options.create_samples:
-        problems += _first_of(unknown_codes(connection, reading.file, table, options.code_prefix), reading.file)
+        problems += first_of(unknown_codes(connection, reading.file, table, options.code_prefix), reading.file)
     if problems:
         return ResultsReport(place.code, 0, 0, 0, 0, 0), np.zeros(0, dtype=np.int64), problems
     new_controls = lines.settle_controls(connection, table, options.code_prefix)
@@ -165,8 +166,7 @@ def unknown_codes(connection: Any, file: str, table: ResultTable, prefix: str = 
     near = masters.near_codes(connection, list(unknown.values())[:LISTED_CODES])
     problems = []
     for position, code in unknown.items():
-        suggestion = near.get(code)
-        hint = f"did you mean '{suggestion}'? " if suggestion else ""
+        hint = _hint(code, near.get(code))
         problems.append(
             Problem(
                 file,
@@ -181,16 +181,31 @@ def unknown_codes(connection: Any, file: str, table: ResultTable, prefix: str = 
     return problems
 
 
-def _first_of(problems: list[Problem], file: str) -> list[Problem]:
-    """The first problems of many alike, and one that counts the rest."""
-    if len(problems) <= LISTED_CODES:
+def _hint(code: str, near: str | None) -> str:
+    """A registered code that only has a letter more or less at its end is like this one, and perhaps another sample."""
+    if near is None:
+        return ""
+    short, long = sorted((code.casefold(), near.casefold()), key=len)
+    if long.startswith(short) and long[len(short) :].isalpha():
+        return f"the nearest code is '{near}', perhaps of another sample; "
+    return f"did you mean '{near}'? "
+
+
+def first_of(problems: list[Problem], file: str) -> list[Problem]:
+    """The first problems of many unknown codes, and one that counts the rest and says how their codes look."""
+    if len(problems) <= UNKNOWN_LISTED + 1:
         return problems
-    rest = Problem(
+    rest = problems[UNKNOWN_LISTED:]
+    codes = [problem.found or "" for problem in rest]
+    more = Problem(
         file,
-        f"{len(problems) - LISTED_CODES:,} more lines have sample codes that are not in the registry",
+        f"{len(rest):,} more lines have sample codes that are not in the registry",
+        column=rest[0].column,
+        found=pattern_of(codes),
+        expected="the codes of registered samples",
         remedy="import the sample list first, or use --create-samples",
     )
-    return [*problems[:LISTED_CODES], rest]
+    return [*problems[:UNKNOWN_LISTED], more]
 
 
 def _count(number: int, word: str) -> str:

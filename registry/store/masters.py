@@ -16,7 +16,7 @@ import sqlalchemy as sa
 
 from registry.errors import Problem
 from registry.store import bulk, master_checks, master_positions, positions, raw_rows, tables
-from registry.store.master_kinds import MASTER_KINDS, WHOLE_COLUMNS, MasterKind
+from registry.store.master_kinds import MASTER_KINDS, WHOLE_COLUMNS, MasterKind, Reference
 from registry.store.near_codes import nearest
 from registry.store.sheets import VERDICT_WORDS
 
@@ -250,6 +250,11 @@ def _locate(connection: sa.Connection, kind: str, stored: Rows, rows: list[int])
     else:
         return
     positions.replace_positions(connection, sites)
+
+
+def registered(connection: sa.Connection, reference: Reference, codes: Collection[str]) -> set[str]:
+    """Those of the codes that the table of a reference holds."""
+    return set(_ids_by_code(connection, reference.table, reference.code, codes))
 
 
 def sample_ids(connection: sa.Connection, codes: Collection[str]) -> dict[str, int]:

@@ -4,7 +4,8 @@ from __future__ import annotations
 
 import re
 import unicodedata
-from collections.abc import Iterable, Sequence
+from collections import Counter
+from collections.abc import Iterable, Mapping, Sequence
 from difflib import get_close_matches
 
 
@@ -48,6 +49,7 @@ def nearest(codes: Sequence[str], known: Iterable[str]) -> dict[str, str]:
     everything = list(known)
     exact = set(everything)
     found = {code: close[0] for code, close in near_misses(codes, everything).items()}
+    found |= _read_alike([code for code in codes if code not in found and code not in exact], everything)
     by_fold: dict[str, str] = {}
     for code in everything:
         by_fold.setdefault(code.casefold(), code)
@@ -55,10 +57,47 @@ def nearest(codes: Sequence[str], known: Iterable[str]) -> dict[str, str]:
     for code in codes:
         if code in found or code in exact:
             continue
+        if (shorter := _one_digit_less(code, by_fold)) is not None:
+            found[code] = shorter
+            continue
         like = get_close_matches(code.casefold(), folded, n=1, cutoff=0.75)
         if like and not (_numbers(code) != _numbers(like[0]) and _letters(code) == _letters(like[0])):
             found[code] = by_fold[like[0]]
     return found
+
+
+#: Letters that are read or typed for digits.
+_ALIKE = str.maketrans("oil", "011")
+
+
+def _read_alike(codes: Sequence[str], known: Sequence[str]) -> dict[str, str]:
+    """The known codes that differ only in O for 0 and I or L for 1 (and in case)."""
+    wanted = {code.casefold().translate(_ALIKE): code for code in codes}
+    found: dict[str, str] = {}
+    for code in known if wanted else ():
+        meant = wanted.get(code.casefold().translate(_ALIKE))
+        if meant is not None:
+            found.setdefault(meant, code)
+    return {code: found[same] for code in codes if (same := wanted[code.casefold().translate(_ALIKE)]) in found}
+
+
+def _one_digit_less(code: str, by_fold: Mapping[str, str]) -> str | None:
+    """The known code that is left when one digit is taken out; a doubled digit, or the last one, before the others."""
+    folded = code.casefold()
+    places = [place for place, sign in enumerate(folded) if sign.isdigit()]
+    places.sort(key=lambda place: (folded[place] != folded[place - 1 : place], -place))
+    shorter = (folded[:place] + folded[place + 1 :] for place in places)
+    return next((by_fold[one] for one in shorter if one in by_fold), None)
+
+
+def pattern_of(codes: Sequence[str]) -> str:
+    """How most of the codes look, digits as ``#``: ``Q### (Q001 to Q240)``, and how many look otherwise."""
+    shapes = Counter(re.sub(r"\d", "#", code) for code in codes)
+    shape, number = shapes.most_common(1)[0]
+    alike = sorted(code for code in codes if re.sub(r"\d", "#", code) == shape)
+    said = alike[0] if alike[0] == alike[-1] else f"{alike[0]} to {alike[-1]}"
+    text = said if shape == alike[0] else f"{shape} ({said})"
+    return text if number == len(codes) else f"{text} and {len(codes) - number:,} of other forms"
 
 
 def _numbers(code: str) -> list[str]:

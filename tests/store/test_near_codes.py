@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import pytest
 
-from registry.store.near_codes import near_misses
+from registry.store.near_codes import near_misses, nearest, pattern_of
 
 KNOWN = ["BH1-001", "BH1-012", "S16", "A1-12", "Q 7"]
 
@@ -22,3 +22,20 @@ def test_code_that_differs_in_case_spaces_zeros_or_dashes_is_suggested(code, mea
 @pytest.mark.parametrize("code", ["A11-2", "BH1-002", "T16", "S160", "BH1-001"])
 def test_code_that_is_another_or_known_as_written_has_no_near_miss(code):
     assert near_misses([code], KNOWN) == {}
+
+
+MANY = ["KD002-200", "KD002-205", "KD002-206", "Q001a", "X-1"]
+
+
+@pytest.mark.parametrize(
+    ("code", "meant"),
+    [("KD002-2OO", "KD002-200"), ("kd002-2oo", "KD002-200"), ("KD002-2055", "KD002-205"), ("X-l", "X-1"),
+     ("KD002-2990", None), ("KD002-207", None), ("Q001", "Q001a")],
+)  # fmt: skip
+def test_nearest_code_is_one_slip_of_the_pen_away(code, meant):
+    assert nearest([code], MANY).get(code) == meant
+
+
+def test_pattern_of_codes_shows_digits_as_signs_and_the_ends():
+    assert pattern_of(["Q003", "Q001", "Q240", "ST-1"]) == "Q### (Q001 to Q240) and 1 of other forms"
+    assert pattern_of(["BLANK", "BLANK"]) == "BLANK"

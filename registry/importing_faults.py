@@ -1,0 +1,153 @@
+"""An import that is refused is still looked through to its end, so that all of its faults are told at once.
+
+All that is done here lies in a transaction that is rolled back: what is good goes in, so that what follows finds it.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Mapping
+from dataclasses import dataclass, field
+from typing import Any
+
+from registry.errors import Problem
+from registry.importing_results import first_of, unknown_codes
+from registry.intake import MasterTable, Reading
+from registry.intake.refused import without_lines
+from registry.store import masters
+from registry.store.master_kinds import MASTER_KINDS, MasterKind
+
+#: Times that a file is brought in anew without its faulty references, then rows; what is left then is left out whole.
+PASSES = 4
+#: What the store says of a reference that names nothing.
+_NAMES_NOTHING = "not in the registry"
+
+
+def may_bring_anything(reading: Reading) -> bool:
+    """Whether a file of master data, or of no known kind, could not be read at all."""
+    return reading.kind != "results" and (reading.whole_file_refused or reading.master is None)
+
+
+@dataclass
+class Rest:
+    """What the files of a refused import were to bring and could not: its absence is no fault of what names it.
+
+    ``promised`` holds codes by table; ``anything`` is True once a file of master data could not be read at all.
+    """
+
+    promised: dict[str, set[str]] = field(default_factory=dict)
+    anything: bool = False
+
+    def more_faults(self, connection: Any, reading: Reading, prefix: str, create_samples: bool) -> list[Problem]:
+        """What the registry, with what the files before brought, has against the rows of one file."""
+        if reading.whole_file_refused or (reading.master is None and reading.results is None):
+            self.anything |= may_bring_anything(reading)
+            return []
+        if reading.results is not None:
+            return [] if create_samples or self.anything else self._of_results(connection, reading, prefix)
+        table = reading.master
+        if table is None or table.kind == "reference-materials":
+            return []
+        told = self._of_master(connection, table, reading, prefix)
+        return [fault for fault in told if not (self.anything and _NAMES_NOTHING in fault.what)]
+
+    def _of_results(self, connection: Any, reading: Reading, prefix: str) -> list[Problem]:
+        assert reading.results is not None
+        without_lines(reading, frozenset(reading.refused_lines))
+        promised = self.promised.get("sample", set())
+        faults = unknown_codes(connection, reading.file, reading.results, prefix)
+        return first_of([fault for fault in faults if fault.found not in promised], reading.file)
+
+    def _of_master(self, connection: Any, table: MasterTable, reading: Reading, prefix: str) -> list[Problem]:
+        """Bring in what can be: a faulty reference is left blank, then its row left out; each row is told of once."""
+        spec = MASTER_KINDS[table.kind]
+        rows = {name: list(column) for name, column in prefixed(table.rows, prefix).items()}
+        lines = [int(line) for line in table.line_no]
+        self._promise_those_without_key(spec, rows, lines, reading.refused_lines)
+        lines = self._leave_out(spec, rows, lines, set(reading.refused_lines))
+        lines = self._without_promised(connection, spec, rows, lines)
+        blank_first = {reference.column for reference in spec.references if reference.stored not in spec.key}
+        told_rows, told_kinds, told = set[int](), set[str](), list[Problem]()
+        for number in range(PASSES):
+            outcome = masters.upsert(connection, table.kind, rows, lines, reading.file)
+            faults = [problem for problem in outcome.problems if problem.severity == "problem"]
+            if number == 0:
+                told += outcome.problems
+                told_kinds = {fault.what for fault in faults}
+            else:
+                told += [fault for fault in faults if fault.row not in told_rows and fault.what not in told_kinds]
+            if not faults:
+                return told
+            at = {line: place for place, line in enumerate(lines)}
+            left_out = set()
+            for fault in faults:
+                if fault.row is None:
+                    continue
+                if number < PASSES // 2 and fault.column in blank_first and fault.column in rows:
+                    rows[fault.column][at[fault.row]] = None
+                else:
+                    left_out.add(fault.row)
+            told_rows |= {fault.row for fault in faults if fault.row is not None}
+            lines = self._leave_out(spec, rows, lines, left_out)
+        self._leave_out(spec, rows, lines, set(lines))
+        return told
+
+    def _promise_those_without_key(
+        self, spec: MasterKind, rows: dict[str, list[Any]], lines: list[int], refused: frozenset[int]
+    ) -> None:
+        """Rows whose own code could not be read may be what others name: nothing can be said of those then."""
+        code = _code_column(spec)
+        if code is None or not refused:
+            return
+        given = rows.get(code)
+        if given is None or any(value is None for line, value in zip(lines, given, strict=True) if line in refused):
+            self.anything = True
+
+    def _without_promised(
+        self, connection: Any, spec: MasterKind, rows: dict[str, list[Any]], lines: list[int]
+    ) -> list[int]:
+        """References to what a faulty file was to bring are left blank, or their rows left out where they are keys."""
+        left_out: set[int] = set()
+        for reference in spec.references:
+            wanted = self.promised.get(reference.table, set()) & set(rows.get(reference.column, ()))
+            missing = wanted - masters.registered(connection, reference, wanted) if wanted else set()
+            if not missing:
+                continue
+            column = rows[reference.column]
+            if reference.stored in spec.key:
+                left_out |= {line for line, code in zip(lines, column, strict=True) if code in missing}
+            else:
+                rows[reference.column] = [None if code in missing else code for code in column]
+        return self._leave_out(spec, rows, lines, left_out)
+
+    def _leave_out(
+        self, spec: MasterKind, rows: dict[str, list[Any]], lines: list[int], left_out: set[int]
+    ) -> list[int]:
+        """Take rows out; their codes are promised from now on. The lines that stay."""
+        if not left_out:
+            return lines
+        code = _code_column(spec)
+        if code in rows:
+            gone = {value for line, value in zip(lines, rows[code], strict=True) if line in left_out}
+            self.promised.setdefault(spec.table, set()).update(gone - {None})
+        keep = [place for place, line in enumerate(lines) if line not in left_out]
+        for name, column in rows.items():
+            rows[name] = [column[place] for place in keep]
+        return [lines[place] for place in keep]
+
+
+def _code_column(spec: MasterKind) -> str | None:
+    """The contract column of the code of a thing; None for surveys and intervals, which nothing refers to."""
+    if len(spec.key) > 1:
+        return None
+    return next(name for name, column in spec.columns.items() if column == spec.key[0])
+
+
+def prefixed(rows: Mapping[str, list[Any]], prefix: str) -> dict[str, list[Any]]:
+    """Rows of master data with the prefix before every sample code."""
+    if not prefix:
+        return dict(rows)
+    coded = ("sample_code", "duplicate_of")
+    return {
+        name: [value if value is None else f"{prefix}{value}" for value in column] if name in coded else column
+        for name, column in rows.items()
+    }

@@ -1,0 +1,101 @@
+"""An import that is refused tells the faults of all its files at once. The data are invented: layout tests."""
+
+from __future__ import annotations
+
+from collections.abc import Callable
+from pathlib import Path
+
+import pytest
+
+from registry import cli
+from registry.errors import InputProblems, Problem
+from registry.importing import ImportOptions, import_files
+from registry.store.engine import Registry
+
+SITES = "site_code,site_kind,easting,northing,epsg,depth_m,area\nKD1,drill_hole,450000,7350000,32633,100,{area}\n"
+SURVEYS = "site_code,depth_m,azimuth_deg,dip_deg\nKD1,{depth},0,-60\n"
+INTERVALS = "site_code,from_m,to_m,lithology\nKD1,0,{end},granite\n"
+INTRUSIONS = "intrusion,shape\nBig Stock,sphere\n"
+SAMPLES = "sample_code,sample_kind,site_code,from_m,to_m,intrusion\nK-1,core,KD1,1,2,{intrusion}\n"
+RESULTS = "Sample,SiO2 (%)\nK-1,65\n{other},66\n"
+
+Faults = Callable[..., list[Problem]]
+
+
+def files_of(folder: Path, **words: str) -> list[Path]:
+    said = {"area": "", "depth": "50", "end": "90", "intrusion": "Big Stock", "other": "K-1", **words}
+    texts = {"sites": SITES, "surveys": SURVEYS, "intervals": INTERVALS, "intrusions": INTRUSIONS,
+             "samples": SAMPLES, "results": RESULTS}  # fmt: skip
+    paths = []
+    for name, text in texts.items():
+        path = folder / f"{name}.csv"
+        path.write_text(text.format(**said))
+        paths.append(path)
+    return paths
+
+
+@pytest.fixture
+def faults(sqlite_registry: Registry, tmp_path: Path) -> Faults:
+    def refused(**words: str) -> list[Problem]:
+        with pytest.raises(InputProblems, match="csv") as error:
+            import_files(sqlite_registry, files_of(tmp_path, **words))
+        return [problem for problem in error.value.problems if problem.severity == "problem"]
+
+    return refused
+
+
+def test_faults_of_four_master_files_and_the_results_are_told_in_one_run(faults: Faults) -> None:
+    told = faults(depth="150", end="120", intrusion="Big Stokc", other="Q-7")
+    assert [(problem.file, problem.found) for problem in told] == [
+        ("surveys.csv", "150"), ("intervals.csv", "120"), ("samples.csv", "Big Stokc"), ("results.csv", "Q-7"),
+    ]  # fmt: skip
+
+
+def test_hole_of_a_faulty_row_is_no_fault_of_the_files_that_name_it(faults: Faults) -> None:
+    told = faults(area="Nowhere", end="120")
+    assert [(problem.file, problem.found) for problem in told] == [("sites.csv", "Nowhere"), ("intervals.csv", "120")]
+
+
+def test_row_that_the_reading_refuses_is_still_known_to_what_names_it(
+    sqlite_registry: Registry, tmp_path: Path
+) -> None:
+    paths = files_of(tmp_path, intrusion="Big Stokc")
+    paths[0].write_text(SITES.replace("100", "deep").format(area=""))
+    with pytest.raises(InputProblems, match="deep") as error:
+        import_files(sqlite_registry, paths)
+    told = [problem for problem in error.value.problems if problem.severity == "problem"]
+    assert [(problem.file, problem.found) for problem in told] == [("sites.csv", "deep"), ("samples.csv", "Big Stokc")]
+
+
+def test_file_that_cannot_be_read_leaves_the_following_ones_unjudged_where_they_may_name_it(
+    sqlite_registry: Registry, tmp_path: Path
+) -> None:
+    paths = files_of(tmp_path, intrusion="Big Stokc", end="-5")
+    paths[0].write_text("nothing,known\n1,2\n")
+    with pytest.raises(InputProblems, match=r"sites\.csv") as error:
+        import_files(sqlite_registry, paths)
+    assert {problem.file for problem in error.value.problems} == {"sites.csv", "intervals.csv"}
+
+
+def test_dry_run_with_unknown_codes_tells_what_was_understood_and_counts_the_codes(
+    sqlite_registry: Registry, tmp_path: Path, capsys: pytest.CaptureFixture[str]
+) -> None:
+    file = tmp_path / "foreign.csv"
+    file.write_text("Sample,SiO2 (%)\n" + "".join(f"Q{number:03},65\n" for number in range(1, 31)))
+    with pytest.raises(InputProblems, match="not in the registry") as error:
+        import_files(sqlite_registry, [file], ImportOptions(dry_run=True))
+    assert error.value.understood[0] == "foreign.csv: results, 30 rows"
+    assert any("SiO2 in wt%" in line for line in error.value.understood)
+    assert len(error.value.problems) == 6
+    assert (
+        error.value.problems[-1]
+        .sentence()
+        .startswith(
+            "foreign.csv, column 'Sample': 25 more lines have sample codes that are not in the registry; "
+            "found 'Q### (Q006 to Q030)'"
+        )
+    )
+    with pytest.raises(SystemExit, match="1"):
+        cli.main(["import", str(file), "--dry-run", "--registry", str(sqlite_registry.path)])
+    said = capsys.readouterr()
+    assert "understood: SiO2 in wt%" in said.err and "25 more lines" in said.err
