@@ -10,6 +10,7 @@ from flask import Blueprint, render_template, url_for
 
 from registry.explain import explain_sample
 from registry.reported import reported_lines
+from registry.store import batches
 from registry.store.reading import methods as methods_reading
 from registry.store.reading import sample as reading
 from registry.store.reading.columns import Columns
@@ -18,7 +19,7 @@ from web.diagram_request import where_it_plots
 from web.errors import Missing
 from web.pictures import norm_segments
 from web.reading import offered_columns, registry_connection
-from web.wording import VIEW_WORDS
+from web.wording import VIEW_WORDS, column_words
 
 blueprint = Blueprint("sample", __name__)
 #: Sheets of computed values in the order of the page.
@@ -62,14 +63,18 @@ def page(code: str) -> Any:
         section="Samples",
         sample=found,
         facts=_facts(found),
-        doubts=[warning["text"] for warning in warnings if warning["code"] in DOUBTED_IDENTITY],
+        doubts=[f"Identity in doubt: {warning['text']}" for warning in warnings if warning["code"] in DOUBTED_IDENTITY],
         conclusions=conclusions,
         labels={name: row["label"] for name, row in quantities.items()},
         units={name: row["unit"] for name, row in quantities.items()},
         majors=_majors(chosen, sheets),
         traces=[value for value in chosen if value["unit"] == "ppm"],
         iron=_iron(sheets["composition_sheet"]),
-        composition_remarks=[text for name, texts in remarks.items() if name not in quantities for text in texts],
+        composition_remarks=[
+            f"{_subject(warning, columns)}: {warning['text']}"
+            for warning in warnings
+            if warning["column_name"] not in quantities
+        ],
         remarks=remarks,
         plots=where_it_plots(found["code"], found["intrusion"], _known(sheets)),
         norm=norm,
@@ -82,6 +87,14 @@ def page(code: str) -> Any:
         results=_by_batch(results),
         changes=changes,
     )
+
+
+def _subject(warning: Mapping[str, Any], columns: Columns) -> str:
+    """What a remark speaks of: the label of its column."""
+    name = warning["column_name"]
+    if warning["code"] in DOUBTED_IDENTITY:
+        return "Identity in doubt"
+    return columns[name].label if name in columns else column_words(name)
 
 
 def _known(sheets: Mapping[str, Mapping[str, Any]]) -> set[str]:
@@ -97,6 +110,8 @@ def reported(code: str) -> Any:
             near = [(name, url_for("sample.reported", code=name)) for name in reading.near_codes(connection, code)]
             raise Missing("sample", code, near)
         lines = reported_lines(connection, found["sample_id"])
+        kept = {line["batch"]: batches.file_of(connection, line["batch_id"]) is not None for line in lines}
+    lines = [{**line, "has_file": kept[line["batch"]]} for line in lines]
     return render_template("reported.html", section="Samples", sample=found, lines=lines)
 
 

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import csv
 import io
-from collections.abc import Iterator, Mapping, Sequence
+from collections.abc import Collection, Iterator, Mapping, Sequence
 from typing import Any
 
 from flask import Blueprint, Response, current_app, redirect, render_template, stream_with_context
@@ -12,6 +12,7 @@ from flask import Blueprint, Response, current_app, redirect, render_template, s
 from registry.exporting import without_formula
 from registry.store.reading import samples as reading
 from registry.store.reading.columns import Column, Columns
+from registry.store.reading.doubts import doubted_samples
 from registry.store.reading.filters import (
     DEFAULT_COLUMNS,
     SCORE,
@@ -23,6 +24,7 @@ from registry.store.reading.targets import target_names
 from web import numbers, wording
 from web.pictures import minerals_of, norm_segments
 from web.reading import offered_columns, registry_connection
+from web.remembered import remembered
 from web.sentence import address, arguments_of_request, asked_filter, sentence_context, unsettled
 
 blueprint = Blueprint("samples", __name__)
@@ -31,6 +33,8 @@ VERDICT_COLUMNS = ("best_verdict",)
 CONTROL_KINDS = ("reference_material", "blank", "duplicate")
 #: A column of words up to this long is not broken into lines.
 SHORT_WORDS = 24
+#: Computed words that speak of the analysis and not of a rock.
+OF_THE_ANALYSIS = ("fitness", "fitness_cause", "iron_basis", "norm_basis")
 
 
 @blueprint.get("/samples")
@@ -51,11 +55,12 @@ def list_page() -> Any:
         else:
             page = reading.page_of_samples(connection, asked, columns, place=place)
         choices = reading.choices(connection)
+        doubted = remembered("samples of doubted identity", lambda: doubted_samples(connection))
     shown = reading.shown_columns(asked, columns)
     if asked.target and asked.columns == DEFAULT_COLUMNS:
         shown = [column for column in shown if column.name not in ("best_target", *VERDICT_COLUMNS)]
     heads = _heads(asked, shown, targets)
-    rows = _rows(page.rows, shown, asked, targets, heads)
+    rows = _rows(page.rows, shown, asked, targets, heads, doubted)
     pairs = asked.arguments()
     addresses = {
         "first_address": address(pairs),
@@ -101,7 +106,7 @@ def _heads(asked: Filter, shown: Sequence[Column], targets: Mapping[str, str]) -
     if asked.target:
         name = targets[asked.target]
         heads.append(_head(asked, "", "verdict", "", f"verdict for {name}", "verdict"))
-        heads.append(_head(asked, SCORE, "score", "", f"share of the weights met for {name}, least to most", "number"))
+        heads.append(_head(asked, SCORE, "score", "of 100", f"points met for {name}, least to most", "number"))
     for column in shown:
         kind = "number" if column.numeric else "verdict" if column.name in VERDICT_COLUMNS else "text"
         unit = wording.unit_words(column.unit)
@@ -131,6 +136,7 @@ def _rows(
     asked: Filter,
     targets: Mapping[str, str],
     heads: Sequence[dict[str, Any]],
+    doubted: Collection[int],
 ) -> list[dict[str, Any]]:
     blocks: list[Sequence[Any]] = [
         [norm_segments({mineral: row[f"norm_{mineral}"] for mineral in reading.NORM_ORDER}) for row in rows]
@@ -139,7 +145,7 @@ def _rows(
         blocks.append([_verdict_word(row["target_verdict"]) for row in rows])
         blocks.append([_score(row["target_score_min"], row["target_score_max"]) for row in rows])
     for head, column in zip(heads[-len(shown) :], shown, strict=True):
-        cells = [_cell(row[column.name], column, targets) for row in rows]
+        cells = ["" if _names_a_control(row, column) else _cell(row[column.name], column, targets) for row in rows]
         head["short"] = max(map(len, cells), default=0) <= SHORT_WORDS
         blocks.append(numbers.aligned(cells) if column.numeric else cells)
     return [
@@ -147,10 +153,17 @@ def _rows(
             "code": row["sample_code"],
             "control": row["kind"].replace("_", " ") if row["kind"] in CONTROL_KINDS else "",
             "is_stale": row["is_stale"],
+            "is_doubted": row["sample_id"] in doubted,
             "cells": cells,
         }
         for row, cells in zip(rows, zip(*blocks, strict=True), strict=True)
     ]
+
+
+def _names_a_control(row: Mapping[str, Any], column: Column) -> bool:
+    """Whether a column would give a control sample the name or class of a rock, which it is not."""
+    named = column.table == "derived" and not column.numeric and column.name not in OF_THE_ANALYSIS
+    return named and row["kind"] in CONTROL_KINDS
 
 
 def _verdict_word(stored: int | None) -> str:
@@ -160,7 +173,8 @@ def _verdict_word(stored: int | None) -> str:
 def _score(least: float | None, most: float | None) -> str:
     if least is None or most is None:
         return ""
-    return f"{least:.2f}" if most - least < 0.005 else f"{least:.2f}\N{EN DASH}{most:.2f}"
+    points = [f"{100 * share:.0f}" for share in (least, most)]
+    return points[0] if most - least < 0.005 else "\N{EN DASH}".join(points)
 
 
 def _cell(value: Any, column: Column, targets: Mapping[str, str]) -> str:

@@ -7,7 +7,8 @@ from typing import Any
 
 from flask import Blueprint, render_template, request, url_for
 
-from registry.standing import shared_cautions, standings
+from registry.explain import read_definition
+from registry.standing import Standing, shared_cautions, standings
 from registry.store.reading import intrusions as samples_reading
 from registry.store.reading import places as places_reading
 from registry.store.reading import sites as reading
@@ -54,15 +55,16 @@ def page(code: str) -> Any:
         key = site["site_id"]
         columns = offered_columns(connection)
         targets = targets_reading.active_targets(connection)
-        target, shown, faults = _asked(columns, targets)
         hole = site["kind"] == "drill_hole"
-        survey = reading.survey_rows(connection, key) if hole else []
-        intervals = reading.interval_rows(connection, key) if hole else []
-        values = reading.strip_samples(connection, key, shown, target["target_id"] if target else None) if hole else []
         standing = remembered(
             ("standings of site", key),
             lambda: standings(connection, "site_id", key, explained=("favourable", "possible")),
         )
+        usual = _usual_values(connection, key, columns, targets, standing) if hole else DEFAULT_VALUES
+        target, shown, faults = _asked(columns, targets, usual)
+        survey = reading.survey_rows(connection, key) if hole else []
+        intervals = reading.interval_rows(connection, key) if hole else []
+        values = reading.strip_samples(connection, key, shown, target["target_id"] if target else None) if hole else []
         kinds = samples_reading.kinds_of_samples(connection, "site_id", key)
         samples = samples_reading.sample_rows(connection, "site_id", key, SAMPLES_SHOWN)
         bases = reading.position_bases(connection, key)
@@ -94,8 +96,29 @@ def page(code: str) -> Any:
     )
 
 
+def _usual_values(
+    connection: Any, site_id: int, columns: Columns, targets: Sequence[dict[str, Any]], standing: Sequence[Standing]
+) -> tuple[str, ...]:
+    """The values drawn unasked: the first that the criteria of the leading target weigh and that the hole has."""
+    leading = next((one.target for one in standing if one.leading in ("favourable", "possible")), None)
+    target = next((one for one in targets if one["code"] == leading), None)
+    if target is None:
+        return DEFAULT_VALUES
+    asked = [criterion.test.quantity for criterion in read_definition(target["definition"]).criteria]
+    offered = [columns[name] for name in dict.fromkeys((*asked, *DEFAULT_VALUES)) if _is_drawn(columns.get(name))]
+    rows = reading.strip_samples(connection, site_id, offered, None)
+    given = [
+        column.name for place, column in enumerate(offered) if any(row[f"value_{place}"] is not None for row in rows)
+    ]
+    return tuple(given[: len(DEFAULT_VALUES)]) or DEFAULT_VALUES
+
+
+def _is_drawn(column: Column | None) -> bool:
+    return column is not None and column.numeric and column.table in ("derived", "composition", "sample")
+
+
 def _asked(
-    columns: Columns, targets: Sequence[dict[str, Any]]
+    columns: Columns, targets: Sequence[dict[str, Any]], usual: Sequence[str]
 ) -> tuple[dict[str, Any] | None, list[Column], list[str]]:
     """The target whose verdicts stand beside the strip (None: the best of all), the values drawn, and faults."""
     faults = []
@@ -104,11 +127,11 @@ def _asked(
     if code and target is None:
         faults.append(f"There is no target “{code}”; the best verdict of all targets is shown.")
     typed = [name.strip() for name in request.args.getlist("value") if name.strip()]
-    names = [name for name in dict.fromkeys(typed) if name != NOTHING] if typed else list(DEFAULT_VALUES)
+    names = [name for name in dict.fromkeys(typed) if name != NOTHING] if typed else list(usual)
     shown: list[Column] = []
     for name in names:
         column = columns.get(name)
-        if column is None or not column.numeric or column.table not in ("derived", "composition", "sample"):
+        if column is None or not _is_drawn(column):
             faults.append(f"“{name}” is no number of the sample views and is not drawn.")
         elif len(shown) == MOST_TRACKS:
             faults.append(f"At most {MOST_TRACKS} values are drawn beside one another; {column.label} is left out.")

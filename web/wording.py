@@ -107,6 +107,15 @@ def unit_of_column(name: str, units: Mapping[str, str] | None = None) -> str:
     return next((unit_after(unit) for end, unit in _UNITS_BY_END.items() if name.endswith(end)), "")
 
 
+def column_letters(position: int) -> str:
+    """The letters that a sheet gives its column ``position``, counted from 0: ``A``, ``Z``, ``AA``."""
+    letters, rest = "", position + 1
+    while rest:
+        rest, letter = divmod(rest - 1, 26)
+        letters = chr(ord("A") + letter) + letters
+    return letters
+
+
 def short_source(source: str) -> str:
     """A citation as it stands in running text: ``Frost et al. 2001``; the first words where nobody is cited."""
     cited = _CITED.match(source)
@@ -137,6 +146,7 @@ def register(app: Flask) -> None:
         readable=readable,
         unit_words=unit_words,
         unit_of_column=unit_of_column,
+        column_letters=column_letters,
         short_source=short_source,
         digestion_words=digestion_words,
         lower_first=lower_first,

@@ -41,3 +41,6 @@ def test_reported_page_shows_the_text_beside_what_was_read(founded_registry: Reg
     page = client.get("/reported/A").get_data(as_text=True)
     assert "65,10" in page and "&lt;1,0" in page and "X-1" in page
     assert client.get("/reported/AA").status_code == 404
+    assert 'SiO2 (%) <span class="soft">column B (2)</span>' in page
+    assert 'href="/batch/file/X-1" download>X-1.csv</a>, as it was sent; line 3 of it' in page
+    assert client.get("/batch/file/X-1").data == FILE.encode()

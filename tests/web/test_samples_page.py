@@ -75,7 +75,18 @@ def test_samples_condition_by_target_and_verdict_shows_verdict_and_score(client:
     page = get(client, "/samples?target=porphyry_copper&verdict=favourable&sort=-score")
     assert total(page) == "20"
     assert 'class="verdict verdict-favourable"' in page
+    scores = [int(number) for number in re.findall(r'data-label="score, of 100" class="number">(\d+)', page)]
+    assert scores == sorted(scores, reverse=True) and 80 <= scores[-1] <= scores[0] <= 100
     assert "porphyry copper favourable" in page
+
+
+def test_samples_controls_get_no_rock_name(client: FlaskClient) -> None:
+    """The invented blanks are quartz sand; their analyses would fall into a field of plutonic rocks."""
+    page = get(client, "/samples?kind=blank&columns=site_code,tas_plutonic,sio2_wt")
+    assert 'class="number">' in page
+    assert re.findall(r'data-label="(?:TAS|tas)[^"]*"[^>]*>([^<]+)<', page) == []
+    page = get(client, "/samples?kind=core&columns=site_code,tas_plutonic,sio2_wt")
+    assert re.findall(r'data-label="(?:TAS|tas)[^"]*"[^>]*>([^<]+)<', page) != []
 
 
 def test_samples_sentence_says_every_condition(client: FlaskClient) -> None:

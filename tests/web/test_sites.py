@@ -163,3 +163,9 @@ def test_rock_fills_differ_between_families_and_are_known_patterns() -> None:
     assert {pattern for _, pattern in fills} <= {*PATTERNS, ""}
     assert rock_fill("granodiorite") != rock_fill("granite") != rock_fill("diorite")
     assert rock_fill(None) == rock_fill("unheard of") == OTHER
+
+
+def test_site_strip_opens_with_what_the_leading_target_weighs(client: FlaskClient) -> None:
+    """The granodiorites of DH-1 lead for porphyry copper, whose first criteria are Sr/Y and La/Yb."""
+    page = client.get("/sites/DH-1").text
+    assert re.findall(r'<option value="([a-z_]+)" selected', page) == ["sr_y", "la_yb"]

@@ -6,7 +6,7 @@ import pytest
 
 from web.numbers import MINUS, TIMES, aligned, counted, derived, grouped, reported
 from web.pictures import MINERALS, minerals_of, norm_segments
-from web.wording import column_words, formula, joined, readable, short_source, unit_of_column
+from web.wording import column_letters, column_words, formula, joined, readable, short_source, unit_of_column
 
 
 @pytest.mark.parametrize(
@@ -118,3 +118,9 @@ def test_unit_of_column_follows_the_guide_then_the_end_of_the_name() -> None:
         "\u00a0m", "\u00a0mW/m²", "\u00a0wt%", "\u00a0ppm", "\u00a0km³"
     ]  # fmt: skip
     assert [unit_of_column(name) for name in ("v_sc", "th_u", "redox_series", "k_rb")] == [""] * 4
+
+
+def test_column_letters_count_as_sheets_do() -> None:
+    assert [column_letters(place) for place in (0, 25, 26, 51, 52, 701, 702)] == [
+        "A", "Z", "AA", "AZ", "BA", "ZZ", "AAA"
+    ]  # fmt: skip
