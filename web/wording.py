@@ -61,7 +61,8 @@ _PRINTED = (
     ("kg/m3", "kg/m³"), (" to inf", " or more"),
 )  # fmt: skip
 _CITED = re.compile(r"(?P<authors>[^()]+?),? (?:\(eds?\.\),? )?\(?(?P<year>(?:18|19|20)\d\d)\b")
-_INITIALS = re.compile(r"(?:[A-Z]\.[- ]?)+(?:,? (?:Jr|II)\.?)?")
+#: ``S.-s.`` and ``E-an`` are given names, ``Lord`` is a title.
+_INITIALS = re.compile(r"(?:[A-Za-z]\.[- ]?)+(?:,? (?:Jr|II)\.?)?|E-an|Lord")
 
 
 def formula(text: str) -> str:
@@ -121,9 +122,11 @@ def short_source(source: str) -> str:
     cited = _CITED.match(source)
     if cited is None or source.lower().startswith(("common practice", "convention")):
         return re.split(r"[:;.]", source, maxsplit=1)[0]
-    parts = re.split(r", | and | & ", cited["authors"].strip())
+    authors, *others = re.split(r" et al\.?", cited["authors"].strip())
+    parts = re.split(r", | and | & ", authors)
     names = [part for part in parts if not _INITIALS.fullmatch(part) and part]
-    who = names[0] if len(names) == 1 else f"{names[0]} and {names[1]}" if len(names) == 2 else f"{names[0]} et al."
+    several = bool(others) or len(names) > 2
+    who = f"{names[0]} et al." if several else " and ".join(names)
     return f"{who} {cited['year']}"
 
 

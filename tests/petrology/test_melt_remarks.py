@@ -31,7 +31,7 @@ def test_acid_liquidus_is_marked_as_set_by_the_water_alone() -> None:
 
 @pytest.mark.parametrize(
     ("pressure_gpa", "expected"),
-    [  # 680 C at 0.2 GPa and 620 C at 1 GPa (Stern, Huang and Wyllie 1975); 720 C at 0.1 GPa (Tuttle and Bowen 1958)
+    [  # 680 C at 0.2 GPa and 620 C at 1 GPa (Stern and Wyllie 1973); 720 C at 0.1 GPa (Tuttle and Bowen 1958)
         (0.2, [True, False, False]),
         (1.0, [False, False, False]),
         (0.1, [True, True, False]),
