@@ -11,6 +11,8 @@ from typing import IO
 
 _TABLES = (".csv", ".txt", ".tsv", ".tab", ".asc", ".dat", ".xlsx", ".xlsm", ".gz")
 _BLOCK = 1 << 20
+#: Headings longer than this are none: cutting them into cells would only use up the memory.
+LONGEST_FIRST_LINE = 2_000_000
 #: Files of other programs by their first bytes, with what to do.
 _FOREIGN = (
     (b"\xd0\xcf\x11\xe0", "an old binary workbook or document", "save it as .xlsx or CSV"),
@@ -59,6 +61,8 @@ def foreign_file(data: bytes) -> tuple[str, str] | None:
     for mark, what, remedy in _FOREIGN:
         if head.lower().startswith(mark.lower()):
             return what, remedy
+    if len(data) > LONGEST_FIRST_LINE and not any(data.find(end, 0, LONGEST_FIRST_LINE) >= 0 for end in (b"\n", b"\r")):
+        return f"one line of more than {LONGEST_FIRST_LINE:,} bytes", "see whether the file is whole and holds a table"
     return None
 
 

@@ -146,7 +146,7 @@ def _read_text(reading: Reading, data: bytes, options: ReadingOptions, findings:
         )
         return
     foreign = foreign_file(data)
-    encoding = tell_encoding(data)
+    encoding = None if foreign is not None else tell_encoding(data)
     if foreign is not None or encoding is None:
         what, remedy = foreign or ("not a text file", "save the table as CSV and read that file")
         findings.add(f"the file is {what}", expected="a table as delimited text (CSV) or .xlsx", remedy=remedy)

@@ -33,6 +33,7 @@ def scan(path: Path) -> Scan | None:
         if (
             head.startswith((b"PK", b"\x1f\x8b"))
             or foreign_file(head) is not None
+            or (len(head) == _BLOCK and b"\n" not in head and b"\r" not in head)
             or head[:4096].count(0)
             or tell_encoding(head[:4096].rsplit(b"\n", 1)[0]) is None
         ):

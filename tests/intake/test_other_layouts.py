@@ -5,6 +5,7 @@ from __future__ import annotations
 import datetime as dt
 import gzip
 import io
+import time
 import zipfile
 
 import numpy as np
@@ -12,6 +13,7 @@ import openpyxl
 import pytest
 
 from registry.intake import ReadingOptions, read_all, read_file
+from registry.intake.reading import read_path
 
 WIDE = "Sample ID,SiO2 (%),Zr (ppm)\nA-1,60.1,180\nA-2,48.3,<2\n"
 LONG = (
@@ -231,3 +233,15 @@ def test_method_stated_once_above_the_table_is_no_heading_row_though_it_holds_co
         ("SiO2", "wt%", "four_acid"),
     ]
     assert reading.results.sample_header == "Sample"
+
+
+@pytest.mark.parametrize("pack", [bytes, gzip.compress])
+def test_endless_first_line_is_refused_before_it_is_cut_into_cells(pack, tmp_path):
+    data = pack(b"0," * 3_000_000)
+    started = time.perf_counter()
+    (problem,) = problems(read_file("lab.csv", data))
+    assert problem.what == "the file is one line of more than 2,000,000 bytes"
+    assert time.perf_counter() - started < 3.0
+    path = tmp_path / "lab.csv"
+    path.write_bytes(b"0," * 3_000_000)
+    assert read_path(path) is None  # not as a stream: read_file tells what is wrong
