@@ -16,11 +16,17 @@ if TYPE_CHECKING:
 
 @dataclass(frozen=True)
 class Place:
-    """Where a file of results goes: the code of its batch, the batch it is a part of, the batch it supersedes."""
+    """Where a file of results goes: the code of its batch, the batch it is a part of, the batch it supersedes.
+
+    ``lab`` and the dates are those of the superseded batch, for what the new file leaves open.
+    """
 
     code: str
     part_of: int | None = None
     supersedes: int | None = None
+    lab: str | None = None
+    received_on: str | None = None
+    reported_on: str | None = None
 
 
 def place_of(
@@ -74,4 +80,6 @@ def _successor(
         what = f"--supersede: no batch has the code or certificate number '{code}'"
         remedy = "name the batch that this file corrects with --batch, or import it without --supersede"
         return Place(code), [Problem(file, what, remedy=remedy)]
-    return Place(batches.free_code(connection, code, " corrected "), supersedes=other["batch_id"]), []
+    inherited = {name: other[name] for name in ("lab", "received_on", "reported_on")}
+    code = batches.free_code(connection, code, " corrected ")
+    return Place(code, supersedes=other["batch_id"], **inherited), []

@@ -28,6 +28,10 @@ _CONDITION = re.compile(r"\s*(\w+)\s*(<=|>=|!=|=|<|>)\s*(.*?)\s*", re.DOTALL)
 MOST_WORKSHEET_ROWS = 1_048_575
 
 
+#: Values of a column that are named where no row meets a condition on it.
+MOST_VALUES_NAMED = 20
+
+
 def export_sheet(registry: Registry, sheet: str, target: Path, where: Sequence[str] = ()) -> int:
     """Write the rows of a view that meet every condition to a file; how many there were.
 
@@ -55,6 +59,17 @@ def export_sheet(registry: Registry, sheet: str, target: Path, where: Sequence[s
     finally:
         partial.unlink(missing_ok=True)
     return count
+
+
+def why_nothing(registry: Registry, sheet: str, where: Sequence[str]) -> str:
+    """A sentence on an export that wrote no row: what the text columns of its conditions hold, if it is little."""
+    said = ["no row meets the conditions" if where else f"{sheet} has no rows"]
+    with reading(registry) as connection:
+        for name, _, value in dict.fromkeys(condition(sheet, text) for text in where):
+            if isinstance(value, str):
+                held = exports.few_values(connection, sheet, name, MOST_VALUES_NAMED)
+                said += [f"{name} holds {', '.join(held)}"] if held else []
+    return "; ".join(said) + "."
 
 
 def without_formula(cell: Any) -> Any:

@@ -147,7 +147,7 @@ def store_results(
         batches.supersede(connection, place.supersedes, batch_id)
     for ids in raw_parts(np.setdiff1d(lines.sample_ids, fresh_ids)):
         stale.mark(connection, ids.tolist(), stale.DERIVE)
-    report.remarks = columns_that_disagree(table)
+    report.remarks = [*_laboratories(table, options.lab, place), *columns_that_disagree(table)]
     report.stored = StoredBatch(batch_id, place.code)
     if lines.controlled:
         report.controls = controlling.state_of_batch(connection, batch_id)
@@ -212,6 +212,15 @@ def _count(number: int, word: str) -> str:
     return f"{number:,} {word}" if number == 1 else f"{number:,} {word}s"
 
 
+def _laboratories(table: ResultTable, lab: str | None, place: Place) -> list[str]:
+    """Sentences on a laboratory that the file and ``--lab`` name differently, or that the superseded batch gave."""
+    if lab and table.lab and lab.strip().casefold() != table.lab.strip().casefold():
+        return [f"the file names the laboratory '{table.lab}', --lab says '{lab}': kept as '{lab}'"]
+    if place.lab and not (lab or table.lab):
+        return [f"the laboratory '{place.lab}' is taken from the batch that this one supersedes"]
+    return []
+
+
 def _store_batch(
     connection: Any,
     file: str,
@@ -223,8 +232,10 @@ def _store_batch(
     batch_id = batches.insert_batch(
         connection,
         code=place.code,
-        lab=options.lab or table.lab,
+        lab=options.lab or table.lab or place.lab,
         certificate=table.certificate,
+        received_on=place.received_on,
+        reported_on=place.reported_on,
         part_of=place.part_of,
         file_name=file,
         sha256=None if packed is None else packed.sha256,

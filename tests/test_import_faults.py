@@ -4,13 +4,15 @@ from __future__ import annotations
 
 from collections.abc import Callable
 from pathlib import Path
+from typing import Any
 
 import pytest
 
 from registry import cli
 from registry.errors import InputProblems, Problem
 from registry.importing import ImportOptions, import_files
-from registry.store.engine import Registry
+from registry.intake.codes import is_code_heading
+from registry.store.engine import Registry, reading
 
 SITES = "site_code,site_kind,easting,northing,epsg,depth_m,area\nKD1,drill_hole,450000,7350000,32633,100,{area}\n"
 SURVEYS = "site_code,depth_m,azimuth_deg,dip_deg\nKD1,{depth},0,-60\n"
@@ -99,3 +101,38 @@ def test_dry_run_with_unknown_codes_tells_what_was_understood_and_counts_the_cod
         cli.main(["import", str(file), "--dry-run", "--registry", str(sqlite_registry.path)])
     said = capsys.readouterr()
     assert "understood: SiO2 in wt%" in said.err and "25 more lines" in said.err
+
+
+def test_successor_of_a_batch_keeps_its_laboratory_unless_another_is_named(
+    sqlite_registry: Registry, tmp_path: Path
+) -> None:
+    def bring(name: str, silica: int, **options: Any) -> list[str]:
+        path = tmp_path / name
+        path.write_text(f"Sample,SiO2 (%)\nK-1,{silica}\n")
+        report = import_files(sqlite_registry, [path], ImportOptions(batch="T", create_samples=True, **options))
+        assert report.files[0].results is not None
+        return report.files[0].results.remarks
+
+    assert bring("one.csv", 60, lab="North Lab") == []
+    assert bring("two.csv", 61, supersede=True) == [
+        "the laboratory 'North Lab' is taken from the batch that this one supersedes"
+    ]
+    assert bring("three.csv", 62, supersede=True, lab="South Lab") == []
+    with reading(sqlite_registry) as connection:
+        labs = connection.exec_driver_sql("SELECT lab FROM batch ORDER BY batch_id").scalars().all()
+    assert labs == ["North Lab", "North Lab", "South Lab"]
+
+
+def test_column_in_a_wrong_unit_is_told_in_four_lines(sqlite_registry: Registry, tmp_path: Path) -> None:
+    path = tmp_path / "wrong.csv"
+    path.write_text("Sample,SiO2 (%)\n" + "".join(f"K-{number},650000\n" for number in range(40)))
+    with pytest.raises(InputProblems, match="more than the whole rock") as error:
+        import_files(sqlite_registry, [path], ImportOptions(create_samples=True))
+    told = [problem.sentence() for problem in error.value.problems if problem.severity == "problem"]
+    assert len(told) == 4
+    assert "37 more of the same kind" in told[3] and "the last at row 41" in told[3]
+
+
+@pytest.mark.parametrize("heading", ["Sample N\u00b0", "Sample No", "Sample Nr", "SAMPLE N\u00ba", "Sample Number"])
+def test_heading_of_numbered_samples_is_not_doubtful(heading: str) -> None:
+    assert is_code_heading(heading)

@@ -94,8 +94,12 @@ def refresh(registry_path: str | None, everything: bool, probability: bool, as_j
 @json_option
 def export(registry_path: str | None, sheet: str, target: Path, where: tuple[str, ...], as_json: bool) -> None:
     """Write the view SHEET (sample_sheet, verdict_sheet, ...) to a file."""
-    from registry.exporting import export_sheet
+    from registry.exporting import export_sheet, why_nothing
     from registry.store.engine import open_registry
 
-    count = export_sheet(open_registry(registry_named(registry_path)), sheet, target, where)
-    say({"rows": count, "file": str(target)}, [f"Wrote {count:,} rows of {sheet} to {target}."], as_json)
+    registry = open_registry(registry_named(registry_path))
+    count = export_sheet(registry, sheet, target, where)
+    lines = [f"Wrote {count:,} rows of {sheet} to {target}."]
+    if not count:
+        lines.append(why_nothing(registry, sheet, where))
+    say({"rows": count, "file": str(target), "remarks": lines[1:]}, lines, as_json)

@@ -12,7 +12,7 @@ from registry.intake.spooled import PackedTexts, parts_of
 
 _SAMPLE = r"(samples?|smpl|smp|specimen|spec|field|feild|lab|laboratory|client|rock|station sample)"
 _ID = r"(id|ids|no|no\.|nos|number|num|nr|code|codes|name|names|ref|reference|identification|identifier"
-_ID += r"|ident|label|#|tag)"
+_ID += r"|ident|label|#|tag|n\u00b0|n\u00ba|n)"
 _GOOD = (
     (re.compile(rf"{_SAMPLE} ?(ref )?{_ID}"), 3.0),
     (re.compile(r"(samples?|specimen|sampleid|sampleno|sample ?code|fieldid|labid|ident|smpid)"), 3.0),

@@ -7,6 +7,9 @@ from dataclasses import dataclass, field
 
 from registry.errors import Problem
 
+#: Equal faults of one column that are listed where there are more of them than ``Findings.listed``.
+ALIKE_LISTED = 3
+
 
 @dataclass
 class Findings:
@@ -61,7 +64,11 @@ class Findings:
         """All faults: those of the whole file first, then by row, then the counts of the groups cut short."""
         ordered = sorted(self._problems, key=lambda one: (one.row is not None, one.row or 0))
         for (severity, what), last in self._last.items():
-            more = self._counts[severity, what] - self.listed
+            alike = [one for one in ordered if (one.severity, one.what) == (severity, what)]
+            in_one_column = last.column is not None and {one.column for one in alike} == {last.column}
+            surplus = alike[ALIKE_LISTED:] if in_one_column else []
+            ordered = [one for one in ordered if not any(one is other for other in surplus)]
+            more = self._counts[severity, what] - len(alike) + len(surplus)
             ordered.append(
                 Problem(
                     self.file,

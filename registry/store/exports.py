@@ -37,3 +37,11 @@ def placed_rows_of(
     }
     for rows in rows_of(connection, sheet, conditions):
         yield [(*positions[row[0]], row) for row in rows if row[0] in positions]
+
+
+def few_values(connection: sa.Connection, sheet: str, name: str, most: int) -> list[str]:
+    """The distinct values of a column of ``sheet``, sorted; none where there are more than ``most``."""
+    column: sa.ColumnClause[Any] = sa.column(name)
+    query = sa.select(column).select_from(sa.table(sheet, column)).where(column.is_not(None)).distinct().limit(most + 1)
+    found = sorted(str(value) for value in connection.execute(query).scalars())
+    return found if len(found) <= most else []

@@ -137,6 +137,17 @@ def test_export_writes_the_rows_that_meet_every_condition(
     assert "no column 'gold'" in errors and "no sheet 'ore_sheet'" in errors
 
 
+def test_export_of_no_row_says_what_the_column_holds(
+    path: Path, files: list[Path], tmp_path: Path, capsys: pytest.CaptureFixture
+) -> None:
+    run("import", *files, "--registry", path)
+    target = tmp_path / "out.csv"
+
+    assert run("export", "verdict_sheet", "--to", target, "--where", "target = copper", "--registry", path) == 0
+    said = capsys.readouterr().out
+    assert "no row meets the conditions; target holds " in said and "porphyry_copper" in said
+
+
 def test_check_of_a_whole_registry_has_nothing_to_complain_of(
     path: Path, files: list[Path], capsys: pytest.CaptureFixture
 ) -> None:
