@@ -144,7 +144,8 @@ def _file_revision(path: Path) -> str:
     except sqlite3.DatabaseError as error:
         if getattr(error, "sqlite_errorcode", None) == sqlite3.SQLITE_NOTADB:
             raise PlutonbookError(
-                f"{path} is not an SQLite file, so it is not a registry; name another file or create one elsewhere"
+                f"{path} is not an SQLite file, or its first page is damaged: name another file, create a registry "
+                "elsewhere, or put a backup back with 'plutonbook recover'"
             ) from error
         told = faults.told(error, path)
         raise PlutonbookError(

@@ -103,8 +103,8 @@ def test_file_carries_the_mark_of_a_registry(registry_path: Path, sqlite_registr
     [
         (None, "there is no registry at .*'plutonbook create' makes a new one there"),
         (b"", "is empty, so it is not a registry"),
-        (b"sample,SiO2\nA1,65.2\n", "is not an SQLite file, so it is not a registry"),
-        (b"SQLite format 3\0" + b"\x01" * 4096, "is damaged or unreadable"),
+        (b"sample,SiO2\nA1,65.2\n", "is not an SQLite file, or its first page is damaged"),
+        (b"SQLite format 3\0" + b"\x01" * 4096, "is not an SQLite file, or its first page is damaged"),
     ],
 )
 def test_open_of_what_is_no_registry_says_what_it_is(tmp_path: Path, content: bytes | None, sentence: str) -> None:
