@@ -10,7 +10,7 @@ from typing import Any
 from registry.errors import Problem
 from registry.importing_results import ResultsReport
 from registry.intake import Reading
-from registry.intake_choices import TIMES, described_columns, is_of_column
+from registry.intake_choices import TIMES, WEIGHED, described_columns, is_of_column
 from registry.precedence import Alternative, Replacement
 
 #: Lines of one sort that are printed before the rest is counted.
@@ -160,6 +160,8 @@ def columns_in_short(columns: Sequence[Mapping[str, Any]]) -> list[str]:
         how = column["digestion"].replace("_", " ")
         told = column["method"] if column["method"].casefold().replace("-", " ") == how else ""
         words = how if column["digestion"] != "unknown" else "digestion not told"
+        if column["digestion"] == "unknown" and column["analyte"] in WEIGHED:
+            words = "weighed or summed"
         if column["method"] and not told:
             words = f"{column['method']} ({words})"
         groups.setdefault((column["unit"] or "no known unit", words), []).append(column["analyte"])

@@ -13,6 +13,7 @@ from registry.errors import InputProblems, Problem
 from registry.importing import ImportOptions, import_files
 from registry.intake.codes import is_code_heading
 from registry.store.engine import Registry, reading
+from registry.store.reading.sample import chosen_values
 
 SITES = "site_code,site_kind,easting,northing,epsg,depth_m,area\nKD1,drill_hole,450000,7350000,32633,100,{area}\n"
 SURVEYS = "site_code,depth_m,azimuth_deg,dip_deg\nKD1,{depth},0,-60\n"
@@ -136,3 +137,12 @@ def test_column_in_a_wrong_unit_is_told_in_four_lines(sqlite_registry: Registry,
 @pytest.mark.parametrize("heading", ["Sample N\u00b0", "Sample No", "Sample Nr", "SAMPLE N\u00ba", "Sample Number"])
 def test_heading_of_numbered_samples_is_not_doubtful(heading: str) -> None:
     assert is_code_heading(heading)
+
+
+def test_loss_on_ignition_of_a_sample_is_by_no_unknown_digestion(sqlite_registry: Registry, tmp_path: Path) -> None:
+    path = tmp_path / "loi.csv"
+    path.write_text("Sample,MgO (%),LOI (%),Total (%)\nK-1,2,1,99\n")
+    import_files(sqlite_registry, [path], ImportOptions(create_samples=True))
+    with reading(sqlite_registry) as connection:
+        by = {value["column"]: value["digestion"] for value in chosen_values(connection, 1)}
+    assert (by["loi_wt"], by["total_reported_wt"], by["mgo_wt"]) == ("", "", "an unknown digestion")

@@ -97,6 +97,7 @@ def test_columns_are_told_in_groups_with_what_is_converted_or_not_used(bring: Br
 def test_loss_on_ignition_and_totals_are_no_columns_without_a_digestion(bring: Bring) -> None:
     report = bring("loi.csv", "Sample,SiO2 (%) XRF,MgO (%),LOI (%),Total (%)\nS-001,66,2,1,99\n", dry_run=True)
     assert any("the digestion is not told for 1 of 2 columns (MgO (%))" in remark for remark in report.files[0].remarks)
+    assert "  understood: LOI, Total in wt%, weighed or summed" in report.files[0].lines()
 
 
 def test_import_of_master_data_says_that_nothing_was_to_be_computed(bring: Bring) -> None:

@@ -103,6 +103,11 @@ def sheet_row(connection: Connection, sheet: str, sample_id: int) -> dict[str, A
     return rows[0] if rows else {}
 
 
+#: Weighed or summed, so that an untold digestion is no gap.
+WEIGHED = frozenset({"loi_wt", "h2o_plus_wt", "h2o_minus_wt", "total_reported_wt"})
+_UNKNOWN = tuple(name.startswith("unknown") for name in DIGESTIONS)
+
+
 def chosen_values(connection: Connection, sample_id: int) -> list[dict[str, Any]]:
     """The chosen value of every reported column: ``column label unit value sign digestion minimum``.
 
@@ -124,7 +129,7 @@ def chosen_values(connection: Connection, sample_id: int) -> list[dict[str, Any]
                 "unit": "ppm" if column.endswith("_ppm") else "wt%",
                 "value": row[column],
                 "sign": SIGNS.get(qualifier, ""),
-                "digestion": DIGESTION_WORDS[code] if code else "",
+                "digestion": "" if not code or (column in WEIGHED and _UNKNOWN[code]) else DIGESTION_WORDS[code],
                 "minimum": bool(code) and carries(DIGESTIONS[code], column) == "minimum",
             }
         )
