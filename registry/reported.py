@@ -12,7 +12,7 @@ from registry.store.reading import sample as sample_reading
 
 
 def reported_lines(connection: Any, sample_id: int) -> list[dict[str, Any]]:
-    """One dict a line of a certificate that names the sample: ``batch state file_name line_no cells``.
+    """One dict a line of a certificate that names the sample: ``batch state file_name has_file line_no cells``.
 
     ``cells`` are dicts ``header text analyte value unit qualifier``, in the order of the file's columns; ``text`` is
     None where the file is not kept or its table does not lie as rows of samples.
@@ -26,8 +26,10 @@ def reported_lines(connection: Any, sample_id: int) -> list[dict[str, Any]]:
         line["cells"].append({key: row[key] for key in ("position", "header", "analyte", "value", "unit", "qualifier")})
     for batch_id in {key[0] for key in lines}:
         wanted = [line_no for batch, line_no in lines if batch == batch_id]
-        texts = _texts(connection, batch_id, wanted)
+        data = batches.file_of(connection, batch_id)
+        texts = {} if data is None else _texts(data, wanted)
         for line_no in wanted:
+            lines[batch_id, line_no]["has_file"] = data is not None
             row_texts = texts.get(line_no, [])
             for cell in lines[batch_id, line_no]["cells"]:
                 place = cell["position"]
@@ -35,11 +37,8 @@ def reported_lines(connection: Any, sample_id: int) -> list[dict[str, Any]]:
     return list(lines.values())
 
 
-def _texts(connection: Any, batch_id: int, line_numbers: Iterable[int]) -> dict[int, list[str]]:
-    """The cells of file lines as they stand in the stored file; nothing where it is not kept."""
-    data = batches.file_of(connection, batch_id)
-    if data is None:
-        return {}
+def _texts(data: bytes, line_numbers: Iterable[int]) -> dict[int, list[str]]:
+    """The cells of file lines as they stand in the stored file."""
     wanted, found = set(line_numbers), {}
     for chunk in source_of(data, Reading("stored file")).chunks():
         numbers = chunk.lines

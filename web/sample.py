@@ -10,7 +10,6 @@ from flask import Blueprint, render_template, url_for
 
 from registry.explain import explain_sample
 from registry.reported import reported_lines
-from registry.store import batches
 from registry.store.reading import methods as methods_reading
 from registry.store.reading import sample as reading
 from registry.store.reading.columns import Columns
@@ -110,8 +109,6 @@ def reported(code: str) -> Any:
             near = [(name, url_for("sample.reported", code=name)) for name in reading.near_codes(connection, code)]
             raise Missing("sample", code, near)
         lines = reported_lines(connection, found["sample_id"])
-        kept = {line["batch"]: batches.file_of(connection, line["batch_id"]) is not None for line in lines}
-    lines = [{**line, "has_file": kept[line["batch"]]} for line in lines]
     return render_template("reported.html", section="Samples", sample=found, lines=lines)
 
 

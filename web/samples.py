@@ -32,7 +32,7 @@ blueprint = Blueprint("samples", __name__)
 VERDICT_COLUMNS = ("best_verdict",)
 CONTROL_KINDS = ("reference_material", "blank", "duplicate")
 #: A column of words up to this long is not broken into lines.
-SHORT_WORDS = 24
+SHORT_WORDS = 20
 #: Computed words that speak of the analysis and not of a rock.
 OF_THE_ANALYSIS = ("fitness", "fitness_cause", "iron_basis", "norm_basis")
 

@@ -225,3 +225,15 @@ def test_browser_works_without_our_script(open_page: Callable[..., Any]) -> None
         WebDriverWait(browser, 10).until(url_matches(r"/samples\?kind=float$"))
     finally:
         browser.execute_cdp_cmd("Emulation.setScriptExecutionDisabled", {"value": False})
+
+
+def test_samples_table_fits_at_1280_and_says_that_it_goes_on_where_it_does_not(open_page: Callable[..., Any]) -> None:
+    for width, fits in ((1280, True), (900, False), (390, True)):
+        browser = open_page("/samples", width)
+        room = browser.execute_script(
+            "const f = document.querySelector('.table-frame.tall'); return f.clientWidth - f.scrollWidth;"
+        )
+        notes = [note.text for note in browser.find_elements("css selector", ".goes-on") if note.is_displayed()]
+        assert (room >= 0) is fits
+        told = "The table goes on to the right: scroll it sideways, or choose fewer columns."
+        assert notes == ([] if fits else [told])

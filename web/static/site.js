@@ -24,6 +24,19 @@ document.addEventListener("click", (event) => {
   for (const part of parts) if (part.open && !part.contains(event.target)) part.open = false;
 });
 
+// A table wider than the window says that it goes on.
+const frames = [...document.querySelectorAll(".table-frame.tall")].map((frame) => {
+  const note = document.createElement("p");
+  note.className = "small soft goes-on";
+  note.textContent = "The table goes on to the right: scroll it sideways, or choose fewer columns.";
+  if (!document.getElementById("column-choice")) note.textContent = "The table goes on to the right: scroll it sideways.";
+  frame.before(note);
+  return { frame, note };
+});
+const tellWide = () => { for (const { frame, note } of frames) note.hidden = frame.scrollWidth <= frame.clientWidth + 1; };
+tellWide();
+window.addEventListener("resize", tellWide);
+
 // Empty fields stay out of the address.
 for (const form of document.querySelectorAll("form[method=get]")) {
   form.addEventListener("submit", () => {
