@@ -5,8 +5,9 @@ import json
 import pytest
 
 from registry.petrology.analytes import CHOSEN_COLUMNS, CHOSEN_INDEX
-from registry.targets.argument import argue, number_text, workspace_of_sample
+from registry.targets.argument import argue, number_text
 from registry.targets.definition import TARGET_CODES, load_definition
+from registry.targets.stored_sample import workspace_of_sample
 
 PORPHYRY = {
     "fitness": "fit", "differentiation_index": 65.0, "sr_ppm": 720.0, "y_ppm": 11.0, "la_ppm": 24.0, "yb_ppm": 0.95,
