@@ -27,7 +27,8 @@ from web import create_app
 SAMPLES = int(os.environ.get("PLUTONBOOK_BENCHMARK_SAMPLES", "100000"))
 BODIES, HOLES, TURNS = 50, 200, 9
 #: Page over bare SQL: it draws as well, and works out the argument of up to seven best samples.
-MOST_INTRUSION, MOST_SITE, MOST_RANKING = 6.0, 16.0, 4.0
+#: The first ranking after a change also looks through every derived row for samples of doubted identity.
+MOST_INTRUSION, MOST_SITE, MOST_RANKING = 6.0, 16.0, 10.0
 SITE = ["differentiation_index", "sr_y"]
 
 pytestmark = pytest.mark.benchmark

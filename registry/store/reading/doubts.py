@@ -17,11 +17,11 @@ def doubted_samples(connection: Connection, column: str | None = None, key: int 
     if column not in (None, "intrusion_id", "site_id"):
         raise ValueError(f"samples are grouped by intrusion_id or site_id, not by {column!r}")
     where = "" if column is None else f" AND s.{column} = {int(key)}"
+    place = connection.exec_driver_sql(f"SELECT min(position) FROM warning_kind WHERE code = '{DISAGREES}'").scalar()
     rows = raw_rows.select(
         connection,
         f"SELECT o.sample_id FROM suite_outlier AS o JOIN sample AS s ON s.sample_id = o.sample_id WHERE 1 = 1{where} "
         "UNION SELECT d.sample_id FROM sample AS s JOIN derived AS d ON d.sample_id = s.sample_id "
-        f"JOIN warning_kind AS w ON w.code = '{DISAGREES}' "
-        f"WHERE substr(d.warnings, CAST(w.position AS integer) + 1, 1) = '1'{where}",
+        f"WHERE substr(d.warnings, {int(-1 if place is None else place) + 1}, 1) = '1'{where}",
     )
     return frozenset(int(row[0]) for row in rows)
