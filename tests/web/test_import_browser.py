@@ -33,7 +33,7 @@ def served(site: Site) -> Iterator[str]:
     thread.start()
     yield f"http://127.0.0.1:{server.effective_port}"
     server.close()
-    thread.join(timeout=10)
+    thread.join(timeout=0.2)  # kept-alive connections of the browser may keep it; it is a daemon
 
 
 @pytest.fixture(params=[1280, 390])

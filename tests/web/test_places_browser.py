@@ -45,7 +45,7 @@ def window(writable: Any, browser: Any) -> Iterator[Callable[..., Any]]:
     browser.execute_cdp_cmd("Emulation.setEmulatedMedia", {"features": []})
     browser.get("about:blank")
     server.close()
-    thread.join(timeout=10)
+    thread.join(timeout=0.2)  # kept-alive connections of the browser may keep it; it is a daemon
 
 
 def test_browser_place_pages_fit_both_widths_without_faults(window: Callable[..., Any]) -> None:
