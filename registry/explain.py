@@ -22,10 +22,10 @@ from registry.petrology.heat import effective_half_width_m
 from registry.pipeline import Chunk, compute
 from registry.store import loading
 from registry.store.reading import sample as reading
+from registry.store.sheets import OUTCOME_WORDS
 from registry.targets.argument import argue
 from registry.targets.definition import Criterion, Gate, TargetDefinition, parse_definition
 
-OUTCOME_WORDS = {"m": "met", "r": "near", "n": "not met", "u": "unknown"}
 MISSING = "missing: "
 
 

@@ -16,8 +16,8 @@ from registry.intake import ResultTable
 from registry.intake.spooled import parts_of
 from registry.quality.recognising import Spoken
 from registry.store import masters
+from registry.store.sheets import CONTROL_KINDS
 
-CONTROL_KINDS = ("reference_material", "blank", "duplicate")
 #: Ids handed to the store in one query.
 IDS_AT_A_TIME = 65_536
 _KINDS = np.array(["original", "repeat", "control"], dtype=object)

@@ -19,6 +19,7 @@ from registry.intake import ResultTable
 from registry.judging import read_conventions
 from registry.petrology.analytes import CHOSEN_COLUMNS, QUALIFIER_SIGNS
 from registry.petrology.digestion import DIGESTION_WORDS
+from registry.refresh import stored_blocks
 from registry.store import loading
 
 #: Samples composed at once.
@@ -80,18 +81,7 @@ def _traced(connection: Any, ids: np.ndarray) -> Iterator[Traced]:
     codes = loading.batches_by_newness(connection)
     for start in range(0, len(ids), AT_A_TIME):
         part = ids[start : start + AT_A_TIME]
-        blocks = [
-            Block(
-                [ColumnUse(column.analyte, column.unit, column.digestion) for column in block.columns],
-                block.sample,
-                block.values,
-                block.qualifiers,
-                block.newness,
-                block.repeat,
-            )
-            for block in loading.load_blocks(connection, part, held)
-        ]
-        yield trace_choice(len(part), blocks), codes
+        yield trace_choice(len(part), stored_blocks(connection, part, held)), codes
 
 
 def _offered(after: TracedChoice, codes: list[str], new: set[str], n: int) -> TracedChoice:

@@ -108,7 +108,12 @@ def changes_since(connection: Any, change_id: int) -> int:
 def recompose(connection: Any, sample_ids: Sequence[int], held: np.ndarray | None = None) -> loading.Composition:
     """The composition of samples, chosen anew from their active results, without those of ``held`` batch columns."""
     ids = np.asarray(sorted(sample_ids), dtype=np.int64)
-    blocks = [
+    return composed(ids, stored_blocks(connection, ids, held))
+
+
+def stored_blocks(connection: Any, ids: np.ndarray, held: np.ndarray | None = None) -> list[Block]:
+    """The active results of the samples ``ids`` (ascending) as the choice takes them, without ``held`` columns."""
+    return [
         Block(
             [ColumnUse(column.analyte, column.unit, column.digestion) for column in block.columns],
             block.sample,
@@ -119,7 +124,6 @@ def recompose(connection: Any, sample_ids: Sequence[int], held: np.ndarray | Non
         )
         for block in loading.load_blocks(connection, ids, held)
     ]
-    return composed(ids, blocks)
 
 
 def composed(ids: np.ndarray, blocks: Sequence[Block]) -> loading.Composition:

@@ -25,9 +25,6 @@ blueprint = Blueprint("intrusions", __name__)
 ORDER = ("favourable", "possible", "undecided", "unfavourable")
 #: Shown at once; the rest folds.
 LACKING_SHOWN = 6
-SUITE_WORDS = {
-    "trend": "rank_correlation_mgo_sio2", "population": "far_samples", "samples": "samples_used",
-}  # fmt: skip
 
 
 def scores(connection: Any, target_id: int) -> Mapping[int, Mapping[str, Any]]:

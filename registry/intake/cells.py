@@ -192,11 +192,6 @@ def _number(text: str, decimal: str) -> tuple[tuple[float, str | None] | None, s
     return (float(f"{digits}e{exponent}"), doubt), rest.strip()
 
 
-def looks_numeric(text: str) -> bool:
-    """Whether a cell is a number, with either decimal sign and any qualifier."""
-    return parse_cell(text, ".").state == NUMBER or parse_cell(text, ",").state == NUMBER
-
-
 def decimal_sign(texts: list[str]) -> tuple[str, bool]:
     """The decimal sign that a sample of cells uses, and whether they settle it.
 

@@ -26,7 +26,6 @@ _CODE_LIKE = re.compile(r"[A-Za-z]+[\s\-_/.]*\d[\w\-./]*")
 _STATEMENT = re.compile(r"(?i)\W*[\w ]*\b(methods?|digestion|analysis|units?|results?|technique)\b[\w ]*[:=]\s*\S")
 _UNIT_LABEL = re.compile(r"(?i)^\W*units?\b")
 _METHOD_LABEL = re.compile(r"(?i)\b(method|analys\w+|technique|digest\w*|scheme|procedure|analytical|prep\w*)\b")
-_ANALYTE_LABEL = re.compile(r"(?i)^\W*(analytes?|elements?|oxides?|parameters?|determinands?|symbols?)\b")
 _FILLER = re.compile(r"(?i)unnamed:? ?\d+(_level_\d+)?")
 #: Headings of a column that holds the sign of another column's numbers.
 QUALIFIER_WORD = re.compile(r"(?i)(qualifiers?|qual|flags?|sign|censor(ed)?|q|lt|(lod|dl)[ _]flag)")

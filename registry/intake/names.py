@@ -10,9 +10,6 @@ from functools import lru_cache
 from registry.intake.units import canonical_unit, split_unit
 from registry.petrology.analytes import ANALYTES
 
-#: Plain iron headings whose meaning is settled when all headings are known (see ``iron.settle_iron``).
-PLAIN_IRON = ("Fe2O3", "FeO")
-
 _BY_CASE = {symbol.casefold(): symbol for symbol in ANALYTES}
 _WORDS = {
     "loi": "LOI", "lossonignition": "LOI", "ignitionloss": "LOI", "loi1000": "LOI", "loi1000c": "LOI",

@@ -8,7 +8,6 @@ from __future__ import annotations
 import re
 from functools import cache
 
-GAS_CONSTANT_J_PER_MOL_K = 8.314462618  # CODATA 2018, exact
 GRAVITY_M_PER_S2 = 9.81  # common practice, no source
 SECONDS_PER_YEAR = 3.15576e7  # Julian year, IAU
 ZERO_CELSIUS_K = 273.15

@@ -21,8 +21,6 @@ MALI_ALKALI_CALCIC = (-44.72, 1.094, -0.00527)
 MALI_CALC_ALKALIC = (-45.36, 1.0043, -0.00427)
 #: Boundary of FeOt/(FeOt + MgO): constant, SiO2 (volatile-free wt%); ferroan above [frost2001].
 FERROAN_LINE = (0.486, 0.0046)
-#: The same for FeO/(FeO + MgO) with ferrous iron [frost2001].
-FERROAN_LINE_FERROUS = (0.446, 0.0046)
 
 
 def moles(oxide_wt: ArrayLike, formula: str) -> Floats:

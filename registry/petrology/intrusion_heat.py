@@ -12,8 +12,6 @@ from registry.petrology.melt_composition import Array, not_negative, positive
 SECONDS_PER_MA = 1e6 * SECONDS_PER_YEAR
 #: Taken for the standard deviation of an age that has none, as a share of the age (common practice, warned).
 ASSUMED_AGE_SIGMA = 0.10
-#: Water that moves cools a body this many times faster than conduction alone (order of magnitude).
-HYDROTHERMAL_FACTORS = (2.0, 10.0)
 
 
 def age_interval_ma(age_ma: ArrayLike, age_sigma_ma: ArrayLike) -> tuple[Array, Array]:

@@ -18,7 +18,7 @@ from registry.quality import blanks, duplicates
 from registry.quality.certificates import allowed_deviation
 from registry.quality.run_rules import RULE_TEXTS, judge_run, z_scores
 from registry.quality.shipped import ReferenceValue, status_rank
-from registry.quality.states import FAILED, NOT_JUDGED, PASSED, WARNED
+from registry.quality.states import NOT_JUDGED, PASSED, WARNED
 from registry.quality.substances import conversion
 
 REFERENCE, BLANK, DUPLICATE, LAB_REPEAT = "reference_material", "blank", "duplicate", "lab_repeat"
@@ -289,8 +289,3 @@ def _judge_duplicates(
             "precision": same_stage,
         }
     )
-
-
-def failed_rows(outcome: Outcome) -> NDArray[np.int64]:
-    """Positions of the control lines that failed in this column."""
-    return np.flatnonzero(outcome.states == FAILED)

@@ -17,7 +17,6 @@ from registry.petrology.quotients import Floats, floats, quotient
 from registry.quality.states import FAILED, NOT_JUDGED, PASSED, WARNED
 
 WARN_AT, FAIL_AT = 5.0, 10.0
-CARRY_OVER_PERCENT = 1.0
 #: A sample before that is not this much richer than the blank's excess does not explain it.
 RICHER = 10.0
 

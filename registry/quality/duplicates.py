@@ -39,12 +39,6 @@ def half_relative_difference(a: ArrayLike, b: ArrayLike) -> Floats:
     return 100.0 * quotient(np.abs(first - second), np.where(total > 0.0, total, np.nan))
 
 
-def deviation_asked(mean: ArrayLike, detection_limit: float, k: float) -> Floats:
-    """s_c = s_0 + k c for the stage's ``k``, with s_0 = c_d (1 - 2 k)/2 from the detection limit (NaN counts as 0)."""
-    limit = detection_limit if detection_limit > 0.0 else 0.0
-    return limit * (1.0 - 2.0 * k) / 2.0 + k * np.asarray(mean, dtype=np.float64)
-
-
 def detection_limit_of(s_0: float, k: float) -> float:
     """c_d = 2 s_0/(1 - 2 k), in the unit of ``s_0``; NaN where k is 0.5 or more (never that precise)."""
     return 2.0 * s_0 / (1.0 - 2.0 * k) if k < 0.5 else float("nan")

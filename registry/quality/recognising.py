@@ -21,8 +21,6 @@ _STAGES = (
     ("field", re.compile(r"(?i)\b(field|core|quarter\w*|split)\b")),
     ("lab", re.compile(r"(?i)\b(lab\w*|repeat|replicate|rep|check)\b")),
 )
-#: Stages of duplicates, ``unknown`` where nothing says so.
-STAGES = ("field", "crush", "pulp", "lab", "unknown")
 
 
 @dataclass(frozen=True)

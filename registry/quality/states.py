@@ -4,7 +4,6 @@ from __future__ import annotations
 
 #: One control result: by code, worst last; ``not judged`` where nothing published or agreed says what it should be.
 NOT_JUDGED, PASSED, WARNED, FAILED = range(4)
-RESULT_WORDS = ("not judged", "passed", "warned", "failed")
 
 #: An analyte in a batch, and a batch: by code, worst last.
 PASSES, REMARKS, FAILS = range(3)

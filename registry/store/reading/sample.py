@@ -175,11 +175,6 @@ def verdict_rows(connection: Connection, sample_id: int) -> list[dict[str, Any]]
     return rows
 
 
-def reason_rows(connection: Connection, sample_id: int) -> list[dict[str, Any]]:
-    """The rows of ``reason_sheet`` of a sample, targets and criteria in their own order."""
-    return _rows(connection, "SELECT * FROM reason_sheet WHERE sample_id = :sample_id", sample_id=sample_id)
-
-
 def result_rows(connection: Connection, sample_id: int) -> list[dict[str, Any]]:
     """Every result of the sample as reported, with its batch, line, method and digestion."""
     return _rows(
