@@ -2,15 +2,20 @@
 
 from __future__ import annotations
 
+import io
+import tempfile
 from collections.abc import Callable, Mapping, Sequence
-from typing import Any
+from typing import IO, Any
 
 from registry.errors import NotFound, PlutonbookError, UsageError
 from registry.petrology.digestion import DIGESTIONS
 from registry.refresh import changes_since, drain, last_change
-from registry.store import batches
+from registry.store import batch_files, batches
 from registry.store.engine import Registry, reading, writing
 from registry.store.reading.changes import verdict_changes
+
+#: A stored file that is larger is handed out from disk.
+_IN_MEMORY_BYTES = 8_000_000
 
 #: Weighed or summed, not dissolved.
 WEIGHED = ("Total", "LOI", "H2O", "H2O+", "H2O-")
@@ -120,14 +125,23 @@ def recomputed_after(
     return report
 
 
-def stored_file(registry: Registry, code: str) -> tuple[str, bytes]:
-    """Name and bytes of the file of a batch, as it was sent; NotFound where none is kept."""
+def stored_file(registry: Registry, code: str) -> tuple[str, IO[bytes]]:
+    """Name of the file of a batch and the file as it was sent, open at its start, for the caller to close.
+
+    Raises NotFound where none is kept.
+    """
     with reading(registry) as connection:
         batch = _known(connection, code)
-        data = batches.file_of(connection, batch["batch_id"])
-    if data is None:
-        raise NotFound(f"the registry keeps no file of batch '{code}'")
-    return batch["file_name"] or f"{code}.csv", data
+        if not batch_files.is_kept(connection, batch["batch_id"]):
+            raise NotFound(f"the registry keeps no file of batch '{code}'")
+        file: IO[bytes] = io.BytesIO()
+        for piece in batch_files.unpacked_parts(connection, batch["batch_id"]):
+            if isinstance(file, io.BytesIO) and file.tell() > _IN_MEMORY_BYTES:
+                begun, file = file.getvalue(), tempfile.TemporaryFile()  # noqa: SIM115 - the caller closes it
+                file.write(begun)
+            file.write(piece)
+    file.seek(0)
+    return batch["file_name"] or f"{code}.csv", file
 
 
 def _known(connection: Any, code: str) -> dict[str, Any]:

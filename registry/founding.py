@@ -13,7 +13,7 @@ from registry.errors import NotFound, PlutonbookError, UsageError
 from registry.judging import install_shipped_definitions
 from registry.refresh import refresh_registry
 from registry.store import batches, schema, target_rows
-from registry.store.engine import Registry, open_registry, place_of, reading
+from registry.store.engine import HEAD_REVISION, Registry, open_registry, place_of, reading
 from registry.targets.definition import load_definitions
 
 DEMO_MARK = "demo"
@@ -74,8 +74,9 @@ def build_demo(path_or_url: str) -> list[str]:
 
     _, path = place_of(path_or_url)
     place = path or "on PostgreSQL"
+    brought = []
     try:
-        registry = open_registry(path_or_url)
+        registry = open_registry(path_or_url, any_revision=True)
     except NotFound:
         registry = found(path_or_url, demo=True)
     else:
@@ -85,10 +86,16 @@ def build_demo(path_or_url: str) -> list[str]:
                 f"the registry {place} holds real data and is not a demo; give the demo a place of its own with "
                 "--registry"
             )
+        if (schema.revision(registry) or "") < HEAD_REVISION:
+            registry.close()
+            bring_up_to_date(path_or_url)
+            brought = ["It was made by an earlier version and was brought up to date."]
+        registry.close()
+        registry = open_registry(path_or_url)
         if _has_batches(registry):
             registry.close()
             remedy = "delete the file" if path is not None else "name an empty database"
-            return [f"Using the demo registry {place} again ({remedy} to build it anew)."]
+            return [f"Using the demo registry {place} again ({remedy} to build it anew).", *brought]
     try:
         report = import_files(registry, seed_demo.files(), ImportOptions(lab="Invented laboratory"))
     except BaseException:

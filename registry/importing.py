@@ -102,7 +102,10 @@ def import_files(
     """
     options = options or ImportOptions()
     with ThreadPoolExecutor(1) as pool, ExitStack() as at_the_end:
-        files = [_File(LabFile(path, pool, whole=options.keep_going)) for path in paths]
+        files: list[_File] = []
+        for path in paths:
+            files.append(_File(LabFile(path, pool, whole=options.keep_going)))
+            at_the_end.callback(files[-1].file.close)
         at_the_end.enter_context(child_at_hand(any(file.file.is_large for file in files)))
         return _import(registry, files, options, choices or {}, progress, tell, on_read)
 

@@ -239,7 +239,7 @@ def _store_batch(
         part_of=place.part_of,
         file_name=file,
         sha256=None if packed is None else packed.sha256,
-        compressed=None if packed is None else packed.compressed,
+        parts=() if packed is None else packed.parts(),
         imported_at=now(),
     )
     column_ids = batches.insert_columns(

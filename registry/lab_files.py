@@ -3,28 +3,38 @@
 from __future__ import annotations
 
 import hashlib
-import io
+import tempfile
 import zlib
-from collections.abc import Callable
+from collections.abc import Callable, Iterator
 from concurrent.futures import Executor, Future
+from contextlib import suppress
 from dataclasses import dataclass
 from pathlib import Path
+from typing import IO
 
 from registry.errors import NotFound, PlutonbookError
 from registry.intake import Reading, ReadingOptions, read_all, read_path
-from registry.store.batches import COMPRESSION_LEVEL, compress
+from registry.store.batch_files import COMPRESSION_LEVEL, PART_BYTES
 
 #: Files from this size on are read as a stream, without ever lying in memory whole.
 LARGE_BYTES = 20_000_000
 _BLOCK = 1 << 20
+#: Compressed bytes beyond these wait on disk until they are stored.
+_HELD_BYTES = 8 * PART_BYTES
 
 
 @dataclass(frozen=True)
 class Packed:
-    """The SHA-256 of a file and its compressed bytes."""
+    """The SHA-256 of a file, and its compressed bytes: in memory or, if they are many, in a nameless scratch file."""
 
     sha256: str
-    compressed: bytes
+    compressed: IO[bytes]
+
+    def parts(self) -> Iterator[bytes]:
+        """The compressed bytes, in the pieces they are stored in."""
+        self.compressed.seek(0)
+        while part := self.compressed.read(PART_BYTES):
+            yield part
 
 
 class LabFile:
@@ -61,6 +71,12 @@ class LabFile:
             )
         return packed
 
+    def close(self) -> None:
+        """Give back the scratch file of the compressed bytes."""
+        if not self._packed.cancel():
+            with suppress(OSError):
+                self._packed.result().compressed.close()
+
     def readings(
         self, kind: str | None, options: ReadingOptions, progress: Callable[[str, int, int], None]
     ) -> list[Reading]:
@@ -79,12 +95,19 @@ def _stamp(path: Path) -> tuple[int, int]:
 
 
 def _pack(path: Path, data: bytes | None) -> Packed:
+    digest, packer = hashlib.sha256(), zlib.compressobj(COMPRESSION_LEVEL)
+    packed: IO[bytes] = tempfile.SpooledTemporaryFile(_HELD_BYTES)  # noqa: SIM115 - it goes with the last who holds it
+    for block in _blocks(path, data):
+        digest.update(block)
+        packed.write(packer.compress(block))
+    packed.write(packer.flush())
+    return Packed(digest.hexdigest(), packed)
+
+
+def _blocks(path: Path, data: bytes | None) -> Iterator[bytes]:
     if data is not None:
-        return Packed(hashlib.sha256(data).hexdigest(), compress(data))
-    digest, packer, packed = hashlib.sha256(), zlib.compressobj(COMPRESSION_LEVEL), io.BytesIO()
+        yield data
+        return
     with path.open("rb") as stream:
         while block := stream.read(_BLOCK):
-            digest.update(block)
-            packed.write(packer.compress(block))
-    packed.write(packer.flush())
-    return Packed(digest.hexdigest(), packed.getvalue())
+            yield block

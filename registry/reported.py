@@ -7,7 +7,7 @@ from typing import Any
 
 from registry.intake import Reading
 from registry.intake.refused import source_of
-from registry.store import batches
+from registry.store import batch_files
 from registry.store.reading import sample as sample_reading
 
 
@@ -26,7 +26,7 @@ def reported_lines(connection: Any, sample_id: int) -> list[dict[str, Any]]:
         line["cells"].append({key: row[key] for key in ("position", "header", "analyte", "value", "unit", "qualifier")})
     for batch_id in {key[0] for key in lines}:
         wanted = [line_no for batch, line_no in lines if batch == batch_id]
-        data = batches.file_of(connection, batch_id)
+        data = batch_files.file_of(connection, batch_id)
         texts = {} if data is None else _texts(data, wanted)
         for line_no in wanted:
             lines[batch_id, line_no]["has_file"] = data is not None

@@ -17,7 +17,7 @@ from registry.importing import ImportOptions, import_files
 from registry.intake import spooled
 from registry.judging import read_rules
 from registry.pipeline import empty_chunk
-from registry.store import batches, ready_rows
+from registry.store import batch_files, ready_rows
 from registry.store.engine import Registry, open_registry, reading, writing
 
 #: Invented: two files of a few samples, with a censored value, a repeat, an incomplete and a control sample.
@@ -129,7 +129,7 @@ def test_import_of_a_large_file_reports_its_bytes_and_keeps_them(
     size = path.stat().st_size
     assert ("reading bytes", size, size) in told
     with reading(founded_registry) as connection:
-        assert batches.file_of(connection, 1) == path.read_bytes()
+        assert batch_files.file_of(connection, 1) == path.read_bytes()
     with pytest.raises(InputProblems, match="same bytes"):
         import_files(founded_registry, [path], ImportOptions(create_samples=True, batch="2"))
 

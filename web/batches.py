@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-import io
 from typing import Any
 
 from flask import Blueprint, abort, current_app, flash, redirect, render_template, request, send_file, url_for
@@ -71,8 +70,8 @@ def page(code: str) -> Any:
 @blueprint.get("/batch/file/<path:code>")
 def stored_file(code: str) -> Any:
     """The file as the laboratory sent it, byte for byte."""
-    name, data = batching.stored_file(current_app.extensions["registry"], code)
-    return send_file(io.BytesIO(data), mimetype="application/octet-stream", as_attachment=True, download_name=name)
+    name, file = batching.stored_file(current_app.extensions["registry"], code)
+    return send_file(file, mimetype="application/octet-stream", as_attachment=True, download_name=name)
 
 
 @blueprint.get("/batch/<any(withdraw, restore):change>/<path:code>")

@@ -3,17 +3,14 @@
 from __future__ import annotations
 
 import hashlib
-import zlib
-from collections.abc import Mapping, Sequence
+from collections.abc import Iterable, Mapping, Sequence
 from typing import Any
 
 import sqlalchemy as sa
 
-from registry.errors import NotFound, PlutonbookError
-from registry.store import tables
+from registry.errors import NotFound
+from registry.store import batch_files, tables
 
-#: Of zlib: its quickest.
-COMPRESSION_LEVEL = 1
 STATES = ("active", "superseded", "withdrawn")
 _batch, _column = tables.batch, tables.batch_column
 
@@ -24,7 +21,7 @@ def insert_batch(
     code: str,
     imported_at: str,
     data: bytes | None = None,
-    compressed: bytes | None = None,
+    parts: Iterable[bytes] = (),
     sha256: str | None = None,
     lab: str | None = None,
     certificate: str | None = None,
@@ -36,13 +33,14 @@ def insert_batch(
 ) -> int:
     """Insert an active batch; its id. ``data`` are the file's bytes, kept compressed; their hash is computed here.
 
-    ``compressed``: what :func:`compress` made of them, where that was done beforehand; then their ``sha256`` is enough.
+    ``parts``: the pieces of the compressed bytes, where they were compressed beforehand; then ``sha256`` is enough.
     """
     if data is not None:
         computed = hashlib.sha256(data).hexdigest()
         if sha256 is not None and sha256 != computed:
             raise ValueError(f"batch '{code}': the hash given is {sha256}, that of the bytes is {computed}")
         sha256 = computed
+        parts = batch_files.pieces(batch_files.compress(data))
     inserted = connection.execute(
         sa.insert(_batch).values(
             code=code,
@@ -54,17 +52,13 @@ def insert_batch(
             imported_by=imported_by,
             file_name=file_name,
             sha256=sha256,
-            file_bytes=compressed if compressed is not None or data is None else compress(data),
             state="active",
             part_of=part_of,
         )
     )
-    return int(inserted.inserted_primary_key[0])  # type: ignore[index]
-
-
-def compress(data: bytes) -> bytes:
-    """The bytes of a file as they are kept (zlib, its quickest level: a lab file still shrinks to about a third)."""
-    return zlib.compress(data, COMPRESSION_LEVEL)
+    batch_id = int(inserted.inserted_primary_key[0])  # type: ignore[index]
+    batch_files.insert_file(connection, batch_id, parts)
+    return batch_id
 
 
 def insert_columns(connection: sa.Connection, batch_id: int, columns: Sequence[Mapping[str, Any]]) -> list[int]:
@@ -150,17 +144,6 @@ def set_digestions(connection: sa.Connection, batch_id: int, digestions: Mapping
             raise NotFound(f"the batch has no column at position {position}")
         if found != digestion:
             connection.execute(sa.update(_column).where(column).values(digestion=digestion))
-
-
-def file_of(connection: sa.Connection, batch_id: int) -> bytes | None:
-    """The bytes of the file a batch was imported from; PlutonbookError where they are damaged."""
-    stored = connection.scalar(sa.select(_batch.c.file_bytes).where(_batch.c.batch_id == batch_id))
-    if stored is None:
-        return None
-    try:
-        return zlib.decompress(stored)
-    except zlib.error as error:
-        raise PlutonbookError(f"the stored file of batch {batch_id} is damaged: {error}") from error
 
 
 def _described() -> list[Any]:

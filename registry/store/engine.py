@@ -22,7 +22,7 @@ from registry.errors import NotFound, PlutonbookError, RegistryBusy, UsageError
 from registry.store import faults, holder
 
 #: The schema this code reads and writes; the newest revision of ``migrations`` (a test compares both).
-HEAD_REVISION = "0001"
+HEAD_REVISION = "0002"
 #: Marks the file as a registry ("PLUT"), for the command ``file`` and for :func:`open_registry`.
 APPLICATION_ID = 0x504C5554
 #: A writer that waits longer than this is told what holds the registry.

@@ -2,14 +2,13 @@
 
 from __future__ import annotations
 
-import hashlib
-import zlib
 from typing import Any
 
 import sqlalchemy as sa
 from alembic.runtime.migration import MigrationContext
 
-from registry.store import dialect_postgresql, dialect_sqlite, tables
+from registry.errors import PlutonbookError
+from registry.store import batch_files, dialect_postgresql, dialect_sqlite, tables
 from registry.store.engine import HEAD_REVISION
 from registry.store.sheets import CONTROL_KINDS, SHEETS
 
@@ -148,18 +147,14 @@ def _orphans(connection: sa.Connection) -> list[Finding]:
 
 def _files(connection: sa.Connection) -> list[Finding]:
     """Stored certificate files whose bytes no longer have the hash they were imported with."""
-    batch = tables.batch
     found = []
-    codes = connection.execute(
-        sa.select(batch.c.batch_id, batch.c.code, batch.c.sha256)
-        .where(batch.c.file_bytes.is_not(None))
-        .order_by(batch.c.batch_id)
-    ).fetchall()
-    for batch_id, code, sha256 in codes:
-        stored = connection.scalar(sa.select(batch.c.file_bytes).where(batch.c.batch_id == batch_id))
+    batch = tables.batch
+    for batch_id in batch_files.kept_files(connection):
+        query = sa.select(batch.c.code, batch.c.sha256).where(batch.c.batch_id == batch_id)
+        code, sha256 = connection.execute(query).one_or_none() or (f"with the id {batch_id}", None)
         try:
-            intact = hashlib.sha256(zlib.decompress(stored or b"")).hexdigest() == sha256
-        except zlib.error:
+            intact = batch_files.hash_of(connection, batch_id) == sha256
+        except PlutonbookError:
             intact = False
         if not intact:
             found.append(

@@ -215,6 +215,7 @@ CLEANED = {
     "batch": (
         ("aliquot", "batch_id = {row}.batch_id"),
         ("batch_column", "batch_id = {row}.batch_id"),
+        ("batch_file", "batch_id = {row}.batch_id"),
         ("control_outcome", "batch_id = {row}.batch_id"),
         ("control_state", "batch_id = {row}.batch_id"),
         ("stale_batch", "batch_id = {row}.batch_id"),

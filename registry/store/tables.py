@@ -58,6 +58,7 @@ __all__ = [
     "audit_entry",
     "batch",
     "batch_column",
+    "batch_file",
     "cause_kind",
     "column_guide_row",
     "composition",
@@ -184,7 +185,6 @@ batch = table(
     *words("imported_at", nullable=False),
     *words("imported_by file_name"),
     sa.Column("sha256", Words, unique=True),
-    sa.Column("file_bytes", Bytes),
     sa.Column("state", Words, nullable=False, server_default="active"),
     link("superseded_by", "batch.batch_id", ondelete="SET NULL"),
     link("part_of", "batch.batch_id", ondelete="SET NULL"),
@@ -193,6 +193,16 @@ batch = table(
 sa.Index(None, batch.c.certificate)
 sa.Index(None, batch.c.superseded_by)
 sa.Index(None, batch.c.part_of)
+#: The file as it was sent, compressed, in parts.
+batch_file = table(
+    "batch_file",
+    sa.Column(
+        "batch_id", Whole, sa.ForeignKey("batch.batch_id", ondelete="CASCADE"), primary_key=True, autoincrement=False
+    ),
+    sa.Column("part_no", Whole, primary_key=True, autoincrement=False),
+    sa.Column("content", Bytes, nullable=False),
+    counted=False,
+)
 batch_column = table(
     "batch_column",
     own_id("batch_column_id"),

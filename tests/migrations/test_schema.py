@@ -17,6 +17,9 @@ from registry.store import schema, tables
 from registry.store.engine import HEAD_REVISION, Registry, open_registry, writing
 from registry.store.sheets import SHEETS
 
+#: The revision after the newest, of the tests' own.
+PLANTED = f"{int(HEAD_REVISION) + 1:04d}"
+
 
 def scripts() -> ScriptDirectory:
     return ScriptDirectory.from_config(schema.alembic_config())
@@ -86,7 +89,7 @@ def test_head_equals_the_tables_on_postgresql(postgresql_registry: Registry) -> 
         assert compare_metadata(context, tables.metadata) == []
         types = connection.exec_driver_sql(
             "SELECT DISTINCT data_type, collation_name FROM information_schema.columns WHERE table_schema = 'public' "
-            "AND table_name IN ('sample', 'derived', 'batch', 'result') ORDER BY 1, 2"
+            "AND table_name IN ('sample', 'derived', 'batch', 'batch_file', 'result') ORDER BY 1, 2"
         ).fetchall()
     assert [tuple(row) for row in types] == [
         ("bigint", None),
@@ -139,8 +142,8 @@ def planted_revision(folder: Path, body: str) -> Path:
     (folder / "env.py").write_text((source / "env.py").read_text(encoding="utf-8"), encoding="utf-8")
     for script in scripts().walk_revisions():
         (versions / Path(script.path).name).write_text(Path(script.path).read_text(encoding="utf-8"), encoding="utf-8")
-    (versions / "0002_add_planted_table.py").write_text(
-        f'"""Planted."""\nfrom alembic import op\nrevision = "0002"\ndown_revision = "{HEAD_REVISION}"\n'
+    (versions / f"{PLANTED}_add_planted_table.py").write_text(
+        f'"""Planted."""\nfrom alembic import op\nrevision = "{PLANTED}"\ndown_revision = "{HEAD_REVISION}"\n'
         f"def upgrade():\n    op.execute('CREATE TABLE planted (x INTEGER)')\n    {body}\n"
         "def downgrade():\n    op.execute('DROP TABLE planted')\n",
         encoding="utf-8",
@@ -213,7 +216,7 @@ def test_upgrade_of_an_older_registry_makes_a_backup_and_keeps_every_row(
 ) -> None:
     fill(sqlite_registry)
     with_planted(monkeypatch, planted_revision(tmp_path / "planted", "pass"))
-    monkeypatch.setattr(schema, "HEAD_REVISION", "0002")
+    monkeypatch.setattr(schema, "HEAD_REVISION", PLANTED)
     with sqlite_registry.reader.connect() as connection:
         before = counts(connection)
     earlier, saved = schema.upgrade(sqlite_registry)
@@ -224,7 +227,7 @@ def test_upgrade_of_an_older_registry_makes_a_backup_and_keeps_every_row(
         assert connection.exec_driver_sql("SELECT count(*) FROM planted").scalar() == 0
         assert connection.exec_driver_sql("PRAGMA foreign_key_check").fetchall() == []
         assert connection.exec_driver_sql("SELECT count(*) FROM sample_sheet").scalar() == 2
-    assert schema.revision(sqlite_registry) == "0002"
+    assert schema.revision(sqlite_registry) == PLANTED
     copied = open_registry(saved)
     assert schema.revision(copied) == HEAD_REVISION
     with copied.reader.connect() as connection:

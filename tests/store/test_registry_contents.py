@@ -4,7 +4,6 @@ from __future__ import annotations
 
 import hashlib
 import sqlite3
-import zlib
 from pathlib import Path
 from typing import Any
 
@@ -16,7 +15,7 @@ from registry.founding import build_demo, found
 from registry.importing import ImportOptions, import_files
 from registry.petrology.analytes import CHOSEN_INDEX
 from registry.refresh import refresh_registry
-from registry.store import batches, bulk, integrity, loading
+from registry.store import batch_files, batches, bulk, integrity, loading
 from registry.store.engine import Registry, open_registry, reading, writing
 from registry.store.sheets import DERIVED_SHEETS, SHEETS
 
@@ -49,7 +48,7 @@ def test_batch_keeps_its_file_and_hash(any_registry: Registry) -> None:
         batch_id = batches.insert_batch(
             connection, code="K1", imported_at="2026-01-01T00:00:00Z", data=DATA, certificate="C-77", file_name="k1.csv"
         )
-        assert batches.file_of(connection, batch_id) == DATA
+        assert batch_files.file_of(connection, batch_id) == DATA
         batch = batches.find_by_hash(connection, hashlib.sha256(DATA).hexdigest())
         assert batch == batches.find_batch(connection, "K1") == batches.find_by_certificate(connection, "C-77")
         assert (batch["batch"], batch["state"], batch["file_name"]) == ("K1", "active", "k1.csv")
@@ -61,14 +60,28 @@ def test_batch_keeps_its_file_and_hash(any_registry: Registry) -> None:
 def test_damaged_stored_file_is_told(any_registry: Registry) -> None:
     with writing(any_registry) as connection:
         batch_id = batches.insert_batch(connection, code="K1", imported_at="2026-01-01T00:00:00Z", data=DATA)
-        connection.exec_driver_sql("UPDATE batch SET file_bytes = NULL")
-        assert batches.file_of(connection, batch_id) is None
+        connection.exec_driver_sql("DELETE FROM batch_file")
+        assert batch_files.file_of(connection, batch_id) is None
     with writing(any_registry) as connection:
         from registry.store import tables
 
-        connection.execute(tables.batch.update().values(file_bytes=b"not compressed"))
+        connection.execute(tables.batch_file.insert().values(batch_id=batch_id, part_no=0, content=b"not compressed"))
         with pytest.raises(PlutonbookError, match="the stored file of batch 1 is damaged"):
-            batches.file_of(connection, batch_id)
+            batch_files.file_of(connection, batch_id)
+        connection.execute(tables.batch_file.update().values(content=batch_files.compress(DATA)[:-1]))
+        with pytest.raises(PlutonbookError, match="the stored file of batch 1 is damaged: its end is missing"):
+            batch_files.file_of(connection, batch_id)
+
+
+def test_large_file_is_kept_in_parts_and_read_back_whole(any_registry: Registry) -> None:
+    data = np.random.default_rng(1).bytes(3 * batch_files.PART_BYTES)  # invented, cannot be compressed
+    with writing(any_registry) as connection:
+        batch_id = batches.insert_batch(connection, code="K1", imported_at="2026-01-01T00:00:00Z", data=data)
+        assert connection.exec_driver_sql("SELECT count(*) FROM batch_file").scalar() == 4
+        assert batch_files.file_of(connection, batch_id) == data
+        assert batch_files.hash_of(connection, batch_id) == hashlib.sha256(data).hexdigest()
+        connection.exec_driver_sql("DELETE FROM batch WHERE batch_id = 1")
+        assert connection.exec_driver_sql("SELECT count(*) FROM batch_file").scalar() == 0
 
 
 def test_withdrawn_batch_gives_no_results_until_it_is_restored(any_registry: Registry) -> None:
@@ -212,7 +225,7 @@ def test_check_names_what_insert_or_replace_broke(demo: Registry) -> None:
 @pytest.mark.parametrize(
     ("edit", "expected"),
     [
-        ("UPDATE batch SET file_bytes = x'00' WHERE batch_id = 1", "the stored file does not have the hash"),
+        ("UPDATE batch_file SET content = x'00' WHERE batch_id = 1", "the stored file does not have the hash"),
         ("UPDATE batch SET sha256 = 'abc' WHERE batch_id = 1", "the stored file does not have the hash"),
         ("DROP TRIGGER plutonbook_stale_sample_update", "trigger plutonbook_stale_sample_update: is not there"),
         ("DROP VIEW norm_sheet", "view norm_sheet: is not there"),
@@ -326,8 +339,9 @@ def test_stored_bytes_are_the_file_itself(demo: Registry) -> None:
 
     files = {path.name: path.read_bytes() for path in seed_demo.files()}
     with reading(demo) as connection:
-        rows = connection.exec_driver_sql("SELECT file_name, sha256, file_bytes FROM batch").fetchall()
+        rows = connection.exec_driver_sql("SELECT file_name, sha256, batch_id FROM batch").fetchall()
+        kept = {row[0]: batch_files.file_of(connection, row[2]) for row in rows}
     assert {row[0] for row in rows} == {name for name in files if name.startswith("results_")}
-    for name, sha256, stored in rows:
-        assert zlib.decompress(stored) == files[name]
+    for name, sha256, _ in rows:
+        assert kept[name] == files[name]
         assert hashlib.sha256(files[name]).hexdigest() == sha256

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import io
 import sqlite3
 from collections.abc import Iterator
 from pathlib import Path
@@ -9,6 +10,8 @@ from typing import Any
 
 import pytest
 
+from registry import batching
+from registry.store import batch_files
 from tests.web.import_site import MAJORS, Site, form_fields
 from web import control_charts
 
@@ -138,3 +141,12 @@ def test_charts_stand_with_the_worst_state_first() -> None:
     controls = {"analytes": [analyte([], "passes"), analyte([], None), analyte([point(3, 4, "failed")], "fails")]}
     assert list(control_charts.charts(controls)) == ["fails", "passes", "not judged"]
     assert control_charts.conspicuous(controls)[0] == 1
+
+
+def test_large_file_of_a_batch_is_handed_out_from_disk(site: Site, monkeypatch: pytest.MonkeyPatch) -> None:
+    monkeypatch.setattr(batching, "_IN_MEMORY_BYTES", 0)
+    monkeypatch.setattr(batch_files, "PART_BYTES", 16)
+    name, file = batching.stored_file(site.app.extensions["registry"], "majors")
+    with file:
+        assert not isinstance(file, io.BytesIO)
+        assert (name, file.read()) == ("majors.csv", MAJORS.encode())

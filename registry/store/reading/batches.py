@@ -34,7 +34,8 @@ def find_batch(connection: Connection, code: str) -> dict[str, Any] | None:
                 """
                 SELECT batch.batch_id, batch.code, batch.lab, batch.certificate, batch.received_on, batch.reported_on,
                     batch.imported_at, batch.imported_by, batch.file_name, batch.sha256, batch.state,
-                    newer.code AS superseded_by, whole.code AS part_of, batch.file_bytes IS NOT NULL AS has_file
+                    newer.code AS superseded_by, whole.code AS part_of,
+                    EXISTS (SELECT 1 FROM batch_file WHERE batch_file.batch_id = batch.batch_id) AS has_file
                 FROM batch LEFT JOIN batch AS newer ON newer.batch_id = batch.superseded_by
                 LEFT JOIN batch AS whole ON whole.batch_id = batch.part_of
                 WHERE batch.code = :code
