@@ -15,11 +15,11 @@ from registry.computing import child_at_hand
 from registry.errors import InputProblems, Problem, UsageError
 from registry.import_reports import FileReport, ImportReport, counted, understood_of
 from registry.importing_certificates import store_certificates
+from registry.importing_codes import almost_known, unknown_codes
 from registry.importing_controls import called_otherwise
 from registry.importing_faults import Rest, may_bring_anything, prefixed
-from registry.importing_results import LISTED_CODES, StoredBatch, store_results, unknown_codes
+from registry.importing_results import StoredBatch, store_results
 from registry.intake import KINDS, MasterTable, Reading, ReadingOptions
-from registry.intake.spooled import parts_of
 from registry.intake_choices import described_columns
 from registry.keeping_going import SetAside
 from registry.lab_files import LabFile
@@ -27,7 +27,6 @@ from registry.precedence import Earlier, alternatives_within, look_after, look_b
 from registry.refresh import changes_since, drained_samples, last_change
 from registry.store import masters
 from registry.store.engine import Registry, writing
-from registry.store.near_codes import near_misses
 from registry.store.reading.changes import verdict_changes
 
 #: Called with what is being done (reading, storing, computing), how much of it is done, and of how much.
@@ -216,7 +215,7 @@ def _store_one(
         if options.dry_run:
             report.alternatives = alternatives_within(reading.results)
         if options.create_samples:
-            report.on_storing += _almost_known(connection, reading, options.code_prefix)
+            report.on_storing += almost_known(connection, reading, options.code_prefix)
         report.results, done, faults = store_results(
             connection, reading, contents.file, options, progress, contents.batch
         )
@@ -244,30 +243,6 @@ def _before(connection: Any, reading: Reading, options: ImportOptions) -> Earlie
         return None
     codes = {f"{options.code_prefix}{code}" for code in reading.results.sample_codes}
     return look_before(connection, masters.sample_ids(connection, codes).values())
-
-
-def _almost_known(connection: Any, reading: Reading, prefix: str) -> list[Problem]:
-    """Remarks on new sample codes that registered ones differ from only in case, spaces, dashes or leading zeros."""
-    table = reading.results
-    assert table is not None
-    registered = list(masters.all_sample_codes(connection))
-    remarks: list[Problem] = []
-    start = 0
-    for part in parts_of(table.sample_codes) if registered else ():
-        codes = [f"{prefix}{code}" for code in part]
-        rows = {code: start + row for row, code in reversed(list(enumerate(codes)))}
-        start += len(codes)
-        remarks += [
-            Problem(
-                reading.file, "a registered sample is written almost the same; this one is added beside it",
-                row=int(table.line_no[rows[code]]), column=table.sample_header or None, found=code,
-                expected=f"perhaps '{close[0]}'", remedy="correct the code if they are the same", severity="warning",
-            )
-            for code, close in near_misses(codes, registered).items()
-        ]  # fmt: skip
-        if len(remarks) >= LISTED_CODES:
-            break
-    return remarks[:LISTED_CODES]
 
 
 def _upserted(

@@ -7,7 +7,6 @@ from typing import Any
 
 import numpy as np
 
-from registry.controlling import kinds_of_new, read_patterns
 from registry.intake import ResultTable
 from registry.petrology.analytes import QUALIFIER_BELOW
 from registry.quality.assessment import Column
@@ -33,16 +32,12 @@ def spoken_of(codes: Iterable[str], table: ResultTable, prefix: str) -> dict[str
     return said
 
 
-def add_samples(connection: Any, missing: list[str], said: dict[str, Spoken], known: dict[str, int]) -> int:
-    """Add samples that the registry lacks, controls as such, link duplicates, fill ``known``; how many controls."""
-    kinds = kinds_of_new(missing, said, read_patterns(connection))
-    for kind, codes in kinds.items():
-        known.update(masters.add_samples(connection, codes, kind))
-    duplicates = {code: said[code].duplicate_of for code in kinds.get("duplicate", ()) if code in said}
+def link_duplicates(connection: Any, new: set[str], said: dict[str, Spoken], known: dict[str, int]) -> None:
+    """Link the new samples that the certificate calls duplicates with their originals, where those are registered."""
+    duplicates = {code: said[code].duplicate_of for code in said if code in new and said[code].kind == "duplicate"}
     originals = masters.sample_ids(connection, {of for of in duplicates.values() if of})
     linked = {known[code]: originals[of] for code, of in duplicates.items() if of in originals and of != code}
     quality_rows.set_originals(connection, linked)
-    return len(missing) - len(kinds.get("unknown", ()))
 
 
 def call_known_controls(connection: Any, said: dict[str, Spoken], known: dict[str, int], new: set[str]) -> None:
@@ -66,9 +61,9 @@ def called_otherwise(connection: Any, table: ResultTable, prefix: str) -> list[s
     if not said:
         return []
     lines: dict[str, int] = {}
-    for code, text, line in zip(table.sample_codes, table.control_text, table.line_no.tolist(), strict=True):
-        if text and f"{prefix}{code}" in said:
-            lines.setdefault(f"{prefix}{code}", line)
+    for place, (code, text) in enumerate(zip(table.sample_codes, table.control_text, strict=True)):
+        if text and f"{prefix}{code}" in said and f"{prefix}{code}" not in lines:
+            lines[f"{prefix}{code}"] = int(table.line_no[place])
     kinds = quality_rows.kinds_of(connection, said)
     sentences = [
         f"line {lines[code]}: the certificate calls {code} a {spoken.kind.replace('_', ' ')}, the sample list says "

@@ -10,7 +10,7 @@ from dataclasses import dataclass, field
 from typing import Any
 
 from registry.errors import Problem
-from registry.importing_results import first_of, unknown_codes
+from registry.importing_codes import first_of, unknown_codes
 from registry.intake import MasterTable, Reading
 from registry.intake.refused import without_lines
 from registry.store import masters

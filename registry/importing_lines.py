@@ -11,10 +11,11 @@ from typing import Any
 
 import numpy as np
 
-from registry.importing_controls import add_samples, call_known_controls, spoken_of
+from registry.controlling import kinds_of_new, read_patterns
+from registry.importing_controls import call_known_controls, link_duplicates, spoken_of
 from registry.intake import ResultTable
 from registry.intake.spooled import parts_of
-from registry.quality.recognising import Spoken
+from registry.quality.recognising import Patterns, Spoken
 from registry.store import masters
 from registry.store.sheets import CONTROL_KINDS
 
@@ -28,12 +29,20 @@ class Lines:
     """The lines of a table, (n,): sample ids int64 (0 where the code is not registered) and, later, the rest."""
 
     sample_ids: np.ndarray
-    #: codes that the registry lacks, each once, in file order
-    missing: list[str]
-    said: dict[str, Spoken] = field(default_factory=dict)
+    #: what the certificate says of samples that it calls controls, by code
+    said: dict[str, Spoken]
+    #: samples that were added, and how many of them as controls
+    added: int = 0
+    new_controls: int = 0
     repeat_no: np.ndarray = field(default_factory=lambda: np.zeros(0, dtype=np.int32))
     is_control: np.ndarray = field(default_factory=lambda: np.zeros(0, dtype=bool))
+    _new_said: set[str] = field(default_factory=set)
     _order: np.ndarray = field(default_factory=lambda: np.zeros(0, dtype=np.int64))
+
+    @property
+    def any_missing(self) -> bool:
+        """Whether there are codes that the registry lacks."""
+        return not self.sample_ids.all()
 
     @property
     def repeats(self) -> int:
@@ -44,15 +53,11 @@ class Lines:
         """Whether there is something to judge the batch by."""
         return bool(self.is_control.any() or (self.repeat_no > 0).any())
 
-    def settle_controls(self, connection: Any, table: ResultTable, prefix: str) -> int:
-        """Add the samples that are missing and settle which lines are controls and repeats; how many new controls."""
-        self.said = spoken_of((f"{prefix}{code}" for code in table.sample_codes), table, prefix)
+    def settle_controls(self, connection: Any) -> None:
+        """Settle which lines are controls and repeats, once every sample is registered."""
         known = masters.sample_ids(connection, self.said)
-        new_controls = 0
-        if self.missing:
-            new_controls = add_samples(connection, self.missing, self.said, known)
-            self._fill(table, prefix, known)
-        call_known_controls(connection, self.said, known, set(self.missing))
+        link_duplicates(connection, self._new_said, self.said, known)
+        call_known_controls(connection, self.said, known, self._new_said)
         controls = masters.samples_of_kinds(connection, CONTROL_KINDS)
         # a rock that the certificate calls a blank stays a rock; its second line is a repeat
         copies = [code for code, spoken in self.said.items() if spoken.duplicate_of not in (None, code)]
@@ -60,15 +65,17 @@ class Lines:
         self.is_control = np.isin(self.sample_ids, np.union1d(controls, spoken))
         self._order = np.argsort(self.sample_ids, kind="stable")
         self.repeat_no = _repeat_numbers(self.sample_ids, self._order)
-        return new_controls
 
-    def _fill(self, table: ResultTable, prefix: str, known: dict[str, int]) -> None:
-        """The ids of samples that were added meanwhile."""
-        start = 0
-        for part in parts_of(table.sample_codes):
-            places = start + np.flatnonzero(self.sample_ids[start : start + len(part)] == 0)
-            self.sample_ids[places] = [known[f"{prefix}{part[place - start]}"] for place in places.tolist()]
-            start += len(part)
+    def add(self, connection: Any, codes: list[str], patterns: Patterns) -> dict[str, int]:
+        """Add samples that the registry lacks, each code once; their ids by code."""
+        kinds = kinds_of_new(codes, self.said, patterns)
+        known: dict[str, int] = {}
+        for kind, alike in kinds.items():
+            known |= masters.add_samples(connection, alike, kind)
+        self.added += len(codes)
+        self.new_controls += len(codes) - len(kinds.get("unknown", ()))
+        self._new_said.update(self.said.keys() & known.keys())
+        return known
 
     def kinds(self, part: slice) -> np.ndarray:
         """``original``, ``repeat`` or ``control`` of some lines."""
@@ -94,19 +101,21 @@ class Lines:
         return self._order[np.repeat(low, counts) + within], position
 
 
-def resolve(connection: Any, table: ResultTable, prefix: str) -> Lines:
-    """Look the sample codes up."""
-    ids = np.zeros(len(table), dtype=np.int64)
-    missing: dict[str, None] = {}
+def resolve(connection: Any, table: ResultTable, prefix: str, add: bool = False) -> Lines:
+    """Look the sample codes up, part by part; with ``add`` those that the registry lacks are added."""
+    said = spoken_of((f"{prefix}{code}" for code in table.sample_codes), table, prefix)
+    lines = Lines(np.zeros(len(table), dtype=np.int64), said)
+    patterns = read_patterns(connection)
     start = 0
     for part in parts_of(table.sample_codes):
         codes = [f"{prefix}{code}" for code in part]
         known = masters.sample_ids(connection, set(codes))
-        ids[start : start + len(codes)] = [known.get(code, 0) for code in codes]
-        if len(known) < len(codes):
-            missing |= dict.fromkeys(code for code in codes if code not in known)
+        if add and len(known) < len(codes):
+            missing = [code for code in dict.fromkeys(codes) if code not in known]
+            known |= lines.add(connection, missing, patterns) if missing else {}
+        lines.sample_ids[start : start + len(codes)] = [known.get(code, 0) for code in codes]
         start += len(codes)
-    return Lines(ids, list(missing))
+    return lines
 
 
 def raw_parts(ids: np.ndarray) -> Iterator[np.ndarray]:

@@ -8,30 +8,28 @@ from typing import TYPE_CHECKING, Any
 
 import numpy as np
 
-from registry import controlling
+from registry import auditing, controlling
 from registry.batch_places import Place, place_of
 from registry.choice import Block, ColumnUse
 from registry.clock import now
 from registry.computing import CHILDS_CHUNK_SIZE, WORTH_A_CHILD, Computations
 from registry.errors import Problem
+from registry.importing_codes import first_of, unknown_codes
 from registry.importing_controls import columns_that_disagree, limit_reported
 from registry.importing_lines import Lines, raw_parts, resolve
 from registry.intake import Reading, ResultTable
-from registry.intake.spooled import SpooledArray, parts_of
+from registry.intake.spooled import SpooledArray
 from registry.judging import read_rules
 from registry.lab_files import LabFile, Packed
 from registry.pipeline import CHUNK_SIZE, Chunk, Computed
 from registry.refresh import chunk_of, composed, write_fresh
-from registry.store import batches, bulk, loading, masters, ready_rows, stale
-from registry.store.near_codes import pattern_of
+from registry.store import batches, bulk, loading, ready_rows, stale
 
 if TYPE_CHECKING:
     from registry.importing import ImportOptions
 
 #: Lines of results stored between two reports of progress.
 LINES_AT_A_TIME = 8192
-#: Remarks on almost equal sample codes that are listed one by one; unknown codes, before the rest is counted.
-LISTED_CODES, UNKNOWN_LISTED = 20, 5
 
 
 @dataclass(frozen=True)
@@ -95,12 +93,12 @@ def store_results(
         place, problems = place_of(connection, reading.file, table, packed.sha256, options)
     else:
         place, problems = Place(f"{within.code}/{reading.part}", part_of=within.batch_id), []
-    lines = resolve(connection, table, options.code_prefix)
-    if lines.missing and not options.create_samples:
+    lines = resolve(connection, table, options.code_prefix, add=options.create_samples)
+    if lines.any_missing and not options.create_samples:
         problems += first_of(unknown_codes(connection, reading.file, table, options.code_prefix), reading.file)
     if problems:
         return ResultsReport(place.code, 0, 0, 0, 0, 0), np.zeros(0, dtype=np.int64), problems
-    new_controls = lines.settle_controls(connection, table, options.code_prefix)
+    lines.settle_controls(connection)
     fresh_ids = _without_results(connection, lines.sample_ids)
     rules = read_rules(connection)
     if lines.controlled and rules.conventions.failed_control == "hold":
@@ -109,7 +107,7 @@ def store_results(
     at_a_time = CHILDS_CHUNK_SIZE if by_child else CHUNK_SIZE
     chunks = _fresh_chunks(connection, table, lines, fresh_ids, at_a_time)
     tables = ready_rows.statements_of(connection)
-    report = ResultsReport(place.code, len(table), 0, 0, len(lines.missing), lines.repeats, new_controls)
+    report = ResultsReport(place.code, len(table), 0, 0, lines.added, lines.repeats, lines.new_controls)
     done = 0
 
     def write(chunk: Chunk, outcome: Computed | bytes) -> None:
@@ -154,60 +152,6 @@ def store_results(
     return report, fresh_ids, []
 
 
-def unknown_codes(connection: Any, file: str, table: ResultTable, prefix: str = "") -> list[Problem]:
-    """One problem a line whose sample code is not in the registry, with a near code where there is one."""
-    unknown: dict[int, str] = {}
-    start = 0
-    for part in parts_of(table.sample_codes):
-        codes = [f"{prefix}{code}" for code in part]
-        known = masters.sample_ids(connection, set(codes))
-        unknown.update((start + place, code) for place, code in enumerate(codes) if code not in known)
-        start += len(codes)
-    near = masters.near_codes(connection, list(unknown.values())[:LISTED_CODES])
-    problems = []
-    for position, code in unknown.items():
-        hint = _hint(code, near.get(code))
-        problems.append(
-            Problem(
-                file,
-                "this sample is not in the registry",
-                row=int(table.line_no[position]),
-                column=table.sample_header or None,
-                found=code,
-                expected="the code of a registered sample",
-                remedy=hint + "import the sample list first, or use --create-samples to add it with the kind 'unknown'",
-            )
-        )
-    return problems
-
-
-def _hint(code: str, near: str | None) -> str:
-    """A registered code that only has a letter more or less at its end is like this one, and perhaps another sample."""
-    if near is None:
-        return ""
-    short, long = sorted((code.casefold(), near.casefold()), key=len)
-    if long.startswith(short) and long[len(short) :].isalpha():
-        return f"the nearest code is '{near}', perhaps of another sample; "
-    return f"did you mean '{near}'? "
-
-
-def first_of(problems: list[Problem], file: str) -> list[Problem]:
-    """The first problems of many unknown codes, and one that counts the rest and says how their codes look."""
-    if len(problems) <= UNKNOWN_LISTED + 1:
-        return problems
-    rest = problems[UNKNOWN_LISTED:]
-    codes = [problem.found or "" for problem in rest]
-    more = Problem(
-        file,
-        f"{len(rest):,} more lines have sample codes that are not in the registry",
-        column=rest[0].column,
-        found=pattern_of(codes),
-        expected="the codes of registered samples",
-        remedy="import the sample list first, or use --create-samples",
-    )
-    return [*problems[:UNKNOWN_LISTED], more]
-
-
 def _count(number: int, word: str) -> str:
     return f"{number:,} {word}" if number == 1 else f"{number:,} {word}s"
 
@@ -241,6 +185,7 @@ def _store_batch(
         sha256=None if packed is None else packed.sha256,
         parts=() if packed is None else packed.parts(),
         imported_at=now(),
+        imported_by=auditing.who(),
     )
     column_ids = batches.insert_columns(
         connection,

@@ -4,9 +4,10 @@ from __future__ import annotations
 
 import re
 import unicodedata
-from collections import Counter
-from collections.abc import Iterable, Mapping, Sequence
+from collections.abc import Callable, Iterable, Mapping, Sequence
 from difflib import get_close_matches
+
+import numpy as np
 
 
 def loose_code(code: str) -> str:
@@ -31,6 +32,34 @@ def near_misses(codes: Iterable[str], known: Iterable[str]) -> dict[str, list[st
     for code in sorted(code for code in exact if _coarse(code) in coarse):
         loose.setdefault(loose_code(code), []).append(code)
     return {code: close for code in unknown if (close := loose.get(loose_code(code)))}
+
+
+class KnownCodes:
+    """Known codes in a few bytes each, to look many new ones up by: ``codes()`` goes through them, again and again."""
+
+    def __init__(self, codes: Callable[[], Iterable[str]]) -> None:
+        self._codes = codes
+        exact = np.fromiter(map(hash, codes()), np.int64)
+        coarse = np.fromiter((hash(_coarse(code)) for code in codes()), np.int64, len(exact))
+        self._exact, self._coarse = np.sort(exact), np.sort(coarse)
+
+    def __len__(self) -> int:
+        return len(self._exact)
+
+    def near_misses(self, codes: Sequence[str]) -> dict[str, list[str]]:
+        """As ``near_misses``; the known codes are gone through only where there may be one."""
+        unknown = _outside([hash(code) for code in codes], self._exact)
+        new = [codes[place] for place in np.flatnonzero(unknown).tolist()]
+        strange = _outside([hash(_coarse(code)) for code in new], self._coarse)
+        perhaps = [new[place] for place in np.flatnonzero(~strange).tolist()]
+        return near_misses(perhaps, self._codes()) if perhaps else {}
+
+
+def _outside(hashes: list[int], known: np.ndarray) -> np.ndarray:
+    """Which of the hashes are not among the known ones (ascending)."""
+    wanted = np.array(hashes, dtype=np.int64)
+    place = np.minimum(np.searchsorted(known, wanted), max(0, len(known) - 1))
+    return known[place] != wanted if len(known) else np.ones(len(wanted), dtype=bool)
 
 
 _LEFT_OUT = str.maketrans("", "", "0 -_/\\.\t\u00a0" + "".join(map(chr, range(0x2010, 0x2016))) + "\u2212")
@@ -90,14 +119,21 @@ def _one_digit_less(code: str, by_fold: Mapping[str, str]) -> str | None:
     return next((by_fold[one] for one in shorter if one in by_fold), None)
 
 
-def pattern_of(codes: Sequence[str]) -> str:
-    """How most of the codes look, digits as ``#``: ``Q### (Q001 to Q240)``, and how many look otherwise."""
-    shapes = Counter(re.sub(r"\d", "#", code) for code in codes)
-    shape, number = shapes.most_common(1)[0]
-    alike = sorted(code for code in codes if re.sub(r"\d", "#", code) == shape)
-    said = alike[0] if alike[0] == alike[-1] else f"{alike[0]} to {alike[-1]}"
-    text = said if shape == alike[0] else f"{shape} ({said})"
-    return text if number == len(codes) else f"{text} and {len(codes) - number:,} of other forms"
+def pattern_of(codes: Iterable[str]) -> tuple[str, int]:
+    """How most of the codes look, digits as ``#``: ``Q### (Q001 to Q240)``, and how many look otherwise; their number.
+
+    At least one code; only one of each look, the least and the greatest, is held.
+    """
+    looks: dict[str, tuple[int, str, str]] = {}
+    for code in codes:
+        shape = re.sub(r"\d", "#", code)
+        number, least, greatest = looks.get(shape, (0, code, code))
+        looks[shape] = number + 1, min(least, code), max(greatest, code)
+    shape, (number, least, greatest) = max(looks.items(), key=lambda look: look[1][0])
+    said = least if least == greatest else f"{least} to {greatest}"
+    text = said if shape == least else f"{shape} ({said})"
+    total = sum(look[0] for look in looks.values())
+    return text if number == total else f"{text} and {total - number:,} of other forms", total
 
 
 def _numbers(code: str) -> list[str]:

@@ -3,8 +3,10 @@
 from __future__ import annotations
 
 import pytest
+from hypothesis import given
+from hypothesis import strategies as st
 
-from registry.store.near_codes import near_misses, nearest, pattern_of
+from registry.store.near_codes import KnownCodes, near_misses, nearest, pattern_of
 
 KNOWN = ["BH1-001", "BH1-012", "S16", "A1-12", "Q 7"]
 
@@ -37,5 +39,15 @@ def test_nearest_code_is_one_slip_of_the_pen_away(code, meant):
 
 
 def test_pattern_of_codes_shows_digits_as_signs_and_the_ends():
-    assert pattern_of(["Q003", "Q001", "Q240", "ST-1"]) == "Q### (Q001 to Q240) and 1 of other forms"
-    assert pattern_of(["BLANK", "BLANK"]) == "BLANK"
+    assert pattern_of(["Q003", "Q001", "Q240", "ST-1"]) == ("Q### (Q001 to Q240) and 1 of other forms", 4)
+    assert pattern_of(["BLANK", "BLANK"]) == ("BLANK", 2)
+
+
+SPELLINGS = st.lists(st.text("aA0oO1-_ .", min_size=1, max_size=5), max_size=12)
+
+
+@given(known=SPELLINGS, new=SPELLINGS)
+def test_known_codes_find_what_near_misses_finds(known: list[str], new: list[str]) -> None:
+    """Invented codes of few letters, so that many are almost alike."""
+    assert KnownCodes(lambda: known).near_misses(new) == near_misses(new, known)
+    assert len(KnownCodes(lambda: known)) == len(known)
