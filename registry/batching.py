@@ -7,6 +7,7 @@ import tempfile
 from collections.abc import Callable, Mapping, Sequence
 from typing import IO, Any
 
+from registry import auditing
 from registry.errors import NotFound, PlutonbookError, UsageError
 from registry.petrology.digestion import DIGESTIONS
 from registry.refresh import changes_since, drain, last_change
@@ -42,6 +43,7 @@ def set_state(registry: Registry, code: str, state: str, dry_run: bool = False) 
 
     def change(connection: Any) -> None:
         batches.set_state(connection, _batch_to_change(connection, code, state)["batch_id"], state)
+        auditing.note(connection, "batch", code, verb)
 
     report = recomputed_after(registry, change, f"a change of batch {code}", f"batch {code} {verb}", dry_run)
     return {"batch": code, "state": state, **report}
@@ -59,7 +61,14 @@ def set_digestions(
             raise UsageError(f"there is no digestion '{name}'; the digestions are {', '.join(DIGESTION_NAMES)}")
 
     def change(connection: Any) -> None:
-        batches.set_digestions(connection, _known(connection, code)["batch_id"], digestions)
+        batch_id = _known(connection, code)["batch_id"]
+        was = {column["position"]: column for column in batches.columns_of(connection, batch_id)}
+        batches.set_digestions(connection, batch_id, digestions)
+        said = [
+            f"{was[position]['header'] or was[position]['analyte']} {was[position]['digestion']} -> {digestion}"
+            for position, digestion in digestions.items()
+        ]
+        auditing.note(connection, "digestion", code, "; ".join(said))
 
     what, cause = f"a change of batch {code}", f"digestions of batch {code} stated"
     return {"batch": code, **recomputed_after(registry, change, what, cause, dry_run)}

@@ -26,6 +26,7 @@ COMMANDS = {
     "withdraw": ("batches", "withdraw"),
     "restore-batch": ("batches", "restore_batch"),
     "settings": ("settings", "settings"),
+    "account": ("accounts", "account"),
     "methods": ("methods", "methods"),
     "serve": ("serving", "serve"),
     "demo": ("serving", "demo"),

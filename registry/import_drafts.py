@@ -70,7 +70,7 @@ class DraftFile:
 
 @dataclass
 class Draft:
-    """Some files on their way into a registry. ``options`` are fields of ``ImportOptions``."""
+    """Some files on their way into a registry. ``options`` are fields of ``ImportOptions``, ``account`` signed in."""
 
     draft_id: str
     created_at: str
@@ -87,6 +87,7 @@ class Draft:
     report: dict[str, Any] | None = None
     process: int = 0
     host: str = ""
+    account: str | None = None
 
     @property
     def under_way(self) -> bool:

@@ -11,6 +11,7 @@ import time
 from contextlib import suppress
 from pathlib import Path
 
+from registry import auditing
 from registry.clock import now
 from registry.errors import InputProblems, PlutonbookError
 from registry.import_drafts import DONE, FAILED, READ, READING, REFUSED, STORING, WAITING, Draft, DraftFolder
@@ -89,6 +90,7 @@ class ImportJobs:
             draft.state, draft.storing, draft.sentence = WAITING, storing, ""
             draft.done = draft.total = 0
             draft.problems, draft.report, draft.ended_at = [], None, None
+            draft.account = auditing.acting_account()
             self.folder.save(draft)
             if self._thread is None or not self._thread.is_alive():
                 self._thread = threading.Thread(target=self._work, name="imports", daemon=True)
@@ -102,7 +104,8 @@ class ImportJobs:
             self._at_work = draft
             try:
                 draft.started_at = now()
-                self._run(draft)
+                with auditing.acting_for(draft.account):
+                    self._run(draft)
             except InputProblems as fault:
                 draft.problems = [problem.as_dict() for problem in fault.problems]
                 self._end(draft, REFUSED, "Nothing was stored: the problems below have to be settled first.")

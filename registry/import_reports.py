@@ -90,6 +90,14 @@ class FileReport:
         text = f", saved with the reasons in {self.refused_file}; correct them there and import that file"
         return text if self.results is None else f"{text} with --add-to '{self.results.batch}'"
 
+    def noted(self) -> tuple[str, str] | None:
+        """What the log of changes says of it, as (subject, detail); None where nothing was stored."""
+        if self.results is not None:
+            return f"batch {self.results.batch}", f"{self.file}: {counted(self.results.results, 'result')}"
+        if not self.added and not self.changes:
+            return None
+        return self.kind, f"{self.file}: {self.added:,} new, {len(self.changes):,} changed"
+
     def as_dict(self) -> dict[str, Any]:
         made = asdict(self)
         del made["warnings"]

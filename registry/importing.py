@@ -11,6 +11,7 @@ from typing import Any
 
 import numpy as np
 
+from registry import auditing
 from registry.computing import child_at_hand
 from registry.errors import InputProblems, Problem, UsageError
 from registry.import_reports import FileReport, ImportReport, counted, understood_of
@@ -186,6 +187,8 @@ def _store(
         if aside is not None and aside.reasons:
             report.refused = len(aside.reasons)
             report.refused_file = None if options.dry_run else str(aside.save())
+    for noted in filter(None, (report.noted() for report in reports)):
+        auditing.note(connection, "import", *noted)
     return ImportReport(
         reports,
         len(computed),

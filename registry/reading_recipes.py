@@ -6,6 +6,7 @@ import json
 from dataclasses import replace
 from typing import Any
 
+from registry import auditing
 from registry.clock import now
 from registry.errors import NotFound, UsageError
 from registry.intake import Recipe
@@ -28,7 +29,7 @@ def save_recipe(registry: Registry, name: str, recipe: Recipe) -> bool:
         raise UsageError("this reading knows no headings, so no later file could be told to have its shape")
     named = replace(recipe, name=name)
     with writing(registry, what=f"saving the reading '{name}'") as connection:
-        return recipe_rows.save_recipe(
+        replaced = recipe_rows.save_recipe(
             connection,
             name=name,
             kind=KIND,
@@ -36,6 +37,8 @@ def save_recipe(registry: Registry, name: str, recipe: Recipe) -> bool:
             recipe=named.to_json(),
             created_at=now(),
         )
+        auditing.note(connection, "saved reading", name, "replaced" if replaced else "saved")
+    return replaced
 
 
 def combined(made: Recipe, given: Recipe | None) -> Recipe:
@@ -87,6 +90,7 @@ def forget_recipe(registry: Registry, name: str) -> None:
     with writing(registry, what=f"forgetting the reading '{name}'") as connection:
         if not recipe_rows.delete_recipe(connection, name):
             raise NotFound(f"there is no saved reading '{name}'")
+        auditing.note(connection, "saved reading", name, "forgotten")
 
 
 def _shape(shape: tuple[str, ...]) -> str:
