@@ -18,6 +18,7 @@ from registry.import_drafts import DONE, FAILED, READ, READING, REFUSED, STORING
 from registry.importing import ImportOptions, import_files
 from registry.intake import Reading
 from registry.intake_choices import describe_reading
+from registry.progress import words
 from registry.store.engine import Registry
 
 #: Seconds between two saves of the progress.
@@ -140,7 +141,8 @@ class ImportJobs:
 
         def progress(what: str, done: int, total: int) -> None:
             nonlocal saved_at
-            draft.sentence = _words(what, done, total, draft)
+            file = draft.files[done].name if what == "reading" else ""
+            draft.sentence = words(what, done, total, file=file, trial=not draft.storing)
             draft.done, draft.total = done, total
             draft.state = STORING if draft.storing and not what.startswith("reading") else READING
             if time.monotonic() - saved_at >= SAVE_EVERY_S:
@@ -172,17 +174,6 @@ class ImportJobs:
             self.folder.drop_files(draft)
         else:
             self._end(draft, READ, "Read and tried out; nothing is stored yet.")
-
-
-def _words(what: str, done: int, total: int, draft: Draft) -> str:
-    if what == "reading":
-        return f"Reading {draft.files[done].name}" + (f", file {done + 1} of {total}." if total > 1 else ".")
-    if what == "reading bytes":
-        return f"Reading: {done / 1e6:,.0f} of {total / 1e6:,.0f} MB."
-    verb = {"storing": "Storing", "computing": "Computing and judging"}.get(what, what.capitalize())
-    things = "lines of results" if what == "storing" else "samples"
-    trial = "" if draft.storing else " on trial"
-    return f"{verb}{trial}: {done:,} of {total:,} {things}."
 
 
 def _lives_elsewhere(draft: Draft) -> bool:

@@ -25,13 +25,11 @@ from registry.intake_choices import described_columns
 from registry.keeping_going import SetAside
 from registry.lab_files import LabFile
 from registry.precedence import Earlier, alternatives_within, look_after, look_before
+from registry.progress import Progress, unwatched
 from registry.refresh import changes_since, drained_samples, last_change
 from registry.store import masters
 from registry.store.engine import Registry, writing
 from registry.store.reading.changes import verdict_changes
-
-#: Called with what is being done (reading, storing, computing), how much of it is done, and of how much.
-Progress = Callable[[str, int, int], None]
 
 
 @dataclass(frozen=True)
@@ -80,17 +78,13 @@ class _NothingWritten(Exception):
     """Rolls a dry run back."""
 
 
-def _unwatched(_what: str, _done: int, _total: int) -> None:
-    """Progress that nobody looks at."""
-
-
 def import_files(
     registry: Registry,
     paths: Sequence[Path],
     options: ImportOptions | None = None,
     *,
     choices: Mapping[Path, FileChoice] | None = None,
-    progress: Progress = _unwatched,
+    progress: Progress = unwatched,
     tell: Callable[[str], Any] | None = None,
     on_read: Callable[[Path, Reading], Any] | None = None,
 ) -> ImportReport:
@@ -140,6 +134,7 @@ def _import(
     try:
         with writing(registry, what=f"an import of {counted(len(files), 'file')}", tell=tell, bulk=True) as connection:
             report = _store(connection, readings, asides, options, unreadable, progress)
+            progress("writing", 0, 0)
             if options.dry_run:
                 raise _NothingWritten
     except _NothingWritten:

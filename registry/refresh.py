@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable, Sequence
+from collections.abc import Sequence
 from typing import Any
 
 import numpy as np
@@ -12,6 +12,7 @@ from registry.clock import now
 from registry.controlling import held_columns, settle
 from registry.judging import Rules, read_rules
 from registry.pipeline import CHUNK_SIZE, METHOD_VERSION, Chunk, Computed, compute
+from registry.progress import Progress
 from registry.store import bulk, loading, quality_rows, ready_rows, sample_context, stale, stale_groups
 from registry.store.engine import Registry, reading, writing
 from registry.store.sheets import DERIVED_COLUMNS
@@ -26,7 +27,7 @@ def drain(
     connection: Any,
     cause: str = "edited",
     limit: int | None = None,
-    progress: Callable[[str, int, int], None] | None = None,
+    progress: Progress | None = None,
 ) -> int:
     """Compute what is stale, inside the caller's transaction; how many samples were computed or judged.
 
@@ -39,7 +40,7 @@ def drained_samples(
     connection: Any,
     cause: str = "edited",
     limit: int | None = None,
-    progress: Callable[[str, int, int], None] | None = None,
+    progress: Progress | None = None,
 ) -> np.ndarray:
     """Compute what is stale, inside the caller's transaction; ids of the samples computed or judged, int64.
 
@@ -82,7 +83,9 @@ def _ever_analysed(connection: Any, sample_ids: Sequence[int]) -> list[int]:
     return analysed.astype(np.int64).tolist()
 
 
-def refresh_registry(registry: Registry, everything: bool = False, cause: str = "refresh") -> int:
+def refresh_registry(
+    registry: Registry, everything: bool = False, cause: str = "refresh", progress: Progress | None = None
+) -> int:
     """Recompute what is stale, or every sample; how many were done. Nothing stale: the registry is not even locked."""
     with reading(registry) as connection:
         waiting = bool(stale.pending(connection, 1)) or stale_groups.any_pending(connection)
@@ -92,7 +95,7 @@ def refresh_registry(registry: Registry, everything: bool = False, cause: str = 
         if everything:
             stale.mark_all(connection)
             stale_groups.mark_all(connection)
-        return drain(connection, cause)
+        return drain(connection, cause, progress=progress)
 
 
 def last_change(connection: Any) -> int:

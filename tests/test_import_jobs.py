@@ -227,7 +227,7 @@ def test_import_reports_progress_in_order(founded_registry: Registry, tmp_path: 
     assert told[0] == ("reading", 0, 1)
     assert ("storing", 0, 3) in told and ("computing", 0, 2) in told
     assert [what for what, _, _ in told] == sorted(
-        (what for what, _, _ in told), key=["reading", "storing", "computing"].index
+        (what for what, _, _ in told), key=["reading", "storing", "computing", "writing"].index
     )
     assert all(0 <= done <= total for _, done, total in told)
 

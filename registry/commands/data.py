@@ -8,6 +8,7 @@ from typing import Any
 import click
 
 from registry.commands.options import json_option, registry_named, registry_option, say
+from registry.commands.progress import shown
 from registry.errors import UsageError
 
 KINDS = ["areas", "sites", "surveys", "intervals", "intrusions", "samples", "results", "reference-materials"]
@@ -53,7 +54,11 @@ def import_(registry_path: str | None, files: tuple[Path, ...], as_json: bool, v
     registry = open_registry(registry_named(registry_path))
     readings = Readings(registry, how["recipe"], how["save_recipe"])
     choice = FileChoice(reading=reading_options(readings.recipe, **{name: how[name] for name in _HOW_READ[2:]}))
-    report = import_files(registry, list(files), chosen, choices=dict.fromkeys(files, choice), on_read=readings.take)
+    choices = dict.fromkeys(files, choice)
+    with shown(files, chosen.dry_run) as progress:
+        report = import_files(
+            registry, list(files), chosen, choices=choices, progress=progress, tell=progress.tell, on_read=readings.take
+        )
     saved = readings.save()
     say({**report.as_dict(), "saved_recipe": how["save_recipe"]}, [*report.lines(verbose), *saved], as_json)
 
@@ -76,7 +81,8 @@ def refresh(registry_path: str | None, everything: bool, probability: bool, as_j
         raise UsageError(
             "--probability is not there yet: probability_state stands at 'not_computed'; run refresh without it"
         )
-    count = refresh_registry(open_registry(registry_named(registry_path)), everything)
+    with shown() as progress:
+        count = refresh_registry(open_registry(registry_named(registry_path)), everything, progress=progress)
     say({"recomputed": count}, [f"Recomputed {count:,} {'sample' if count == 1 else 'samples'}."], as_json)
 
 
