@@ -19,6 +19,7 @@ from registry.importing_certificates import store_certificates
 from registry.importing_codes import almost_known, unknown_codes
 from registry.importing_controls import called_otherwise
 from registry.importing_faults import Rest, may_bring_anything, prefixed
+from registry.importing_lines import resolve
 from registry.importing_results import StoredBatch, store_results
 from registry.intake import KINDS, MasterTable, Reading, ReadingOptions
 from registry.intake_choices import described_columns
@@ -176,8 +177,7 @@ def _store(
     computed = np.union1d(computed, drained_samples(connection, cause=_cause(reports), progress=progress))
     for report, one in zip(reports, earlier, strict=True):
         if one is not None and report.results is not None:
-            codes = masters.sample_codes(connection, one.sample_ids.tolist())
-            report.precedence = look_after(connection, one, [report.results.batch], codes)
+            report.precedence = look_after(connection, one, [report.results.batch])
     for report, aside in zip(reports, asides, strict=True):
         if aside is not None and aside.reasons:
             report.refused = len(aside.reasons)
@@ -239,8 +239,7 @@ def _before(connection: Any, reading: Reading, options: ImportOptions) -> Earlie
     """Where the values of the samples of a file of results come from before it is stored."""
     if reading.results is None:
         return None
-    codes = {f"{options.code_prefix}{code}" for code in reading.results.sample_codes}
-    return look_before(connection, masters.sample_ids(connection, codes).values())
+    return look_before(connection, resolve(connection, reading.results, options.code_prefix).sample_ids)
 
 
 def _upserted(

@@ -6,6 +6,8 @@ compares where each value came from; within the new file it tells which of sever
 
 from __future__ import annotations
 
+import pickle
+import tempfile
 from collections import Counter, defaultdict
 from collections.abc import Iterable, Iterator, Sequence
 from dataclasses import dataclass, field
@@ -15,12 +17,13 @@ import numpy as np
 
 from registry.choice import Block, ColumnUse, TracedChoice, trace_choice
 from registry.controlling import held_columns
+from registry.importing_lines import raw_parts
 from registry.intake import ResultTable
 from registry.judging import read_conventions
 from registry.petrology.analytes import CHOSEN_COLUMNS, QUALIFIER_SIGNS
 from registry.petrology.digestion import DIGESTION_WORDS
 from registry.refresh import stored_blocks
-from registry.store import loading
+from registry.store import loading, masters
 
 #: Samples composed at once.
 AT_A_TIME = 4096
@@ -48,29 +51,44 @@ class Replacement:
 
 @dataclass
 class Earlier:
-    """Where the values of some samples came from before the import."""
+    """Where the values of some samples came from before the import; on disk, since a registry may hold a million."""
 
     sample_ids: np.ndarray
-    parts: list[Traced] = field(default_factory=list)
+    _kept: Any = field(default_factory=tempfile.TemporaryFile)
+
+    def keep(self, parts: Iterable[Traced]) -> None:
+        """Remember the choices of ``AT_A_TIME`` samples after those of others."""
+        for part in parts:
+            pickle.dump(part, self._kept, pickle.HIGHEST_PROTOCOL)
+
+    def parts(self) -> Iterator[Traced]:
+        """What was kept, in order."""
+        self._kept.seek(0)
+        for _ in range(0, len(self.sample_ids), AT_A_TIME):
+            yield pickle.load(self._kept)
+
+    def __del__(self) -> None:
+        self._kept.close()
 
 
-def look_before(connection: Any, sample_ids: Iterable[int]) -> Earlier:
-    """Remember where the values of those samples that have results come from now."""
-    ids = np.unique(np.fromiter(sample_ids, dtype=np.int64))
-    earlier = Earlier(loading.samples_with_aliquots(connection, ids) if len(ids) else ids)
-    earlier.parts = list(_traced(connection, earlier.sample_ids))
+def look_before(connection: Any, sample_ids: np.ndarray) -> Earlier:
+    """Remember where the values of those samples (ids, 0 is none) that have results come from now."""
+    known = raw_parts(np.unique(sample_ids[sample_ids > 0]))
+    analysed = [loading.samples_with_aliquots(connection, ids) for ids in known]
+    earlier = Earlier(np.concatenate([np.zeros(0, dtype=np.int64), *analysed]))
+    earlier.keep(_traced(connection, earlier.sample_ids))
     return earlier
 
 
-def look_after(
-    connection: Any, earlier: Earlier, new_batches: Sequence[str], code_of: dict[int, str]
-) -> list[Replacement]:
+def look_after(connection: Any, earlier: Earlier, new_batches: Sequence[str]) -> list[Replacement]:
     """What is replaced and what stays, by column and by the batches and digestions concerned; most samples first."""
     found: dict[tuple[str, str, str, bool], Replacement] = {}
     starts = range(0, len(earlier.sample_ids), AT_A_TIME)
     parts = _traced(connection, earlier.sample_ids)
-    for start, before, after in zip(starts, earlier.parts, parts, strict=True):
-        codes = [code_of[sample_id] for sample_id in earlier.sample_ids[start : start + AT_A_TIME].tolist()]
+    for start, before, after in zip(starts, earlier.parts(), parts, strict=True):
+        ids = earlier.sample_ids[start : start + AT_A_TIME].tolist()
+        code_of = masters.sample_codes(connection, ids)
+        codes = [code_of[sample_id] for sample_id in ids]
         offered = _offered(*after, set(new_batches), len(codes))
         _compare(found, before, after, (offered, after[1]), set(new_batches), codes)
     return sorted(found.values(), key=lambda one: (not one.replaced, -one.samples, one.column))
