@@ -99,7 +99,7 @@ def import_files(
     with ThreadPoolExecutor(1) as pool, ExitStack() as at_the_end:
         files: list[_File] = []
         for path in paths:
-            files.append(_File(LabFile(path, pool, whole=options.keep_going)))
+            files.append(_File(LabFile(path, pool)))
             at_the_end.callback(files[-1].file.close)
         at_the_end.enter_context(child_at_hand(any(file.file.is_large for file in files)))
         return _import(registry, files, options, choices or {}, progress, tell, on_read)
@@ -127,8 +127,7 @@ def _import(
             readings.append((reading, file))
     readings.sort(key=lambda pair: _ORDER.index(pair[0].kind) if pair[0].kind in _ORDER else len(_ORDER))
     asides = [
-        SetAside.of(file.path, file.file.data or b"", reading) if options.keep_going else None
-        for reading, file in readings
+        SetAside.of(file.path, file.file.data, reading) if options.keep_going else None for reading, file in readings
     ]
     unreadable = [problem for reading, _ in readings for problem in reading.problems if not reading.ok]
     report: ImportReport | None = None

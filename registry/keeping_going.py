@@ -3,12 +3,13 @@
 from __future__ import annotations
 
 from collections.abc import Iterable
+from contextlib import suppress
 from dataclasses import dataclass, field
 from pathlib import Path
 
 from registry.errors import InputProblems, PlutonbookError, Problem
 from registry.intake import Reading
-from registry.intake.refused import refused_rows, without_lines
+from registry.intake.refused import without_lines, write_refused
 
 
 @dataclass
@@ -16,18 +17,19 @@ class SetAside:
     """The rows of one file that are not stored, by file line, with the reasons in sentences."""
 
     path: Path
-    data: bytes
+    #: its bytes where they are at hand, None where it is read from its place again
+    data: bytes | None
     reading: Reading
     first_data_line: int
     reasons: dict[int, list[str]] = field(default_factory=dict)
 
     @classmethod
-    def of(cls, path: Path, data: bytes, reading: Reading) -> SetAside:
+    def of(cls, path: Path, data: bytes | None, reading: Reading) -> SetAside:
         """Begin with what the intake refused. Raises InputProblems where the file itself is faulty."""
         table = reading.results or reading.master
         if reading.whole_file_refused or table is None:
             raise InputProblems(reading.problems)
-        lines = [*table.line_no.tolist(), *reading.refused_lines]
+        lines = [*(table.line_no[:1].tolist() if len(table) else ()), *reading.refused_lines]
         aside = cls(path, data, reading, min(lines, default=1))
         faults = [problem for problem in reading.problems if problem.severity == "problem"]
         general = [problem for problem in faults if problem.row is None]
@@ -60,20 +62,19 @@ class SetAside:
         """Write the rows beside the input; None where there are none."""
         if not self.reasons:
             return None
-        text = refused_rows(
-            self.data,
-            self.reading,
-            {line: "; ".join(said) for line, said in self.reasons.items()},
-            self.first_data_line,
-        )
+        first = self.first_data_line
+        reasons = {line: "; ".join(said) for line, said in self.reasons.items()}
         target = self.path.with_name(f"{self.path.stem}.refused.csv")
         number = 2
         while target.exists():
             target = self.path.with_name(f"{self.path.stem}.refused-{number}.csv")
             number += 1
         try:
-            target.write_text(text, encoding="utf-8-sig")
+            with target.open("w", encoding="utf-8-sig", newline="") as out:
+                write_refused(out, self.path if self.data is None else self.data, self.reading, reasons, first)
         except OSError as error:
+            with suppress(OSError):
+                target.unlink(missing_ok=True)
             raise PlutonbookError(
                 f"the refused rows cannot be saved in {target}: {error.strerror}; nothing was written"
             ) from error

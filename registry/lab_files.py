@@ -40,18 +40,18 @@ class Packed:
 class LabFile:
     """One file of an import. ``data`` are its bytes, None of a large one that is read as a stream.
 
-    Hash and compression are worked out by ``pool`` beside the reading: zlib needs no interpreter. ``whole``: keep the
-    bytes in any case. Raises NotFound where there is no such file.
+    Hash and compression are worked out by ``pool`` beside the reading: zlib needs no interpreter. Raises NotFound
+    where there is no such file.
     """
 
-    def __init__(self, path: Path, pool: Executor, whole: bool = False) -> None:
+    def __init__(self, path: Path, pool: Executor) -> None:
         self.path = path
         if path.is_dir():
             raise NotFound(f"{path} is a folder; name the files in it")
         try:
             self._stamp = _stamp(path)
             self.size = self._stamp[0]
-            self.data = None if self.is_large and not whole else path.read_bytes()
+            self.data = None if self.is_large else path.read_bytes()
         except FileNotFoundError as error:
             raise NotFound(f"there is no file {path}") from error
         except OSError as error:

@@ -11,9 +11,11 @@ from typing import Any
 import numpy as np
 import pytest
 
+from registry import lab_files
 from registry.batching import set_state
 from registry.errors import InputProblems, NotFound, PlutonbookError, UsageError
 from registry.importing import ImportOptions, import_files
+from registry.intake import spooled
 from registry.refresh import refresh_registry
 from registry.store import engine as store_engine
 from registry.store.engine import Registry, open_registry, reading
@@ -387,6 +389,28 @@ def test_keep_going_stores_good_rows_and_saves_bad_ones_to_be_corrected(
     import_files(founded_registry, [corrected], ImportOptions(add_to="T"))
     composed = rows(founded_registry, "SELECT sample_code, sio2_wt, mno_wt FROM composition_sheet ORDER BY 1")
     assert composed[1] == {"sample_code": "C", "sio2_wt": 64.0, "mno_wt": 0.3}
+
+
+def test_keep_going_with_a_file_read_as_a_stream_keeps_and_refuses_the_same_rows(
+    founded_registry: Registry, tmp_path: Path, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    """Invented: every third line has an impossible value, more lines than are held at once."""
+    lines = [f"S{row},{50 + row % 20},{3002 if row % 3 == 0 else 0.1}" for row in range(20)]
+    text = "Certificate: K-1\nSample,SiO2 (%),MnO (%)\n" + "\n".join(lines) + "\n"
+    options = ImportOptions(keep_going=True, create_samples=True)
+    import_files(founded_registry, [write(tmp_path, "small.csv", text)], options)
+
+    monkeypatch.setattr(lab_files, "LARGE_BYTES", 1)
+    monkeypatch.setattr(spooled, "BLOCK_ROWS", 4)
+    large = write(tmp_path, "large.csv", text.replace("K-1", "K-2"))
+    report = import_files(founded_registry, [large], options)
+
+    assert report.files[0].refused == 7
+    saved = (tmp_path / "large.refused.csv").read_text(encoding="utf-8-sig")
+    assert saved.replace("K-2", "K-1") == (tmp_path / "small.refused.csv").read_text(encoding="utf-8-sig")
+    query = "SELECT sample_code, analyte, value, line_no FROM result_sheet WHERE batch = '{}' ORDER BY 1, 2"
+    kept = rows(founded_registry, query.format("K-2"))
+    assert kept == rows(founded_registry, query.format("K-1")) and len(kept) == 26
 
 
 def test_keep_going_in_a_dry_run_saves_nothing(founded_registry: Registry, tmp_path: Path) -> None:

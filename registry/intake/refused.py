@@ -3,8 +3,12 @@
 from __future__ import annotations
 
 import csv
-import io
-from collections.abc import Mapping
+from collections.abc import Iterator, Mapping
+from itertools import compress
+from pathlib import Path
+from typing import TextIO
+
+import numpy as np
 
 from registry.errors import PlutonbookError
 from registry.intake.arrangement import TURNED, tell_arrangement
@@ -12,7 +16,9 @@ from registry.intake.containers import is_workbook, unpack
 from registry.intake.encodings import tell_encoding
 from registry.intake.reading import separator_of
 from registry.intake.readings import Reading, ReadingOptions
+from registry.intake.scanning import scan
 from registry.intake.sources import DelimitedSource, Source
+from registry.intake.spooled import kept_rows, kept_texts
 from registry.intake.workbook import read_sheets
 
 #: The heading of the column that says why a row was refused; the intake passes over it.
@@ -23,26 +29,32 @@ def without_lines(reading: Reading, lines: frozenset[int]) -> Reading:
     """The reading with the rows of these file lines left out, in place; its problems of those lines are gone."""
     table = reading.results or reading.master
     assert table is not None
-    keep = [position for position, line in enumerate(table.line_no.tolist()) if line not in lines]
+    reading.problems = [problem for problem in reading.problems if problem.severity != "problem"]
+    line_no = np.asarray(table.line_no[:])
+    keep = ~np.isin(line_no, np.fromiter(lines, np.int64, len(lines)))
+    if keep.all():
+        return reading
     if reading.master is not None:
-        reading.master.rows = {name: [column[row] for row in keep] for name, column in reading.master.rows.items()}
+        reading.master.rows = {name: list(compress(column, keep)) for name, column in reading.master.rows.items()}
     if reading.results is not None:
         results = reading.results
-        results.sample_codes = [results.sample_codes[row] for row in keep]
-        results.values, results.qualifiers = results.values[keep], results.qualifiers[keep]
+        results.sample_codes = kept_texts(results.sample_codes, keep)
+        results.values, results.qualifiers = kept_rows(results.values, keep), kept_rows(results.qualifiers, keep)
         if results.control_text:
-            results.control_text = [results.control_text[row] for row in keep]
-    table.line_no = table.line_no[keep]
-    reading.problems = [problem for problem in reading.problems if problem.severity != "problem"]
+            results.control_text = list(compress(results.control_text, keep))
+    table.line_no = line_no[keep]
     return reading
 
 
-def refused_rows(data: bytes, reading: Reading, reasons: Mapping[int, str], first_data_line: int) -> str:
+def write_refused(
+    out: TextIO, file: bytes | Path, reading: Reading, reasons: Mapping[int, str], first_data_line: int
+) -> None:
     """CSV text: the heading rows of the file, then each refused row as it stood with its reason in a last column.
 
-    ``reasons`` by file line. Raises PlutonbookError for a table turned on its side, whose lines are columns.
+    ``file``: its bytes or where it lies; ``reasons`` by file line. Raises PlutonbookError for a table turned on its
+    side, whose lines are columns.
     """
-    source = source_of(data, reading)
+    source = source_of(file, reading)
     rows, _ = source.preview(200)
     if reading.results is not None and tell_arrangement(rows) == TURNED:
         raise PlutonbookError(
@@ -50,27 +62,38 @@ def refused_rows(data: bytes, reading: Reading, reasons: Mapping[int, str], firs
             "turn it so that a row is a sample, or correct it whole"
         )
     headings: list[list[str]] = []
-    refused: list[list[str]] = []
-    for chunk in source.chunks():
-        for row, line in zip(chunk.rows, chunk.lines.tolist(), strict=True):
-            if line < first_data_line:
-                headings.append(row)
-            elif line in reasons:
-                refused.append([*row, reasons[line]])
-    width = max(map(len, [*headings, *(row[:-1] for row in refused)]), default=0)
+    width = 0
+    for line, row in _rows(source, first_data_line, reasons):
+        width = max(width, len(row))
+        if line < first_data_line:
+            headings.append(row)
     fullest = max(range(len(headings)), key=lambda place: sum(map(bool, headings[place])), default=-1)
-    out = io.StringIO()
     writer = csv.writer(out, lineterminator="\n")
     for place, row in enumerate(headings):
         writer.writerow([*row, *[""] * (width - len(row)), REASON_HEADING if place == fullest else ""])
-    for row in refused:
-        writer.writerow([*row[:-1], *[""] * (width - len(row) + 1), row[-1]])
-    return out.getvalue()
+    for line, row in _rows(source, first_data_line, reasons):
+        if line >= first_data_line:
+            writer.writerow([*row, *[""] * (width - len(row)), reasons[line]])
 
 
-def source_of(data: bytes, reading: Reading) -> Source:
+def _rows(source: Source, first_data_line: int, reasons: Mapping[int, str]) -> Iterator[tuple[int, list[str]]]:
+    """The heading rows and the refused ones, with their lines."""
+    wanted = np.fromiter(reasons, np.int64, len(reasons))
+    for chunk in source.chunks():
+        here = (chunk.lines < first_data_line) | np.isin(chunk.lines, wanted)
+        for place in np.flatnonzero(here).tolist():
+            yield int(chunk.lines[place]), chunk.rows[place]
+
+
+def source_of(file: bytes | Path, reading: Reading) -> Source:
     """The rows of cells that a reading was made from, to be gone through again."""
     options = ReadingOptions(recipe=reading.recipe)
+    if isinstance(file, Path):
+        seen = scan(file)
+        if seen is not None:
+            separator = separator_of(file, seen.encoding, options, seen.quoted)
+            return DelimitedSource(file, seen.encoding, separator, seen.quoted)
+    data = file.read_bytes() if isinstance(file, Path) else file
     for part in unpack(data, options.unpacked_limit_bytes):
         if is_workbook(part.data):
             for sheet, source in read_sheets(part.data):

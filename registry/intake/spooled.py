@@ -10,6 +10,7 @@ import json
 import tempfile
 import zlib
 from collections.abc import Iterable, Iterator, Sequence
+from itertools import compress, islice
 from typing import Any, overload
 
 import numpy as np
@@ -176,6 +177,22 @@ def column_parts(values: Any, column: int) -> Iterator[tuple[int, NDArray[Any]]]
         yield 0, values[:, column]
 
 
+def kept_rows(values: Any, keep: NDArray[np.bool_]) -> Any:
+    """The rows that are kept (n,) of an array, spooled again where it is spooled."""
+    if not isinstance(values, SpooledArray):
+        return values[keep]
+    kept = SpooledArray(values.shape[1], values.dtype)
+    for start, rows in row_parts(values):
+        kept.append(rows[keep[start : start + len(rows)]])
+    return kept
+
+
+def kept_texts(texts: Sequence[str], keep: NDArray[np.bool_]) -> Sequence[str]:
+    """The texts that are kept (n,), packed again where they are packed."""
+    chosen = compress(texts, keep)
+    return PackedTexts(chosen) if isinstance(texts, PackedTexts) else list(chosen)
+
+
 class PackedTexts(Sequence[str]):
     """Many short texts, compressed a block at a time."""
 
@@ -186,10 +203,12 @@ class PackedTexts(Sequence[str]):
         self.extend(texts)
 
     def extend(self, texts: Iterable[str]) -> None:
-        self._filling += texts
-        while len(self._filling) >= BLOCK_ROWS:
-            self._blocks.append(zlib.compress(json.dumps(self._filling[:BLOCK_ROWS]).encode("ascii"), 1))
-            del self._filling[:BLOCK_ROWS]
+        coming = iter(texts)
+        while taken := list(islice(coming, BLOCK_ROWS - len(self._filling))):
+            self._filling += taken
+            if len(self._filling) == BLOCK_ROWS:
+                self._blocks.append(zlib.compress(json.dumps(self._filling).encode("ascii"), 1))
+                self._filling = []
 
     def parts(self) -> Iterator[list[str]]:
         """All texts, some thousands at a time."""
