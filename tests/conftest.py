@@ -25,6 +25,14 @@ from registry.store.engine import Registry
 ENGINES = ["sqlite", pytest.param("postgresql", marks=pytest.mark.postgresql)]
 
 
+@pytest.fixture(scope="session", autouse=True)
+def state_of_the_tests(tmp_path_factory: pytest.TempPathFactory) -> Iterator[None]:
+    """The site's secret and drafts of a test lie in a folder of the tests, never in the user's own."""
+    with pytest.MonkeyPatch.context() as patch:
+        patch.setenv("XDG_STATE_HOME", str(tmp_path_factory.mktemp("state")))
+        yield
+
+
 def absent(what: str) -> NoReturn:
     """Skip with the reason; in CI fail."""
     if os.environ.get("CI"):

@@ -82,7 +82,7 @@ LAYERS = (
     _layer("web/serving.py", "waitress flask", "web registry.errors"),
     _layer(
         "web/",
-        "flask flask_wtf wtforms werkzeug jinja2 markupsafe orjson",
+        "flask flask_login flask_wtf wtforms werkzeug jinja2 markupsafe orjson",
         "web registry.store.reading registry.errors registry.@usecase",
         "sqlite3",
     ),

@@ -86,6 +86,6 @@ def test_project_runs_on_packages_of_general_purpose_only() -> None:
     project = tomllib.loads((ROOT / "pyproject.toml").read_text(encoding="utf-8"))["project"]
     names = {requirement.split(">=")[0].split("[")[0] for requirement in project["dependencies"]}
     assert names == {
-        "alembic", "click", "flask", "flask-wtf", "numpy", "openpyxl", "orjson", "pandas", "pyproj",
+        "alembic", "click", "flask", "flask-login", "flask-wtf", "numpy", "openpyxl", "orjson", "pandas", "pyproj",
         "sqlalchemy", "waitress",
     }  # fmt: skip

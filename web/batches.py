@@ -4,12 +4,12 @@ from __future__ import annotations
 
 from typing import Any
 
-from flask import Blueprint, abort, current_app, flash, redirect, render_template, request, send_file, url_for
+from flask import Blueprint, current_app, flash, redirect, render_template, request, send_file, url_for
 
 from registry import batching
 from registry.store.reading import batches as reading
 from registry.store.reading import controls as controls_reading
-from web import control_charts
+from web import control_charts, writing
 from web.errors import Missing
 from web.reading import registry_connection
 
@@ -77,10 +77,7 @@ def stored_file(code: str) -> Any:
 @blueprint.get("/batch/<any(withdraw, restore):change>/<path:code>")
 def ask(change: str, code: str) -> Any:
     """What withdrawing or restoring a batch would do, and whether to do it."""
-    if not current_app.config["WRITABLE"]:
-        abort(
-            403, "This site is served to other machines and has no accounts, so that nothing can be changed through it."
-        )
+    writing.require()
     report = batching.set_state(current_app.extensions["registry"], code, STATE_OF[change], dry_run=True)
     return _confirmation(code, change, report, {})
 

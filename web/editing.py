@@ -11,10 +11,10 @@ from registry import editing
 from registry.editing import NUMBER, TRUTH, WORD, Field
 from registry.errors import NotFound
 from registry.store.reading import editing as reading
+from web import writing
 from web.errors import Missing
 from web.reading import registry_connection
 from web.wording import unit_words
-from web.writing import REFUSED
 
 blueprint = Blueprint("editing", __name__)
 #: Headings of the parts of a form, with their fields.
@@ -136,8 +136,7 @@ def _short(text: str) -> str:
 def _allowed(kind: str) -> None:
     if kind not in editing.KINDS:
         raise Missing("kind of thing to edit", kind)
-    if not current_app.config["WRITABLE"]:
-        abort(403, REFUSED)
+    writing.require()
 
 
 def _found(kind: str, code: str) -> editing.Record:

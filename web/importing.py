@@ -16,7 +16,7 @@ from registry.intake_choices import ANALYTE_NAMES, DIGESTION_NAMES, KIND_NAMES, 
 from registry.store.reading import batches as batches_reading
 from registry.store.reading import targets as targets_reading
 from registry.store.reading.session import query_only
-from web import import_form
+from web import import_form, writing
 from web.errors import Missing
 
 blueprint = Blueprint("importing", __name__)
@@ -52,6 +52,7 @@ def _jobs() -> ImportJobs:
 
 
 def _found(draft_id: str) -> Draft:
+    writing.require()
     draft = _jobs().find(draft_id)
     if draft is None:
         raise Missing("import", draft_id, [("Import", url_for("importing.start"))])
@@ -62,7 +63,7 @@ def _found(draft_id: str) -> Draft:
 def start() -> Any:
     jobs = _jobs()
     saved = reading_recipes.list_recipes(jobs.registry)
-    drafts = jobs.all() if current_app.config["WRITABLE"] else []
+    drafts = jobs.all() if writing.standing().writable else []
     return render_template(
         "import.html", section="Import", drafts=drafts, saved=saved, limit=LARGEST_UPLOAD_BYTES, kinds=KIND_NAMES
     )
@@ -241,6 +242,8 @@ def refused_rows(draft_id: str, number: str) -> Any:
 
 @blueprint.get("/import/<draft_id>/state.json")
 def state(draft_id: str) -> Any:
+    if not writing.standing().writable:
+        return jsonify(error="Imports are shown to whoever may make them."), 403
     draft = _jobs().find(draft_id)
     if draft is None:
         return jsonify(error=f"There is no import {draft_id}."), 404

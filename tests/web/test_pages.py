@@ -26,7 +26,7 @@ PAGES = (
     "/sites/DH-1?value=sr_y&value=mg_number&target=tin", "/sites/none", "/settings", "/edit/sample/PB-001",
     "/static/site.css", "/static/site.js", "/static/favicon.svg", "/import", "/import/none", "/import/none/state.json",
     "/import/none/refused/0",
-    "/batch/file/Q-2041", "/batch/withdraw/Q-2041", "/reported/PB-001", "/reported/none", "/diagrams",
+    "/batch/file/Q-2041", "/batch/withdraw/Q-2041", "/reported/PB-001", "/reported/none", "/diagrams", "/sign-in",
 )  # fmt: skip
 
 
