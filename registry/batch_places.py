@@ -18,7 +18,8 @@ if TYPE_CHECKING:
 class Place:
     """Where a file of results goes: the code of its batch, the batch it is a part of, the batch it supersedes.
 
-    ``lab`` and the dates are those of the superseded batch, for what the new file leaves open.
+    ``lab``, the dates and the batch it is a part of are those of the superseded batch, for what the new file leaves
+    open.
     """
 
     code: str
@@ -36,50 +37,84 @@ def place_of(
     code = options.batch or table.certificate or Path(file).stem
     same = batches.find_by_hash(connection, sha256)
     if same is not None:
-        remedy = (
-            f"use 'plutonbook restore-batch {same['batch']}' to let it count again"
-            if same["state"] == "withdrawn"
-            else "nothing needs to be done"
-        )
         what = f"the same bytes were imported before, as batch '{same['batch']}' ({same['state']})"
-        return Place(code), [Problem(file, what, remedy=remedy)]
+        return Place(code), [
+            Problem(file, what + _counting(connection, same), remedy=_to_count_again(connection, same))
+        ]
     if options.add_to:
         return _part(connection, file, options)
+    by_code = batches.find_batch(connection, code)
     by_certificate = batches.find_by_certificate(connection, table.certificate) if table.certificate else None
-    other = batches.find_batch(connection, code) or by_certificate
     if options.supersede:
-        return _successor(connection, file, code, other, options)
+        return _successor(connection, file, code, by_code or by_certificate)
+    if by_code is None and by_certificate is not None and options.batch and by_certificate["state"] != "active":
+        by_certificate = None  # nothing of that certificate counts, and the new file has a code of its own
+    other = by_code or by_certificate
     if other is None:
         return Place(code), []
-    problem = Problem(
-        file,
-        f"certificate or batch '{code}' is in the registry already, from another file ({other['file_name']})",
-        remedy="if this is a corrected certificate use --supersede, if it is another part of the same one use "
-        f"--add-to {other['batch']}, else give it a code of its own with --batch",
+    return Place(code), [_taken(connection, file, code, table.certificate, other)]
+
+
+def _taken(connection: Any, file: str, code: str, certificate: str | None, other: dict[str, Any]) -> Problem:
+    """That the code or certificate is in the registry already, with the ways that lead on."""
+    own_code = "give it a code of its own with --batch"
+    counting = batches.counting_for(connection, other["batch_id"])
+    is_certificate = certificate is not None and other["certificate"] == certificate
+    name = certificate if is_certificate else code
+    what = f"certificate '{name}'" if is_certificate else f"a batch '{name}'"
+    what += f" is in the registry already, from another file ({other['file_name']})"
+    if other["batch"] != name or other["state"] != "active":
+        what += f", as batch '{other['batch']}'"
+    if other["state"] != "active":
+        what += f", which is {other['state']}{_counting(connection, other)}"
+    corrects = "if this is a corrected certificate use --supersede"
+    if counting is None:
+        return Problem(file, what, remedy=f"{corrects}, else {own_code}")
+    added = f"if it is another part of the same one use --add-to {_quoted(counting['batch'])}"
+    return Problem(file, what, remedy=", ".join([corrects, added, *([] if is_certificate else [f"else {own_code}"])]))
+
+
+def _quoted(code: str) -> str:
+    return f"'{code}'" if " " in code else code
+
+
+def _counting(connection: Any, batch: dict[str, Any]) -> str:
+    """Which batch counts in the place of one that does not, to be put after what is said of it."""
+    counting = batches.counting_for(connection, batch["batch_id"])
+    return (
+        ""
+        if counting is None or counting["batch_id"] == batch["batch_id"]
+        else (f"; '{counting['batch']}' counts in its place")
     )
-    return Place(code), [problem]
+
+
+def _to_count_again(connection: Any, same: dict[str, Any]) -> str:
+    if same["state"] == "active":
+        return "nothing needs to be done"
+    restore = f"'plutonbook restore-batch {_quoted(same['batch'])}' lets it count again"
+    counting = batches.counting_for(connection, same["batch_id"])
+    return (
+        f"use {restore}" if counting is None else f"if it is right after all, withdraw '{counting['batch']}': {restore}"
+    )
 
 
 def _part(connection: Any, file: str, options: ImportOptions) -> tuple[Place, list[Problem]]:
     parent = batches.find_batch(connection, options.add_to or "")
     if parent is None or parent["state"] != "active":
         what = f"--add-to names batch '{options.add_to}', which is " + (
-            "not in the registry" if parent is None else parent["state"]
+            "not in the registry" if parent is None else parent["state"] + _counting(connection, parent)
         )
         return Place(""), [Problem(file, what, remedy="'plutonbook batches' lists the batches; name an active one")]
     code = options.batch or batches.free_code(connection, parent["batch"], "/")
     return Place(code, part_of=parent["part_of"] or parent["batch_id"]), []
 
 
-def _successor(
-    connection: Any, file: str, code: str, other: dict[str, Any] | None, options: ImportOptions
-) -> tuple[Place, list[Problem]]:
-    while other is not None and other["state"] == "superseded" and other["superseded_by"]:
-        other = batches.find_by_id(connection, other["superseded_by"])
+def _successor(connection: Any, file: str, code: str, other: dict[str, Any] | None) -> tuple[Place, list[Problem]]:
     if other is None:
         what = f"--supersede: no batch has the code or certificate number '{code}'"
         remedy = "name the batch that this file corrects with --batch, or import it without --supersede"
         return Place(code), [Problem(file, what, remedy=remedy)]
-    inherited = {name: other[name] for name in ("lab", "received_on", "reported_on")}
+    other = batches.counting_for(connection, other["batch_id"]) or other
+    inherited = {name: other[name] for name in ("lab", "received_on", "reported_on", "part_of")}
     code = batches.free_code(connection, code, " corrected ")
     return Place(code, supersedes=other["batch_id"], **inherited), []

@@ -37,16 +37,17 @@ class _NothingWritten(Exception):
 def set_state(registry: Registry, code: str, state: str, dry_run: bool = False) -> dict[str, Any]:
     """Withdraw (``withdrawn``) or restore (``active``) a batch and recompute what it touches, in one transaction.
 
-    ``dry_run`` tells what would happen and writes nothing.
+    ``dry_run`` tells what would happen and writes nothing. ``parts`` of the report are those that go with the batch.
     """
     verb = "withdrawn" if state == "withdrawn" else "restored"
+    parts: list[str] = []
 
     def change(connection: Any) -> None:
-        batches.set_state(connection, _batch_to_change(connection, code, state)["batch_id"], state)
+        parts.extend(batches.set_state(connection, _batch_to_change(connection, code, state)["batch_id"], state))
         auditing.note(connection, "batch", code, verb)
 
     report = recomputed_after(registry, change, f"a change of batch {code}", f"batch {code} {verb}", dry_run)
-    return {"batch": code, "state": state, **report}
+    return {"batch": code, "state": state, "parts": parts, **report}
 
 
 def set_digestions(
@@ -165,12 +166,14 @@ def _batch_to_change(connection: Any, code: str, state: str) -> dict[str, Any]:
     batch = _known(connection, code)
     if batch["state"] == state:
         raise PlutonbookError(f"batch '{code}' is {state} already; nothing was changed")
-    if batch["state"] == "superseded":
-        successor = batches.find_by_id(connection, batch["superseded_by"]) if batch["superseded_by"] else None
-        if state == "withdrawn" or (successor is not None and successor["state"] != "withdrawn"):
-            name = successor["batch"] if successor else "a corrected certificate"
-            raise PlutonbookError(
-                f"batch '{code}' was superseded by '{name}' and counts nowhere; withdraw '{name}' first, then "
-                f"'plutonbook restore-batch {code}' lets the earlier results count again"
-            )
+    counting = batches.counting_for(connection, batch["batch_id"])
+    if state == "withdrawn" and batch["state"] == "superseded":
+        whose = f"by '{counting['batch']}' " if counting is not None else ""
+        raise PlutonbookError(f"batch '{code}' was superseded {whose}and counts nowhere; there is nothing to withdraw")
+    if state == "active" and counting is not None:
+        name = counting["batch"]
+        raise PlutonbookError(
+            f"batch '{code}' is {batch['state']}, and in its place '{name}' counts; withdraw '{name}' first, then "
+            f"'plutonbook restore-batch {code}' lets these results count again"
+        )
     return batch

@@ -113,4 +113,6 @@ def _set_state(registry_path: str | None, batch: str, state: str, dry_run: bool,
     report = set_state(open_registry(registry_named(registry_path)), batch, state, dry_run)
     first, *others = changes_in_lines(report, dry_run)
     done = "withdrawn" if state == "withdrawn" else "restored"
-    say({**report, "dry_run": dry_run}, [f"Batch {batch} {done}: {first}", *others], as_json)
+    parts = report["parts"]
+    with_it = f" with {'its part' if len(parts) == 1 else 'its parts'} {', '.join(parts)}" if parts else ""
+    say({**report, "dry_run": dry_run}, [f"Batch {batch}{with_it} {done}: {first}", *others], as_json)

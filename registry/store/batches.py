@@ -98,23 +98,64 @@ def find_by_hash(connection: sa.Connection, sha256: str) -> dict[str, Any] | Non
 
 
 def find_by_certificate(connection: sa.Connection, certificate: str) -> dict[str, Any] | None:
-    """The oldest batch with this certificate number, None where there is none."""
-    return _first(connection, _batch.c.certificate == certificate)
+    """The batch with this certificate number: the oldest that counts, else the oldest; None where there is none."""
+    return _first(connection, _batch.c.certificate == certificate, sa.case((_batch.c.state == "active", 0), else_=1))
 
 
-def set_state(connection: sa.Connection, batch_id: int, state: str) -> None:
-    """Make a batch and its parts ``active``, ``superseded`` or ``withdrawn``; triggers mark their samples stale."""
+def set_state(connection: sa.Connection, batch_id: int, state: str) -> list[str]:
+    """Make a batch ``active``, ``superseded`` or ``withdrawn``; triggers mark its samples stale. Codes of its parts.
+
+    Those of its parts that are in the state it was in go with it; a part that another took the place of does not. A
+    batch that counts again takes the place of those that it was superseded by or that it superseded.
+    """
     if state not in STATES:
         raise ValueError(f"a batch cannot be '{state}'; its states are {', '.join(STATES)}")
-    whole = sa.or_(_batch.c.batch_id == batch_id, _batch.c.part_of == batch_id)
-    if not connection.execute(sa.update(_batch).where(whole).values(state=state)).rowcount:
+    batch = find_by_id(connection, batch_id)
+    if batch is None:
         raise NotFound(f"there is no batch with the id {batch_id}")
+    together = sa.and_(_batch.c.part_of == batch_id, _batch.c.state == batch["state"], _batch.c.superseded_by.is_(None))
+    parts = list(connection.scalars(sa.select(_batch.c.code).where(together).order_by(_batch.c.batch_id)))
+    whole = sa.or_(_batch.c.batch_id == batch_id, together)
+    connection.execute(sa.update(_batch).where(whole).values(state=state))
+    if state == "active":
+        _put_before(connection, batch_id)
+    return parts
 
 
 def supersede(connection: sa.Connection, batch_id: int, successor_id: int) -> None:
     """Let a corrected certificate take the place of a batch and its parts."""
+    earlier = lineage(connection, batch_id)
     set_state(connection, batch_id, "superseded")
     connection.execute(sa.update(_batch).where(_batch.c.batch_id == batch_id).values(superseded_by=successor_id))
+    _put_before(connection, successor_id, earlier)
+
+
+def lineage(connection: sa.Connection, batch_id: int) -> list[int]:
+    """The ids of a batch and of all that took its place or whose place it took, over several steps; ascending."""
+    linked: dict[int, set[int]] = {}
+    query = sa.select(_batch.c.batch_id, _batch.c.superseded_by).where(_batch.c.superseded_by.is_not(None))
+    for earlier, later in connection.execute(query):
+        linked.setdefault(earlier, set()).add(later)
+        linked.setdefault(later, set()).add(earlier)
+    found, open_ids = {batch_id}, [batch_id]
+    while open_ids:
+        further = linked.get(open_ids.pop(), set()) - found
+        found |= further
+        open_ids += further
+    return sorted(found)
+
+
+def counting_for(connection: sa.Connection, batch_id: int) -> dict[str, Any] | None:
+    """The batch that counts in the place of this one, which may be itself; None where none of them does."""
+    return _first(connection, sa.and_(_batch.c.batch_id.in_(lineage(connection, batch_id)), _batch.c.state == "active"))
+
+
+def _put_before(connection: sa.Connection, batch_id: int, others: Iterable[int] = ()) -> None:
+    """Let a batch be the last of its lineage: what was last before is superseded by it."""
+    others = {*others, *lineage(connection, batch_id)} - {batch_id}
+    last = sa.and_(_batch.c.batch_id.in_(others), _batch.c.superseded_by.is_(None))
+    connection.execute(sa.update(_batch).where(last).values(superseded_by=batch_id))
+    connection.execute(sa.update(_batch).where(_batch.c.batch_id == batch_id).values(superseded_by=None))
 
 
 def free_code(connection: sa.Connection, code: str, mark: str) -> str:
@@ -155,6 +196,7 @@ def _described() -> list[Any]:
     ]
 
 
-def _first(connection: sa.Connection, condition: Any) -> dict[str, Any] | None:
-    row = connection.execute(sa.select(*_described()).where(condition).order_by(_batch.c.batch_id)).first()
+def _first(connection: sa.Connection, condition: Any, *order: Any) -> dict[str, Any] | None:
+    query = sa.select(*_described()).where(condition).order_by(*order, _batch.c.batch_id)
+    row = connection.execute(query).first()
     return None if row is None else dict(row._mapping)
