@@ -44,7 +44,7 @@ def set_state(registry: Registry, code: str, state: str, dry_run: bool = False) 
 
     def change(connection: Any) -> None:
         parts.extend(batches.set_state(connection, _batch_to_change(connection, code, state)["batch_id"], state))
-        auditing.note(connection, "batch", code, verb)
+        auditing.note(connection, "batch", f"batch {code}", verb)
 
     report = recomputed_after(registry, change, f"a change of batch {code}", f"batch {code} {verb}", dry_run)
     return {"batch": code, "state": state, "parts": parts, **report}
@@ -69,7 +69,7 @@ def set_digestions(
             f"{was[position]['header'] or was[position]['analyte']} {was[position]['digestion']} -> {digestion}"
             for position, digestion in digestions.items()
         ]
-        auditing.note(connection, "digestion", code, "; ".join(said))
+        auditing.note(connection, "digestion", f"batch {code}", "; ".join(said))
 
     what, cause = f"a change of batch {code}", f"digestions of batch {code} stated"
     return {"batch": code, **recomputed_after(registry, change, what, cause, dry_run)}

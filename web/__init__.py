@@ -19,6 +19,7 @@ from web import (
     errors,
     importing,
     intrusions,
+    log,
     methods,
     numbers,
     pictures,
@@ -65,7 +66,20 @@ def create_app(registry_path_or_url: str, writable: bool = False, drafts: Any = 
     pictures.register(app)
     wording.register(app)
     errors.register(app)
-    for part in (start, samples, sample, diagrams, batches, targets, methods, intrusions, sites, settings, editing):
+    for part in (
+        start,
+        samples,
+        sample,
+        diagrams,
+        batches,
+        targets,
+        methods,
+        intrusions,
+        sites,
+        settings,
+        editing,
+        log,
+    ):
         app.register_blueprint(part.blueprint)
     importing.register(app, drafts)
     return app

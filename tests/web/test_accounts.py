@@ -237,7 +237,7 @@ def test_accounts_name_stands_with_what_its_owner_did(site: Site) -> None:
     assert done == [
         ("anna", "edit", "sample PB-002"),
         ("anna", "setting", "loi_warn_wt"),
-        ("anna", "batch", "Q-2041"),
+        ("anna", "batch", "batch Q-2041"),
         ("anna", "import", "samples"),
         ("anna", "import", "batch X-1"),
     ]
