@@ -6,6 +6,7 @@ from flask import Flask, Response, render_template, request
 from werkzeug.exceptions import HTTPException, SecurityError
 
 from registry.errors import NotFound, PlutonbookError, RegistryBusy
+from web.writing import OPEN_ENDPOINTS
 
 
 class Missing(Exception):
@@ -31,6 +32,8 @@ def _http(fault: HTTPException) -> tuple[str, int, dict[str, str]]:
         413: "What was sent is larger than the 200 MB that this page takes. Send fewer files at once, or read a large "
         "file on the command line: plutonbook import FILE.",
     }
+    if request.endpoint in OPEN_ENDPOINTS:
+        known[413] = "What was sent is larger than a name and a password can be."
     status = fault.code or 500
     headers = {}
     if status == 405 and getattr(fault, "valid_methods", None):

@@ -74,12 +74,15 @@ def _serve(path: str, host: str, port: int, https_name: str | None = None) -> No
     from web.serving import serve as serve_site
 
     try:
-        serve_site(path, host, port, announce=_announce, https_name=https_name)
+        serve_site(path, host, port, announce=lambda address: _announce(address, https_name), https_name=https_name)
     except OSError as error:
         raise UsageError(
             f"port {port} on {host} cannot be used ({error.strerror}); choose another with --port"
         ) from error
 
 
-def _announce(address: str) -> None:
-    click.echo(f"Plutonbook is at {address} (stop: Ctrl-C)")
+def _announce(address: str, https_name: str | None) -> None:
+    told = f"Plutonbook is at {address}"
+    if https_name is not None:
+        told = f"Plutonbook is at https://{https_name}/ once a proxy passes that on to {address}"
+    click.echo(f"{told} (stop: Ctrl-C)")
