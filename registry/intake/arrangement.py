@@ -84,20 +84,17 @@ def _gathered(
 ) -> Arranged | None:
     gathered = gather(source, layout, findings)
     named = ", ".join(f"{role} in '{layout.labels[at]}'" for role, at in sorted(layout.roles.items()))
-    understood.append(f"a long table, one result a line ({len(gathered.line_of)} results): {named}")
+    understood.append(f"a long table, one result a line ({gathered.rows.results} results): {named}")
     if not gathered.columns:
         return None
     findings.place = gathered.place_of_cells()
-    width = len(gathered.columns) + 2
-    for row in gathered.grid:
-        row.extend([""] * (width - len(row)))
     sample = layout.labels[layout.roles["sample"]]
     control = layout.roles.get("control")
     labels = [sample, layout.labels[control] if control is not None else ""]
     labels += [column.header for column in gathered.columns]
-    wide = WideLayout(width, {}, 0, gathered.columns, labels, CodeColumn(0, sample), _titles(preview[: layout.header]))
-    grid = GridSource(gathered.grid, np.array(gathered.lines, np.int64))
-    return Arranged(grid, wide, len(gathered.grid), True, 1 if control is not None else None)
+    titles = _titles(preview[: layout.header])
+    wide = WideLayout(gathered.rows.width, {}, 0, gathered.columns, labels, CodeColumn(0, sample), titles)
+    return Arranged(gathered.rows, wide, len(gathered.rows), True, 1 if control is not None else None)
 
 
 def _turned(

@@ -3,7 +3,6 @@
 from __future__ import annotations
 
 import re
-from array import array
 from collections.abc import Callable
 from dataclasses import dataclass, field
 from functools import lru_cache
@@ -11,6 +10,7 @@ from functools import lru_cache
 from registry.intake.cells import NO_QUALIFIER, QUALIFIER_CODES
 from registry.intake.codes import heading_score
 from registry.intake.findings import Findings
+from registry.intake.gathering import GatheredRows
 from registry.intake.layout import SEARCH_ROWS, AnalyteColumn
 from registry.intake.names import Heading, read_heading
 from registry.intake.sources import Source
@@ -44,24 +44,19 @@ class LongLayout:
 
 @dataclass
 class Gathered:
-    """A long table turned wide: ``grid`` rows are [code, control text, cells ...], ``lines`` their first lines."""
+    """A long table turned wide: its ``rows``, and what its analyte columns are."""
 
+    rows: GatheredRows
     columns: list[AnalyteColumn] = field(default_factory=list)
-    grid: list[list[str]] = field(default_factory=list)
-    lines: list[int] = field(default_factory=list)
-    row_of: array[int] = field(default_factory=lambda: array("q"))
-    column_of: array[int] = field(default_factory=lambda: array("q"))
-    line_of: array[int] = field(default_factory=lambda: array("q"))
 
     def place_of_cells(self) -> Callable[[int | None, str | None], tuple[int | None, str | None]]:
         """A function that turns (first line of the row, column) into the line on which that very result stands."""
-        exact: dict[tuple[int, str], int] = {}
+        position_of = {column.header: place for place, column in enumerate(self.columns)}
 
         def place(row: int | None, column: str | None) -> tuple[int | None, str | None]:
-            if not exact:
-                for number, position, line in zip(self.row_of, self.column_of, self.line_of, strict=True):
-                    exact[self.lines[number], self.columns[position].header] = line
-            return (row if row is None or column is None else exact.get((row, column), row)), column
+            if row is None or column not in position_of:
+                return row, column
+            return self.rows.line_of(row, position_of[column]), column
 
         return place
 
@@ -97,11 +92,9 @@ def _role(cell: str) -> str | None:
 
 def gather(source: Source, layout: LongLayout, findings: Findings) -> Gathered:
     """Walk the lines once; a second result of one analyte, unit and method for a code opens a second row of it."""
-    gathered = Gathered()
+    gathered = Gathered(GatheredRows(source.on_disk))
     at = layout.roles
     columns: dict[tuple[str, ...], int | None] = {}
-    rows: dict[tuple[str, int], int] = {}
-    seen: dict[tuple[str, int], int] = {}
     skip = layout.header + 1
     keys = [role for role in ("analyte", "unit", "method", "digestion", "lower", "upper") if role in at]
     for chunk in source.chunks():
@@ -131,23 +124,11 @@ def gather(source: Source, layout: LongLayout, findings: Findings) -> Gathered:
             column = columns[key]
             if column is None:
                 continue
-            occurrence = seen.get((code, column), 0)
-            seen[code, column] = occurrence + 1
-            row = rows.get((code, occurrence))
-            if row is None:
-                row = rows[code, occurrence] = len(gathered.grid)
-                gathered.grid.append([code, said.strip()])
-                gathered.lines.append(line)
-            cells_of_row = gathered.grid[row]
-            if len(cells_of_row) < column + 3:
-                cells_of_row.extend([""] * (column + 3 - len(cells_of_row)))
             sign = sign.strip()
             if sign:
                 text = _joined(sign, text, line, layout.labels[at["qualifier"]], findings)
-            cells_of_row[column + 2] = text
-            gathered.row_of.append(row)
-            gathered.column_of.append(column)
-            gathered.line_of.append(line)
+            gathered.rows.add(code, said.strip(), column, text, line)
+    gathered.rows.width = len(gathered.columns) + 2
     return gathered
 
 

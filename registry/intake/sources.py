@@ -102,6 +102,9 @@ _END = "\x03"
 class Source:
     """Rows of cells. ``chunks`` may be called again and starts from the top each time."""
 
+    #: whether it is too large to be held in memory whole
+    on_disk: bool = False
+
     def chunks(self) -> Iterator[Chunk]:
         raise NotImplementedError
 
@@ -147,10 +150,7 @@ class DelimitedSource(Source):
     ) -> None:
         self.data, self.encoding, self.separator = data, encoding, separator
         self._known_quoted, self.watch = quoted, watch
-
-    @property
-    def on_disk(self) -> bool:
-        return isinstance(self.data, Path)
+        self.on_disk = isinstance(data, Path)
 
     @cached_property
     def quoted(self) -> bool:

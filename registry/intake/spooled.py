@@ -21,7 +21,7 @@ BLOCK_ROWS = 16_384
 _HASH_BITS = 0xFFFFFFFF
 
 
-class _Scratch:
+class Scratch:
     """A nameless file that is closed, and so gone, with its last user."""
 
     def __init__(self) -> None:
@@ -30,13 +30,16 @@ class _Scratch:
     def __del__(self) -> None:
         self._file.close()
 
-    def append(self, data: bytes) -> None:
-        self._file.seek(0, 2)
+    def append(self, data: bytes) -> tuple[int, int]:
+        """Write bytes at the end; where they begin and how many they are."""
+        begin = self._file.seek(0, 2)
         view = memoryview(data)
         while view:
             view = view[self._file.write(view) :]
+        return begin, len(data)
 
     def read(self, offset: int, size: int) -> bytes:
+        """``size`` bytes from ``offset`` on."""
         self._file.seek(offset)
         pieces = []
         while size:
@@ -58,7 +61,7 @@ class SpooledArray:
 
     def __init__(self, width: int, dtype: Any) -> None:
         self.dtype = np.dtype(dtype)
-        self._scratch = _Scratch()
+        self._scratch = Scratch()
         self._width = width
         self._columns = list(range(width))
         self._filling: NDArray[Any] = np.empty((width, BLOCK_ROWS), self.dtype)

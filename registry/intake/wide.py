@@ -24,7 +24,7 @@ from registry.intake.cells import (
 from registry.intake.findings import Findings
 from registry.intake.names import read_heading
 from registry.intake.readings import ResultColumn
-from registry.intake.sources import Chunk, DelimitedSource, Source
+from registry.intake.sources import Chunk, Source
 from registry.intake.units import canonical_unit
 from registry.intake.wide_body import RowsInMemory, SpooledRows, Texts, WideBody
 from registry.petrology.analytes import WT_PERCENT_PER_UNIT
@@ -64,8 +64,7 @@ class WideReader:
 
     def read(self, source: Source, first_row: int, row_bound: int, watch_underscores: bool) -> WideBody:
         """Read everything from ``first_row`` on; ``row_bound`` is at least the number of rows."""
-        on_disk = isinstance(source, DelimitedSource) and source.on_disk
-        kept_rows = SpooledRows(len(self.columns)) if on_disk else RowsInMemory(len(self.columns), row_bound)
+        kept_rows = SpooledRows(len(self.columns)) if source.on_disk else RowsInMemory(len(self.columns), row_bound)
         control: list[str | None] = []
         skip = first_row
         for chunk in source.chunks():

@@ -19,6 +19,7 @@ import pytest
 ROOT = Path(__file__).resolve().parents[2]
 ROWS = tuple(map(int, os.environ.get("PLUTONBOOK_MEMORY_ROWS", "10000,100000,1000000").split(",")))
 ROWS_IMPORTED = tuple(map(int, os.environ.get("PLUTONBOOK_MEMORY_ROWS_IMPORTED", "40000,400000").split(",")))
+LONG_ROWS, LONG_BYTES_A_LINE = (5_000, 50_000), 40
 MOST_GROWTH = 1.2
 HEADINGS = (
     "SiO2 (%),TiO2 (%),Al2O3 (%),MgO (%),CaO (%),Na2O (%),K2O (%),Rb (ppm),Sr (ppm),Y (ppm),Zr (ppm),Nb (ppm),Ba (ppm),"
@@ -82,6 +83,32 @@ def test_reading_ten_times_the_rows_takes_the_same_memory(tmp_path: Path) -> Non
     peaks = [run(READ, write(tmp_path / f"{rows}.csv", rows), rows) for rows in ROWS]
     print(", ".join(f"{rows:,} rows {peak / 1e6:.0f} MB" for rows, peak in zip(ROWS, peaks, strict=True)))
     assert peaks[-1] <= MOST_GROWTH * peaks[-2]
+
+
+def write_long(path: Path, rows: int) -> Path:
+    """The wide file's numbers, one a line: every analyte of the first samples, then every one of the next."""
+    names = [heading.strip(")").split(" (") for heading in HEADINGS.split(",")]
+    random = np.random.default_rng(20261201)
+    with path.open("w") as file:
+        file.write("Sample,Analyte,Value,Unit\n")
+        for start in range(0, rows, 10_000):
+            values = np.round(TYPICAL * random.lognormal(0.0, 0.08, (min(10_000, rows - start), len(TYPICAL))), 3)
+            for place, (analyte, unit) in enumerate(names):
+                column = values[:, place].tolist()
+                file.writelines(f"BM{start + at:07d},{analyte},{value},{unit}\n" for at, value in enumerate(column))
+    return path
+
+
+@pytest.mark.benchmark
+@pytest.mark.skipif(not Path("/proc/self/status").exists(), reason="the kernel does not tell a process its peak")
+def test_reading_a_long_table_takes_a_few_bytes_a_line_more(tmp_path: Path) -> None:
+    """Its lines may come in any order, so that of each sample the code, its first line and a bit a column are held."""
+    peaks = [run(READ, write_long(tmp_path / f"{rows}.csv", rows), rows) for rows in LONG_ROWS]
+    lines = [rows * len(TYPICAL) for rows in LONG_ROWS]
+    grown = (peaks[-1] - peaks[-2]) / (lines[-1] - lines[-2])
+    told = ", ".join(f"{count:,} lines {peak / 1e6:.0f} MB" for count, peak in zip(lines, peaks, strict=True))
+    print(f"{told}: {grown:.0f} bytes a line (limit {LONG_BYTES_A_LINE})")
+    assert grown <= LONG_BYTES_A_LINE
 
 
 @pytest.mark.benchmark
