@@ -10,10 +10,10 @@ from typing import IO, Any
 from registry import auditing
 from registry.errors import NotFound, PlutonbookError, UsageError
 from registry.petrology.digestion import DIGESTIONS
-from registry.refresh import changes_since, drain, last_change
+from registry.progress import Progress
+from registry.recomputing import recomputed_after
 from registry.store import batch_files, batches
-from registry.store.engine import Registry, reading, writing
-from registry.store.reading.changes import verdict_changes
+from registry.store.engine import Registry, reading
 
 #: A stored file that is larger is handed out from disk.
 _IN_MEMORY_BYTES = 8_000_000
@@ -30,11 +30,15 @@ def list_batches(registry: Registry) -> list[dict[str, Any]]:
         return batches.list_batches(connection)
 
 
-class _NothingWritten(Exception):
-    """Rolls a dry run back."""
-
-
-def set_state(registry: Registry, code: str, state: str, dry_run: bool = False) -> dict[str, Any]:
+def set_state(
+    registry: Registry,
+    code: str,
+    state: str,
+    dry_run: bool = False,
+    *,
+    progress: Progress | None = None,
+    tell: Callable[[str], Any] | None = None,
+) -> dict[str, Any]:
     """Withdraw (``withdrawn``) or restore (``active``) a batch and recompute what it touches, in one transaction.
 
     ``dry_run`` tells what would happen and writes nothing. ``parts`` of the report are those that go with the batch.
@@ -46,12 +50,20 @@ def set_state(registry: Registry, code: str, state: str, dry_run: bool = False) 
         parts.extend(batches.set_state(connection, _batch_to_change(connection, code, state)["batch_id"], state))
         auditing.note(connection, "batch", f"batch {code}", verb)
 
-    report = recomputed_after(registry, change, f"a change of batch {code}", f"batch {code} {verb}", dry_run)
+    what = f"{'a trial of ' if dry_run else ''}{'withdrawing' if state == 'withdrawn' else 'restoring'} batch {code}"
+    cause = f"batch {code} {verb}"
+    report = recomputed_after(registry, change, what, cause, dry_run, progress=progress, tell=tell)
     return {"batch": code, "state": state, "parts": parts, **report}
 
 
 def set_digestions(
-    registry: Registry, code: str, digestions: Mapping[int, str], dry_run: bool = False
+    registry: Registry,
+    code: str,
+    digestions: Mapping[int, str],
+    dry_run: bool = False,
+    *,
+    progress: Progress | None = None,
+    tell: Callable[[str], Any] | None = None,
 ) -> dict[str, Any]:
     """Say how columns of a batch (by their position) were digested and recompute its samples, in one transaction.
 
@@ -71,8 +83,9 @@ def set_digestions(
         ]
         auditing.note(connection, "digestion", f"batch {code}", "; ".join(said))
 
-    what, cause = f"a change of batch {code}", f"digestions of batch {code} stated"
-    return {"batch": code, **recomputed_after(registry, change, what, cause, dry_run)}
+    what = f"{'a trial of ' if dry_run else ''}digestions of batch {code}"
+    cause = f"digestions of batch {code} stated"
+    return {"batch": code, **recomputed_after(registry, change, what, cause, dry_run, progress=progress, tell=tell)}
 
 
 def columns_of(registry: Registry, code: str) -> list[dict[str, Any]]:
@@ -114,25 +127,6 @@ def digestion_named(words: str) -> str:
     if name not in DIGESTION_NAMES:
         raise UsageError(f"there is no digestion '{words}'; the digestions are {', '.join(DIGESTION_NAMES)}")
     return name
-
-
-def recomputed_after(
-    registry: Registry, change: Callable[[Any], Any], what: str, cause: str, dry_run: bool
-) -> dict[str, Any]:
-    """Change something and recompute what it touches: how many samples, how many verdicts, and the first of these."""
-    report: dict[str, Any] = {}
-    try:
-        with writing(registry, what=what) as connection:
-            before = last_change(connection)
-            change(connection)
-            report["recomputed"] = drain(connection, cause=cause)
-            report["verdicts_changed"] = changes_since(connection, before)
-            report["changes"] = verdict_changes(connection, before)
-            if dry_run:
-                raise _NothingWritten
-    except _NothingWritten:
-        pass
-    return report
 
 
 def stored_file(registry: Registry, code: str) -> tuple[str, IO[bytes]]:

@@ -20,6 +20,8 @@ def words(what: str, done: int, total: int, *, file: str = "", trial: bool = Fal
         return f"Reading {file or 'the files'}" + (f", file {done + 1} of {total}." if total > 1 else ".")
     if what == "reading bytes":
         return f"Reading{f' {file}' if file else ''}: {done / 1e6:,.0f} of {total / 1e6:,.0f} MB."
+    if what == "marking":
+        return "Finding the samples it touches."
     if what == "writing":
         return "Undoing the trial." if trial else "Writing it to the registry."
     verb = _VERBS.get(what, what.capitalize())

@@ -28,12 +28,13 @@ def drain(
     cause: str = "edited",
     limit: int | None = None,
     progress: Progress | None = None,
+    trial: bool = False,
 ) -> int:
     """Compute what is stale, inside the caller's transaction; how many samples were computed or judged.
 
     See ``drained_samples``.
     """
-    return len(drained_samples(connection, cause, limit, progress))
+    return len(drained_samples(connection, cause, limit, progress, trial))
 
 
 def drained_samples(
@@ -41,12 +42,14 @@ def drained_samples(
     cause: str = "edited",
     limit: int | None = None,
     progress: Progress | None = None,
+    trial: bool = False,
 ) -> np.ndarray:
     """Compute what is stale, inside the caller's transaction; ids of the samples computed or judged, int64.
 
     At most ``limit`` stale samples are dealt with; those that were never analysed have nothing to compute and are not
     among the ids. ``cause`` is written beside each verdict that changes; ``progress("computing", done, all)`` is called
-    by chunks.
+    by chunks. ``trial``: only the log of verdict changes is written, for a caller who rolls everything back; what is
+    computed for samples and intrusions is not.
     """
     settle(connection)
     rules: Rules | None = None
@@ -66,12 +69,13 @@ def drained_samples(
         computed.append(np.array(sorted(analysed), dtype=np.int64))
         if derive:
             held = held_columns(connection, rules.conventions)
-            recompute(connection, recompose(connection, derive, held), rules, cause, rewrite_composition=True)
+            composition = recompose(connection, derive, held)
+            recompute(connection, composition, rules, cause, rewrite_composition=True, trial=trial)
         if judge:
-            recompute(connection, loading.load_composition(connection, judge), rules, cause)
+            recompute(connection, loading.load_composition(connection, judge), rules, cause, trial=trial)
         stale.clear(connection, [sample_id for sample_id, _ in pending])
         done += len(pending)
-    if limit is None or not stale.pending(connection, 1):
+    if not trial and (limit is None or not stale.pending(connection, 1)):
         refresh_groups(connection)
     return np.concatenate(computed)
 
@@ -143,17 +147,29 @@ def chunk_of(connection: Any, composition: loading.Composition) -> Chunk:
 
 
 def recompute(
-    connection: Any, composition: loading.Composition, rules: Rules, cause: str, *, rewrite_composition: bool = False
+    connection: Any,
+    composition: loading.Composition,
+    rules: Rules,
+    cause: str,
+    *,
+    rewrite_composition: bool = False,
+    trial: bool = False,
 ) -> None:
-    """Derive and judge one chunk of samples, write all of it and log the verdicts that changed."""
+    """Derive and judge one chunk of samples, write all of it and log the verdicts that changed.
+
+    ``trial``: log the changes and write nothing else; the chunk then reads the same rows and gives the same verdicts.
+    """
     chunk = chunk_of(connection, composition)
     computed = compute(chunk, rules.definitions, rules.conventions)
-    if rewrite_composition:
+    if rewrite_composition and not trial:
         bulk.write_composition(connection, chunk.sample_id, chunk.values, chunk.qualifiers, chunk.digestions)
         stale_groups.mark_of_samples(connection, chunk.sample_id)
-    before = bulk.verdicts_of(connection, chunk.sample_id)
-    write_computed(connection, chunk.sample_id, computed, rules)
-    bulk.log_verdict_changes(connection, before, bulk.verdicts_of(connection, chunk.sample_id), cause, now())
+    targets = [rules.target_ids[code] for code in computed.verdicts]
+    before = bulk.verdicts_of(connection, chunk.sample_id, targets)
+    after = bulk.codes_of(list(computed.verdicts.values()), len(chunk.sample_id))
+    if not trial:
+        write_computed(connection, chunk.sample_id, computed, rules)
+    bulk.log_verdict_changes(connection, chunk.sample_id, targets, before, after, cause, now())
 
 
 def write_fresh(connection: Any, chunk: Chunk, outcome: Computed | bytes, rules: Rules) -> None:

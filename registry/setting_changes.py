@@ -7,11 +7,11 @@ from collections.abc import Mapping, Sequence
 from typing import Any
 
 from registry import auditing, settings
-from registry.batching import recomputed_after
 from registry.errors import PlutonbookError, UsageError
 from registry.judging import CONVENTION_PREFIX
 from registry.petrology.catalogue.conventions import CONVENTIONS
 from registry.quality.recognising import PATTERN_NAMES, PATTERN_PREFIX, Patterns
+from registry.recomputing import recomputed_after
 from registry.store import target_rows
 from registry.store.engine import Registry, reading
 

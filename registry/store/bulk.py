@@ -16,8 +16,9 @@ from registry.store.raw_rows import cells
 from registry.store.sheets import DERIVED_COLUMNS, VERDICT_WORDS
 from registry.store.stale_rules import PREFIX
 from registry.store.verdict_rows import (
+    NO_VERDICT,
     Judged,
-    VerdictCodes,
+    codes_of,
     count_verdict_changes,
     last_verdict_change,
     log_verdict_changes,
@@ -26,11 +27,12 @@ from registry.store.verdict_rows import (
 )
 
 __all__ = [
+    "NO_VERDICT",
     "QUALIFIER_LETTERS",
     "Judged",
-    "VerdictCodes",
     "allocate_ids",
     "censored",
+    "codes_of",
     "count_verdict_changes",
     "guarded",
     "insert_aliquots",

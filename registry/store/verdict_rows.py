@@ -11,8 +11,8 @@ import sqlalchemy as sa
 from registry.store import raw_rows, tables
 from registry.store.raw_rows import cells
 
-#: (sample id, target id) -> verdict code.
-VerdictCodes = dict[tuple[int, int], int]
+#: Stands in an array of verdict codes where there is no verdict.
+NO_VERDICT = 255
 
 
 class Judged(Protocol):
@@ -33,34 +33,26 @@ def write_verdicts(
     judged_targets: Sequence[tuple[int, int, Judged]],
     fresh: bool = False,
 ) -> None:
-    """Upsert the verdicts of several targets on n samples; where ``judged`` is false earlier verdicts are deleted.
+    """Write the verdicts of several targets on n samples in the place of those that are there.
 
-    ``judged_targets``: (target id, target version id, verdicts). Rows are written in key order (sample, then target),
-    which keeps the table half as large as target after target.
+    Where ``judged`` is false the sample has none afterwards. Deleting the earlier rows and inserting the new ones is
+    quicker than overwriting each, up to twice where verdicts change (measured). ``judged_targets``: (target id, target
+    version id, verdicts). Rows are written in key order (sample, then target), which keeps the table half as large as
+    target after target.
     """
     ids = np.asarray(sample_ids, dtype=np.int64)
     sqlite = raw_rows.is_sqlite(connection)
     by_mask: dict[bytes, list[tuple[int, int, Judged]]] = {}
+    if judged_targets and not fresh:
+        targets = ", ".join(str(int(target_id)) for target_id, _, _ in judged_targets)
+        raw_rows.select(connection, f"DELETE FROM verdict WHERE sample_id {{ids}} AND target_id IN ({targets})", ids)
     for entry in sorted(judged_targets, key=lambda entry: entry[0]):
         by_mask.setdefault(np.asarray(entry[2].judged, dtype=bool).tobytes(), []).append(entry)
     for mask, entries in by_mask.items():
         judged = np.frombuffer(mask, dtype=bool)
-        if not judged.all() and not fresh:
-            targets = ", ".join(str(int(target_id)) for target_id, _, _ in entries)
-            raw_rows.select(
-                connection, f"DELETE FROM verdict WHERE target_id IN ({targets}) AND sample_id {{ids}}", ids[~judged]
-            )
         parts = [_verdict_columns(ids, judged, *entry, sqlite) for entry in entries]
         columns = {name: _interleaved([part[name] for part in parts]) for name in parts[0]}
-        raw_rows.upsert(
-            connection,
-            "verdict",
-            ("sample_id", "target_id"),
-            list(columns),
-            list(columns.values()),
-            ("probability",),
-            fresh,
-        )
+        raw_rows.insert(connection, "verdict", list(columns), list(columns.values()))
 
 
 def _verdict_columns(
@@ -90,37 +82,62 @@ def _interleaved(lists: list[list[Any]]) -> list[Any]:
     return mixed
 
 
-def verdicts_of(connection: sa.Connection, sample_ids: Any) -> VerdictCodes:
-    """The stored verdict codes of samples, by (sample id, target id)."""
+def verdicts_of(connection: sa.Connection, sample_ids: np.ndarray, target_ids: Sequence[int]) -> np.ndarray:
+    """The stored verdict codes of samples (ids ascending), uint8 (targets, n); ``NO_VERDICT`` where there is none."""
+    ids, targets = np.asarray(sample_ids, dtype=np.int64), np.asarray(target_ids, dtype=np.int64)
+    codes = np.full((len(targets), len(ids)), NO_VERDICT, dtype=np.uint8)
     rows = raw_rows.select(
         connection, "SELECT sample_id, target_id, verdict FROM verdict WHERE sample_id {ids}", sample_ids
     )
-    return {(sample_id, target_id): verdict for sample_id, target_id, verdict in rows}
+    if rows and len(targets):
+        found = raw_rows.numbers_of(rows, 3).astype(np.int64)
+        order = np.argsort(targets)
+        place = order[np.minimum(np.searchsorted(targets[order], found[:, 1]), len(targets) - 1)]
+        found, place = found[targets[place] == found[:, 1]], place[targets[place] == found[:, 1]]
+        codes[place, np.searchsorted(ids, found[:, 0])] = found[:, 2]
+    return codes
+
+
+def codes_of(judged_targets: Sequence[Judged], n: int) -> np.ndarray:
+    """The codes of verdicts that were just made, as ``verdicts_of`` would read them back: uint8 (targets, n)."""
+    codes = np.full((len(judged_targets), n), NO_VERDICT, dtype=np.uint8)
+    for row, verdicts in zip(codes, judged_targets, strict=True):
+        np.copyto(row, np.asarray(verdicts.verdict, dtype=np.uint8), where=np.asarray(verdicts.judged, dtype=bool))
+    return codes
 
 
 def log_verdict_changes(
-    connection: sa.Connection, before: VerdictCodes, after: VerdictCodes, cause: str, changed_at: str
+    connection: sa.Connection,
+    sample_ids: np.ndarray,
+    target_ids: Sequence[int],
+    before: np.ndarray,
+    after: np.ndarray,
+    cause: str,
+    changed_at: str,
 ) -> int:
-    """Log every verdict that changed or vanished between two calls of ``verdicts_of``; how many.
+    """Log every verdict that changed or vanished, by sample and then target; how many.
 
-    A first verdict is not a change.
+    ``before`` and ``after`` are codes, uint8 (targets, n), as ``verdicts_of`` reads them. A first verdict is no change.
     """
-    changed = [(key, code, after.get(key)) for key, code in before.items() if after.get(key) != code]
-    changed.sort(key=lambda change: change[0])
-    rows = [
-        {
-            "sample_id": sample_id,
-            "target_id": target_id,
-            "changed_at": changed_at,
-            "verdict_from": old,
-            "verdict_to": new,
-            "cause": cause,
-        }
-        for (sample_id, target_id), old, new in changed
-    ]
-    if rows:
-        connection.execute(sa.insert(tables.verdict_change), rows)
-    return len(rows)
+    ids, targets = np.asarray(sample_ids, dtype=np.int64), np.asarray(target_ids, dtype=np.int64)
+    by_target = np.argsort(targets)
+    sample, place = np.nonzero(((before != after) & (before != NO_VERDICT))[by_target].T)
+    place = by_target[place]
+    later = after[place, sample].tolist()
+    raw_rows.insert(
+        connection,
+        "verdict_change",
+        ("sample_id", "target_id", "changed_at", "verdict_from", "verdict_to", "cause"),
+        [
+            ids[sample].tolist(),
+            targets[place].tolist(),
+            [changed_at] * len(sample),
+            before[place, sample].tolist(),
+            [None if code == NO_VERDICT else code for code in later],
+            [cause] * len(sample),
+        ],
+    )
+    return len(sample)
 
 
 def last_verdict_change(connection: sa.Connection) -> int:

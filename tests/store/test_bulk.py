@@ -262,16 +262,18 @@ def test_verdicts_are_written_overwritten_and_deleted_for_controls(any_registry:
         everywhere = np.ones(3, dtype=bool)
         first = Judged(np.array([0, 1, 2], dtype=np.uint8), [REASONS] * 3, everywhere)
         bulk.write_verdicts(connection, ids, [(*target, first)])
-        before = bulk.verdicts_of(connection, ids)
+        before = bulk.verdicts_of(connection, ids, [target[0], 99])
         again = Judged(np.array([0, 3, 255], dtype=np.uint8), [REASONS, REASONS, ""], np.array([True, True, False]))
         bulk.write_verdicts(connection, ids, [(*target, again)])
-        after = bulk.verdicts_of(connection, ids)
-        logged = bulk.log_verdict_changes(connection, before, after, "edited", "2026-01-02T00:00:00Z")
+        after = bulk.verdicts_of(connection, ids, [target[0], 99])
+        assert (after[:1] == bulk.codes_of([again], 3)).all()
+        logged = bulk.log_verdict_changes(connection, ids, [target[0], 99], before, after, "edited", "2026-01-02")
         changes = connection.exec_driver_sql(
             "SELECT sample_code, target, verdict_from, verdict_to, cause FROM change_sheet ORDER BY sample_id"
         ).fetchall()
-    assert before == {(1, 1): 0, (2, 1): 1, (3, 1): 2}
-    assert after == {(1, 1): 0, (2, 1): 3}
+    none = bulk.NO_VERDICT
+    assert before.tolist() == [[0, 1, 2], [none] * 3]
+    assert after.tolist() == [[0, 3, none], [none] * 3]
     assert logged == 2
     assert [tuple(row) for row in changes] == [
         ("X002", "tin", "possible", "undecided", "edited"),
@@ -280,7 +282,8 @@ def test_verdicts_are_written_overwritten_and_deleted_for_controls(any_registry:
     with writing(any_registry) as connection:
         assert bulk.last_verdict_change(connection) == 2
         assert bulk.count_verdict_changes(connection, 1) == 1
-        assert bulk.log_verdict_changes(connection, {}, after, "first", "2026-01-02T00:00:00Z") == 0
+        first_of_all = np.full_like(after, none)
+        assert bulk.log_verdict_changes(connection, ids, [target[0], 99], first_of_all, after, "first", "2026") == 0
 
 
 def test_verdict_with_broken_reasons_is_refused(any_registry: Registry) -> None:
@@ -402,10 +405,7 @@ def test_verdicts_of_several_targets_are_written_at_once(any_registry: Registry)
             for place, (target_id, version_id, _, _) in enumerate(installed)
         ]
         bulk.write_verdicts(connection, ids, judged)
-        stored = bulk.verdicts_of(connection, ids)
-    assert stored == {
-        (int(sample_id), target_id): place % 4
-        for place, (target_id, _, _, _) in enumerate(installed)
-        for row, sample_id in enumerate(ids)
-        if masks[place % 2][row]
-    }
+        stored = bulk.verdicts_of(connection, ids, [target_id for target_id, _, _, _ in installed[::-1]])
+    assert stored[::-1].tolist() == [
+        [place % 4 if masks[place % 2][row] else bulk.NO_VERDICT for row in range(5)] for place in range(len(installed))
+    ]
