@@ -12,16 +12,23 @@ from typing import Any
 
 import numpy as np
 
+from registry.control_lines import load_controls, values_of
 from registry.errors import PlutonbookError
 from registry.petrology.conventions import Conventions
-from registry.quality import recognising
-from registry.quality.assessment import DUPLICATE, LAB_REPEAT, Column, Controls, Outcome, judge_batch
-from registry.quality.recognising import Patterns, Spoken, material_of, read_control_text
-from registry.quality.shipped import ReferenceValue, shipped_values
+from registry.quality.assessment import Column, Controls, Outcome, judge_batch
+from registry.quality.recognising import Patterns, Spoken
+from registry.quality.shipped import shipped_values
 from registry.quality.states import STATE_WORDS
 from registry.quality.verdicts import AnalyteState, state_of_analyte
-from registry.store import masters, quality_rows, reference_values, stale, target_rows
-from registry.store.quality_rows import StoredLine
+from registry.store import quality_rows, reference_values, stale, target_rows
+
+#: Analytes that fail or were remarked on, told one by one after an import.
+ANALYTES_TOLD = 10
+NO_CONTROLS = (
+    "controls: none. No reference material, blank, duplicate or repeat is on this batch, so nothing here says how far "
+    "its numbers can be trusted; name controls in the sample list, or set how their codes look "
+    "(plutonbook settings control_pattern.blank=^BLK)"
+)
 
 
 def settle(connection: Any) -> int:
@@ -31,9 +38,8 @@ def settle(connection: Any) -> int:
     now than before and the convention holds failed ones back, the samples of the batch are marked stale.
     """
     patterns = read_patterns(connection)
-    if patterns:
-        _rename_unknown(connection, patterns)
-    touched = quality_rows.touched_batches(connection)
+    call_by_patterns(connection, patterns)
+    touched = quality_rows.with_their_parts(connection, quality_rows.touched_batches(connection))
     if not touched:
         return 0
     hold = _holds(connection)
@@ -44,108 +50,26 @@ def settle(connection: Any) -> int:
     return len(touched)
 
 
+def assess_imported(connection: Any, batch_id: int, controlled: bool) -> list[str]:
+    """Judge a batch that has just been stored and say what its controls say.
+
+    The other parts of its certificate may hold duplicates of its samples: they wait for the drain.
+    """
+    if controlled:
+        assess(connection, batch_id)
+    quality_rows.name_parts_beside(connection, batch_id)
+    return state_of_batch(connection, batch_id)
+
+
 def assess(connection: Any, batch_id: int, patterns: Patterns | None = None) -> bool:
     """Judge the controls of a batch and store what came out; whether other columns fail than before."""
     patterns = read_patterns(connection) if patterns is None else patterns
     controls = load_controls(connection, batch_id, patterns)
-    outcomes = judge_batch(controls, _values_of(connection, controls)) if len(controls) else []
+    outcomes = judge_batch(controls, values_of(connection, controls)) if len(controls) else []
     states = [(outcome.column, state_of_analyte(controls, outcome)) for outcome in outcomes]
     quality_rows.replace_outcomes(connection, batch_id, _outcome_columns(controls, outcomes))
     rows = [_state_row(column, state) for column, state in states if state is not None]
     return quality_rows.replace_states(connection, batch_id, rows)
-
-
-def load_controls(connection: Any, batch_id: int, patterns: Patterns) -> Controls:
-    """What the store holds of the controls of a batch, as the quality functions take it."""
-    stored = quality_rows.control_lines(connection, batch_id)
-    spoken = [read_control_text(line.control_text) for line in stored]
-    named = {said.duplicate_of for said in spoken if said.duplicate_of}
-    known = masters.sample_ids(connection, named) if named else {}
-    kept: list[tuple[StoredLine, str, Spoken, int | None]] = []
-    for line, said in zip(stored, spoken, strict=True):
-        kind, original = _kind_and_original(line, said, known)
-        if kind is not None:
-            kept.append((line, kind, said, original))
-    materials = reference_values.material_names(connection)
-    columns = [
-        Column(c.column_id, c.analyte, c.unit, c.digestion, c.detection_limit)
-        for c in quality_rows.batch_columns(connection, batch_id)
-    ]
-    column_ids = [column.column_id for column in columns]
-    aliquots = np.array([line.aliquot_id for line, *_ in kept], dtype=np.int64)
-    line_no = np.array([line.line_no for line, *_ in kept], dtype=np.int64)
-    kinds = np.array([kind for _, kind, *_ in kept], dtype=object)
-    values, signs = quality_rows.results_of(connection, aliquots, column_ids)
-    originals = {original for *_, original in kept if original is not None}
-    first = quality_rows.first_lines(connection, batch_id, originals) if originals else {}
-    partners = np.array(
-        [first.get(original, 0) if original is not None else 0 for *_, original in kept], dtype=np.int64
-    )
-    partners[partners == aliquots] = 0
-    partner, partner_signs = quality_rows.results_of(connection, partners, column_ids)
-    before = np.zeros(len(kept), dtype=np.int64)
-    blank = kinds == recognising.BLANK
-    if blank.any():
-        before[blank] = quality_rows.lines_before(connection, batch_id, line_no[blank])
-    preceding, _ = quality_rows.results_of(connection, before, column_ids)
-    return Controls(
-        columns,
-        aliquots,
-        line_no,
-        kinds,
-        np.array([_material(line, kind, materials, patterns) for line, kind, *_ in kept], dtype=object),
-        np.array([_stage(line, kind, said, patterns) for line, kind, said, _ in kept], dtype=object),
-        values,
-        signs,
-        partner,
-        partner_signs,
-        preceding,
-    )
-
-
-def _kind_and_original(line: StoredLine, said: Spoken, known: Mapping[str, int]) -> tuple[str | None, int | None]:
-    original = known.get(said.duplicate_of) if said.duplicate_of else None
-    if line.kind in (recognising.BLANK, recognising.REFERENCE_MATERIAL):
-        return line.kind, None
-    if line.kind == DUPLICATE:
-        return DUPLICATE, line.duplicate_of or original
-    if line.repeat_no > 0:
-        return LAB_REPEAT, line.sample_id
-    if said.kind == DUPLICATE and original is not None:
-        return DUPLICATE, original
-    return None, None
-
-
-def _material(line: StoredLine, kind: str, materials: Sequence[str], patterns: Patterns) -> str | None:
-    if kind not in (recognising.BLANK, recognising.REFERENCE_MATERIAL):
-        return None
-    if line.reference_material or kind == recognising.BLANK:
-        return material_of(line.reference_material, "", materials)
-    pattern = patterns.compiled.get(recognising.REFERENCE_MATERIAL)
-    match = pattern.search(line.code) if pattern is not None else None
-    if match is not None and match.lastindex:
-        return material_of(match["material"] if "material" in match.groupdict() else match[1], line.code, materials)
-    return material_of(None, line.code, materials)
-
-
-def _stage(line: StoredLine, kind: str, said: Spoken, patterns: Patterns) -> str:
-    if kind == LAB_REPEAT:
-        return "lab"
-    return said.stage if said.stage != "unknown" else patterns.stage_of(line.code)
-
-
-def _values_of(connection: Any, controls: Controls) -> dict[str, list[ReferenceValue]]:
-    names = {name for name in controls.materials.tolist() if name is not None}
-    stored = reference_values.values_of(connection, names) if names else {}
-    return {
-        name: [
-            ReferenceValue(
-                name, row.analyte, row.value, row.unit, row.uncertainty, row.uncertainty_type, row.status, row.source
-            )
-            for row in rows
-        ]
-        for name, rows in stored.items()
-    }
 
 
 def _outcome_columns(controls: Controls, outcomes: Sequence[Outcome]) -> dict[str, Any]:
@@ -205,9 +129,11 @@ def read_patterns(connection: Any) -> Patterns:
         raise PlutonbookError(str(fault)) from fault
 
 
-def _rename_unknown(connection: Any, patterns: Patterns) -> None:
+def call_by_patterns(connection: Any, patterns: Patterns | None = None) -> None:
+    """Stale samples of the kind ``unknown`` become the controls that the user's patterns call them."""
+    patterns = read_patterns(connection) if patterns is None else patterns
     kinds: dict[str, list[int]] = {}
-    for sample_id, code in quality_rows.stale_unknown_samples(connection):
+    for sample_id, code in quality_rows.stale_unknown_samples(connection) if patterns else ():
         kind = patterns.kind_of(code)
         if kind is not None:
             kinds.setdefault(kind, []).append(sample_id)
@@ -244,12 +170,12 @@ def ship_reference_values(connection: Any) -> int:
 
 
 def state_of_batch(connection: Any, batch_id: int) -> list[str]:
-    """Sentences on the controls of a batch: how many, its state, and what failed or was remarked; none without any."""
+    """Sentences on the controls of a batch: how many, its state, and what failed or was remarked, failures first."""
     from registry.store.reading.controls import analyte_states, control_counts, without_certificate
 
     counts = control_counts(connection, batch_id)
     if not counts:
-        return []
+        return [NO_CONTROLS]
     states = analyte_states(connection, batch_id)
     words = {"reference_material": "reference material", "lab_repeat": "laboratory repeat"}
     listed = ", ".join(
@@ -270,9 +196,15 @@ def state_of_batch(connection: Any, batch_id: int) -> list[str]:
     tally = Counter(state["state"] for state in states)
     told = ", ".join(f"{tally[word]} of {len(states)} analytes: {word}" for word in STATE_WORDS if tally[word])
     lines.append(f"batch {_worst(states)} ({told})")
-    for state in states:
-        if state["state"] != STATE_WORDS[0] and len(lines) < 12:
-            lines.append(f"{state['analyte']} {state['state']}: {state['remarks']}")
+    remarked = [state for state in states if state["state"] != STATE_WORDS[0]]
+    remarked.sort(key=lambda state: -STATE_WORDS.index(state["state"]))
+    lines += [f"{state['analyte']} {state['state']}: {state['remarks']}" for state in remarked[:ANALYTES_TOLD]]
+    if len(remarked) > ANALYTES_TOLD:
+        fails = sum(state["state"] == STATE_WORDS[-1] for state in remarked[ANALYTES_TOLD:])
+        lines.append(
+            f"... and {len(remarked) - ANALYTES_TOLD:,} more analytes{f', {fails:,} of which fail' if fails else ''}: "
+            "the page of the batch and control_sheet hold them all"
+        )
     return lines
 
 

@@ -224,8 +224,10 @@ def _store_one(
     assert table is not None
     report = FileReport(reading.place, kind, len(table), reading.understood, reading.warnings)
     if kind == "reference-materials":
-        changed, faults = store_certificates(connection, table, reading.file)
+        changed, told = store_certificates(connection, table, reading.file)
         report.added, report.changes = changed.added, changed.changes
+        faults = [problem for problem in told if problem.severity == "problem"]
+        report.on_storing += [problem for problem in told if problem.severity != "problem"]
         return report, _NOTHING_COMPUTED, faults
     outcome = _upserted(connection, kind, table, reading.file, aside, options)
     report.added, report.changes = outcome.added, outcome.changes

@@ -7,6 +7,7 @@ from typing import Any
 
 import numpy as np
 
+from registry.controlling import call_by_patterns
 from registry.intake import ResultTable
 from registry.petrology.analytes import QUALIFIER_BELOW
 from registry.quality.assessment import Column
@@ -41,7 +42,11 @@ def link_duplicates(connection: Any, new: set[str], said: dict[str, Spoken], kno
 
 
 def call_known_controls(connection: Any, said: dict[str, Spoken], known: dict[str, int], new: set[str]) -> None:
-    """Samples that were registered with the kind 'unknown' become the controls that the certificate calls them."""
+    """Samples that were registered with the kind 'unknown' become the controls that the certificate calls them.
+
+    Before that those that came in with the same import become what the user's code patterns call them.
+    """
+    call_by_patterns(connection)
     codes = {code: spoken for code, spoken in said.items() if code not in new}
     unknown = set(masters.samples_of_kinds(connection, ("unknown",)).tolist()) if codes else set()
     kinds: dict[str, list[int]] = {}

@@ -139,16 +139,13 @@ def store_results(
         for chunk, outcome in computations:
             write(chunk, outcome)
         ready_rows.let_go(connection)
-    if lines.controlled:
-        controlling.assess(connection, batch_id)
+    report.controls = controlling.assess_imported(connection, batch_id, lines.controlled)
     if place.supersedes is not None:
         batches.supersede(connection, place.supersedes, batch_id)
     for ids in raw_parts(np.setdiff1d(lines.sample_ids, fresh_ids)):
         stale.mark(connection, ids.tolist(), stale.DERIVE)
     report.remarks = [*_laboratories(table, options.lab, place), *columns_that_disagree(table)]
     report.stored = StoredBatch(batch_id, place.code)
-    if lines.controlled:
-        report.controls = controlling.state_of_batch(connection, batch_id)
     return report, fresh_ids, []
 
 

@@ -6,7 +6,7 @@ Pure: arrays in, arrays out. ``judge_batch`` takes what the store holds of the c
 from __future__ import annotations
 
 from collections.abc import Mapping, Sequence
-from dataclasses import dataclass, field
+from dataclasses import dataclass, field, replace
 
 import numpy as np
 from numpy.typing import NDArray
@@ -17,7 +17,7 @@ from registry.petrology.quotients import Floats
 from registry.quality import blanks, duplicates
 from registry.quality.certificates import allowed_deviation
 from registry.quality.run_rules import RULE_TEXTS, judge_run, z_scores
-from registry.quality.shipped import ReferenceValue, status_rank
+from registry.quality.shipped import INFORMATION, ReferenceValue, status_rank
 from registry.quality.states import NOT_JUDGED, PASSED, WARNED
 from registry.quality.substances import conversion
 
@@ -45,7 +45,8 @@ class Controls:
     """The control lines of a batch in the order of their line numbers; arrays (n,), results (n, m) as reported.
 
     ``kinds`` one of the four above; ``materials`` the registered material or None; ``stages`` of duplicates;
-    ``partner`` and ``before`` are the results of the original and of the line before, NaN where there is none.
+    ``partner`` and ``before`` are the results of the original and of the line before, NaN where there is none;
+    ``original_known`` is False for duplicates of which nobody said what they repeat.
     """
 
     columns: Sequence[Column]
@@ -59,6 +60,7 @@ class Controls:
     partner: Floats
     partner_qualifiers: NDArray[np.uint8]
     before: Floats
+    original_known: NDArray[np.bool_] | None = None
 
     def __len__(self) -> int:
         return len(self.aliquot_ids)
@@ -66,10 +68,12 @@ class Controls:
 
 @dataclass(frozen=True)
 class Outcome:
-    """One column judged: arrays (n,) over the control lines; ``there`` marks those with a result."""
+    """One column judged: arrays (n,) over the control lines; ``there`` marks those with a result, ``signs`` are their
+    qualifier codes."""
 
     column: Column
     there: NDArray[np.bool_]
+    signs: NDArray[np.uint8]
     found: Floats
     expected: Floats
     z: Floats
@@ -85,11 +89,15 @@ class Outcome:
 
 @dataclass(frozen=True)
 class Expectation:
-    """The value a material should give in a column, in its unit, with the deviation allowed and the source."""
+    """The value a material should give in a column, in its unit, with the deviation allowed and the source.
+
+    ``informative``: given for information only, which is no ground for a failure.
+    """
 
     value: float
     deviation: float
     source: str
+    informative: bool = False
 
 
 def judge_batch(controls: Controls, values: Mapping[str, Sequence[ReferenceValue]]) -> list[Outcome]:
@@ -112,9 +120,10 @@ def expectation(column: Column, values: Sequence[ReferenceValue]) -> Expectation
             best = rank, value, factor
     if best is None:
         return None
-    _, value, factor = best
+    rank, value, factor = best
     deviation, basis = allowed_deviation(value.value, value.unit, value.uncertainty, value.uncertainty_type)
-    return Expectation(value.value * factor, deviation * factor, f"{value.status}: {value.source}; {basis}")
+    source = f"{value.status}: {value.source}; {basis}"
+    return Expectation(value.value * factor, deviation * factor, source, rank == INFORMATION)
 
 
 def carried_wholly(column: Column, reports_silica: bool) -> bool:
@@ -138,7 +147,7 @@ def _judge_column(
     there = ~np.isnan(found)
     nothing = np.full(n, np.nan)
     outcome = Outcome(
-        column, there, found, nothing.copy(), nothing.copy(), nothing.copy(), nothing.copy(),
+        column, there, signs, found, nothing.copy(), nothing.copy(), nothing.copy(), nothing.copy(),
         np.zeros(n, dtype=np.uint8), np.full(n, None, dtype=object), np.full(n, None, dtype=object),
     )  # fmt: skip
     limit = column.detection_limit if column.detection_limit is not None else float("nan")
@@ -164,6 +173,7 @@ def _judge_references(
 ) -> None:
     """z-scores in the order of the lines; the run rules over all materials and over each of its own."""
     rows = np.flatnonzero((controls.kinds == REFERENCE) & outcome.there)
+    informative = np.zeros(len(controls), dtype=bool)
     for row in rows.tolist():
         material = controls.materials[row]
         expected = known.get(material) if material is not None else None
@@ -173,11 +183,16 @@ def _judge_references(
             )
             continue
         outcome.expected[row], outcome.sources[row] = expected.value, expected.source
+        informative[row] = expected.informative
         outcome.low[row] = expected.value - 3.0 * expected.deviation
         outcome.high[row] = expected.value + 3.0 * expected.deviation
         outcome.z[row] = float(z_scores(outcome.found[row], expected.value, expected.deviation))
     if not whole:
-        outcome.rules[rows] = "the digestion leaves part of it behind, so a certified total cannot be compared"
+        outcome.rules[rows] = (
+            "the digestion is not told, so a certified total cannot be compared; state it"
+            if outcome.column.digestion == "unknown"
+            else "the digestion leaves part of it behind, so a certified total cannot be compared"
+        )
         outcome.z[rows] = np.nan
         return
     # a result beyond the laboratory's limits says something only where the limit itself is already too far
@@ -189,6 +204,7 @@ def _judge_references(
     undecided = rows[open_side[rows]]
     outcome.rules[undecided] = "outside the laboratory's limits, compatible with the expected value"
     outcome.z[undecided] = np.nan
+    _compare_with_information(outcome, np.flatnonzero(informative & ~np.isnan(outcome.z)))
     sets = [rows, *(rows[controls.materials[rows] == name] for name in known)]
     for chosen in sets:
         states, rules = judge_run(outcome.z[chosen])
@@ -197,6 +213,19 @@ def _judge_references(
         outcome.rules[chosen[worse]] = [
             None if rule is None else f"{rule}: {RULE_TEXTS[rule]}" for rule in rules[worse].tolist()
         ]
+
+
+def _compare_with_information(outcome: Outcome, rows: NDArray[np.int64]) -> None:
+    """Results against a value given for information only: far from it is a warning, and never more."""
+    for row in rows.tolist():
+        off = abs(outcome.z[row])
+        outcome.states[row] = WARNED if off > 3.0 else NOT_JUDGED
+        outcome.rules[row] = (
+            f"{off:.3g} deviations from a value given for information only, which is no ground for a failure"
+            if off > 3.0
+            else "its value is given for information only: compared, not judged"
+        )
+    outcome.z[rows] = np.nan
 
 
 def _judge_blanks(
@@ -220,7 +249,10 @@ def _judge_blanks(
     top = background + 3.0 * deviation + (blanks.FAIL_AT * limit if limit > 0.0 else 0.0)
     outcome.low[rows], outcome.high[rows] = 0.0, np.where(top > 0.0, top, np.nan)
     analyte = ANALYTES.get(column.analyte)
-    in_wt = column.unit == "wt%" or (analyte is not None and (analyte.column or "").endswith("_wt"))
+    if analyte is not None and analyte.column is not None:
+        in_wt = analyte.column.endswith("_wt")  # copper in per cent is no major of the rock
+    else:
+        in_wt = column.unit == "wt%"
     is_major = in_wt and column.analyte not in _JUDGED_IN_WT
     for position, row in enumerate(rows.tolist()):
         if own[position] is None and is_major:
@@ -231,7 +263,11 @@ def _judge_blanks(
             outcome.sources[row] = own[position].source  # type: ignore[union-attr]
         state = int(judged.states[position])
         outcome.states[row] = state
-        if state == NOT_JUDGED:
+        if judged.limit_too_high[position]:
+            outcome.rules[row] = (
+                f"reported below a limit of more than {blanks.WARN_AT:g} detection limits, which says nothing"
+            )
+        elif state == NOT_JUDGED:
             outcome.rules[row] = "no detection limit is known for this column"
         elif state > PASSED and np.isnan(judged.multiples[position]):
             outcome.rules[row] = "above the content of its material by more than three deviations"
@@ -258,34 +294,18 @@ def _judge_duplicates(
         return outcome
     outcome.expected[rows] = partner[rows]
     alone = rows[np.isnan(partner[rows])]
-    outcome.rules[alone] = "its original has no result in this batch"
-    censored = (signs > 0) | (partner_signs > 0)
-    outside = rows[censored[rows] & ~np.isnan(partner[rows])]
-    outcome.rules[outside] = "outside the laboratory's limits"
-    rows = rows[~np.isnan(partner[rows]) & ~censored[rows]]
-    if not len(rows):
-        return outcome
-    k = np.array([duplicates.ASKED_K[stage] for stage in controls.stages[rows].tolist()])
-    pairs = duplicates.judge_pairs(partner[rows], outcome.found[rows], limit, k)
-    outcome.z[rows] = pairs.z
-    reach = np.abs(outcome.found[rows] - partner[rows]) / np.where(pairs.z == 0, np.nan, np.abs(pairs.z))
-    allowed = np.where(np.isnan(reach), 0.0, reach) * duplicates.NINETY_NINTH / np.sqrt(2.0)
-    known = allowed > 0.0
-    outcome.low[rows] = np.where(known, partner[rows] - allowed, np.nan)
-    outcome.high[rows] = np.where(known, partner[rows] + allowed, np.nan)
-    outcome.states[rows] = np.where(np.isnan(pairs.z), NOT_JUDGED, np.where(pairs.above_ninety_ninth, WARNED, PASSED))
-    for position, row in enumerate(rows.tolist()):
-        if pairs.above_ninety_ninth[position]:
-            outcome.rules[row] = (
-                f"half relative difference {pairs.half_difference[position]:.3g} %: beyond the line that 99 % of "
-                f"pairs keep at a precision of {200.0 * k[position]:g} %"
-            )
-    same_stage = duplicates.fit_precision(partner[rows], outcome.found[rows])
-    return Outcome(
-        **{
-            **vars(outcome),
-            "pairs_judged": int((~np.isnan(pairs.z)).sum()),
-            "pairs_above_ninetieth": int(pairs.above_ninetieth.sum()),
-            "precision": same_stage,
-        }
+    outcome.rules[alone] = "its original has no result in this certificate"
+    if controls.original_known is not None:
+        outcome.rules[rows[~controls.original_known[rows]]] = "nothing says which sample it repeats"
+    rows = rows[~np.isnan(partner[rows])]
+    judged = duplicates.judge_duplicates(
+        partner[rows], partner_signs[rows], outcome.found[rows], signs[rows], limit, controls.stages[rows].tolist()
+    )
+    outcome.z[rows], outcome.states[rows] = judged.z, judged.states
+    outcome.low[rows], outcome.high[rows], outcome.rules[rows] = judged.low, judged.high, judged.rules
+    return replace(
+        outcome,
+        pairs_judged=judged.judged,
+        pairs_above_ninetieth=judged.above_ninetieth,
+        precision=judged.precision,
     )

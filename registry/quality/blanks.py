@@ -25,13 +25,15 @@ RICHER = 10.0
 class BlankResult:
     """Blanks (n,): state codes, excess over the material's own content in detection limits, carry-over in per cent.
 
-    ``carried`` marks those whose excess a much richer sample before them may explain.
+    ``carried`` marks those whose excess a much richer sample before them may explain, ``limit_too_high`` those that
+    were reported below a limit (of a diluted solution, say) that itself lies above what is allowed.
     """
 
     states: NDArray[np.uint8]
     multiples: Floats
     carry_over_percent: Floats
     carried: NDArray[np.bool_]
+    limit_too_high: NDArray[np.bool_]
 
 
 def judge_blanks(
@@ -45,8 +47,9 @@ def judge_blanks(
     """Judge blanks; everything (n,) or broadcast, in one unit. ``before`` is the result of the line before (or NaN).
 
     The limits are the background, three of its deviations, and five or ten detection limits. A result below the
-    detection limit passes. Without a detection limit a blank of known content is judged by its three deviations alone
-    (above them it is a warning), any other not at all.
+    detection limit passes; one below a limit that itself lies above what is allowed says nothing. Without a detection
+    limit a blank of known content is judged by its three deviations alone (above them it is a warning), any other not
+    at all.
     """
     value, limit, preceding, own, spread = floats(found, detection_limit, before, background, background_deviation)
     below = np.asarray(qualifiers) == QUALIFIER_BELOW
@@ -60,8 +63,10 @@ def judge_blanks(
     states[judged] = PASSED
     by_content = there & ~judged & (own > 0.0)
     states[by_content] = np.where(excess[by_content] > 0.0, WARNED, PASSED)
+    too_high = judged & below & (value > allowed + WARN_AT * limit)
+    states[too_high] = NOT_JUDGED
     states[judged & (multiples > WARN_AT)] = WARNED
     states[judged & (multiples > FAIL_AT)] = FAILED
     share = 100.0 * quotient(np.where(below, 0.0, value - own), preceding)
     carried = (states > PASSED) & (preceding > RICHER * excess) & (excess > 0.0)
-    return BlankResult(states, multiples, share, carried)
+    return BlankResult(states, multiples, share, carried, too_high)

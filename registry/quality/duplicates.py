@@ -10,13 +10,17 @@ Analyst 101, 690-709; 1978, J. Geochem. Explor. 9, 23-30. Formulas published; th
 from __future__ import annotations
 
 import math
+from collections import Counter
+from collections.abc import Sequence
 from dataclasses import dataclass
 from statistics import NormalDist
 
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
 
+from registry.petrology.analytes import QUALIFIER_ABOVE, QUALIFIER_BELOW
 from registry.petrology.quotients import Floats, floats, quotient
+from registry.quality.states import NOT_JUDGED, PASSED, WARNED
 from registry.quality.trends import Line, least_squares
 
 _NORMAL = NormalDist()
@@ -82,9 +86,13 @@ def fit_precision(a: ArrayLike, b: ArrayLike) -> PrecisionFit | None:
 
 @dataclass(frozen=True)
 class PairResult:
-    """Pairs (n,): their mean, signed difference over its standard deviation, and which exceed the percentile lines."""
+    """Pairs (n,): their mean, signed difference over its standard deviation, and which exceed the percentile lines.
+
+    ``spread`` is the standard deviation of one result at the mean, by the precision asked for.
+    """
 
     mean: Floats
+    spread: Floats
     z: Floats
     half_difference: Floats
     above_ninetieth: NDArray[np.bool_]
@@ -103,7 +111,90 @@ def judge_pairs(original: ArrayLike, duplicate: ArrayLike, detection_limit: floa
     spread = limit * (1.0 - 2.0 * asked) / 2.0 + asked * mean
     z = quotient(second - first, math.sqrt(2.0) * spread)
     distance = np.abs(z) * math.sqrt(2.0)
-    return PairResult(mean, z, half_relative_difference(first, second), distance > NINETIETH, distance > NINETY_NINTH)
+    half = half_relative_difference(first, second)
+    return PairResult(mean, spread, z, half, distance > NINETIETH, distance > NINETY_NINTH)
+
+
+@dataclass(frozen=True)
+class PairOutcome:
+    """Pairs (n,) with what is to be said of each: z, limits of the duplicate, state codes, reasons (None: none).
+
+    ``judged`` pairs have two plain results, ``above_ninetieth`` of them exceed that line; ``precision`` is the fit to
+    the pairs of the stage that has most.
+    """
+
+    z: Floats
+    low: Floats
+    high: Floats
+    states: NDArray[np.uint8]
+    rules: NDArray[np.object_]
+    judged: int
+    above_ninetieth: int
+    precision: PrecisionFit | None
+
+
+def judge_duplicates(
+    original: Floats,
+    original_signs: NDArray[np.uint8],
+    found: Floats,
+    found_signs: NDArray[np.uint8],
+    detection_limit: float,
+    stages: Sequence[str],
+) -> PairOutcome:
+    """Judge pairs of results (n,) of one column, each by the precision asked of its stage (``ASKED_K``).
+
+    A pair beyond the 99th percentile line is a warning. A result beyond the laboratory's limits is judged only where
+    even the limit lies too far from the other: 500 against ``<1``.
+    """
+    k = np.array([ASKED_K[stage] for stage in stages], dtype=np.float64)
+    pairs = judge_pairs(original, found, detection_limit, k)
+    there = ~(np.isnan(original) | np.isnan(found))
+    censored = (original_signs > 0) | (found_signs > 0)
+    plain = there & ~censored & ~np.isnan(pairs.z)
+    states = np.where(plain, np.where(pairs.above_ninety_ninth, WARNED, PASSED), NOT_JUDGED).astype(np.uint8)
+    apart = there & censored & _apart(original, original_signs, found, found_signs) & pairs.above_ninety_ninth
+    states[apart] = WARNED
+    rules = np.full(original.shape, None, dtype=object)
+    rules[there & censored] = "outside the laboratory's limits"
+    rules[there & ~censored & ~plain] = "neither a detection limit nor a result above 0 says how far apart they may lie"
+    for place in np.flatnonzero(plain & pairs.above_ninety_ninth).tolist():
+        rules[place] = (
+            f"half relative difference {pairs.half_difference[place]:.3g} %: beyond the line that 99 % of "
+            f"pairs keep at a precision of {200.0 * k[place]:g} %"
+        )
+    for place in np.flatnonzero(apart).tolist():
+        rules[place] = (
+            f"half relative difference {pairs.half_difference[place]:.3g} % or more, beyond the laboratory's limit: "
+            f"beyond the line that 99 % of pairs keep at a precision of {200.0 * k[place]:g} %"
+        )
+    kept = [stages[place] for place in np.flatnonzero(plain).tolist()]
+    allowed = np.where(plain & (pairs.spread > 0.0), NINETY_NINTH * pairs.spread, np.nan)
+    return PairOutcome(
+        np.where(plain, pairs.z, np.nan),
+        original - allowed,
+        original + allowed,
+        states,
+        rules,
+        int(plain.sum()),
+        int((pairs.above_ninetieth & plain).sum()),
+        _precision_of_largest_stage(original[plain], found[plain], kept),
+    )
+
+
+def _apart(a: Floats, a_signs: NDArray[np.uint8], b: Floats, b_signs: NDArray[np.uint8]) -> NDArray[np.bool_]:
+    """Where two results, one or both of them known as a limit only, differ by at least the numbers given."""
+    a_less = (a < b) & (a_signs != QUALIFIER_ABOVE) & (b_signs != QUALIFIER_BELOW)
+    b_less = (b < a) & (b_signs != QUALIFIER_ABOVE) & (a_signs != QUALIFIER_BELOW)
+    return a_less | b_less
+
+
+def _precision_of_largest_stage(a: Floats, b: Floats, stages: Sequence[str]) -> PrecisionFit | None:
+    """The fit to the pairs of one stage: what sampling, crushing and the instrument add are not one precision."""
+    if len(a) < NEEDED_PAIRS:
+        return None
+    ((largest, _),) = Counter(stages).most_common(1)
+    chosen = np.array([stage == largest for stage in stages])
+    return fit_precision(a[chosen], b[chosen])
 
 
 def too_many(above: int, pairs: int, share: float, risk: float = 0.01) -> bool:

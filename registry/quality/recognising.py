@@ -86,6 +86,22 @@ class Patterns:
                 return name.removesuffix("_duplicate")
         return "unknown"
 
+    def original_of(self, code: str) -> str | None:
+        """The code of the original that a duplicate's code tells: a group of the pattern, else what is left of it.
+
+        ``-PD$`` and ``A12-PD`` give ``A12``; so does ``^QC_(?P<original>.+)$`` of ``QC_A12``. None where nothing is.
+        """
+        for name, pattern in self.compiled.items():
+            match = pattern.search(code) if name.endswith(DUPLICATE) else None
+            if match is None:
+                continue
+            if match.lastindex:
+                told = match["original"] if "original" in pattern.groupindex else match[1]
+            else:
+                told = code[: match.start()] + code[match.end() :]
+            return (told or "").strip(" -_./") or None
+        return None
+
 
 def _unquoted(value: str) -> str:
     text = value.strip()

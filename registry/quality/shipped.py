@@ -16,6 +16,11 @@ from importlib.resources import files
 
 #: Which of several values of one analyte counts: a user's own certificate first.
 STATUS_ORDER = ("certified", "published", "recommended", "", "information")
+INFORMATION = STATUS_ORDER.index("information")
+#: Words of certificates for values that are given for information only.
+_FOR_INFORMATION = {"info", "informational", "information value", "information values", "for information",
+                    "information only", "indicative", "indicative value", "indicative values", "not certified",
+                    "non-certified", "uncertified"}  # fmt: skip
 
 
 @dataclass(frozen=True)
@@ -34,7 +39,9 @@ class ReferenceValue:
 
 def status_rank(status: str) -> int:
     """Rank of a status, 0 best; an unknown word stands before ``information``."""
-    word = status.strip().casefold()
+    word = " ".join(status.casefold().split())
+    if word in _FOR_INFORMATION:
+        return INFORMATION
     return STATUS_ORDER.index(word) if word in STATUS_ORDER else STATUS_ORDER.index("")
 
 

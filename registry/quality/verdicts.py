@@ -6,6 +6,7 @@ from dataclasses import dataclass
 
 import numpy as np
 
+from registry.petrology.analytes import QUALIFIER_SIGNS
 from registry.quality.assessment import BLANK, REFERENCE, Controls, Outcome
 from registry.quality.duplicates import too_many
 from registry.quality.states import FAILED, FAILS, PASSED, PASSES, REMARKS, WARNED
@@ -72,7 +73,7 @@ def state_of_analyte(controls: Controls, outcome: Outcome) -> AnalyteState | Non
     remarks += [_about(controls, outcome, row, "duplicate", "warned") for row in beyond.tolist()[:3]]
     if len(beyond) > 3:
         remarks.append(f"{len(beyond) - 3} more pairs of duplicates warned")
-    measured = (kinds == REFERENCE) & ~np.isnan(outcome.z)
+    measured = (kinds == REFERENCE) & ~np.isnan(outcome.z) & (outcome.signs == 0)
     difference = 100.0 * (outcome.found[measured] - outcome.expected[measured]) / outcome.expected[measured]
     mean, drift = bias(difference), least_squares(controls.line_no[measured] / 100.0, difference)
     if mean.n >= RESULTS_FOR_BIAS and abs(mean.mean) > max(PERCENT_TO_NAME, ERRORS_TO_NAME * mean.error):
@@ -122,10 +123,11 @@ def _about(controls: Controls, outcome: Outcome, row: int, words: str, verb: str
     named = controls.materials[row]
     z = outcome.z[row]
     score = f", z {z:+.2f}" if not np.isnan(z) else ""
-    expected = f" for {outcome.expected[row]:.4g}" if not np.isnan(outcome.expected[row]) else ""
+    expected = f" for {_four_digits(outcome.expected[row])}" if not np.isnan(outcome.expected[row]) else ""
+    found = QUALIFIER_SIGNS[outcome.signs[row]] + _four_digits(outcome.found[row])
     return (
         f"{words} {named + ' ' if named else ''}{verb} on line {controls.line_no[row]}: found "
-        f"{outcome.found[row]:.4g}{expected} {outcome.column.unit}{score} ({outcome.rules[row]}){_slip(outcome, row)}"
+        f"{found}{expected} {outcome.column.unit}{score} ({outcome.rules[row]}){_slip(outcome, row)}"
     )
 
 
@@ -137,6 +139,11 @@ def _slip(outcome: Outcome, row: int) -> str:
     decades = abs(float(np.log10(found / expected)))
     near = next((factor for factor in UNIT_FACTORS if abs(decades - np.log10(factor)) < NEAR_A_FACTOR), None)
     return "" if near is None else f", off by a factor of about {near:,}: is the unit right?"
+
+
+def _four_digits(number: float) -> str:
+    """Four significant digits, and whole numbers from a thousand up: 0.01234, 10,000."""
+    return f"{number:,.0f}" if number >= 1000.0 else f"{number:.4g}"
 
 
 def _two_digits(number: float, sign: str = "") -> str:

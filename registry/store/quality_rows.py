@@ -80,6 +80,37 @@ def first_lines(connection: sa.Connection, batch_id: int, sample_ids: Iterable[i
     return dict(rows)
 
 
+def parts_beside(connection: sa.Connection, batch_id: int) -> list[int]:
+    """The other parts of the certificate of a batch that are active or in the same state, oldest first."""
+    rows = connection.exec_driver_sql(
+        "SELECT p.batch_id FROM batch AS b JOIN batch AS p ON coalesce(p.part_of, p.batch_id) = "
+        f"coalesce(b.part_of, b.batch_id) AND p.state IN ('active', b.state) AND p.batch_id <> b.batch_id "
+        f"WHERE b.batch_id = {int(batch_id)} ORDER BY p.batch_id"
+    )
+    return [row[0] for row in rows]
+
+
+def with_their_parts(connection: sa.Connection, batch_ids: Sequence[int]) -> list[int]:
+    """These batches with all other parts of their certificates, ascending."""
+    if not batch_ids:
+        return []
+    rows = raw_rows.select(
+        connection,
+        "SELECT DISTINCT p.batch_id FROM batch AS b JOIN batch AS p ON coalesce(p.part_of, p.batch_id) = "
+        "coalesce(b.part_of, b.batch_id) WHERE b.batch_id {ids}",
+        batch_ids,
+    )
+    return sorted({*batch_ids, *(row[0] for row in rows)})
+
+
+def name_parts_beside(connection: sa.Connection, batch_id: int) -> None:
+    """Let the other parts of the certificate of a batch be judged anew at the drain."""
+    named = set(connection.execute(sa.select(tables.stale_batch.c.batch_id)).scalars())
+    beside = [{"batch_id": part} for part in parts_beside(connection, batch_id) if part not in named]
+    if beside:
+        connection.execute(sa.insert(tables.stale_batch), beside)
+
+
 def lines_before(connection: sa.Connection, batch_id: int, line_no: np.ndarray) -> np.ndarray:
     """The aliquot of the line before each given line of a batch, int64, 0 where it is the first."""
     rows = raw_rows.select(
@@ -220,7 +251,7 @@ def set_originals(connection: sa.Connection, originals: dict[int, int]) -> None:
 
 
 def history(connection: sa.Connection, materials: Sequence[str]) -> list[tuple[Any, ...]]:
-    """Judged results of materials in active batches, oldest first.
+    """Judged results of materials in active batches, oldest first, those within the laboratory's limits.
 
     Each is (material, analyte, unit, lab, day, batch, line, found, expected, z); ``day`` is the date
     the batch was reported, else received, else imported.
@@ -232,6 +263,7 @@ def history(connection: sa.Connection, materials: Sequence[str]) -> list[tuple[A
         "substr(h.imported_at, 1, 10)) AS day, h.code, a.line_no, o.found, o.expected, o.z "
         "FROM control_outcome AS o JOIN batch AS h ON h.batch_id = o.batch_id AND h.state = 'active' "
         "JOIN batch_column AS c ON c.batch_column_id = o.column_id JOIN aliquot AS a ON a.aliquot_id = o.aliquot_id "
+        "JOIN result AS r ON r.aliquot_id = o.aliquot_id AND r.column_id = o.column_id AND r.qualifier = 0 "
         f"WHERE o.kind = 'reference_material' AND o.z IS NOT NULL AND o.material {condition} "
         "ORDER BY o.material, c.analyte, c.unit, h.lab, day, h.batch_id, a.line_no",
         (given,),

@@ -6,11 +6,12 @@ import time
 from typing import Any
 
 import numpy as np
+import pytest
 
 from registry.quality.assessment import Column, Controls, Outcome, expectation, judge_batch
 from registry.quality.columns import disagreeing_columns
 from registry.quality.shipped import ReferenceValue
-from registry.quality.states import FAILED, FAILS, NOT_JUDGED, PASSES
+from registry.quality.states import FAILED, FAILS, NOT_JUDGED, PASSED, PASSES, REMARKS, WARNED
 from registry.quality.verdicts import state_of_analyte
 
 
@@ -66,6 +67,57 @@ def test_reference_close_to_the_detection_limit_is_not_judged() -> None:
     outcome, state = judged(controls(["reference_material"], [160.0], limit=30.0))
     assert (outcome.states.tolist(), state) == ([NOT_JUDGED], None)
     assert outcome.rules[0] == "expected below 5 detection limits"
+
+
+@pytest.mark.parametrize("status", ["information", "Information value", "indicative"])
+def test_value_for_information_never_fails_an_analyte(status: str) -> None:
+    """z would be 20 and 0.2; ten in succession above it are no failure either."""
+    values = {"XM": [ReferenceValue("XM", "Zr", 100.0, "ppm", 5.0, "SD", status, "invented")]}
+    outcome, state = judged(controls(["reference_material"] * 2, [200.0, 101.0]), values)
+    assert outcome.states.tolist() == [WARNED, NOT_JUDGED]
+    assert state.state == REMARKS and "no ground for a failure" in state.remarks
+    assert np.isnan(outcome.z).all() and np.isnan(state.bias_percent)
+    outcome, state = judged(controls(["reference_material"] * 12, [101.0] * 12), values)
+    assert (set(outcome.states.tolist()), state) == ({NOT_JUDGED}, None)
+
+
+def test_certified_material_of_the_same_batch_is_judged_beside_one_for_information() -> None:
+    given = controls(["reference_material"] * 3, [120.0, 101.0, 99.0])
+    given.materials[0] = "XI"
+    values = {**VALUES, "XI": [ReferenceValue("XI", "Zr", 100.0, "ppm", 5.0, "SD", "information", "invented")]}
+    outcome, state = judged(given, values)
+    assert outcome.states.tolist() == [WARNED, PASSED, PASSED]
+    assert (state.state, state.bias_percent) == (REMARKS, 0.0)
+
+
+def test_censored_reference_takes_no_part_in_the_bias() -> None:
+    """<50 for 100 fails; the mean of 102 and 98 has no bias."""
+    _, state = judged(controls(["reference_material"] * 3, [102.0, 98.0, 50.0], signs=[0, 0, 1]))
+    assert (state.state, state.bias_percent) == (FAILS, 0.0)
+
+
+def test_reference_in_a_column_of_unknown_digestion_is_told_to_lack_it() -> None:
+    given = controls(["reference_material"], [101.0])
+    given.columns = [Column(7, "Zr", "ppm", "unknown", 1.0)]
+    outcome, state = judged(given)
+    assert (outcome.rules[0][:28], state) == ("the digestion is not told, s", None)
+
+
+def test_blank_of_a_metal_in_per_cent_is_judged() -> None:
+    """Copper in per cent is no major of the rock a blank is made of."""
+    outcome, _ = judged(controls(["blank"], [0.5], analyte="Cu", unit="wt%", limit=0.001))
+    assert outcome.states.tolist() == [FAILED]
+    outcome, _ = judged(controls(["blank"], [5.0], analyte="Al", unit="wt%", limit=0.01))
+    assert outcome.states.tolist() == [NOT_JUDGED]
+
+
+def test_duplicate_that_names_no_original_is_told_so() -> None:
+    given = controls(["duplicate"] * 2, [100.0, 90.0])
+    given.original_known = np.array([False, True])
+    outcome, _ = judged(given)
+    assert outcome.rules.tolist() == [
+        "nothing says which sample it repeats", "its original has no result in this certificate",
+    ]  # fmt: skip
 
 
 def test_blanks_that_agree_are_taken_for_their_own_content_in_the_remark() -> None:

@@ -13,6 +13,7 @@ from registry.quality.duplicates import (
     detection_limit_of,
     fit_precision,
     half_relative_difference,
+    judge_duplicates,
     judge_pairs,
     precision_percent,
     too_many,
@@ -27,8 +28,11 @@ def test_blanks_at_the_limits_of_common_practice() -> None:
     assert result.states.tolist() == [PASSED, PASSED, WARNED, WARNED, FAILED, NOT_JUDGED]
 
 
-def test_blanks_below_the_limit_pass_whatever_the_limit() -> None:
-    assert judge_blanks([100.0], [1], 0.5, np.nan).states.tolist() == [PASSED]
+def test_blanks_below_the_limit_pass_unless_that_limit_says_nothing() -> None:
+    """``<2.5`` is five detection limits of 0.5; ``<100``, of a diluted solution, may hide two hundred."""
+    result = judge_blanks([0.5, 2.5, 100.0], [1, 1, 1], 0.5, np.nan)
+    assert result.states.tolist() == [PASSED, PASSED, NOT_JUDGED]
+    assert result.limit_too_high.tolist() == [False, False, True]
 
 
 def test_blanks_without_a_detection_limit_are_not_judged() -> None:
@@ -87,6 +91,39 @@ def test_fit_precision_needs_fifty_pairs() -> None:
     values = np.linspace(1.0, 50.0, 50)
     assert fit_precision(values[:49], values[:49]) is None
     assert fit_precision(values, values * 1.01) is not None
+
+
+def test_pairs_of_a_result_and_a_limit_are_judged_where_the_limit_decides() -> None:
+    """500 against <1 and >1000 against 50 are far apart; <600 and >400 may hide the same, and so may <1 beside <50."""
+    original = np.array([500.0, 1000.0, 500.0, 500.0, 1.0, 5.0, 500.0])
+    found = np.array([1.0, 50.0, 600.0, 400.0, 50.0, 900.0, 502.0])
+    signs = np.array([[0, 1], [2, 0], [0, 1], [0, 2], [1, 1], [1, 2], [0, 0]], dtype=np.uint8)
+    result = judge_duplicates(original, signs[:, 0], found, signs[:, 1], 1.0, ["pulp"] * 7)
+    assert result.states.tolist() == [WARNED, WARNED, NOT_JUDGED, NOT_JUDGED, NOT_JUDGED, WARNED, PASSED]
+    assert "or more, beyond the laboratory's limit" in result.rules[0]
+    assert result.rules[2] == "outside the laboratory's limits"
+    assert (result.judged, result.above_ninetieth) == (1, 0)
+    assert np.isnan(result.z[:6]).all()
+
+
+def test_limits_of_a_pair_stand_where_99_of_100_pairs_lie_even_of_an_equal_pair() -> None:
+    """s = 1 (1 - 0.1)/2 + 0.05 x 100 = 5.45, times sqrt(2) 2.5758 = 3.643: recomputed by hand."""
+    one = np.array([100.0])
+    none = np.zeros(1, dtype=np.uint8)
+    result = judge_duplicates(one, none, one, none, 1.0, ["lab"])
+    np.testing.assert_allclose([100 - 19.853, 100 + 19.853], [result.low[0], result.high[0]], atol=2e-3)
+
+
+def test_precision_is_fitted_to_the_pairs_of_one_stage() -> None:
+    """Simulated: 110 laboratory repeats at k = 0.02 beside 60 field duplicates at k = 0.3, seed 11."""
+    rng = np.random.default_rng(11)
+    true = rng.uniform(50.0, 500.0, 170)
+    k = np.r_[np.full(110, 0.02), np.full(60, 0.3)]
+    a, b = (true * (1.0 + k * rng.normal(size=170)) for _ in range(2))
+    none = np.zeros(170, dtype=np.uint8)
+    fit = judge_duplicates(a, none, b, none, 1.0, ["lab"] * 110 + ["field"] * 60).precision
+    assert fit is not None and fit.pairs == 110
+    np.testing.assert_allclose(4.0, precision_percent(200.0, fit.s_0, fit.k), rtol=0.5)
 
 
 def test_judge_pairs_that_keep_the_precision_cross_the_lines_as_often_as_said() -> None:

@@ -38,6 +38,20 @@ def test_allowed_deviation_of_a_confidence_interval_adds_the_laboratory() -> Non
     assert "confidence interval" in basis
 
 
+def test_allowed_deviation_of_an_expanded_uncertainty_halves_it() -> None:
+    """U = k u with k = 2: ISO/IEC Guide 98-3:2008, 6.2 (from memory)."""
+    deviation, basis = allowed_deviation(100.0, "ppm", 10.0, "U (k=2)")
+    fit = float(horwitz_deviation(100.0, "ppm"))
+    np.testing.assert_allclose(np.sqrt(fit**2 + 5.0**2), deviation, rtol=1e-12)
+    assert "expanded uncertainty" in basis
+
+
+def test_allowed_deviation_of_a_stated_zero_is_horwitz() -> None:
+    deviation, basis = allowed_deviation(100.0, "ppm", 0.0, "SD")
+    assert deviation == float(horwitz_deviation(100.0, "ppm"))
+    assert basis.startswith("deviation fit for applied geochemistry")
+
+
 @pytest.mark.parametrize("word", ["range", "two-tailed guess"])
 def test_allowed_deviation_without_a_usable_uncertainty_is_horwitz(word: str) -> None:
     assert kind_of_uncertainty(word) == "nothing"

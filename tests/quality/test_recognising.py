@@ -33,6 +33,22 @@ def test_patterns_tell_kinds_and_stages_of_codes() -> None:
     assert not Patterns({"convention.failed_control": '"hold"'})
 
 
+@pytest.mark.parametrize(
+    ("pattern", "code", "original"),
+    [
+        ("-PD$", "A12-PD", "A12"),
+        ("^DUP_", "DUP_A12", "A12"),
+        (r"^QC_(?P<original>.+)_\d$", "QC_A12_1", "A12"),
+        (r"^(\w+)\.P$", "A12.P", "A12"),
+        ("^P[0-9]+$", "P77", None),
+        ("-PD$", "A12", None),
+    ],
+)
+def test_patterns_of_duplicates_tell_the_original(pattern: str, code: str, original: str | None) -> None:
+    patterns = Patterns({"control_pattern.pulp_duplicate": pattern, "control_pattern.blank": "^A"})
+    assert patterns.original_of(code) == original
+
+
 def test_patterns_that_cannot_be_used_are_named() -> None:
     with pytest.raises(ValueError, match=r"setting 'control_pattern.blank': '\(' is no regular expression"):
         Patterns({"control_pattern.blank": "("})

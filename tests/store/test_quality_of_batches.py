@@ -1,0 +1,158 @@
+"""Controls of whole imports: patterns, parts of one certificate, own certificates. The data are invented."""
+
+from __future__ import annotations
+
+from pathlib import Path
+from typing import Any
+
+import numpy as np
+import pytest
+
+from registry.batching import set_state
+from registry.control_history import trends
+from registry.importing import ImportOptions, ImportReport, import_files
+from registry.refresh import refresh_registry
+from registry.store.engine import Registry, reading, writing
+from registry.store.reading.controls import batch_state
+
+CERTIFICATES = """reference_material,analyte,value,unit,uncertainty,uncertainty_type,status,source
+XM-1,Zr,100,ppm,5,SD,certified,invented
+"""
+
+
+def bring(registry: Registry, folder: Path, files: dict[str, str], **options: Any) -> ImportReport:
+    for name, text in files.items():
+        (folder / name).write_text(text)
+    return import_files(registry, [folder / name for name in files], ImportOptions(**options))
+
+
+def sheet(registry: Registry, query: str) -> list[tuple[Any, ...]]:
+    with reading(registry) as connection:
+        return [tuple(row) for row in connection.exec_driver_sql(query)]
+
+
+def told(report: ImportReport) -> list[str]:
+    (results,) = [file.results for file in report.files if file.results is not None]
+    return results.controls
+
+
+def patterns(registry: Registry, **said: str) -> None:
+    with writing(registry) as connection:
+        for name, value in said.items():
+            connection.exec_driver_sql(
+                f"INSERT INTO setting (name, value) VALUES ('control_pattern.{name}', '\"{value}\"')"
+            )
+    refresh_registry(registry)
+
+
+SHEET = "SELECT sample_code, kind, expected, found, state FROM control_sheet WHERE analyte = 'Zr' ORDER BY line_no"
+
+
+def test_code_patterns_call_samples_of_the_same_import(any_registry: Registry, tmp_path: Path) -> None:
+    """The sample list leaves the kind open; the results come in with it. A blank gets no verdict."""
+    patterns(any_registry, blank="^BL", pulp_duplicate="-PD$", reference_material="^STD")
+    files = {
+        "certificates.csv": CERTIFICATES,
+        "samples.csv": "sample_code,sample_kind\nR1,core\nBL1,\nR1-PD,\nSTD-XM-1,unknown\n",
+        "K1.csv": "Sample,Zr fusion (ppm)\nR1,120\nBL1,<2\nR1-PD,118\nSTD-XM-1,101\n",
+    }
+    report = bring(any_registry, tmp_path, files)
+    assert sheet(any_registry, "SELECT code, kind FROM sample ORDER BY sample_id") == [
+        ("R1", "core"), ("BL1", "blank"), ("R1-PD", "duplicate"), ("STD-XM-1", "reference_material"),
+    ]  # fmt: skip
+    assert sheet(any_registry, SHEET) == [
+        ("BL1", "blank", 0.0, 2.0, "passed"),
+        ("R1-PD", "duplicate", 120.0, 118.0, "passed"),
+        ("STD-XM-1", "reference_material", 100.0, 101.0, "passed"),
+    ]
+    assert told(report)[0] == "controls: 1 reference material, 1 duplicate, 1 blank"
+    assert sheet(any_registry, "SELECT DISTINCT sample_code FROM verdict_sheet WHERE sample_code <> 'R1'") == []
+    before = sheet(any_registry, "SELECT * FROM control_sheet")
+    refresh_registry(any_registry, everything=True)
+    assert sheet(any_registry, "SELECT * FROM control_sheet") == before
+
+
+PAIRS = "sample_code,sample_kind,duplicate_of\nR1,core,\nR2,core,\nD1,duplicate,R1\n"
+
+
+@pytest.mark.parametrize("duplicate_first", [True, False])
+def test_duplicate_finds_its_original_in_another_part_of_the_certificate(
+    any_registry: Registry, tmp_path: Path, duplicate_first: bool
+) -> None:
+    """As where --keep-going set one of them aside: z = (90 - 120)/(sqrt(2) 0.15 x 105), no detection limit known."""
+    files = {"samples.csv": PAIRS, "K1.csv": "Sample,Zr fusion (ppm),Cu (ppm)\nR1,120,5\nR2,50,6\n"}
+    rest = {"rest.csv": "Sample,Cu (ppm),Zr fusion (ppm)\nD1,7,90\n"}
+    if duplicate_first:
+        files["K1.csv"], rest["rest.csv"] = (
+            files["K1.csv"].replace("R1,120,5", "D1,90,7"),
+            "Sample,Zr fusion (ppm)\nR1,120\n",
+        )
+    bring(any_registry, tmp_path, files)
+    bring(any_registry, tmp_path, rest, add_to="K1")
+    assert sheet(any_registry, SHEET) == [("D1", "duplicate", 120.0, 90.0, "passed")]
+    ((z,),) = sheet(any_registry, "SELECT z FROM control_sheet WHERE z IS NOT NULL AND analyte = 'Zr'")
+    np.testing.assert_allclose(-30.0 / (np.sqrt(2.0) * 0.15 * 105.0), z)
+    set_state(any_registry, "K1/2", "withdrawn")
+    ((rule,),) = sheet(any_registry, "SELECT rule FROM control_sheet WHERE sample_code = 'D1' AND analyte = 'Zr'")
+    assert duplicate_first is (rule == "its original has no result in this certificate")
+    set_state(any_registry, "K1/2", "active")
+    assert sheet(any_registry, SHEET) == [("D1", "duplicate", 120.0, 90.0, "passed")]
+
+
+def test_own_certificate_counts_whatever_way_the_material_is_spelled(any_registry: Registry, tmp_path: Path) -> None:
+    files = {
+        "first.csv": CERTIFICATES,
+        "own.csv": CERTIFICATES.replace("XM-1,Zr,100,ppm,5", "xm 1,Zr,105,ppm,4").replace("invented", "our bottle"),
+        "samples.csv": "sample_code,sample_kind,reference_material\nC1,reference_material,XM 1\n",
+        "K1.csv": "Sample,Zr fusion (ppm)\nC1,109\n",
+    }
+    report = bring(any_registry, tmp_path, files)
+    assert sheet(any_registry, "SELECT sample_code, expected, z FROM control_sheet") == [("C1", 105.0, 1.0)]
+    (own,) = [file for file in report.files if file.file == "own.csv"]
+    assert own.remarks[0].startswith(
+        "own.csv: 'xm 1' is taken for the registered material 'XM-1'; if it is another one"
+    )
+
+
+def test_certificate_that_looks_like_a_slip_is_stored_with_a_remark(any_registry: Registry, tmp_path: Path) -> None:
+    """5 % at 100 ppm is Horwitz' 8 % about; 50 ppm is six times it, and 0 says nothing."""
+    bring(any_registry, tmp_path, {"first.csv": CERTIFICATES})
+    rows = "XM-1,Zr,10,ppm,0.5,SD,certified,b\nXM-1,Sr,100,ppm,50,SD,certified,b\nXM-1,Rb,100,ppm,0,SD,certified,b\n"
+    report = bring(any_registry, tmp_path, {"own.csv": CERTIFICATES.splitlines()[0] + "\n" + rows})
+    assert [(said.row, said.column, said.found) for said in report.files[0].on_storing] == [
+        (2, "value", "10"), (3, "uncertainty", "50"), (4, "uncertainty", "0"),
+    ]  # fmt: skip
+    assert "far from another value of the material" in report.files[0].remarks[0]
+    assert "is the decimal point right?" in report.files[0].remarks[1]
+    assert report.files[0].added == 3
+
+
+def test_batch_without_controls_says_that_nothing_vouches_for_it(any_registry: Registry, tmp_path: Path) -> None:
+    report = bring(any_registry, tmp_path, {"K1.csv": "Sample,Zr (ppm)\nA1,120\n"}, create_samples=True)
+    assert told(report)[0].startswith("controls: none. No reference material, blank, duplicate or repeat is on this")
+    with reading(any_registry) as connection:
+        assert batch_state(connection, 1) == "no controls"
+
+
+def test_failed_analytes_are_told_before_those_with_remarks(any_registry: Registry, tmp_path: Path) -> None:
+    """Fourteen elements at six detection limits in the blank (warned), the fifteenth at twenty (failed)."""
+    elements = ["Li", "Be", "Sc", "V", "Cr", "Co", "Ni", "Cu", "Zn", "Ga", "Ge", "As", "Rb", "Sr", "Y"]
+    heading = ",".join(f"{element} fusion (ppm)" for element in elements)
+    rows = [["A1", *["<1"] * 15], ["B1", *["6"] * 14, "20"]]
+    text = f"Sample,{heading}\n" + "\n".join(map(",".join, rows)) + "\n"
+    files = {"samples.csv": "sample_code,sample_kind\nA1,core\nB1,blank\n", "K1.csv": text}
+    lines = told(bring(any_registry, tmp_path, files))
+    assert lines[1] == "batch fails (14 of 15 analytes: passes with remarks, 1 of 15 analytes: fails)"
+    assert lines[2].startswith("Y fails: blank failed on line 3: found 20 for 0 ppm (20 times the detection limit")
+    assert lines[-1] == "... and 5 more analytes: the page of the batch and control_sheet hold them all"
+
+
+def test_censored_control_fails_its_batch_and_stays_out_of_the_history(any_registry: Registry, tmp_path: Path) -> None:
+    listed = "sample_code,sample_kind,reference_material\nR1,core,\nR2,core,\n"
+    listed += "".join(f"C{number},reference_material,XM-1\n" for number in range(4))
+    text = "Sample,Zr fusion (ppm)\nR1,<1\nR2,<1\nC0,102\nC1,<50\nC2,>60\nC3,98\n"
+    bring(any_registry, tmp_path, {"certificates.csv": CERTIFICATES, "samples.csv": listed, "K1.csv": text})
+    assert [row[4] for row in sheet(any_registry, SHEET)] == ["passed", "failed", "not judged", "passed"]
+    with reading(any_registry) as connection:
+        (zr,) = trends(connection, ["XM-1"])
+    assert (zr["results"], zr["bias_percent"]) == (2, 0.0)
