@@ -122,16 +122,19 @@ class ImportJobs:
                 )
             finally:
                 self._at_work = None
-                with self._lock:
-                    self._live.pop(draft.draft_id, None)
                 with self._changed:
                     self._changed.notify_all()
 
     def _end(self, draft: Draft, state: str, sentence: str) -> None:
-        draft.sentence, draft.ended_at = sentence, now()
-        draft.state = state
-        with suppress(OSError):  # the folder may have been deleted meanwhile; the registry is what counts
-            self.folder.save(draft)
+        """Whoever sees that the work has ended can begin the next at once: both happen under the lock."""
+        with self._lock:
+            draft.sentence, draft.ended_at = sentence, now()
+            draft.state = state
+            try:
+                with suppress(OSError):  # the folder may have been deleted meanwhile; the registry is what counts
+                    self.folder.save(draft)
+            finally:
+                self._live.pop(draft.draft_id, None)
 
     def _run(self, draft: Draft) -> None:
         paths = self.folder.paths(draft)
@@ -170,8 +173,9 @@ class ImportJobs:
         )
         draft.report = report.as_dict()
         if draft.storing:
+            with suppress(OSError):  # it is stored, whatever becomes of the copies
+                self.folder.drop_files(draft)
             self._end(draft, DONE, "Stored.")
-            self.folder.drop_files(draft)
         else:
             self._end(draft, READ, "Read and tried out; nothing is stored yet.")
 

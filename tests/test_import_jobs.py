@@ -69,6 +69,27 @@ def test_job_looks_first_and_stores_then(jobs: ImportJobs) -> None:
     assert jobs.folder.load(draft.draft_id) == stored
 
 
+def test_job_that_has_ended_can_be_stored_at_once(jobs: ImportJobs, monkeypatch: pytest.MonkeyPatch) -> None:
+    begun: list[bool] = []
+    stored = threading.Event()
+    end = jobs._end
+
+    def end_and_store(draft: Draft, state: str, sentence: str) -> None:
+        end(draft, state, sentence)
+        if state == "read":
+            looked = jobs.find(draft.draft_id)
+            assert looked is not None and looked.state == "read"
+            begun.append(jobs.store(looked))
+            stored.set()
+
+    monkeypatch.setattr(jobs, "_end", end_and_store)
+    draft = draft_of(jobs, create_samples=True)
+    jobs.look(draft)
+    assert stored.wait(60)
+    assert ended(jobs, draft).state == "done"
+    assert (begun, batches(jobs.registry)) == ([True], ["r"])
+
+
 def test_job_with_problems_lists_them_and_stores_nothing(jobs: ImportJobs) -> None:
     draft = draft_of(jobs)
     jobs.store(draft)
