@@ -18,7 +18,7 @@ from registry.import_reports import FileReport, ImportReport, counted, understoo
 from registry.importing_certificates import store_certificates
 from registry.importing_codes import almost_known, unknown_codes
 from registry.importing_controls import called_otherwise
-from registry.importing_faults import Rest, may_bring_anything, prefixed
+from registry.importing_faults import Rest, prefixed
 from registry.importing_lines import resolve
 from registry.importing_results import StoredBatch, store_results
 from registry.intake import KINDS, MasterTable, Reading, ReadingOptions
@@ -126,9 +126,9 @@ def _import(
                 on_read(file.path, reading)
             readings.append((reading, file))
     readings.sort(key=lambda pair: _ORDER.index(pair[0].kind) if pair[0].kind in _ORDER else len(_ORDER))
-    asides = [
-        SetAside.of(file.path, file.file.data, reading) if options.keep_going else None for reading, file in readings
-    ]
+    asides: list[SetAside | None] = [None] * len(readings)
+    if options.keep_going:
+        asides = SetAside.of_all((file.path, file.file.data, reading) for reading, file in readings)
     unreadable = [problem for reading, _ in readings for problem in reading.problems if not reading.ok]
     report: ImportReport | None = None
     try:
@@ -154,22 +154,23 @@ def _store(
     before = last_change(connection)
     reports: list[FileReport] = []
     earlier: list[Earlier | None] = []
-    rest = Rest(anything=any(may_bring_anything(reading) for reading, _ in readings))
+    rest = Rest.of(reading for reading, _ in readings)
     computed = np.zeros(0, dtype=np.int64)
     results = len({file.path for reading, file in readings if reading.kind == "results"})
     if options.batch and results > 1:
         raise UsageError(f"--batch names one batch, but {results} files hold results; import them one by one")
     for (reading, contents), aside in zip(readings, asides, strict=True):
         if problems or not reading.ok:
-            more = rest.more_faults(connection, reading, options.code_prefix, options.create_samples)
+            more = rest.more_faults(connection, reading, contents.file, options, contents.batch is not None)
             problems = [*problems, *more]
             continue
         earlier.append(_before(connection, reading, options) if options.dry_run else None)
         report, done, faults = _store_one(connection, reading, contents, aside, options, progress)
         reports.append(report)
         computed = np.union1d(computed, done)
-        if faults and reading.master is not None:
-            faults = rest.more_faults(connection, reading, options.code_prefix, options.create_samples) or faults
+        if faults:
+            told = rest.more_faults(connection, reading, contents.file, options, contents.batch is not None)
+            faults = told or faults
         problems = [*problems, *faults]
     if problems:
         raise InputProblems(problems, understood_of([reading for reading, _ in readings]) if options.dry_run else ())

@@ -5,16 +5,24 @@ All that is done here lies in a transaction that is rolled back: what is good go
 
 from __future__ import annotations
 
-from collections.abc import Mapping
+from collections.abc import Iterable, Mapping
 from dataclasses import dataclass, field
-from typing import Any
+from pathlib import Path
+from typing import TYPE_CHECKING, Any
 
+from registry.batch_places import place_of
+from registry.clock import now
 from registry.errors import Problem
+from registry.importing_certificates import store_certificates
 from registry.importing_codes import first_of, unknown_codes
 from registry.intake import MasterTable, Reading
 from registry.intake.refused import without_lines
-from registry.store import masters
+from registry.lab_files import LabFile
+from registry.store import batches, masters
 from registry.store.master_kinds import MASTER_KINDS, MasterKind
+
+if TYPE_CHECKING:
+    from registry.importing import ImportOptions
 
 #: Times that a file is brought in anew without its faulty references, then rows; what is left then is left out whole.
 PASSES = 4
@@ -22,40 +30,101 @@ PASSES = 4
 _NAMES_NOTHING = "not in the registry"
 
 
-def may_bring_anything(reading: Reading) -> bool:
-    """Whether a file of master data, or of no known kind, could not be read at all."""
-    return reading.kind != "results" and (reading.whole_file_refused or reading.master is None)
+def lost_tables(reading: Reading) -> set[str]:
+    """The tables that a file which could not be read may have brought rows of; any where its kind is not told."""
+    if reading.kind == "results" or not (reading.whole_file_refused or reading.master is None):
+        return set()
+    if reading.kind is None:
+        return {spec.table for spec in MASTER_KINDS.values()}
+    return {MASTER_KINDS[reading.kind].table} if reading.kind in MASTER_KINDS else set()
 
 
 @dataclass
 class Rest:
     """What the files of a refused import were to bring and could not: its absence is no fault of what names it.
 
-    ``promised`` holds codes by table; ``anything`` is True once a file of master data could not be read at all.
+    ``promised`` holds codes by table; ``anything`` are the tables of which a file that could not be read may have
+    brought any row; ``placed`` are the files whose batch is in.
     """
 
     promised: dict[str, set[str]] = field(default_factory=dict)
-    anything: bool = False
+    anything: set[str] = field(default_factory=set)
+    placed: set[Path] = field(default_factory=set)
 
-    def more_faults(self, connection: Any, reading: Reading, prefix: str, create_samples: bool) -> list[Problem]:
-        """What the registry, with what the files before brought, has against the rows of one file."""
-        if reading.whole_file_refused or (reading.master is None and reading.results is None):
-            self.anything |= may_bring_anything(reading)
+    @classmethod
+    def of(cls, readings: Iterable[Reading]) -> Rest:
+        """Begin with what cannot be read of the files of an import."""
+        return cls(anything={table for reading in readings for table in lost_tables(reading)})
+
+    def more_faults(
+        self, connection: Any, reading: Reading, file: LabFile, options: ImportOptions, within: bool = False
+    ) -> list[Problem]:
+        """What the registry, with what the files before brought, has against one file and its rows.
+
+        ``within``: the batch of the file is in the registry, by an earlier table of it. With ``--keep-going`` rows are
+        set aside, so that only what concerns the whole file is a fault.
+        """
+        table = reading.results or reading.master
+        if table is None:
             return []
         if reading.results is not None:
-            return [] if create_samples or self.anything else self._of_results(connection, reading, prefix)
-        table = reading.master
-        if table is None or table.kind == "reference-materials":
+            faults = [] if within else self._of_place(connection, reading, file, options)
+            if not reading.whole_file_refused and not options.create_samples and not options.keep_going:
+                faults += self._of_codes(connection, reading, options.code_prefix)
+            return faults
+        if reading.whole_file_refused:
             return []
-        told = self._of_master(connection, table, reading, prefix)
-        return [fault for fault in told if not (self.anything and _NAMES_NOTHING in fault.what)]
+        if reading.kind == "reference-materials":
+            return self._of_certificates(connection, reading)
+        assert reading.master is not None
+        told = self._of_master(connection, reading.master, reading, options.code_prefix)
+        tables = {reference.column: reference.table for reference in MASTER_KINDS[reading.master.kind].references}
+        told = [fault for fault in told if not self._may_be_lost(fault, tables)]
+        return [fault for fault in told if fault.row is None] if options.keep_going else told
 
-    def _of_results(self, connection: Any, reading: Reading, prefix: str) -> list[Problem]:
+    def _may_be_lost(self, fault: Problem, tables: Mapping[str, str]) -> bool:
+        """Whether a fault is that a reference names nothing, which a file that could not be read may have brought."""
+        table = tables.get(fault.column or "")
+        named = set(tables.values()) if table is None else {table}
+        return _NAMES_NOTHING in fault.what and bool(named & self.anything)
+
+    def _of_place(self, connection: Any, reading: Reading, file: LabFile, options: ImportOptions) -> list[Problem]:
+        """What keeps a file of results out of the batches; a good one goes in, so that the next one meets it."""
+        table = reading.results
+        assert table is not None
+        if file.path in self.placed:
+            return []
+        self.placed.add(file.path)
+        packed = file.packed()
+        place, faults = place_of(connection, reading.file, table, packed.sha256, options)
+        if not faults:
+            batch_id = batches.insert_batch(
+                connection,
+                code=place.code,
+                certificate=table.certificate,
+                file_name=reading.file,
+                sha256=packed.sha256,
+                part_of=place.part_of,
+                imported_at=now(),
+            )
+            if place.supersedes is not None:
+                batches.supersede(connection, place.supersedes, batch_id)
+        return faults
+
+    def _of_codes(self, connection: Any, reading: Reading, prefix: str) -> list[Problem]:
         assert reading.results is not None
+        if "sample" in self.anything:
+            return []
         without_lines(reading, frozenset(reading.refused_lines))
         promised = self.promised.get("sample", set())
         faults = unknown_codes(connection, reading.file, reading.results, prefix)
-        return first_of([fault for fault in faults if fault.found not in promised], reading.file)
+        return first_of((fault for fault in faults if fault.found not in promised), reading.file)
+
+    def _of_certificates(self, connection: Any, reading: Reading) -> list[Problem]:
+        without_lines(reading, frozenset(reading.refused_lines))
+        assert reading.master is not None
+        _, told = store_certificates(connection, reading.master, reading.file)
+        return [fault for fault in told if fault.severity == "problem"]
 
     def _of_master(self, connection: Any, table: MasterTable, reading: Reading, prefix: str) -> list[Problem]:
         """Bring in what can be: a faulty reference is left blank, then its row left out; each row is told of once."""
@@ -100,7 +169,7 @@ class Rest:
             return
         given = rows.get(code)
         if given is None or any(value is None for line, value in zip(lines, given, strict=True) if line in refused):
-            self.anything = True
+            self.anything.add(spec.table)
 
     def _without_promised(
         self, connection: Any, spec: MasterKind, rows: dict[str, list[Any]], lines: list[int]

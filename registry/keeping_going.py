@@ -41,6 +41,17 @@ class SetAside:
         without_lines(reading, frozenset(reading.refused_lines))
         return aside
 
+    @classmethod
+    def of_all(cls, files: Iterable[tuple[Path, bytes | None, Reading]]) -> list[SetAside | None]:
+        """Begin with several files; None for each that is faulty itself, which its reading goes on to say."""
+        found: list[SetAside | None] = []
+        for path, data, reading in files:
+            try:
+                found.append(cls.of(path, data, reading))
+            except InputProblems:
+                found.append(None)
+        return found
+
     def add(self, problems: Iterable[Problem]) -> list[Problem]:
         """Set the rows of these problems aside; those that concern no row are given back."""
         whole = []

@@ -12,7 +12,8 @@ from registry import cli
 from registry.errors import InputProblems, Problem
 from registry.importing import ImportOptions, import_files
 from registry.intake.codes import is_code_heading
-from registry.store.engine import Registry, reading
+from registry.store import batches
+from registry.store.engine import Registry, reading, writing
 from registry.store.reading.sample import chosen_values
 
 SITES = "site_code,site_kind,easting,northing,epsg,depth_m,area\nKD1,drill_hole,450000,7350000,32633,100,{area}\n"
@@ -78,6 +79,82 @@ def test_file_that_cannot_be_read_leaves_the_following_ones_unjudged_where_they_
     with pytest.raises(InputProblems, match=r"sites\.csv") as error:
         import_files(sqlite_registry, paths)
     assert {problem.file for problem in error.value.problems} == {"sites.csv", "intervals.csv"}
+
+
+def all_faults(registry: Registry, folder: Path, files: dict[str, str], **options: Any) -> list[tuple[str, Any]]:
+    """(file, what) of every problem of an import that is refused; nothing of it is stored."""
+    for name, text in files.items():
+        (folder / name).write_text(text)
+    with pytest.raises(InputProblems, match="csv") as error:
+        import_files(registry, [folder / name for name in files], ImportOptions(**options))
+    with reading(registry) as connection:
+        assert connection.exec_driver_sql("SELECT count(*) FROM sample").scalar() == 0
+        assert connection.exec_driver_sql("SELECT count(*) FROM batch WHERE code <> 'Z-1'").scalar() == 0
+    return [(problem.file, problem.what) for problem in error.value.problems if problem.severity == "problem"]
+
+
+BAD_SITE = "site_code,site_kind,easting,northing,epsg,depth_m\nKD1,drill_hole,450000,7350000,32633,deep\n"
+CERTIFICATE = "reference_material,analyte,value,unit,uncertainty_type\nXM,Zr,{value},ppm,{kind}\n"
+
+
+def test_faults_of_certificates_and_of_the_places_of_results_are_told_beside_a_bad_site(
+    sqlite_registry: Registry, tmp_path: Path
+) -> None:
+    with writing(sqlite_registry) as connection:
+        batches.insert_batch(connection, code="Z-1", certificate="Z-1", imported_at="2026-01-02T03:04:05Z", data=b"x")
+    files = {
+        "sites.csv": BAD_SITE,
+        "bad.csv": CERTIFICATE.format(value=0, kind="guess"),
+        "samples.csv": "sample_code,sample_kind\nA1,core\n",
+        "known.csv": "Certificate: Z-1\nSample,SiO2 (%)\nA1,60\n",
+        "lost.csv": "Certificate: Z-2\nSample,SiO2 (%)\nQ1,60\n",
+        "twice.csv": "Certificate: Z-2\nSample,TiO2 (%)\nA1,1\n",
+    }
+    told = all_faults(sqlite_registry, tmp_path, files)
+    assert [file for file, _ in told] == ["sites.csv", "bad.csv", "bad.csv", "known.csv", "lost.csv", "twice.csv"]
+    assert [what for _, what in told[1:3]] == [
+        "a certified value must be above zero", "this kind of uncertainty is not known",
+    ]  # fmt: skip
+    assert told[3][1].startswith("certificate 'Z-1' is in the registry already")
+    assert told[4][1] == "this sample is not in the registry"
+    assert told[5][1].startswith("certificate 'Z-2' is in the registry already, from another file (lost.csv)")
+
+
+def test_same_bytes_twice_in_a_refused_import_are_told(sqlite_registry: Registry, tmp_path: Path) -> None:
+    text = "Sample,SiO2 (%)\nA1,60\n"
+    told = all_faults(
+        sqlite_registry, tmp_path, {"sites.csv": BAD_SITE, "a.csv": text, "b.csv": text}, create_samples=True
+    )
+    assert [file for file, _ in told] == ["sites.csv", "b.csv"]
+    assert told[1][1] == "the same bytes were imported before, as batch 'a' (active)"
+
+
+def test_file_of_a_told_kind_that_cannot_be_read_excuses_only_what_names_its_things(
+    sqlite_registry: Registry, tmp_path: Path
+) -> None:
+    """An empty list of areas was to bring areas, not samples nor intrusions."""
+    files = {
+        "areas.csv": "area,epsg\n",
+        "sites.csv": "site_code,site_kind,easting,northing,epsg,area\nKD1,drill_hole,450000,7350000,32633,Lost\n",
+        "samples.csv": "sample_code,sample_kind,intrusion\nA1,core,Nowhere\n",
+        "K1.csv": "Sample,SiO2 (%)\nA1,60\nQ7,61\n",
+    }
+    told = all_faults(sqlite_registry, tmp_path, files)
+    assert [file for file, _ in told][-2:] == ["samples.csv", "K1.csv"]
+    assert "sites.csv" not in [file for file, _ in told] and told[0][0] == "areas.csv"
+
+
+def test_keep_going_tells_every_file_that_is_faulty_as_a_whole(sqlite_registry: Registry, tmp_path: Path) -> None:
+    """Rows that would be set aside (Q7 and the intrusion Nowhere) are no reason of the refusal."""
+    files = {
+        "one.csv": "nothing,known\n1,2\n",
+        "two.csv": "",
+        "samples.csv": "sample_code,sample_kind,intrusion\nA1,core,Nowhere\n",
+        "K1.csv": "Sample,SiO2 (%)\nA1,60\nQ7,61\n",
+    }
+    told = all_faults(sqlite_registry, tmp_path, files, keep_going=True)
+    assert {file for file, _ in told} == {"one.csv", "two.csv"}
+    assert not list(tmp_path.glob("*.refused*"))
 
 
 def test_dry_run_with_unknown_codes_tells_what_was_understood_and_counts_the_codes(
