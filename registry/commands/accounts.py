@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import shlex
 import sys
 from pathlib import Path
 
@@ -110,7 +111,7 @@ def list_(registry_path: str | None, as_json: bool) -> None:
 
 def _password(command: str, name: str, file: Path | None) -> str:
     """The one line of the file or of standard input; UsageError where nothing came that could be one."""
-    how = HOW.format(command=command, name=name)
+    how = HOW.format(command=command, name=shlex.quote(name))
     sent: bytes | str
     if file is not None:
         try:

@@ -110,6 +110,11 @@ def test_account_password_at_a_terminal_is_not_asked_for_but_told_how(run: Run, 
     assert rows(path, "SELECT count(*) FROM account") == [(0,)]
 
 
+def test_account_name_in_the_told_way_can_be_copied_to_a_shell(run: Run) -> None:
+    said = run("add", "Berit $(x) Dahl", stdin="")[2]
+    assert "plutonbook account add 'Berit $(x) Dahl' --password-file FILE" in said
+
+
 def test_account_password_cannot_stand_in_the_command(run: Run, path: Path) -> None:
     code, _, said = run("add", "anna", PASSWORD)
     assert code == 2
