@@ -151,11 +151,13 @@ def scores_by_intrusion(
     """
     samples, bodies = members_of_intrusions(connection) if members is None else members
     rows = raw_rows.select(
-        connection, f"SELECT sample_id, verdict, score_min FROM verdict WHERE target_id = {int(target_id)}"
+        connection,
+        f"SELECT sample_id, verdict, coalesce(score_min, -1.0) FROM verdict WHERE target_id = {int(target_id)}",
     )
     if not rows or not samples.size:
         return {}
-    ids, verdicts, scores = (np.array(column, dtype=np.float64) for column in zip(*rows, strict=True))
+    ids, verdicts, scores = raw_rows.numbers_of(rows, 3).T
+    scores = np.where(scores < 0, np.nan, scores)
     places = np.minimum(np.searchsorted(samples, ids), samples.size - 1)
     named = samples[places] == ids
     body, verdict, score = bodies[places[named]], verdicts[named].astype(np.int64), scores[named]
