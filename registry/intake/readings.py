@@ -89,6 +89,8 @@ class ResultTable:
     ignored: tuple[str, ...] = ()
     control_text: list[str | None] = field(default_factory=list)
     sample_header: str = ""
+    received_on: str | None = None
+    reported_on: str | None = None
 
     def __len__(self) -> int:
         return len(self.sample_codes)

@@ -19,7 +19,7 @@ from registry.intake.settling import settle_columns
 from registry.intake.sources import Source
 from registry.intake.spooled import repeated, row_parts
 from registry.intake.texts import CONTROL_WORD, judge_texts
-from registry.intake.titles import read_titles
+from registry.intake.titles import Titles, read_titles
 from registry.intake.units import canonical_unit, split_unit
 from registry.intake.wide import WideBody, WideReader
 
@@ -98,7 +98,7 @@ def read_results(
     used = {column.position for column in columns} | {layout.code.position} | set(qualifier_positions)
     ignored = [layout.labels[place] for place in range(layout.width) if place not in used and layout.labels[place]]
     _say_ignored(layout, used, control, findings, understood)
-    table = _table(layout, columns, body, titles.certificate, titles.lab, tuple(ignored), findings, understood)
+    table = _table(layout, columns, body, titles, tuple(ignored), findings, understood)
     made = Recipe(
         shape=layout.shape,
         columns={c.header: ColumnChoice(c.analyte, c.unit, c.method, c.digestion) for c in columns},
@@ -209,8 +209,7 @@ def _table(
     layout: WideLayout,
     columns: list[ResultColumn],
     body: WideBody,
-    certificate: str | None,
-    lab: str | None,
+    titles: Titles,
     ignored: tuple[str, ...],
     findings: Findings,
     understood: list[str],
@@ -251,9 +250,18 @@ def _table(
     check_values(columns, body.values, body.qualifiers, body.lines, findings)
     check_units(columns, body.values, findings)
     understood.append(f"{len(codes)} lines of results in {len(columns)} columns")
-    if certificate or lab:
-        understood.append("stated above the table: " + ", ".join(filter(None, (certificate, lab))))
+    stated = [
+        titles.certificate,
+        titles.lab,
+        titles.received_on and f"received on {titles.received_on}",
+        titles.reported_on and f"reported on {titles.reported_on}",
+    ]
+    if any(stated):
+        understood.append("stated above the table: " + ", ".join(filter(None, stated)))
+    understood += [
+        f"the date '{day}' above the table can be read in two ways and is left out" for day in titles.unclear_days
+    ]
     return ResultTable(
-        columns, codes, body.lines, body.values, body.qualifiers, certificate, lab, ignored,
-        body.control, layout.code.header,
+        columns, codes, body.lines, body.values, body.qualifiers, titles.certificate, titles.lab, ignored,
+        body.control, layout.code.header, titles.received_on, titles.reported_on,
     )  # fmt: skip

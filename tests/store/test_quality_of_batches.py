@@ -156,3 +156,27 @@ def test_censored_control_fails_its_batch_and_stays_out_of_the_history(any_regis
     with reading(any_registry) as connection:
         (zr,) = trends(connection, ["XM-1"])
     assert (zr["results"], zr["bias_percent"]) == (2, 0.0)
+
+
+def test_drift_over_time_goes_by_the_dates_that_the_certificates_state(any_registry: Registry, tmp_path: Path) -> None:
+    """Zr 100, 102, 104 at the turn of three years: 2 % a year; a superseded and a withdrawn one do not count."""
+    listed = "sample_code,sample_kind,reference_material\n" + "".join(
+        f"C{n},reference_material,XM-1\n" for n in range(5)
+    )
+    bring(any_registry, tmp_path, {"certificates.csv": CERTIFICATES, "samples.csv": listed})
+    text = "Certificate: Q-{n}\nDate reported: {day}\nSample,Zr fusion (ppm)\nC{n},{zr}\n"
+    days = ("2024-01-01", "2025-01-01", "2026-01-01", "2027-01-01", "2027-01-01")
+    for number, day in enumerate(days):
+        bring(any_registry, tmp_path, {f"{number}.csv": text.format(n=number, day=day, zr=100 + 2 * number)})
+    assert sheet(any_registry, "SELECT reported_on FROM batch ORDER BY batch_id") == [(day,) for day in days]
+    set_state(any_registry, "Q-3", "withdrawn")
+    corrected = text.format(n=4, day="2026-07-02", zr=104).replace("C4", "C3")
+    bring(any_registry, tmp_path, {"again.csv": corrected}, supersede=True)
+    set_state(any_registry, "Q-4 corrected 2", "withdrawn")
+    with reading(any_registry) as connection:
+        (zr,) = trends(connection, ["XM-1"])
+    assert (zr["results"], zr["first_on"], zr["last_on"]) == (3, "2024-01-01", "2026-01-01")
+    np.testing.assert_allclose([2.0, 2.0], [zr["bias_percent"], zr["drift_percent_per_year"]], rtol=2e-3)
+    set_state(any_registry, "Q-4", "active")
+    with reading(any_registry) as connection:
+        assert trends(connection, ["XM-1"])[0]["results"] == 4
