@@ -9,14 +9,11 @@ from __future__ import annotations
 import os
 import pwd
 import shutil
-import subprocess
-import tempfile
 from collections.abc import Callable, Iterator
 from pathlib import Path
 from typing import Any, NoReturn
 
 import pytest
-import sqlalchemy as sa
 
 from registry.founding import found
 from registry.store import schema
@@ -40,65 +37,6 @@ def absent(what: str) -> NoReturn:
     pytest.skip(what)
 
 
-class PostgresqlServer:
-    """A private cluster on a unix socket in a folder of its own, run by an unprivileged user."""
-
-    def __init__(self, programs: Path, user: str | None) -> None:
-        self._programs, self._user = programs, user
-        self.folder = Path(tempfile.mkdtemp(prefix="plutonbook-pg-", dir="/tmp"))
-        self.folder.chmod(0o755)
-        if user is not None:
-            shutil.chown(self.folder, user)
-        self._databases = 0
-        self._template: str | None = None
-        data = str(self.folder / "data")
-        self._run("initdb", "-D", data, "-U", "plutonbook", "-A", "trust", "-E", "UTF8", "--locale=C", "--no-sync")
-        options = f"-c listen_addresses='' -c unix_socket_directories='{self.folder}' -c fsync=off"
-        log = str(self.folder / "log")
-        self._run("pg_ctl", "-D", data, "-w", "-t", "60", "-l", log, "-o", options, "start")
-
-    def _run(self, program: str, *arguments: str) -> None:
-        done = subprocess.run(
-            [str(self._programs / program), *arguments],
-            user=self._user,
-            extra_groups=[] if self._user else None,
-            cwd="/",
-            env={"PATH": os.environ["PATH"], "LC_ALL": "C"},
-            stdin=subprocess.DEVNULL,
-            stdout=subprocess.DEVNULL,
-            stderr=subprocess.PIPE,
-            text=True,
-            timeout=120,
-        )
-        assert done.returncode == 0, f"{program}: {done.stderr}"
-
-    def url(self, database: str) -> str:
-        return f"postgresql+psycopg://plutonbook@/{database}?host={self.folder}"
-
-    def new_database(self, template: str | None = None) -> str:
-        """The URL of a new database, empty or a copy of another of this server."""
-        self._databases += 1
-        name = f"test_{self._databases}"
-        engine = sa.create_engine(self.url("postgres"), isolation_level="AUTOCOMMIT")
-        with engine.connect() as connection:
-            copied = "" if template is None else f" TEMPLATE {template}"
-            connection.exec_driver_sql(f"CREATE DATABASE {name}{copied}")
-        engine.dispose()
-        return self.url(name)
-
-    def new_registry(self) -> str:
-        """The URL of a new database with an empty registry at the newest schema, copied from one made once."""
-        if self._template is None:
-            url = self.new_database()
-            schema.create(url).close()
-            self._template = sa.make_url(url).database
-        return self.new_database(self._template)
-
-    def stop(self) -> None:
-        self._run("pg_ctl", "-D", str(self.folder / "data"), "-m", "immediate", "-w", "stop")
-        shutil.rmtree(self.folder, ignore_errors=True)
-
-
 def _postgresql_programs() -> Path:
     found_there = sorted(Path("/usr/lib/postgresql").glob("*/bin/initdb"))
     if not found_there:
@@ -107,9 +45,11 @@ def _postgresql_programs() -> Path:
 
 
 @pytest.fixture(scope="session")
-def postgresql_server() -> Iterator[PostgresqlServer]:
+def postgresql_server() -> Iterator[Any]:
     """One server a test session (a worker of its own each with xdist)."""
     programs = _postgresql_programs()
+    from tests.postgresql_server import PostgresqlServer
+
     user = None
     if os.geteuid() == 0:
         try:
@@ -170,11 +110,13 @@ def founded_registry(founded_registry_file: Path, tmp_path: Path) -> Iterator[Re
 
 
 @pytest.fixture
-def postgresql_registry(postgresql_server: PostgresqlServer) -> Iterator[Registry]:
-    """A new empty registry in a database of its own."""
-    registry = schema.open_registry(postgresql_server.new_registry())
+def postgresql_registry(postgresql_server: Any) -> Iterator[Registry]:
+    """An empty registry in a database that no other test uses meanwhile."""
+    url = postgresql_server.lend_registry()
+    registry = schema.open_registry(url)
     yield registry
     registry.close()
+    postgresql_server.take_back(url)
 
 
 @pytest.fixture(params=ENGINES)
