@@ -41,23 +41,6 @@ def save_recipe(registry: Registry, name: str, recipe: Recipe) -> bool:
     return replaced
 
 
-def combined(made: Recipe, given: Recipe | None) -> Recipe:
-    """The recipe of a reading with those settings of the one it was read with that no reading shows (left-out columns).
-
-    Columns that were read stand as they were read.
-    """
-    if given is None:
-        return made
-    return replace(
-        made,
-        columns={**given.columns, **made.columns},
-        sample_header=given.sample_header or made.sample_header,
-        separator=given.separator,
-        decimal=given.decimal,
-        unit=given.unit,
-    )
-
-
 def list_recipes(registry: Registry) -> list[dict[str, Any]]:
     """Every saved recipe by name: ``name``, ``created_at``, ``headings`` (how many)."""
     with reading(registry) as connection:

@@ -28,8 +28,27 @@ KINDS = ["areas", "sites", "surveys", "intervals", "intrusions", "samples", "res
 @click.option("--code-prefix", metavar="P", default="", help="Put P before every sample code of the files.")
 @click.option("--recipe", metavar="NAME", help="Read the results as the saved reading NAME says.")
 @click.option("--save-recipe", metavar="NAME", help="Keep this reading of the results under NAME for the next file.")
+@click.option(
+    "--column",
+    "columns",
+    multiple=True,
+    metavar='"HEADING=WHAT"',
+    help="What a column of results is; may be given many times. WHAT is an analyte, a unit, a digestion, any of them "
+    "together ('Au=Au ppb fire assay'), after the word method a method, or else ignore, or sample code. '#7' in place "
+    "of a heading is the seventh column. The last = parts the two.",
+)
 @click.option("--unit", metavar="UNIT", help="Unit of result columns that state none (wt%, ppm, ppb, ...).")
 @click.option("--digestion", metavar="DIGESTION", help="Digestion of columns that tell none (four_acid, fusion, ...).")
+@click.option("--decimal", type=click.Choice(["point", "comma"]), help="The decimal sign of the results.")
+@click.option(
+    "--thousands",
+    type=click.Choice(["comma", "point", "space", "apostrophe", "none"]),
+    help="The only sign that groups digits in results; with none, a number with such a sign is a fault.",
+)
+@click.option(
+    "--separator", type=click.Choice(["comma", "semicolon", "tab", "bar"]), help="What parts the cells of a text file."
+)
+@click.option("--sheet", metavar="NAME", help="Read this sheet of a workbook or file of an archive only.")
 @click.option("--negative-means-below", is_flag=True, help="A negative result -x means: below the limit x.")
 @click.option(
     "--positive-dips", type=click.Choice(["down", "up"]), help="Where the dips of a survey without signs point."
@@ -64,7 +83,10 @@ def import_(registry_path: str | None, files: tuple[Path, ...], as_json: bool, v
 
 
 #: The options that say how files are read; the others say how they are stored.
-_HOW_READ = ("recipe", "save_recipe", "unit", "digestion", "negative_means_below", "positive_dips")
+_HOW_READ = (
+    "recipe", "save_recipe", "unit", "digestion", "negative_means_below", "positive_dips", "columns", "decimal",
+    "thousands", "separator", "sheet",
+)  # fmt: skip
 
 
 @click.command()

@@ -3,16 +3,19 @@
 from __future__ import annotations
 
 import re
+from collections.abc import Callable, Sequence
 from dataclasses import dataclass
 
 import numpy as np
 
 from registry.intake.codes import CodeColumn
+from registry.intake.corrections import is_named, place_of, say_no_such_column
 from registry.intake.findings import Findings
 from registry.intake.layout import SEARCH_ROWS, WideLayout, find_header_row, find_wide_layout
 from registry.intake.long import LongLayout, find_long_layout, gather
 from registry.intake.methods import speaks_of_method
-from registry.intake.names import read_heading
+from registry.intake.names import Heading, read_heading
+from registry.intake.recipes import ColumnCorrection, Recipe
 from registry.intake.sources import GridSource, Source
 
 #: A table turned on its side is held in memory whole: no more cells than this.
@@ -59,19 +62,42 @@ def _analytes_down(rows: list[list[str]]) -> tuple[int, int]:
 
 
 def arrange(
-    source: Source, row_bound: int, underscores: bool, findings: Findings, understood: list[str]
+    source: Source,
+    row_bound: int,
+    underscores: bool,
+    findings: Findings,
+    understood: list[str],
+    recipe: Recipe | None = None,
+    corrections: Sequence[ColumnCorrection] = (),
 ) -> Arranged | None:
-    """Bring a results table to wide form; None where no analytes are named."""
+    """Bring a results table to wide form; None where no analytes are named, by the table or by the user."""
+
+    def named(label: str) -> bool:
+        return is_named(label, recipe, corrections)
+
     preview, lines = source.preview()
     arrangement = tell_arrangement(preview)
     if arrangement == LONG:
-        layout = find_long_layout(preview)
+        wanted = next((one.column for one in corrections if one.choice is None), None)
+        saved = None if recipe is None else recipe.sample_header
+        layout = find_long_layout(preview, wanted or saved)
         assert layout is not None
-        return _gathered(source, layout, preview, findings, understood)
+        if wanted is not None and place_of(wanted, layout.labels) is None:
+            say_no_such_column(wanted, layout.labels, findings)
+        return _gathered(source, layout, preview, named, findings, understood)
     if arrangement == TURNED:
         return _turned(source, preview, lines, findings, understood)
-    wide = find_wide_layout(preview)
+    wide = find_wide_layout(preview, _headings_named(preview, named))
     return None if wide is None else Arranged(source, wide, row_bound, underscores)
+
+
+def _headings_named(rows: list[list[str]], named: Callable[[str], bool]) -> tuple[int, dict[int, Heading]] | None:
+    """The first row with a heading that the user names, and those headings' places."""
+    for index, row in enumerate(rows[:SEARCH_ROWS]):
+        places = {place: Heading() for place, cell in enumerate(row) if cell and named(cell)}
+        if places:
+            return index, places
+    return None
 
 
 def _titles(rows: list[list[str]]) -> list[str]:
@@ -80,11 +106,16 @@ def _titles(rows: list[list[str]]) -> list[str]:
 
 
 def _gathered(
-    source: Source, layout: LongLayout, preview: list[list[str]], findings: Findings, understood: list[str]
+    source: Source,
+    layout: LongLayout,
+    preview: list[list[str]],
+    named: Callable[[str], bool],
+    findings: Findings,
+    understood: list[str],
 ) -> Arranged | None:
-    gathered = gather(source, layout, findings)
-    named = ", ".join(f"{role} in '{layout.labels[at]}'" for role, at in sorted(layout.roles.items()))
-    understood.append(f"a long table, one result a line ({gathered.rows.results} results): {named}")
+    gathered = gather(source, layout, findings, named)
+    roles = ", ".join(f"{role} in '{layout.labels[at]}'" for role, at in sorted(layout.roles.items()))
+    understood.append(f"a long table, one result a line ({gathered.rows.results} results): {roles}")
     if not gathered.columns:
         return None
     findings.place = gathered.place_of_cells()
@@ -94,6 +125,7 @@ def _gathered(
     labels += [column.header for column in gathered.columns]
     titles = _titles(preview[: layout.header])
     wide = WideLayout(gathered.rows.width, {}, 0, gathered.columns, labels, CodeColumn(0, sample), titles)
+    wide.unread = gathered.unread
     return Arranged(gathered.rows, wide, len(gathered.rows), True, 1 if control is not None else None)
 
 

@@ -28,8 +28,8 @@ Marks = NDArray[np.uint8]
 class BlockReader:
     """Turns chunks of rows into numbers. ``positions`` are the columns of analytes in the file, m of them."""
 
-    def __init__(self, positions: list[int], decimal: str) -> None:
-        self.positions, self.decimal = positions, decimal
+    def __init__(self, positions: list[int], decimal: str, thousands: str | None = None) -> None:
+        self.positions, self.decimal, self.thousands = positions, decimal, thousands
         self.width = len(positions)
         self._pick: Any = (
             itemgetter(*positions) if self.width > 1 else itemgetter(slice(positions[0], positions[0] + 1))
@@ -156,7 +156,7 @@ class BlockReader:
         """``parse_cell`` with a memory: the same few limits and words come back thousands of times."""
         known = self._known.get(text)
         if known is None:
-            known = parse_cell(text, self.decimal)
+            known = parse_cell(text, self.decimal, self.thousands)
             if "_" in text and known.value == known.value:
                 known = Cell(TEXT)
             if len(self._known) < _REMEMBERED:

@@ -125,11 +125,19 @@ _SIGN = re.compile(r"(<=|=<|>=|=>|<|>|≤|≥|&lt;|&gt;|less than|greater than)\
 _BELOW_SIGNS = ("<", "<=", "=<", "≤", "&lt;", "less than")
 _NUMBER = re.compile(r"[+-]?(\d+\.?\d*|\.\d+)(e[+-]?\d+)?")
 _POWER = re.compile(r"\s*[x\u00d7*\u00b7]\s*10\s*\^?\s*\(?([+-]?\d+)\)?")
-_SPACED = re.compile(r"(?<=\d)[\s'\u2019](?=\d{3}(\D|$))")
+#: What groups digits beside point and comma, by the sign that is allowed to.
+_SPACES = {
+    sign: re.compile(rf"(?<=\d)[{signs}](?=\d{{3}}(\D|$))")
+    for sign, signs in ((None, r"\s'\u2019"), (" ", r"\s"), ("'", r"'\u2019"))
+}
 
 
-def parse_cell(text: str, decimal: str = ".") -> Cell:
-    """Read one cell. ``decimal`` is the file's decimal sign; the other sign then marks thousands."""
+def parse_cell(text: str, decimal: str = ".", thousands: str | None = None) -> Cell:
+    """Read one cell. ``decimal`` is the file's decimal sign.
+
+    ``thousands`` is the sign that groups digits, empty for none; None: the other of point and comma, a space or an
+    apostrophe, with a doubt where it could be the decimal sign as well.
+    """
     plain = unicodedata.normalize("NFKC", text).strip().translate(_DASHES)
     if not plain:
         return Cell(MISSING)
@@ -150,7 +158,7 @@ def parse_cell(text: str, decimal: str = ".") -> Cell:
     if sign:
         qualifier = 1 if sign.group(1) in _BELOW_SIGNS else 2
         folded = folded[sign.end() :]
-    number, rest = _number(folded, decimal)
+    number, rest = _number(folded, decimal, thousands)
     if number is None:
         return Cell(TEXT)
     value, doubt = number
@@ -162,9 +170,9 @@ def parse_cell(text: str, decimal: str = ".") -> Cell:
     return Cell(NUMBER, value, qualifier, unit, doubt)
 
 
-def _number(text: str, decimal: str) -> tuple[tuple[float, str | None] | None, str]:
+def _number(text: str, decimal: str, allowed: str | None) -> tuple[tuple[float, str | None] | None, str]:
     """The number at the start of a text, with a doubt if it has one, and what follows it."""
-    text = _SPACED.sub("", text)
+    text = _SPACES[allowed].sub("", text) if allowed in _SPACES else text
     body = re.match(r"[+-]?\s?[\d.,]*\d[.,]?", text)
     if body is None:
         return None, text
@@ -180,10 +188,12 @@ def _number(text: str, decimal: str) -> tuple[tuple[float, str | None] | None, s
     thousands = "," if decimal == "." else "."
     doubt = None
     if thousands in digits:
+        if allowed not in (None, thousands):
+            return None, text
         grouped = re.fullmatch(rf"[+-]?\d{{1,3}}(\{thousands}\d{{3}})+(\{decimal}\d*)?", digits)
         if not grouped or digits.lstrip("+-").startswith("0"):
             return None, text
-        if digits.count(thousands) == 1 and decimal not in digits:
+        if allowed is None and digits.count(thousands) == 1 and decimal not in digits:
             doubt = "thousands"
         digits = digits.replace(thousands, "")
     digits = digits.replace(decimal, ".")

@@ -7,7 +7,8 @@ from dataclasses import dataclass, field
 
 from registry.intake.cells import BELOW, MISSING, NUMBER, parse_cell
 from registry.intake.codes import CodeColumn, is_code_heading
-from registry.intake.methods import digestion_in, speaks_of_method
+from registry.intake.columns import ANALYTE, LABELS, LOWER, METHOD, UNIT, UPPER, AnalyteColumn, take
+from registry.intake.methods import speaks_of_method
 from registry.intake.names import Heading, read_heading
 from registry.intake.units import canonical_unit, foreign_unit, split_unit
 
@@ -31,30 +32,8 @@ _FILLER = re.compile(r"(?i)unnamed:? ?\d+(_level_\d+)?")
 QUALIFIER_WORD = re.compile(r"(?i)(qualifiers?|qual|flags?|sign|censor(ed)?|q|lt|(lod|dl)[ _]flag)")
 #: No name of an analyte begins so.
 _NO_NAME = frozenset("0123456789<>-.")
-UNIT, METHOD, LOWER, UPPER, ANALYTE, LABELS = (
-    "units",
-    "methods",
-    "detection limits",
-    "upper limits",
-    "analytes",
-    "labels",
-)
 #: What stands beside the analytes of a row and names the row.
 _ROW_LABELS = {METHOD: _METHOD_LABEL, UNIT: _UNIT_LABEL, LOWER: _LOWER_LIMIT, UPPER: _UPPER_LIMIT}
-
-
-@dataclass
-class AnalyteColumn:
-    """One analyte column as its headings say it; iron and missing units are settled later."""
-
-    position: int
-    header: str
-    heading: Heading
-    unit: str | None = None
-    method: str | None = None
-    lower: float | None = None
-    upper: float | None = None
-    foreign_unit: str | None = None
 
 
 @dataclass
@@ -68,6 +47,8 @@ class WideLayout:
     labels: list[str]
     code: CodeColumn | None = None
     titles: list[str] = field(default_factory=list)
+    #: unknown analytes of a long table: no columns, though a recipe could make them some
+    unread: list[str] = field(default_factory=list)
 
     @property
     def shape(self) -> tuple[str, ...]:
@@ -175,9 +156,14 @@ def _number(text: str) -> float | None:
     return cell.value if cell.state == NUMBER and not cell.qualifier else None
 
 
-def find_wide_layout(rows: list[list[str]]) -> WideLayout | None:
-    """Understand the headings of a wide table from its first rows; None where no row names an analyte."""
+def find_wide_layout(rows: list[list[str]], told: tuple[int, dict[int, Heading]] | None = None) -> WideLayout | None:
+    """Understand the headings of a wide table from its first rows; None where no row names an analyte.
+
+    ``told``: the row of headings and its columns of analytes, where somebody says them and none names itself.
+    """
     index, analytes = find_header_row(rows)
+    if index < 0 and told is not None:
+        index, analytes = told
     if index < 0:
         return None
     roles = {index: ANALYTE}
@@ -245,7 +231,7 @@ def _assemble(rows: list[list[str]], roles: dict[int, str], first_row: int) -> W
             if column is None or roles[index] not in (LOWER, UPPER):
                 pieces[position].append(re.sub(r"\s+", " ", text))
             if column is not None:
-                _take(column, roles[index], text)
+                take(column, roles[index], text)
     labels = _made_unique([" ".join(dict.fromkeys(texts)) for texts in pieces])
     for position, column in columns.items():
         column.header = labels[position]
@@ -282,33 +268,3 @@ def _spread(row: list[str], columns: dict[int, AnalyteColumn]) -> list[str]:
         last = _clean(row[position]) or last
         spread[position] = last
     return spread
-
-
-def _take(column: AnalyteColumn, role: str, text: str) -> None:
-    """Let one heading cell add what it says to its column."""
-    if role in (LOWER, UPPER):
-        cell = parse_cell(text, "." if "," not in text else ",")
-        if cell.state == NUMBER and cell.value > 0:
-            if role == LOWER:
-                column.lower = cell.value
-            else:
-                column.upper = cell.value
-        return
-    unit = canonical_unit(text)
-    heading = read_heading(text)
-    if role == UNIT:
-        found = unit or split_unit(text)[1]
-        if found:
-            column.unit = column.unit or found
-        elif foreign_unit(text):
-            column.foreign_unit = text
-    elif role in (METHOD, LABELS):
-        said = heading.method if heading.analyte else text
-        if unit is None and said:
-            said = re.sub(r"\.\d{1,2}$", "", said)  # "CODE.12": made unique by a program
-            column.method = said if column.method is None or digestion_in(column.method) is None else column.method
-        column.unit = column.unit or heading.unit
-    elif heading.analyte and heading.unit is None:
-        bracket = re.search(r"[(\[]([^()\[\]]+)[)\]]\s*$", text)
-        if bracket and foreign_unit(bracket.group(1)):
-            column.foreign_unit = bracket.group(1)

@@ -9,9 +9,11 @@ from functools import lru_cache
 
 from registry.intake.cells import NO_QUALIFIER, QUALIFIER_CODES
 from registry.intake.codes import heading_score
+from registry.intake.columns import AnalyteColumn
+from registry.intake.corrections import place_of
 from registry.intake.findings import Findings
 from registry.intake.gathering import GatheredRows
-from registry.intake.layout import SEARCH_ROWS, AnalyteColumn
+from registry.intake.layout import SEARCH_ROWS
 from registry.intake.names import Heading, read_heading
 from registry.intake.sources import Source
 from registry.intake.units import canonical_unit, foreign_unit
@@ -44,10 +46,11 @@ class LongLayout:
 
 @dataclass
 class Gathered:
-    """A long table turned wide: its ``rows``, and what its analyte columns are."""
+    """A long table turned wide: its ``rows``, what its analyte columns are, and names that are no known analytes."""
 
     rows: GatheredRows
     columns: list[AnalyteColumn] = field(default_factory=list)
+    unread: list[str] = field(default_factory=list)
 
     def place_of_cells(self) -> Callable[[int | None, str | None], tuple[int | None, str | None]]:
         """A function that turns (first line of the row, column) into the line on which that very result stands."""
@@ -65,8 +68,11 @@ def _folded(text: str) -> str:
     return re.sub(r"[\s_\-]+", " ", text.strip().strip("\ufeff").casefold())
 
 
-def find_long_layout(rows: list[list[str]]) -> LongLayout | None:
-    """The headings of a long table within the first rows: a sample code, an analyte and a value column."""
+def find_long_layout(rows: list[list[str]], sample_header: str | None = None) -> LongLayout | None:
+    """The headings of a long table within the first rows: a sample code, an analyte and a value column.
+
+    ``sample_header`` names the column of the sample codes, where somebody says it.
+    """
     for index, row in enumerate(rows[:SEARCH_ROWS]):
         told = [_role(cell) if cell and not cell[0].isdigit() else None for cell in row]
         if "analyte" not in told or "value" not in told:
@@ -75,7 +81,11 @@ def find_long_layout(rows: list[list[str]]) -> LongLayout | None:
         scores = [0.0 if role else heading_score(cell) for role, cell in zip(told, row, strict=True)]
         if max(scores) <= 0:
             continue
-        roles["sample"] = scores.index(max(scores))
+        said = None if sample_header is None else place_of(sample_header, [cell.strip() for cell in row])
+        if said in (roles["analyte"], roles["value"]):
+            said = None
+        roles = {role: place for role, place in roles.items() if place != said}
+        roles["sample"] = scores.index(max(scores)) if said is None else said
         bracket = re.search(r"[(\[]([^()\[\]]*)[)\]]", row[roles["value"]])
         return LongLayout(
             index, roles, [cell.strip() for cell in row], canonical_unit(bracket.group(1)) if bracket else None
@@ -90,8 +100,11 @@ def _role(cell: str) -> str | None:
     return next((role for role, pattern in _COMPILED.items() if bare and pattern.fullmatch(bare)), None)
 
 
-def gather(source: Source, layout: LongLayout, findings: Findings) -> Gathered:
-    """Walk the lines once; a second result of one analyte, unit and method for a code opens a second row of it."""
+def gather(source: Source, layout: LongLayout, findings: Findings, named: Callable[[str], bool]) -> Gathered:
+    """Walk the lines once; a second result of one analyte, unit and method for a code opens a second row of it.
+
+    ``named`` says of a name (analyte, unit, method) that is not known whether the user makes a column of it.
+    """
     gathered = Gathered(GatheredRows(source.on_disk))
     at = layout.roles
     columns: dict[tuple[str, ...], int | None] = {}
@@ -120,7 +133,7 @@ def gather(source: Source, layout: LongLayout, findings: Findings) -> Gathered:
                     )  # fmt: skip
                 continue
             if key not in columns:
-                columns[key] = _new_column(dict(zip(keys, key, strict=True)), layout, line, gathered, findings)
+                columns[key] = _new_column(dict(zip(keys, key, strict=True)), layout, line, gathered, named, findings)
             column = columns[key]
             if column is None:
                 continue
@@ -146,21 +159,29 @@ def _joined(sign: str, text: str, line: int, heading: str, findings: Findings) -
 
 
 def _new_column(
-    key: dict[str, str], layout: LongLayout, line: int, gathered: Gathered, findings: Findings
+    key: dict[str, str],
+    layout: LongLayout,
+    line: int,
+    gathered: Gathered,
+    named: Callable[[str], bool],
+    findings: Findings,
 ) -> int | None:
     heading = read_heading(key["analyte"])
-    if heading.analyte is None:
-        if key["analyte"]:
-            findings.warn(
-                "the analyte is not known; its results are not read", row=line,
-                column=layout.labels[layout.roles["analyte"]], found=key["analyte"],
-                expected="an oxide or element, or a total", remedy="correct the name, or leave it if it is not needed",
-            )  # fmt: skip
-        return None
-    method = " ".join(filter(None, (key.get("method"), key.get("digestion"), heading.method))) or None
+    said = heading.method if heading.analyte is not None else None
+    method = " ".join(filter(None, (key.get("method"), key.get("digestion"), said))) or None
     unit_text = key.get("unit", "")
     unit = canonical_unit(unit_text) if unit_text else heading.unit or layout.value_unit
     name = key["analyte"] + (f" ({unit_text})" if unit_text else "") + (f" {method}" if method else "")
+    if heading.analyte is None and not named(name):
+        if key["analyte"] and name not in gathered.unread:
+            gathered.unread.append(name)
+            findings.warn(
+                "the analyte is not known; its results are not read", row=line,
+                column=layout.labels[layout.roles["analyte"]], found=name,
+                expected="an oxide or element, or a total",
+                remedy="correct the name, say with --column what it is, or leave it if it is not needed",
+            )  # fmt: skip
+        return None
     taken = {column.header for column in gathered.columns}
     header, number = name, 1
     while header in taken:

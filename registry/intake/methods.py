@@ -5,6 +5,8 @@ from __future__ import annotations
 import re
 from functools import lru_cache
 
+from registry.intake.units import foreign_unit, spelt_like_a_unit
+
 #: In order: the first that matches decides. Names are those of ``petrology.digestion.DIGESTIONS``; common practice.
 _RULES = (
     ("portable_xrf", r"\bp[- ]?xrf\b|\bfp[- ]?xrf\b|portable|hand[- ]?held"),
@@ -27,6 +29,13 @@ _RULES = (
 _COMPILED = tuple((name, re.compile(pattern)) for name, pattern in _RULES)
 _SPOKEN = re.compile(r"(?i)\b(icp|aas?|ms|oes|aes|xrf|naa|inaa|grav\w*|titr\w*|ise|fus\w*|fa|acid|digest\w*)\b")
 
+#: Words that are said of a result beside its unit. Common practice, no source.
+_REMARK = re.compile(
+    r"(?i)tot(al)?|calc(ulated|\.)?|recalc(ulated)?|norm(ali[sz]ed)?|anhydrous|dry|wet|raw|re-?run|rep(eat|licate)?|rpt"
+    r"|dup(licate)?|check|corr(ected)?|final|best|majors?|traces?|average|avg|mean|ignited|oxides?|lab|labs|reported"
+    r"|method|by|as|whole|rock|of|low|high|ore|grade|over-?range|[a-z]"
+)
+
 
 @lru_cache(maxsize=1024)
 def digestion_in(text: str) -> str | None:
@@ -41,3 +50,18 @@ def digestion_in(text: str) -> str | None:
 def speaks_of_method(text: str) -> bool:
     """Whether a text names a digestion or an instrument of the trade."""
     return digestion_in(text) is not None or bool(_SPOKEN.search(text.replace("_", " ")))
+
+
+def may_be_method(text: str) -> bool:
+    """Whether a word in the place of a unit, itself none that is known, can be a method or a remark on the result.
+
+    It can with a word of the trade (``XRF``, ``fusion``), a digit (``ME-xx81``, ``30g``), capitals alone (a code) or a
+    usual remark (``total``, ``repeat``). What is spelt like a unit (``kg/t``, ``ppmv``) and any other word cannot: a
+    unit that is not known must not pass for a method, for the numbers would be taken in a unit by custom.
+    """
+    if foreign_unit(text) or spelt_like_a_unit(text):
+        return False
+    if speaks_of_method(text) or any(map(str.isdigit, text)):
+        return True
+    words = [word for word in re.split(r"[\s_/,;.\-]+", text) if word]
+    return all((word.isupper() and word.isascii()) or _REMARK.fullmatch(word) for word in words)

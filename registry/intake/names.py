@@ -101,6 +101,9 @@ def read_heading(text: str) -> Heading:
     symbol = analyte_symbol(rest)
     if symbol is not None:
         return Heading(symbol, unit)
+    bracket = re.fullmatch(r"(\w*\d\w*)\s*[(\[]\s*(\w[^()\[\]]*)[)\]]", rest)
+    if bracket and (symbol := analyte_symbol(bracket[1])) is not None:
+        return Heading(symbol, unit, bracket[2].strip())  # an oxide, in any case
     found = _within(rest, unit is not None)
     if found is None:
         return Heading(unit=unit, method=rest or None)
@@ -123,12 +126,18 @@ def _within(text: str, with_unit: bool) -> tuple[str, str | None] | None:
             continue
         in_lower_case = with_unit and rest and all(_METHOD_WORD.fullmatch(word) for word in rest)
         if symbol is not None and (in_lower_case or _written_as(words[:length], symbol, rest)) and rest != ["situ"]:
-            return symbol, " ".join(rest) or None
+            return symbol, _bare(" ".join(rest)) or None
     if len(words) <= 4 and len(words) > 1:
         symbol = analyte_symbol(words[-1])
         if symbol is not None and words[-1] == symbol and (len(symbol) > 1 or "_" in text) and _method_like(words[:-1]):
             return symbol, " ".join(words[:-1])
     return None
+
+
+def _bare(text: str) -> str:
+    """A text without the brackets around all of it."""
+    inside = re.fullmatch(r"[(\[]([^()\[\]]*)[)\]]", text)
+    return inside[1].strip() if inside else text
 
 
 def _written_as(words: list[str], symbol: str, rest: list[str]) -> bool:

@@ -167,8 +167,9 @@ def _say_encoding(reading: Reading, encoding: Encoding, separator: str) -> None:
 
 
 def separator_of(data: bytes | Path, encoding: Encoding, options: ReadingOptions, quoted: bool | None = None) -> str:
-    """What parts the cells of a text file: the recipe's word, else told from the headings."""
-    return (options.recipe and options.recipe.separator) or tell_separator(data, encoding, _known_headings, quoted)
+    """What parts the cells of a text file: the user's word, then the recipe's, else told from the headings."""
+    given = options.separator or (options.recipe and options.recipe.separator)
+    return given or tell_separator(data, encoding, _known_headings, quoted)
 
 
 def _read_table(

@@ -10,7 +10,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from registry.errors import Problem
-from registry.intake.recipes import Recipe
+from registry.intake.recipes import ColumnCorrection, Recipe
 
 KINDS = ("areas", "sites", "surveys", "intervals", "intrusions", "samples", "results", "reference-materials")
 
@@ -22,9 +22,11 @@ class ReadingOptions:
     ``recipe`` corrects what was understood; ``sheet`` names one sheet of a workbook or one member of an archive;
     ``negative_means_below`` reads ``-x`` as below the limit x (only on the user's word);
     ``positive_dips`` says of a file of positive dips only that they point ``down`` (they are turned) or
-    ``up``; ``unit`` and ``digestion`` are those of every result column that states none; ``listed`` is how many equal
-    faults are listed one by one;
-    ``unpacked_limit_bytes`` bounds what an archive may unpack to.
+    ``up``; ``unit`` and ``digestion`` are those of every result column that states none; ``columns`` are corrections
+    of single columns; ``decimal`` and ``thousands`` the signs in numbers of results (``thousands`` empty: none is
+    allowed); ``separator`` parts the cells of a text. All these go before what the recipe says.
+    ``listed`` is how many equal faults are listed one by one; ``unpacked_limit_bytes`` bounds what an archive may
+    unpack to.
     """
 
     recipe: Recipe | None = None
@@ -33,6 +35,10 @@ class ReadingOptions:
     positive_dips: str | None = None
     unit: str | None = None
     digestion: str | None = None
+    columns: tuple[ColumnCorrection, ...] = ()
+    decimal: str | None = None
+    thousands: str | None = None
+    separator: str | None = None
     listed: int = 20
     unpacked_limit_bytes: int = 2_000_000_000
 

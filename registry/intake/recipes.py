@@ -26,11 +26,21 @@ class ColumnChoice:
 
 
 @dataclass(frozen=True)
+class ColumnCorrection:
+    """What one column is. ``column``: its heading, or ``#7`` for the seventh; ``choice`` None: the sample codes."""
+
+    column: str
+    choice: ColumnChoice | None
+
+
+@dataclass(frozen=True)
 class Recipe:
     """How a results file of one shape is read.
 
-    ``shape`` is the tuple of the file's column headings; ``columns`` maps a heading to the choice for it;
-    ``sample_header`` names the column of the sample codes.
+    ``shape`` is the tuple of the file's column headings; ``columns`` maps a heading (of a column without one ``#``
+    and its number) to the choice for it; ``sample_header`` names the column of the sample codes. ``decimal`` and
+    ``thousands`` are signs (``thousands`` empty: none is allowed); ``unit`` and ``digestion`` are those of columns
+    that state none.
     """
 
     name: str = ""
@@ -40,6 +50,9 @@ class Recipe:
     separator: str | None = None
     decimal: str | None = None
     unit: str | None = None
+    digestion: str | None = None
+    thousands: str | None = None
+    negative_means_below: bool = False
 
     def fits(self, shape: tuple[str, ...]) -> bool:
         """Whether a file with these headings has the shape that this recipe was made for."""

@@ -10,7 +10,8 @@ import numpy as np
 from registry.intake.arrangement import arrange
 from registry.intake.cells import decimal_sign
 from registry.intake.checks import check_units, check_values
-from registry.intake.codes import LONGEST_CODE, choose_code_column, tidy_codes, unfit_codes
+from registry.intake.codes import LONGEST_CODE, CodeColumn, choose_code_column, tidy_codes, unfit_codes
+from registry.intake.corrections import column_keys, corrected, take_in
 from registry.intake.findings import Findings
 from registry.intake.layout import QUALIFIER_WORD, WideLayout
 from registry.intake.readings import ReadingOptions, ResultColumn, ResultTable
@@ -39,7 +40,7 @@ def read_results(
     source: Source, options: ReadingOptions, findings: Findings, understood: list[str], row_bound: int, underscores: int
 ) -> Understanding:
     """Read a wide results table. ``row_bound``: at least the number of rows; ``underscores`` of the whole file."""
-    arranged = arrange(source, row_bound, underscores > 0, findings, understood)
+    arranged = arrange(source, row_bound, underscores > 0, findings, understood, options.recipe, options.columns)
     if arranged is None:
         findings.add(
             "no row of headings with analytes was found",
@@ -49,33 +50,40 @@ def read_results(
         return Understanding(None, None)
     given, source, layout = source, arranged.source, arranged.layout
     preview, preview_lines = source.preview()
-    recipe = options.recipe
+    recipe = corrected(options.recipe or Recipe(), options.columns, layout, findings)
+    take_in(layout, recipe, findings)
     body_rows = preview[layout.first_row :]
-    taken = {column.position for column in layout.columns}
-    wanted = recipe.sample_header if recipe else None
-    layout.code = layout.code or choose_code_column(layout.labels, body_rows, taken, wanted)
+    layout.code = layout.code or _code_column(layout, body_rows, recipe)
     if layout.code is None:
         findings.add(
             "no column of sample codes was found",
             expected="a column headed sample code, Sample ID, Field ID or Lab ID",
-            remedy="give the column of sample codes a heading",
+            remedy="give the column of sample codes a heading, or name it with --column",
         )  # fmt: skip
         return Understanding(None, None)
+    layout.columns = [column for column in layout.columns if column.position != layout.code.position]
+    taken = {column.position for column in layout.columns}
     _say_layout(layout, preview_lines.tolist(), understood)
     titles = read_titles(layout.titles)
-    stated = canonical_unit(options.unit) if options.unit else (recipe and recipe.unit) or titles.unit
+    stated = options.unit or recipe.unit or titles.unit
+    digested = options.digestion or recipe.digestion
     if titles.unit:
         understood.append(f"the lines above the table state {titles.unit} for columns without a unit of their own")
     if titles.digestion:
         understood.append(f"the lines above the table state the method for all columns that name none: {titles.method}")
     columns = settle_columns(
-        layout.columns, findings, understood, stated_unit=stated or None,
-        stated_digestion=titles.digestion or options.digestion, stated_method=titles.method, recipe=recipe,
+        layout.columns, findings, understood, stated_unit=canonical_unit(stated) if stated else None,
+        stated_digestion=titles.digestion or digested, stated_method=titles.method, recipe=recipe,
     )  # fmt: skip
     if not columns:
-        findings.add("every analyte column is ignored", remedy="keep at least one in the reading recipe")
+        findings.add("every analyte column is ignored", remedy="keep at least one, see --column")
         return Understanding(None, None)
-    decimal = _settle_decimal(body_rows, columns, recipe, findings, understood)
+    given_sign = options.decimal or recipe.decimal
+    thousands = recipe.thousands if options.thousands is None else options.thousands
+    decimal, sure = _settle_decimal(body_rows, columns, given_sign, thousands, findings, understood)
+    below = options.negative_means_below or recipe.negative_means_below
+    if below:
+        understood.append("negative numbers mean below the limit of that size")
     others = [
         position for position in range(layout.width) if position not in taken and position != layout.code.position
     ]
@@ -86,7 +94,7 @@ def read_results(
     reader = WideReader(
         columns, decimal, findings, code_position=layout.code.position, control_position=control,
         qualifier_positions=qualifier_positions,
-        width=layout.width, negative_means_below=options.negative_means_below,
+        width=layout.width, negative_means_below=below, thousands=thousands,
     )  # fmt: skip
     in_headings = sum(cell.count("_") for row in preview[: layout.first_row] for cell in row)
     watch = arranged.underscores and (source is not given or underscores > in_headings)
@@ -96,16 +104,34 @@ def read_results(
     columns, body = judge_texts(columns, body, decimal, findings)
     columns, body = _drop_empty(columns, body, understood)
     used = {column.position for column in columns} | {layout.code.position} | set(qualifier_positions)
-    ignored = [layout.labels[place] for place in range(layout.width) if place not in used and layout.labels[place]]
+    keys = column_keys(layout.labels)
+    holds = {place for row in body_rows for place, cell in enumerate(row[: len(keys)]) if cell and not cell.isspace()}
+    ignored = [key for place, key in enumerate(keys) if place not in used and (layout.labels[place] or place in holds)]
+    ignored += layout.unread
     _say_ignored(layout, used, control, findings, understood)
     table = _table(layout, columns, body, titles, tuple(ignored), findings, understood)
+    others_said = {key: recipe.columns[key] for key in keys if key in recipe.columns}
     made = Recipe(
         shape=layout.shape,
-        columns={c.header: ColumnChoice(c.analyte, c.unit, c.method, c.digestion) for c in columns},
-        sample_header=layout.code.header,
-        decimal=decimal,
+        columns=others_said | {c.header: ColumnChoice(c.analyte, c.unit, c.method, c.digestion) for c in columns},
+        sample_header=keys[layout.code.position],
+        separator=options.separator or recipe.separator,
+        decimal=decimal if sure else None,
+        unit=options.unit or recipe.unit,
+        digestion=digested,
+        thousands=thousands,
+        negative_means_below=below,
     )
     return Understanding(table, made)
+
+
+def _code_column(layout: WideLayout, rows: list[list[str]], recipe: Recipe) -> CodeColumn | None:
+    """The column of sample codes: the recipe's word, else told from headings and cells."""
+    keys = column_keys(layout.labels)
+    if recipe.sample_header in keys:
+        place = keys.index(recipe.sample_header)
+        return CodeColumn(place, layout.labels[place])
+    return choose_code_column(layout.labels, rows, {column.position for column in layout.columns})
 
 
 def _say_layout(layout: WideLayout, lines: list[int], understood: list[str]) -> None:
@@ -126,12 +152,17 @@ def _say_layout(layout: WideLayout, lines: list[int], understood: list[str]) -> 
 def _settle_decimal(
     rows: list[list[str]],
     columns: list[ResultColumn],
-    recipe: Recipe | None,
+    given: str | None,
+    thousands: str | None,
     findings: Findings,
     understood: list[str],
-) -> str:
-    if recipe and recipe.decimal in (".", ","):
-        return recipe.decimal
+) -> tuple[str, bool]:
+    """The decimal sign, and whether somebody said it or the numbers settle it."""
+    if given not in (".", ",") and thousands in (".", ","):
+        given = "," if thousands == "." else "."
+    if given in (".", ","):
+        understood.append(f"decimal sign: {'comma' if given == ',' else 'point'}, as was said")
+        return given, True
     cells = {row[column.position] for row in rows for column in columns if column.position < len(row)}
     decimal, sure = decimal_sign(sorted(cells)[:: len(cells) // 2000 + 1])
     understood.append(f"decimal sign: {'comma' if decimal == ',' else 'point'}")
@@ -139,9 +170,9 @@ def _settle_decimal(
         findings.warn(
             "the decimal sign cannot be told from the numbers",
             expected="a number such as 0.5 or 0,5",
-            remedy="a comma before three digits is read as a mark of thousands; give the decimal sign in a recipe",
+            remedy="a comma before three digits is read as a mark of thousands; say the decimal sign with --decimal",
         )
-    return decimal
+    return decimal, sure
 
 
 def _qualifier_columns(
@@ -196,7 +227,8 @@ def _say_ignored(
         if unit is not None and place not in analytes and re.search(r"[A-Z]", rest) and len(rest) < 20:
             findings.warn(
                 "the heading names no analyte that the register knows; the column is ignored", column=label,
-                found=rest, expected="an oxide or element, or a total", remedy="name the analyte in a reading recipe",
+                found=rest, expected="an oxide or element, or a total",
+                remedy="if it is one, name the analyte with --column",
             )  # fmt: skip
         plain.append(f"'{label}'")
     if plain:

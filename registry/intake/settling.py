@@ -4,13 +4,13 @@ from __future__ import annotations
 
 from dataclasses import replace
 
+from registry.intake.columns import AnalyteColumn
 from registry.intake.findings import Findings
-from registry.intake.layout import AnalyteColumn
 from registry.intake.methods import digestion_in
 from registry.intake.names import analyte_symbol
 from registry.intake.readings import ResultColumn
 from registry.intake.recipes import Recipe
-from registry.intake.units import CANONICAL_UNITS, canonical_unit
+from registry.intake.units import CANONICAL_UNITS, canonical_unit, foreign_unit
 from registry.petrology.analytes import ANALYTES, ELEMENT_SYMBOLS, OXIDE_OF_ELEMENT_COLUMN, OXIDE_SYMBOLS
 from registry.petrology.digestion import DIGESTIONS
 
@@ -30,13 +30,13 @@ def settle_columns(
     stated_unit: str | None,
     stated_digestion: str | None,
     stated_method: str | None,
-    recipe: Recipe | None,
+    recipe: Recipe,
 ) -> list[ResultColumn]:
     """Make result columns of the headings. Faults go to ``findings``; columns ignored by the recipe are left out.
 
     ``stated_*`` is what the title lines (or the user) say once for all columns that say nothing themselves.
     """
-    choices = recipe.columns if recipe else {}
+    choices = recipe.columns
     columns = []
     for heading in found:
         choice = choices.get(heading.header)
@@ -60,7 +60,8 @@ def settle_columns(
         )
         if choice is not None:
             column = _corrected(column, choice.analyte, choice.unit, choice.method, choice.digestion, findings)
-        columns.append(column)
+        if column.analyte:
+            columns.append(column)
     fixed = {column.header for column in columns if (wish := choices.get(column.header)) and wish.analyte}
     settle_iron(columns, findings, fixed)
     by_header = {heading.header: heading for heading in found}
@@ -112,6 +113,8 @@ def _corrected(
             )  # fmt: skip
         else:
             column = replace(column, digestion=digestion)
+    elif method is not None:
+        column = replace(column, digestion=digestion_in(method) or column.digestion)
     return replace(column, method=method) if method is not None else column
 
 
@@ -134,17 +137,19 @@ def settle_iron(columns: list[ResultColumn], findings: Findings, fixed: set[str]
         findings.warn(
             f"{plain} stands alone and is taken as total iron",
             column=column.header,
-            remedy=f"if it is {'ferric' if plain == 'Fe2O3' else 'ferrous'} iron only, say so in a reading recipe",
+            remedy=f"if it is {'ferric' if plain == 'Fe2O3' else 'ferrous'} iron only, say so with --column",
         )
         column.analyte = total
 
 
 def _settle_unit(column: ResultColumn, foreign: str | None, stated: str | None, findings: Findings) -> None:
     if foreign is not None:
+        known = foreign_unit(foreign)
         findings.add(
-            "the unit is not one of a mass fraction", column=column.header, found=foreign,
-            expected=" ".join(CANONICAL_UNITS),
-            remedy="ask the laboratory for mass fractions, or ignore the column in a reading recipe",
+            "the unit is not one of a mass fraction" if known else "the unit is not known",
+            column=column.header, found=foreign, expected=" ".join(CANONICAL_UNITS),
+            remedy="ask the laboratory for mass fractions, or leave the column out with --column" if known
+            else "write the unit into the heading, or say it with --column; a method may stand beside it",
         )  # fmt: skip
         return
     if stated is not None:
@@ -158,7 +163,7 @@ def _settle_unit(column: ResultColumn, foreign: str | None, stated: str | None, 
         findings.add(
             "no unit is stated and custom gives none for this analyte", column=column.header,
             expected=" ".join(CANONICAL_UNITS),
-            remedy="write the unit into the heading, as in 'Au (ppb)', or give it in a reading recipe",
+            remedy="write the unit into the heading, as in 'Au (ppb)', or say it with --column",
         )  # fmt: skip
         return
     findings.warn(
@@ -177,5 +182,5 @@ def _say_unknown_digestions(columns: list[ResultColumn], findings: Findings) -> 
     findings.warn(
         f"the digestion is not told for {len(unknown)} of {len(dissolved)} columns ({named})",
         expected="a method row or heading with words such as lithium borate fusion, XRF, four-acid, aqua regia",
-        remedy="state it in a method row or in a reading recipe; until then it counts as unknown",
+        remedy="state it in a method row, with --digestion or with --column; until then it counts as unknown",
     )

@@ -31,7 +31,7 @@ def judge_texts(
                 "texts stand where numbers are expected; they are not taken as results",
                 row=first_line, column=column.header,
                 found=f"{first_text.strip()} ({len(pairs)} texts, {numbers} numbers)", expected="numbers",
-                remedy="move the texts to a column of their own, or ignore the column in a recipe",
+                remedy="move the texts to a column of their own, or leave the column out with --column",
             )  # fmt: skip
             _take_control_words(body, pairs)
             if numbers == 0:

@@ -25,6 +25,13 @@ _FOREIGN = re.compile(
     r"|kg|g|lbs?|degc|°c|atom%|pg/l"
 )
 
+#: Spelt like the unit of a content, whatever it may mean.
+_LIKE_A_UNIT = re.compile(
+    r"pp[a-z]\w*|.*[%‰‱].*|(wt|mass|weight|vol|volume|mole?|atom)([ .-]*(pct|percent|parts|fraction))?"
+    r"|(parts|percent|percentage|grams?|ounces?|pounds?)\b.*"
+    r"|\D*/(t|kg|g|mg|ug|l|ml|tonne|tonnes|ton|tons|st|mt|lb|cm3|m3)"
+)
+
 
 def _squeezed(text: str) -> str:
     text = unicodedata.normalize("NFKC", text).casefold()
@@ -41,6 +48,12 @@ def foreign_unit(text: str) -> bool:
     """Whether the text is a unit, but none that a result can have here (mg/L, at%, counts)."""
     squeezed = _squeezed(text)
     return squeezed not in _CANONICAL and bool(_FOREIGN.fullmatch(squeezed))
+
+
+def spelt_like_a_unit(text: str) -> bool:
+    """Whether a text that is no known unit is spelt like one: ``ppmv``, ``kg/t``, ``mass parts``."""
+    plain = unicodedata.normalize("NFKC", text).casefold().strip()
+    return canonical_unit(text) is None and bool(_LIKE_A_UNIT.fullmatch(re.sub(r"\s*/\s*", "/", plain)))
 
 
 def split_unit(text: str) -> tuple[str, str | None]:

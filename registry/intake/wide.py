@@ -53,12 +53,13 @@ class WideReader:
         qualifier_positions: dict[int, int] | None = None,
         width: int,
         negative_means_below: bool = False,
+        thousands: str | None = None,
     ) -> None:
         self.columns, self.findings, self.decimal = columns, findings, decimal
         self.code_position, self.control_position = code_position, control_position
         self.qualifier_positions = qualifier_positions or {}
         self.negative_means_below, self.width = negative_means_below, width
-        self.block = BlockReader([column.position for column in columns], decimal)
+        self.block = BlockReader([column.position for column in columns], decimal, thousands)
         self.texts: dict[int, Texts] = {}
         self.passed_over: list[str] = []
 

@@ -1,0 +1,74 @@
+"""A column of analytes as its headings say it, and what each heading cell adds to it."""
+
+from __future__ import annotations
+
+import re
+from dataclasses import dataclass
+
+from registry.intake.cells import NUMBER, TEXT, parse_cell
+from registry.intake.methods import digestion_in, may_be_method
+from registry.intake.names import Heading, read_heading
+from registry.intake.units import canonical_unit, spelt_like_a_unit, split_unit
+
+#: What a heading row holds.
+UNIT, METHOD, LOWER, UPPER, ANALYTE, LABELS = (
+    "units",
+    "methods",
+    "detection limits",
+    "upper limits",
+    "analytes",
+    "labels",
+)
+
+
+@dataclass
+class AnalyteColumn:
+    """One analyte column as its headings say it; iron and missing units are settled later."""
+
+    position: int
+    header: str
+    heading: Heading
+    unit: str | None = None
+    method: str | None = None
+    lower: float | None = None
+    upper: float | None = None
+    foreign_unit: str | None = None
+
+
+def take(column: AnalyteColumn, role: str, text: str) -> None:
+    """Let one heading cell add what it says to its column."""
+    if role in (LOWER, UPPER):
+        cell = parse_cell(text, "." if "," not in text else ",")
+        if cell.state == NUMBER and cell.value > 0:
+            if role == LOWER:
+                column.lower = cell.value
+            else:
+                column.upper = cell.value
+        return
+    unit = canonical_unit(text)
+    heading = read_heading(text)
+    if role == UNIT:
+        found = unit or split_unit(text)[1]
+        if found:
+            column.unit = column.unit or found
+        elif parse_cell(text).state == TEXT and not may_be_method(text):
+            column.foreign_unit = text
+    elif role in (METHOD, LABELS):
+        said = heading.method if heading.analyte else text
+        if unit is None and said:
+            said = re.sub(r"\.\d{1,2}$", "", said)  # "CODE.12": made unique by a program
+            column.method = said if column.method is None or digestion_in(column.method) is None else column.method
+        column.unit = column.unit or heading.unit
+    elif heading.analyte and heading.unit is None:
+        column.foreign_unit = _unknown_unit(text) or column.foreign_unit
+        if column.foreign_unit is not None:
+            column.method = None
+
+
+def _unknown_unit(heading: str) -> str | None:
+    """What stands in the place of a unit in an analyte's heading and is none: in brackets, or spelt like a unit."""
+    bracket = re.search(r"[(\[]([^()\[\]]+)[)\]]\s*$", heading)
+    if bracket:
+        return None if may_be_method(bracket.group(1)) else bracket.group(1).strip()
+    words = re.split(r"[\s_]+", heading.strip())
+    return words[-1] if len(words) > 1 and spelt_like_a_unit(words[-1]) else None
