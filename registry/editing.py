@@ -21,7 +21,7 @@ from registry.intake.findings import Findings
 from registry.intake.kinds import NUMBER, TRUTH, WORD, Field
 from registry.intake.master_checks import check_rows
 from registry.intake.readings import ReadingOptions
-from registry.recomputing import Consequence, consequence_of, refresh_in_background
+from registry.recomputing import Consequence, consequence_of
 from registry.store import edits, masters
 from registry.store.engine import Registry, writing
 
@@ -115,6 +115,8 @@ def _record(kind: str, code: str, row: Mapping[str, Any]) -> Record:
 def change(registry: Registry, kind: str, code: str, row_version: int, typed: Mapping[str, str]) -> Edited:
     """Store what was typed into the fields of a thing (those left out stay) and compute what it touches.
 
+    Where that is more than ``recomputing.AT_ONCE`` samples they are left stale, for the caller to refresh.
+
     Raises Refused with a sentence by field, ChangedMeanwhile where the row is no longer of ``row_version``, NotFound
     where the thing is gone; nothing is changed then.
     """
@@ -142,8 +144,6 @@ def change(registry: Registry, kind: str, code: str, row_version: int, typed: Ma
         told = consequence_of(connection, apply, CAUSE)
         words = [f"{name} {spelled(before.values[name])} -> {spelled(value)}" for name, value in changed.items()]
         auditing.note(connection, "edit", f"{kind} {code}", "; ".join(words))
-    if told.waiting:
-        refresh_in_background(registry, CAUSE)
     return Edited(tuple(words), tuple(remarks), told)
 
 

@@ -5,22 +5,18 @@ A small edit is computed with it; what an edit touches beyond ``AT_ONCE`` sample
 
 from __future__ import annotations
 
-import logging
-import threading
 from collections.abc import Callable
 from dataclasses import dataclass
 from typing import Any
 
-from registry.errors import PlutonbookError
 from registry.progress import Progress
-from registry.refresh import changes_since, drain, last_change, refresh_registry
+from registry.refresh import changes_since, drain, last_change
 from registry.store import stale
 from registry.store.engine import Registry, writing
 from registry.store.reading.changes import changes_by_kind, verdict_changes
 
 #: So many stale samples are computed before the commit of an edit; more would keep the one who asked waiting.
 AT_ONCE = 10_000
-_log = logging.getLogger(__name__)
 
 
 @dataclass(frozen=True)
@@ -86,29 +82,3 @@ def consequence_of(connection: Any, change: Callable[[Any], Any], cause: str) ->
         return Consequence((), waiting)
     drain(connection, cause)
     return Consequence(tuple(changes_by_kind(connection, before)), 0)
-
-
-def refresh_in_background(registry: Registry, cause: str) -> threading.Thread:
-    """Compute everything that is stale in a thread of its own; pages go on reading, other writers wait."""
-
-    def work() -> None:
-        try:
-            refresh_registry(registry, cause=cause)
-        except PlutonbookError as fault:
-            _log.warning("a refresh in the background was not done: %s", fault)
-
-    thread = threading.Thread(target=work, name="plutonbook-refresh", daemon=True)
-    thread.start()
-    return thread
-
-
-def dry_run(registry: Registry, change: Callable[[Any], Any], cause: str) -> Consequence:
-    """What ``change(connection)`` would do; everything is rolled back."""
-    told: list[Consequence] = []
-    try:
-        with writing(registry, what="a dry run") as connection:
-            told.append(consequence_of(connection, change, cause))
-            raise _Undo
-    except _Undo:
-        pass
-    return told[0]

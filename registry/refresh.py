@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Sequence
+from collections.abc import Callable, Sequence
 from typing import Any
 
 import numpy as np
@@ -88,14 +88,21 @@ def _ever_analysed(connection: Any, sample_ids: Sequence[int]) -> list[int]:
 
 
 def refresh_registry(
-    registry: Registry, everything: bool = False, cause: str = "refresh", progress: Progress | None = None
+    registry: Registry,
+    everything: bool = False,
+    cause: str = "refresh",
+    progress: Progress | None = None,
+    tell: Callable[[str], Any] | None = None,
 ) -> int:
-    """Recompute what is stale, or every sample; how many were done. Nothing stale: the registry is not even locked."""
+    """Recompute what is stale, or every sample; how many were done. Nothing stale: the registry is not even locked.
+
+    ``tell`` makes it wait for a busy registry and gets the sentence that says what holds it.
+    """
     with reading(registry) as connection:
         waiting = bool(stale.pending(connection, 1)) or stale_groups.any_pending(connection)
         if not everything and not waiting and not quality_rows.any_batch_named(connection):
             return 0
-    with writing(registry, what="a refresh") as connection:
+    with writing(registry, what="a refresh", tell=tell) as connection:
         if everything:
             stale.mark_all(connection)
             stale_groups.mark_all(connection)

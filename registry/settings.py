@@ -4,18 +4,19 @@ from __future__ import annotations
 
 import json
 import math
-from collections.abc import Mapping
+from collections.abc import Callable, Mapping
 from typing import Any
 
 from registry import auditing
 from registry.judging import CONVENTION_PREFIX, read_conventions
 from registry.petrology.catalogue.conventions import CONVENTION_GROUPS, CONVENTIONS
 from registry.petrology.catalogue.records import Convention
-from registry.recomputing import Consequence, consequence_of, dry_run, refresh_in_background
+from registry.progress import Progress
+from registry.recomputing import recomputed_after
 from registry.store import target_rows
-from registry.store.engine import Registry, writing
+from registry.store.engine import Registry
 
-__all__ = ["CONVENTIONS", "CONVENTION_GROUPS", "Convention", "change", "current", "foresee", "read_typed"]
+__all__ = ["CONVENTIONS", "CONVENTION_GROUPS", "Convention", "change", "current", "read_typed"]
 
 CAUSE = "settings changed"
 YES, NO = "yes", "no"
@@ -71,23 +72,24 @@ def _value(record: Convention, text: str, faults: dict[str, str]) -> Any:
     return value
 
 
-def _write(connection: Any, values: Mapping[str, Any]) -> None:
-    for name, value in values.items():
-        target_rows.write_setting(connection, CONVENTION_PREFIX + name, json.dumps(value))
+def change(
+    registry: Registry,
+    values: Mapping[str, Any],
+    dry_run: bool = False,
+    *,
+    progress: Progress | None = None,
+    tell: Callable[[str], Any] | None = None,
+) -> dict[str, Any]:
+    """Put these conventions in force and compute everything anew, in one transaction; what came of it.
 
+    ``dry_run`` tells what would come of it and keeps nothing. See ``recomputing.recomputed_after``.
+    """
 
-def foresee(registry: Registry, values: Mapping[str, Any]) -> Consequence:
-    """What these conventions would do to the verdicts; nothing is kept."""
-    return dry_run(registry, lambda connection: _write(connection, values), CAUSE)
-
-
-def change(registry: Registry, values: Mapping[str, Any]) -> Consequence:
-    """Put these conventions in force and compute everything anew: at once, or in the background where it is much."""
-    with writing(registry, what="a change of the settings") as connection:
+    def write(connection: Any) -> None:
         before = current(connection)
-        told = consequence_of(connection, lambda inside: _write(inside, values), CAUSE)
         for name, value in values.items():
+            target_rows.write_setting(connection, CONVENTION_PREFIX + name, json.dumps(value))
             auditing.note(connection, "setting", name, f"{before[name]} -> {value}")
-    if told.waiting:
-        refresh_in_background(registry, CAUSE)
-    return told
+
+    what = ("a trial of " if dry_run else "") + "changing the settings"
+    return recomputed_after(registry, write, what, CAUSE, dry_run, progress=progress, tell=tell)

@@ -79,8 +79,8 @@ def test_editing_absent_things_and_nothing_changed(edited: Registry) -> None:
 
 
 def test_settings_are_foreseen_and_changed_on_either_engine(edited: Registry) -> None:
-    told = settings.foresee(edited, {"pressure_gpa": 0.4})
-    assert (told.verdicts, told.waiting) == (0, 0)
+    told = settings.change(edited, {"pressure_gpa": 0.4}, dry_run=True)
+    assert (told["verdicts_changed"], told["kinds"]) == (0, [])
     with reading(edited) as connection:
         assert settings.current(connection)["pressure_gpa"] == 0.2
     settings.change(edited, {"pressure_gpa": 0.4, "norm_halogens": True, "iron_split": "fixed_ratio"})

@@ -4,6 +4,8 @@ from __future__ import annotations
 
 import json
 import os
+import subprocess
+import sys
 import threading
 import time
 from collections.abc import Callable, Iterator
@@ -14,11 +16,12 @@ import pytest
 
 from registry import import_jobs
 from registry.errors import NotFound, UsageError
-from registry.import_drafts import Draft, DraftFolder, safe_name, state_folder
-from registry.import_jobs import ImportJobs
+from registry.import_drafts import Draft, create_draft, draft_paths, safe_name
 from registry.importing import ImportOptions, import_files
 from registry.intake import ColumnChoice, Recipe, read_file
 from registry.intake_choices import describe_reading, use_words
+from registry.job_folder import JobFolder, state_folder
+from registry.jobs import Jobs
 from registry.reading_recipes import find_recipe, forget_recipe, list_recipes, proposed_names, save_recipe
 from registry.store.engine import Registry, reading, writing
 
@@ -30,19 +33,19 @@ def written(text: str) -> Callable[[Path], Any]:
 
 
 @pytest.fixture
-def jobs(founded_registry: Registry, tmp_path: Path) -> Iterator[ImportJobs]:
-    yield ImportJobs(founded_registry, DraftFolder(tmp_path / "drafts"))
+def jobs(founded_registry: Registry, tmp_path: Path) -> Iterator[Jobs]:
+    yield Jobs(founded_registry, JobFolder(tmp_path / "jobs"))
 
 
-def draft_of(jobs: ImportJobs, text: str = TEXT, name: str = "r.csv", **options: Any) -> Draft:
-    draft = jobs.folder.create([(name, written(text))])
+def draft_of(jobs: Jobs, text: str = TEXT, name: str = "r.csv", **options: Any) -> Draft:
+    draft = create_draft(jobs.folder, [(name, written(text))])
     draft.options = options
     return draft
 
 
-def ended(jobs: ImportJobs, draft: Draft, seconds: float = 60) -> Draft:
+def ended(jobs: Jobs, draft: Draft, seconds: float = 60) -> Draft:
     found = jobs.wait(draft.draft_id, seconds)
-    assert found is not None and not found.under_way
+    assert isinstance(found, Draft) and not found.under_way
     return found
 
 
@@ -51,48 +54,48 @@ def batches(registry: Registry) -> list[str]:
         return [row[0] for row in connection.exec_driver_sql("SELECT code FROM batch ORDER BY batch_id")]
 
 
-def test_job_looks_first_and_stores_then(jobs: ImportJobs) -> None:
+def test_job_looks_first_and_stores_then(jobs: Jobs) -> None:
     draft = draft_of(jobs, create_samples=True)
-    assert jobs.look(draft)
+    assert import_jobs.look(jobs, draft)
     looked = ended(jobs, draft)
     assert (looked.state, batches(jobs.registry)) == ("read", [])
     assert looked.report is not None and looked.report["dry_run"]
     assert looked.files[0].looked
     assert [column["analyte"] for column in looked.files[0].looked[0]["columns"]] == ["SiO2", "Zr"]
 
-    jobs.store(looked)
+    import_jobs.store(jobs, looked)
     stored = ended(jobs, looked)
     assert (stored.state, batches(jobs.registry)) == ("done", ["r"])
     assert stored.report is not None
     assert stored.report["files"][0]["results"]["aliquots"] == 3
-    assert not jobs.folder.paths(stored)[0].exists(), "the registry holds the file now"
+    assert not draft_paths(jobs.folder, stored)[0].exists(), "the registry holds the file now"
     assert jobs.folder.load(draft.draft_id) == stored
 
 
-def test_job_that_has_ended_can_be_stored_at_once(jobs: ImportJobs, monkeypatch: pytest.MonkeyPatch) -> None:
+def test_job_that_has_ended_can_be_stored_at_once(jobs: Jobs, monkeypatch: pytest.MonkeyPatch) -> None:
     begun: list[bool] = []
     stored = threading.Event()
-    end = jobs._end
+    end = jobs.end
 
-    def end_and_store(draft: Draft, state: str, sentence: str) -> None:
+    def end_and_store(draft: Any, state: str, sentence: str) -> None:
         end(draft, state, sentence)
         if state == "read":
             looked = jobs.find(draft.draft_id)
-            assert looked is not None and looked.state == "read"
-            begun.append(jobs.store(looked))
+            assert isinstance(looked, Draft) and looked.state == "read"
+            begun.append(import_jobs.store(jobs, looked))
             stored.set()
 
-    monkeypatch.setattr(jobs, "_end", end_and_store)
+    monkeypatch.setattr(jobs, "end", end_and_store)
     draft = draft_of(jobs, create_samples=True)
-    jobs.look(draft)
+    import_jobs.look(jobs, draft)
     assert stored.wait(60)
     assert ended(jobs, draft).state == "done"
     assert (begun, batches(jobs.registry)) == ([True], ["r"])
 
 
-def test_job_with_problems_lists_them_and_stores_nothing(jobs: ImportJobs) -> None:
+def test_job_with_problems_lists_them_and_stores_nothing(jobs: Jobs) -> None:
     draft = draft_of(jobs)
-    jobs.store(draft)
+    import_jobs.store(jobs, draft)
     refused = ended(jobs, draft)
     assert refused.state == "refused"
     assert [problem["found"] for problem in refused.problems] == ["A", "B", "A"]
@@ -100,35 +103,35 @@ def test_job_with_problems_lists_them_and_stores_nothing(jobs: ImportJobs) -> No
 
 
 def test_job_fault_of_the_program_is_a_sentence_and_the_next_job_runs(
-    jobs: ImportJobs, monkeypatch: pytest.MonkeyPatch
+    jobs: Jobs, monkeypatch: pytest.MonkeyPatch
 ) -> None:
     def broken(*_arguments: Any, **_more: Any) -> None:
         raise RuntimeError("planted")
 
     monkeypatch.setattr(import_jobs, "import_files", broken)
     draft = draft_of(jobs)
-    jobs.look(draft)
+    import_jobs.look(jobs, draft)
     failed = ended(jobs, draft)
     assert failed.state == "failed"
     assert "a fault in the program and not in your data" in failed.sentence and "planted" not in failed.sentence
     monkeypatch.undo()
     failed.options = {"create_samples": True}
-    assert jobs.look(failed)
+    assert import_jobs.look(jobs, failed)
     assert ended(jobs, failed).state == "read"
 
 
-def test_job_wrong_use_is_a_sentence(jobs: ImportJobs) -> None:
-    draft = jobs.folder.create([("a.csv", written(TEXT)), ("b.csv", written(TEXT.replace("150", "155")))])
+def test_job_wrong_use_is_a_sentence(jobs: Jobs) -> None:
+    draft = create_draft(jobs.folder, [("a.csv", written(TEXT)), ("b.csv", written(TEXT.replace("150", "155")))])
     draft.options = {"batch": "X", "create_samples": True}
-    jobs.store(draft)
+    import_jobs.store(jobs, draft)
     failed = ended(jobs, draft)
     assert failed.state == "failed" and "names one batch" in failed.sentence
 
 
-def test_job_waits_for_another_writer_and_says_what_holds_the_registry(jobs: ImportJobs) -> None:
+def test_job_waits_for_another_writer_and_says_what_holds_the_registry(jobs: Jobs) -> None:
     draft = draft_of(jobs, create_samples=True)
     with writing(jobs.registry, what="an invented upheaval"):
-        jobs.store(draft)
+        import_jobs.store(jobs, draft)
         until = time.monotonic() + 20
         while "invented upheaval" not in draft.sentence and time.monotonic() < until:
             time.sleep(0.05)
@@ -139,7 +142,7 @@ def test_job_waits_for_another_writer_and_says_what_holds_the_registry(jobs: Imp
     assert ended(jobs, draft).state == "done"
 
 
-def test_second_job_waits_and_names_the_first(jobs: ImportJobs, monkeypatch: pytest.MonkeyPatch) -> None:
+def test_second_job_waits_and_names_the_first(jobs: Jobs, monkeypatch: pytest.MonkeyPatch) -> None:
     go_on = threading.Event()
     real = import_jobs.import_files
 
@@ -150,24 +153,24 @@ def test_second_job_waits_and_names_the_first(jobs: ImportJobs, monkeypatch: pyt
 
     monkeypatch.setattr(import_jobs, "import_files", slow)
     first, second = draft_of(jobs, create_samples=True), draft_of(jobs, TEXT.replace("150", "9"), "second.csv")
-    jobs.store(first)
-    jobs.look(second)
-    assert not jobs.look(second), "it is under way already"
+    import_jobs.store(jobs, first)
+    import_jobs.look(jobs, second)
+    assert not import_jobs.look(jobs, second), "it is under way already"
     saved: dict[str, Any] = {}
     until = time.monotonic() + 20
     while saved.get("state") != "storing" and time.monotonic() < until:
         time.sleep(0.01)
-        saved = json.loads((jobs.folder.place / first.draft_id / "draft.json").read_text())
+        saved = json.loads((jobs.folder.place / first.draft_id / "job.json").read_text())
     assert (first.state, first.done, first.total) == ("storing", 8_192, 100_000)
     assert first.sentence == "Storing: 8,192 of 100,000 lines of results."
-    assert "Waits until the import of r.csv" in jobs.waits_for(second)
+    assert "Waits until the import of r.csv" in jobs.sentence_of(second)
     assert (saved["state"], saved["done"]) == ("storing", 8_192), "a reload finds the progress in the side file"
     go_on.set()
     assert ended(jobs, first).state == "done"
     assert ended(jobs, second).state == "read", "its samples are there now"
 
 
-def test_work_of_a_stopped_program_is_told_as_failed(jobs: ImportJobs) -> None:
+def test_work_of_a_stopped_program_is_told_as_failed(jobs: Jobs) -> None:
     draft = draft_of(jobs)
     draft.state = "storing"
     jobs.folder.save(draft)
@@ -177,19 +180,35 @@ def test_work_of_a_stopped_program_is_told_as_failed(jobs: ImportJobs) -> None:
     assert jobs.all()[0].state == "failed"
 
 
-def test_work_of_another_living_program_is_left_alone(jobs: ImportJobs, monkeypatch: pytest.MonkeyPatch) -> None:
+HOLDER = """
+import sys
+from pathlib import Path
+from registry.job_folder import JobFolder
+folder = JobFolder(Path(sys.argv[1]))
+print(folder.hold(sys.argv[2]), flush=True)
+sys.stdin.read()
+"""
+
+
+def test_work_of_another_living_program_is_left_alone_and_failed_when_that_is_killed(jobs: Jobs) -> None:
+    """The lock ends with the process, whatever has its number afterwards (flock(2))."""
     draft = draft_of(jobs)
     draft.state = "storing"
-    monkeypatch.setattr(os, "getpid", lambda: 1)  # the first process lives as long as the machine
     jobs.folder.save(draft)
-    monkeypatch.undo()
+    command = [sys.executable, "-c", HOLDER, str(jobs.folder.place), draft.draft_id]
+    with subprocess.Popen(command, stdin=subprocess.PIPE, stdout=subprocess.PIPE, text=True) as other:
+        assert other.stdout is not None and other.stdout.readline() == "True\n"
+        found = jobs.find(draft.draft_id)
+        assert found is not None and found.state == "storing"
+        assert not import_jobs.store(jobs, draft), "another works on it"
+        other.kill()
     found = jobs.find(draft.draft_id)
-    assert found is not None and found.state == "storing"
+    assert found is not None and found.state == "failed"
 
 
-def test_drafts_are_deleted_after_a_day(jobs: ImportJobs) -> None:
+def test_drafts_are_deleted_after_a_day(jobs: Jobs) -> None:
     old, new = draft_of(jobs), draft_of(jobs)
-    mark = jobs.folder.place / old.draft_id / "draft.json"
+    mark = jobs.folder.place / old.draft_id / "job.json"
     os.utime(mark, (time.time() - 25 * 3600,) * 2)
     assert jobs.folder.clean() == 1
     assert jobs.find(old.draft_id) is None
@@ -197,7 +216,7 @@ def test_drafts_are_deleted_after_a_day(jobs: ImportJobs) -> None:
 
 
 @pytest.mark.parametrize("name", ["../escape", "", "a" * 15, "a" * 17, "AAAAAAAA/AAAAAAA"])
-def test_draft_id_that_is_none_finds_nothing(jobs: ImportJobs, name: str) -> None:
+def test_draft_id_that_is_none_finds_nothing(jobs: Jobs, name: str) -> None:
     draft_of(jobs)
     assert jobs.find(name) is None
     jobs.folder.delete(name)

@@ -31,6 +31,7 @@ from web import (
     start,
     targets,
     wording,
+    working,
     writing,
 )
 
@@ -41,7 +42,7 @@ def create_app(registry_path_or_url: str, writable: bool = False, drafts: Any = 
     """The Flask application over the registry at a path or SQLAlchemy URL.
 
     ``writable``: whether the pages may change a registry without accounts (only where this machine alone can ask);
-    with accounts, a signed-in one may. ``drafts`` is the folder for files on their way in; None: the user's own.
+    with accounts, a signed-in one may. ``drafts`` is the folder for files and work on their way; None: the user's own.
     ``https``: the site is reached over https alone, so its cookie must not go over anything else.
 
     Raises the sentence of ``open_registry`` where there is no registry or it is of another version.
@@ -81,5 +82,6 @@ def create_app(registry_path_or_url: str, writable: bool = False, drafts: Any = 
         log,
     ):
         app.register_blueprint(part.blueprint)
-    importing.register(app, drafts)
+    working.register(app, drafts)
+    importing.register(app)
     return app

@@ -6,17 +6,25 @@ from typing import Any
 
 from flask import Blueprint, current_app, flash, redirect, render_template, request, send_file, url_for
 
-from registry import batching
+from registry import batching, change_jobs
+from registry.change_jobs import Change
 from registry.store.reading import batches as reading
 from registry.store.reading import controls as controls_reading
-from web import control_charts, writing
+from web import control_charts, working, writing
 from web.errors import Missing
+from web.numbers import counted
 from web.reading import registry_connection
+from web.wording import digestion_words
 
 blueprint = Blueprint("batches", __name__)
 #: More control lines than this are not drawn; ``control_sheet`` holds them all.
 MOST_CONTROL_LINES = 1_000
-STATE_OF = {"withdraw": "withdrawn", "restore": "active"}
+#: What is said once it is done.
+DONE_WORDS = {
+    "withdraw": "Batch {} is withdrawn",
+    "restore": "Batch {} is in use again",
+    "digestions": "Digestions of batch {} are stated",
+}
 
 
 @blueprint.get("/batches")
@@ -29,11 +37,8 @@ def list_page() -> Any:
 
 @blueprint.get("/batches/<path:code>")
 def page(code: str) -> Any:
+    batch = _found(code)
     with registry_connection() as connection:
-        batch = reading.find_batch(connection, code)
-        if batch is None:
-            near = [(name, url_for("batches.page", code=name)) for name in reading.near_batches(connection)]
-            raise Missing("batch", code, near)
         columns = reading.batch_columns(connection, batch["batch_id"])
         lines, samples = reading.batch_samples(connection, batch["batch_id"])
         relatives = reading.batch_relatives(connection, batch["batch_id"])
@@ -76,58 +81,88 @@ def stored_file(code: str) -> Any:
 
 @blueprint.get("/batch/<any(withdraw, restore):change>/<path:code>")
 def ask(change: str, code: str) -> Any:
-    """What withdrawing or restoring a batch would do, and whether to do it."""
+    """What withdrawing or restoring a batch means; to be tried out, or done."""
     writing.require()
-    report = batching.set_state(current_app.extensions["registry"], code, STATE_OF[change], dry_run=True)
-    return _confirmation(code, change, report, {})
+    _found(code)
+    return _page_of(change, code)
 
 
 @blueprint.post("/batch/<any(withdraw, restore):change>/<path:code>")
 def do(change: str, code: str) -> Any:
-    report = batching.set_state(current_app.extensions["registry"], code, STATE_OF[change])
-    return _done(code, f"Batch {code} is {'withdrawn' if change == 'withdraw' else 'in use again'}", report)
+    """Try withdrawing or restoring a batch out, or do it."""
+    _found(code)
+    trial = request.form.get("do") == "try"
+    asked = change_jobs.start(working.jobs(), change, code, trial=trial)
+    return working.answered(asked, _outcome if trial else _back_to_batch)
 
 
 @blueprint.post("/batch/digestions/<path:code>")
 def digestions(code: str) -> Any:
     """State how columns were digested: first what it would change, then, once confirmed, the change itself."""
-    registry = current_app.extensions["registry"]
     stated = {
-        int(name.removeprefix("digestion-")): value
+        int(name.removeprefix("digestion-")): batching.digestion_named(value)
         for name, value in request.form.items()
         if name.startswith("digestion-") and name.removeprefix("digestion-").isdecimal()
     }
+    batch = _found(code)
     with registry_connection() as connection:
-        batch = reading.find_batch(connection, code)
-        if batch is None:
-            raise Missing("batch", code)
-        known = {row["position"]: row["digestion"] for row in reading.batch_columns(connection, batch["batch_id"])}
-    changed = {position: name for position, name in stated.items() if known.get(position) != name}
+        columns = {row["position"]: row for row in reading.batch_columns(connection, batch["batch_id"])}
+    changed = {
+        position: name
+        for position, name in stated.items()
+        if position in columns and columns[position]["digestion"] != name
+    }
     if not changed:
         flash("No digestion is another than before; nothing was changed.")
         return redirect(url_for("batches.page", code=code), 303)
-    confirmed = request.form.get("do") == "confirmed"
-    report = batching.set_digestions(registry, code, changed, dry_run=not confirmed)
-    if confirmed:
-        return _done(code, f"The digestion of {len(changed)} columns of batch {code} is stated", report)
-    return _confirmation(code, "digestions", report, changed)
+    told = [
+        f"{columns[position]['header'] or columns[position]['analyte']}: "
+        f"{digestion_words(columns[position]['digestion'])} → {digestion_words(name)}"
+        for position, name in changed.items()
+    ]
+    trial = request.form.get("do") != "confirmed"
+    wishes = {str(position): name for position, name in changed.items()}
+    asked = change_jobs.start(working.jobs(), "digestions", code, wishes, trial=trial, told=told)
+    return working.answered(asked, _outcome if trial else _back_to_batch)
 
 
-def _confirmation(code: str, change: str, report: dict[str, Any], stated: dict[int, str]) -> Any:
-    action = (
+def _found(code: str) -> dict[str, Any]:
+    with registry_connection() as connection:
+        batch = reading.find_batch(connection, code)
+        if batch is None:
+            near = [(name, url_for("batches.page", code=name)) for name in reading.near_batches(connection)]
+            raise Missing("batch", code, near)
+    return batch
+
+
+@working.outcome_of("withdraw", "restore", "digestions")
+def _outcome(change: Change) -> Any:
+    return _page_of(change.action, change.subject, change)
+
+
+def _page_of(action: str, code: str, change: Change | None = None) -> str:
+    address = (
         url_for("batches.digestions", code=code)
-        if change == "digestions"
-        else url_for("batches.do", change=change, code=code)
+        if action == "digestions"
+        else url_for("batches.do", change=action, code=code)
     )
     return render_template(
-        "batch_change.html", section="Batches", code=code, change=change, report=report, stated=stated, action=action
+        "batch_change.html",
+        section="Batches",
+        code=code,
+        action=action,
+        change=change,
+        report=change.report if change is not None else None,
+        address=address,
+        done_words=DONE_WORDS,
     )
 
 
-def _done(code: str, what: str, report: dict[str, Any]) -> Any:
+def _back_to_batch(change: Change) -> Any:
+    report = change.report or {}
     samples, verdicts = report["recomputed"], report["verdicts_changed"]
     flash(
-        f"{what}: {samples:,} {'sample' if samples == 1 else 'samples'} recomputed, {verdicts:,} "
-        f"{'verdict' if verdicts == 1 else 'verdicts'} changed."
+        f"{DONE_WORDS[change.action].format(change.subject)}: {counted(samples, 'sample')} recomputed, "
+        f"{counted(verdicts, 'verdict')} changed."
     )
-    return redirect(url_for("batches.page", code=code), 303)
+    return redirect(url_for("batches.page", code=change.subject), 303)

@@ -7,11 +7,11 @@ from typing import Any
 
 from flask import Blueprint, abort, current_app, redirect, render_template, request, session, url_for
 
-from registry import editing
+from registry import change_jobs, editing
 from registry.editing import NUMBER, TRUTH, WORD, Field
 from registry.errors import NotFound
 from registry.store.reading import editing as reading
-from web import writing
+from web import working, writing
 from web.errors import Missing
 from web.reading import registry_connection
 from web.wording import unit_words
@@ -123,9 +123,16 @@ def change(kind: str, code: str) -> Any:
     session["edit_done"] = {
         "changes": [_short(text) for text in told.changes[:TOLD]], "more": max(0, len(told.changes) - TOLD),
         "remarks": [_short(text) for text in told.remarks[:TOLD]], "verdicts": told.consequence.verdicts,
-        "waiting": told.consequence.waiting,
+        "waiting": told.consequence.waiting, "work": _computed_by_and_by(told, f"the edit of {kind} {code}"),
     }  # fmt: skip
     return redirect(url_for("editing.page", kind=kind, code=code), 303)
+
+
+def _computed_by_and_by(told: editing.Edited, what: str) -> str | None:
+    """Let what an edit left stale be computed as a job; the address of its page."""
+    if not told.consequence.waiting:
+        return None
+    return working.address_of(change_jobs.start(working.jobs(), change_jobs.REFRESH, what))
 
 
 def _short(text: str) -> str:

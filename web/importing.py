@@ -5,18 +5,18 @@ from __future__ import annotations
 from pathlib import Path
 from typing import Any
 
-from flask import Blueprint, Flask, abort, current_app, jsonify, redirect, render_template, request, send_file, url_for
+from flask import Blueprint, Flask, abort, jsonify, redirect, render_template, request, send_file, url_for
 from werkzeug.datastructures import FileStorage
 
-from registry import reading_recipes
+from registry import import_jobs, reading_recipes
 from registry.errors import PlutonbookError
-from registry.import_drafts import DONE, Draft, DraftFile, DraftFolder, state_folder
-from registry.import_jobs import ImportJobs
+from registry.import_drafts import Draft, DraftFile, create_draft
 from registry.intake_choices import ANALYTE_NAMES, DIGESTION_NAMES, KIND_NAMES, UNIT_NAMES
+from registry.job_folder import DONE
 from registry.store.reading import batches as batches_reading
 from registry.store.reading import targets as targets_reading
 from registry.store.reading.session import query_only
-from web import import_form, writing
+from web import import_form, working, writing
 from web.errors import Missing
 
 blueprint = Blueprint("importing", __name__)
@@ -30,11 +30,8 @@ STATE_WORDS = {
 }  # fmt: skip
 
 
-def register(app: Flask, drafts: Any = None) -> None:
-    """Keep the drafts of the application's registry in a folder (``drafts``, else the user's own) and run its jobs."""
-    registry = app.extensions["registry"]
-    folder = DraftFolder(drafts or state_folder(registry.url))
-    app.extensions["imports"] = ImportJobs(registry, folder)
+def register(app: Flask) -> None:
+    """Add the pages, and take as much as a lab file may be."""
     app.config["MAX_CONTENT_LENGTH"] = LARGEST_UPLOAD_BYTES
     # a table of 2,000 columns has some 12,000 fields
     app.config["MAX_FORM_PARTS"] = 50_000
@@ -46,24 +43,19 @@ def register(app: Flask, drafts: Any = None) -> None:
     app.register_blueprint(blueprint)
 
 
-def _jobs() -> ImportJobs:
-    jobs: ImportJobs = current_app.extensions["imports"]
-    return jobs
-
-
 def _found(draft_id: str) -> Draft:
     writing.require()
-    draft = _jobs().find(draft_id)
-    if draft is None:
+    draft = working.jobs().find(draft_id)
+    if not isinstance(draft, Draft):
         raise Missing("import", draft_id, [("Import", url_for("importing.start"))])
     return draft
 
 
 @blueprint.get("/import")
 def start() -> Any:
-    jobs = _jobs()
+    jobs = working.jobs()
     saved = reading_recipes.list_recipes(jobs.registry)
-    drafts = jobs.all() if writing.standing().writable else []
+    drafts = [job for job in jobs.all() if isinstance(job, Draft)] if writing.standing().writable else []
     return render_template(
         "import.html", section="Import", drafts=drafts, saved=saved, limit=LARGEST_UPLOAD_BYTES, kinds=KIND_NAMES
     )
@@ -76,12 +68,12 @@ def send() -> Any:
         abort(400, "No file was chosen. Go back, choose at least one and send it again.")
     if len(sent) > MOST_FILES:
         abort(400, f"At most {MOST_FILES} files are taken at once; {len(sent)} were sent.")
-    jobs = _jobs()
-    draft = jobs.folder.create([(file.filename or "", _writer(file)) for file in sent])
+    jobs = working.jobs()
+    draft = create_draft(jobs.folder, [(file.filename or "", _writer(file)) for file in sent])
     kind = request.form.get("kind")
     for file in draft.files:
         file.kind = kind if kind in KIND_NAMES else None
-    jobs.look(draft)
+    import_jobs.look(jobs, draft)
     return _shown_soon(draft)
 
 
@@ -90,13 +82,13 @@ def _writer(file: FileStorage) -> Any:
 
 
 def _shown_soon(draft: Draft) -> Any:
-    _jobs().wait(draft.draft_id, PATIENCE_S)
+    working.jobs().wait(draft.draft_id, PATIENCE_S)
     return redirect(url_for("importing.page", draft_id=draft.draft_id), 303)
 
 
 @blueprint.post("/import/readings")
 def forget() -> Any:
-    reading_recipes.forget_recipe(_jobs().registry, request.form.get("name", ""))
+    reading_recipes.forget_recipe(working.jobs().registry, request.form.get("name", ""))
     return redirect(url_for("importing.start"), 303)
 
 
@@ -106,7 +98,7 @@ def page(draft_id: str) -> Any:
 
 
 def _page(draft: Draft, notice: str = "", fault: str = "") -> Any:
-    jobs = _jobs()
+    jobs = working.jobs()
     names, batches = {}, []
     with query_only(jobs.registry) as connection:
         if not draft.under_way:
@@ -119,7 +111,7 @@ def _page(draft: Draft, notice: str = "", fault: str = "") -> Any:
         "import_draft.html",
         section="Import",
         draft=draft,
-        sentence=jobs.waits_for(draft),
+        sentence=jobs.sentence_of(draft),
         files=files,
         others=import_form.other_problems(draft),
         target_names=names,
@@ -147,7 +139,7 @@ def _file_view(draft: Draft, number: int) -> dict[str, Any]:
                 "key": import_form.table_key(number, table),
                 "looked": looked,
                 "columns": import_form.shown_columns(file, table),
-                "proposed": reading_recipes.proposed_names(_jobs().registry, own.shape),
+                "proposed": reading_recipes.proposed_names(working.jobs().registry, own.shape),
             }
         )
     kinds = {looked["kind"] for looked in file.looked}
@@ -169,7 +161,7 @@ def _file_view(draft: Draft, number: int) -> dict[str, Any]:
 @blueprint.post("/import/<draft_id>")
 def change(draft_id: str) -> Any:
     draft = _found(draft_id)
-    jobs, form = _jobs(), request.form
+    jobs, form = working.jobs(), request.form
     action, _, argument = form.get("do", "read").partition(":")
     if draft.under_way or draft.state == DONE:
         return redirect(url_for("importing.page", draft_id=draft_id), 303)
@@ -184,9 +176,9 @@ def change(draft_id: str) -> Any:
     if action in ("use", "plain"):
         _use_reading(draft, argument, action == "use")
     elif action == "store" and not changed:
-        jobs.store(draft)
+        import_jobs.store(jobs, draft)
         return _shown_soon(draft)
-    jobs.look(draft)
+    import_jobs.look(jobs, draft)
     return _shown_soon(draft)
 
 
@@ -206,20 +198,20 @@ def _use_reading(draft: Draft, argument: str, use: bool) -> None:
     file.recipe_name = request.form.get(f"saved-{argument}") if use else None
     file.recipe = None
     if file.recipe_name is not None:
-        file.recipe = reading_recipes.find_recipe(_jobs().registry, file.recipe_name).to_json()
+        file.recipe = reading_recipes.find_recipe(working.jobs().registry, file.recipe_name).to_json()
 
 
 def _save_reading(draft: Draft, argument: str) -> Any:
     """Keep the reading of one table under a name; what was changed in it is read again, so that it is seen."""
     file, table = _place(draft, argument)
     name = " ".join(request.form.get(f"name-{argument}", "").split())
-    jobs = _jobs()
+    jobs = working.jobs()
     try:
         replaced = reading_recipes.save_recipe(jobs.registry, name, import_form.current_recipe(file, table))
     except PlutonbookError as fault:
         return _page(draft, fault=str(fault)), 400
     file.recipe_name = name
-    jobs.look(draft)
+    import_jobs.look(jobs, draft)
     jobs.wait(draft.draft_id, PATIENCE_S)
     draft = _found(draft.draft_id)
     if draft.under_way:
@@ -235,7 +227,9 @@ def refused_rows(draft_id: str, number: str) -> Any:
     files = (draft.report or {}).get("files", [])
     known = number.isdecimal() and int(number) < len(files)
     path = Path((files[int(number)]["refused_file"] if known else None) or "")
-    if not path.is_file() or not path.resolve().is_relative_to((_jobs().folder.place / draft.draft_id).resolve()):
+    if not path.is_file() or not path.resolve().is_relative_to(
+        (working.jobs().folder.place / draft.draft_id).resolve()
+    ):
         raise Missing("file of refused rows", draft_id)
     return send_file(path.resolve(), mimetype="text/csv", as_attachment=True, download_name=path.name)
 
@@ -244,15 +238,7 @@ def refused_rows(draft_id: str, number: str) -> Any:
 def state(draft_id: str) -> Any:
     if not writing.standing().writable:
         return jsonify(error="Imports are shown to whoever may make them."), 403
-    draft = _jobs().find(draft_id)
-    if draft is None:
+    draft = working.jobs().find(draft_id)
+    if not isinstance(draft, Draft):
         return jsonify(error=f"There is no import {draft_id}."), 404
-    return jsonify(
-        state=draft.state,
-        sentence=_jobs().waits_for(draft),
-        done=draft.done,
-        total=draft.total,
-        under_way=draft.under_way,
-        started_at=draft.started_at,
-        ended_at=draft.ended_at,
-    )
+    return working.state_of(draft)

@@ -5,10 +5,12 @@ from __future__ import annotations
 from collections.abc import Mapping
 from typing import Any
 
-from flask import Blueprint, current_app, redirect, render_template, request, session, url_for
+from flask import Blueprint, redirect, render_template, request, session, url_for
 
-from registry import settings
+from registry import change_jobs, settings
+from registry.change_jobs import Change
 from registry.settings import Convention
+from web import working
 from web.reading import registry_connection
 
 blueprint = Blueprint("settings", __name__)
@@ -67,7 +69,6 @@ def page() -> Any:
 
 @blueprint.post("/settings")
 def change() -> Any:
-    registry = current_app.extensions["registry"]
     with registry_connection() as connection:
         before = settings.current(connection)
     typed = {name: request.form[name] for name in settings.CONVENTIONS if name in request.form}
@@ -78,11 +79,26 @@ def change() -> Any:
         return _page(typed, {}, unchanged=True)
     changes = _changes(before, values)
     # what was foreseen is sent back with the form: fields typed since are foreseen again first
-    if request.form.get("do") != "change" or request.form.get("seen") != "; ".join(changes):
-        return _page(typed, {}, foreseen=settings.foresee(registry, values), changes=changes)
-    told = settings.change(registry, values)
-    session["settings_done"] = {"changes": changes, "verdicts": told.verdicts, "waiting": told.waiting}
+    trial = request.form.get("do") != "change" or request.form.get("seen") != "; ".join(changes)
+    asked = change_jobs.start(working.jobs(), change_jobs.SETTINGS, "", values, trial=trial, told=changes)
+    return working.answered(asked, _outcome if trial else _back_to_settings)
+
+
+@working.outcome_of(change_jobs.SETTINGS)
+def _outcome(change: Change) -> Any:
+    if not change.trial:
+        return _page({}, {}, done=_done(change))
+    typed = {name: typed_form(value) for name, value in change.wishes.items()}
+    return _page(typed, {}, foreseen=change.report, changes=change.told)
+
+
+def _back_to_settings(change: Change) -> Any:
+    session["settings_done"] = _done(change)
     return redirect(url_for("settings.page"), 303)
+
+
+def _done(change: Change) -> dict[str, Any]:
+    return {"changes": change.told, "verdicts": (change.report or {})["verdicts_changed"]}
 
 
 def _changes(before: Mapping[str, Any], values: Mapping[str, Any]) -> list[str]:

@@ -46,7 +46,7 @@ class Site:
 
     @property
     def jobs(self) -> Any:
-        return self.app.extensions["imports"]
+        return self.app.extensions["jobs"]
 
     def token(self) -> str:
         return self.field(self.client.get("/import").text, "csrf_token")

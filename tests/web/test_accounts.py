@@ -228,7 +228,7 @@ def test_accounts_name_stands_with_what_its_owner_did(site: Site) -> None:
     file = (io.BytesIO(b"sample_code,sample_kind\nNEW-1,core\n"), "samples.csv")
     results = (io.BytesIO(b"Sample,SiO2 XRF (%)\nNEW-1,61\n"), "X-1.csv")
     address = site.client.post("/import", data={"csrf_token": form, "files": [file, results]}).headers["Location"]
-    jobs = site.app.extensions["imports"]
+    jobs = site.app.extensions["jobs"]
     jobs.wait(address.rsplit("/", 1)[-1], 60)
     site.client.post(address, data={"csrf_token": form, "do": "store"})
     jobs.wait(address.rsplit("/", 1)[-1], 60)

@@ -41,25 +41,44 @@ def test_batch_page_gives_the_file_back_byte_for_byte(site: Site) -> None:
     assert missing.status_code == 404 and "no batch" in missing.text
 
 
+def tried(site: Site, change: str, code: str = "majors") -> str:
+    """The page after the button on the page of a batch was pressed."""
+    form = form_fields(site.client.get(f"/batches/{code}").text)
+    form.setlist("do", ["try"])
+    return site.client.post(f"/batch/{change}/{code}", data=form).text
+
+
+def test_batch_change_asked_for_by_its_address_tells_what_it_means_and_tries_nothing(site: Site) -> None:
+    page = site.client.get("/batch/withdraw/majors").text
+    assert "Its results leave every composition" in page and "computed anew" not in page
+    assert 'value="try">See what it changes</button>' in page and ">Withdraw it</button>" in page
+    assert site.jobs.all() == []
+    missing = site.client.get("/batch/withdraw/majers")
+    assert missing.status_code == 404 and "/batches/majors" in missing.text
+
+
 def test_batch_withdrawn_and_restored_tells_first_what_it_touches(site: Site) -> None:
     verdicts = rows(site, "SELECT sample_id, target_id, verdict FROM verdict ORDER BY 1, 2")
-    page = site.client.get("/batch/withdraw/majors").text
+    page = tried(site, "withdraw")
     assert "<strong>3 samples</strong> are computed anew" in page
     assert "nothing is changed yet" in page
     assert rows(site, "SELECT state FROM batch") == [("active",)]
     assert rows(site, "SELECT count(*) FROM verdict_change") == [(0,)]
 
     answer = site.client.post("/batch/withdraw/majors", data=form_fields(page))
-    assert answer.status_code == 303
+    assert (answer.status_code, answer.headers["Location"]) == (303, "/batches/majors")
     page = site.client.get(answer.headers["Location"]).text
     assert "Batch majors is withdrawn: 3 samples recomputed" in page
     assert "its results are kept and not used" in page
     changed = rows(site, "SELECT count(*) FROM verdict_change")[0][0]
     assert f"{changed} verdict" in page
     assert rows(site, "SELECT sio2_wt FROM composition") == [(None,)] * 3
-    assert "is withdrawn already" in site.client.get("/batch/withdraw/majors").text
+    refused = site.client.post("/batch/withdraw/majors", data=form_fields(page))
+    assert refused.status_code == 400
+    assert "Batch &#39;majors&#39; is withdrawn already; nothing was changed." in refused.text
 
-    page = site.client.get("/batch/restore/majors").text
+    page = tried(site, "restore")
+    assert "<strong>3 samples</strong> are computed anew" in page
     site.client.post("/batch/restore/majors", data=form_fields(page))
     assert rows(site, "SELECT state FROM batch") == [("active",)]
     assert rows(site, "SELECT sample_id, target_id, verdict FROM verdict ORDER BY 1, 2") == verdicts
@@ -72,6 +91,7 @@ def test_batch_digestions_are_changed_after_confirmation(site: Site) -> None:
     form.setlist(f"digestion-{position}", ["aqua_regia"])
     page = site.client.post("/batch/digestions/majors", data=form).text
     assert "1 column gets another digestion" in page
+    assert "<li>SiO2 XRF (%): XRF → aqua regia</li>" in page
     assert rows(site, "SELECT digestion FROM batch_column WHERE analyte = 'SiO2'") == [("xrf",)]
     confirm = form_fields(page)
     confirm.setlist("do", ["confirmed"])

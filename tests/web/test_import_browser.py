@@ -138,7 +138,7 @@ def test_browser_progress_survives_a_reload_and_ends_by_itself(
 def test_browser_batch_is_withdrawn_after_a_trial(window: Any, served: str) -> None:
     window.get(f"{served}/batches/majors")
     sound(window)
-    window.find_element("partial link text", "Withdraw").click()
+    window.find_element("css selector", "form.tools button").click()
     until_text(window, "nothing is changed yet")
     sound(window)
     window.find_element("css selector", "button[value=confirmed]").click()

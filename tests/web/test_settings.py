@@ -4,7 +4,6 @@ from __future__ import annotations
 
 import hashlib
 import re
-import time
 from dataclasses import fields
 from html import unescape
 from typing import Any
@@ -117,18 +116,23 @@ def test_settings_sent_without_the_token_are_refused(writable: Any) -> None:
     assert writable.client.post("/settings", data={"pressure_gpa": "0.3"}).status_code == 400
 
 
-def test_settings_of_a_large_registry_are_computed_in_the_background(
+def test_settings_of_a_large_registry_are_foreseen_and_changed_as_work(
     writable: Any, monkeypatch: pytest.MonkeyPatch
 ) -> None:
-    monkeypatch.setattr("registry.recomputing.AT_ONCE", 10)
-    answer = writable.post("/settings", loi_fail_wt="0.7", loi_warn_wt="0.5", do="foresee")
-    assert "122 samples have to be computed anew, too many to foresee" in words(answer.text)
-    seen = unescape(re.search(r'name="seen" value="([^"]*)"', answer.text).group(1))  # type: ignore[union-attr]
-    monkeypatch.setattr("web.reading.refresh_a_few", lambda registry: 0)
-    writable.post("/settings", loi_fail_wt="0.7", loi_warn_wt="0.5", do="change", seen=seen)
-    assert "122 samples are being computed anew in the background" in words(writable.client.get("/settings").text)
-    ends = time.monotonic() + 30
-    while writable.sql("SELECT count(*) FROM stale") != [(0,)]:
-        assert time.monotonic() < ends
-        time.sleep(0.05)
+    monkeypatch.setattr("web.working.PATIENCE_S", 0.0)
+    jobs = writable.app.extensions["jobs"]
+
+    def sent(**fields: str) -> str:
+        address = writable.post("/settings", loi_fail_wt="0.7", loi_warn_wt="0.5", **fields).headers["Location"]
+        assert address.startswith("/work/")
+        jobs.wait(address.rsplit("/", 1)[-1], 60)
+        return str(writable.client.get(address).text)
+
+    page = sent(do="foresee")
+    assert re.search(r"\d+ verdicts would change", words(page))
+    assert 'name="loi_fail_wt" value="0.7"' in page
+    assert writable.sql("SELECT count(*) FROM verdict_change") == [(0,)]
+    seen = unescape(re.search(r'name="seen" value="([^"]*)"', page).group(1))  # type: ignore[union-attr]
+    assert "Everything was computed anew" in words(sent(do="change", seen=seen))
+    assert writable.sql("SELECT count(*) FROM stale") == [(0,)]
     assert writable.sql("SELECT count(*) FROM verdict_change WHERE cause = 'settings changed'")[0][0] > 50

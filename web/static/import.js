@@ -1,4 +1,4 @@
-// The import page: dropping files, and progress by itself. Without this script the page works by plain forms.
+// The import page: dropping files. Without this script the page works by plain forms.
 "use strict";
 
 const MEGABYTE = 1024 * 1024;
@@ -43,31 +43,4 @@ for (const form of document.querySelectorAll("form.upload")) {
     form.querySelector("[data-sending]").hidden = true;
     show();
   });
-}
-
-// A draft under way: ask how far it is; when it ends, the page is loaded again and shows the outcome.
-for (const part of document.querySelectorAll("[data-progress]")) {
-  const words = part.querySelector("[data-words]");
-  const bar = part.querySelector("progress");
-  const ask = async () => {
-    try {
-      const answer = await fetch(part.dataset.progress, { headers: { Accept: "application/json" } });
-      const state = await answer.json();
-      if (!answer.ok || !state.under_way) {
-        window.location.reload();
-        return;
-      }
-      if (state.sentence && words.textContent !== state.sentence) words.textContent = state.sentence;
-      if (state.total) {
-        bar.max = state.total;
-        bar.value = state.done;
-      } else {
-        bar.removeAttribute("value");
-      }
-    } catch {
-      words.textContent = "The program that serves this page does not answer. The page asks again.";
-    }
-    setTimeout(ask, 700);
-  };
-  setTimeout(ask, 300);
 }

@@ -1,0 +1,162 @@
+"""Changes that take longer than a request: their progress, their outcome, what waits, what a restart leaves.
+
+The data are invented.
+"""
+
+from __future__ import annotations
+
+import io
+import threading
+from collections.abc import Iterator
+from pathlib import Path
+from typing import Any
+
+import pytest
+
+from registry import batching, settings
+from tests.web.import_site import TRACES, Site, form_fields
+from web import create_app, working
+
+
+@pytest.fixture
+def site(founded_registry_file: Path, tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> Iterator[Site]:
+    monkeypatch.setattr(working, "PATIENCE_S", 0.0)
+    made = Site(founded_registry_file, tmp_path)
+    yield made
+    made.close()
+
+
+class Gate:
+    """Lets the work go on when the test says so."""
+
+    def __init__(self, monkeypatch: pytest.MonkeyPatch) -> None:
+        self.opened = threading.Event()
+        self.begun = threading.Event()
+        real = batching.set_state
+
+        def slow(*arguments: Any, **more: Any) -> Any:
+            more["progress"]("computing", 40, 160)
+            self.begun.set()
+            assert self.opened.wait(60)
+            return real(*arguments, **more)
+
+        monkeypatch.setattr(batching, "set_state", slow)
+
+
+@pytest.fixture
+def gate(monkeypatch: pytest.MonkeyPatch) -> Iterator[Gate]:
+    made = Gate(monkeypatch)
+    yield made
+    made.opened.set()
+
+
+def asked(site: Site, do: str, change: str = "withdraw") -> Any:
+    form = form_fields(site.client.get(f"/batch/{change}/majors").text)
+    form.setlist("do", [do])
+    return site.client.post(f"/batch/{change}/majors", data=form)
+
+
+def ended(site: Site, address: str) -> str:
+    job = site.jobs.wait(address.rsplit("/", 1)[-1], 60)
+    assert job is not None and not job.under_way
+    return site.client.get(address).text
+
+
+def test_long_trial_shows_its_progress_and_then_what_would_change(site: Site, gate: Gate) -> None:
+    answer = asked(site, "try")
+    address = answer.headers["Location"]
+    assert answer.status_code == 303 and address.startswith("/work/")
+    assert gate.begun.wait(60)
+    page = site.client.get(address).text
+    assert "<h1>A trial of withdrawing batch majors</h1>" in page
+    assert "Computing and judging on trial: 40 of 160 samples." in page
+    assert '<progress aria-label="How far it is" max="160" value="40">' in page
+    assert '<noscript><meta http-equiv="refresh" content="2"></noscript>' in page
+    state = site.client.get(f"{address}/state.json").json
+    assert (state["state"], state["done"], state["total"], state["under_way"]) == ("working", 40, 160, True)
+    assert f'<a href="{address}">' in site.client.get("/batches").text, "every page says what runs"
+    assert "Computing and judging on trial: 40 of 160 samples." in site.client.get("/work").text
+    gate.opened.set()
+    page = ended(site, address)
+    assert "<strong>3 samples</strong> are computed anew" in page and ">Withdraw it</button>" in page
+    assert f'<a href="{address}">' not in site.client.get("/batches").text
+    assert "in use" in site.client.get("/batches").text
+
+
+def test_long_change_is_made_and_its_page_tells_what_came_of_it(site: Site) -> None:
+    page = ended(site, asked(site, "confirmed").headers["Location"])
+    assert "Batch majors is withdrawn: 3 samples recomputed" in page
+    assert '<a href="/batches/majors">Batch majors</a>' in page and "Withdraw it" not in page
+    assert ">withdrawn</td>" in site.client.get("/batches").text
+    again = ended(site, asked(site, "confirmed").headers["Location"])
+    assert "Batch &#39;majors&#39; is withdrawn already; nothing was changed." in again
+    assert "failed" in site.client.get("/work").text
+
+
+def test_second_change_waits_and_names_the_first_and_the_same_one_is_not_begun_twice(site: Site, gate: Gate) -> None:
+    first = asked(site, "confirmed").headers["Location"]
+    assert gate.begun.wait(60)
+    assert asked(site, "confirmed").headers["Location"] == first
+    second = asked(site, "try").headers["Location"]
+    assert second != first
+    job = site.jobs.find(first.rsplit("/", 1)[-1])
+    waits = f"Waits until withdrawing batch majors, started {job.started_at}, is through."
+    assert waits in site.client.get(second).text
+    assert site.client.get(f"{second}/state.json").json["sentence"] == waits
+    file = (io.BytesIO(TRACES.encode()), "traces.csv")
+    draft = site.client.post("/import", data={"csrf_token": site.token(), "files": [file]}).headers["Location"]
+    assert waits in site.client.get(draft).text
+    gate.opened.set()
+    assert "is withdrawn already" in ended(site, second)
+
+
+def test_work_that_a_stopped_server_left_is_told_as_not_done(site: Site, gate: Gate, tmp_path: Path) -> None:
+    address = asked(site, "confirmed").headers["Location"]
+    assert gate.begun.wait(60)
+    job = site.jobs.find(address.rsplit("/", 1)[-1])
+    site.jobs.folder.save(job)
+    site.jobs.folder.release(job.job_id)  # as the end of the process does
+    other = create_app(str(site.path), writable=True, drafts=tmp_path / "drafts")
+    client = other.test_client()
+    page = client.get(address).text
+    assert "Nothing was changed: the program was stopped while it worked on this." in page
+    assert "<progress" not in page
+    assert "at work" not in client.get("/work").text
+    assert f'<a href="{address}">' not in client.get("/batches").text
+    other.extensions["registry"].close()
+
+
+def test_work_is_shown_to_those_alone_who_may_start_it(site: Site, tmp_path: Path) -> None:
+    address = asked(site, "try").headers["Location"]
+    ended(site, address)
+    reader = create_app(str(site.path), writable=False, drafts=tmp_path / "drafts")
+    client = reader.test_client()
+    assert [client.get(path).status_code for path in ("/work", address, f"{address}/state.json")] == [403] * 3
+    reader.extensions["registry"].close()
+    assert site.client.get("/work/AAAAAAAAAAAAAAAA").status_code == 404
+    assert site.client.get("/work/AAAAAAAAAAAAAAAA/state.json").status_code == 404
+
+
+def test_page_of_an_import_among_the_work_is_the_page_of_the_import(site: Site) -> None:
+    address = site.send(("samples.csv", "sample_code,sample_kind\nKD-9,core\n"))
+    answer = site.client.get(address.replace("/import/", "/work/"))
+    assert (answer.status_code, answer.headers["Location"]) == (303, address)
+    page = site.client.get("/work").text
+    assert f'<a href="{address}">The import of samples.csv</a>' in page
+
+
+def test_nothing_ran_says_what_would_stand_there(site: Site) -> None:
+    assert "Nothing ran during the last day." in site.client.get("/work").text
+
+
+def test_fault_of_the_program_is_told_and_the_next_change_runs(site: Site, monkeypatch: pytest.MonkeyPatch) -> None:
+    def broken(*_arguments: Any, **_more: Any) -> None:
+        raise RuntimeError("planted")
+
+    monkeypatch.setattr(settings, "change", broken)
+    form = form_fields(site.client.get("/settings").text)
+    form.setlist("loi_warn_wt", ["1"])
+    form.setlist("do", ["foresee"])
+    page = ended(site, site.client.post("/settings", data=form).headers["Location"])
+    assert "Nothing was changed, because of a fault in the program" in page and "planted" not in page
+    assert "3 samples</strong>" in ended(site, asked(site, "try").headers["Location"])
