@@ -33,6 +33,7 @@ def load_controls(connection: Any, batch_id: int, patterns: Patterns) -> Control
     aliquots = np.array([line.aliquot_id for line, *_ in kept], dtype=np.int64)
     line_no = np.array([line.line_no for line, *_ in kept], dtype=np.int64)
     kinds = np.array([kind for _, kind, *_ in kept], dtype=object)
+    stages = [stage_of_pair(kind, line.code, line.control_text, patterns) for line, kind, *_ in kept]
     values, signs = quality_rows.results_of(connection, aliquots, column_ids)
     originals = np.array([original or 0 for *_, original in kept], dtype=np.int64)
     partner, partner_signs = _partners(connection, batch_id, stored_columns, originals, aliquots)
@@ -47,7 +48,7 @@ def load_controls(connection: Any, batch_id: int, patterns: Patterns) -> Control
         line_no,
         kinds,
         np.array([_material(line, kind, materials, patterns) for line, kind, *_ in kept], dtype=object),
-        np.array([_stage(line, kind, said, patterns) for line, kind, said, _ in kept], dtype=object),
+        np.array(stages, dtype=object),
         values,
         signs,
         partner,
@@ -130,10 +131,12 @@ def _material(line: StoredLine, kind: str, materials: Sequence[str], patterns: P
     return material_of(None, line.code, materials)
 
 
-def _stage(line: StoredLine, kind: str, said: Spoken, patterns: Patterns) -> str:
+def stage_of_pair(kind: str, code: str, control_text: str | None, patterns: Patterns) -> str:
+    """The stage of a judged pair, from its kind, what the certificate says of the line, and the form of its code."""
     if kind == LAB_REPEAT:
         return "lab"
-    return said.stage if said.stage != "unknown" else patterns.stage_of(line.code)
+    stage = read_control_text(control_text).stage
+    return stage if stage != "unknown" else patterns.stage_of(code)
 
 
 def values_of(connection: Any, controls: Controls) -> dict[str, list[ReferenceValue]]:

@@ -14,6 +14,7 @@ from registry.store.reading.session import open_for_reading
 from web import (
     accounts,
     batches,
+    control_history,
     diagrams,
     editing,
     errors,
@@ -73,6 +74,7 @@ def create_app(registry_path_or_url: str, writable: bool = False, drafts: Any = 
         sample,
         diagrams,
         batches,
+        control_history,
         targets,
         methods,
         intrusions,

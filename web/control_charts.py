@@ -1,8 +1,9 @@
 """Control charts as positions for the template to draw: one small chart an analyte, deviations by line of the file.
 
 A reference material stands at its z-score, a duplicate at its difference over what is allowed for, a blank at its
-distance from what its material holds, in thirds of the way to its limit: so the lines at two and three mean the same
-for all three kinds. Values by line with limits at two and three deviations are Shewhart's chart (1931).
+distance from what its material holds, drawn so that it is warned at two and fails at three: so the lines at two and
+three mean the same for all three kinds. Values by line with limits at two and three deviations are Shewhart's chart
+(1931).
 """
 
 from __future__ import annotations
@@ -15,19 +16,31 @@ LEFT, RIGHT, TOP, BOTTOM = 24.0, 312.0, 10.0, 114.0
 #: Deviations drawn; what lies beyond stands at the edge with an arrow.
 REACH = 4.0
 MOST_POINTS = 150
+#: A blank fails at ten detection limits and is warned at five (``registry.quality.blanks``).
+BLANK_WARNED_BEFORE = 5.0
 SHAPES = {"reference_material": "circle", "blank": "square", "duplicate": "triangle"}
 ORDER = ("fails", "passes with remarks", "passes", None)
 
 
-def deviation(point: Mapping[str, Any]) -> float | None:
-    """How far a control lies from what was expected, in standard deviations; None where that is not known."""
+def deviation(point: Mapping[str, Any], detection_limit: float | None = None) -> float | None:
+    """How far a control lies from what was expected, in standard deviations; None where that is not known.
+
+    A blank is warned ``BLANK_WARNED_BEFORE`` detection limits below the limit at which it fails.
+    """
     if point["z"] is not None:
         return float(point["z"])
     found, expected, limit = point["found"], point["expected"], point["limit_high"]
     if found is None or limit is None:
         return None
     expected = 0.0 if expected is None else expected
-    return None if limit <= expected else 3.0 * (found - expected) / (limit - expected)
+    if limit <= expected:
+        return None
+    warned = limit - BLANK_WARNED_BEFORE * (detection_limit or 0.0)
+    if point["kind"] != "blank" or not expected < warned < limit:
+        return 3.0 * (found - expected) / (limit - expected)
+    if found <= warned:
+        return 2.0 * (found - expected) / (warned - expected)
+    return 2.0 + (found - warned) / (limit - warned)
 
 
 def height_of(deviations: float) -> float:
@@ -38,13 +51,14 @@ def height_of(deviations: float) -> float:
 
 def chart(analyte: Mapping[str, Any]) -> dict[str, Any]:
     """One analyte with its ``points``: x, y, shape, state, word, title; ``left_out`` counts points not drawn."""
-    series = [point for point in analyte["series"] if deviation(point) is not None]
+    limit = analyte.get("detection_limit")
+    series = [point for point in analyte["series"] if deviation(point, limit) is not None]
     drawn = _thinned(series)
     lines = [point["line_no"] for point in series]
     first, last = (min(lines), max(lines)) if lines else (0, 0)
     points = []
     for point in drawn:
-        value = deviation(point) or 0.0
+        value = deviation(point, limit) or 0.0
         place = 0.5 if last == first else (point["line_no"] - first) / (last - first)
         points.append(
             {

@@ -250,33 +250,42 @@ def set_originals(connection: sa.Connection, originals: dict[int, int]) -> None:
         )
 
 
-def history(connection: sa.Connection, materials: Sequence[str]) -> list[tuple[Any, ...]]:
-    """Judged results of materials in active batches, oldest first, those within the laboratory's limits.
+def history(connection: sa.Connection, materials: Sequence[str] | None = None) -> list[tuple[Any, ...]]:
+    """Judged results of materials (None: all) in active batches, oldest first, those within the laboratory's limits.
 
-    Each is (material, analyte, unit, lab, day, batch, line, found, expected, z); ``day`` is the date
+    Each is (material, analyte, unit, digestion, lab, day, batch, line, found, expected, z); ``day`` is the date
     the batch was reported, else received, else imported.
     """
-    condition = "IN (SELECT value FROM json_each(?))" if raw_rows.is_sqlite(connection) else "= ANY(%s)"
-    given: Any = json.dumps(list(materials)) if raw_rows.is_sqlite(connection) else list(materials)
+    condition: str = "IS NOT NULL"
+    given: tuple[Any, ...] = ()
+    if materials is not None:
+        sqlite = raw_rows.is_sqlite(connection)
+        condition = "IN (SELECT value FROM json_each(?))" if sqlite else "= ANY(%s)"
+        given = (json.dumps(list(materials)) if sqlite else list(materials),)
     rows = connection.exec_driver_sql(
-        "SELECT o.material, c.analyte, c.unit, h.lab, coalesce(h.reported_on, h.received_on, "
+        "SELECT o.material, c.analyte, c.unit, c.digestion, h.lab, coalesce(h.reported_on, h.received_on, "
         "substr(h.imported_at, 1, 10)) AS day, h.code, a.line_no, o.found, o.expected, o.z "
         "FROM control_outcome AS o JOIN batch AS h ON h.batch_id = o.batch_id AND h.state = 'active' "
         "JOIN batch_column AS c ON c.batch_column_id = o.column_id JOIN aliquot AS a ON a.aliquot_id = o.aliquot_id "
         "JOIN result AS r ON r.aliquot_id = o.aliquot_id AND r.column_id = o.column_id AND r.qualifier = 0 "
         f"WHERE o.kind = 'reference_material' AND o.z IS NOT NULL AND o.material {condition} "
-        "ORDER BY o.material, c.analyte, c.unit, h.lab, day, h.batch_id, a.line_no",
-        (given,),
+        "ORDER BY o.material, c.analyte, c.unit, c.digestion, h.lab, day, h.batch_id, a.line_no",
+        given,
     )
     return [tuple(row) for row in rows]
 
 
 def pairs(connection: sa.Connection) -> list[tuple[Any, ...]]:
-    """Pairs of duplicates and repeats in active batches: (analyte, unit, lab, kind, original, duplicate)."""
+    """Pairs of duplicates and repeats in active batches.
+
+    Each is (analyte, unit, digestion, lab, kind, code of the duplicate, what the certificate says of its line,
+    original, duplicate).
+    """
     rows = connection.exec_driver_sql(
-        "SELECT c.analyte, c.unit, h.lab, o.kind, o.expected, o.found FROM control_outcome AS o "
-        "JOIN batch AS h ON h.batch_id = o.batch_id AND h.state = 'active' "
-        "JOIN batch_column AS c ON c.batch_column_id = o.column_id "
-        "WHERE o.kind IN ('duplicate', 'lab_repeat') AND o.z IS NOT NULL ORDER BY c.analyte, c.unit, h.lab, o.kind"
+        "SELECT c.analyte, c.unit, c.digestion, h.lab, o.kind, s.code, a.control_text, o.expected, o.found "
+        "FROM control_outcome AS o JOIN batch AS h ON h.batch_id = o.batch_id AND h.state = 'active' "
+        "JOIN batch_column AS c ON c.batch_column_id = o.column_id JOIN aliquot AS a ON a.aliquot_id = o.aliquot_id "
+        "JOIN sample AS s ON s.sample_id = a.sample_id "
+        "WHERE o.kind IN ('duplicate', 'lab_repeat') AND o.z IS NOT NULL ORDER BY h.batch_id, a.line_no, a.aliquot_id"
     )
     return [tuple(row) for row in rows]

@@ -20,6 +20,7 @@ from web.security import HEADERS
 ROOT = Path(__file__).resolve().parents[2]
 PAGES = (
     "/", "/samples", "/samples.csv", "/samples/PB-001", "/samples/PB-003", "/samples/PB-020", "/batches",
+    "/controls", "/controls?analyte=Zr",
     "/batches/Q-2041", "/targets", "/targets/porphyry_copper", "/targets/radiogenic_heat", "/methods", "/intrusions",
     "/sites", "/samples?sio2_wt_min=abc", "/samples/none", "/batches/none", "/targets/none", "/nowhere",
     "/intrusions/Aster stock", "/intrusions?target=tin", "/intrusions/none", "/sites/DH-1", "/sites/OC-7",
