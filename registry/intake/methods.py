@@ -33,7 +33,7 @@ _SPOKEN = re.compile(r"(?i)\b(icp|aas?|ms|oes|aes|xrf|naa|inaa|grav\w*|titr\w*|i
 _REMARK = re.compile(
     r"(?i)tot(al)?|calc(ulated|\.)?|recalc(ulated)?|norm(ali[sz]ed)?|anhydrous|dry|wet|raw|re-?run|rep(eat|licate)?|rpt"
     r"|dup(licate)?|check|corr(ected)?|final|best|majors?|traces?|average|avg|mean|ignited|oxides?|lab|labs|reported"
-    r"|method|by|as|whole|rock|of|low|high|ore|grade|over-?range|[a-z]"
+    r"|method|by|as|whole|rock|of|low|high|ore|grade|over|range|[a-z]"
 )
 
 

@@ -7,6 +7,7 @@ import unicodedata
 from dataclasses import dataclass
 from functools import lru_cache
 
+from registry.intake.methods import may_be_method
 from registry.intake.units import canonical_unit, split_unit
 from registry.petrology.analytes import ANALYTES
 
@@ -101,9 +102,12 @@ def read_heading(text: str) -> Heading:
     symbol = analyte_symbol(rest)
     if symbol is not None:
         return Heading(symbol, unit)
-    bracket = re.fullmatch(r"(\w*\d\w*)\s*[(\[]\s*(\w[^()\[\]]*)[)\]]", rest)
+    bracket = re.fullmatch(r"(\w+)\s*[(\[]\s*(\w[^()\[\]]*)[)\]]", rest)
     if bracket and (symbol := analyte_symbol(bracket[1])) is not None:
-        return Heading(symbol, unit, bracket[2].strip())  # an oxide, in any case
+        oxide = any(map(str.isdigit, bracket[1]))  # it is meant in any case
+        code = re.search(r"[A-Za-z]", bracket[2]) and len(bracket[2]) > 1 and may_be_method(bracket[2])
+        if oxide or (bracket[1] == symbol and code):
+            return Heading(symbol, unit, bracket[2].strip())
     found = _within(rest, unit is not None)
     if found is None:
         return Heading(unit=unit, method=rest or None)

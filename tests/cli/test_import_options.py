@@ -10,6 +10,9 @@ from pathlib import Path
 import pytest
 
 from registry.cli import main
+from registry.intake import ColumnChoice
+from registry.intake.recipes import ColumnCorrection
+from registry.reading_choices import column_said
 
 Run = Callable[..., tuple[int, str, str]]
 NEGATIVE = "Sample,SiO2 (%),Cu (ppm)\nA,66,-0.5\nB,65,30\n"
@@ -130,3 +133,89 @@ def test_remarks_of_the_registry_are_printed_with_those_of_the_file(run: Run, fi
     assert code == 0
     assert "remark: sites.csv, row 2, column 'longitude': the site lies where the coordinate system" in printed
     assert "whether longitude and latitude are exchanged" in printed
+
+
+UNKNOWN = 'Bag,Lab no,SiO2 (%),Zirconia,a=b,Cu (ppm)\nA,1,66,0.02,5,"1,234"\nB,2,65,0.03,6,-3\n'
+
+
+def test_columns_and_signs_are_corrected_kept_and_applied_to_the_same_shape(run: Run, file: Callable) -> None:
+    said = ["--column", "Zirconia=ZrO2 wt% fusion method bead 7", "--column", "a=b=Zn ppm four-acid"]
+    said += ["--column", "#6=aqua regia", "--column", "bag = sample code", "--decimal", "point", "--thousands", "comma"]
+    code, printed, errors = run(
+        "import", file("C-1.csv", UNKNOWN), "--create-samples", "--negative-means-below", *said, "--save-recipe", "x"
+    )  # fmt: skip
+    assert code == 0, errors
+    assert "ZrO2 in wt%, bead 7 (fusion)" in printed
+    assert "Zn in ppm, four acid" in printed and "Cu in ppm, aqua regia" in printed
+    second = file("C-2.csv", UNKNOWN.replace("66", "67"))
+    _, printed, errors = run("import", second, "--dry-run")
+    assert "--recipe 'x' applies it" in errors
+    code, printed, errors = run("import", second, "--dry-run", "--recipe", "x", "--verbose")
+    assert code == 0, errors
+    assert "column 'Zirconia' is ZrO2 in wt%, method bead 7, fusion" in printed
+    assert "column 'a=b' is Zn in ppm, four acid" in printed
+    assert "negative numbers mean below the limit" in printed and "decimal sign: point, as was said" in printed
+    assert "sample codes come from column 'Bag'" in printed
+    assert "mark of thousands" not in printed
+    _, printed, _ = run("import", second, "--dry-run", "--recipe", "x", "--column", "Zirconia=ignore")
+    assert "ZrO2" not in printed and "Zn in ppm" in printed
+
+
+def test_column_that_the_file_does_not_have_lists_those_it_has(run: Run, file: Callable) -> None:
+    code, _, errors = run("import", file("C-1.csv", UNKNOWN), "--create-samples", "--column", "Zirkonia=ZrO2 wt%")
+    assert code == 1
+    assert "the file has no such column; found 'Zirkonia', expected one of 'Zirconia', 'Bag', 'Lab no'" in errors
+
+
+def test_column_of_one_of_several_files_is_no_fault_of_the_others(run: Run, file: Callable) -> None:
+    first, second = file("C-1.csv", "Sample,Cu (ppm)\nA,5\n"), file("C-2.csv", "Sample,Zn (ppm)\nA,5\n")
+    said = ["--create-samples", "--column", "Zn (ppm)=xrf", "--column", "Cu (ppm)=fusion"]
+    code, printed, errors = run("import", first, second, *said, "--keep-going")
+    assert code == 0, errors
+    assert "Cu in ppm, fusion" in printed and "Zn in ppm, xrf" in printed
+    code, _, errors = run("import", first, second, *said, "--column", "Pb=ppm")
+    assert code == 1 and errors.count("found 'Pb'") == 2 and "found 'Zn" not in errors
+
+
+@pytest.mark.parametrize(
+    ("said", "words"),
+    [
+        ("Zirconia", "does not say what a column is; write HEADING=WHAT IT IS"),
+        ("=Zr", "does not say what a column is"),
+        ("Zr=", "does not say what a column is"),
+        ("x=Zr9 ppm", "'Zr9' is no analyte (such as SiO2, Fe2O3T, Zr), no unit (wt%, ppm, ppb, ppt, oz/t) and no"),
+        ("x=Zr stones", "'stones' is no analyte"),
+        ("x=Zr ppm ICP", "'ICP' is no analyte"),
+        ("x=Zr Hf", "says two analytes, Zr and Hf"),
+        ("x=ppm %", "says two units, ppm and wt%"),
+        ("x=Zr method", "no method stands after the word method"),
+    ],
+)
+def test_column_said_in_words_that_are_not_understood_ends_with_what_can_be_said(
+    run: Run, file: Callable, said: str, words: str
+) -> None:
+    code, _, errors = run("import", file("C-1.csv", UNKNOWN), "--column", said)
+    assert code == 2
+    assert words in errors
+
+
+def test_sign_with_two_meanings_is_refused(run: Run, file: Callable) -> None:
+    code, _, errors = run("import", file("C-1.csv", UNKNOWN), "--decimal", "comma", "--thousands", "comma")
+    assert code == 2 and "cannot both be the comma" in errors
+
+
+@pytest.mark.parametrize(
+    ("said", "choice"),
+    [
+        ("Au=Au, ppb, fire-assay", ColumnChoice("Au", "ppb", None, "fire_assay")),
+        ("Au=total S wt %", ColumnChoice("S", "wt%")),
+        ("Au=Fe2O3 total", ColumnChoice("Fe2O3T")),
+        ("Au=method a, b: XRF", ColumnChoice(method="a, b: XRF")),
+        ("Au=ppm Method: portable", ColumnChoice(unit="ppm", method="portable")),
+        ("Au=Unknown", ColumnChoice(digestion="unknown")),
+        ("Au=IGNORE", ColumnChoice(ignore=True)),
+        ("Au=sample_code", None),
+    ],
+)
+def test_column_said_in_words_is_understood(said: str, choice: ColumnChoice | None) -> None:
+    assert column_said(said) == ColumnCorrection("Au", choice)

@@ -1,4 +1,4 @@
-"""What a user says of single columns, signs and codes, in every layout. All tables are invented: layouts and branches."""
+"""What a user says of single columns, signs and codes, in every layout. Invented tables: layouts and branches."""
 
 from __future__ import annotations
 

@@ -4,8 +4,10 @@ from __future__ import annotations
 
 import pytest
 
-from registry.intake.methods import digestion_in
+from registry.intake import ColumnChoice, ReadingOptions, read_file
+from registry.intake.methods import digestion_in, may_be_method
 from registry.intake.names import analyte_symbol, read_heading
+from registry.intake.recipes import ColumnCorrection
 from registry.intake.units import canonical_unit, foreign_unit
 from registry.petrology.analytes import ANALYTES
 from registry.petrology.digestion import DIGESTIONS
@@ -135,3 +137,64 @@ def test_unit_of_no_mass_fraction_is_known_as_foreign():
 def test_method_text_names_the_digestion_or_none(text, digestion):
     assert digestion_in(text) == digestion
     assert digestion is None or digestion in DIGESTIONS
+
+
+@pytest.mark.parametrize(
+    "text",
+    ["XRF", "fusion", "4-acid ICP", "30g", "ME-xx81", "OG46", "2", "950C", "NAA", "AAS", "B", "total", "calc.",
+     "repeat", "Rerun", "as reported", "Lab 2", "ICP-MS", "over-range"],
+)  # fmt: skip
+def test_word_in_the_place_of_a_unit_can_be_a_method_or_a_remark(text):
+    assert may_be_method(text)
+
+
+@pytest.mark.parametrize(
+    "text",
+    ["furlong", "Furlong", "stones", "kg/t", "kg / t", "ppmv", "PPX", "mg/L", "at%", "mass fraction", "grams per ton",
+     "% by mass", "lb/ton", "cps"],
+)  # fmt: skip
+def test_unit_that_is_not_known_is_no_method(text):
+    assert not may_be_method(text)
+
+
+@pytest.mark.parametrize(
+    ("heading", "analyte", "method"),
+    [("SiO2 (XRF)", "SiO2", "XRF"), ("sio2 (xrf)", "SiO2", "xrf"), ("Zr (ME-xx81)", "Zr", "ME-xx81"),
+     ("Au (30g)", "Au", "30g"), ("Fe2O3 (T)", "Fe2O3T", None), ("U (1)", None, "U (1)"), ("Y (m)", None, "Y (m)")],
+)  # fmt: skip
+def test_bracket_behind_an_analyte_is_its_method(heading, analyte, method):
+    found = read_heading(heading)
+    assert (found.analyte, found.method) == (analyte, method)
+
+
+def read(text, **options):
+    return read_file("r.csv", text.encode(), None, ReadingOptions(**options))
+
+
+@pytest.mark.parametrize(
+    "head",
+    ["Sample,SiO2 (furlong),Zr (ppm)", "Sample,sio2 [furlong],Zr (ppm)", "Sample,SiO2,Zr\nUnit,furlong,ppm",
+     "Sample,SiO2_kg/t,Zr (ppm)", "Sample,SiO2 ppx,Zr (ppm)"],
+)  # fmt: skip
+def test_unit_that_is_not_known_is_a_problem_that_names_the_known_ones(head):
+    """Invented: taken as a method it would have let custom choose the unit."""
+    (problem,) = [one for one in read(f"{head}\nA,60,180\nB,61,181\n").problems if one.severity == "problem"]
+    assert problem.what == "the unit is not known"
+    assert problem.found in ("furlong", "kg/t", "ppx")
+    assert problem.expected == "wt% ppm ppb ppt oz/t" and "--column" in problem.remedy
+
+
+def test_unit_that_is_not_known_is_settled_by_a_known_one_beside_it_or_by_the_user():
+    beside = read("Sample,SiO2 (furlong),Zr (stones) ppm\nUnit,%,\nA,60,180\nB,61,181\n")
+    assert beside.ok and [one.unit for one in beside.results.columns] == ["wt%", "ppm"]
+    said = ColumnCorrection("SiO2 (furlong)", ColumnChoice(unit="wt%"))
+    reading = read("Sample,SiO2 (furlong),Zr (ppm)\nA,60,180\nB,61,181\n", columns=(said,))
+    assert reading.ok and [one.method for one in reading.results.columns] == [None, None]
+
+
+def test_method_in_brackets_leaves_the_unit_to_custom():
+    reading = read("Sample,SiO2 (XRF),Zr (ME-xx81),Au (30g)\nA,60,180,1\nB,61,181,2\n", unit="ppm")
+    assert reading.ok
+    assert [(one.method, one.unit) for one in reading.results.columns] == [
+        ("XRF", "ppm"), ("ME-xx81", "ppm"), ("30g", "ppm"),
+    ]  # fmt: skip
