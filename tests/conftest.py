@@ -6,19 +6,25 @@ passes by leaving something out.
 
 from __future__ import annotations
 
+import fcntl
 import os
 import pwd
 import shutil
+import subprocess
+import sys
 from collections.abc import Callable, Iterator
 from pathlib import Path
 from typing import Any, NoReturn
 
 import pytest
 
-from registry.founding import found
+import seed_demo
+from registry import accounts
+from registry.founding import build_demo, found
 from registry.store import schema
 from registry.store.engine import Registry
 
+ROOT = Path(__file__).resolve().parents[1]
 ENGINES = ["sqlite", pytest.param("postgresql", marks=pytest.mark.postgresql)]
 
 
@@ -61,20 +67,64 @@ def postgresql_server() -> Iterator[Any]:
     server.stop()
 
 
+def made_once(tmp_path_factory: pytest.TempPathFactory, name: str, make: Callable[[Path], Registry]) -> Path:
+    """A registry file that the workers of one run share: the first that asks makes it; copy it, do not write it."""
+    folder = tmp_path_factory.getbasetemp()
+    if "PYTEST_XDIST_WORKER" in os.environ:
+        folder = folder.parent
+    path = folder / f"{name}.sqlite"
+    with (folder / f"{name}.lock").open("w") as lock:
+        fcntl.flock(lock, fcntl.LOCK_EX)
+        if not path.exists():
+            coming = folder / f"{name}-coming.sqlite"
+            _settled(make(coming))
+            coming.rename(path)
+    return path
+
+
 @pytest.fixture(scope="session")
 def empty_registry_file(tmp_path_factory: pytest.TempPathFactory) -> Path:
     """An empty registry at the newest schema, made once by the migrations; copy it, do not write it."""
-    path = tmp_path_factory.mktemp("template") / "empty.sqlite"
-    _settled(schema.create(path))
-    return path
+    return made_once(tmp_path_factory, "empty", schema.create)
 
 
 @pytest.fixture(scope="session")
 def founded_registry_file(tmp_path_factory: pytest.TempPathFactory) -> Path:
     """The same with the shipped targets copied in, as ``plutonbook create`` makes it; copy it, do not write it."""
-    path = tmp_path_factory.mktemp("template") / "founded.sqlite"
-    _settled(found(path))
-    return path
+    return made_once(tmp_path_factory, "founded", found)
+
+
+@pytest.fixture(scope="session")
+def demo_file(tmp_path_factory: pytest.TempPathFactory) -> Path:
+    """The invented demo as ``plutonbook demo`` makes it; copy it, do not write it."""
+
+    def make(path: Path) -> Registry:
+        build_demo(str(path))
+        return schema.open_registry(path)
+
+    return made_once(tmp_path_factory, "demo", make)
+
+
+@pytest.fixture(scope="session")
+def postgresql_demo(postgresql_server: Any) -> str:
+    """The URL of the invented demo on PostgreSQL, made by the commands of a team; read it, do not write it."""
+    url = str(postgresql_server.new_database())
+    lab = ("--lab", "Invented laboratory")
+    for arguments in (("create",), ("import", *map(str, seed_demo.files()), *lab)):
+        command = [sys.executable, "-m", "registry.cli", *arguments, "--registry", url]
+        done = subprocess.run(command, capture_output=True, text=True, cwd=ROOT)
+        assert done.returncode == 0, done.stdout + done.stderr
+    return url
+
+
+@pytest.fixture(scope="module")
+def cheap_hashes() -> Iterator[None]:
+    """Password hashes of a thirtieth of the work, for tests that ask something else of accounts."""
+    shipped, cheap = accounts.METHOD, "scrypt:1024:8:1"
+    with pytest.MonkeyPatch.context() as patch:
+        patch.setattr(accounts, "METHOD", cheap)
+        patch.setattr(accounts, "_NOBODYS_HASH", accounts._NOBODYS_HASH.replace(shipped, cheap))
+        yield
 
 
 def _settled(registry: Registry) -> None:

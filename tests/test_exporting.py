@@ -4,8 +4,9 @@ from __future__ import annotations
 
 import csv
 import json
+import shutil
 import subprocess
-from collections.abc import Callable
+from collections.abc import Callable, Iterator
 from pathlib import Path
 
 import pytest
@@ -13,16 +14,15 @@ import sqlalchemy as sa
 
 from registry.errors import UsageError
 from registry.exporting import export_sheet
-from registry.founding import build_demo
 from registry.store.engine import Registry, open_registry, writing
 from registry.store.sheets import SHEETS
 
 
 @pytest.fixture(scope="module")
-def demo(tmp_path_factory: pytest.TempPathFactory) -> Registry:
-    path = tmp_path_factory.mktemp("export") / "demo.sqlite"
-    build_demo(str(path))
-    return open_registry(path)
+def demo(demo_file: Path, tmp_path_factory: pytest.TempPathFactory) -> Iterator[Registry]:
+    registry = open_registry(shutil.copy(demo_file, tmp_path_factory.mktemp("export") / "demo.sqlite"))
+    yield registry
+    registry.close()
 
 
 def test_export_to_xlsx_is_read_back_with_numbers_as_numbers(demo: Registry, tmp_path: Path) -> None:

@@ -111,21 +111,13 @@ def test_readme_lists_the_columns_of_the_demo_files(path: Path) -> None:
     assert listed[0] == header[0]
 
 
-@pytest.fixture(scope="module")
-def demo_registry(tmp_path_factory: pytest.TempPathFactory) -> Path:
-    path = tmp_path_factory.mktemp("readme") / "demo.sqlite"
-    run("demo", "--no-serve", "--registry", str(path))
-    return path
-
-
 @pytest.fixture(scope="module", params=["sqlite", pytest.param("postgresql", marks=pytest.mark.postgresql)])
 def demo_rows(request: pytest.FixtureRequest) -> Iterator[Callable[[str], Sequence[Any]]]:
     """A function that runs a query on the demo registry, once on each engine."""
     if request.param == "sqlite":
-        place = f"sqlite:///{request.getfixturevalue('demo_registry')}"
+        place = f"sqlite:///{request.getfixturevalue('demo_file')}"
     else:
-        place = request.getfixturevalue("postgresql_server").new_database()
-        run("demo", "--no-serve", "--registry", place)
+        place = request.getfixturevalue("postgresql_demo")
     engine = sa.create_engine(place)
     with engine.connect() as connection:
         yield lambda query: connection.exec_driver_sql(query).fetchall()
@@ -147,11 +139,8 @@ def test_readme_offers_ten_queries() -> None:
     assert len(QUERIES) == 10
 
 
-def test_readme_writing_marks_samples_and_refresh_computes_them(demo_registry: Path, tmp_path: Path) -> None:
-    path = tmp_path / "copy.sqlite"
-    connection = sqlite3.connect(demo_registry)
-    connection.execute("VACUUM INTO ?", (str(path),))
-    connection.close()
+def test_readme_writing_marks_samples_and_refresh_computes_them(demo_file: Path, tmp_path: Path) -> None:
+    path = Path(shutil.copy(demo_file, tmp_path / "copy.sqlite"))
     connection = sqlite3.connect(path)
     waiting = "SELECT count(*) FROM sample_sheet WHERE is_stale = 1"
     try:

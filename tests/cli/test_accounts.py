@@ -18,7 +18,9 @@ from registry.store import account_rows
 from registry.store.engine import Registry, reading
 
 Run = Callable[..., tuple[int, str, str]]
+METHOD, NOBODYS_HASH = accounts.METHOD, accounts._NOBODYS_HASH
 PASSWORD = "seven grey pebbles"
+pytestmark = pytest.mark.usefixtures("cheap_hashes")
 
 
 class Terminal(io.StringIO):
@@ -54,6 +56,14 @@ def rows(path: Path, query: str) -> list[tuple]:
         connection.close()
 
 
+@pytest.fixture
+def shipped_hashes(monkeypatch: pytest.MonkeyPatch) -> None:
+    """Hashes as they are shipped; the other tests of this file make cheaper ones."""
+    monkeypatch.setattr(accounts, "METHOD", METHOD)
+    monkeypatch.setattr(accounts, "_NOBODYS_HASH", NOBODYS_HASH)
+
+
+@pytest.mark.usefixtures("shipped_hashes")
 def test_account_added_by_standard_input_keeps_a_scrypt_hash_alone(run: Run, path: Path) -> None:
     code, printed, _ = run("add", "anna", stdin=f"{PASSWORD}\n")
     assert code == 0
@@ -69,6 +79,7 @@ def test_account_added_by_standard_input_keeps_a_scrypt_hash_alone(run: Run, pat
     assert rows(path, "SELECT action, subject, detail FROM audit_entry") == [("account", "anna", "added")]
 
 
+@pytest.mark.usefixtures("shipped_hashes")
 def test_account_hash_is_that_of_scrypt(run: Run, path: Path) -> None:
     """RFC 7914 by the standard library's own scrypt, over the salt that stands in the row."""
     import hashlib
@@ -278,6 +289,7 @@ def test_sign_in_with_a_very_long_password_is_wrong_and_no_fault(any_registry: R
     assert accounts.sign_in(any_registry, "anna", "p" * 1001) is None
 
 
+@pytest.mark.usefixtures("shipped_hashes")
 def test_sign_in_does_the_same_work_for_an_unknown_name(
     any_registry: Registry, monkeypatch: pytest.MonkeyPatch
 ) -> None:

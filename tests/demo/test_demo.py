@@ -10,18 +10,19 @@ from __future__ import annotations
 import csv
 import io
 import math
+import shutil
 import sqlite3
 import subprocess
 import sys
-from collections.abc import Iterator
+from collections.abc import Callable, Iterator
 from pathlib import Path
-from typing import Any
 
 import openpyxl
 import pytest
 import sqlalchemy as sa
 
 import seed_demo
+from registry.cli import main
 
 ROOT = Path(__file__).resolve().parents[2]
 FE2O3_PER_FEO = 159.687 / (2 * 71.844)
@@ -34,12 +35,30 @@ def run(*arguments: str) -> str:
 
 
 @pytest.fixture(scope="module")
-def registry(tmp_path_factory: pytest.TempPathFactory) -> Path:
-    """Made by ``create`` and ``import``, as a team makes its own."""
+def imported(tmp_path_factory: pytest.TempPathFactory) -> tuple[Path, str]:
+    """Made by ``create`` and ``import``, as a team makes its own; what the import said."""
     path = tmp_path_factory.mktemp("demo") / "district.sqlite"
     run("create", "--registry", str(path))
-    run("import", *map(str, seed_demo.files()), "--registry", str(path))
-    return path
+    return path, run("import", *map(str, seed_demo.files()), "--registry", str(path))
+
+
+@pytest.fixture(scope="module")
+def registry(imported: tuple[Path, str]) -> Path:
+    return imported[0]
+
+
+@pytest.fixture
+def called(capsys: pytest.CaptureFixture) -> Callable[..., str]:
+    """A command in this process; what it printed."""
+
+    def call(*arguments: object) -> str:
+        with pytest.raises(SystemExit) as ended:
+            main([str(argument) for argument in arguments])
+        said = capsys.readouterr()
+        assert not ended.value.code, said.out + said.err
+        return said.out
+
+    return call
 
 
 @pytest.fixture(scope="module")
@@ -288,21 +307,18 @@ def test_demo_command_builds_the_same_views_and_reuses_them(registry: Path, tmp_
     assert path.read_bytes() == before
 
 
-def test_demo_registry_passes_the_check(registry: Path) -> None:
-    run("check", "--registry", str(registry))
+def test_demo_registry_passes_the_check(registry: Path, called: Callable[..., str]) -> None:
+    called("check", "--registry", registry)
 
 
 @pytest.mark.postgresql
-def test_postgresql_holds_the_same_cells_and_verdicts(view: sqlite3.Connection, postgresql_server: Any) -> None:
-    place = postgresql_server.new_database()
-    run("create", "--registry", place)
-    run("import", *map(str, seed_demo.files()), "--registry", place)
+def test_postgresql_holds_the_same_cells_and_verdicts(view: sqlite3.Connection, postgresql_demo: str) -> None:
     queries = (
         "SELECT sample_code, sr_y, k_rb, eu_anomaly, a_cnk FROM index_sheet ORDER BY sample_code",
         "SELECT sample_code, q_wt, ab_wt, an_wt, norm_total_wt FROM norm_sheet ORDER BY sample_code",
         "SELECT sample_code, target, verdict, score_min, score_max FROM verdict_sheet ORDER BY sample_code, target",
     )
-    engine = sa.create_engine(place)
+    engine = sa.create_engine(postgresql_demo)
     with engine.connect() as connection:
         for query in queries:
             expected = sorted(tuple(row) for row in view.execute(query))
@@ -311,32 +327,28 @@ def test_postgresql_holds_the_same_cells_and_verdicts(view: sqlite3.Connection, 
     engine.dispose()
 
 
-def test_check_passes_while_samples_wait_for_their_certificate(tmp_path: Path) -> None:
+def test_check_passes_while_samples_wait_for_their_certificate(
+    founded_registry_file: Path, tmp_path: Path, called: Callable[..., str]
+) -> None:
     """Samples are entered when they are bagged; the results of half of them come weeks later."""
-    path = tmp_path / "waiting.sqlite"
-    run("create", "--registry", str(path))
-    said = run("import", *map(str, seed_demo.files()[:7]), "--registry", str(path))
+    path = shutil.copy(founded_registry_file, tmp_path / "waiting.sqlite")
+    said = called("import", *seed_demo.files()[:7], "--registry", path)
     assert "nothing was computed or judged" in said
-    run("check", "--registry", str(path))
-    said = run("import", str(seed_demo.files()[7]), "--registry", str(path))
+    called("check", "--registry", path)
+    said = called("import", seed_demo.files()[7], "--registry", path)
     assert "Computed and judged 139 samples" in said
-    run("check", "--registry", str(path))
-    said = run("import", *map(str, seed_demo.files()[:7]), "--registry", str(path))
+    called("check", "--registry", path)
+    said = called("import", *seed_demo.files()[:7], "--registry", path)
     assert "nothing was computed or judged" in said
 
 
-def test_import_counts_a_sample_of_two_certificates_once(tmp_path: Path) -> None:
-    path = tmp_path / "twice.sqlite"
-    run("create", "--registry", str(path))
-    said = run("import", *map(str, seed_demo.files()), "--registry", str(path))
-    assert "Computed and judged 707 samples" in said
+def test_import_counts_a_sample_of_two_certificates_once(imported: tuple[Path, str]) -> None:
+    assert "Computed and judged 707 samples" in imported[1]
 
 
-def test_upgrade_of_a_damaged_registry_says_so_and_leaves_it(tmp_path: Path) -> None:
+def test_upgrade_of_a_damaged_registry_says_so_and_leaves_it(demo_file: Path, tmp_path: Path) -> None:
     """INSERT OR REPLACE in another program gives a sample a new id and leaves its results without one."""
-    path = tmp_path / "damaged.sqlite"
-    run("create", "--registry", str(path))
-    run("import", *map(str, seed_demo.files()[:8]), "--registry", str(path))
+    path = Path(shutil.copy(demo_file, tmp_path / "damaged.sqlite"))
     client = sqlite3.connect(path)
     client.execute("INSERT OR REPLACE INTO sample (code, kind) VALUES ('KD001-103', 'core')")
     client.commit()

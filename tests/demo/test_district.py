@@ -6,15 +6,13 @@ the definitions of the targets find what was meant. They are no validation: rock
 
 from __future__ import annotations
 
+import shutil
 import sqlite3
 from collections.abc import Iterator
 from pathlib import Path
 
 import pytest
 
-import seed_demo
-from registry.founding import found
-from registry.importing import import_files
 from seed_demo.district import SWAPPED
 from web import create_app
 
@@ -30,12 +28,8 @@ MEANT = {
 
 
 @pytest.fixture(scope="module")
-def path(tmp_path_factory: pytest.TempPathFactory) -> Path:
-    path = tmp_path_factory.mktemp("district") / "district.sqlite"
-    registry = found(path)
-    import_files(registry, seed_demo.files())
-    registry.close()
-    return path
+def path(demo_file: Path, tmp_path_factory: pytest.TempPathFactory) -> Path:
+    return Path(shutil.copy(demo_file, tmp_path_factory.mktemp("district") / "district.sqlite"))
 
 
 @pytest.fixture(scope="module")

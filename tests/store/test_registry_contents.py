@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import hashlib
+import shutil
 import sqlite3
 from pathlib import Path
 from typing import Any
@@ -11,7 +12,7 @@ import numpy as np
 import pytest
 
 from registry.errors import NotFound, PlutonbookError
-from registry.founding import build_demo, found
+from registry.founding import found
 from registry.importing import ImportOptions, import_files
 from registry.petrology.analytes import CHOSEN_INDEX
 from registry.refresh import refresh_registry
@@ -173,21 +174,10 @@ def test_context_brings_what_is_known_around_each_sample(any_registry: Registry)
     np.testing.assert_array_equal(context["magnetic_susceptibility_si"], [0.01, np.nan, np.nan, np.nan])
 
 
-@pytest.fixture(scope="module")
-def demo_file(tmp_path_factory: pytest.TempPathFactory) -> Path:
-    path = tmp_path_factory.mktemp("demo") / "demo.sqlite"
-    build_demo(str(path))
-    return path
-
-
 @pytest.fixture
 def demo(demo_file: Path, tmp_path: Path) -> Any:
     """A copy of the invented demo registry, opened."""
-    copy = tmp_path / "demo.sqlite"
-    source = sqlite3.connect(demo_file)
-    source.execute("VACUUM INTO ?", (str(copy),))
-    source.close()
-    registry = open_registry(copy)
+    registry = open_registry(shutil.copy(demo_file, tmp_path / "demo.sqlite"))
     yield registry
     registry.close()
 
@@ -265,10 +255,8 @@ def sheet(connection: Any, name: str) -> list[tuple[Any, ...]]:
     return sorted((tuple(rounded(value) for value in row) for row in rows), key=repr)
 
 
-def test_every_view_shows_the_same_on_both_engines(demo: Registry, postgresql_server) -> None:
-    url = postgresql_server.new_database()
-    build_demo(url)
-    other = open_registry(url)
+def test_every_view_shows_the_same_on_both_engines(demo: Registry, postgresql_demo: str) -> None:
+    other = open_registry(postgresql_demo)
     with reading(demo) as here, reading(other) as there:
         for name in SHEETS:
             assert sheet(there, name) == sheet(here, name), name

@@ -24,6 +24,7 @@ from web.accounts import own_address
 from web.security import HEADERS
 
 PASSWORD = "seven grey pebbles"
+pytestmark = pytest.mark.usefixtures("cheap_hashes")
 HOSTILE = '"><script>alert(1)</script>'
 
 
@@ -69,8 +70,8 @@ def field(page: str, name: str) -> str:
 
 
 @pytest.fixture(scope="module")
-def with_accounts(invented_registry: Path, tmp_path_factory: pytest.TempPathFactory) -> Path:
-    """The invented registry with two accounts, made once: a hash takes its time."""
+def with_accounts(invented_registry: Path, cheap_hashes: None, tmp_path_factory: pytest.TempPathFactory) -> Path:
+    """The invented registry with two accounts, made once."""
     path = tmp_path_factory.mktemp("accounts") / "accounts.sqlite"
     registry = open_registry(shutil.copy(invented_registry, path))
     for name in ("anna", "berit"):

@@ -22,6 +22,7 @@ from web.attempts import MOST_KEPT, MOST_OF_ADDRESS, MOST_OF_BOTH, MOST_OF_NAME,
 
 ROOT = Path(__file__).resolve().parents[2]
 PASSWORD = "seven grey pebbles"
+pytestmark = pytest.mark.usefixtures("cheap_hashes")
 
 
 class Clock:
