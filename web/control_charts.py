@@ -91,7 +91,7 @@ def _thinned(series: Sequence[Mapping[str, Any]]) -> list[Mapping[str, Any]]:
 
 def _title(point: Mapping[str, Any], value: float) -> str:
     what = point["material"] or point["kind"].replace("_", " ")
-    text = f"line {point['line_no']}, {point['sample_code']}, {what}: found {point['found']:g}"
+    text = f"line {point['line_no']}, {point['sample_code']}, {what}: found {point.get('sign', '')}{point['found']:g}"
     if point["expected"] is not None:
         text += f", expected {point['expected']:g}"
     return f"{text}, deviation {value:+.2f}, {point['state']}"

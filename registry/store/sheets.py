@@ -138,7 +138,8 @@ SHEETS: dict[str, tuple[str, ...]] = {
     "cause_sheet": _per_sample("column_name cause text"),
     "change_sheet": _per_sample("target changed_at verdict_from verdict_to cause"),
     "control_sheet": _names(
-        "batch analyte kind expected found z state line_no sample_code material limit_low limit_high rule source"
+        "batch analyte kind expected found z state line_no sample_code material limit_low limit_high rule source "
+        "qualifier"
     ),
     "batch_sheet": _names("batch lab state file_name sha256"),
     "intrusion_sheet": _names(

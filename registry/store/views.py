@@ -191,7 +191,10 @@ def _far_samples(sample: dict[str, str]) -> str:
 
 
 def _failed_controls(sample: dict[str, str]) -> str:
-    """The remarks on values whose analyte failed its control in their batch, by the convention ``failed_control``."""
+    """The remarks on values whose analyte failed its control in their batch, by the convention ``failed_control``.
+
+    A value that a newer batch by the same digestion goes before is in no use, and so is not remarked on.
+    """
     held = "EXISTS (SELECT 1 FROM setting AS g WHERE g.name = 'convention.failed_control' AND g.value = '\"hold\"')"
     ignored = held.replace("hold", "ignore")
     said = {
@@ -207,8 +210,18 @@ def _failed_controls(sample: dict[str, str]) -> str:
         f"SELECT {columns} FROM control_state AS f JOIN batch AS h ON h.batch_id = f.batch_id AND h.state = 'active' "
         "JOIN batch_column AS b ON b.batch_column_id = f.column_id JOIN aliquot AS a ON a.batch_id = f.batch_id "
         f"JOIN sample AS s ON s.sample_id = a.sample_id AND {_JUDGED} JOIN result AS r ON r.aliquot_id = a.aliquot_id "
-        f"AND r.column_id = f.column_id AND r.value IS NOT NULL WHERE f.state = 2 AND NOT {ignored}"
+        f"AND r.column_id = f.column_id AND r.value IS NOT NULL WHERE f.state = 2 AND NOT {ignored} "
+        "AND NOT EXISTS (SELECT 1 FROM aliquot AS n JOIN batch AS m ON m.batch_id = n.batch_id AND m.state = 'active' "
+        f"AND {_age('m')} > {_age('h')} JOIN result AS v ON v.aliquot_id = n.aliquot_id AND v.value IS NOT NULL "
+        "AND v.qualifier <> 2 JOIN batch_column AS k ON k.batch_column_id = v.column_id AND k.analyte = b.analyte "
+        "AND k.digestion = b.digestion WHERE n.sample_id = a.sample_id AND n.repeat_no = 0)"
     )
+
+
+def _age(batch: str) -> str:
+    """What batches are put in order by, as the choice of values does."""
+    day = f"coalesce({batch}.reported_on, {batch}.received_on, substr({batch}.imported_at, 1, 10))"
+    return f"({day}, {batch}.imported_at, {batch}.batch_id)"
 
 
 def _place_of(column: str) -> str | None:
@@ -253,10 +266,12 @@ def _register_sheets(dialect: Any, sample: dict[str, str]) -> dict[str, tuple[di
                 "state": _words("o.state", dict(enumerate(CONTROL_STATE_WORDS))),
                 "line_no": "a.line_no",
                 "sample_code": "s.code",
+                "qualifier": _words("r.qualifier", signs),
             },
             "control_outcome AS o JOIN batch AS h ON h.batch_id = o.batch_id JOIN batch_column AS b ON "
             "b.batch_column_id = o.column_id JOIN aliquot AS a ON a.aliquot_id = o.aliquot_id "
-            "JOIN sample AS s ON s.sample_id = a.sample_id",
+            "JOIN sample AS s ON s.sample_id = a.sample_id "
+            "LEFT JOIN result AS r ON r.aliquot_id = o.aliquot_id AND r.column_id = o.column_id",
         ),
         "intrusion_sheet": (
             {

@@ -153,6 +153,8 @@ def test_censored_control_fails_its_batch_and_stays_out_of_the_history(any_regis
     text = "Sample,Zr fusion (ppm)\nR1,<1\nR2,<1\nC0,102\nC1,<50\nC2,>60\nC3,98\n"
     bring(any_registry, tmp_path, {"certificates.csv": CERTIFICATES, "samples.csv": listed, "K1.csv": text})
     assert [row[4] for row in sheet(any_registry, SHEET)] == ["passed", "failed", "not judged", "passed"]
+    signs = sheet(any_registry, "SELECT qualifier FROM control_sheet ORDER BY line_no")
+    assert signs == [(None,), ("<",), (">",), (None,)]
     with reading(any_registry) as connection:
         (zr,) = trends(connection, ["XM-1"])
     assert (zr["results"], zr["bias_percent"]) == (2, 0.0)
@@ -180,3 +182,18 @@ def test_drift_over_time_goes_by_the_dates_that_the_certificates_state(any_regis
     set_state(any_registry, "Q-4", "active")
     with reading(any_registry) as connection:
         assert trends(connection, ["XM-1"])[0]["results"] == 4
+
+
+def test_mark_of_a_failed_control_goes_with_the_reassay_that_replaces_its_value(
+    any_registry: Registry, tmp_path: Path
+) -> None:
+    """R1 is analysed again and passes; R2 is not, and stays marked. Withdrawing the second brings the mark back."""
+    listed = "sample_code,sample_kind,reference_material\nR1,core,\nR2,core,\nC1,reference_material,XM-1\n"
+    first = {"K1.csv": "Sample,Zr fusion (ppm)\nR1,300\nR2,250\nC1,150\n"}
+    bring(any_registry, tmp_path, {"certificates.csv": CERTIFICATES, "samples.csv": listed, **first})
+    marked = "SELECT sample_code, value FROM warning_sheet WHERE code = 'failed_control' ORDER BY 1"
+    assert sheet(any_registry, marked) == [("R1", 300.0), ("R2", 250.0)]
+    bring(any_registry, tmp_path, {"K2.csv": "Sample,Zr fusion (ppm),Y (ppm)\nR1,200,9\nR2,,9\nC1,101,9\n"})
+    assert sheet(any_registry, marked) == [("R2", 250.0)]
+    set_state(any_registry, "K2", "withdrawn")
+    assert sheet(any_registry, marked) == [("R1", 300.0), ("R2", 250.0)]

@@ -6,6 +6,7 @@ from typing import Any
 
 from sqlalchemy import Connection, text
 
+from registry.petrology.analytes import QUALIFIER_SIGNS
 from registry.store.sheets import ANALYTE_STATE_WORDS, CONTROL_STATE_WORDS
 
 #: What a batch without judged controls is called.
@@ -88,7 +89,8 @@ def batch_controls(connection: Connection, batch_id: int) -> dict[str, Any]:
 
     ``analytes`` is a list in file order, each with ``column_id analyte unit method digestion``, its ``state``,
     ``remarks`` and numbers (None where nothing of it was judged) and ``series``: the results in line order, dicts of
-    ``line_no sample_code kind material found expected z limit_low limit_high state rule source``.
+    ``line_no sample_code kind material found expected z limit_low limit_high state rule source sign`` (sign: ``<``,
+    ``>`` or nothing before what was found).
     """
     states = {state["column_id"]: state for state in analyte_states(connection, batch_id)}
     series: dict[int, list[dict[str, Any]]] = {}
@@ -98,9 +100,10 @@ def batch_controls(connection: Connection, batch_id: int) -> dict[str, Any]:
             """
             SELECT o.column_id, c.analyte, c.unit, c.method, c.digestion, c.detection_limit, a.line_no,
                 s.code AS sample_code, o.kind, o.material, o.found, o.expected, o.z, o.limit_low, o.limit_high,
-                o.state, o.rule, o.source
+                o.state, o.rule, o.source, r.qualifier AS sign
             FROM control_outcome AS o JOIN batch_column AS c ON c.batch_column_id = o.column_id
             JOIN aliquot AS a ON a.aliquot_id = o.aliquot_id JOIN sample AS s ON s.sample_id = a.sample_id
+            LEFT JOIN result AS r ON r.aliquot_id = o.aliquot_id AND r.column_id = o.column_id
             WHERE o.batch_id = :batch_id ORDER BY c.position, a.line_no, a.aliquot_id
             """
         ),
@@ -111,6 +114,7 @@ def batch_controls(connection: Connection, batch_id: int) -> dict[str, Any]:
         described.setdefault(row["column_id"], {name: row[name] for name in of_column})
         point = {name: value for name, value in row.items() if name not in of_column}
         point["state"] = CONTROL_STATE_WORDS[row["state"]]
+        point["sign"] = QUALIFIER_SIGNS[row["sign"] or 0]
         series.setdefault(row["column_id"], []).append(point)
     nothing = {"state": None, "remarks": "", "reference_results": 0, "blank_results": 0, "pairs": 0}
     analytes = [
