@@ -17,6 +17,7 @@ from pathlib import Path
 from typing import Any, NoReturn
 
 import pytest
+from hypothesis import HealthCheck, settings
 
 import seed_demo
 from registry import accounts
@@ -24,6 +25,10 @@ from registry.founding import build_demo, found
 from registry.store import schema
 from registry.store.engine import Registry
 
+#: Examples of a generated test. Every day a few that differ from run to run; in CI many, the same every time.
+settings.register_profile("everyday", max_examples=25, deadline=5_000, suppress_health_check=[HealthCheck.too_slow])
+settings.register_profile("ci", settings.get_profile("everyday"), max_examples=100, derandomize=True)
+settings.load_profile("ci" if os.environ.get("CI") else "everyday")
 ROOT = Path(__file__).resolve().parents[1]
 ENGINES = ["sqlite", pytest.param("postgresql", marks=pytest.mark.postgresql)]
 

@@ -1,26 +1,14 @@
 """Hypothesis strategies: invented analyses, inside and far outside what rocks have.
 
-Importing this module sets the profile of the generated tests: the same examples every time in CI, and time enough for
-a busy machine.
+How many examples a generated test gets is set in ``tests/conftest.py``.
 """
 
 from __future__ import annotations
 
-import os
-
 import numpy as np
-from hypothesis import HealthCheck, settings
 from hypothesis import strategies as st
 
 from registry.petrology.norm import NORM_OXIDES
-
-settings.register_profile(
-    "plutonbook",
-    deadline=5_000,
-    derandomize=bool(os.environ.get("CI")),
-    suppress_health_check=[HealthCheck.too_slow],
-)
-settings.load_profile("plutonbook")
 
 #: Upper ends of the ranges of igneous rocks and beyond, wt% (common practice, no source).
 OXIDE_TOPS = {

@@ -7,7 +7,7 @@ import io
 from dataclasses import dataclass
 
 import numpy as np
-from hypothesis import HealthCheck, given, settings
+from hypothesis import given, settings
 from hypothesis import strategies as st
 
 from registry.intake import Reading, read_file
@@ -129,14 +129,14 @@ def written_long_or_turned(draw: st.DrawFn) -> tuple[Table, bytes, bool]:
     return table, stream.getvalue().encode(draw(st.sampled_from(("utf-8", "utf-16")))), turned
 
 
-@settings(max_examples=200, deadline=None, suppress_health_check=[HealthCheck.too_slow])
+@settings(max_examples=2 * settings.default.max_examples, deadline=None)
 @given(written_long_or_turned())
 def test_long_or_turned_table_reads_back_the_same(case):
     table, data, _ = case
     check_same(table, read_file("random.csv", data, "results"))
 
 
-@settings(max_examples=300, deadline=None, suppress_health_check=[HealthCheck.too_slow])
+@settings(max_examples=3 * settings.default.max_examples, deadline=None)
 @given(written())
 def test_table_in_a_random_wide_layout_reads_back_the_same(case):
     table, data = case
