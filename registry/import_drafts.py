@@ -7,7 +7,7 @@ from __future__ import annotations
 
 import re
 from collections.abc import Callable, Iterable
-from dataclasses import dataclass, field
+from dataclasses import dataclass, field, replace
 from pathlib import Path
 from typing import Any, ClassVar, Self
 
@@ -39,9 +39,17 @@ class DraftFile:
     parts: list[str] = field(default_factory=list)
     looked: list[dict[str, Any]] = field(default_factory=list)
 
+    def read_with(self, recipe: Recipe | None, name: str | None) -> None:
+        """Have it read with a saved recipe (or without any word of the user); what it says of the file is shown."""
+        self.recipe_name, self.recipe = name, None if recipe is None else recipe.to_json()
+        self.negative_means_below = recipe is not None and recipe.negative_means_below
+        self.unit = None if recipe is None else recipe.unit
+
     def choice(self) -> FileChoice:
         """The choices as the import takes them."""
         recipe = None if self.recipe is None else Recipe.from_json(self.recipe)
+        if recipe is not None:  # what the page says of the whole file goes before what was saved
+            recipe = replace(recipe, unit=self.unit, negative_means_below=self.negative_means_below)
         options = ReadingOptions(
             recipe=recipe,
             sheet=self.sheet,

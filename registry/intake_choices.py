@@ -3,12 +3,14 @@
 from __future__ import annotations
 
 from collections import Counter
-from collections.abc import Mapping, Sequence
+from collections.abc import Collection, Mapping, Sequence
 from dataclasses import dataclass, replace
 from typing import Any
 
 from registry.errors import Problem
 from registry.intake import KINDS, ColumnChoice, Reading, Recipe, ResultTable
+from registry.intake.corrections import column_keys
+from registry.intake.names import read_heading
 from registry.intake.units import CANONICAL_UNITS
 from registry.petrology.analytes import ANALYTES, CHOSEN_INDEX, WT_PERCENT_PER_UNIT
 from registry.petrology.digestion import (
@@ -22,6 +24,10 @@ from registry.petrology.digestion import (
 )
 
 KIND_NAMES = KINDS
+#: What the signs in numbers and between cells are called.
+DECIMALS = {"point": ".", "comma": ","}
+THOUSANDS = {"point": ".", "comma": ",", "space": " ", "apostrophe": "'", "none": ""}
+SEPARATORS = {"comma": ",", "semicolon": ";", "tab": "\t", "bar": "|"}
 UNIT_NAMES = CANONICAL_UNITS
 ANALYTE_NAMES = tuple(ANALYTES)
 TIMES = "\N{MULTIPLICATION SIGN}"
@@ -121,29 +127,55 @@ def use_words(analyte: str, unit: str, digestion: str, reports_silica: bool) -> 
     return words + (f"; a minimum by {DIGESTION_WORDS[code]}" if carried == MINIMUM else "")
 
 
-def ignored_columns(recipe: str | None, shown: Sequence[Mapping[str, Any]], made: str | None) -> list[dict[str, Any]]:
-    """The columns of a table that a recipe leaves out, in the form of those shown, so that they can be taken in again.
+def ignored_columns(recipe: str | None, looked: Mapping[str, Any]) -> list[dict[str, Any]]:
+    """The columns of a table that were named but not read, in the form of those read, so that they can be taken in.
 
-    ``recipe`` and ``made`` (the recipe of the reading, which knows the headings of the table) are JSON.
+    ``recipe`` (JSON) is what the table was read with, ``looked`` its description.
     """
     if recipe is None:
         return []
-    known = {column["header"] for column in shown}
-    headings = None if made is None else set(Recipe.from_json(made).shape)
+    read = {column["header"] for column in looked["columns"]}
+    there = set(looked["ignored"]) | _headings(looked["recipe"])
     return [
-        {
-            "header": header,
-            "analyte": choice.analyte or "",
-            "unit": choice.unit or "",
-            "method": choice.method or "",
-            "digestion": choice.digestion or "unknown",
-            "detection_limit": None,
-            "ignore": choice.ignore,
-            "use": "left out" if choice.ignore else "no results in it",
-        }
+        _column_not_read(
+            header, choice, "left out" if choice.ignore else "no results in it" if choice.analyte else "not read"
+        )
         for header, choice in Recipe.from_json(recipe).columns.items()
-        if header not in known and (headings is None or header in headings)
+        if header not in read and (not there or header in there) and (choice.ignore or choice.analyte)
     ]
+
+
+def unread_columns(looked: Mapping[str, Any], listed: Sequence[Mapping[str, Any]]) -> list[dict[str, Any]]:
+    """The columns of a table that are not taken as results and stand nowhere else, in the form of those that are."""
+    if not looked["columns"]:
+        return []
+    known = {column["header"] for column in listed}
+    return [
+        _column_not_read(header, ColumnChoice(unit=read_heading(header).unit), "not read")
+        for header in looked["ignored"]
+        if header not in known
+    ]
+
+
+def _column_not_read(header: str, choice: ColumnChoice, use: str) -> dict[str, Any]:
+    return {
+        "header": header,
+        "analyte": choice.analyte or "",
+        "unit": choice.unit or "",
+        "method": choice.method or "",
+        "digestion": choice.digestion or "unknown",
+        "detection_limit": None,
+        "ignore": choice.ignore,
+        "use": use,
+    }
+
+
+def _headings(made: str | None) -> set[str]:
+    """The columns that the recipe of a reading (JSON) knows."""
+    if made is None:
+        return set()
+    recipe = Recipe.from_json(made)
+    return {*column_keys(recipe.shape), *recipe.columns}
 
 
 def recipe_from(made: Sequence[str], chosen: str | None) -> Recipe:
@@ -159,20 +191,41 @@ def recipe_from(made: Sequence[str], chosen: str | None) -> Recipe:
         sample_header=given.sample_header or (first.sample_header if len(recipes) == 1 else None),
         separator=given.separator,
         decimal=given.decimal,
+        thousands=given.thousands,
+        digestion=given.digestion,
     )
 
 
-def recipe_of_table(made: str | None, chosen: str | None) -> Recipe:
+def recipe_of_table(looked: Mapping[str, Any], chosen: str | None) -> Recipe:
     """The recipe of one table of a file, to be saved under a name: its own headings and columns only."""
+    made = looked["recipe"]
     recipe = recipe_from([made] if made else [], chosen)
-    own = set(recipe.shape) | (set(Recipe.from_json(made).columns) if made else set())
-    return replace(recipe, columns={header: choice for header, choice in recipe.columns.items() if header in own})
+    own = _headings(made) | set(looked["ignored"])
+    return replace(
+        recipe,
+        columns={header: choice for header, choice in recipe.columns.items() if header in own},
+        decimal=recipe.decimal or (None if made is None else Recipe.from_json(made).decimal),
+    )
+
+
+def of_whole_file(recipe: Recipe, unit: str | None, negative_means_below: bool) -> Recipe:
+    """The recipe with what is said of every column at once."""
+    return replace(recipe, unit=unit, negative_means_below=negative_means_below)
 
 
 def corrected_recipe(
-    recipe: Recipe, wishes: Sequence[ColumnWish], sample_header: str, separator: str, decimal: str
+    recipe: Recipe,
+    wishes: Sequence[ColumnWish],
+    given_up: Collection[str],
+    sample_header: str,
+    separator: str,
+    decimal: str,
+    thousands: str,
 ) -> Recipe:
-    """The recipe of a reading with what a person says of its columns put in; empty words leave it to the intake."""
+    """The recipe of a reading with what a person says of its columns put in; empty words leave it to the intake.
+
+    Of the columns ``given_up`` nothing is said any more; ``thousands`` is a name of ``THOUSANDS``.
+    """
     columns = {
         wish.header: ColumnChoice(
             wish.analyte or None, wish.unit or None, wish.method or None, wish.digestion or None, wish.ignore
@@ -181,10 +234,11 @@ def corrected_recipe(
     }
     return replace(
         recipe,
-        columns={**recipe.columns, **columns},
+        columns={header: said for header, said in {**recipe.columns, **columns}.items() if header not in given_up},
         sample_header=sample_header or recipe.sample_header,
         separator=separator or None,
         decimal=decimal or None,
+        thousands=THOUSANDS.get(thousands),
     )
 
 

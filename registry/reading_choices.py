@@ -15,12 +15,8 @@ from registry.intake.corrections import NO_SUCH_COLUMN
 from registry.intake.names import analyte_symbol
 from registry.intake.recipes import ColumnCorrection
 from registry.intake.units import CANONICAL_UNITS, canonical_unit
+from registry.intake_choices import DECIMALS, SEPARATORS, THOUSANDS
 from registry.store.engine import Registry
-
-#: What the signs in numbers and between cells are called on the command line.
-DECIMALS = {"point": ".", "comma": ","}
-THOUSANDS = {"point": ".", "comma": ",", "space": " ", "apostrophe": "'", "none": ""}
-SEPARATORS = {"comma": ",", "semicolon": ";", "tab": "\t", "bar": "|"}
 
 
 def reading_options(

@@ -4,23 +4,28 @@ from __future__ import annotations
 
 import re
 from collections.abc import Iterator, Mapping, Sequence
+from dataclasses import replace
 from typing import Any
 
 from werkzeug.datastructures import MultiDict
 
 from registry.import_drafts import Draft, DraftFile
 from registry.intake_choices import (
+    THOUSANDS,
     WEIGHED,
     ColumnWish,
     corrected_recipe,
     ignored_columns,
+    of_whole_file,
     recipe_from,
     recipe_of_table,
     recipe_text,
+    unread_columns,
 )
 
 SEPARATORS = {"": "as understood", ",": "comma", ";": "semicolon", "\t": "tab", "|": "vertical bar"}
 DECIMALS = {"": "as understood", ".": "point", ",": "comma"}
+THOUSANDS_WORDS = {"": "as understood", **{name: name for name in THOUSANDS}, "none": "none; it is a fault"}
 DIPS = {"": "negative, as is usual", "down": "positive downwards (they are turned)", "up": "positive upwards"}
 #: What the command line calls a thing, and where it stands on this page.
 _PAGE_WORDS = (
@@ -98,23 +103,44 @@ def take_choices(file: DraftFile, number: int, form: MultiDict[str, str]) -> boo
 
 
 def _take_recipe(file: DraftFile, number: int, form: MultiDict[str, str]) -> None:
-    wishes, changed = [], False
+    wishes, given_up, changed = [], [], False
     for table in range(len(file.looked)):
         key = table_key(number, table)
         said = {column["header"]: column for column in shown_columns(file, table)}
+        unread = {column["header"]: column for column in spare_columns(file, table)}
         for wish in _wishes(key, form):
+            column = said.get(wish.header) or unread.get(wish.header)
+            if wish.header in unread and not wish.analyte:
+                continue  # it stays what it is, no result
+            if column is not None and column["analyte"] and not wish.analyte and not wish.ignore:
+                given_up.append(wish.header)  # what was said of it counts no more
+                continue
+            if column is not None and (wish.header in unread or wish.method != column["method"]):
+                wish = _digestion_of_method(wish)
             wishes.append(wish)
-            column = said.get(wish.header)
             changed |= column is None or (wish.analyte, wish.unit, wish.method, wish.digestion, wish.ignore) != (
                 column["analyte"], column["unit"], column["method"], column["digestion"], column["ignore"],
             )  # fmt: skip
     recipe = current_recipe(file)
-    shown = {"sample_header": code_column(file), "separator": recipe.separator or "", "decimal": recipe.decimal or ""}
+    shown = {
+        "sample_header": code_column(file), "separator": recipe.separator or "", "decimal": recipe.decimal or "",
+        "thousands": thousands_name(recipe),
+    }  # fmt: skip
     wanted = {name: form.get(f"{name}-{number}", shown[name]) for name in shown}
-    if changed or wanted != shown:
+    if changed or given_up or wanted != shown:
         if len(file.looked) > 1 and wanted["sample_header"] == shown["sample_header"]:
             wanted["sample_header"] = ""  # each table has a column of its own
-        file.recipe = recipe_text(corrected_recipe(recipe, wishes, **wanted))
+        file.recipe = recipe_text(corrected_recipe(recipe, wishes, given_up, **wanted))
+
+
+def _digestion_of_method(wish: ColumnWish) -> ColumnWish:
+    """A column whose method was stated anew: its digestion, if it is not known, is read from the method."""
+    return replace(wish, digestion="") if wish.digestion == "unknown" else wish
+
+
+def thousands_name(recipe: Any) -> str:
+    """What the sign of thousands of a recipe is called, empty where none is said."""
+    return next((name for name, sign in THOUSANDS.items() if sign == recipe.thousands), "")
 
 
 def _wishes(key: str, form: MultiDict[str, str]) -> Iterator[ColumnWish]:
@@ -131,8 +157,10 @@ def _wishes(key: str, form: MultiDict[str, str]) -> Iterator[ColumnWish]:
 def current_recipe(file: DraftFile, table: int | None = None) -> Any:
     """The recipe that a file, or one of its tables, was last read with, completed by what was understood."""
     if table is not None:
-        return recipe_of_table(file.looked[table]["recipe"], file.recipe)
-    return recipe_from([looked["recipe"] for looked in file.looked if looked["recipe"]], file.recipe)
+        recipe = recipe_of_table(file.looked[table], file.recipe)
+    else:
+        recipe = recipe_from([looked["recipe"] for looked in file.looked if looked["recipe"]], file.recipe)
+    return of_whole_file(recipe, file.unit, file.negative_means_below)
 
 
 def code_column(file: DraftFile) -> str:
@@ -142,7 +170,17 @@ def code_column(file: DraftFile) -> str:
 def shown_columns(file: DraftFile, table: int) -> list[dict[str, Any]]:
     """The columns of a table of results as the page lists them: those read, then those left out."""
     looked = file.looked[table]
-    return list(looked["columns"]) + ignored_columns(file.recipe, looked["columns"], looked["recipe"])
+    return list(looked["columns"]) + ignored_columns(file.recipe, looked)
+
+
+def spare_columns(file: DraftFile, table: int) -> list[dict[str, Any]]:
+    """The other columns of a table of results: a person can make results of them."""
+    return unread_columns(file.looked[table], shown_columns(file, table))
+
+
+def column_words(header: str) -> str:
+    """What a column is called on the page: its heading, or its number where it has none."""
+    return f"column {header[1:]}, without heading" if re.fullmatch(r"#\d+", header) else header or "without heading"
 
 
 def grouped_problems(problems: Sequence[Mapping[str, Any]]) -> list[dict[str, Any]]:

@@ -36,6 +36,7 @@ def register(app: Flask) -> None:
     # a table of 2,000 columns has some 12,000 fields
     app.config["MAX_FORM_PARTS"] = 50_000
     app.config["MAX_FORM_MEMORY_SIZE"] = 8 * 1024 * 1024
+    app.jinja_env.filters["column_words"] = import_form.column_words
     app.jinja_env.filters["page_words"] = import_form.page_words
     app.jinja_env.filters["grouped_problems"] = import_form.grouped_problems
     app.jinja_env.filters["precedence_words"] = import_form.precedence_words
@@ -124,6 +125,7 @@ def _page(draft: Draft, notice: str = "", fault: str = "") -> Any:
         digestions=DIGESTION_NAMES,
         separators=import_form.SEPARATORS,
         decimals=import_form.DECIMALS,
+        thousands=import_form.THOUSANDS_WORDS,
         dips=import_form.DIPS,
     )
 
@@ -139,6 +141,7 @@ def _file_view(draft: Draft, number: int) -> dict[str, Any]:
                 "key": import_form.table_key(number, table),
                 "looked": looked,
                 "columns": import_form.shown_columns(file, table),
+                "unread": import_form.spare_columns(file, table),
                 "proposed": reading_recipes.proposed_names(working.jobs().registry, own.shape),
             }
         )
@@ -153,9 +156,16 @@ def _file_view(draft: Draft, number: int) -> dict[str, Any]:
         "problems": import_form.problems_of(draft, file, "problem"),
         "warnings": import_form.problems_of(draft, file, "warning"),
         "code": import_form.code_column(file),
-        "headings": [heading for heading in dict.fromkeys(recipe.shape) if heading],
+        "headings": _headings(file, recipe.shape),
         "recipe": recipe,
+        "thousands": import_form.thousands_name(recipe),
     }
+
+
+def _headings(file: DraftFile, shape: tuple[str, ...]) -> list[str]:
+    """The columns that can hold the sample codes: those with a heading, then those without one that hold anything."""
+    without = [header for looked in file.looked for header in looked["ignored"] if header.startswith("#")]
+    return [heading for heading in dict.fromkeys([*shape, *without]) if heading]
 
 
 @blueprint.post("/import/<draft_id>")
@@ -195,10 +205,8 @@ def _place(draft: Draft, text: str) -> tuple[DraftFile, int]:
 def _use_reading(draft: Draft, argument: str, use: bool) -> None:
     """Read a file with the saved reading chosen in its form, or without any."""
     file, _ = _place(draft, argument)
-    file.recipe_name = request.form.get(f"saved-{argument}") if use else None
-    file.recipe = None
-    if file.recipe_name is not None:
-        file.recipe = reading_recipes.find_recipe(working.jobs().registry, file.recipe_name).to_json()
+    name = request.form.get(f"saved-{argument}") if use else None
+    file.read_with(None if name is None else reading_recipes.find_recipe(working.jobs().registry, name), name)
 
 
 def _save_reading(draft: Draft, argument: str) -> Any:

@@ -84,7 +84,12 @@ def arrange(
         assert layout is not None
         if wanted is not None and place_of(wanted, layout.labels) is None:
             say_no_such_column(wanted, layout.labels, findings)
-        return _gathered(source, layout, preview, named, findings, understood)
+        arranged = _gathered(source, layout, preview, named, findings, understood)
+        plain = find_long_layout(preview)
+        if arranged is not None and plain is not None:  # a shape that is the same before and after a correction
+            own = [column.header for column in arranged.layout.columns if column.heading.analyte is not None]
+            arranged.layout.own_labels = [plain.labels[plain.roles["sample"]], arranged.layout.labels[1], *own]
+        return arranged
     if arrangement == TURNED:
         return _turned(source, preview, lines, findings, understood)
     wide = find_wide_layout(preview, _headings_named(preview, named))

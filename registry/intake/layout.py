@@ -49,10 +49,12 @@ class WideLayout:
     titles: list[str] = field(default_factory=list)
     #: unknown analytes of a long table: no columns, though a recipe could make them some
     unread: list[str] = field(default_factory=list)
+    #: the headings as they are without any word of the user, where his words change ``labels`` (of a long table)
+    own_labels: list[str] | None = None
 
     @property
     def shape(self) -> tuple[str, ...]:
-        return tuple(self.labels)
+        return tuple(self.labels if self.own_labels is None else self.own_labels)
 
 
 def _clean(cell: str) -> str:

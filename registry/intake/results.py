@@ -110,10 +110,11 @@ def read_results(
     ignored += layout.unread
     _say_ignored(layout, used, control, findings, understood)
     table = _table(layout, columns, body, titles, tuple(ignored), findings, understood)
-    others_said = {key: recipe.columns[key] for key in keys if key in recipe.columns}
+    said = {key: recipe.columns[key] for key in keys if key in recipe.columns}
+    said |= {one.header: ColumnChoice(one.analyte, one.unit or None, one.method, one.digestion) for one in columns}
     made = Recipe(
         shape=layout.shape,
-        columns=others_said | {c.header: ColumnChoice(c.analyte, c.unit, c.method, c.digestion) for c in columns},
+        columns=said,
         sample_header=keys[layout.code.position],
         separator=options.separator or recipe.separator,
         decimal=decimal if sure else None,
@@ -158,6 +159,11 @@ def _settle_decimal(
     understood: list[str],
 ) -> tuple[str, bool]:
     """The decimal sign, and whether somebody said it or the numbers settle it."""
+    if given is not None and given == thousands:
+        findings.add(
+            "one sign is named for decimals and for thousands", found=given,
+            expected="two signs", remedy="say another with --decimal, or none for the thousands",
+        )  # fmt: skip
     if given not in (".", ",") and thousands in (".", ","):
         given = "," if thousands == "." else "."
     if given in (".", ","):
