@@ -116,5 +116,6 @@ def _successor(connection: Any, file: str, code: str, other: dict[str, Any] | No
         return Place(code), [Problem(file, what, remedy=remedy)]
     other = batches.counting_for(connection, other["batch_id"]) or other
     inherited = {name: other[name] for name in ("lab", "received_on", "reported_on", "part_of")}
-    code = batches.free_code(connection, code, " corrected ")
+    if batches.find_batch(connection, code) is not None:
+        code = batches.free_code(connection, code, " corrected ")
     return Place(code, supersedes=other["batch_id"], **inherited), []

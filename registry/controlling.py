@@ -192,9 +192,12 @@ def state_of_batch(connection: Any, batch_id: int) -> list[str]:
             "reference-materials, or name it in the sample list"
         )
     if not states:
-        return [*lines, "none of them could be judged (no reference values, detection limits or originals)"]
+        return [*lines, "none of them could be judged (no reference values, detection limits, originals or digestions)"]
     tally = Counter(state["state"] for state in states)
     told = ", ".join(f"{tally[word]} of {len(states)} analytes: {word}" for word in STATE_WORDS if tally[word])
+    others = len(quality_rows.batch_columns(connection, batch_id)) - len(states)
+    if others:
+        told += f"; {others:,} {'column has' if others == 1 else 'columns have'} no control that could be judged"
     lines.append(f"batch {_worst(states)} ({told})")
     remarked = [state for state in states if state["state"] != STATE_WORDS[0]]
     remarked.sort(key=lambda state: -STATE_WORDS.index(state["state"]))

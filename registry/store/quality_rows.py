@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import json
-from collections.abc import Iterable, Sequence
+from collections.abc import Iterable, Iterator, Sequence
 from dataclasses import dataclass
 from typing import Any
 
@@ -214,13 +214,14 @@ def samples_of_batch(connection: sa.Connection, batch_id: int) -> list[int]:
     return list(connection.execute(query).scalars())
 
 
-def stale_unknown_samples(connection: sa.Connection) -> list[tuple[int, str]]:
+def stale_unknown_samples(connection: sa.Connection) -> Iterator[tuple[int, str]]:
     """(id, code) of stale samples of the kind ``unknown``: those that a code pattern may call controls."""
     rows = connection.exec_driver_sql(
         "SELECT s.sample_id, s.code FROM stale AS z JOIN sample AS s ON s.sample_id = z.sample_id "
         "WHERE s.kind = 'unknown' AND z.level = 1"
     )
-    return [(row[0], row[1]) for row in rows]
+    for row in rows:
+        yield row[0], row[1]
 
 
 def kinds_of(connection: sa.Connection, codes: Iterable[str]) -> dict[str, str]:

@@ -197,3 +197,11 @@ def test_mark_of_a_failed_control_goes_with_the_reassay_that_replaces_its_value(
     assert sheet(any_registry, marked) == [("R2", 250.0)]
     set_state(any_registry, "K2", "withdrawn")
     assert sheet(any_registry, marked) == [("R1", 300.0), ("R2", 250.0)]
+
+
+def test_columns_without_a_judged_control_are_counted_beside_the_state(any_registry: Registry, tmp_path: Path) -> None:
+    """A batch that passes for one analyte of three says so."""
+    listed = "sample_code,sample_kind,reference_material\nR1,core,\nC1,reference_material,XM-1\n"
+    text = "Sample,Zr fusion (ppm),Y (ppm),Cu fusion (ppm)\nR1,120,9,8\nC1,101,9,7\n"
+    report = bring(any_registry, tmp_path, {"certificates.csv": CERTIFICATES, "samples.csv": listed, "K1.csv": text})
+    assert told(report)[1] == "batch passes (1 of 1 analytes: passes; 2 columns have no control that could be judged)"
