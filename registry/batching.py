@@ -88,6 +88,13 @@ def set_digestions(
     return {"batch": code, **recomputed_after(registry, change, what, cause, dry_run, progress=progress, tell=tell)}
 
 
+def counting_instead(registry: Registry, code: str) -> str | None:
+    """The code of the batch that counts in the place of a withdrawn or superseded one; None where none does."""
+    with reading(registry) as connection:
+        counting = batches.counting_for(connection, _known(connection, code)["batch_id"])
+    return None if counting is None or counting["batch"] == code else counting["batch"]
+
+
 def columns_of(registry: Registry, code: str) -> list[dict[str, Any]]:
     """The columns of a batch: ``position header analyte unit method digestion``; NotFound for an unknown batch."""
     with reading(registry) as connection:

@@ -72,10 +72,13 @@ def _run(jobs: Jobs, change: Change) -> None:
         return WORKING, words(what, done, total, trial=change.trial)
 
     change.report = _made(jobs.registry, change, jobs.watched(change, say), jobs.told(change))
+    samples, verdicts = change.report["recomputed"], change.report.get("verdicts_changed", 0)
+    named = f"{verdicts:,} {'verdict' if verdicts == 1 else 'verdicts'}"
     if change.trial:
-        jobs.end(change, TRIED, "Tried out; nothing is changed yet.")
+        jobs.end(change, TRIED, f"{named} would change; nothing is changed yet.")
     else:
-        jobs.end(change, DONE, "Changed.")
+        computed = f"{samples:,} {'sample' if samples == 1 else 'samples'} computed anew"
+        jobs.end(change, DONE, f"{computed}, {named} changed." if change.action != REFRESH else f"{computed}.")
 
 
 def _made(registry: Registry, change: Change, progress: Progress, tell: Callable[[str], Any]) -> dict[str, Any]:

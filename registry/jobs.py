@@ -87,7 +87,8 @@ class Jobs:
         busy = self._at_work
         if job.state != WAITING or busy is None or busy is job:
             return job.sentence
-        return f"Waits until {busy.what()}, started {busy.started_at}, is through."
+        started = "" if busy.started_at is None else f", started {busy.started_at[11:19]} UTC,"
+        return f"Waits until {busy.what()}{started} is through."
 
     def wait(self, job_id: str, seconds: float) -> Job | None:
         """The job as soon as it is no longer under way, at the latest after so many seconds."""

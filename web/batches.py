@@ -37,18 +37,17 @@ def list_page() -> Any:
 
 @blueprint.get("/batches/<path:code>")
 def page(code: str) -> Any:
+    registry = current_app.extensions["registry"]
     batch = _found(code)
     with registry_connection() as connection:
         columns = reading.batch_columns(connection, batch["batch_id"])
         lines, samples = reading.batch_samples(connection, batch["batch_id"])
         relatives = reading.batch_relatives(connection, batch["batch_id"])
         counts = controls_reading.control_counts(connection, batch["batch_id"])
+        states = controls_reading.analyte_states(connection, batch["batch_id"])
         uncertified = controls_reading.without_certificate(connection, batch["batch_id"])
         too_many = sum(counts.values()) > MOST_CONTROL_LINES
-        controls: dict[str, Any] = {
-            "analytes": [],
-            "state": controls_reading.batch_state(connection, batch["batch_id"]),
-        }
+        controls: dict[str, Any] = {"analytes": []}
         if counts and not too_many:
             controls = controls_reading.batch_controls(connection, batch["batch_id"])
     number, conspicuous = control_charts.conspicuous(controls)
@@ -63,13 +62,29 @@ def page(code: str) -> Any:
         counts=counts,
         uncertified=uncertified,
         too_many=too_many,
-        control_state=controls["state"],
+        standing=control_charts.standing(states) if counts else "No control sample was judged on it.",
+        digested=_digested(columns),
+        counting=batching.counting_instead(registry, code) if batch["state"] != "active" else None,
         charts=control_charts.charts(controls),
         conspicuous=conspicuous,
         conspicuous_number=number,
         digestions=batching.DIGESTION_NAMES,
+        weighed=batching.WEIGHED,
         chart=control_charts,
     )
+
+
+def _digested(columns: list[dict[str, Any]]) -> dict[str, list[str]]:
+    """The analytes by what was done to the sample, in words: what is unknown first, what is not dissolved last."""
+    groups: dict[str, list[str]] = {digestion_words("unknown"): []}
+    weighed = []
+    for column in columns:
+        if column["digestion"] == "unknown" and column["analyte"] in batching.WEIGHED:
+            weighed.append(column["analyte"])
+        else:
+            groups.setdefault(digestion_words(column["digestion"]), []).append(column["analyte"])
+    found = {**groups, "weighed or summed": weighed}
+    return {words: list(dict.fromkeys(analytes)) for words, analytes in found.items() if analytes}
 
 
 @blueprint.get("/batch/file/<path:code>")

@@ -67,10 +67,13 @@ def chart(analyte: Mapping[str, Any]) -> dict[str, Any]:
                 "beyond": "up" if value > REACH else "down" if value < -REACH else "",
                 "shape": SHAPES.get(point["kind"], "circle"),
                 "state": point["state"],
-                "word": point["state"] if point["state"] in ("warned", "failed") else "",
+                "word": "",
+                "word_x": 0.0,
+                "anchor": "start",
                 "title": _title(point, value),
             }
         )
+    _name_marks(points)
     return {
         **{name: value for name, value in analyte.items() if name != "series"},
         "points": points,
@@ -78,6 +81,63 @@ def chart(analyte: Mapping[str, Any]) -> dict[str, Any]:
         "last": last,
         "left_out": len(series) - len(drawn),
     }
+
+
+def width_of(word: str) -> float:
+    """About how wide a word beside a mark is drawn."""
+    return 6.2 * len(word)
+
+
+def _name_marks(points: list[dict[str, Any]]) -> None:
+    """Write beside each mark that did not pass what it is, where there is room: failed ones first, then from the left.
+
+    A word that would lie on a mark or on another word shrinks to its arrow, or is left out: the mark's shape and its
+    title say it too.
+    """
+    marks = [point for point in points if point["state"] in ("warned", "failed")]
+    taken: list[tuple[float, float, float]] = []
+    for point in sorted(marks, key=lambda one: (one["state"] != "failed", one["x"])):
+        arrow = {"up": "↑", "down": "↓"}.get(point["beyond"], "")
+        full = f"{point['state']} {arrow}".rstrip()
+        for word in (full, arrow) if arrow else (full,):
+            places = [(point["x"] + 7, "start"), (point["x"] - 7, "end")]
+            for at, anchor in places:
+                left, right = (at, at + width_of(word)) if anchor == "start" else (at - width_of(word), at)
+                if left < LEFT or right > WIDTH or _is_taken(left, right, point["y"], taken, points):
+                    continue
+                point.update(word=word, word_x=at, anchor=anchor)
+                taken.append((left, right, point["y"]))
+                break
+            if point["word"]:
+                break
+
+
+def _is_taken(
+    left: float, right: float, height: float, words: list[tuple[float, float, float]], marks: list[dict[str, Any]]
+) -> bool:
+    boxes = [*words, *((mark["x"] - 5, mark["x"] + 5, mark["y"]) for mark in marks)]
+    return any(left < end and start < right and abs(height - y) < 11 for start, end, y in boxes)
+
+
+def standing(states: Sequence[Mapping[str, Any]], most_named: int = 8) -> str:
+    """What the controls of a batch say, in a sentence; ``states``: ``analyte``, ``state`` of each that was judged."""
+    by_state: dict[str, list[str]] = {}
+    for one in states:
+        by_state.setdefault(one["state"], []).append(one["analyte"])
+    failing, remarked, passing = (by_state.get(state, []) for state in ORDER[:3])
+
+    def named(analytes: list[str]) -> str:
+        more = len(analytes) - most_named
+        return ", ".join(analytes[:most_named]) + (f" and {more} more" if more > 0 else "")
+
+    if not states:
+        return "Its controls could not be judged."
+    others = [f"{named(remarked)} {'passes' if len(remarked) == 1 else 'pass'} with remarks"] if remarked else []
+    if passing:
+        others.append(f"{len(passing)} {'analyte passes' if len(passing) == 1 else 'analytes pass'}")
+    if failing:
+        return f"Its controls fail for {named(failing)}" + (f"; {', '.join(others)}" if others else "") + "."
+    return f"Its controls pass, with remarks on {named(remarked)}." if remarked else "Its controls pass."
 
 
 def _thinned(series: Sequence[Mapping[str, Any]]) -> list[Mapping[str, Any]]:

@@ -50,7 +50,11 @@ def _foreign_host(fault: SecurityError) -> Response:
 
 
 def _busy(fault: RegistryBusy) -> tuple[str, int]:
-    return _page(503, "The registry is busy", str(fault))
+    sentence = str(fault)
+    sentence = sentence[:1].upper() + sentence[1:]
+    if request.method == "POST":
+        sentence += " Your browser's way back leads to what you typed."
+    return _page(503, "The registry is busy", sentence)
 
 
 def _refused(fault: PlutonbookError) -> tuple[str, int]:

@@ -112,10 +112,12 @@ def test_batch_digestion_that_is_unknown_or_unchanged_says_so(site: Site) -> Non
 
 
 def test_batch_list_says_states_in_words(site: Site) -> None:
-    assert '<td data-label="State">in use</td>' in site.client.get("/batches").text
+    page = site.client.get("/batches").text
+    assert '<td data-label="State">in use</td>' in page and 'class="left-out"' not in page
     page = site.client.get("/batch/withdraw/majors").text
     site.client.post("/batch/withdraw/majors", data=form_fields(page))
-    assert '<td data-label="State">withdrawn</td>' in site.client.get("/batches").text
+    page = site.client.get("/batches").text
+    assert '<tr class="left-out">' in page and '<td data-label="State">withdrawn</td>' in page
 
 
 def point(line: int, z: float | None, state: str = "passed", **more: Any) -> dict[str, Any]:
@@ -135,7 +137,7 @@ def test_chart_puts_deviations_at_their_heights_and_marks_what_lies_beyond() -> 
     first, second, third = drawn["points"]
     assert first["y"] == control_charts.height_of(0) == (control_charts.TOP + control_charts.BOTTOM) / 2
     assert second["y"] == control_charts.height_of(3) < first["y"]
-    assert (third["y"], third["beyond"], third["word"]) == (control_charts.BOTTOM, "down", "failed")
+    assert (third["y"], third["beyond"], third["word"]) == (control_charts.BOTTOM, "down", "failed ↓")
     assert second["x"] == (first["x"] + third["x"]) / 2
     assert "deviation -9.10, failed" in third["title"]
 
@@ -170,3 +172,66 @@ def test_large_file_of_a_batch_is_handed_out_from_disk(site: Site, monkeypatch: 
     with file:
         assert not isinstance(file, io.BytesIO)
         assert (name, file.read()) == ("majors.csv", MAJORS.encode())
+
+
+def boxes(points: list[dict[str, Any]]) -> list[tuple[float, float, float]]:
+    """Left, right and height of every word that is drawn."""
+    return [
+        (point["word_x"] - (control_charts.width_of(point["word"]) if point["anchor"] == "end" else 0.0),
+         point["word_x"] + (control_charts.width_of(point["word"]) if point["anchor"] == "start" else 0.0), point["y"])
+        for point in points if point["word"]
+    ]  # fmt: skip
+
+
+def test_chart_words_beside_marks_never_lie_on_each_other_or_outside() -> None:
+    lines = [11, 38, 47, 48, 49, 60]
+    drawn = control_charts.chart(analyte([point(line, -9.0, "failed") for line in lines]))["points"]
+    words = boxes(drawn)
+    assert len(words) >= 2, "those that have room are named"
+    assert drawn[0]["word"] == "failed ↓"
+    for n, (left, right, height) in enumerate(words):
+        assert left >= control_charts.LEFT and right <= control_charts.WIDTH
+        for other_left, other_right, other_height in words[n + 1 :]:
+            assert right <= other_left or other_right <= left or abs(height - other_height) >= 10
+        for mark in drawn:
+            assert right <= mark["x"] - 5 or left >= mark["x"] + 5
+
+
+def test_batch_page_says_digestions_at_a_glance_and_folds_the_columns(site: Site) -> None:
+    page = site.client.get("/batches/majors").text
+    assert "<dt>XRF</dt><dd>SiO₂, Al₂O₃, Fe₂O₃T, MgO, CaO, Na₂O, K₂O</dd>" in page
+    assert '<details class="columns"><summary>7 columns' in page
+    address = site.send(("loose.csv", "Sample,Zr (ppm),LOI (%)\nKD-1,150,1.2\n"))
+    site.press(address, "store")
+    page = site.client.get("/batches/loose").text
+    assert "<dt>unknown</dt><dd>Zr</dd>" in page, "what no column tells is asked for"
+    assert "<dt>weighed or summed</dt><dd>LOI</dd>" in page
+    assert '<details class="columns" open>' in page
+    assert 'aria-label="Digestion of Zr (ppm)" class="unsure"' in page
+    assert "Digestion of LOI" not in page
+
+
+def test_batch_page_of_a_superseded_certificate_names_the_one_that_counts_in_place_of_a_button(site: Site) -> None:
+    address = site.send(("majors2.csv", MAJORS.replace("72.1", "72.3")), batch="majors")
+    site.press(address, "store", place="supersede", batch="majors")
+    site.press(address, "store")
+    page = site.client.get("/batches/majors").text
+    assert "This certificate is superseded" in page and "Restore …" not in page
+    link = '<a href="/batches/majors%20corrected%202">majors corrected 2</a>'
+    assert f"To let it count again, withdraw {link} first." in page
+    site.client.post("/batch/withdraw/majors corrected 2", data=form_fields(page))
+    page = site.client.get("/batches/majors").text
+    assert "Restore …" in page and "first." not in page
+
+
+def test_batch_page_says_what_its_controls_say_by_analyte() -> None:
+    def said(*states: str) -> str:
+        return control_charts.standing([{"analyte": f"A{n}", "state": state} for n, state in enumerate(states)])
+
+    assert said("passes", "passes") == "Its controls pass."
+    assert said("fails", "passes", "passes") == "Its controls fail for A0; 2 analytes pass."
+    assert said("passes with remarks", "passes") == "Its controls pass, with remarks on A0."
+    assert said("fails", "fails", "passes with remarks") == "Its controls fail for A0, A1; A2 passes with remarks."
+    assert said() == "Its controls could not be judged."
+    many = said(*["fails"] * 12)
+    assert many == "Its controls fail for A0, A1, A2, A3, A4, A5, A6, A7 and 4 more."

@@ -6,6 +6,7 @@ The data are invented.
 from __future__ import annotations
 
 import io
+import re
 import threading
 from collections.abc import Iterator
 from pathlib import Path
@@ -14,6 +15,7 @@ from typing import Any
 import pytest
 
 from registry import batching, settings
+from registry.store.engine import writing
 from tests.web.import_site import TRACES, Site, form_fields
 from web import create_app, working
 
@@ -79,6 +81,7 @@ def test_long_trial_shows_its_progress_and_then_what_would_change(site: Site, ga
     gate.opened.set()
     page = ended(site, address)
     assert "<strong>3 samples</strong> are computed anew" in page and ">Withdraw it</button>" in page
+    assert re.search(r"[0-9]+ verdicts? would change; nothing is changed yet\.", site.client.get("/work").text)
     assert f'<a href="{address}">' not in site.client.get("/batches").text
     assert "in use" in site.client.get("/batches").text
 
@@ -88,6 +91,9 @@ def test_long_change_is_made_and_its_page_tells_what_came_of_it(site: Site) -> N
     assert "Batch majors is withdrawn: 3 samples recomputed" in page
     assert '<a href="/batches/majors">Batch majors</a>' in page and "Withdraw it" not in page
     assert ">withdrawn</td>" in site.client.get("/batches").text
+    changed = site.client.get("/work").text
+    assert re.search(r"3 samples computed anew, [0-9]+ verdicts? changed\.", changed)
+    assert ">By<" not in changed, "without accounts nobody is named"
     again = ended(site, asked(site, "confirmed").headers["Location"])
     assert "Batch &#39;majors&#39; is withdrawn already; nothing was changed." in again
     assert "failed" in site.client.get("/work").text
@@ -100,7 +106,7 @@ def test_second_change_waits_and_names_the_first_and_the_same_one_is_not_begun_t
     second = asked(site, "try").headers["Location"]
     assert second != first
     job = site.jobs.find(first.rsplit("/", 1)[-1])
-    waits = f"Waits until withdrawing batch majors, started {job.started_at}, is through."
+    waits = f"Waits until withdrawing batch majors, started {job.started_at[11:19]} UTC, is through."
     assert waits in site.client.get(second).text
     assert site.client.get(f"{second}/state.json").json["sentence"] == waits
     file = (io.BytesIO(TRACES.encode()), "traces.csv")
@@ -160,3 +166,13 @@ def test_fault_of_the_program_is_told_and_the_next_change_runs(site: Site, monke
     page = ended(site, site.client.post("/settings", data=form).headers["Location"])
     assert "Nothing was changed, because of a fault in the program" in page and "planted" not in page
     assert "3 samples</strong>" in ended(site, asked(site, "try").headers["Location"])
+
+
+def test_edit_while_work_is_under_way_is_refused_with_what_runs_since_when(site: Site) -> None:
+    form = form_fields(site.client.get("/edit/sample/KD-1").text)
+    form.setlist("lithology", ["gabbro"])
+    with writing(site.app.extensions["registry"], what="withdrawing batch majors"):
+        answer = site.client.post("/edit/sample/KD-1", data=form)
+    assert answer.status_code == 503
+    assert re.search(r"<p>The registry site\.sqlite is held by withdrawing batch majors since 20\S+Z", answer.text)
+    assert "Nothing was changed; try again when it is done. Your browser&#39;s way back leads to what" in answer.text
