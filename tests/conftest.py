@@ -6,7 +6,6 @@ passes by leaving something out.
 
 from __future__ import annotations
 
-import fcntl
 import os
 import pwd
 import shutil
@@ -24,11 +23,19 @@ from registry import accounts
 from registry.founding import build_demo, found
 from registry.store import schema
 from registry.store.engine import Registry
+from tests.registry_files import made_once
 
 #: Examples of a generated test. Every day a few that differ from run to run; in CI many, the same every time.
 settings.register_profile("everyday", max_examples=25, deadline=5_000, suppress_health_check=[HealthCheck.too_slow])
 settings.register_profile("ci", settings.get_profile("everyday"), max_examples=100, derandomize=True)
 settings.load_profile("ci" if os.environ.get("CI") else "everyday")
+#: Files that take long, longest first: begun last, one of them would keep one process busy while the others idle.
+LONG_FILES = (
+    "demo/test_demo.py", "web/test_import_browser.py", "web/test_places_browser.py", "web/test_browser.py",
+    "test_computing.py", "store/test_registry_contents.py", "web/test_import_pages.py", "suites/test_suites.py",
+    "store/test_quality_controls.py", "web/test_diagrams_browser.py", "store/test_stale.py", "test_importing.py",
+    "web/test_accounts.py", "suites/test_stale_groups.py", "web/test_attempts.py", "cli/test_progress.py",
+)  # fmt: skip
 ROOT = Path(__file__).resolve().parents[1]
 ENGINES = ["sqlite", pytest.param("postgresql", marks=pytest.mark.postgresql)]
 
@@ -39,6 +46,12 @@ def state_of_the_tests(tmp_path_factory: pytest.TempPathFactory) -> Iterator[Non
     with pytest.MonkeyPatch.context() as patch:
         patch.setenv("XDG_STATE_HOME", str(tmp_path_factory.mktemp("state")))
         yield
+
+
+def pytest_collection_modifyitems(items: list[pytest.Item]) -> None:
+    """The long files go first; all others keep their order."""
+    ranks = {ROOT / "tests" / name: rank for rank, name in enumerate(LONG_FILES)}
+    items.sort(key=lambda item: ranks.get(item.path, len(ranks)))
 
 
 def absent(what: str) -> NoReturn:
@@ -70,21 +83,6 @@ def postgresql_server() -> Iterator[Any]:
     server = PostgresqlServer(programs, user)
     yield server
     server.stop()
-
-
-def made_once(tmp_path_factory: pytest.TempPathFactory, name: str, make: Callable[[Path], Registry]) -> Path:
-    """A registry file that the workers of one run share: the first that asks makes it; copy it, do not write it."""
-    folder = tmp_path_factory.getbasetemp()
-    if "PYTEST_XDIST_WORKER" in os.environ:
-        folder = folder.parent
-    path = folder / f"{name}.sqlite"
-    with (folder / f"{name}.lock").open("w") as lock:
-        fcntl.flock(lock, fcntl.LOCK_EX)
-        if not path.exists():
-            coming = folder / f"{name}-coming.sqlite"
-            _settled(make(coming))
-            coming.rename(path)
-    return path
 
 
 @pytest.fixture(scope="session")
@@ -130,16 +128,6 @@ def cheap_hashes() -> Iterator[None]:
         patch.setattr(accounts, "METHOD", cheap)
         patch.setattr(accounts, "_NOBODYS_HASH", accounts._NOBODYS_HASH.replace(shipped, cheap))
         yield
-
-
-def _settled(registry: Registry) -> None:
-    """Move everything from the write-ahead log into the file, so that the file alone can be copied."""
-    registry.close()
-    engine = registry.engine(foreign_keys=True, query_only=False)
-    driver = engine.raw_connection()
-    driver.driver_connection.execute("PRAGMA wal_checkpoint(TRUNCATE)")
-    driver.close()
-    engine.dispose()
 
 
 @pytest.fixture

@@ -21,6 +21,7 @@ from registry.refresh import drain
 from registry.store import schema, tables
 from registry.store.engine import Registry, open_registry
 from registry.targets.definition import load_definitions
+from tests.registry_files import made_once
 from web import create_app
 
 HOSTILE = '<script>alert("x")</script>&amp;'
@@ -157,13 +158,7 @@ def build_registry(path: Path, count: int = 120) -> Registry:
 
 @pytest.fixture(scope="session")
 def invented_registry(tmp_path_factory: pytest.TempPathFactory) -> Path:
-    path = tmp_path_factory.mktemp("site") / "invented.sqlite"
-    registry = build_registry(path)
-    with registry.writer.connect() as connection:
-        connection.exec_driver_sql("COMMIT")
-        connection.exec_driver_sql("PRAGMA wal_checkpoint(TRUNCATE)")
-    registry.close()
-    return path
+    return made_once(tmp_path_factory, "invented", build_registry)
 
 
 @pytest.fixture(scope="session")
@@ -229,23 +224,39 @@ class WritableSite:
         return rows
 
 
+@pytest.fixture(scope="session")
+def writable_file(invented_registry: Path, tmp_path_factory: pytest.TempPathFactory) -> Path:
+    """The invented registry with a log and a survey of DH-1, invented as well; copy it, do not write it."""
+    path = Path(shutil.copy(invented_registry, tmp_path_factory.mktemp("site") / "logged.sqlite"))
+    connection = sqlite3.connect(path)
+    (hole,) = connection.execute("SELECT site_id FROM site WHERE code = 'DH-1'").fetchone()
+    connection.executemany(
+        "INSERT INTO lithology_interval (site_id, from_m, to_m, lithology) VALUES (?, ?, ?, ?)",
+        [
+            (hole, 0, 8, "overburden"),
+            (hole, 8, 60, "granodiorite"),
+            (hole, 60, 140, "very fine grained gabbronorite"),
+        ],
+    )
+    connection.execute("INSERT INTO survey (site_id, depth_m, azimuth_deg, dip_deg) VALUES (?, 0, 90, -60)", (hole,))
+    connection.commit()
+    connection.execute("PRAGMA wal_checkpoint(TRUNCATE)")
+    connection.close()
+    return path
+
+
+@pytest.fixture(scope="module")
+def logged_app(writable_file: Path, tmp_path_factory: pytest.TempPathFactory) -> Iterator[Flask]:
+    """A site that may write, for tests that only read its pages."""
+    path = Path(shutil.copy(writable_file, tmp_path_factory.mktemp("logged") / "logged.sqlite"))
+    application = create_app(str(path), writable=True, drafts=path.parent / "drafts")
+    yield application
+    application.extensions["registry"].close()
+
+
 @pytest.fixture
-def writable(invented_registry: Path, tmp_path: Path) -> Iterator[WritableSite]:
-    """A site that may write. The log and survey of DH-1 are invented."""
-    site = WritableSite(Path(shutil.copy(invented_registry, tmp_path / "writable.sqlite")))
-    hole = site.sql("SELECT site_id FROM site WHERE code = 'DH-1'")[0][0]
-    for start, end, rock in (
-        (0, 8, "overburden"),
-        (8, 60, "granodiorite"),
-        (60, 140, "very fine grained gabbronorite"),
-    ):
-        site.sql(
-            "INSERT INTO lithology_interval (site_id, from_m, to_m, lithology) VALUES (?, ?, ?, ?)",
-            hole,
-            start,
-            end,
-            rock,
-        )
-    site.sql("INSERT INTO survey (site_id, depth_m, azimuth_deg, dip_deg) VALUES (?, 0, 90, -60)", hole)
+def writable(writable_file: Path, tmp_path: Path) -> Iterator[WritableSite]:
+    """A site that may write, over a copy of its own."""
+    site = WritableSite(Path(shutil.copy(writable_file, tmp_path / "writable.sqlite")))
     yield site
     site.app.extensions["registry"].close()

@@ -2,17 +2,13 @@
 
 from __future__ import annotations
 
-import struct
-import threading
-import zlib
 from collections.abc import Callable, Iterator
 from typing import Any
 
 import pytest
 from flask import Flask
-from selenium.webdriver.support.expected_conditions import url_matches
-from selenium.webdriver.support.wait import WebDriverWait
-from waitress.server import create_server
+
+from tests.web.serving import pixels, served, share, until
 
 pytestmark = pytest.mark.browser
 PAGES = (
@@ -20,18 +16,12 @@ PAGES = (
     "/samples/PB-002", "/samples/PB-020", "/batches", "/batches/Q-2041", "/targets", "/targets/porphyry_copper",
     "/methods", "/intrusions", "/sites", "/samples?kind=float",
 )  # fmt: skip
-Pixel = tuple[int, int, int]
 
 
 @pytest.fixture(scope="session")
 def address(app: Flask) -> Iterator[str]:
-    """The site served as ``plutonbook serve`` does it, on a free port."""
-    server = create_server(app, host="127.0.0.1", port=0, threads=2)
-    thread = threading.Thread(target=server.run, daemon=True)
-    thread.start()
-    yield f"http://127.0.0.1:{server.effective_port}"
-    server.close()
-    thread.join(timeout=0.2)  # kept-alive connections of the browser may keep it; it is a daemon
+    with served(app) as address:
+        yield address
 
 
 @pytest.fixture
@@ -52,55 +42,6 @@ def open_page(browser: Any, address: str) -> Iterator[Callable[..., Any]]:
     yield visit
     browser.execute_cdp_cmd("Emulation.clearDeviceMetricsOverride", {})
     browser.execute_cdp_cmd("Emulation.setEmulatedMedia", {"features": []})
-
-
-def until(browser: Any, state: Callable[[], bool]) -> None:
-    """Wait up to ten seconds for what the page does by itself."""
-    WebDriverWait(browser, 10).until(lambda _: state())
-
-
-def pixels(browser: Any, selector: str) -> list[list[Pixel]]:
-    """What the browser drew where the first element of ``selector`` stands, row by row."""
-    return decoded(browser.find_element("css selector", selector).screenshot_as_png)
-
-
-def decoded(png: bytes) -> list[list[Pixel]]:
-    """Pixels of a PNG of eight bits a channel without interlace (ISO/IEC 15948)."""
-    width, height, depth, colour, _, _, interlace = struct.unpack(">IIBBBBB", png[16:29])
-    assert (depth, interlace) == (8, 0)
-    channels = {2: 3, 6: 4}[colour]
-    packed, place = b"", 8
-    while place < len(png):
-        size, kind = struct.unpack(">I4s", png[place : place + 8])
-        packed += png[place + 8 : place + 8 + size] if kind == b"IDAT" else b""
-        place += size + 12
-    raw, stride = zlib.decompress(packed), width * channels
-    rows, above = [], bytearray(stride)
-    for number in range(height):
-        start = number * (stride + 1)
-        line = bytearray(raw[start + 1 : start + 1 + stride])
-        for at in range(stride):
-            left = line[at - channels] if at >= channels else 0
-            corner = above[at - channels] if at >= channels else 0
-            line[at] = (line[at] + _predicted(raw[start], left, above[at], corner)) % 256
-        rows.append([tuple(line[at : at + 3]) for at in range(0, stride, channels)])
-        above = line
-    return rows
-
-
-def _predicted(kind: int, left: int, up: int, corner: int) -> int:
-    if kind == 4:
-        guess = left + up - corner
-        return min((left, up, corner), key=lambda value: abs(guess - value))
-    return (0, left, up, (left + up) // 2)[kind]
-
-
-def share(rows: list[list[Pixel]], colour: str) -> float:
-    """Which part of the pixels has this colour, each channel within 6."""
-    wanted = tuple(int(colour[at : at + 2], 16) for at in (1, 3, 5))
-    flat = [pixel for row in rows for pixel in row]
-    near = [pixel for pixel in flat if all(abs(a - b) <= 6 for a, b in zip(pixel, wanted, strict=True))]
-    return len(near) / len(flat)
 
 
 @pytest.mark.parametrize("width", [1280, 390])
@@ -167,7 +108,7 @@ def test_browser_sentence_is_edited_in_place(open_page: Callable[..., Any]) -> N
     browser.find_element("css selector", "#add_column option[value='sr_y']").click()
     browser.find_element("id", "add_min").send_keys("20")
     browser.find_element("css selector", ".add-part button").click()
-    WebDriverWait(browser, 10).until(url_matches(r"/samples\?sr_y_min=20$"))
+    until(browser, lambda: browser.current_url.endswith("/samples?sr_y_min=20"))
     assert "Sr/Y at least 20" in browser.find_element("css selector", ".sentence").text
     assert browser.find_element("css selector", ".count").text == "40"
 
@@ -222,7 +163,7 @@ def test_browser_works_without_our_script(open_page: Callable[..., Any]) -> None
         browser.find_element("css selector", ".part summary").click()
         browser.find_element("css selector", "input[name=kind][value=float]").click()
         browser.find_element("css selector", ".part[open] button").click()
-        WebDriverWait(browser, 10).until(url_matches(r"/samples\?kind=float$"))
+        until(browser, lambda: browser.current_url.endswith("/samples?kind=float"))
     finally:
         browser.execute_cdp_cmd("Emulation.setScriptExecutionDisabled", {"value": False})
 

@@ -7,7 +7,6 @@ from __future__ import annotations
 
 import shutil
 import sqlite3
-import threading
 import time
 from collections.abc import Callable, Iterator
 from pathlib import Path
@@ -16,11 +15,8 @@ from typing import Any
 import pytest
 from flask import Flask
 from selenium.webdriver.common.action_chains import ActionChains
-from selenium.webdriver.support.expected_conditions import url_contains
-from selenium.webdriver.support.wait import WebDriverWait
-from waitress.server import create_server
 
-from tests.web.test_browser import Pixel, pixels, share
+from tests.web.serving import near, pixels, served, share, until
 from web import create_app
 
 pytestmark = pytest.mark.browser
@@ -34,18 +30,10 @@ MANY = 100_000
 MOST_SECONDS = 2.0
 
 
-def _served(app: Flask) -> Iterator[str]:
-    server = create_server(app, host="127.0.0.1", port=0, threads=2)
-    thread = threading.Thread(target=server.run, daemon=True)
-    thread.start()
-    yield f"http://127.0.0.1:{server.effective_port}"
-    server.close()
-    thread.join(timeout=0.2)  # kept-alive connections of the browser may keep it; it is a daemon
-
-
 @pytest.fixture(scope="module")
 def address(app: Flask) -> Iterator[str]:
-    yield from _served(app)
+    with served(app) as address:
+        yield address
 
 
 @pytest.fixture
@@ -66,11 +54,6 @@ def window(browser: Any) -> Iterator[Callable[..., Any]]:
     yield visit
     browser.execute_cdp_cmd("Emulation.clearDeviceMetricsOverride", {})
     browser.execute_cdp_cmd("Emulation.setEmulatedMedia", {"features": []})
-
-
-def near(pixel: Pixel, colour: str) -> bool:
-    wanted = (int(colour[at : at + 2], 16) for at in (1, 3, 5))
-    return all(abs(a - b) <= 8 for a, b in zip(pixel, wanted, strict=True))
 
 
 def drawn_points(browser: Any) -> list[dict[str, Any]]:
@@ -112,7 +95,7 @@ def test_browser_points_are_drawn_at_their_places_in_their_colours(
             for later in found[number + 1 :]
         )
         if not covered and 2 < x < wide - 2 and 2 < y < high - 2:
-            assert near(rows[round(y)][round(x)], COLOURS[point["symbol"]]), point
+            assert near(rows[round(y), round(x)], COLOURS[point["symbol"]], by=8), point
             seen.add(point["symbol"])
     assert seen == {"0", "1"}
 
@@ -122,9 +105,9 @@ def test_browser_field_line_is_drawn_where_the_source_puts_it(window: Callable[.
     browser = window(f"{address}/diagrams?diagram=tas_volcanic&text=PB-001")
     rows = pixels(browser, "#plot")
     x, y = (63 - 37) / 43 * len(rows[0]), (1 - 1 / 16) * len(rows)
-    line = rows[round(y)][round(x) - 3 : round(x) + 4]
-    assert min(sum(pixel) for pixel in line) < 3 * 140
-    assert all(near(pixel, "#FFFFFF") for pixel in (line[0], line[-1]))
+    line = rows[round(y), round(x) - 3 : round(x) + 4]
+    assert line.sum(axis=-1, dtype=int).min() < 3 * 140
+    assert near(line[[0, -1]], "#FFFFFF", by=8).all()
 
 
 def test_browser_pointing_at_a_symbol_reads_it_and_a_click_leads_to_the_sample(
@@ -136,10 +119,10 @@ def test_browser_pointing_at_a_symbol_reads_it_and_a_click_leads_to_the_sample(
     across = (point["x"] / 100 - 0.5) * plot.rect["width"] + 5
     down = (point["y"] / 100 - 0.5) * plot.rect["height"] + 5
     ActionChains(browser).move_to_element_with_offset(plot, across, down).perform()
-    WebDriverWait(browser, 10).until(lambda _: "PB-001" in browser.find_element("id", "readout").text)
+    until(browser, lambda: "PB-001" in browser.find_element("id", "readout").text)
     assert "Aster stock; SiO₂" in browser.find_element("id", "readout").text
     ActionChains(browser).click().perform()
-    WebDriverWait(browser, 10).until(url_contains("/samples/PB-001"))
+    until(browser, lambda: "/samples/PB-001" in browser.current_url)
 
 
 def test_browser_drawn_box_becomes_the_ends_of_the_axes(window: Callable[..., Any], address: str) -> None:
@@ -148,7 +131,7 @@ def test_browser_drawn_box_becomes_the_ends_of_the_axes(window: Callable[..., An
     wide, high = plot.rect["width"], plot.rect["height"]
     chain = ActionChains(browser).move_to_element_with_offset(plot, -0.4 * wide, -0.3 * high).click_and_hold()
     chain.move_by_offset(round(0.3 * wide), round(0.2 * high)).move_by_offset(round(0.1 * wide), 0).release().perform()
-    WebDriverWait(browser, 10).until(url_contains("x_from="))
+    until(browser, lambda: "x_from=" in browser.current_url)
     ends = [float(value) for value in browser.find_element("id", "plot").get_attribute("data-x").split()]
     assert ends == pytest.approx([37 + 0.1 * 43, 37 + 0.5 * 43], abs=0.15)
     assert "kind=core" in browser.current_url
@@ -195,7 +178,8 @@ def many(invented_registry: Path, tmp_path_factory: pytest.TempPathFactory) -> I
     path = tmp_path_factory.mktemp("many") / "many.sqlite"
     _multiplied(invented_registry, path)
     application = create_app(str(path))
-    yield from _served(application)
+    with served(application) as address:
+        yield address
     application.extensions["registry"].close()
 
 

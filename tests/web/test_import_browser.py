@@ -10,11 +10,10 @@ from typing import Any
 
 import pytest
 from selenium.webdriver.support.select import Select
-from selenium.webdriver.support.wait import WebDriverWait
-from waitress.server import create_server
 
 import seed_demo
 from tests.web.import_site import TRACES, Site
+from tests.web.serving import served, until
 
 pytestmark = pytest.mark.browser
 
@@ -27,42 +26,46 @@ def site(founded_registry_file: Path, tmp_path: Path) -> Iterator[Site]:
 
 
 @pytest.fixture
-def served(site: Site) -> Iterator[str]:
-    server = create_server(site.app, host="127.0.0.1", port=0, threads=3)
-    thread = threading.Thread(target=server.run, daemon=True)
-    thread.start()
-    yield f"http://127.0.0.1:{server.effective_port}"
-    server.close()
-    thread.join(timeout=0.2)  # kept-alive connections of the browser may keep it; it is a daemon
+def address(site: Site) -> Iterator[str]:
+    with served(site.app, threads=3) as address:
+        yield address
 
 
-@pytest.fixture(params=[1280, 390])
-def window(request: pytest.FixtureRequest, browser: Any) -> Iterator[Any]:
-    width = request.param
+WIDTHS = (1280, 390)
+
+
+def set_width(browser: Any, width: int) -> None:
     browser.execute_cdp_cmd(
         "Emulation.setDeviceMetricsOverride",
         {"width": width, "height": 900, "deviceScaleFactor": 1, "mobile": width < 500},
     )
+
+
+@pytest.fixture(params=WIDTHS)
+def window(request: pytest.FixtureRequest, browser: Any) -> Iterator[Any]:
+    set_width(browser, request.param)
     browser.get_log("browser")
-    browser.page_width = width
+    browser.page_width = request.param
     yield browser
     browser.execute_cdp_cmd("Emulation.clearDeviceMetricsOverride", {})
 
 
 def sound(window: Any) -> None:
-    """The page fits its width and the browser complains of nothing."""
-    assert window.execute_script("return document.documentElement.scrollWidth") <= window.page_width
+    """The page fits either width and the browser complains of nothing."""
+    for width in sorted(WIDTHS, key=lambda width: width == window.page_width):
+        set_width(window, width)
+        assert window.execute_script("return document.documentElement.scrollWidth") <= width
     assert [entry for entry in window.get_log("browser") if entry["level"] in ("SEVERE", "WARNING")] == []
 
 
 def until_text(window: Any, text: str) -> None:
     """Wait for what the page comes to say; it may load itself anew meanwhile."""
     said = "return document.querySelector('main')?.innerText ?? ''"
-    WebDriverWait(window, 60).until(lambda _: text in window.execute_script(said))
+    until(window, lambda: text in window.execute_script(said))
 
 
-def choose(window: Any, served: str, *files: Path) -> None:
-    window.get(f"{served}/import")
+def choose(window: Any, address: str, *files: Path) -> None:
+    window.get(f"{address}/import")
     sound(window)
     window.find_element("id", "files").send_keys("\n".join(map(str, files)))
     assert window.find_element("css selector", "[data-chosen]").text.count("MB") == len(files)
@@ -73,8 +76,9 @@ def press(window: Any, value: str) -> None:
     window.find_element("css selector", f".form-end button[value={value}]").click()
 
 
-def test_browser_demo_files_are_read_stored_and_done(window: Any, served: str, site: Site) -> None:
-    choose(window, served, *seed_demo.files())
+@pytest.mark.parametrize("window", [390], indirect=True)  # looked at in both
+def test_browser_demo_files_are_read_stored_and_done(window: Any, address: str, site: Site) -> None:
+    choose(window, address, *seed_demo.files())
     until_text(window, "nothing is stored yet")
     sound(window)
     main = window.find_element("tag name", "main").text
@@ -90,10 +94,10 @@ def test_browser_demo_files_are_read_stored_and_done(window: Any, served: str, s
     assert window.find_elements("css selector", "svg.control-chart")
 
 
-def test_browser_corrected_column_is_read_again(window: Any, served: str, tmp_path: Path) -> None:
+def test_browser_corrected_column_is_read_again(window: Any, address: str, tmp_path: Path) -> None:
     path = tmp_path / "traces.csv"
     path.write_text(TRACES)
-    choose(window, served, path)
+    choose(window, address, path)
     until_text(window, "No unit is stated")
     sound(window)
     faulty = window.find_element("css selector", "select[aria-invalid=true]")
@@ -105,8 +109,9 @@ def test_browser_corrected_column_is_read_again(window: Any, served: str, tmp_pa
     assert "Read as you corrected it" in window.find_element("tag name", "main").text
 
 
+@pytest.mark.parametrize("window", [1280], indirect=True)  # looked at in both
 def test_browser_progress_survives_a_reload_and_ends_by_itself(
-    window: Any, served: str, site: Site, monkeypatch: pytest.MonkeyPatch, tmp_path: Path
+    window: Any, address: str, site: Site, monkeypatch: pytest.MonkeyPatch, tmp_path: Path
 ) -> None:
     from registry import import_jobs
 
@@ -121,22 +126,22 @@ def test_browser_progress_survives_a_reload_and_ends_by_itself(
     monkeypatch.setattr(import_jobs, "import_files", slow)
     path = tmp_path / "traces.csv"
     path.write_text(TRACES)
-    choose(window, served, path)
+    choose(window, address, path)
     until_text(window, "25,000 of 100,000 lines of results")
     window.refresh()
     until_text(window, "25,000 of 100,000 lines of results")
     sound(window)
     bar = window.find_element("css selector", "progress")
     assert (bar.get_attribute("value"), bar.get_attribute("max")) == ("25000", "100000")
-    window.get(f"{served}/samples")
+    window.get(f"{address}/samples")
     assert window.find_element("css selector", ".count").text == "3"
     window.back()
     go_on.set()
     until_text(window, "No unit is stated")
 
 
-def test_browser_batch_is_withdrawn_after_a_trial(window: Any, served: str) -> None:
-    window.get(f"{served}/batches/majors")
+def test_browser_batch_is_withdrawn_after_a_trial(window: Any, address: str) -> None:
+    window.get(f"{address}/batches/majors")
     sound(window)
     window.find_element("css selector", "form.tools button").click()
     until_text(window, "nothing is changed yet")
@@ -146,12 +151,12 @@ def test_browser_batch_is_withdrawn_after_a_trial(window: Any, served: str) -> N
     sound(window)
 
 
-def test_browser_form_works_without_our_script(window: Any, served: str, tmp_path: Path) -> None:
+def test_browser_form_works_without_our_script(window: Any, address: str, tmp_path: Path) -> None:
     path = tmp_path / "good.csv"
     path.write_text("Sample,Zr fusion (ppm),Sr fusion (ppm)\nKD-1,150,400\n")
     window.execute_cdp_cmd("Emulation.setScriptExecutionDisabled", {"value": True})
     try:
-        window.get(f"{served}/import")
+        window.get(f"{address}/import")
         window.find_element("id", "files").send_keys(str(path))
         window.find_element("css selector", "form.upload button").click()
         until_text(window, "nothing is stored yet")

@@ -2,16 +2,13 @@
 
 from __future__ import annotations
 
-import threading
 from collections.abc import Callable, Iterator
 from typing import Any
 
 import pytest
-from selenium.webdriver.support.expected_conditions import url_contains
-from selenium.webdriver.support.wait import WebDriverWait
-from waitress.server import create_server
+from flask import Flask
 
-from tests.web.test_browser import pixels, share
+from tests.web.serving import near, pixels, served, share, until
 
 pytestmark = pytest.mark.browser
 PATHS = (
@@ -22,14 +19,17 @@ PATHS = (
 )  # fmt: skip
 
 
-@pytest.fixture
-def window(writable: Any, browser: Any) -> Iterator[Callable[..., Any]]:
-    """Open a page of the writable site at a width and in a theme; the browser is put back afterwards."""
-    server = create_server(writable.app, host="127.0.0.1", port=0, threads=2)
-    thread = threading.Thread(target=server.run, daemon=True)
-    thread.start()
+@pytest.fixture(scope="module")
+def address(logged_app: Flask) -> Iterator[str]:
+    with served(logged_app) as address:
+        yield address
 
-    def visit(path: str, width: int = 1280, dark: bool = False) -> Any:
+
+@pytest.fixture
+def visit(browser: Any) -> Iterator[Callable[..., Any]]:
+    """Open an address at a width and in a theme; the browser is put back afterwards."""
+
+    def go_to(where: str, width: int = 1280, dark: bool = False) -> Any:
         browser.execute_cdp_cmd(
             "Emulation.setDeviceMetricsOverride",
             {"width": width, "height": 1400, "deviceScaleFactor": 1, "mobile": width < 500},
@@ -37,15 +37,26 @@ def window(writable: Any, browser: Any) -> Iterator[Callable[..., Any]]:
         scheme = {"name": "prefers-color-scheme", "value": "dark" if dark else "light"}
         browser.execute_cdp_cmd("Emulation.setEmulatedMedia", {"features": [scheme]})
         browser.get_log("browser")
-        browser.get(f"http://127.0.0.1:{server.effective_port}{path}")
+        browser.get(where)
         return browser
 
-    yield visit
+    yield go_to
     browser.execute_cdp_cmd("Emulation.clearDeviceMetricsOverride", {})
     browser.execute_cdp_cmd("Emulation.setEmulatedMedia", {"features": []})
     browser.get("about:blank")
-    server.close()
-    thread.join(timeout=0.2)  # kept-alive connections of the browser may keep it; it is a daemon
+
+
+@pytest.fixture
+def window(address: str, visit: Callable[..., Any]) -> Callable[..., Any]:
+    """Open a page of the site that is only read."""
+    return lambda path, width=1280, dark=False: visit(address + path, width, dark)
+
+
+@pytest.fixture
+def own_window(writable: Any, visit: Callable[..., Any]) -> Iterator[Callable[..., Any]]:
+    """Open a page of the site that the test changes."""
+    with served(writable.app) as address:
+        yield lambda path, width=1280: visit(address + path, width)
 
 
 def test_browser_place_pages_fit_both_widths_without_faults(window: Callable[..., Any]) -> None:
@@ -71,7 +82,7 @@ def test_browser_strip_draws_rocks_with_hatching_and_names(window: Callable[...,
 def test_browser_strip_points_stand_at_their_depths(window: Callable[..., Any]) -> None:
     """Core samples lie from 11 to 129 m of 220 m: dots in the upper part of the track, none below."""
     rows = pixels(window("/sites/DH-1?value=sr_y&value=none#strip"), ".strip-track > svg")
-    garnet = [number for number, row in enumerate(rows) if share([row], "#7B2436") > 0]
+    garnet = near(rows, "#7B2436").any(axis=1).nonzero()[0]
     scale = (len(rows) - 16) / 220
     assert garnet[0] == pytest.approx(8 + 11.5 * scale, abs=8)
     assert garnet[-1] == pytest.approx(8 + 129 * scale, abs=8)
@@ -92,20 +103,20 @@ def test_browser_strip_form_draws_the_chosen_value(window: Callable[..., Any]) -
     browser.find_element("css selector", "#value-0 option[value='asi']").click()
     browser.find_element("css selector", "#target option[value='tin']").click()
     browser.find_element("css selector", ".strip-form button").click()
-    WebDriverWait(browser, 10).until(url_contains("value=asi"))
+    until(browser, lambda: "value=asi" in browser.current_url)
     assert browser.find_element("css selector", ".strip-track .strip-head").text.startswith("ASI")
 
 
 def test_browser_verdict_marks_beside_the_strip_lead_to_their_samples(
-    window: Callable[..., Any], writable: Any
+    own_window: Callable[..., Any], writable: Any
 ) -> None:
     writable.sql("UPDATE sample SET from_m = NULL, to_m = NULL WHERE code NOT IN ('PB-002', 'PB-050', 'PB-099')")
-    browser = window("/sites/DH-1?target=porphyry_copper")
+    browser = own_window("/sites/DH-1?target=porphyry_copper")
     marks = browser.find_elements("css selector", ".strip-marks a")
     code = marks[0].get_attribute("aria-label").split(",")[0]
     assert marks[0].get_attribute("href") is not None
     browser.find_element("css selector", ".strip-marks a svg").click()
-    WebDriverWait(browser, 10).until(url_contains(f"/samples/{code}"))
+    until(browser, lambda: f"/samples/{code}" in browser.current_url)
 
 
 @pytest.mark.parametrize("width", [1280, 390])
@@ -115,9 +126,7 @@ def test_browser_range_bar_covers_its_share_of_the_scale(window: Callable[..., A
     row = browser.find_element("xpath", "//table[contains(@class, 'ranges')]//tr[th[starts-with(., 'SiO₂')]]")
     least, _, greatest = (float(cell.text) for cell in row.find_elements("css selector", "td.number")[:3])
     drawn = pixels(browser, ".ranges tbody tr .range-plot")
-    columns = [
-        x for x in range(len(drawn[0])) if any(share([[line[x]]], "#7B2436") > 0 for line in drawn[9:12])
-    ]  # fmt: skip
+    columns = near(drawn[9:12], "#7B2436").any(axis=0).nonzero()[0]
     wide = len(drawn[0])
     assert columns[0] / wide == pytest.approx((least - 40) / 40, abs=0.03)
     assert columns[-1] / wide == pytest.approx((greatest - 40) / 40, abs=0.03)
@@ -133,19 +142,19 @@ def test_browser_norm_column_is_drawn_in_its_colours(window: Callable[..., Any])
 def test_browser_link_to_a_method_unfolds_its_view(window: Callable[..., Any]) -> None:
     browser = window("/methods#differentiation_index", 390)
     row = browser.find_element("id", "differentiation_index")
-    WebDriverWait(browser, 10).until(lambda _: row.is_displayed())
+    until(browser, lambda: row.is_displayed())
     assert browser.execute_script("return arguments[0].getBoundingClientRect().top", row) < 1400
     closed = window("/methods", 390)
     assert closed.execute_script("return document.documentElement.scrollHeight") < 2500
 
 
-def test_browser_edit_is_saved_and_told(window: Callable[..., Any], writable: Any) -> None:
-    browser = window("/edit/sample/PB-001", 390)
+def test_browser_edit_is_saved_and_told(own_window: Callable[..., Any], writable: Any) -> None:
+    browser = own_window("/edit/sample/PB-001", 390)
     field = browser.find_element("id", "density_kg_m3")
     field.send_keys("2655")
     unit = browser.find_element("css selector", "#density_kg_m3 + .unit").rect
     assert field.rect["x"] < unit["x"] < unit["x"] + unit["width"] <= field.rect["x"] + field.rect["width"]
     browser.find_element("css selector", ".form-end button").click()
-    WebDriverWait(browser, 10).until(lambda _: browser.find_elements("css selector", ".notice"))
+    until(browser, lambda: browser.find_elements("css selector", ".notice"))
     assert "density kg m3 (blank) → 2655" in browser.find_element("css selector", ".notice").text
     assert writable.sql("SELECT density_kg_m3 FROM sample WHERE code = 'PB-001'") == [(2655.0,)]
