@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import random
 from collections.abc import Callable
 from pathlib import Path
 from typing import Any
@@ -223,3 +224,51 @@ def test_loss_on_ignition_of_a_sample_is_by_no_unknown_digestion(sqlite_registry
     with reading(sqlite_registry) as connection:
         by = {value["column"]: value["digestion"] for value in chosen_values(connection, 1)}
     assert (by["loi_wt"], by["total_reported_wt"], by["mgo_wt"]) == ("", "", "an unknown digestion")
+
+
+GOOD = {
+    "areas.csv": "area,epsg\nNorth,32633\n",
+    "sites.csv": "site_code,site_kind,easting,northing,epsg,depth_m,area\n"
+    "KD1,drill_hole,450000,7350000,32633,100,North\nOC1,outcrop,450010,7350000,32633,,North\n",
+    "surveys.csv": "site_code,depth_m,azimuth_deg,dip_deg\nKD1,50,0,-60\n",
+    "intervals.csv": "site_code,from_m,to_m,lithology\nKD1,0,90,granite\n",
+    "intrusions.csv": "intrusion,area,shape\nBig Stock,North,sphere\n",
+    "samples.csv": "sample_code,sample_kind,site_code,intrusion\nA1,outcrop,OC1,Big Stock\nA2,outcrop,OC1,Big Stock\n",
+    "certs.csv": CERTIFICATE.format(value=100, kind="SD"),
+    "one.csv": "Sample,SiO2 (%)\nA1,60\n",
+    "two.csv": "Certificate: Z-2\nSample,TiO2 (%)\nA2,1\n",
+}
+#: A fault of each file: one that the reading sees, one that only the registry sees.
+SEEN_AT_ONCE = {
+    "areas.csv": ("32633", "9x"), "sites.csv": ("OC1,outcrop,450010", "OC1,outcrop,east"),
+    "surveys.csv": (",-60", ",-95"), "intervals.csv": ("0,90", "90,0"), "intrusions.csv": ("sphere", "dragon"),
+    "samples.csv": ("A2,outcrop", "A2,dragon"), "certs.csv": ("Zr", "Dragonium"), "one.csv": ("60", "6000"),
+    "two.csv": ("A2,1", "A2,1000"),
+}  # fmt: skip
+SEEN_LATER = {
+    "sites.csv": (",North\nOC1", ",Nowhere\nOC1"), "surveys.csv": ("KD1", "KD7"), "intervals.csv": ("KD1", "KD7"),
+    "intrusions.csv": ("Big Stock,North", "Big Stock,Nowhere"),
+    "samples.csv": ("OC1,Big Stock\nA2", "OC1,Bog Stock\nA2"), "certs.csv": ("100", "0"),
+    "one.csv": ("A1", "Q1"), "two.csv": ("Z-2", "Z-1"),
+}  # fmt: skip
+
+
+@pytest.mark.parametrize("seed", range(12))
+def test_any_set_of_faulty_files_is_told_of_and_no_other_file(
+    sqlite_registry: Registry, tmp_path: Path, seed: int
+) -> None:
+    chance = random.Random(seed)
+    with writing(sqlite_registry) as connection:
+        batches.insert_batch(connection, code="Z-1", certificate="Z-1", imported_at="2026-01-02T03:04:05Z", data=b"x")
+    for number in range(6):
+        files, faulty = dict(GOOD), set()
+        for name in chance.sample(sorted(GOOD), chance.randint(1, len(GOOD))):
+            faults = [kind[name] for kind in (SEEN_AT_ONCE, SEEN_LATER) if name in kind]
+            was, becomes = chance.choice(faults)
+            assert was in files[name]
+            files[name] = files[name].replace(was, becomes)
+            faulty.add(name)
+        folder = tmp_path / str(number)
+        folder.mkdir()
+        told = all_faults(sqlite_registry, folder, files)
+        assert {file for file, _ in told} == faulty, told
