@@ -40,7 +40,11 @@ _BELOW_WORDS = frozenset(
         "bld",
         "lld",
         "<bdl",
-        "udl",
+        "<loq",
+        "<lor",
+        "<rl",
+        "<ldl",
+        "bloq",
         "tr",
         "trace",
         "<",
@@ -116,11 +120,45 @@ _INSUFFICIENT_WORDS = frozenset(
     ]
 )
 _ABOVE_WORDS = frozenset([">", ">dl", ">uol", ">udl", "overrange", "over-range", "o/r", "abovelimit", "saturated"])
+#: Numbers by which exports mark a missing value. Common practice, no source.
+NO_DATA_MARKS = (-99.0, -999.0, -9999.0, -99999.0)
 #: Words of a qualifier column: 1 below, 2 above.
 QUALIFIER_CODES = {"<": 1, "<=": 1, "bdl": 1, "lt": 1, "nd": 1, "u": 1, ">": 2, ">=": 2, "gt": 2}
 NO_QUALIFIER = {"", "=", "-", ".", "n", "na", "~"}
+#: Words with more to them, in lower case without spaces: what is tried before a cell is called a text.
+_PHRASES = (
+    (
+        INSUFFICIENT,
+        re.compile(
+            r"iss|(sample)?(is)?insuff?(icient)?([,;:/-]?(sample|pulp|material|mass|weight|quantity|for|to)[a-z]*)?"
+            r"|listed[,;:/-]*(but|and)?[,;:/-]*not(present|received|submitted|supplied|found)"
+            r"|(sample)?not(present|received|submitted|supplied|found)|sample(is)?(missing|lost|damaged|destroyed|empty)"
+            r"|(sample)?lostintransit|empty(bag)?"
+        ),
+    ),
+    (
+        BELOW,
+        re.compile(
+            r"(<|(is)?(below|under|lessthan))(the)?(lod|loq|lor|dl|rl|mdl|lld|(lowerlimit|limit)of(detection|quantification)"
+            r"|(lower)?(det|detection|reporting|quantification)(lim|limits?|level)?)"
+        ),
+    ),
+    (
+        ABOVE,
+        re.compile(
+            r"(>|(is)?(above|over))(the)?(udl|uol|uld|ul|range|lim|limit|upperlimit|(upper)?(detection|reporting)limit)|over"
+        ),
+    ),
+    (MISSING, re.compile(r"not(requested|required|applicable|available|measured|assigned)|tofollow|[-.]*-[-.]*")),
+)
 _ERRORS = re.compile(r"#(div/0|value|ref|name|num|null|spill|calc|error)[!?]?|err:\d+")
-_DASHES = str.maketrans(dict.fromkeys("\u2010\u2011\u2012\u2013\u2014\u2015\u2212\ufe63\uff0d", "-"))
+_DASHES = str.maketrans(
+    dict.fromkeys(
+        "\u2010\u2011\u2012\u2013\u2014\u2015\u2212\ufe63\uff0d\u00ad\u02d7\u058a\u2043\u23af\u2500\u2501\u2796\u2e3a\u2e3b",
+        "-",
+    )
+)
+_INVISIBLE = re.compile("[\u200b-\u200f\u2060\ufeff]")
 _SIGN = re.compile(r"(<=|=<|>=|=>|<|>|≤|≥|&lt;|&gt;|less than|greater than)\s*")
 _BELOW_SIGNS = ("<", "<=", "=<", "≤", "&lt;", "less than")
 _NUMBER = re.compile(r"[+-]?(\d+\.?\d*|\.\d+)(e[+-]?\d+)?")
@@ -138,7 +176,10 @@ def parse_cell(text: str, decimal: str = ".", thousands: str | None = None) -> C
     ``thousands`` is the sign that groups digits, empty for none; None: the other of point and comma, a space or an
     apostrophe, with a doubt where it could be the decimal sign as well.
     """
-    plain = unicodedata.normalize("NFKC", text).strip().translate(_DASHES)
+    plain = unicodedata.normalize("NFKC", text).strip()
+    if not plain.isascii():
+        plain = _INVISIBLE.sub("", plain).translate(_DASHES).strip()
+    plain = plain.removeprefix("'")  # by which a spreadsheet marks a text
     if not plain:
         return Cell(MISSING)
     folded = plain.casefold()
@@ -160,7 +201,8 @@ def parse_cell(text: str, decimal: str = ".", thousands: str | None = None) -> C
         folded = folded[sign.end() :]
     number, rest = _number(folded, decimal, thousands)
     if number is None:
-        return Cell(TEXT)
+        bare = re.sub(r"(?<=[a-z])\.(?=[a-z])", "", word).replace("&lt;", "<").replace("&gt;", ">")
+        return Cell(next((state for state, phrase in _PHRASES if phrase.fullmatch(bare)), TEXT))
     value, doubt = number
     unit = None
     if rest:

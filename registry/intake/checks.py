@@ -2,15 +2,17 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable, Iterable, Iterator
+from collections.abc import Callable, Iterable, Iterator, Sequence
 from typing import Any
 
 import numpy as np
 from numpy.typing import NDArray
 
+from registry.intake.cells import NO_DATA_MARKS
 from registry.intake.findings import Findings
 from registry.intake.readings import ResultColumn
 from registry.intake.spooled import column_parts, row_parts
+from registry.intake.texts import CONTROL_WORD
 from registry.petrology.analytes import ANALYTES, ELEMENT_SYMBOLS, OXIDE_SYMBOLS, WT_PERCENT_PER_UNIT
 
 #: Highest content of ordinary rocks and ores of igneous terrains, wt%; above it a warning. Common practice, no source.
@@ -34,8 +36,12 @@ def check_values(
     qualifiers: Any,
     lines: Any,
     findings: Findings,
+    control: Sequence[str | None] = (),
 ) -> None:
-    """Impossible values become problems with their likely cause, unlikely ones warnings. NaN is passed over."""
+    """Impossible values become problems with their likely cause, unlikely ones warnings. NaN is passed over.
+
+    ``control`` is what a column says of each line: a blank or a standard is not called far from the rest.
+    """
     if not len(values):
         return
     with np.errstate(all="ignore"):
@@ -44,7 +50,9 @@ def check_values(
         bottoms = np.fmin.reduce([bottom for _, bottom in parts])
         for index, column in enumerate(columns):
             if column.unit:
-                _check_column(column, index, values, qualifiers, lines, findings, (tops[index], bottoms[index]))
+                _check_column(
+                    column, index, values, qualifiers, lines, findings, (tops[index], bottoms[index]), control
+                )
 
 
 def _check_column(
@@ -55,6 +63,7 @@ def _check_column(
     lines: Any,
     findings: Findings,
     ends: tuple[float, float],
+    control: Sequence[str | None],
 ) -> None:
     """Look for the values themselves only where the column's ends, (highest, lowest), say that there are any."""
     per_unit = WT_PERCENT_PER_UNIT[column.unit]
@@ -72,7 +81,9 @@ def _check_column(
                 column=column.header,
                 found=f"{value:g}",
                 expected=f"{low:g} or more" if low else "0 or more",
-                remedy="if the laboratory writes 'below the detection limit' as a negative number, use "
+                remedy="it looks like a mark for no data: leave the cell blank, as --negative-means-below does"
+                if value in NO_DATA_MARKS
+                else "if the laboratory writes 'below the detection limit' as a negative number, use "
                 "--negative-means-below; else correct the value",
             )
     unlikely = _UNLIKELY_ABOVE_WT.get(column.analyte)
@@ -89,7 +100,7 @@ def _check_column(
                 remedy="check unit and decimal sign",
             )
     if column.analyte in _FAR_CHECKED:
-        _check_far(column, index, values, qualifiers, lines, findings, (float(top), float(bottom)))
+        _check_far(column, index, values, qualifiers, lines, findings, (float(top), float(bottom)), control)
 
 
 def _found(
@@ -126,6 +137,7 @@ def _check_far(
     lines: Any,
     findings: Findings,
     ends: tuple[float, float],
+    control: Sequence[str | None],
 ) -> None:
     """Warn of values far from the column's median (of uncensored positive values, at least five)."""
     top, bottom = ends
@@ -141,6 +153,8 @@ def _check_far(
         return
     for start, value, kept in measured():
         for row in np.flatnonzero(kept & ((value < median / _FAR) | (value > median * _FAR))).tolist():
+            if control and CONTROL_WORD.search(control[start + row] or ""):
+                continue
             findings.warn(
                 f"{column.analyte} is far from the rest of its column",
                 row=int(lines[start + row]),

@@ -24,7 +24,8 @@ _NEVER = re.compile(r".*\b(serial|type|kind|hole|site|batch|job|order|certificat
 _EATEN = re.compile(
     r"(?mi)^(\d{1,2}-(jan|feb|mar|apr|may|jun|jul|aug|sep|oct|nov|dec)[a-z]*(-\d{2,4})?"
     r"|(jan|feb|mar|apr|may|jun|jul|aug|sep|oct|nov|dec)[a-z]*-\d{1,4}"
-    r"|\d{4}-\d\d-\d\d( 00:00:00)?|\d(\.\d+)?e\+\d{1,3})$"
+    r"|\d{4}[-/.]\d\d?[-/.]\d\d?( 00:00:00)?"
+    r"|(\d\d?/\d\d?/(\d\d|\d{4})|\d\d?\.\d\d?\.\d{4})( 0?0:00(:00)?)?|\d(\.\d+)?e\+\d{1,3})$"
 )
 #: A code is written on a bag; longer ones are texts that slipped into the column. Common practice, no source.
 LONGEST_CODE = 100

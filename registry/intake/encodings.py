@@ -38,9 +38,9 @@ def tell_encoding(data: bytes) -> Encoding | None:
     if nulls:
         even, odd = head[0::2].count(0), head[1::2].count(0)
         if odd > 0.6 * len(head) / 2 and even < 0.1 * len(head):
-            return Encoding("utf-16-le", "UTF-16 without a byte-order mark", "replace")
+            return _unmarked(data, "utf-16-le")
         if even > 0.6 * len(head) / 2 and odd < 0.1 * len(head):
-            return Encoding("utf-16-be", "UTF-16 without a byte-order mark", "replace")
+            return _unmarked(data, "utf-16-be")
     controls = sum(head.count(code) for code in range(32) if code not in (9, 10, 12, 13, 26))
     if controls > 0.02 * len(head) + 1:
         return None
@@ -54,6 +54,11 @@ def tell_encoding(data: bytes) -> Encoding | None:
     if as_mac > as_windows or (as_mac == as_windows and as_mac > 0 and (carriage_only or undefined)):
         return Encoding("mac_roman", "Mac Roman")
     return Encoding("cp1252", "Windows-1252", "replace" if undefined else "strict")
+
+
+def _unmarked(data: bytes, codec: str) -> Encoding:
+    errors = "strict" if _decodes(data, codec) else "replace"
+    return Encoding(codec, "UTF-16 without a byte-order mark", errors)
 
 
 def _decodes(data: bytes, codec: str) -> bool:

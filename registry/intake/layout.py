@@ -20,7 +20,11 @@ _LOWER_LIMIT = re.compile(
     r"(?i)\b(l\.?o\.?[drq]|ll?d|ldl|d\.?l|mdl|lod|loq|(lower )?(detection|reporting)([ _]limits?)?"
     r"|lower limits?|det\.? ?lim\w*)\b"
 )
-_UPPER_LIMIT = re.compile(r"(?i)\b(upper ?(detection|reporting)?[ _]?limits?|udl|uol|max(imum)? limit|upper)\b")
+_UPPER_LIMIT = re.compile(
+    r"(?i)\b(upper ?(detection|reporting)?[ _]?limits?|u\.?d\.?l|u\.?o\.?[dl]|u\.?l\.?(o\.?)?[dq]"
+    r"|max(imum)? limit|upper)\b"
+)
+_LOWER_ONLY = re.compile(r"(?i)\b(lower|l\.?o\.?[drq]|ll?d|ldl|mdl)\b")
 #: Letters, then a number: a sample code, though its letters may be those of a detection limit.
 _CODE_LIKE = re.compile(r"[A-Za-z]+[\s\-_/.]*\d[\w\-./]*")
 #: A title line that states a method or a unit once.
@@ -34,6 +38,8 @@ QUALIFIER_WORD = re.compile(r"(?i)(qualifiers?|qual|flags?|sign|censor(ed)?|q|lt
 _NO_NAME = frozenset("0123456789<>-.")
 #: What stands beside the analytes of a row and names the row.
 _ROW_LABELS = {METHOD: _METHOD_LABEL, UNIT: _UNIT_LABEL, LOWER: _LOWER_LIMIT, UPPER: _UPPER_LIMIT}
+#: "Analyte" does so as well, where another row names the columns beside the analytes.
+_NAMES_ROW = _ROW_LABELS | {ANALYTE: re.compile(r"(?i)\W*(analyte|element|symbol|parameter|oxide|determinand)s?\W*")}
 
 
 @dataclass
@@ -113,8 +119,8 @@ def _role(row: list[str], analytes: dict[int, Heading], below: bool) -> str | No
     if numbers >= 0.5 * len(inside):
         if any(_CODE_LIKE.fullmatch(text) for text in outside):
             return None  # a sample called DL-12 or LOD-3 is a sample
-        if _UPPER_LIMIT.search(label) and not _LOWER_LIMIT.search(label):
-            return UPPER
+        if _UPPER_LIMIT.search(label) and not _LOWER_ONLY.search(label):
+            return UPPER  # an "Upper detection limit" as well
         if _LOWER_LIMIT.search(label) and len(outside) <= 2:
             return LOWER
         return None
@@ -126,7 +132,7 @@ def _role(row: list[str], analytes: dict[int, Heading], below: bool) -> str | No
         return METHOD
     beside_codes = below and outside and not any(is_code_heading(text) for text in outside)
     spoken = sum(speaks_of_method(text) for text in inside)
-    if not beside_codes and (spoken or len(inside) >= max(2, 0.3 * len(analytes))):
+    if 2 * spoken > len(inside) or (not beside_codes and (spoken or len(inside) >= max(2, 0.3 * len(analytes)))):
         return METHOD
     return None
 
@@ -183,7 +189,7 @@ def find_wide_layout(rows: list[list[str]], told: tuple[int, dict[int, Heading]]
         role = _role(row, analytes, below=True)
         if role is None and (side := _unlabelled_limits(row, analytes, rows[below + 1 : below + 1 + SEARCH_ROWS])):
             role = LOWER if side < 0 else UPPER
-        if role is None and below == index + 1 and _sub_labels(row, analytes):
+        if role is None and LABELS not in roles.values() and _sub_labels(row, analytes):
             role = LABELS
         if role is None:
             break
@@ -199,6 +205,8 @@ def _sub_labels(row: list[str], analytes: dict[int, Heading]) -> bool:
     """A second heading row that names only the columns beside the analytes (Lab ID, From, To)."""
     texts = [_clean(cell) for position, cell in enumerate(row) if position not in analytes]
     texts = [text for text in texts if text]
+    if any(position < len(row) and row[position].strip() for position in analytes):
+        texts = texts[:1] * 2  # a first line of results may call its kind "Sample"; a heading begins with it
     return len(texts) > 1 and any(is_code_heading(text) for text in texts)
 
 
@@ -228,7 +236,8 @@ def _assemble(rows: list[list[str]], roles: dict[int, str], first_row: int) -> W
             if not text:
                 continue
             column = columns.get(position)
-            if column is None and (names_row := _ROW_LABELS.get(roles[index])) and names_row.fullmatch(text):
+            names_row = _NAMES_ROW if LABELS in roles.values() else _ROW_LABELS
+            if column is None and (word := names_row.get(roles[index])) and word.fullmatch(text):
                 continue  # "Method" and "Unit" beside the analytes name their rows and not the column
             if column is None or roles[index] not in (LOWER, UPPER):
                 pieces[position].append(re.sub(r"\s+", " ", text))

@@ -28,7 +28,7 @@ _ROLES = {
     "method": r"(analysis |analytical |lab |laboratory |test )?(methods?|technique|procedure)( (code|name))?",
     "digestion": r"(digestion|digest|preparation|decomposition|attack)( method)?",
     "lower": r"(lower )?(detection|reporting)( limit)?|l\.?o\.?d|lld|ldl|mdl|dl|lower limit|detection limit value",
-    "upper": r"upper (detection |reporting )?limit|udl|uol",
+    "upper": r"upper (detection |reporting )?limit|u\.?d\.?l|u\.?o\.?[dl]|u\.?l\.?(o\.?)?[dq]",
     "control": r"qa ?/?qc|qc( type)?|sample type|control|check type",
 }
 _COMPILED = {role: re.compile(pattern) for role, pattern in _ROLES.items()}

@@ -230,7 +230,8 @@ def _say_ignored(
         if place in used or place == control or not label:
             continue
         rest, unit = split_unit(label)
-        if unit is not None and place not in analytes and re.search(r"[A-Z]", rest) and len(rest) < 20:
+        weighed = re.search(r"(?i)[(\[]\s*(k?g|lbs?)\s*[)\]]", label)  # "Recvd Wt. (kg)" is no unknown analyte
+        if unit is not None and place not in analytes and not weighed and re.search(r"[A-Z]", rest) and len(rest) < 20:
             findings.warn(
                 "the heading names no analyte that the register knows; the column is ignored", column=label,
                 found=rest, expected="an oxide or element, or a total",
@@ -285,7 +286,7 @@ def _table(
             row=int(body.lines[first]), column=layout.code.header, found=f"{code} ({times} times)",
             remedy="if the lines are different samples, correct the codes",
         )  # fmt: skip
-    check_values(columns, body.values, body.qualifiers, body.lines, findings)
+    check_values(columns, body.values, body.qualifiers, body.lines, findings, body.control)
     check_units(columns, body.values, findings)
     understood.append(f"{len(codes)} lines of results in {len(columns)} columns")
     stated = [

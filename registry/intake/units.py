@@ -72,6 +72,8 @@ def split_unit(text: str) -> tuple[str, str | None]:
                 continue
             run = "".join(words[start : start + length])
             unit = canonical_unit(run) if run else None
+            if unit is None and length == 2 and gaps[start] == "_":
+                unit = canonical_unit("/".join(words[start : start + 2]))  # Ag_g_t, Ni_mg_kg: names without a slash
             if unit is not None and _is_unit_word(run, start):
                 rest = words[:start] + words[start + length :]
                 joints = gaps[: max(start - 1, 0)] + gaps[start + length - 1 :] if start else gaps[length:]

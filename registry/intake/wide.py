@@ -15,6 +15,7 @@ from registry.intake.cells import (
     BELOW,
     INSUFFICIENT,
     MISSING,
+    NO_DATA_MARKS,
     NO_QUALIFIER,
     NUMBER,
     QUALIFIER_CODES,
@@ -36,6 +37,14 @@ _SUMMARY_ROW = re.compile(
     r"|.*end of (report|file|certificate).*)"
     r"\s*[:%]?\s*"
 )
+#: How a note begins that its own commas cut into cells: a word of its own, a mark, or a sentence.
+_NOTE = re.compile(
+    r"(?i)\W*(notes?|remarks?|comments?|legend|key|results|approved|authori[sz]ed|certified|signed|prepared|reported|the"
+    r"|these|this|page|disclaimer|footnotes?|abbreviations?)\b\W*.*|[*\u2020\u2021\u00a7#].*|\(?\d{1,2}\)\s*\D.*"
+    r"|(\S+\s+){4,}\S+",
+    re.DOTALL,
+)
+_RULE = re.compile(r"[-=_*~.\u2500\u2501\u2550]{2,}")
 _LETTER_AT_END = re.compile(r"(?m)\D$")
 
 
@@ -105,6 +114,8 @@ class WideReader:
                 spoken.add(row)
         if self.negative_means_below:
             negative = (values < 0) & np.array([column.analyte != "LOI" for column in self.columns])
+            if negative.any():
+                negative &= ~self._unmarked(values, lines)
             qualifiers[negative] = 1
             values[negative] *= -1
         for position, column in self.qualifier_positions.items():
@@ -126,6 +137,18 @@ class WideReader:
             if keep[row]:
                 self._take_words(texts[row], row, int(lines[row]), values, qualifiers)
         return values, qualifiers, codes, keep
+
+    def _unmarked(self, values: NDArray[np.float64], lines: NDArray[np.int64]) -> NDArray[np.bool_]:
+        """Marks for no data (-999) made missing, with a remark each; where they stood."""
+        marks = np.isin(values, NO_DATA_MARKS)
+        for row, index in np.argwhere(marks).tolist():
+            self.findings.warn(
+                "a mark for no data, not a limit; taken as missing", row=int(lines[row]),
+                column=self.columns[index].header, found=f"{values[row, index]:g}",
+                expected="a number below 0 that stands for a limit", remedy="write the limit if it is one",
+            )  # fmt: skip
+        values[marks] = np.nan
+        return marks
 
     def _say_beyond(self, cells: list[str], line: int) -> None:
         filled = [cell.strip() for cell in cells if cell.strip()]
@@ -158,6 +181,11 @@ class WideReader:
         if len(texts) >= max(2, 0.5 * len(self.columns)) and all(_is_heading(text) for _, text in texts):
             self.passed_over.append(f"row {line} repeats the headings")
             return False
+        if numberless and self._is_no_sample(code.strip(), texts):
+            self.passed_over.append(
+                f"row {line} ('{code.strip()[:40]}') is a note, a rule or a legend and not a sample"
+            )
+            return False
         if not code.strip():
             said = next((cell.strip() for cell in row if cell.strip()), "")
             if numberless or _SUMMARY_ROW.fullmatch(said):
@@ -179,6 +207,12 @@ class WideReader:
                 )  # fmt: skip
             return False
         return True
+
+    def _is_no_sample(self, code: str, texts: list[tuple[int, str]]) -> bool:
+        """Of a row without any number: a rule, a word for no result explained, or a note cut at its commas."""
+        if _RULE.fullmatch(code) or (code and self.block.cell(code).state not in (NUMBER, TEXT)):
+            return True
+        return any(self.block.cell(text).state == TEXT for _, text in texts) and bool(_NOTE.fullmatch(code))
 
     def _take_words(
         self,

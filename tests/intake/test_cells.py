@@ -120,3 +120,48 @@ def test_decimal_sign_is_told_from_a_sample_of_cells(texts, expected):
 
 def test_missing_cell_has_no_value():
     assert math.isnan(parse_cell("").value)
+
+
+@pytest.mark.parametrize(
+    ("text", "state"),
+    [
+        ("Insuf.", INSUFFICIENT),
+        ("insuff. sample", INSUFFICIENT),
+        ("Insufficient sample for analysis", INSUFFICIENT),
+        ("insufficient pulp", INSUFFICIENT),
+        ("Sample insufficient", INSUFFICIENT),
+        ("Listed, not present", INSUFFICIENT),
+        ("Listed - not received", INSUFFICIENT),
+        ("listed but not submitted", INSUFFICIENT),
+        ("not present", INSUFFICIENT),
+        ("Sample missing", INSUFFICIENT),
+        ("lost in transit", INSUFFICIENT),
+        ("< d.l.", BELOW),
+        ("<RL", BELOW),
+        ("&lt;LOD", BELOW),
+        ("<det. lim.", BELOW),
+        ("below LOD", BELOW),
+        ("below the reporting limit", BELOW),
+        ("under detection limit", BELOW),
+        (">UL", ABOVE),
+        ("above upper limit", ABOVE),
+        ("over range", ABOVE),
+        ("not requested", MISSING),
+        ("to follow", MISSING),
+        ("\u2500\u2500", MISSING),
+        ("\u2043", MISSING),
+        ("-.-", MISSING),
+        ("\u200b", MISSING),
+        ("UDL", TEXT),  # under, or upper, detection limit: nobody can tell
+        ("over there", TEXT),
+        ("present", TEXT),
+        ("limit", TEXT),
+    ],
+)
+def test_phrase_of_a_laboratory_has_the_meaning_of_its_short_word(text, state):
+    assert parse_cell(text).state == state
+
+
+@pytest.mark.parametrize("text", ["12\u200b", "\ufeff12", "'12", "\u200e12\u200f"])
+def test_invisible_marks_around_a_number_are_no_part_of_it(text):
+    assert parse_cell(text).value == 12.0
