@@ -255,7 +255,7 @@ def _judge_blanks(
         in_wt = column.unit == "wt%"
     is_major = in_wt and column.analyte not in _JUDGED_IN_WT
     for position, row in enumerate(rows.tolist()):
-        if own[position] is None and is_major:
+        if own[position] is None and is_major and signs[row] != QUALIFIER_BELOW:
             outcome.rules[row] = "a major of the blank's own rock; register the values of its material to judge it"
             outcome.expected[row] = outcome.low[row] = outcome.high[row] = np.nan
             continue

@@ -134,6 +134,12 @@ def test_major_of_a_blank_is_not_judged() -> None:
     assert np.isnan(outcome.expected[0])
 
 
+def test_major_of_a_blank_below_its_limit_passes() -> None:
+    """<0.01 % fluorine is no contamination, whatever the blank is made of."""
+    outcome, state = judged(controls(["blank"], [0.01], analyte="F", unit="wt%", limit=0.01, signs=[1]))
+    assert (outcome.states.tolist(), state.state) == ([PASSED], PASSES)
+
+
 def test_too_many_poor_pairs_fail_the_analyte() -> None:
     """Ten of twenty pulp pairs 15 % apart where 10 % (two deviations) is asked for."""
     partner = [100.0] * 20
