@@ -14,6 +14,7 @@ from typing import IO
 
 from registry.errors import NotFound, PlutonbookError
 from registry.intake import Reading, ReadingOptions, read_all, read_path
+from registry.intake.containers import is_archive
 from registry.store.batch_files import COMPRESSION_LEVEL, PART_BYTES
 
 #: Files from this size on are read as a stream, without ever lying in memory whole.
@@ -85,8 +86,11 @@ class LabFile:
             reading = read_path(self.path, kind, options, watch=lambda done: progress("reading bytes", done, self.size))
             if reading is not None:
                 return [reading]
-            self.data = self.path.read_bytes()
-        return read_all(self.path.name, self.data, kind, options)
+            if not is_archive(self.path):
+                self.data = self.path.read_bytes()
+        file = self.path if self.data is None else self.data
+        watch: Callable[[int, int], None] = lambda done, total: progress("reading bytes", done, total)  # noqa: E731
+        return read_all(self.path.name, file, kind, options, watch=watch)
 
 
 def _stamp(path: Path) -> tuple[int, int]:

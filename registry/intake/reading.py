@@ -7,7 +7,7 @@ from pathlib import Path
 
 from registry.intake import kinds
 from registry.intake.arrangement import LONG, TURNED, tell_arrangement
-from registry.intake.containers import BadContainer, Part, foreign_file, is_workbook, unpack
+from registry.intake.containers import BadContainer, Part, foreign_file, unpack
 from registry.intake.encodings import Encoding, tell_encoding
 from registry.intake.findings import Findings
 from registry.intake.layout import find_header_row
@@ -39,9 +39,18 @@ def read_file(name: str, data: bytes, kind: str | None = None, options: ReadingO
     return Reading(name, kind, findings.problems(), whole_file_refused=True)
 
 
-def read_all(name: str, data: bytes, kind: str | None = None, options: ReadingOptions | None = None) -> list[Reading]:
+def read_all(
+    name: str,
+    file: bytes | Path,
+    kind: str | None = None,
+    options: ReadingOptions | None = None,
+    *,
+    watch: Callable[[int, int], object] | None = None,
+) -> list[Reading]:
     """Every table of a file: one reading a sheet of a workbook and a member of an archive, else a list of one.
 
+    ``file``: its bytes, or the path of an archive. A large text in an archive is unpacked to disk and read as a stream
+    (``read_path``); ``watch`` is told how many of its bytes have been read, and of how many.
     Sheets and members without any table are left out and named in ``understood`` of the first reading.
     """
     if kind is not None and kind not in KINDS:
@@ -51,14 +60,11 @@ def read_all(name: str, data: bytes, kind: str | None = None, options: ReadingOp
     readings: list[Reading] = []
     passed_over: list[str] = []
     try:
-        parts = unpack(data, options.unpacked_limit_bytes)
-        if options.sheet is not None and any(part.member == options.sheet for part in parts):
-            parts = [Part(part.data) for part in parts if part.member == options.sheet]
-        for part in parts:
-            if not is_workbook(part.data):
-                readings.append(_one(name, part.member, part.data, None, kind, options))
+        for part in unpack(file, options.unpacked_limit_bytes, options.sheet):
+            if not part.is_workbook:
+                readings.append(_text_of(name, part, kind, options, watch))
                 continue
-            sheets = read_sheets(part.data, options.sheet)
+            sheets = read_sheets(part.content(), options.sheet)
             tables = [(sheet, source) for sheet, source in sheets if len(sheets) == 1 or _holds_a_table(source)]
             passed_over += [sheet for sheet, source in sheets if (sheet, source) not in tables]
             for sheet, source in tables:
@@ -77,6 +83,23 @@ def read_all(name: str, data: bytes, kind: str | None = None, options: ReadingOp
     return readings
 
 
+def _text_of(
+    name: str,
+    part: Part,
+    kind: str | None,
+    options: ReadingOptions,
+    watch: Callable[[int, int], object] | None,
+) -> Reading:
+    """A text out of a container: as a stream where it waits on disk and can be read so, else in memory."""
+    if part.path is not None:
+        size = part.path.stat().st_size
+        seen_by = None if watch is None else lambda done: watch(done, size)
+        streamed = _streamed(part.path, name, part.member, kind, options, seen_by)
+        if streamed is not None:
+            return streamed
+    return _one(name, part.member, part.content(), None, kind, options)
+
+
 def read_path(
     path: Path,
     kind: str | None = None,
@@ -92,7 +115,17 @@ def read_path(
     """
     if kind is not None and kind not in KINDS:
         raise ValueError(f"unknown kind of file '{kind}'; known are {', '.join(KINDS)}")
-    options = options or ReadingOptions()
+    return _streamed(path, path.name, None, kind, options or ReadingOptions(), watch)
+
+
+def _streamed(
+    path: Path,
+    name: str,
+    part: str | None,
+    kind: str | None,
+    options: ReadingOptions,
+    watch: Callable[[int], object] | None,
+) -> Reading | None:
     seen = scan(path)
     if seen is None:
         return None
@@ -103,7 +136,8 @@ def read_path(
         source = DelimitedSource(path, seen.encoding, separator, seen.quoted, watch)
         _read_table(reading, source, options, findings, seen.line_ends + 2, seen.underscores)
 
-    return _read(Reading(path.name, kind), Findings(path.name, options.listed), read)
+    findings = Findings(name if part is None else f"{name} [{part}]", options.listed)
+    return _read(Reading(name, kind, part=part), findings, read)
 
 
 def _holds_a_table(source: Source) -> bool:

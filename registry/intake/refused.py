@@ -12,7 +12,7 @@ import numpy as np
 
 from registry.errors import PlutonbookError
 from registry.intake.arrangement import TURNED, tell_arrangement
-from registry.intake.containers import is_workbook, unpack
+from registry.intake.containers import unpack
 from registry.intake.encodings import tell_encoding
 from registry.intake.reading import separator_of
 from registry.intake.readings import Reading, ReadingOptions
@@ -93,14 +93,21 @@ def source_of(file: bytes | Path, reading: Reading) -> Source:
         if seen is not None:
             separator = separator_of(file, seen.encoding, options, seen.quoted)
             return DelimitedSource(file, seen.encoding, separator, seen.quoted)
-    data = file.read_bytes() if isinstance(file, Path) else file
-    for part in unpack(data, options.unpacked_limit_bytes):
-        if is_workbook(part.data):
-            for sheet, source in read_sheets(part.data):
+    parts = unpack(file, options.unpacked_limit_bytes)
+    for part in parts:
+        if part.is_workbook:
+            for sheet, sheet_source in read_sheets(part.content()):
                 if reading.part in (None, sheet, f"{part.member}/{sheet}"):
-                    return source
+                    return sheet_source
         elif reading.part in (None, part.member):
-            encoding = tell_encoding(part.data)
+            seen = None if part.path is None else scan(part.path)
+            if seen is not None and part.path is not None:
+                separator = separator_of(part.path, seen.encoding, options, seen.quoted)
+                source = DelimitedSource(part.path, seen.encoding, separator, seen.quoted)
+                source.container = parts  # what keeps the unpacked file in its place
+                return source
+            data = part.content()
+            encoding = tell_encoding(data)
             assert encoding is not None, "a file that was read has an encoding"
-            return DelimitedSource(part.data, encoding, separator_of(part.data, encoding, options))
+            return DelimitedSource(data, encoding, separator_of(data, encoding, options))
     raise PlutonbookError(f"{reading.file}: '{reading.part}' is not in the file any more")

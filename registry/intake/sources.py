@@ -151,6 +151,8 @@ class DelimitedSource(Source):
         self.data, self.encoding, self.separator = data, encoding, separator
         self._known_quoted, self.watch = quoted, watch
         self.on_disk = isinstance(data, Path)
+        #: what must live as long as the file is read
+        self.container: object = None
 
     @cached_property
     def quoted(self) -> bool:
