@@ -73,9 +73,9 @@ def _run(jobs: Jobs, change: Change) -> None:
 
     change.report = _made(jobs.registry, change, jobs.watched(change, say), jobs.told(change))
     samples, verdicts = change.report["recomputed"], change.report.get("verdicts_changed", 0)
-    named = f"{verdicts:,} {'verdict' if verdicts == 1 else 'verdicts'}"
+    named = f"{verdicts:,} {'verdict' if verdicts == 1 else 'verdicts'}" if verdicts else "no verdict"
     if change.trial:
-        jobs.end(change, TRIED, f"{named} would change; nothing is changed yet.")
+        jobs.end(change, TRIED, f"{named[:1].upper()}{named[1:]} would change; nothing is changed yet.")
     else:
         computed = f"{samples:,} {'sample' if samples == 1 else 'samples'} computed anew"
         jobs.end(change, DONE, f"{computed}, {named} changed." if change.action != REFRESH else f"{computed}.")

@@ -178,6 +178,6 @@ def _back_to_batch(change: Change) -> Any:
     samples, verdicts = report["recomputed"], report["verdicts_changed"]
     flash(
         f"{DONE_WORDS[change.action].format(change.subject)}: {counted(samples, 'sample')} recomputed, "
-        f"{counted(verdicts, 'verdict')} changed."
+        f"{counted(verdicts, 'verdict') if verdicts else 'no verdict'} changed."
     )
     return redirect(url_for("batches.page", code=change.subject), 303)

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable
+from collections.abc import Callable, Iterable, Sequence
 from typing import Any
 
 from flask import Blueprint, Flask, current_app, jsonify, redirect, render_template, url_for
@@ -29,12 +29,21 @@ def register(app: Flask, folder: Any = None) -> None:
     """Run the jobs of the application's registry; ``folder``: where they are kept, None for the user's own place."""
     registry = app.extensions["registry"]
     app.extensions["jobs"] = Jobs(registry, JobFolder(folder or state_folder(registry.url)))
+    app.jinja_env.filters["by_target"] = by_target
     app.jinja_env.globals["job_state_words"] = lambda job: STATE_WORDS[job.state]
     app.register_blueprint(blueprint)
 
     @app.context_processor
     def say() -> dict[str, Any]:
         return {"job_at_work": job_at_work, "address_of_job": address_of}
+
+
+def by_target(kinds: Iterable[Sequence[Any]]) -> list[tuple[str, list[tuple[Any, ...]]]]:
+    """(target, verdict before, after, how many) as (target, [(before, after, how many), ...]), in the same order."""
+    groups: dict[str, list[tuple[Any, ...]]] = {}
+    for target, *change in kinds:
+        groups.setdefault(target, []).append(tuple(change))
+    return list(groups.items())
 
 
 def jobs() -> Jobs:

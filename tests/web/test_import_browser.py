@@ -146,6 +146,9 @@ def test_browser_batch_is_withdrawn_after_a_trial(window: Any, address: str) -> 
     window.find_element("css selector", "form.tools button").click()
     until_text(window, "nothing is changed yet")
     sound(window)
+    window.find_element("css selector", "main details summary").click()
+    table, caption = (window.find_element("css selector", f"main details {part}") for part in ("table", "caption"))
+    assert caption.rect["width"] >= 0.9 * table.rect["width"], "words above a table are not squeezed"
     window.find_element("css selector", "button[value=confirmed]").click()
     until_text(window, "Batch majors is withdrawn")
     sound(window)

@@ -151,6 +151,14 @@ def test_page_of_an_import_among_the_work_is_the_page_of_the_import(site: Site) 
     assert f'<a href="{address}">The import of samples.csv</a>' in page
 
 
+def test_changes_are_told_target_by_target_in_their_order() -> None:
+    kinds = [["Tin", "possible", "undecided", 3], ["Tin", "favourable", "undecided", 2], ["Heat", None, "possible", 1]]
+    assert working.by_target(kinds) == [
+        ("Tin", [("possible", "undecided", 3), ("favourable", "undecided", 2)]),
+        ("Heat", [(None, "possible", 1)]),
+    ]
+
+
 def test_nothing_ran_says_what_would_stand_there(site: Site) -> None:
     assert "Nothing ran during the last day." in site.client.get("/work").text
 
