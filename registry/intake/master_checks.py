@@ -48,8 +48,8 @@ def check_rows(
 
 def _check_keys(kind: str, table: Table, lines: np.ndarray, headings: Mapping[str, str], findings: Findings) -> None:
     names = _KEYS[kind]
+    said = f"{names[0]} stands" if len(names) == 1 else f"{', '.join(names[:-1])} and {names[-1]} stand together"
     seen: dict[tuple[Any, ...], int] = {}
-    by_case: dict[str, str] = {}
     columns = [table.get(name, [None] * len(lines)) for name in names]
     for line, *key in zip(lines.tolist(), *columns, strict=True):
         if any(part is None for part in key):
@@ -58,14 +58,8 @@ def _check_keys(kind: str, table: Table, lines: np.ndarray, headings: Mapping[st
         shown = ", ".join(f"{part:g}" if isinstance(part, float) else str(part) for part in key)
         if first != line:
             findings.add(
-                f"{' and '.join(names)} stand more than once", row=line, column=headings[names[0]], found=shown,
+                f"{said} more than once", row=line, column=headings[names[0]], found=shown,
                 expected=f"one row each (the first is in row {first})", remedy="delete or correct one of the rows",
-            )  # fmt: skip
-        elif len(key) == 1 and by_case.setdefault(str(key[0]).casefold(), str(key[0])) != str(key[0]):
-            findings.warn(
-                "two codes differ in capitals only", row=line, column=headings[names[0]], found=shown,
-                expected=f"perhaps {by_case[str(key[0]).casefold()]}",
-                remedy="they are kept apart; correct one if they are the same",
             )  # fmt: skip
 
 

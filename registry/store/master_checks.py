@@ -12,7 +12,7 @@ import sqlalchemy as sa
 from registry.errors import Problem
 from registry.store import master_positions, raw_rows, tables
 from registry.store.master_kinds import MasterKind, Reference
-from registry.store.near_codes import near_misses
+from registry.store.near_codes import near_misses, written_twice
 
 Rows = dict[str, list[Any]]
 Known = Mapping[tuple[Any, ...], Mapping[str, Any]]
@@ -155,6 +155,30 @@ def _written_otherwise(
     ]
     if len(near) > LISTED:
         what = f"{len(near) - LISTED:,} more codes are almost those of registered ones ({spec.kind})"
+        warnings.append(Problem(file, what, severity="warning"))
+    return warnings + _written_twice(spec, [code for code in fresh if code not in near], fresh, shown, lines, file)
+
+
+def _written_twice(
+    spec: MasterKind, codes: Sequence[str], rows: Mapping[str, int], shown: str, lines: Sequence[int], file: str
+) -> list[Problem]:
+    """New codes of one file that differ from each other only so; ``rows`` are theirs."""
+    twice = written_twice(codes)
+    warnings = [
+        Problem(
+            file,
+            f"another {spec.noun} of the file is written almost the same",
+            lines[rows[code]],
+            shown,
+            code,
+            f"perhaps '{before}' of row {lines[rows[before]]}",
+            "they are kept apart; correct one if they are the same",
+            "warning",
+        )
+        for code, before in list(twice.items())[:LISTED]
+    ]
+    if len(twice) > LISTED:
+        what = f"{len(twice) - LISTED:,} more codes of the file are almost those of others ({spec.kind})"
         warnings.append(Problem(file, what, severity="warning"))
     return warnings
 

@@ -34,6 +34,20 @@ def near_misses(codes: Iterable[str], known: Iterable[str]) -> dict[str, list[st
     return {code: close for code in unknown if (close := loose.get(loose_code(code)))}
 
 
+def written_twice(codes: Iterable[str]) -> dict[str, str]:
+    """For each code that differs from an earlier one only in what people vary, that one; in order."""
+    alike: dict[str, list[str]] = {}
+    for code in dict.fromkeys(codes):
+        alike.setdefault(_coarse(code), []).append(code)
+    twice: dict[str, str] = {}
+    for group in (group for group in alike.values() if len(group) > 1):
+        first: dict[str, str] = {}
+        for code in group:
+            if (before := first.setdefault(loose_code(code), code)) != code:
+                twice[code] = before
+    return twice
+
+
 class KnownCodes:
     """Known codes in a few bytes each, to look many new ones up by: ``codes()`` goes through them, again and again."""
 

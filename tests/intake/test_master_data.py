@@ -132,7 +132,7 @@ def test_blank_cells_are_none_so_that_they_never_erase():
          "surveys", "azimuth_deg is out of range", 2, "azimuth_deg"),
         ("site_code,depth_m,azimuth_deg,dip_deg\nA,0,10,-95\n", "surveys", "dip_deg is out of range", 2, "dip_deg"),
         ("site_code,depth_m,azimuth_deg,dip_deg\nA,0,10,-60\nA,0,11,-61\n",
-         "surveys", "stand more than once", 3, "site_code"),
+         "surveys", "site_code and depth_m stand together more than once", 3, "site_code"),
         ("site_code,from_m,to_m,lithology\nA,5,5,granite\n", "intervals", "runs backwards or is empty", 2, "from_m"),
         ("site_code,from_m,to_m,lithology\nA,x,5,granite\n", "intervals", "from_m is not a number", 2, "from_m"),
         ("site_code,from_m,to_m,lithology\nA,1,5,\n", "intervals", "lithology is blank", 2, "lithology"),
@@ -144,7 +144,7 @@ def test_blank_cells_are_none_so_that_they_never_erase():
          "samples", "collected_on is not a date", 2, "collected_on"),
         ("sample_code,sample_kind,site_code\nS1,liver,A\n",
          "samples", "sample_kind is not a known word", 2, "sample_kind"),
-        ("sample_code,site_code\nS1,A\nS1,B\n", "samples", "stand more than once", 3, "sample_code"),
+        ("sample_code,site_code\nS1,A\nS1,B\n", "samples", "sample_code stands more than once", 3, "sample_code"),
         ("sample_code,site_code\n,A\n", "samples", "sample_code is blank", 2, "sample_code"),
         ("sample_code,site_code,density (apples)\nS1,A,5\n", "samples", "the unit in the heading does not belong", None,
          "density (apples)"),
@@ -185,12 +185,6 @@ def test_overlapping_intervals_of_one_hole_are_a_warning():
     assert reading.ok
     (warning,) = reading.warnings
     assert (warning.row, warning.found) == (4, "9 to 12")
-
-
-def test_codes_that_differ_in_capitals_are_a_warning():
-    reading = read("sample_code,site_code\nS1a,A\nS1A,A\n")
-    assert reading.ok
-    assert [warning.expected for warning in reading.warnings] == ["perhaps S1a"]
 
 
 def test_decimal_comma_and_feet_are_converted():

@@ -275,3 +275,16 @@ def test_many_samples_come_in_and_are_found_again(any_registry: Registry) -> Non
         assert bring(connection, "samples", {"sample_code": codes}).added == 1203
         again = bring(connection, "samples", {"sample_code": codes, "lithology": ["granite"] * 1203})
         assert (again.added, len(again.changes)) == (0, 1203)
+
+
+def test_new_codes_of_one_file_written_almost_the_same_are_remarked_with_both_rows(any_registry: Registry) -> None:
+    with writing(any_registry) as connection:
+        outcome = bring(connection, "samples", {"sample_code": ["S1", "S2", "s-1", "S01"]})
+        again = bring(connection, "samples", {"sample_code": ["S1", "S2", "s-1", "S01"]})
+    assert outcome.added == 4
+    assert [problem.severity for problem in outcome.problems] == ["warning", "warning"]
+    assert outcome.problems[0].sentence() == (
+        "samples.csv, row 4, column 'sample_code': another sample of the file is written almost the same; "
+        "found 's-1', expected perhaps 'S1' of row 2; they are kept apart; correct one if they are the same."
+    )
+    assert again.problems == []

@@ -6,7 +6,7 @@ import pytest
 from hypothesis import given
 from hypothesis import strategies as st
 
-from registry.store.near_codes import KnownCodes, near_misses, nearest, pattern_of
+from registry.store.near_codes import KnownCodes, near_misses, nearest, pattern_of, written_twice
 
 KNOWN = ["BH1-001", "BH1-012", "S16", "A1-12", "Q 7"]
 
@@ -51,3 +51,8 @@ def test_known_codes_find_what_near_misses_finds(known: list[str], new: list[str
     """Invented codes of few letters, so that many are almost alike."""
     assert KnownCodes(lambda: known).near_misses(new) == near_misses(new, known)
     assert len(KnownCodes(lambda: known)) == len(known)
+
+
+def test_codes_of_one_list_that_are_written_almost_the_same_point_to_the_first():
+    codes = ["S1", "S2", "s-1", "S01", "S1", "OC 1", "A1-12", "OC1", "A11-2"]
+    assert written_twice(codes) == {"s-1": "S1", "S01": "S1", "OC1": "OC 1"}
