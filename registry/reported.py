@@ -2,7 +2,9 @@
 
 from __future__ import annotations
 
+import tempfile
 from collections.abc import Iterable
+from pathlib import Path
 from typing import Any
 
 from registry.intake import Reading
@@ -26,10 +28,11 @@ def reported_lines(connection: Any, sample_id: int) -> list[dict[str, Any]]:
         line["cells"].append({key: row[key] for key in ("position", "header", "analyte", "value", "unit", "qualifier")})
     for batch_id in {key[0] for key in lines}:
         wanted = [line_no for batch, line_no in lines if batch == batch_id]
-        data = batch_files.file_of(connection, batch_id)
-        texts = {} if data is None else _texts(data, wanted)
+        with tempfile.TemporaryDirectory() as folder:
+            file = batch_files.laid_out(connection, batch_id, Path(folder))
+            texts = {} if file is None else _texts(file, wanted)
         for line_no in wanted:
-            lines[batch_id, line_no]["has_file"] = data is not None
+            lines[batch_id, line_no]["has_file"] = file is not None
             row_texts = texts.get(line_no, [])
             for cell in lines[batch_id, line_no]["cells"]:
                 place = cell["position"]
@@ -37,10 +40,10 @@ def reported_lines(connection: Any, sample_id: int) -> list[dict[str, Any]]:
     return list(lines.values())
 
 
-def _texts(data: bytes, line_numbers: Iterable[int]) -> dict[int, list[str]]:
+def _texts(file: bytes | Path, line_numbers: Iterable[int]) -> dict[int, list[str]]:
     """The cells of file lines as they stand in the stored file."""
     wanted, found = set(line_numbers), {}
-    for chunk in source_of(data, Reading("stored file")).chunks():
+    for chunk in source_of(file, Reading("stored file")).chunks():
         numbers = chunk.lines
         if len(numbers) and wanted & set(range(int(numbers[0]), int(numbers[-1]) + 1)):
             found.update({line: row for line, row in zip(numbers.tolist(), chunk.rows, strict=True) if line in wanted})

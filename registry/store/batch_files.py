@@ -5,6 +5,7 @@ from __future__ import annotations
 import hashlib
 import zlib
 from collections.abc import Iterable, Iterator
+from pathlib import Path
 
 import sqlalchemy as sa
 
@@ -14,6 +15,8 @@ from registry.store import tables
 #: Of zlib: its quickest; a lab file still shrinks to about a third.
 COMPRESSION_LEVEL = 1
 PART_BYTES = 1 << 20
+#: Larger files are laid out on disk to be read.
+HELD_BYTES = 8 * PART_BYTES
 _file = tables.batch_file
 
 
@@ -66,6 +69,25 @@ def is_kept(connection: sa.Connection, batch_id: int) -> bool:
 def file_of(connection: sa.Connection, batch_id: int) -> bytes | None:
     """The bytes of the file a batch was imported from, None where it is not kept; PlutonbookError where damaged."""
     return b"".join(unpacked_parts(connection, batch_id)) if is_kept(connection, batch_id) else None
+
+
+def laid_out(connection: sa.Connection, batch_id: int, folder: Path) -> bytes | Path | None:
+    """The file of a batch to be read: its bytes or, from ``HELD_BYTES`` on, where it was written in ``folder``.
+
+    None where it is not kept; PlutonbookError where it is damaged.
+    """
+    if not is_kept(connection, batch_id):
+        return None
+    held, path = bytearray(), folder / f"file of batch {batch_id}"
+    pieces_to_come = unpacked_parts(connection, batch_id)
+    for piece in pieces_to_come:
+        held += piece
+        if len(held) >= HELD_BYTES:
+            with path.open("wb") as out:
+                out.write(held)
+                out.writelines(pieces_to_come)
+            return path
+    return bytes(held)
 
 
 def hash_of(connection: sa.Connection, batch_id: int) -> str:

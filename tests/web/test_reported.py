@@ -4,8 +4,13 @@ from __future__ import annotations
 
 from pathlib import Path
 
+import pytest
+
+from registry import reported
 from registry.importing import ImportOptions, import_files
+from registry.intake import Reading
 from registry.reported import reported_lines
+from registry.store import batch_files
 from registry.store.engine import Registry, reading
 from web import create_app
 
@@ -31,6 +36,27 @@ def test_reported_cells_stand_letter_by_letter(founded_registry: Registry, tmp_p
         ("SiO2", "65,10"), ("Zr", "0180,0"), ("Sn", "<1,0"),
     ]  # fmt: skip
     assert [cell["text"] for cell in lines["B"][0]["cells"]] == ["12", "> 500"]
+
+
+def test_reported_cells_of_a_large_file_are_read_from_disk(
+    founded_registry: Registry, tmp_path: Path, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    imported(founded_registry, tmp_path)
+    monkeypatch.setattr(batch_files, "HELD_BYTES", 1)
+    seen: list[bytes | Path] = []
+    read = reported.source_of
+
+    def watched(file: bytes | Path, told: Reading) -> object:
+        seen.append(file)
+        return read(file, told)
+
+    monkeypatch.setattr(reported, "source_of", watched)
+    with reading(founded_registry) as connection:
+        sample_id = connection.exec_driver_sql("SELECT sample_id FROM sample WHERE code = 'A'").scalar()
+        line = reported_lines(connection, sample_id)[0]
+    assert line["has_file"] and [cell["text"] for cell in line["cells"]] == ["65,10", "0180,0", "<1,0"]
+    assert [isinstance(file, Path) for file in seen] == [True]
+    assert not seen[0].exists()  # type: ignore[union-attr]
 
 
 def test_reported_page_shows_the_text_beside_what_was_read(founded_registry: Registry, tmp_path: Path) -> None:
