@@ -22,6 +22,7 @@ from registry.store import schema, tables
 from registry.store.engine import Registry, open_registry
 from registry.targets.definition import load_definitions
 from tests.registry_files import made_once
+from tests.web.import_site import Site, small_registry
 from web import create_app
 
 HOSTILE = '<script>alert("x")</script>&amp;'
@@ -222,6 +223,20 @@ class WritableSite:
         finally:
             connection.close()
         return rows
+
+
+@pytest.fixture(scope="session")
+def small_registry_file(tmp_path_factory: pytest.TempPathFactory) -> Path:
+    """Three invented samples with their majors; copy it, do not write it."""
+    return made_once(tmp_path_factory, "small", small_registry)
+
+
+@pytest.fixture
+def site(small_registry_file: Path, tmp_path: Path) -> Iterator[Site]:
+    """The site of three samples, with the forms as a person sends them."""
+    made = Site(small_registry_file, tmp_path)
+    yield made
+    made.close()
 
 
 @pytest.fixture(scope="session")

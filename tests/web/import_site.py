@@ -7,13 +7,15 @@ import re
 import shutil
 from html import unescape
 from pathlib import Path
+from tempfile import TemporaryDirectory
 from typing import Any
 
 from flask.testing import FlaskClient
 from werkzeug.datastructures import MultiDict
 
+from registry.founding import found
 from registry.importing import import_files
-from registry.store.engine import open_registry
+from registry.store.engine import Registry
 from web import create_app
 
 #: Invented: a layout test.
@@ -26,18 +28,22 @@ TRACES = "Certificate: T-77\nSample,Zr,Sr (ppm),Au\nKD-1,150,400,<1\nKD-2,160,38
 FAULTY = "Sample,SiO2 (%),MnO (%)\nKD-1,65.1,3002\nKD-2,sixty,0.1\n"
 
 
+def small_registry(path: Path) -> Registry:
+    """A registry of the three samples and their majors; the files lie beside it meanwhile."""
+    registry = found(path)
+    with TemporaryDirectory(dir=path.parent) as folder:
+        samples, majors = Path(folder, "samples.csv"), Path(folder, "majors.csv")
+        samples.write_text(SAMPLES)
+        majors.write_text(MAJORS)
+        import_files(registry, [samples, majors])
+    return registry
+
+
 class Site:
     """A client of the writable site; ``send`` and ``press`` fill the forms from what the pages hold."""
 
-    def __init__(self, founded: Path, folder: Path) -> None:
-        self.path = folder / "site.sqlite"
-        shutil.copy(founded, self.path)
-        samples, majors = folder / "samples.csv", folder / "majors.csv"
-        samples.write_text(SAMPLES)
-        majors.write_text(MAJORS)
-        registry = open_registry(self.path)
-        import_files(registry, [samples, majors])
-        registry.close()
+    def __init__(self, small_registry_file: Path, folder: Path) -> None:
+        self.path = Path(shutil.copy(small_registry_file, folder / "site.sqlite"))
         self.app = create_app(str(self.path), writable=True, drafts=folder / "drafts")
         self.client: FlaskClient = self.app.test_client()
 
@@ -67,8 +73,8 @@ class Site:
         return self.settled(answer.headers["Location"])
 
     def settled(self, address: str) -> str:
-        draft = self.jobs.wait(address.rsplit("/", 1)[-1], 60)
-        assert draft is not None and not draft.under_way
+        draft = self.jobs.wait(address.rsplit("/", 1)[-1], 300)  # ends as soon as the work does
+        assert draft is not None and not draft.under_way, draft
         return address
 
     def form(self, address: str) -> MultiDict[str, str]:

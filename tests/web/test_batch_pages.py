@@ -4,8 +4,6 @@ from __future__ import annotations
 
 import io
 import sqlite3
-from collections.abc import Iterator
-from pathlib import Path
 from typing import Any
 
 import pytest
@@ -14,13 +12,6 @@ from registry import batching
 from registry.store import batch_files
 from tests.web.import_site import MAJORS, Site, form_fields
 from web import control_charts
-
-
-@pytest.fixture
-def site(founded_registry_file: Path, tmp_path: Path) -> Iterator[Site]:
-    made = Site(founded_registry_file, tmp_path)
-    yield made
-    made.close()
 
 
 def rows(site: Site, query: str) -> list[tuple[Any, ...]]:

@@ -3,12 +3,10 @@
 from __future__ import annotations
 
 import re
-from collections.abc import Iterator
 from pathlib import Path
 from typing import Any
 
 import numpy as np
-import pytest
 
 from registry.importing import ImportOptions, import_files
 from registry.store.schema import open_registry
@@ -18,13 +16,6 @@ from web import control_charts, control_history
 CERTIFICATES = """reference_material,analyte,value,unit,uncertainty,uncertainty_type,status,source
 XM-1,Zr,100,ppm,4,SD,certified,invented
 """
-
-
-@pytest.fixture
-def site(founded_registry_file: Path, tmp_path: Path) -> Iterator[Site]:
-    made = Site(founded_registry_file, tmp_path)
-    yield made
-    made.close()
 
 
 def bring(site: Site, folder: Path) -> None:

@@ -19,13 +19,6 @@ pytestmark = pytest.mark.browser
 
 
 @pytest.fixture
-def site(founded_registry_file: Path, tmp_path: Path) -> Iterator[Site]:
-    made = Site(founded_registry_file, tmp_path)
-    yield made
-    made.close()
-
-
-@pytest.fixture
 def address(site: Site) -> Iterator[str]:
     with served(site.app, threads=3) as address:
         yield address

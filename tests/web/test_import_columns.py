@@ -4,23 +4,12 @@ from __future__ import annotations
 
 import json
 import sqlite3
-from collections.abc import Iterator
-from pathlib import Path
 from typing import Any
-
-import pytest
 
 from registry import reading_recipes
 from tests.web.import_site import Site
 
 TEXT = "Sample;SiO2 (%);Zirconia;Blue (ppm);;Note\nKD-1;61,5;0,02;1.234;7;a\nKD-2;60,5;0,03;-5;8;b\n"
-
-
-@pytest.fixture
-def site(founded_registry_file: Path, tmp_path: Path) -> Iterator[Site]:
-    made = Site(founded_registry_file, tmp_path)
-    yield made
-    made.close()
 
 
 def press(site: Site, address: str, button: str, columns: dict[str, dict[str, str]], **changes: str) -> Any:

@@ -6,23 +6,14 @@ import io
 import os
 import sqlite3
 import stat
-from collections.abc import Iterator
 from html import escape
 from pathlib import Path
 from typing import Any
 
-import pytest
 from openpyxl import Workbook
 
 from tests.web.import_site import FAULTY, TRACES, Site
 from web import create_app, importing
-
-
-@pytest.fixture
-def site(founded_registry_file: Path, tmp_path: Path) -> Iterator[Site]:
-    made = Site(founded_registry_file, tmp_path)
-    yield made
-    made.close()
 
 
 def rows(site: Site, query: str) -> list[tuple[Any, ...]]:

@@ -2,20 +2,10 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterator
 from pathlib import Path
-
-import pytest
 
 from registry.importing import ImportOptions, import_files
 from tests.web.import_site import Site
-
-
-@pytest.fixture
-def site(founded_registry_file: Path, tmp_path: Path) -> Iterator[Site]:
-    made = Site(founded_registry_file, tmp_path)
-    yield made
-    made.close()
 
 
 def test_new_code_almost_like_a_registered_one_is_remarked_on_before_it_is_stored(site: Site) -> None:

@@ -21,9 +21,9 @@ from web import create_app, working
 
 
 @pytest.fixture
-def site(founded_registry_file: Path, tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> Iterator[Site]:
+def site(small_registry_file: Path, tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> Iterator[Site]:
     monkeypatch.setattr(working, "PATIENCE_S", 0.0)
-    made = Site(founded_registry_file, tmp_path)
+    made = Site(small_registry_file, tmp_path)
     yield made
     made.close()
 
