@@ -3,13 +3,14 @@
 from __future__ import annotations
 
 import json
-from collections.abc import Mapping, Sequence
+from collections.abc import Callable, Mapping, Sequence
 from typing import Any
 
 from registry import auditing, settings
 from registry.errors import PlutonbookError, UsageError
 from registry.judging import CONVENTION_PREFIX
 from registry.petrology.catalogue.conventions import CONVENTIONS
+from registry.progress import Progress
 from registry.quality.recognising import PATTERN_NAMES, PATTERN_PREFIX, Patterns
 from registry.recomputing import recomputed_after
 from registry.store import target_rows
@@ -41,7 +42,14 @@ def list_settings(registry: Registry) -> list[dict[str, Any]]:
     return rows
 
 
-def change_settings(registry: Registry, wishes: Sequence[str], dry_run: bool = False) -> dict[str, Any]:
+def change_settings(
+    registry: Registry,
+    wishes: Sequence[str],
+    dry_run: bool = False,
+    *,
+    progress: Progress | None = None,
+    tell: Callable[[str], Any] | None = None,
+) -> dict[str, Any]:
     """Put ``name=value`` settings in force and compute all that hangs on them, in one transaction.
 
     A value left empty gives a convention its default back and takes a pattern away. Returns ``settings`` (what
@@ -73,7 +81,8 @@ def change_settings(registry: Registry, wishes: Sequence[str], dry_run: bool = F
         for name, (was, now) in changed.items():
             auditing.note(connection, "setting", name, f"{was or '(none)'} -> {now or '(none)'}")
 
-    report = recomputed_after(registry, change, "a change of the settings", settings.CAUSE, dry_run)
+    what = ("a trial of " if dry_run else "") + "changing the settings"
+    report = recomputed_after(registry, change, what, settings.CAUSE, dry_run, progress=progress, tell=tell)
     return {"settings": changed, **report}
 
 

@@ -8,6 +8,7 @@ from typing import Any
 import click
 
 from registry.commands.options import json_option, registry_named, registry_option, say
+from registry.commands.progress import shown
 
 #: Lines of one sort that are printed before the rest is counted.
 LINES_SHOWN = 20
@@ -75,7 +76,8 @@ def digestion(registry_path: str | None, batch: str, wishes: tuple[str, ...], dr
         say({"batch": batch, "columns": columns}, lines, as_json)
         return
     stated = digestions_from_words(columns, wishes)
-    report = set_digestions(registry, batch, stated, dry_run)
+    with shown(trial=dry_run) as progress:
+        report = set_digestions(registry, batch, stated, dry_run, progress=progress, tell=progress.tell)
     said = [
         f"{row['header'] or row['analyte']}: {row['digestion'].replace('_', ' ')} -> "
         f"{stated[row['position']].replace('_', ' ')}"
@@ -110,7 +112,9 @@ def _set_state(registry_path: str | None, batch: str, state: str, dry_run: bool,
     from registry.batching import set_state
     from registry.store.engine import open_registry
 
-    report = set_state(open_registry(registry_named(registry_path)), batch, state, dry_run)
+    registry = open_registry(registry_named(registry_path))
+    with shown(trial=dry_run) as progress:
+        report = set_state(registry, batch, state, dry_run, progress=progress, tell=progress.tell)
     first, *others = changes_in_lines(report, dry_run)
     done = "withdrawn" if state == "withdrawn" else "restored"
     parts = report["parts"]

@@ -5,6 +5,7 @@ from __future__ import annotations
 import click
 
 from registry.commands.options import json_option, registry_named, registry_option, say
+from registry.commands.progress import shown as progress_shown
 
 
 @click.command()
@@ -27,6 +28,7 @@ def settings(registry_path: str | None, wishes: tuple[str, ...], dry_run: bool, 
         rows = list_settings(registry)
         say({"settings": rows}, shown(rows), as_json)
         return
-    report = change_settings(registry, wishes, dry_run)
+    with progress_shown(trial=dry_run) as progress:
+        report = change_settings(registry, wishes, dry_run, progress=progress, tell=progress.tell)
     lines = [f"{name}: {was or 'none'} -> {now or 'none'}" for name, (was, now) in report["settings"].items()]
     say({**report, "dry_run": dry_run}, [*lines, *changes_in_lines(report, dry_run)], as_json)

@@ -14,6 +14,7 @@ import pytest
 
 from registry.commands import progress as shown_progress
 from registry.commands.progress import shown
+from registry.importing import ImportOptions, import_files
 from registry.progress import words
 from registry.store.engine import open_registry, writing
 
@@ -28,6 +29,7 @@ CERTIFICATE = "Sample,SiO2 (%),MgO (%)\n" + "".join(f"T{row},{50 + row % 20},3.1
         (("reading bytes", 30_000_000, 143_000_000, "b.csv", False), "Reading b.csv: 30 of 143 MB."),
         (("storing", 8192, 100_000, "", False), "Storing: 8,192 of 100,000 lines of results."),
         (("computing", 4096, 100_000, "", True), "Computing and judging on trial: 4,096 of 100,000 samples."),
+        (("marking", 0, 0, "", False), "Finding the samples it touches."),
         (("writing", 0, 0, "", False), "Writing it to the registry."),
         (("writing", 0, 0, "", True), "Undoing the trial."),
     ],
@@ -105,3 +107,29 @@ def test_import_that_has_to_wait_says_for_what_and_goes_on(founded_registry: obj
     output, _ = child.communicate(timeout=60)
     assert "is held by a long repair since" in said and said.endswith("; waiting.\n")
     assert child.returncode == 0 and "Stored." in output
+
+
+@pytest.mark.parametrize(
+    ("command", "done"),
+    [
+        (("withdraw", "B-1"), "Batch B-1 withdrawn"),
+        (("digestion", "B-1", "Zr=xrf"), "fusion -> xrf"),
+        (("settings", "loi_warn_wt=1"), "loi_warn_wt: 3.0 -> 1.0"),
+    ],
+)
+def test_change_that_has_to_wait_says_for_what_and_goes_on(
+    founded_registry: object, tmp_path: Path, command: tuple[str, ...], done: str
+) -> None:
+    path = founded_registry.path
+    (tmp_path / "lab.csv").write_text("Sample,Zr fusion (ppm)\nA,150\n", encoding="utf-8")
+    import_files(founded_registry, [tmp_path / "lab.csv"], ImportOptions(create_samples=True, batch="B-1"))
+    with writing(open_registry(path), what="a long repair"):
+        child = subprocess.Popen(
+            [sys.executable, "-m", "registry.cli", "--registry", str(path), *command],
+            stdout=subprocess.PIPE, stderr=subprocess.PIPE, text=True,
+        )  # fmt: skip
+        assert child.stderr is not None
+        said = child.stderr.readline()
+    output, _ = child.communicate(timeout=60)
+    assert "is held by a long repair since" in said and said.endswith("; waiting.\n")
+    assert child.returncode == 0 and done in output
