@@ -451,7 +451,7 @@ def test_page_about_a_registry_that_cannot_be_asked_is_made_without_asking_it(
     monkeypatch.setattr("web.writing.accounts.any_accounts", busy)
     answer = site.client.get("/samples")
     assert answer.status_code == 503
-    assert "an import holds the registry" in answer.text
+    assert "An import holds the registry" in answer.text
 
 
 @pytest.mark.postgresql
