@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import re
 from collections.abc import Iterator
 from typing import Any
 
@@ -34,12 +35,9 @@ _JUDGED = "s.kind NOT IN (" + ", ".join(f"'{kind}'" for kind in CONTROL_KINDS) +
 def statements(connection: sa.Connection) -> Iterator[str]:
     """CREATE VIEW of every sheet, for the engine of the connection; reads the rows of ``warning_kind``."""
     dialect: Any = dialect_sqlite if connection.dialect.name == "sqlite" else dialect_postgresql
-    value_columns = connection.execute(
-        sa.select(tables.warning_kind.c.position, tables.warning_kind.c.value_column).order_by(
-            tables.warning_kind.c.position
-        )
-    ).fetchall()
-    for name, (expressions, source) in _sheets(dialect, [(row[0], row[1]) for row in value_columns]).items():
+    warning = tables.warning_kind.c
+    kinds = connection.execute(sa.select(warning.position, warning.value_column, warning.text).order_by("position"))
+    for name, (expressions, source) in _sheets(dialect, [(row[0], row[1], row[2]) for row in kinds]).items():
         columns = ", ".join(f"{expressions[column]} AS {column}" for column in SHEETS[name])
         yield f"CREATE VIEW {name} AS SELECT {columns} FROM {source}"
 
@@ -60,7 +58,7 @@ def _each(prefix: str, names: tuple[str, ...] | str) -> dict[str, str]:
     return {name: f"{prefix}.{name}" for name in (names.split() if isinstance(names, str) else names)}
 
 
-def _sheets(dialect: Any, value_columns: list[tuple[int, str | None]]) -> dict[str, tuple[dict[str, str], str]]:
+def _sheets(dialect: Any, value_columns: list[tuple[int, str | None, str]]) -> dict[str, tuple[dict[str, str], str]]:
     """Sheet -> (column -> expression, FROM and WHERE)."""
     sample = {
         "sample_id": "s.sample_id",
@@ -151,16 +149,23 @@ def _judgement_sheets(dialect: Any, sample: dict[str, str]) -> dict[str, tuple[d
 
 
 def _expanded_sheets(
-    dialect: Any, sample: dict[str, str], value_columns: list[tuple[int, str | None]]
+    dialect: Any, sample: dict[str, str], value_columns: list[tuple[int, str | None, str]]
 ) -> dict[str, tuple[dict[str, str], str]]:
     """The strings of each derived row, one letter a quantity and one 0/1 a warning, as rows."""
     branches = " ".join(
         f"WHEN {position} THEN {place}"
-        for position, column in value_columns
+        for position, column, _ in value_columns
         if column is not None and (place := _place_of(column)) is not None
     )
     value = f"CASE w.position {branches} END" if branches else dialect.NULL_NUMBER
     said = f"replace(w.text, '{{value}}', coalesce({dialect.spelled(value)}, 'not known'))"
+    others = ""
+    for position, _, text in value_columns:  # a text may name columns beside its value
+        told = said
+        for name in sorted(set(re.findall(r"\{(\w+)\}", text)) - {"value"}):
+            told = f"replace({told}, '{{{name}}}', coalesce({dialect.spelled(_place_of(name))}, 'not known'))"
+        others += f" WHEN {position} THEN {told}" if told != said else ""
+    said = f"CASE w.position{others} ELSE {said} END" if others else said
     letter = "substr(d.causes, CAST(q.position AS integer) + 1, 1)"
     return {
         "warning_sheet": (

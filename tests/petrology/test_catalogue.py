@@ -14,6 +14,7 @@ import numpy as np
 import pytest
 
 import registry.petrology
+from registry.petrology.analytes import CHOSEN_COLUMNS
 from registry.petrology.catalogue import (
     CAUSES,
     METHOD_OF_QUANTITY,
@@ -198,4 +199,13 @@ def test_warnings_have_codes_of_their_own_and_stand_on_a_known_column() -> None:
 def test_warning_tells_its_value_where_it_names_one(warning: Any) -> None:
     assert ("{value}" in warning.text) == (warning.value_column is not None)
     if warning.value_column is not None:
-        assert "4.25" in warning.text.format(value=4.25)
+        assert "4.25" in warning.text.format_map(defaultdict(str, value=4.25))
+
+
+def test_warnings_name_only_columns_of_the_composition_or_the_derived_row() -> None:
+    stored = {*CHOSEN_COLUMNS, *DERIVED_COLUMNS, "value"}
+    named = {(w.code, name) for w in WARNINGS for name in re.findall(r"\{(\w+)\}", w.text)}
+
+    assert {(code, name) for code, name in named if name not in stored} == set()
+    assert ("feo_exceeds_total_iron", "fe2o3t_reported_wt") in named
+    assert ("zr_hf_outside_nature", "hf_ppm") in named

@@ -49,12 +49,13 @@ def _smoothness(symbol: str) -> Warning:
     lighter, heavier = neighbours_of(symbol)
     symbols = (symbol, *lighter, *heavier)
     columns = tuple(f"{each.lower()}_ppm" for each in symbols)
+    beside = ", ".join(f"{each} {{{each.lower()}_ppm}}" for each in (*reversed(lighter), *heavier))
     return Warning(
         f"{symbol.lower()}_not_smooth",
         columns[0],
         columns[0],
-        f"{symbol} {{value}} ppm lies off the line between its chondrite-normalised neighbours by more than a factor "
-        f"of {ROUGH_FACTOR:g}: a slip, an interference or a value near the detection limit; ask for a repeat",
+        f"{symbol} {{value}} ppm lies off the line between its chondrite-normalised neighbours ({beside}) by more than "
+        f"a factor of {ROUGH_FACTOR:g}: a slip, an interference or a value near the detection limit; ask for a repeat",
         partial(_not_smooth, symbols=symbols),
         (*columns, *(f"qualifier:{column}" for column in columns)),
     )
@@ -65,12 +66,14 @@ def _ratio_outside(value: Any, first: Any, second: Any, limits: tuple[float, flo
 
 
 def _ratio(quantity: str, label: str, columns: tuple[str, str], limits: tuple[float, float]) -> Warning:
+    both = " over ".join(f"{{{column}}}" for column in columns)
     return Warning(
         f"{quantity}_outside_nature",
         quantity,
         quantity,
-        f"{label} {{value}} lies outside {limits[0]:g} to {limits[1]:g}, where nearly all igneous rocks fall (common "
-        "practice, no source): check both elements, their units and the digestion before reading petrology into it",
+        f"{label} {{value}} ({both} ppm) lies outside {limits[0]:g} to {limits[1]:g}, where nearly all igneous "
+        "rocks fall (common practice, no source): check both elements, their units and the digestion before "
+        "reading petrology into it",
         partial(_ratio_outside, limits=limits),
         (quantity, *(f"qualifier:{column}" for column in columns)),
     )
@@ -92,8 +95,9 @@ def _one_metal(element: str, oxide: str, formula: str) -> Warning:
         f"{element.removesuffix('_ppm')}_disagrees_with_oxide",
         element,
         element,
-        f"{symbol} {{value}} ppm and the {formula} of the same sample differ by more than {DUPLICATE_PERCENT:g} % "
-        "(common practice): one of the two units or columns is wrong, or they come from different portions",
+        f"{symbol} {{value}} ppm and the {formula} of the same sample, {{{oxide}}} wt%, differ by more than "
+        f"{DUPLICATE_PERCENT:g} % (common practice): one of the two units or columns is wrong, or they come from "
+        "different portions",
         partial(_metal_disagrees, column=element, formula=formula),
         (element, oxide, f"digestion:{element}", f"qualifier:{element}", f"qualifier:{oxide}"),
     )
@@ -151,7 +155,7 @@ WARNINGS = (
         "loi_wt",
         "loi_wt",
         f"loss on ignition {{value}} wt% is a larger gain than the oxidation of all its iron ({OXYGEN_PER_FEO:.4f} of "
-        "FeO) makes: check the sign and the weighing",
+        "FeO {feot_wt} wt%) makes: check the sign and the weighing",
         _more_than_iron_gains,
         ("loi_wt", "feot_wt"),
     ),

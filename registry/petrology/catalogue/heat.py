@@ -290,8 +290,8 @@ WARNINGS = (
     Warning(
         "age_sigma_assumed",
         "theta_centre",
-        "age_ma",
-        "the age {value} Ma has no standard deviation: 10 % is taken",
+        None,
+        "the age of the intrusion has no standard deviation: 10 % is taken",
         _sigma_assumed,
         ("theta_centre", "age_sigma_ma"),
     ),

@@ -97,8 +97,8 @@ WARNINGS = (
         "feo_exceeds_total_iron",
         "feo_titrated_wt",
         "feo_titrated_wt",
-        "titrated FeO {value} wt% (or reported ferric iron) is above the total iron reported; "
-        "check the units and columns of the certificate, no iron split is made",
+        "titrated FeO {value} wt% (or reported ferric iron) is above the total iron reported, "
+        "{fe2o3t_reported_wt} wt% as Fe2O3; check the units and columns of the certificate, no iron split is made",
         _exceeds_total,
         _REPORTED,
     ),
@@ -107,7 +107,8 @@ WARNINGS = (
         "fe2o3t_wt",
         "fe2o3t_wt",
         "reported total iron {value} wt% as Fe2O3 differs by more than 0.1 wt% and 2 % from ferric plus titrated "
-        "ferrous iron; the reported total is used (common practice, no source)",
+        "ferrous iron (Fe2O3 {fe2o3_ferric_wt}, FeO {feo_titrated_wt} wt%); the reported total is used (common "
+        "practice, no source)",
         _totals_disagree,
         _REPORTED,
     ),

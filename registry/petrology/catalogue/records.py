@@ -75,7 +75,10 @@ class Method:
 
 @dataclass(frozen=True)
 class Warning:
-    """A remark on a value that stands: true where ``mask(*inputs)``. ``text`` may hold ``{value}``."""
+    """A remark on a value that stands: true where ``mask(*inputs)``. ``text`` may hold ``{value}`` and stored columns.
+
+    The value and each column in braces are put in where the remark is read.
+    """
 
     code: str
     column: str

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import re
 from typing import Any
 
 from sqlalchemy import Connection, text
@@ -24,6 +25,6 @@ def column_guide(connection: Connection) -> list[dict[str, Any]]:
 
 
 def warning_kinds(connection: Connection) -> list[dict[str, Any]]:
-    """The remarks that a value can carry: ``code column_name text``."""
+    """The remarks that a value can carry: ``code column_name text``; an ellipsis where numbers of a sample stand."""
     rows = connection.execute(text("SELECT code, column_name, text FROM warning_kind ORDER BY position"))
-    return [dict(row) for row in rows.mappings()]
+    return [{**row, "text": re.sub(r"\{\w+\}", "\u2026", row["text"])} for row in rows.mappings()]
