@@ -6,7 +6,7 @@ from collections.abc import Callable
 from dataclasses import dataclass, field
 from typing import Any
 
-from registry import batching, settings
+from registry import batching, setting_changes
 from registry.clock import now
 from registry.job_folder import DONE, TRIED, WORKING, Job
 from registry.jobs import Jobs
@@ -25,8 +25,8 @@ _WORDS = {
 class Change(Job, kind="change"):
     """A change of ``subject`` (the code of a batch, or what was edited) with what is wished.
 
-    ``wishes``: digestions by column position, or conventions by name. ``trial``: what it would do is told and nothing
-    kept. ``report`` is what ``recomputed_after`` returns. ``told`` is what the page knows of the wish, in words.
+    ``wishes``: digestions by column position, or what was typed for settings by name. ``trial``: what it would do is
+    told and nothing kept. ``report`` is what ``recomputed_after`` returns, ``told`` the wish in the words of the page.
     """
 
     action: str = ""
@@ -90,5 +90,6 @@ def _made(registry: Registry, change: Change, progress: Progress, tell: Callable
         stated = {int(position): name for position, name in change.wishes.items()}
         return batching.set_digestions(registry, change.subject, stated, change.trial, **watched)
     if change.action == SETTINGS:
-        return settings.change(registry, change.wishes, change.trial, **watched)
+        wishes = [f"{name}={typed}" for name, typed in change.wishes.items()]
+        return setting_changes.change_settings(registry, wishes, change.trial, **watched)
     return {"recomputed": refresh_registry(registry, cause="edited", **watched)}

@@ -1,8 +1,9 @@
-"""Settings by the command line: conventions and the code patterns of control samples, changed with what that does."""
+"""Settings: conventions and the code patterns of control samples, listed, and changed with what that does."""
 
 from __future__ import annotations
 
 import json
+import re
 from collections.abc import Callable, Mapping, Sequence
 from typing import Any
 
@@ -16,7 +17,8 @@ from registry.recomputing import recomputed_after
 from registry.store import target_rows
 from registry.store.engine import Registry, reading
 
-_PATTERNS = tuple(PATTERN_PREFIX + name for name in PATTERN_NAMES)
+#: The settings that hold a code pattern of control samples.
+PATTERNS = tuple(PATTERN_PREFIX + name for name in PATTERN_NAMES)
 
 
 def list_settings(registry: Registry) -> list[dict[str, Any]]:
@@ -34,12 +36,29 @@ def list_settings(registry: Registry) -> list[dict[str, Any]]:
         }
         for name, record in CONVENTIONS.items()
     ]
-    for name in _PATTERNS:
+    for name in PATTERNS:
         what = name.removeprefix(PATTERN_PREFIX).replace("_", " ")
         meaning = f"Regular expression: a sample of unknown kind whose code it is found in becomes a {what}."
         value = stored.get(name, "")
         rows.append({"name": name, "value": value, "default": "", "unit": "1", "meaning": meaning, "choices": []})
     return rows
+
+
+def stored_patterns(connection: Any) -> dict[str, str]:
+    """The code patterns of control samples by the name of their setting, '' where none is set."""
+    stored = target_rows.read_settings(connection)
+    return {name: stored.get(name, "") for name in PATTERNS}
+
+
+def pattern_faults(typed: Mapping[str, str]) -> dict[str, str]:
+    """A sentence for each pattern that is no regular expression, by the name of its setting."""
+    faults = {}
+    for name, text in typed.items():
+        try:
+            re.compile(text)
+        except re.error as fault:
+            faults[name] = f"“{text}” is no regular expression: {fault}."
+    return faults
 
 
 def change_settings(
@@ -97,7 +116,7 @@ def _sorted_out(wishes: Sequence[str]) -> tuple[dict[str, str], dict[str, str]]:
             raise UsageError(f"'{wish}' is no setting with its value; write NAME=VALUE")
         if name in CONVENTIONS:
             conventions[name] = text.strip()
-        elif name in _PATTERNS:
+        elif name in PATTERNS:
             patterns[name] = text.strip()
         else:
             raise UsageError(f"there is no setting '{name}'; 'plutonbook settings' lists them")

@@ -1,22 +1,16 @@
-"""The conventions of a registry as settings: shown with what may be chosen, checked, changed, dry-run first."""
+"""The conventions of a registry as settings: what may be chosen, and what was typed checked."""
 
 from __future__ import annotations
 
-import json
 import math
-from collections.abc import Callable, Mapping
+from collections.abc import Mapping
 from typing import Any
 
-from registry import auditing
-from registry.judging import CONVENTION_PREFIX, read_conventions
+from registry.judging import read_conventions
 from registry.petrology.catalogue.conventions import CONVENTION_GROUPS, CONVENTIONS
 from registry.petrology.catalogue.records import Convention
-from registry.progress import Progress
-from registry.recomputing import recomputed_after
-from registry.store import target_rows
-from registry.store.engine import Registry
 
-__all__ = ["CONVENTIONS", "CONVENTION_GROUPS", "Convention", "change", "current", "read_typed"]
+__all__ = ["CONVENTIONS", "CONVENTION_GROUPS", "Convention", "current", "read_typed"]
 
 CAUSE = "settings changed"
 YES, NO = "yes", "no"
@@ -70,26 +64,3 @@ def _value(record: Convention, text: str, faults: dict[str, str]) -> Any:
     if not (math.isfinite(value) and low <= value <= high):
         faults[record.name] = f"{text} lies outside what is taken; expected a number {span}."
     return value
-
-
-def change(
-    registry: Registry,
-    values: Mapping[str, Any],
-    dry_run: bool = False,
-    *,
-    progress: Progress | None = None,
-    tell: Callable[[str], Any] | None = None,
-) -> dict[str, Any]:
-    """Put these conventions in force and compute everything anew, in one transaction; what came of it.
-
-    ``dry_run`` tells what would come of it and keeps nothing. See ``recomputing.recomputed_after``.
-    """
-
-    def write(connection: Any) -> None:
-        before = current(connection)
-        for name, value in values.items():
-            target_rows.write_setting(connection, CONVENTION_PREFIX + name, json.dumps(value))
-            auditing.note(connection, "setting", name, f"{before[name]} -> {value}")
-
-    what = ("a trial of " if dry_run else "") + "changing the settings"
-    return recomputed_after(registry, write, what, CAUSE, dry_run, progress=progress, tell=tell)

@@ -9,6 +9,7 @@ import sqlalchemy as sa
 
 from registry import editing, settings
 from registry.errors import NotFound
+from registry.setting_changes import change_settings
 from registry.store import tables
 from registry.store.engine import Registry, reading, writing
 
@@ -79,11 +80,11 @@ def test_editing_absent_things_and_nothing_changed(edited: Registry) -> None:
 
 
 def test_settings_are_foreseen_and_changed_on_either_engine(edited: Registry) -> None:
-    told = settings.change(edited, {"pressure_gpa": 0.4}, dry_run=True)
+    told = change_settings(edited, ["pressure_gpa=0.4"], dry_run=True)
     assert (told["verdicts_changed"], told["kinds"]) == (0, [])
     with reading(edited) as connection:
         assert settings.current(connection)["pressure_gpa"] == 0.2
-    settings.change(edited, {"pressure_gpa": 0.4, "norm_halogens": True, "iron_split": "fixed_ratio"})
+    change_settings(edited, ["pressure_gpa=0.4", "norm_halogens=yes", "iron_split=fixed_ratio"])
     with reading(edited) as connection:
         current = settings.current(connection)
     assert (current["pressure_gpa"], current["norm_halogens"], current["iron_split"]) == (0.4, True, "fixed_ratio")

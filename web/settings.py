@@ -7,7 +7,7 @@ from typing import Any
 
 from flask import Blueprint, redirect, render_template, request, session, url_for
 
-from registry import change_jobs, settings
+from registry import change_jobs, setting_changes, settings
 from registry.change_jobs import Change
 from registry.settings import Convention
 from web import working
@@ -39,7 +39,15 @@ _LABELS = {
     "loi_warn_wt": "Loss on ignition, remarked above", "loi_fail_wt": "Loss on ignition, unfit above",
     "loi_exempt_mgo_vf_wt": "Exempt above MgO of", "sulphur_warn_wt": "Sulphur, remarked above",
     "magnetite_series_si": "Magnetite series from", "failed_control": "Failed controls",
+    "control_pattern.blank": "Blanks", "control_pattern.reference_material": "Reference materials",
+    "control_pattern.duplicate": "Duplicates", "control_pattern.field_duplicate": "Field duplicates",
+    "control_pattern.crush_duplicate": "Crush duplicates", "control_pattern.pulp_duplicate": "Pulp duplicates",
 }  # fmt: skip
+PATTERN_MEANINGS = {
+    "control_pattern.blank": "^BLK finds BLK-001 and BLK-002.",
+    "control_pattern.reference_material": "^STD-(.+)$ finds STD-A1, and takes A1 for the name of the material.",
+    "control_pattern.duplicate": "-D$ finds A12-D, the duplicate of A12.",
+}
 
 
 def label(name: str) -> str:
@@ -71,16 +79,21 @@ def page() -> Any:
 def change() -> Any:
     with registry_connection() as connection:
         before = settings.current(connection)
-    typed = {name: request.form[name] for name in settings.CONVENTIONS if name in request.form}
+        patterns = setting_changes.stored_patterns(connection)
+    typed = {name: request.form[name].strip() for name in (*settings.CONVENTIONS, *patterns) if name in request.form}
     values, faults = settings.read_typed(typed, before)
+    differing = {name: typed[name] for name in patterns if typed.get(name, patterns[name]) != patterns[name]}
+    faults |= setting_changes.pattern_faults(differing)
     if faults:
         return _page(typed, faults), 400
-    if not values:
+    if not values and not differing:
         return _page(typed, {}, unchanged=True)
     changes = _changes(before, values)
+    changes += [f"{label(name)}: {patterns[name] or 'none'} → {text or 'none'}" for name, text in differing.items()]
+    wishes = {name: typed[name] for name in values} | differing
     # what was foreseen is sent back with the form: fields typed since are foreseen again first
     trial = request.form.get("do") != "change" or request.form.get("seen") != "; ".join(changes)
-    asked = change_jobs.start(working.jobs(), change_jobs.SETTINGS, "", values, trial=trial, told=changes)
+    asked = change_jobs.start(working.jobs(), change_jobs.SETTINGS, "", wishes, trial=trial, told=changes)
     return working.answered(asked, _outcome if trial else _back_to_settings)
 
 
@@ -88,8 +101,7 @@ def change() -> Any:
 def _outcome(change: Change) -> Any:
     if not change.trial:
         return _page({}, {}, done=_done(change))
-    typed = {name: typed_form(value) for name, value in change.wishes.items()}
-    return _page(typed, {}, foreseen=change.report, changes=change.told)
+    return _page(change.wishes, {}, foreseen=change.report, changes=change.told)
 
 
 def _back_to_settings(change: Change) -> Any:
@@ -113,11 +125,14 @@ def _changes(before: Mapping[str, Any], values: Mapping[str, Any]) -> list[str]:
 def _page(typed: Mapping[str, str], faults: Mapping[str, str], **more: Any) -> str:
     with registry_connection() as connection:
         current = settings.current(connection)
+        patterns = setting_changes.stored_patterns(connection)
     return render_template(
         "settings.html",
         section="Settings",
         groups=settings.CONVENTION_GROUPS,
         shown={name: typed.get(name, typed_form(value)) for name, value in current.items()},
+        patterns={name: typed.get(name, text) for name, text in patterns.items()},
+        pattern_meanings=PATTERN_MEANINGS,
         faults=faults,
         label=label,
         choices_of=choices_of,

@@ -13,6 +13,7 @@ from flask.testing import FlaskClient
 
 from registry.petrology.catalogue.conventions import CONVENTION_GROUPS, CONVENTIONS
 from registry.petrology.conventions import Conventions
+from registry.setting_changes import PATTERNS
 from registry.settings import read_typed
 from web.settings import CHOICE_WORDS, choices_of, label
 
@@ -69,7 +70,7 @@ def test_settings_page_shows_every_convention_and_takes_nothing_where_not_writab
     page = client.get("/settings").text
     for name in CONVENTIONS:
         assert re.search(rf'<label for="{name}">', page)
-    assert page.count(" disabled") == len(CONVENTIONS)
+    assert page.count(" disabled") == len(CONVENTIONS) + len(PATTERNS)
     assert client.post("/settings", data={"pressure_gpa": "0.3"}).status_code == 403
 
 
@@ -136,3 +137,32 @@ def test_settings_of_a_large_registry_are_foreseen_and_changed_as_work(
     assert "Everything was computed anew" in words(sent(do="change", seen=seen))
     assert writable.sql("SELECT count(*) FROM stale") == [(0,)]
     assert writable.sql("SELECT count(*) FROM verdict_change WHERE cause = 'settings changed'")[0][0] > 50
+
+
+def test_settings_code_patterns_of_controls_are_set_like_conventions(writable: Any) -> None:
+    writable.sql("UPDATE sample SET kind = 'unknown' WHERE code = 'PB-001'")
+    page = writable.client.get("/settings").text
+    assert '<label for="control_pattern.blank">Blanks</label>' in page
+    assert 'id="control_pattern.blank" name="control_pattern.blank" value=""' in page
+    fields = {"control_pattern.blank": "^PB-001$", "loi_warn_wt": "2.5"}
+    answer = writable.post("/settings", **fields, do="foresee")
+    text = words(answer.text)
+    assert "Loss on ignition, remarked above: 3 wt% → 2.5 wt%; Blanks: none → ^PB-001$." in text
+    assert 'name="control_pattern.blank" value="^PB-001$"' in answer.text
+    assert writable.sql("SELECT kind FROM sample WHERE code = 'PB-001'") == [("unknown",)]
+    seen = unescape(re.search(r'name="seen" value="([^"]*)"', answer.text).group(1))  # type: ignore[union-attr]
+    assert writable.post("/settings", **fields, do="change", seen=seen).status_code == 303
+    assert writable.sql("SELECT value FROM setting WHERE name = 'control_pattern.blank'") == [("^PB-001$",)]
+    assert writable.sql("SELECT kind FROM sample WHERE code = 'PB-001'") == [("blank",)]
+    assert 'name="control_pattern.blank" value="^PB-001$"' in writable.client.get("/settings").text
+
+
+def test_settings_faulty_fields_are_named_and_linked_above(writable: Any) -> None:
+    kept = contents(writable)
+    answer = writable.post("/settings", **{"control_pattern.blank": "^(BLK", "pressure_gpa": "deep"}, do="change")
+    assert answer.status_code == 400
+    links = '<a href="#pressure_gpa">Pressure</a>, <a href="#control_pattern.blank">Blanks</a>'
+    assert f"Nothing was changed. Correct {links}." in answer.text
+    assert "“^(BLK” is no regular expression" in words(answer.text)
+    assert 'value="^(BLK" spellcheck="false" aria-invalid="true"' in answer.text
+    assert contents(writable) == kept

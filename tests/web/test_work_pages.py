@@ -14,7 +14,7 @@ from typing import Any
 
 import pytest
 
-from registry import batching, settings
+from registry import batching, setting_changes
 from registry.store.engine import writing
 from tests.web.import_site import TRACES, Site, form_fields
 from web import create_app, working
@@ -167,7 +167,7 @@ def test_fault_of_the_program_is_told_and_the_next_change_runs(site: Site, monke
     def broken(*_arguments: Any, **_more: Any) -> None:
         raise RuntimeError("planted")
 
-    monkeypatch.setattr(settings, "change", broken)
+    monkeypatch.setattr(setting_changes, "change_settings", broken)
     form = form_fields(site.client.get("/settings").text)
     form.setlist("loi_warn_wt", ["1"])
     form.setlist("do", ["foresee"])
