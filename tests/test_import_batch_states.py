@@ -56,21 +56,21 @@ def is_sound(registry: Registry) -> None:
 
 
 def test_corrected_certificate_is_not_restored_beside_the_one_that_took_its_place(
-    founded_registry: Registry, tmp_path: Path
+    any_registry: Registry, tmp_path: Path
 ) -> None:
-    bring(founded_registry, tmp_path, "K1.csv", MAJORS.format(zr=100))
-    bring(founded_registry, tmp_path, "b.csv", MAJORS.format(zr=200), batch="K1", supersede=True)
-    set_state(founded_registry, "K1 corrected 2", "withdrawn")
-    set_state(founded_registry, "K1", "active")
+    bring(any_registry, tmp_path, "K1.csv", MAJORS.format(zr=100))
+    bring(any_registry, tmp_path, "b.csv", MAJORS.format(zr=200), batch="K1", supersede=True)
+    set_state(any_registry, "K1 corrected 2", "withdrawn")
+    set_state(any_registry, "K1", "active")
     with pytest.raises(PlutonbookError, match="in its place 'K1' counts; withdraw 'K1' first"):
-        set_state(founded_registry, "K1 corrected 2", "active")
-    set_state(founded_registry, "K1", "withdrawn")
-    set_state(founded_registry, "K1 corrected 2", "active")
+        set_state(any_registry, "K1 corrected 2", "active")
+    set_state(any_registry, "K1", "withdrawn")
+    set_state(any_registry, "K1 corrected 2", "active")
     with pytest.raises(PlutonbookError, match="in its place 'K1 corrected 2' counts; withdraw 'K1 corrected 2' first"):
-        set_state(founded_registry, "K1", "active")
-    assert states(founded_registry) == {"K1": "withdrawn", "K1 corrected 2": "active"}
-    assert chosen(founded_registry) == (200.0, None)
-    is_sound(founded_registry)
+        set_state(any_registry, "K1", "active")
+    assert states(any_registry) == {"K1": "withdrawn", "K1 corrected 2": "active"}
+    assert chosen(any_registry) == (200.0, None)
+    is_sound(any_registry)
 
 
 def test_first_of_three_certificates_is_restored_once_the_last_is_withdrawn(
@@ -109,19 +109,19 @@ def test_certificate_that_is_corrected_again_after_its_correction_was_withdrawn_
 
 
 def test_superseded_part_stays_so_while_its_certificate_is_withdrawn_and_restored(
-    founded_registry: Registry, tmp_path: Path
+    any_registry: Registry, tmp_path: Path
 ) -> None:
-    bring(founded_registry, tmp_path, "K1.csv", MAJORS.format(zr=100))
-    bring(founded_registry, tmp_path, "t.csv", TRACES.format(cu=55), add_to="K1")
-    bring(founded_registry, tmp_path, "u.csv", TRACES.format(cu=66), batch="K1/2", supersede=True)
-    report = set_state(founded_registry, "K1", "withdrawn")
+    bring(any_registry, tmp_path, "K1.csv", MAJORS.format(zr=100))
+    bring(any_registry, tmp_path, "t.csv", TRACES.format(cu=55), add_to="K1")
+    bring(any_registry, tmp_path, "u.csv", TRACES.format(cu=66), batch="K1/2", supersede=True)
+    report = set_state(any_registry, "K1", "withdrawn")
     assert report["parts"] == ["K1/2 corrected 2"]
-    assert states(founded_registry) == {"K1": "withdrawn", "K1/2": "superseded", "K1/2 corrected 2": "withdrawn"}
-    assert chosen(founded_registry) == (None, None)
-    set_state(founded_registry, "K1", "active")
-    assert states(founded_registry) == {"K1": "active", "K1/2": "superseded", "K1/2 corrected 2": "active"}
-    assert chosen(founded_registry) == (100.0, 66.0)
-    is_sound(founded_registry)
+    assert states(any_registry) == {"K1": "withdrawn", "K1/2": "superseded", "K1/2 corrected 2": "withdrawn"}
+    assert chosen(any_registry) == (None, None)
+    set_state(any_registry, "K1", "active")
+    assert states(any_registry) == {"K1": "active", "K1/2": "superseded", "K1/2 corrected 2": "active"}
+    assert chosen(any_registry) == (100.0, 66.0)
+    is_sound(any_registry)
 
 
 CERTIFICATE = "Certificate,Z-77\n\n"

@@ -1,8 +1,9 @@
 """Blanks: against the detection limit, and against the sample measured before them.
 
-Common practice, no source: a blank above five times the detection limit is a warning, above ten times a failure; more
-than one per cent of the sample before it is carry-over worth naming. A blank that is a rock (quartz sand) holds
-something of most elements: where the values of its material are registered, only the excess over them counts.
+Common practice, no source: a blank above five times the detection limit is a warning, above ten times a failure; an
+excess of less than a tenth of the sample before it may be carried over from it, which is named. A blank that is a rock
+(quartz sand) holds something of most elements: where the values of its material are registered, only the excess over
+them counts.
 """
 
 from __future__ import annotations
