@@ -34,7 +34,8 @@ LONG_FILES = (
     "demo/test_demo.py", "web/test_import_browser.py", "web/test_places_browser.py", "web/test_browser.py",
     "test_computing.py", "store/test_registry_contents.py", "web/test_import_pages.py", "suites/test_suites.py",
     "store/test_quality_controls.py", "web/test_diagrams_browser.py", "store/test_stale.py", "test_importing.py",
-    "web/test_accounts.py", "suites/test_stale_groups.py", "web/test_attempts.py", "cli/test_progress.py",
+    "web/test_accounts.py", "suites/test_stale_groups.py", "web/test_work_pages.py", "test_import_batch_states.py",
+    "web/test_attempts.py", "cli/test_progress.py",
 )  # fmt: skip
 ROOT = Path(__file__).resolve().parents[1]
 ENGINES = ["sqlite", pytest.param("postgresql", marks=pytest.mark.postgresql)]
