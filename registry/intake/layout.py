@@ -22,7 +22,7 @@ _LOWER_LIMIT = re.compile(
 )
 _UPPER_LIMIT = re.compile(
     r"(?i)\b(upper ?(detection|reporting)?[ _]?limits?|u\.?d\.?l|u\.?o\.?[dl]|u\.?l\.?(o\.?)?[dq]"
-    r"|max(imum)? limit|upper)\b"
+    r"|max(imum)?\.?[ _]*(detection|reporting|limits?)|upper)\b"
 )
 _LOWER_ONLY = re.compile(r"(?i)\b(lower|l\.?o\.?[drq]|ll?d|ldl|mdl)\b")
 #: Letters, then a number: a sample code, though its letters may be those of a detection limit.
@@ -57,6 +57,8 @@ class WideLayout:
     unread: list[str] = field(default_factory=list)
     #: the headings as they are without any word of the user, where his words change ``labels`` (of a long table)
     own_labels: list[str] | None = None
+    #: the columns of a long table, of which one holds the sample codes
+    code_labels: list[str] = field(default_factory=list)
 
     @property
     def shape(self) -> tuple[str, ...]:
@@ -167,7 +169,7 @@ def _number(text: str) -> float | None:
 def find_wide_layout(rows: list[list[str]], told: tuple[int, dict[int, Heading]] | None = None) -> WideLayout | None:
     """Understand the headings of a wide table from its first rows; None where no row names an analyte.
 
-    ``told``: the row of headings and its columns of analytes, where somebody says them and none names itself.
+    ``told``: the row of headings and the columns that could be analytes, where none names itself.
     """
     index, analytes = find_header_row(rows)
     if index < 0 and told is not None:
@@ -239,7 +241,7 @@ def _assemble(rows: list[list[str]], roles: dict[int, str], first_row: int) -> W
             names_row = _NAMES_ROW if LABELS in roles.values() else _ROW_LABELS
             if column is None and (word := names_row.get(roles[index])) and word.fullmatch(text):
                 continue  # "Method" and "Unit" beside the analytes name their rows and not the column
-            if column is None or roles[index] not in (LOWER, UPPER):
+            if roles[index] not in (LOWER, UPPER) or (column is None and is_code_heading(text)):
                 pieces[position].append(re.sub(r"\s+", " ", text))
             if column is not None:
                 take(column, roles[index], text)

@@ -37,6 +37,12 @@ _IRON = re.compile(
 #: Headings that look like an analyte and are something else in the trade's tables.
 _NOT_ANALYTES = {"no", "id"}
 _RATIO = re.compile(r"\(?\s*([A-Za-z]\w*?)\s*/\s*([A-Z][A-Za-z0-9]*?)(?:[*#)]|N$|$)")
+#: A column beside a result that is none: its uncertainty, its limit, a count.
+_NO_RESULT = re.compile(
+    r"(?i)(?<=\w)[\s_.,;:/|(\[\-]+(\+/?-|\u00b1|%? ?rsd ?%?|r\.?s\.?d\.?|(rel\.? ?)?err(or)?s?|unc(ert(ainty)?)?\.?"
+    r"|[123]? ?(s\.?d\.?|s\.?e\.?|std\.?( ?(dev|err)\w*\.?)?|stdev|sigma|\u03c3)|[123]s|precision"
+    r"|(ll?|m)?dl|lld|lo[dqr]|lloq|cps|counts?|(det(ection)?|reporting)\.? ?lim(it)?s?\.?)[)\]]?$"
+)
 #: What may follow an analyte without a unit: a code with letters, not the number of a sample (``B-12``, ``C-7A``).
 _CODE_WITH_LETTERS = re.compile(r".*[A-Za-z]{2}|(?i:4a|ar|fa|ir)\b")
 _METHOD_WORD = re.compile(
@@ -102,6 +108,8 @@ def read_heading(text: str) -> Heading:
     symbol = analyte_symbol(rest)
     if symbol is not None:
         return Heading(symbol, unit)
+    if _NO_RESULT.search(rest):
+        return Heading(unit=unit, method=rest)
     bracket = re.fullmatch(r"(\w+)\s*[(\[]\s*(\w[^()\[\]]*)[)\]]", rest)
     if bracket and (symbol := analyte_symbol(bracket[1])) is not None:
         oxide = any(map(str.isdigit, bracket[1]))  # it is meant in any case
@@ -129,6 +137,8 @@ def _within(text: str, with_unit: bool) -> tuple[str, str | None] | None:
         if rest and not with_unit and not _CODE_WITH_LETTERS.match(" ".join(rest)):
             continue
         in_lower_case = with_unit and rest and all(_METHOD_WORD.fullmatch(word) for word in rest)
+        if symbol == "Total" and not all(_METHOD_WORD.fullmatch(word) for word in rest):
+            continue  # "Total alkalis", "Sum LREE"
         if symbol is not None and (in_lower_case or _written_as(words[:length], symbol, rest)) and rest != ["situ"]:
             return symbol, _bare(" ".join(rest)) or None
     if len(words) <= 4 and len(words) > 1:

@@ -7,10 +7,11 @@ from pathlib import Path
 
 from registry.intake import kinds
 from registry.intake.arrangement import LONG, TURNED, tell_arrangement
+from registry.intake.columns import UNIT
 from registry.intake.containers import BadContainer, Part, foreign_file, unpack
 from registry.intake.encodings import Encoding, tell_encoding
 from registry.intake.findings import Findings
-from registry.intake.layout import find_header_row
+from registry.intake.layout import find_header_row, find_wide_layout
 from registry.intake.master import header_row, read_master
 from registry.intake.readings import KINDS, Reading, ReadingOptions
 from registry.intake.results import read_results
@@ -209,7 +210,7 @@ def separator_of(data: bytes | Path, encoding: Encoding, options: ReadingOptions
 def _read_table(
     reading: Reading, source: Source, options: ReadingOptions, findings: Findings, bound: int, underscores: int
 ) -> None:
-    kind = reading.kind or _settle_kind(source, findings)
+    kind = reading.kind or _settle_kind(source, options, findings)
     reading.kind = kind
     if kind is None:
         return
@@ -242,16 +243,21 @@ def _tell_kind(rows: list[list[str]]) -> list[str]:
     if found == ["reference-materials"]:
         return found
     arrangement = tell_arrangement(rows)
+    if len(analytes) == 2 and found and not with_unit:
+        layout = find_wide_layout(rows)
+        with_unit = layout is not None and UNIT in layout.roles.values()
     if arrangement in (LONG, TURNED) or len(analytes) >= 3 or (analytes and (with_unit or not found)):
         return ["results"]
     return found
 
 
-def _settle_kind(source: Source, findings: Findings) -> str | None:
+def _settle_kind(source: Source, options: ReadingOptions, findings: Findings) -> str | None:
     rows, _ = source.preview(100)
     found = _tell_kind(rows)
     if len(found) == 1:
         return found[0]
+    if not found and (options.columns or (options.recipe and options.recipe.columns)):
+        return "results"  # of which alone columns are said
     headings = rows[max(header_row(rows, "samples"), 0)] if rows else []
     findings.add(
         "the headings fit more than one kind of file" if found else "the kind of file cannot be told from its headings",

@@ -179,7 +179,7 @@ class WideReader:
         if not any(cell.strip() for cell in row):
             return False
         if len(texts) >= max(2, 0.5 * len(self.columns)) and all(_is_heading(text) for _, text in texts):
-            self.passed_over.append(f"row {line} repeats the headings")
+            self._say_headings(texts, line)
             return False
         if numberless and self._is_no_sample(code.strip(), texts):
             self.passed_over.append(
@@ -207,6 +207,22 @@ class WideReader:
                 )  # fmt: skip
             return False
         return True
+
+    def _say_headings(self, texts: list[tuple[int, str]], line: int) -> None:
+        """Headings within the data: the same ones again, or those of another table, which nobody reads."""
+        for index, text in texts:
+            heading, column = read_heading(text), self.columns[index]
+            unit = heading.unit or canonical_unit(text)
+            another = heading.analyte is not None and heading.analyte not in (column.analyte, column.analyte[:-1])
+            if another or (unit is not None and unit != column.unit):
+                self.findings.add(
+                    "another table with other headings begins below this one", row=line, column=column.header,
+                    found=text.strip(), expected=f"{column.analyte} in {column.unit}, or the end of the table",
+                    remedy="save each table as a file of its own and import the second with --add-to",
+                )  # fmt: skip
+                self.findings.whole_file_refused = True
+                return
+        self.passed_over.append(f"row {line} repeats the headings")
 
     def _is_no_sample(self, code: str, texts: list[tuple[int, str]]) -> bool:
         """Of a row without any number: a rule, a word for no result explained, or a note cut at its commas."""

@@ -155,3 +155,67 @@ def test_declared_blank_is_not_called_far_from_the_rest():
     reading = read(f"Sample,Type,SiO2 (%),Zr (ppm)\n{rows}Q1,Blank,0.01,0.01\n")
     assert remarks(reading) == []
     assert len(remarks(read(f"Sample,Type,SiO2 (%),Zr (ppm)\n{rows}Q1,Rock,0.01,0.01\n"))) == 2
+
+
+@pytest.mark.parametrize(
+    "beside",
+    [
+        "Zr error",
+        "Zr err (ppm)",
+        "Zr_2SE",
+        "Zr 2s",
+        "Zr (1 sigma)",
+        "Zr +/-",
+        "Zr SD",
+        "Zr RSD%",
+        "Zr std dev",
+        "Zr unc.",
+        "Zr DL (ppm)",
+        "Zr_LOD",
+        "Zr det. limit",
+        "Zr cps",
+        "Zr_1\u03c3",
+    ],
+)
+def test_uncertainty_or_limit_in_a_column_of_its_own_is_no_second_result(beside):
+    reading = read(f"Sample,Zr (ppm),{beside},Nb (ppm)\nS1,100,3,5\nS2,110,3,6\n")
+    assert results(reading) == {
+        ("S1", "Zr", "ppm"): "100", ("S1", "Nb", "ppm"): "5", ("S2", "Zr", "ppm"): "110", ("S2", "Nb", "ppm"): "6",
+    }  # fmt: skip
+    assert any(f"'{beside}'" in line for line in reading.understood)
+
+
+@pytest.mark.parametrize("heading", ["Sum LREE", "Total alkalis (%)", "Total sulphides (wt%)", "Sum REE (ppm)"])
+def test_sum_of_something_is_not_the_total_of_the_analysis(heading):
+    reading = read(f"Sample,SiO2 (%),{heading}\nS1,60,5\nS2,61,6\n")
+    assert [column.analyte for column in reading.results.columns] == ["SiO2"]
+
+
+def test_other_headings_within_the_data_are_refused_and_never_read_under_the_first_ones():
+    reading = read("Sample,SiO2 (%),MgO (%)\nA1,60,3\nA2,61,4\n\nSample,Zr (ppm),Nb (ppm)\nA1,99,5\nA2,98,6\n")
+    (problem,) = [p for p in reading.problems if p.severity == "problem"]
+    assert (problem.row, problem.column, problem.found) == (5, "SiO2 (%)", "Zr (ppm)")
+    assert "another table with other headings" in problem.what
+    assert reading.whole_file_refused
+
+
+def test_same_headings_within_the_data_are_passed_over_though_a_unit_row_follows():
+    table = "Sample,SiO2,Fe2O3,Zr\nUnit,%,%,ppm\nA{},60,3,99\n"
+    reading = read(table.format(1) + table.format(2))
+    assert reading.results.sample_codes == ["A1", "A2"]
+
+
+def test_most_that_can_be_detected_is_no_detection_limit():
+    reading = read(
+        "Sample,SiO2,Zr\nUnit,%,ppm\nMin. detection,0.01,1\nMax. detection,100,9000\nA1,<LOD,100\nA2,60,over range\n"
+    )
+    assert results(reading)["A1", "SiO2", "wt%"] == "<0.01"
+    assert results(reading)["A2", "Zr", "ppm"] == ">9000"
+    assert reading.results.sample_header == "Sample"
+
+
+def test_certificate_of_two_analytes_with_headings_in_rows_is_no_sample_list():
+    reading = read(
+        "Analyte,,Au,Ag\nUnit,,ppb,ppm\nMethod,,Fire assay,Four acid\nSample,Type,,\nA1,Rock,5,1\nA2,Rock,<1,2\n"
+    )
+    assert results(reading)["A2", "Au", "ppb"] == "<1"
