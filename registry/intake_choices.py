@@ -64,12 +64,21 @@ def describe_reading(reading: Reading) -> dict[str, Any]:
         "whole_file_refused": reading.whole_file_refused,
         "columns": [] if table is None else described_columns(table),
         "read": list(master.columns) if master is not None else [],
-        "ignored": list(table.ignored if table is not None else master.ignored if master is not None else ()),
+        "ignored": _not_read(reading),
+        "code_headings": [] if table is None else list(table.code_headings),
         "sample_header": table.sample_header if table is not None else None,
         "certificate": table.certificate if table is not None else None,
         "lab": table.lab if table is not None else None,
         "recipe": None if reading.recipe is None else reading.recipe.to_json(),
     }
+
+
+def _not_read(reading: Reading) -> list[str]:
+    """The columns that were not read; all of them where it is only known that they are there."""
+    table = reading.results or reading.master
+    if table is not None:
+        return list(table.ignored)
+    return [] if reading.recipe is None else column_keys(reading.recipe.shape)
 
 
 def _listed(problems: Sequence[Problem]) -> list[dict[str, Any]]:
@@ -147,7 +156,7 @@ def ignored_columns(recipe: str | None, looked: Mapping[str, Any]) -> list[dict[
 
 def unread_columns(looked: Mapping[str, Any], listed: Sequence[Mapping[str, Any]]) -> list[dict[str, Any]]:
     """The columns of a table that are not taken as results and stand nowhere else, in the form of those that are."""
-    if not looked["columns"]:
+    if looked["kind"] != "results":
         return []
     known = {column["header"] for column in listed}
     return [

@@ -55,8 +55,10 @@ def find_recipe(registry: Registry, name: str) -> Recipe:
     """A saved recipe; NotFound where there is none of that name."""
     with reading(registry) as connection:
         row = recipe_rows.find_recipe(connection, name)
+        known = [] if row is not None else [one["name"] for one in recipe_rows.list_recipes(connection)]
     if row is None:
-        raise NotFound(f"there is no saved reading '{name}'")
+        listed = ", ".join(f"'{one}'" for one in known[:40]) + (" and others" if len(known) > 40 else "")
+        raise NotFound(f"there is no saved reading '{name}'; " + (f"saved are {listed}" if known else "none is saved"))
     return Recipe.from_json(row["recipe"])
 
 

@@ -164,8 +164,9 @@ def _file_view(draft: Draft, number: int) -> dict[str, Any]:
 
 def _headings(file: DraftFile, shape: tuple[str, ...]) -> list[str]:
     """The columns that can hold the sample codes: those with a heading, then those without one that hold anything."""
+    of_long_table = [heading for looked in file.looked for heading in looked.get("code_headings", ())]
     without = [header for looked in file.looked for header in looked["ignored"] if header.startswith("#")]
-    return [heading for heading in dict.fromkeys([*shape, *without]) if heading]
+    return [heading for heading in dict.fromkeys(of_long_table or [*shape, *without]) if heading]
 
 
 @blueprint.post("/import/<draft_id>")

@@ -8,6 +8,7 @@ from dataclasses import dataclass
 
 import numpy as np
 
+from registry.intake.cells import TEXT, parse_cell
 from registry.intake.codes import CodeColumn
 from registry.intake.corrections import is_named, place_of, say_no_such_column
 from registry.intake.findings import Findings
@@ -70,7 +71,7 @@ def arrange(
     recipe: Recipe | None = None,
     corrections: Sequence[ColumnCorrection] = (),
 ) -> Arranged | None:
-    """Bring a results table to wide form; None where no analytes are named, by the table or by the user."""
+    """Bring a results table to wide form; None where there are no headings. Those of a wide one may name no analyte."""
 
     def named(label: str) -> bool:
         return is_named(label, recipe, corrections)
@@ -92,17 +93,21 @@ def arrange(
         return arranged
     if arrangement == TURNED:
         return _turned(source, preview, lines, findings, understood)
-    wide = find_wide_layout(preview, _headings_named(preview, named))
+    wide = find_wide_layout(preview, _plain_headings(preview))
     return None if wide is None else Arranged(source, wide, row_bound, underscores)
 
 
-def _headings_named(rows: list[list[str]], named: Callable[[str], bool]) -> tuple[int, dict[int, Heading]] | None:
-    """The first row with a heading that the user names, and those headings' places."""
-    for index, row in enumerate(rows[:SEARCH_ROWS]):
-        places = {place: Heading() for place, cell in enumerate(row) if cell and named(cell)}
-        if places:
-            return index, places
-    return None
+def _plain_headings(rows: list[list[str]]) -> tuple[int, dict[int, Heading]] | None:
+    """The row with most words and the places behind the first of them: headings that name no analyte, if any do."""
+    words = [
+        [place for place, cell in enumerate(row) if cell.strip() and parse_cell(cell).state == TEXT]
+        for row in rows[:SEARCH_ROWS]
+    ]
+    most = max(map(len, words), default=0)
+    if most < 2:
+        return None
+    index = next(index for index, places in enumerate(words) if len(places) == most)
+    return index, {place: Heading() for place in words[index][1:]}
 
 
 def _titles(rows: list[list[str]]) -> list[str]:
@@ -130,7 +135,7 @@ def _gathered(
     labels += [column.header for column in gathered.columns]
     titles = _titles(preview[: layout.header])
     wide = WideLayout(gathered.rows.width, {}, 0, gathered.columns, labels, CodeColumn(0, sample), titles)
-    wide.unread = gathered.unread
+    wide.unread, wide.code_labels = gathered.unread, layout.labels
     return Arranged(gathered.rows, wide, len(gathered.rows), True, 1 if control is not None else None)
 
 

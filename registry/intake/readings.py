@@ -97,6 +97,8 @@ class ResultTable:
     sample_header: str = ""
     received_on: str | None = None
     reported_on: str | None = None
+    #: the columns that could hold the sample codes, where they are others than those of the table (of a long one)
+    code_headings: tuple[str, ...] = ()
 
     def __len__(self) -> int:
         return len(self.sample_codes)

@@ -13,7 +13,8 @@ from registry.intake.checks import check_units, check_values
 from registry.intake.codes import LONGEST_CODE, CodeColumn, choose_code_column, tidy_codes, unfit_codes
 from registry.intake.corrections import column_keys, corrected, take_in
 from registry.intake.findings import Findings
-from registry.intake.layout import QUALIFIER_WORD, WideLayout
+from registry.intake.layout import WideLayout
+from registry.intake.qualifiers import qualifier_columns
 from registry.intake.readings import ReadingOptions, ResultColumn, ResultTable
 from registry.intake.recipes import ColumnChoice, Recipe
 from registry.intake.settling import settle_columns
@@ -25,12 +26,11 @@ from registry.intake.units import canonical_unit, split_unit
 from registry.intake.wide import WideBody, WideReader
 
 _CONTROL = re.compile(r"(?i)\W*(qa ?[/&-]? ?qc|qc|control|sample[ _]?(type|kind|class)|type|qc[ _]?type|check type)\W*")
-_QUALIFIER = re.compile(r"(?i)(?P<of>.*?)[\s_\-]*" + QUALIFIER_WORD.pattern.removeprefix("(?i)"))
 
 
 @dataclass
 class Understanding:
-    """What the reading of a results file adds to a Reading."""
+    """What the reading of a results file adds to a Reading; a recipe without a table knows the headings alone."""
 
     table: ResultTable | None
     recipe: Recipe | None
@@ -42,16 +42,13 @@ def read_results(
     """Read a wide results table. ``row_bound``: at least the number of rows; ``underscores`` of the whole file."""
     arranged = arrange(source, row_bound, underscores > 0, findings, understood, options.recipe, options.columns)
     if arranged is None:
-        findings.add(
-            "no row of headings with analytes was found",
-            expected="a row such as: Sample, SiO2 (%), Al2O3 (%), Zr (ppm)",
-            remedy="see that the headings stand within the first 80 lines and name analytes and units",
-        )  # fmt: skip
-        return Understanding(None, None)
+        return _say_no_headings([], findings)
     given, source, layout = source, arranged.source, arranged.layout
     preview, preview_lines = source.preview()
     recipe = corrected(options.recipe or Recipe(), options.columns, layout, findings)
     take_in(layout, recipe, findings)
+    if not layout.columns:
+        return _say_no_headings(layout.labels, findings)
     body_rows = preview[layout.first_row :]
     layout.code = layout.code or _code_column(layout, body_rows, recipe)
     if layout.code is None:
@@ -60,7 +57,7 @@ def read_results(
             expected="a column headed sample code, Sample ID, Field ID or Lab ID",
             remedy="give the column of sample codes a heading, or name it with --column",
         )  # fmt: skip
-        return Understanding(None, None)
+        return Understanding(None, Recipe(shape=layout.shape))
     layout.columns = [column for column in layout.columns if column.position != layout.code.position]
     taken = {column.position for column in layout.columns}
     _say_layout(layout, preview_lines.tolist(), understood)
@@ -77,7 +74,7 @@ def read_results(
     )  # fmt: skip
     if not columns:
         findings.add("every analyte column is ignored", remedy="keep at least one, see --column")
-        return Understanding(None, None)
+        return Understanding(None, Recipe(shape=layout.shape))
     given_sign = options.decimal or recipe.decimal
     thousands = recipe.thousands if options.thousands is None else options.thousands
     decimal, sure = _settle_decimal(body_rows, columns, given_sign, thousands, findings, understood)
@@ -87,7 +84,7 @@ def read_results(
     others = [
         position for position in range(layout.width) if position not in taken and position != layout.code.position
     ]
-    qualifier_positions = _qualifier_columns(layout, columns, others, body_rows)
+    qualifier_positions = qualifier_columns(layout, columns, others, body_rows)
     control = arranged.control_position
     if control is None:
         control = next((place for place in others if _CONTROL.fullmatch(layout.labels[place])), None)
@@ -124,6 +121,18 @@ def read_results(
         negative_means_below=below,
     )
     return Understanding(table, made)
+
+
+def _say_no_headings(labels: list[str], findings: Findings) -> Understanding:
+    """No analyte is named; the headings that are there are told, so that a user can say what they are."""
+    known = ", ".join(filter(None, labels))
+    findings.add(
+        "no row of headings with analytes was found", found=known or None,
+        expected="a row such as: Sample, SiO2 (%), Al2O3 (%), Zr (ppm)",
+        remedy="see that the headings stand within the first 80 lines and name analytes and units"
+        + (", or say what the columns are with --column" if labels else ""),
+    )  # fmt: skip
+    return Understanding(None, Recipe(shape=tuple(labels)) if labels else None)
 
 
 def _code_column(layout: WideLayout, rows: list[list[str]], recipe: Recipe) -> CodeColumn | None:
@@ -179,31 +188,6 @@ def _settle_decimal(
             remedy="a comma before three digits is read as a mark of thousands; say the decimal sign with --decimal",
         )
     return decimal, sure
-
-
-def _qualifier_columns(
-    layout: WideLayout, columns: list[ResultColumn], others: list[int], rows: list[list[str]]
-) -> dict[int, int]:
-    """Columns that hold only the qualifier of an analyte column beside them or named in their heading."""
-    found: dict[int, int] = {}
-    by_position = {column.position: index for index, column in enumerate(columns)}
-    for place in others:
-        label = layout.labels[place]
-        cells = {row[place].strip() for row in rows if place < len(row)}
-        signs = bool(cells & {"<", ">", "<=", ">="}) and cells <= {"", "<", ">", "<=", ">=", "="}
-        named = _QUALIFIER.fullmatch(label)
-        if not signs and not (named and not cells - {""}):
-            continue
-        index = None
-        if named and named["of"]:
-            wanted = split_unit(named["of"])[0].casefold()
-            index = next((i for i, c in enumerate(columns) if split_unit(c.header)[0].casefold() == wanted), None)
-        if index is None:  # left of its number (as a sign is written), else right of it
-            neighbours = (place + 1, place - 1) if not label else (place - 1, place + 1)
-            index = next((by_position[other] for other in neighbours if other in by_position), None)
-        if index is not None and index not in found.values():
-            found[place] = index
-    return found
 
 
 def _drop_empty(
@@ -302,5 +286,6 @@ def _table(
     ]
     return ResultTable(
         columns, codes, body.lines, body.values, body.qualifiers, titles.certificate, titles.lab, ignored,
-        body.control, layout.code.header, titles.received_on, titles.reported_on,
+        body.control, column_keys(layout.labels)[layout.code.position], titles.received_on, titles.reported_on,
+        tuple(layout.code_labels),
     )  # fmt: skip

@@ -103,18 +103,51 @@ def test_correction_goes_before_the_recipe_and_keeps_what_it_leaves_open() -> No
     assert ("Zirconia", "Zr", "ppm", "unknown") in columns(other), "of another analyte nothing of the old one stays"
 
 
+NOTHING_KNOWN = "Report 7\nBag,Var1,Var2\nUnit,%,ppm\n1,60,180\n2,61,181\n"
+
+
+def test_table_whose_headings_name_no_analyte_lists_them_for_the_user() -> None:
+    reading = read(NOTHING_KNOWN, "results")
+    (sentence,) = faults(reading)
+    assert "found 'Bag, Var1 %, Var2 ppm'" in sentence and "--column" in sentence
+    assert reading.results is None
+    assert reading.recipe is not None and reading.recipe.shape == ("Bag", "Var1 %", "Var2 ppm")
+    assert read("just a note\n\n", "results").recipe is None
+
+
 def test_table_whose_headings_name_no_analyte_is_read_as_the_user_says() -> None:
-    text = "Report 7\nBag,Var1,Var2\nA-1,60,180\nA-2,61,181\n"
-    said = (say("Var1", analyte="SiO2", unit="wt%"), say("Var2", analyte="Zr", unit="ppm"))
-    reading = read(text, "results", columns=said)
-    assert columns(reading) == [("Var1", "SiO2", "wt%", "unknown"), ("Var2", "Zr", "ppm", "unknown")]
-    assert reading.results is not None and reading.results.sample_codes == ["A-1", "A-2"]
+    first = read(NOTHING_KNOWN, columns=(say("Var1 %", analyte="SiO2"), say("#3", analyte="Zr", digestion="fusion")))
+    assert first.kind == "results", "of nothing else are columns said"
+    assert columns(first) == [("Var1 %", "SiO2", "wt%", "unknown"), ("Var2 ppm", "Zr", "ppm", "fusion")]
+    assert first.results is not None and first.results.sample_codes == ["1", "2"]
+    assert first.recipe is not None
+    again = read(NOTHING_KNOWN, recipe=Recipe.from_json(first.recipe.to_json()))
+    assert columns(again) == columns(first)
+    assert again.recipe is not None and first.recipe.fits(again.recipe.shape)
+
+
+@pytest.mark.parametrize(
+    "text", ["Bag,Var1 (%)\nA,60\n", "Bag,SiO2 (%)\nA,60\n"], ids=["no analyte", "the only one ignored"]
+)
+def test_table_that_cannot_be_read_still_tells_its_headings(text: str) -> None:
+    reading = read(text, "results", recipe=Recipe(columns={"SiO2 (%)": ColumnChoice(ignore=True)}))
+    assert reading.results is None and reading.recipe is not None and reading.recipe.shape[0] == "Bag"
+
+
+def test_column_of_sample_codes_without_a_heading_is_remembered_by_its_number() -> None:
+    text = "No,,Cu (ppm)\n1,A,5\n2,B,6\n"
+    first = read(text, columns=(ColumnCorrection("#2", None),))
+    assert first.results is not None and first.recipe is not None
+    assert (first.results.sample_codes, first.recipe.sample_header) == (["A", "B"], "#2")
+    again = read(text, recipe=first.recipe)
+    assert again.results is not None and again.results.sample_codes == ["A", "B"]
 
 
 def test_long_table_takes_in_an_unknown_analyte_and_other_sample_codes() -> None:
     plain = read(LONG)
     assert columns(plain) == [("SiO2 (%)", "SiO2", "wt%", "unknown")]
     assert plain.results is not None and plain.results.ignored == ("Zirc (ppm)",)
+    assert plain.recipe is not None
     said = (say("Zirc (ppm)", analyte="Zr", digestion="fusion"), ColumnCorrection("Client Sample", None))
     reading = read(LONG, columns=said)
     assert columns(reading) == [("SiO2 (%)", "SiO2", "wt%", "unknown"), ("Zirc (ppm)", "Zr", "ppm", "fusion")]
@@ -123,6 +156,8 @@ def test_long_table_takes_in_an_unknown_analyte_and_other_sample_codes() -> None
     again = read(LONG, recipe=Recipe.from_json(reading.recipe.to_json()))
     assert columns(again) == columns(reading)
     assert again.results is not None and again.results.sample_codes == ["A", "B"]
+    assert reading.results.code_headings == ("Lab No", "Client Sample", "Analyte", "Value", "Unit")
+    assert reading.recipe.shape == plain.recipe.shape, "it is proposed for the next file, which says nothing of it"
     assert NO_SUCH_COLUMN in faults(read(LONG, columns=(ColumnCorrection("Bag", None),)))[0]
     assert "'Zirc (ppm)'" in faults(read(LONG, columns=(say("Zr", unit="ppm"),)))[0]
 

@@ -165,3 +165,35 @@ def test_import_page_unknown_analyte_of_a_long_table_is_taken_in(site: Site) -> 
     assert [row[1:] for row in stored(site, "long")] == [("SiO2", "wt%", "unknown"), ("Zr", "ppm", "fusion")]
     later = site.send(("more.csv", text.replace("180", "181")))
     assert "made for files with exactly these headings" in site.client.get(later).text
+    choice = site.form(later)
+    assert choice.get("sample_header-0") == "Sample"
+
+
+def test_import_page_codes_of_a_long_table_are_taken_from_another_column(site: Site) -> None:
+    text = "Lab No,Client Sample,Analyte,Value,Unit\nKD-1,KD-2,SiO2,60,%\n"
+    address = site.send(("long.csv", text))
+    taken = site.form(address).get("sample_header-0")
+    other = {"Lab No": "Client Sample", "Client Sample": "Lab No"}[taken or ""]
+    site.press(address, "read", sample_header__0=other)
+    assert site.form(address).get("sample_header-0") == other
+    assert "nothing is stored yet" in site.client.get(address).text
+
+
+def test_import_page_table_whose_headings_name_nothing_is_read_as_the_user_says(site: Site) -> None:
+    text = "Bag,Var1,Var2\nKD-1,60,180\nKD-2,61,181\n"
+    address = site.send(("odd.csv", text))
+    assert "The kind of file cannot be told" in site.client.get(address).text
+    site.press(address, "read", kind__0="results")
+    page = site.client.get(address).text
+    assert "say what the columns are in the columns below" in page and "as understood" in page
+    assert site.form(address).getlist("header-0") == ["Bag", "Var1", "Var2"]
+    said = {"Var1": {"analyte": "SiO2", "unit_of": "wt%"}, "Var2": {"analyte": "Zr", "unit_of": "ppm"}}
+    press(site, address, "read", said)
+    page = site.client.get(address).text
+    assert "2 rows of results in 2 columns" in page and "nothing is stored yet" in page
+    press(site, address, "save:0", {}, name__0="nothing named")
+    later = site.send(("more.csv", text.replace("180", "182")), kind="results")
+    assert "made for files with exactly these headings" in site.client.get(later).text
+    site.press(later, "use:0")
+    site.press(later, "store")
+    assert [row[1] for row in stored(site, "more")] == ["SiO2", "Zr"]
