@@ -119,9 +119,12 @@ def digestions(code: str) -> Any:
         for name, value in request.form.items()
         if name.startswith("digestion-") and name.removeprefix("digestion-").isdecimal()
     }
+    fill = batching.digestion_named(request.form["fill"]) if request.form.get("fill") else None
     batch = _found(code)
     with registry_connection() as connection:
         columns = {row["position"]: row for row in reading.batch_columns(connection, batch["batch_id"])}
+    if fill is not None:
+        stated |= {position: fill for position, name in stated.items() if name == "unknown"}
     changed = {
         position: name
         for position, name in stated.items()

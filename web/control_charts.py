@@ -85,7 +85,7 @@ def chart(analyte: Mapping[str, Any]) -> dict[str, Any]:
 
 def width_of(word: str) -> float:
     """About how wide a word beside a mark is drawn."""
-    return 6.2 * len(word)
+    return 7.0 * len(word)
 
 
 def _name_marks(points: list[dict[str, Any]]) -> None:

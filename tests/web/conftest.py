@@ -23,7 +23,7 @@ from registry.store.engine import Registry, open_registry
 from registry.targets.definition import load_definitions
 from tests.registry_files import made_once
 from tests.web.import_site import Site, small_registry
-from web import create_app
+from web import create_app, working
 
 HOSTILE = '<script>alert("x")</script>&amp;'
 _OXIDES = ("sio2_wt", "tio2_wt", "al2o3_wt", "fe2o3t_reported_wt", "mno_wt", "mgo_wt", "cao_wt", "na2o_wt", "k2o_wt")
@@ -275,3 +275,9 @@ def writable(writable_file: Path, tmp_path: Path) -> Iterator[WritableSite]:
     site = WritableSite(Path(shutil.copy(writable_file, tmp_path / "writable.sqlite")))
     yield site
     site.app.extensions["registry"].close()
+
+
+@pytest.fixture(autouse=True)
+def patience(monkeypatch: pytest.MonkeyPatch) -> None:
+    """A change is answered with its outcome however slow the machine is; tests of progress set less."""
+    monkeypatch.setattr(working, "PATIENCE_S", 60.0)

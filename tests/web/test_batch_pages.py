@@ -226,3 +226,23 @@ def test_batch_page_says_what_its_controls_say_by_analyte() -> None:
     assert said() == "Its controls could not be judged."
     many = said(*["fails"] * 12)
     assert many == "Its controls fail for A0, A1, A2, A3, A4, A5, A6, A7 and 4 more."
+
+
+def test_batch_digestion_of_every_unknown_column_is_stated_at_once(site: Site) -> None:
+    address = site.send(("loose.csv", "Sample,Zr (ppm),Nb XRF (ppm),Sr (ppm),LOI (%)\nKD-1,150,9,300,1.2\n"))
+    site.press(address, "store")
+    form = form_fields(site.client.get("/batches/loose").text)
+    form.setlist("fill", ["fusion"])
+    page = site.client.post("/batch/digestions/loose", data=form).text
+    assert "2 columns get another digestion" in page
+    assert "Zr (ppm): unknown → fusion" in page and "Sr (ppm): unknown → fusion" in page
+    site.client.post("/batch/digestions/loose", data=form_fields(page) | {"do": "confirmed"})
+    query = "SELECT header, digestion FROM batch_column WHERE analyte IN ('Zr', 'Nb', 'Sr', 'LOI') ORDER BY 1"
+    assert rows(site, query) == [
+        ("LOI (%)", "unknown"), ("Nb XRF (ppm)", "xrf"), ("Sr (ppm)", "fusion"), ("Zr (ppm)", "fusion"),
+    ]  # fmt: skip
+    page = site.client.get("/batches/loose").text
+    assert 'name="fill"' not in page, "nothing is unknown any more"
+    form = form_fields(page)
+    form.setlist("fill", ["boiling"])
+    assert site.client.post("/batch/digestions/loose", data=form).status_code == 400
