@@ -60,12 +60,12 @@ def take(column: AnalyteColumn, role: str, text: str) -> None:
             column.method = said if column.method is None or digestion_in(column.method) is None else column.method
         column.unit = column.unit or heading.unit
     elif heading.analyte and heading.unit is None:
-        column.foreign_unit = _unknown_unit(text) or column.foreign_unit
+        column.foreign_unit = unknown_unit(text) or column.foreign_unit
         if column.foreign_unit is not None:
             column.method = None
 
 
-def _unknown_unit(heading: str) -> str | None:
+def unknown_unit(heading: str) -> str | None:
     """What stands in the place of a unit in an analyte's heading and is none: in brackets, or spelt like a unit."""
     bracket = re.search(r"[(\[]([^()\[\]]+)[)\]]\s*$", heading)
     if bracket:

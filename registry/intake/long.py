@@ -9,14 +9,14 @@ from functools import lru_cache
 
 from registry.intake.cells import NO_QUALIFIER, QUALIFIER_CODES
 from registry.intake.codes import heading_score
-from registry.intake.columns import AnalyteColumn
+from registry.intake.columns import AnalyteColumn, unknown_unit
 from registry.intake.corrections import place_of
 from registry.intake.findings import Findings
 from registry.intake.gathering import GatheredRows
 from registry.intake.layout import SEARCH_ROWS
 from registry.intake.names import Heading, read_heading
 from registry.intake.sources import Source
-from registry.intake.units import canonical_unit, foreign_unit
+from registry.intake.units import canonical_unit
 
 _ROLES = {
     "analyte": r"(chemical )?(analytes?|elements?|parameters?|oxides?|determinands?"
@@ -42,6 +42,8 @@ class LongLayout:
     roles: dict[str, int]
     labels: list[str]
     value_unit: str | None = None
+    #: what stands in the place of a unit in the heading of the values and is none
+    foreign_unit: str | None = None
 
 
 @dataclass
@@ -87,9 +89,9 @@ def find_long_layout(rows: list[list[str]], sample_header: str | None = None) ->
         roles = {role: place for role, place in roles.items() if place != said}
         roles["sample"] = scores.index(max(scores)) if said is None else said
         bracket = re.search(r"[(\[]([^()\[\]]*)[)\]]", row[roles["value"]])
-        return LongLayout(
-            index, roles, [cell.strip() for cell in row], canonical_unit(bracket.group(1)) if bracket else None
-        )
+        unit = canonical_unit(bracket.group(1)) if bracket else None
+        foreign = unknown_unit(row[roles["value"]]) if bracket and unit is None else None
+        return LongLayout(index, roles, [cell.strip() for cell in row], unit, foreign)
     return None
 
 
@@ -189,10 +191,8 @@ def _new_column(
         header = f"{name} ({number})"
     column = AnalyteColumn(len(gathered.columns) + 2, header, Heading(heading.analyte, unit, method), unit, method)
     column.lower, column.upper = _limit(key.get("lower", "")), _limit(key.get("upper", ""))
-    if unit_text and unit is None:
-        column.foreign_unit = unit_text
-        if not foreign_unit(unit_text):
-            column.foreign_unit = f"{unit_text}?"
+    if unit is None:
+        column.foreign_unit = unit_text or unknown_unit(key["analyte"]) or layout.foreign_unit
     gathered.columns.append(column)
     return column.position - 2
 

@@ -198,3 +198,14 @@ def test_method_in_brackets_leaves_the_unit_to_custom():
     assert [(one.method, one.unit) for one in reading.results.columns] == [
         ("XRF", "ppm"), ("ME-xx81", "ppm"), ("30g", "ppm"),
     ]  # fmt: skip
+
+
+@pytest.mark.parametrize(
+    "text",
+    ["Sample,Analyte,Value\nA,SiO2 (furlong),60\n", "Sample,Analyte,Value (furlong)\nA,SiO2,60\n",
+     "Sample,Analyte,Value,Unit\nA,SiO2,60,furlong\n"],
+)  # fmt: skip
+def test_unit_that_is_not_known_in_a_long_table_is_a_problem(text):
+    (problem,) = [one for one in read(text).problems if one.severity == "problem"]
+    assert problem.what == "the unit is not known" and problem.found == "furlong"
+    assert read(text.replace("furlong", "%")).ok
