@@ -7,23 +7,35 @@ from functools import lru_cache
 
 from registry.intake.units import foreign_unit, spelt_like_a_unit
 
+#: Hydrofluoric acid, which is no hafnium (``digestion_in`` writes HF so), and hydrochloric beside nitric acid.
+_FLUORIC = r"\bhfacid\b|\bhf ?[-+/] ?h|[34l] ?[-+/] ?hf\b|hydrofluoric"
+_REGIA = r"\bhcl ?[-+/,: ] ?hno3\b|\bhno3 ?[-+/,: ] ?hcl\b|\b3 ?: ?1 hcl"
+
 #: In order: the first that matches decides. Names are those of ``petrology.digestion.DIGESTIONS``; common practice.
 _RULES = (
     ("portable_xrf", r"\bp[- ]?xrf\b|\bfp[- ]?xrf\b|portable|hand[- ]?held"),
-    ("xrf", r"\bxrf|x[- ]?ray fluor|pressed p(ellet|owder)"),
+    ("xrf", r"\b(wd|ed)?xrf|x[- ]?ray fluor|pressed p(ellet|owder)"),
     ("inaa", r"\bi?naa\b|neutron activation"),
     ("titration", r"titrat|\btitr\b|titrimetr|volumetric"),
     (
         "combustion",
         r"combust|\bir[- ]?furnace|induction furnace|infrared (absorption|detection|spectro)|\bir detection",
     ),
-    ("fire_assay", r"fire[- ]?assay|\bfa\b|\bfa[- ]?\d{1,2}\b|\bfa[- ]?(aas?|icp|ms|grav\w*)\b|lead collection|cupell"),
-    ("peroxide_fusion", r"peroxide|\bna2o2\b"),
+    (
+        "fire_assay",
+        r"fire[- ]?assay|\bfa\b|\bfa[- ]?\d{1,2}\b|\bfa[- ]?(aas?|icp|ms|grav\w*)\b|lead collection|cupell"
+        r"|\bnis (fire|collection)",
+    ),
+    ("peroxide_fusion", r"peroxide|\bna2o2\b|\b(naoh|sodium hydroxide)\b"),
     ("fusion", r"borate|\blibo2\b|\bli2b4o7\b|\bfus(ion|ed|)\b|fused|\bfus[- ]?icp|\bfus[- ]?ms"),
-    ("aqua_regia", r"aqua[- ]?regia|\bar[- ](icp|ms|aas?|digest\w*)|\bhcl ?[-+/] ?hno3\b(?!.*hf)|\b3 ?: ?1 hcl"),
+    (
+        "aqua_regia",
+        rf"aqua[- ]?regia|\bar[-/ ](icp|ms|aas?|digest\w*)|^(?!.*({_FLUORIC}|hclo4|perchloric)).*({_REGIA})",
+    ),
     (
         "four_acid",
-        r"(four|4|multi)[- ]?acids?\b|\b4a[- ]|\b4ad\b|near[- ]total|\bhf\b.*(hclo4|perchloric|hno3)|hydrofluoric",
+        r"(four|4|multi)[- ]?acids?\b|\b4a[-/ ]|\b4ad\b|near[- ]total|hydrofluoric"
+        rf"|^(?=.*({_FLUORIC})).*(hclo4|perchloric|hno3|nitric|hcl\b)",
     ),
 )
 _COMPILED = tuple((name, re.compile(pattern)) for name, pattern in _RULES)
@@ -40,6 +52,7 @@ _REMARK = re.compile(
 @lru_cache(maxsize=1024)
 def digestion_in(text: str) -> str | None:
     """The digestion that a text names, or None: ``Lithium borate fusion, ICP-MS`` -> ``fusion``."""
+    text = re.sub(r"\bHF\b", "hfacid", text)  # Hf is hafnium
     folded = re.sub(r"[_\s]+", " ", text.casefold())
     for name, pattern in _COMPILED:
         if pattern.search(folded):
