@@ -62,7 +62,8 @@ class SetAside:
                 where = f"column '{problem.column}': " if problem.column else ""
                 found = f", found '{problem.found}'" if problem.found else ""
                 wanted = f", expected {problem.expected}" if problem.expected else ""
-                self.reasons.setdefault(problem.row, []).append(f"{where}{problem.what}{found}{wanted}")
+                remedy = f"; {problem.remedy}" if problem.remedy else ""  # with it: "did you mean 'S1'?"
+                self.reasons.setdefault(problem.row, []).append(f"{where}{problem.what}{found}{wanted}{remedy}")
         return whole
 
     def drop(self) -> None:

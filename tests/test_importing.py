@@ -383,6 +383,7 @@ def test_keep_going_stores_good_rows_and_saves_bad_ones_to_be_corrected(
     saved = (tmp_path / "T.refused.csv").read_text(encoding="utf-8-sig")
     assert saved.splitlines()[0] == "Sample,SiO2 (%),MnO (%),why refused"
     assert "C,64.0,3002," in saved and "Z,50.0,0.2," in saved and "not in the registry" in saved
+    assert "correct the unit or the value" in saved and "import the sample list first" in saved
     assert "NOWHERE" in (tmp_path / "samples.refused.csv").read_text(encoding="utf-8-sig")
 
     corrected = write(tmp_path, "T.refused.csv", saved.replace("3002", "0.3").replace("Z,", "A,"))
