@@ -28,7 +28,7 @@ PAGES = (
     "/static/site.css", "/static/site.js", "/static/favicon.svg", "/import", "/import/none", "/import/none/state.json",
     "/import/none/refused/0",
     "/work", "/work/none", "/work/none/state.json",
-    "/batch/file/Q-2041", "/batch/withdraw/Q-2041", "/reported/PB-001", "/reported/none", "/diagrams", "/sign-in",
+    "/batch/file/Q-2041", "/batch/withdraw/Q-2041", "/reported/PB-001", "/reported/none", "/diagrams", "/sign-in", "/map", "/map.geojson", "/map.gpkg",
     "/log", "/log?subject=sample PB-001&page=99",
 )  # fmt: skip
 
@@ -99,7 +99,7 @@ def test_pages_writing_to_a_reading_route_is_refused_with_headers(app: Flask) ->
             assert answer.headers["X-Frame-Options"] == "DENY"
 
 
-NOT_PAGES = ("/static", "/samples.csv", "/import/none/state", "/work/none/state")
+NOT_PAGES = ("/static", "/samples.csv", "/map.", "/import/none/state", "/work/none/state")
 
 
 @pytest.mark.parametrize("address", [page for page in PAGES if not page.startswith(NOT_PAGES)])

@@ -36,11 +36,12 @@ if (plot && readout) {
 
   // A box is drawn with the mouse alone: a finger scrolls the page.
   const box = document.getElementById("box");
+  document.getElementById("box-hint")?.removeAttribute("hidden");
   let start = null;
   const number = (ends, part, log) => {
     const [low, high] = ends.map((end) => (log ? Math.log10(end) : end));
     const value = low + part * (high - low);
-    return String(Number((log ? 10 ** value : value).toPrecision(4)));
+    return String(Number((log ? 10 ** value : value).toPrecision(Number(plot.dataset.digits || 4))));
   };
   const clamp = (part) => Math.min(1, Math.max(0, part));
   const corners = (end) => ({
@@ -89,6 +90,7 @@ if (plot && readout) {
       const address = new URL(window.location.href);
       const set = (name, value) => address.searchParams.set(name, value);
       address.searchParams.delete("whole");
+      if (plot.dataset.grid) set("grid", plot.dataset.grid);
       set("x_from", number(ends("x"), left, plot.dataset.log.includes("x")));
       set("x_to", number(ends("x"), right, plot.dataset.log.includes("x")));
       set("y_from", number(ends("y"), 1 - bottom, plot.dataset.log.includes("y")));
