@@ -55,15 +55,19 @@ def is_named(label: str, recipe: Recipe | None, corrections: Sequence[ColumnCorr
 
 def say_no_such_column(wanted: str, labels: Sequence[str], findings: Findings) -> None:
     """A fault that lists the columns of the file, those that are spelt alike first."""
+    findings.add(
+        NO_SUCH_COLUMN, found=wanted, expected=f"one of {listed(labels, wanted)}",
+        remedy="write the heading as it is listed, or # and the number of the column, as #3 for the third",
+    )  # fmt: skip
+
+
+def listed(labels: Sequence[str], wanted: str = "") -> str:
+    """The columns of a file in words, those spelt like ``wanted`` first; of very many the first."""
     keys = [key for place, key in enumerate(column_keys(labels)) if labels[place] or len(labels) <= MOST_LISTED]
     alike = get_close_matches(wanted, keys, 3, 0.6)
     order = [*alike, *(key for key in keys if key not in alike)]
-    listed = ", ".join(f"'{key}'" for key in order[:MOST_LISTED])
     more = f" and {len(order) - MOST_LISTED:,} more" if len(order) > MOST_LISTED else ""
-    findings.add(
-        NO_SUCH_COLUMN, found=wanted, expected=f"one of {listed}{more}",
-        remedy="write the heading as it is listed, or # and the number of the column, as #3 for the third",
-    )  # fmt: skip
+    return ", ".join(f"'{key}'" for key in order[:MOST_LISTED]) + more
 
 
 def corrected(

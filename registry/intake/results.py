@@ -11,7 +11,7 @@ from registry.intake.arrangement import arrange
 from registry.intake.cells import decimal_sign
 from registry.intake.checks import check_units, check_values
 from registry.intake.codes import LONGEST_CODE, CodeColumn, choose_code_column, tidy_codes, unfit_codes
-from registry.intake.corrections import column_keys, corrected, take_in
+from registry.intake.corrections import column_keys, corrected, listed, take_in
 from registry.intake.findings import Findings
 from registry.intake.layout import WideLayout
 from registry.intake.qualifiers import qualifier_columns
@@ -125,12 +125,11 @@ def read_results(
 
 def _say_no_headings(labels: list[str], findings: Findings) -> Understanding:
     """No analyte is named; the headings that are there are told, so that a user can say what they are."""
-    known = ", ".join(filter(None, labels))
     findings.add(
-        "no row of headings with analytes was found", found=known or None,
+        "no row of headings with analytes was found",
         expected="a row such as: Sample, SiO2 (%), Al2O3 (%), Zr (ppm)",
         remedy="see that the headings stand within the first 80 lines and name analytes and units"
-        + (", or say what the columns are with --column" if labels else ""),
+        + (f", or say with --column what these columns are: {listed(labels)}" if labels else ""),
     )  # fmt: skip
     return Understanding(None, Recipe(shape=tuple(labels)) if labels else None)
 

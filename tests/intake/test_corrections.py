@@ -109,7 +109,7 @@ NOTHING_KNOWN = "Report 7\nBag,Var1,Var2\nUnit,%,ppm\n1,60,180\n2,61,181\n"
 def test_table_whose_headings_name_no_analyte_lists_them_for_the_user() -> None:
     reading = read(NOTHING_KNOWN, "results")
     (sentence,) = faults(reading)
-    assert "found 'Bag, Var1 %, Var2 ppm'" in sentence and "--column" in sentence
+    assert "say with --column what these columns are: 'Bag', 'Var1 %', 'Var2 ppm'" in sentence
     assert reading.results is None
     assert reading.recipe is not None and reading.recipe.shape == ("Bag", "Var1 %", "Var2 ppm")
     assert read("just a note\n\n", "results").recipe is None

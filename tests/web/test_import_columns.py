@@ -185,7 +185,7 @@ def test_import_page_table_whose_headings_name_nothing_is_read_as_the_user_says(
     assert "The kind of file cannot be told" in site.client.get(address).text
     site.press(address, "read", kind__0="results")
     page = site.client.get(address).text
-    assert "say what the columns are in the columns below" in page and "as understood" in page
+    assert "say in the columns below what these columns are" in page and "as understood" in page
     assert site.form(address).getlist("header-0") == ["Bag", "Var1", "Var2"]
     said = {"Var1": {"analyte": "SiO2", "unit_of": "wt%"}, "Var2": {"analyte": "Zr", "unit_of": "ppm"}}
     press(site, address, "read", said)
