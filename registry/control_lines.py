@@ -74,7 +74,7 @@ def _partners(
     wanted = set(originals[originals > 0].tolist())
     if not wanted:
         return partner, signs
-    own = _places(columns)
+    own = column_places(columns)
     for part in (batch_id, *quality_rows.parts_beside(connection, batch_id)):
         first = quality_rows.first_lines(connection, part, wanted)
         lines = np.array([first.get(original, 0) for original in originals.tolist()], dtype=np.int64)
@@ -83,7 +83,7 @@ def _partners(
             continue
         theirs = columns if part == batch_id else quality_rows.batch_columns(connection, part)
         values, qualifiers = quality_rows.results_of(connection, lines, [column.column_id for column in theirs])
-        for key, place in _places(theirs).items():
+        for key, place in column_places(theirs).items():
             if key in own:
                 open_rows = np.isnan(partner[:, own[key]])
                 partner[open_rows, own[key]] = values[open_rows, place]
@@ -91,7 +91,7 @@ def _partners(
     return partner, signs
 
 
-def _places(columns: Sequence[StoredColumn]) -> dict[tuple[Any, ...], int]:
+def column_places(columns: Sequence[StoredColumn | Column]) -> dict[tuple[Any, ...], int]:
     """Where each column stands, by what it is; a second one of the same kind is told by its number."""
     found: dict[tuple[Any, ...], int] = {}
     for place, column in enumerate(columns):

@@ -12,15 +12,15 @@ from typing import Any
 
 import numpy as np
 
-from registry.control_lines import load_controls, values_of
+from registry.control_lines import column_places, load_controls, values_of
 from registry.errors import PlutonbookError
 from registry.petrology.conventions import Conventions
 from registry.quality.assessment import Column, Controls, Outcome, judge_batch
 from registry.quality.recognising import Patterns, Spoken
 from registry.quality.shipped import shipped_values
 from registry.quality.states import STATE_WORDS
-from registry.quality.verdicts import AnalyteState, state_of_analyte
-from registry.store import quality_rows, reference_values, stale, target_rows
+from registry.quality.verdicts import AnalyteState, joined, state_of_analyte
+from registry.store import batches, quality_rows, reference_values, stale, target_rows
 
 #: Analytes that fail or were remarked on, told one by one after an import.
 ANALYTES_TOLD = 10
@@ -43,33 +43,76 @@ def settle(connection: Any) -> int:
     if not touched:
         return 0
     hold = _holds(connection)
+    judged: set[int] = set()
     for batch_id in touched:
-        if assess(connection, batch_id, patterns) and hold:
-            stale.mark(connection, quality_rows.samples_of_batch(connection, batch_id), stale.DERIVE)
+        if batch_id in judged:
+            continue
+        parts, changed = assess(connection, batch_id, patterns)
+        judged.update(parts)
+        for part in changed if hold else ():
+            stale.mark(connection, quality_rows.samples_of_batch(connection, part), stale.DERIVE)
     quality_rows.clear_batches(connection)
     return len(touched)
 
 
 def assess_imported(connection: Any, batch_id: int, controlled: bool) -> list[str]:
-    """Judge a batch that has just been stored and say what its controls say.
+    """Judge a batch that has just been stored, with the other parts of its certificate, and say what came out.
 
-    The other parts of its certificate may hold duplicates of its samples: they wait for the drain.
+    Where failed analytes are held back, the samples of the other parts are marked stale if other ones fail now.
     """
-    if controlled:
-        assess(connection, batch_id)
-    quality_rows.name_parts_beside(connection, batch_id)
+    if controlled or len(quality_rows.with_their_parts(connection, [batch_id])) > 1:
+        _, changed = assess(connection, batch_id)
+        for part in changed - {batch_id} if _holds(connection) else ():
+            stale.mark(connection, quality_rows.samples_of_batch(connection, part), stale.DERIVE)
     return state_of_batch(connection, batch_id)
 
 
-def assess(connection: Any, batch_id: int, patterns: Patterns | None = None) -> bool:
-    """Judge the controls of a batch and store what came out; whether other columns fail than before."""
+def assess(connection: Any, batch_id: int, patterns: Patterns | None = None) -> tuple[list[int], set[int]]:
+    """Judge the controls of a batch and of all parts of its certificate and store what came out.
+
+    The controls of one part judge the same analytes of the others. All those batches, and those of which other
+    columns fail than before.
+    """
     patterns = read_patterns(connection) if patterns is None else patterns
+    parts = quality_rows.with_their_parts(connection, [batch_id])
+    own = {part: _own_states(connection, part, patterns) for part in parts}
+    changed = set()
+    for part in parts:
+        beside = {other: own[other] for other in quality_rows.parts_beside(connection, part)}
+        states = _with_other_parts(connection, own[part], beside)
+        rows = [_state_row(column, state) for column, state in states if state is not None]
+        if quality_rows.replace_states(connection, part, rows):
+            changed.add(part)
+    return parts, changed
+
+
+#: The columns of a batch, each with the state that its own controls give it.
+_States = list[tuple[Column, AnalyteState | None]]
+
+
+def _own_states(connection: Any, batch_id: int, patterns: Patterns) -> _States:
+    """Judge the control lines of one batch and store every result of them."""
     controls = load_controls(connection, batch_id, patterns)
     outcomes = judge_batch(controls, values_of(connection, controls)) if len(controls) else []
-    states = [(outcome.column, state_of_analyte(controls, outcome)) for outcome in outcomes]
     quality_rows.replace_outcomes(connection, batch_id, _outcome_columns(controls, outcomes))
-    rows = [_state_row(column, state) for column, state in states if state is not None]
-    return quality_rows.replace_states(connection, batch_id, rows)
+    if not outcomes:
+        return [(column, None) for column in controls.columns]
+    return [(outcome.column, state_of_analyte(controls, outcome)) for outcome in outcomes]
+
+
+def _with_other_parts(connection: Any, own: _States, beside: Mapping[int, _States]) -> _States:
+    """The states of a part with what the controls of the other parts say of the same columns."""
+    if not any(state is not None for states in beside.values() for _, state in states):
+        return own
+    said: list[list[tuple[str, AnalyteState]]] = [[] for _ in own]
+    places = column_places([column for column, _ in own])
+    for batch_id, states in beside.items():
+        batch = batches.find_by_id(connection, batch_id)
+        for key, place in column_places([column for column, _ in states]).items():
+            state = states[place][1]
+            if key in places and state is not None and batch is not None:
+                said[places[key]].append((batch["batch"], state))
+    return [(column, joined(state, others)) for (column, state), others in zip(own, said, strict=True)]
 
 
 def _outcome_columns(controls: Controls, outcomes: Sequence[Outcome]) -> dict[str, Any]:
@@ -174,14 +217,14 @@ def state_of_batch(connection: Any, batch_id: int) -> list[str]:
     from registry.store.reading.controls import analyte_states, control_counts, without_certificate
 
     counts = control_counts(connection, batch_id)
-    if not counts:
-        return [NO_CONTROLS]
     states = analyte_states(connection, batch_id)
+    if not counts and not states:
+        return [NO_CONTROLS]
     words = {"reference_material": "reference material", "lab_repeat": "laboratory repeat"}
     listed = ", ".join(
         f"{number:,} {words.get(kind, kind)}{'' if number == 1 else 's'}" for kind, number in counts.items()
     )
-    lines = [f"controls: {listed}"]
+    lines = [f"controls: {listed or 'none on this part; those of the other parts of the certificate count for it'}"]
     for material in without_certificate(connection, batch_id):
         named = (
             f"'{material['material']}'" if material["material"] else f"of sample {material['sample_code']}, not named,"

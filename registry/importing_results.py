@@ -101,7 +101,7 @@ def store_results(
     lines.settle_controls(connection)
     fresh_ids = _without_results(connection, lines.sample_ids)
     rules = read_rules(connection)
-    if lines.controlled and rules.conventions.failed_control == "hold":
+    if (lines.controlled or place.part_of is not None) and rules.conventions.failed_control == "hold":
         fresh_ids = fresh_ids[:0]  # what is held back is known once the controls are judged: the drain computes all
     by_child = len(fresh_ids) >= WORTH_A_CHILD
     at_a_time = CHILDS_CHUNK_SIZE if by_child else CHUNK_SIZE

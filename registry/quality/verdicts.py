@@ -2,7 +2,8 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from collections.abc import Sequence
+from dataclasses import dataclass, replace
 
 import numpy as np
 
@@ -100,6 +101,26 @@ def state_of_analyte(controls: Controls, outcome: Outcome) -> AnalyteState | Non
         drift.slope_error,
         float("nan") if fit is None else fit.s_0,
         float("nan") if fit is None else fit.k,
+    )
+
+
+def joined(own: AnalyteState | None, others: Sequence[tuple[str, AnalyteState]]) -> AnalyteState | None:
+    """The state of a column with what other parts of the certificate say of it, each with its code: the worst of all.
+
+    Counts are added up; bias, drift and precision are those of the own controls, else of the first other part.
+    """
+    known = [state for state in (own, *(state for _, state in others)) if state is not None]
+    if not known:
+        return None
+    remarks = [] if own is None or not own.remarks else [own.remarks]
+    remarks += [f"in {code}: {state.remarks}" for code, state in others if state.remarks]
+    return replace(
+        known[0],
+        state=max(state.state for state in known),
+        remarks="; ".join(remarks),
+        references=sum(state.references for state in known),
+        blanks=sum(state.blanks for state in known),
+        pairs=sum(state.pairs for state in known),
     )
 
 

@@ -103,14 +103,6 @@ def with_their_parts(connection: sa.Connection, batch_ids: Sequence[int]) -> lis
     return sorted({*batch_ids, *(row[0] for row in rows)})
 
 
-def name_parts_beside(connection: sa.Connection, batch_id: int) -> None:
-    """Let the other parts of the certificate of a batch be judged anew at the drain."""
-    named = set(connection.execute(sa.select(tables.stale_batch.c.batch_id)).scalars())
-    beside = [{"batch_id": part} for part in parts_beside(connection, batch_id) if part not in named]
-    if beside:
-        connection.execute(sa.insert(tables.stale_batch), beside)
-
-
 def lines_before(connection: sa.Connection, batch_id: int, line_no: np.ndarray) -> np.ndarray:
     """The aliquot of the line before each given line of a batch, int64, 0 where it is the first."""
     rows = raw_rows.select(

@@ -13,7 +13,7 @@ from registry.control_history import trends
 from registry.importing import ImportOptions, ImportReport, import_files
 from registry.refresh import refresh_registry
 from registry.store.engine import Registry, reading, writing
-from registry.store.reading.controls import batch_state
+from registry.store.reading.controls import analyte_states, batch_state
 
 CERTIFICATES = """reference_material,analyte,value,unit,uncertainty,uncertainty_type,status,source
 XM-1,Zr,100,ppm,5,SD,certified,invented
@@ -205,3 +205,43 @@ def test_columns_without_a_judged_control_are_counted_beside_the_state(any_regis
     text = "Sample,Zr fusion (ppm),Y (ppm),Cu fusion (ppm)\nR1,120,9,8\nC1,101,9,7\n"
     report = bring(any_registry, tmp_path, {"certificates.csv": CERTIFICATES, "samples.csv": listed, "K1.csv": text})
     assert told(report)[1] == "batch passes (1 of 1 analytes: passes; 2 columns have no control that could be judged)"
+
+
+LISTED = "sample_code,sample_kind,reference_material\nR1,core,\nR2,core,\nC1,reference_material,XM-1\n"
+ROCKS, CHECKS = "Sample,Zr fusion (ppm),Cu (ppm)\nR1,120,9\nR2,130,8\n", "Sample,Zr fusion (ppm)\nC1,150\n"
+ZR = "SELECT sample_code, zr_ppm FROM composition_sheet WHERE sample_code IN ('R1', 'R2') ORDER BY 1"
+
+
+@pytest.mark.parametrize("rocks_first", [True, False])
+@pytest.mark.parametrize("convention", ["mark", "hold"])
+def test_controls_in_a_file_of_their_own_judge_the_rocks_of_the_certificate(
+    any_registry: Registry, tmp_path: Path, rocks_first: bool, convention: str
+) -> None:
+    """The rocks' batch fails by the other part, and no longer once that is withdrawn; first verdicts are no changes."""
+    with writing(any_registry) as connection:
+        connection.exec_driver_sql(
+            f"INSERT INTO setting (name, value) VALUES ('convention.failed_control', '\"{convention}\"')"
+        )
+    first, second = (ROCKS, CHECKS) if rocks_first else (CHECKS, ROCKS)
+    bring(any_registry, tmp_path, {"certificates.csv": CERTIFICATES, "samples.csv": LISTED, "K1.csv": first})
+    report = bring(any_registry, tmp_path, {"more.csv": second}, add_to="K1")
+    batch_id, checks = (1, "K1/2") if rocks_first else (2, "K1")
+    with reading(any_registry) as connection:
+        assert batch_state(connection, batch_id) == "fails"
+        (zr,) = analyte_states(connection, batch_id)
+    assert zr["remarks"].startswith(f"in {checks}: reference material XM-1 failed on line 2: found 150 for 100 ppm")
+    if not rocks_first:
+        assert told(report)[0].startswith("controls: none on this part; those of the other parts")
+    marked = "SELECT sample_code FROM warning_sheet WHERE code = 'failed_control' ORDER BY 1"
+    assert sheet(any_registry, marked) == [("R1",), ("R2",)]
+    held = convention == "hold"
+    assert sheet(any_registry, ZR) == [("R1", None if held else 120.0), ("R2", None if held else 130.0)]
+    tables = ("control_state", "composition")
+    before = [sheet(any_registry, f"SELECT * FROM {name} ORDER BY 1, 2, 3") for name in tables]
+    refresh_registry(any_registry, everything=True)
+    assert before == [sheet(any_registry, f"SELECT * FROM {name} ORDER BY 1, 2, 3") for name in tables]
+    assert sheet(any_registry, "SELECT count(*) FROM verdict_change") == [(0,)]
+    set_state(any_registry, checks, "withdrawn")
+    if rocks_first:  # else the rocks, a part of the checks' batch, go with it
+        assert sheet(any_registry, marked) == []
+        assert sheet(any_registry, ZR) == [("R1", 120.0), ("R2", 130.0)]
