@@ -45,11 +45,15 @@ class Jobs:
         with self._lock:
             if job.job_id in self._live or not self.folder.hold(job.job_id):
                 return False
-            self._live[job.job_id] = job
             job.state, job.sentence, job.done, job.total = WAITING, "", 0, 0
             job.started_at = job.ended_at = None
             job.account = auditing.acting_account()
-            self.folder.save(job)
+            try:
+                self.folder.save(job)
+            except BaseException:
+                self.folder.release(job.job_id)
+                raise
+            self._live[job.job_id] = job
             if self._thread is None or not self._thread.is_alive():
                 self._thread = threading.Thread(target=self._work, name="jobs", daemon=True)
                 self._thread.start()
@@ -130,8 +134,7 @@ class Jobs:
             job.sentence, job.ended_at = sentence, now()
             job.state = state
             try:
-                with suppress(OSError):  # the folder may have been deleted meanwhile; the registry is what counts
-                    self.folder.save(job)
+                self._save(job)
             finally:
                 self.folder.release(job.job_id)
                 self._live.pop(job.job_id, None)
@@ -147,7 +150,7 @@ class Jobs:
             job.state = state
             if time.monotonic() - saved_at >= SAVE_EVERY_S:
                 saved_at = time.monotonic()
-                self.folder.save(job)
+                self._save(job)
 
         return progress
 
@@ -156,9 +159,14 @@ class Jobs:
 
         def tell(sentence: str) -> None:
             job.state, job.sentence = WAITING, sentence[:1].upper() + sentence[1:]
-            self.folder.save(job)
+            self._save(job)
 
         return tell
+
+    def _save(self, job: Job) -> None:
+        """Write the job down where that can be done: its folder may be gone meanwhile, and the work is what counts."""
+        with suppress(OSError):
+            self.folder.save(job)
 
 
 def _said(job: Job, sentence: str) -> str:

@@ -7,14 +7,16 @@ from __future__ import annotations
 
 import io
 import re
+import shutil
 import threading
+import time
 from collections.abc import Iterator
 from pathlib import Path
 from typing import Any
 
 import pytest
 
-from registry import batching, setting_changes
+from registry import batching, change_jobs, setting_changes
 from registry.store.engine import writing
 from tests.web.import_site import TRACES, Site, form_fields
 from web import create_app, working
@@ -184,3 +186,51 @@ def test_edit_while_work_is_under_way_is_refused_with_what_runs_since_when(site:
     assert answer.status_code == 503
     assert re.search(r"<p>The registry site\.sqlite is held by withdrawing batch majors since 20\S+Z", answer.text)
     assert "Nothing was changed; try again when it is done. Your browser&#39;s way back leads to what" in answer.text
+
+
+def test_edit_of_a_body_with_many_samples_leaves_the_rest_to_work(
+    writable: Any, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    monkeypatch.setattr("registry.recomputing.AT_ONCE", 10)
+    monkeypatch.setattr("web.reading.refresh_a_few", lambda registry: 0)
+    assert writable.post("/edit/intrusion/Aster stock", half_width_m="1000").status_code == 303
+    page = writable.client.get("/edit/intrusion/Aster stock").text
+    address = re.search(r'being computed anew in the background: <a href="(/work/[^"]+)">how far it is</a>', page)
+    assert address is not None
+    writable.app.extensions["jobs"].wait(address[1].rsplit("/", 1)[-1], 60)
+    assert writable.sql("SELECT count(*) FROM stale") == [(0,)]
+    page = writable.client.get(address[1]).text
+    assert "<h1>Computing anew after the edit of intrusion Aster stock</h1>" in page
+    assert re.search(r"Done at .* UTC: [0-9]+ samples computed and judged anew\.", page)
+
+
+def test_change_is_made_although_the_folder_of_its_record_is_deleted_meanwhile(site: Site, gate: Gate) -> None:
+    address = asked(site, "confirmed").headers["Location"]
+    assert gate.begun.wait(60)
+    shutil.rmtree(site.jobs.folder.place)
+    gate.opened.set()
+    ends = time.monotonic() + 60
+    while site.jobs.live():
+        assert time.monotonic() < ends
+        time.sleep(0.05)
+    assert ">withdrawn</td>" in site.client.get("/batches").text
+    assert site.client.get(address).status_code == 404
+    page = ended(site, asked(site, "try", "restore").headers["Location"])
+    assert "3 samples</strong>" in page, "the next one makes its folder anew"
+
+
+def test_job_that_cannot_be_recorded_is_refused_and_can_be_asked_for_again(
+    site: Site, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    job = change_jobs.Change(site.jobs.folder.new_id(), "2026-12-01T00:00:00Z", action="withdraw", subject="majors")
+
+    def full(_job: Any) -> None:
+        raise OSError(28, "No space left on device")
+
+    with monkeypatch.context() as patch:
+        patch.setattr(site.jobs.folder, "save", full)
+        with pytest.raises(OSError, match="No space left"):
+            site.jobs.start(job, lambda: None)
+    assert site.jobs.live() == []
+    assert site.jobs.start(job, lambda: site.jobs.end(job, "done", "Done."))
+    assert site.jobs.wait(job.job_id, 60).state == "done"
