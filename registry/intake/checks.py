@@ -144,9 +144,11 @@ def _check_far(
     if not top > 0 or (bottom > 0 and top / bottom < _FAR):
         return
 
+    whole = 100.0 / WT_PERCENT_PER_UNIT[column.unit]  # what is more than the rock is said already
+
     def measured() -> Iterator[tuple[int, NDArray[np.float64], NDArray[np.bool_]]]:
         for (start, value), (_, sign) in zip(column_parts(values, index), column_parts(qualifiers, index), strict=True):
-            yield start, value, (sign == 0) & (value > 0)
+            yield start, value, (sign == 0) & (value > 0) & (value <= whole)
 
     median = median_of_parts(lambda: (value[kept] for _, value, kept in measured()))
     if median is None:

@@ -150,6 +150,13 @@ def test_weight_column_is_no_unknown_analyte():
     assert any("'Recvd Wt. (kg)'" in line for line in reading.understood)
 
 
+def test_impossible_value_is_a_problem_and_no_remark_beside_it():
+    rows = "".join(f"S{number},6{number},0.1{number}\n" for number in range(8))
+    reading = read(f"Sample,SiO2 (%),MnO (%)\n{rows}S9,61,3002\n")
+    assert [p.what for p in reading.problems if p.severity == "problem"] == ["MnO is more than the whole rock"]
+    assert remarks(reading) == []
+
+
 def test_declared_blank_is_not_called_far_from_the_rest():
     rows = "".join(f"S{number},Rock,6{number},1{number}0\n" for number in range(8))
     reading = read(f"Sample,Type,SiO2 (%),Zr (ppm)\n{rows}Q1,Blank,0.01,0.01\n")
