@@ -29,9 +29,9 @@ _MONTHS = ["jan", "feb", "mar", "apr", "may", "jun", "jul", "aug", "sep", "oct",
 #: Other words of the trade for the contract's words.
 _WORDS = {
     "drill_hole": "drill hole|drillhole|dh|ddh|hole|borehole|rc|rab|diamond|core hole|dd|collar|well",
-    "outcrop": "outcrop sample|oc|surface|station|rock chip|grab|exposure",
-    "core": "drill core|half core|quarter core|ddh|hc|qc core",
-    "chips": "chip|rc|rc chips|drill chips|cuttings|ch",
+    "outcrop": "outcrop sample|rock sample|rock chip sample|grab sample|oc|surface|station|rock chip|grab|exposure",
+    "core": "drill core|core sample|drill core sample|half core|quarter core|ddh|hc|qc core",
+    "chips": "chip|chip sample|rc|rc chips|drill chips|cuttings|ch",
     "float": "boulder|float boulder",
     "reference_material": "crm|standard|std|reference material|srm|reference|certified reference material",
     "blank": "blk|bl|blank sample",
@@ -63,6 +63,11 @@ def number(text: str, decimal: str) -> float | None:
     """A plain number, or None if the text is not one (a qualifier or a unit in the cell is not plain)."""
     cell = parse_cell(text, decimal)
     return cell.value if cell.state == NUMBER and cell.qualifier == 0 and cell.unit is None else None
+
+
+def epsg_number(text: str, decimal: str) -> float | None:
+    """The number of a coordinate system, with or without ``EPSG`` before it."""
+    return number(re.sub(r"(?i)^\s*epsg\s*[:.#]*\s*", "", text), decimal)
 
 
 def truth(text: str) -> bool | None:

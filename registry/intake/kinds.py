@@ -169,7 +169,7 @@ def field_of(kind: str, heading: str) -> tuple[Field, str | None] | None:
         bare, unit = plain[: tail.start()].strip(), (tail["bracket"] or tail["tail"] or "").strip()
     names = _spelt(kind)
     if plain in names:
-        return names[plain], None
+        return names[plain], "g/cm3" if plain in ("sg", "specific gravity") else None
     known = names.get(bare) or _spelt_bare(kind).get(bare)
     return None if known is None else (known, unit)
 

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import re
 import unicodedata
 from typing import Any
 
@@ -70,9 +71,13 @@ def read_master(
     if ignored:
         understood.append("columns not read: " + ", ".join(f"'{heading}'" for heading in ignored))
         for heading in ignored:
+            known = kinds.field_of(kind, heading)
             findings.warn(
-                f"the column is not one of {kind} and is ignored", column=heading,
-                remedy="nothing to do if it is not needed; else give it a known heading",
+                f"the column is not one of {kind} and is ignored" if known is None
+                else f"another column is {known[0].name} as well; this one is ignored", column=heading,
+                found=None if known is None else f"'{headings[positions[known[0].name]]}' before it",
+                remedy="nothing to do if it is not needed; else give it a known heading" if known is None
+                else "see which of the two is meant, and take the other out",
             )  # fmt: skip
     if not rows:
         findings.add("the file holds headings and no rows", expected=f"rows of {kind}", remedy="add the rows")
@@ -183,17 +188,21 @@ def _value(one: Field, heading: str, text: str, line: int, decimal: str, factor:
     value: Any
     remedy = "correct the cell, or leave it blank"
     if one.holds == kinds.NUMBER:
-        value = fields.number(text, decimal)
+        value = fields.epsg_number(text, decimal) if one.name == "epsg" else fields.number(text, decimal)
         if value is None:
             what = f"{one.name} is not a number"
             if fields.number(text, "," if decimal == "." else ".") is not None:
                 remedy = f"the rest of the file has the decimal sign '{decimal}'; write this number with it"
+            elif one.name in ("latitude", "longitude") and re.search(r"\d\s*[°d'\u2032]", text):
+                remedy = "write degrees, minutes and seconds as one decimal number, as -12.2583"
         else:
             value *= factor
             if one.low is not None and one.high is not None and not one.low <= value <= one.high:
                 what, value = f"{one.name} is out of range", None
                 if one.name in ("latitude", "longitude"):
                     remedy = "see whether longitude and latitude are exchanged, or the numbers are metres"
+                elif one.name == "density_kg_m3" and factor == 1.0:
+                    remedy = "if it is in g/cm3, say so in the heading: density (g/cm3)"
             elif one.name == "epsg":
                 value, what = (int(value), "") if value == int(value) else (None, "epsg is not a whole number")
     elif one.holds == kinds.WORD:

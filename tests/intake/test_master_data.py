@@ -234,3 +234,41 @@ def test_code_that_nobody_can_have_meant_is_refused_in_master_data():
     reading = read(f"sample_code,sample_kind\n{'A' * 101},core\n{'B' * 100},core\n", "samples")
     (problem,) = problems(reading)
     assert problem.row == 2 and problem.what == "the code has 101 characters"
+
+
+@pytest.mark.parametrize("heading", ["SG", "Specific gravity", "Density (g/cm3)", "density (t/m3)"])
+def test_specific_gravity_is_a_density_in_grams(heading):
+    reading = read(f"sample_code,lithology,{heading}\nS1,granite,2.65\n")
+    assert reading.ok, reading.problems
+    assert reading.master.rows["density_kg_m3"] == [2650.0]
+
+
+def test_density_without_its_unit_says_what_to_do():
+    (problem,) = [p for p in read("sample_code,lithology,density\nS1,granite,2.65\n").problems if p.row]
+    assert "density (g/cm3)" in problem.remedy
+
+
+@pytest.mark.parametrize("cell", ["32633", "EPSG:32633", "epsg 32633", "EPSG::32633"])
+def test_coordinate_system_may_be_written_with_its_register(cell):
+    reading = read(f"site_code,easting,northing,epsg\nA,500000,6000000,{cell}\n")
+    assert reading.ok, reading.problems
+    assert reading.master.rows["epsg"] == [32633]
+
+
+def test_second_column_of_one_meaning_is_told_and_not_called_unknown():
+    reading = read("sample_code,from,sampfrom,to,site_code\nS1,1,7,3,DD1\n")
+    (warning,) = reading.warnings
+    assert "another column is from_m as well; this one is ignored" in warning.what
+    assert (warning.column, warning.found) == ("sampfrom", "'from' before it")
+
+
+def test_degrees_minutes_and_seconds_are_told_how_to_be_written():
+    reading = read("site_code,latitude,longitude\nA,45\u00b030'00,12.5\n")
+    assert "as one decimal number" in reading.problems[0].remedy
+
+
+@pytest.mark.parametrize(
+    ("said", "kind"), [("Core sample", "core"), ("Rock sample", "outcrop"), ("grab sample", "outcrop")]
+)
+def test_kind_of_a_sample_may_end_with_the_word_sample(said, kind):
+    assert read(f"sample_code,sample_kind\nS1,{said}\n").master.rows["sample_kind"] == [kind]
