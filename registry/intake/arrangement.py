@@ -21,6 +21,8 @@ from registry.intake.sources import GridSource, Source
 
 #: A table turned on its side is held in memory whole: no more cells than this.
 MOST_TURNED_CELLS = 20_000_000
+#: What a column of signs holds.
+_SIGNS = {"", "=", "<", ">", "<=", ">="}
 WIDE, LONG, TURNED = "wide", "long", "turned"
 
 
@@ -139,6 +141,32 @@ def _gathered(
     return Arranged(gathered.rows, wide, len(gathered.rows), True, 1 if control is not None else None)
 
 
+def _join_signs(grid: list[list[str]], layout: WideLayout, understood: list[str]) -> None:
+    """Put the signs that have a column of their own before the numbers of the sample beside it, in place.
+
+    A line of the turned grid with nothing but signs under the analytes is joined to the one of its pair that has the
+    numbers; a code above either of the two is the sample's.
+    """
+    places = [column.position for column in layout.columns]
+    joined = 0
+    for first in range(layout.first_row, len(grid) - 1):
+        pair = grid[first], grid[first + 1]
+        held = [{row[at].strip() for at in places} for row in pair]
+        signs = [cells <= _SIGNS and cells != {""} for cells in held]
+        blank = [not any(row[at].strip() for at in range(len(row)) if at not in places) for row in pair]
+        if signs[0] == signs[1] or blank != [False, True]:
+            continue
+        sign, number = pair if signs[0] else pair[::-1]
+        number[:] = [
+            sign[at].strip().strip("=") + text if at in places and text.strip() else text or sign[at]
+            for at, text in enumerate(number)
+        ]
+        sign[:] = [""] * len(sign)
+        joined += 1
+    if joined:
+        understood.append(f"the signs of {joined} samples stand in a column of their own beside the numbers")
+
+
 def _turned(
     source: Source, preview: list[list[str]], preview_lines: np.ndarray, findings: Findings, understood: list[str]
 ) -> Arranged | None:
@@ -160,6 +188,7 @@ def _turned(
     layout = find_wide_layout(grid)
     if layout is None:
         return None
+    _join_signs(grid, layout, understood)
     understood.append("samples stand as columns: the table is turned; its line numbers count the columns of the file")
     _, at = _analytes_down(preview)
     first = next((number for number, row in enumerate(rows) if at < len(row) and read_heading(row[at]).analyte), 0)

@@ -27,7 +27,8 @@ _ROLES = {
     "qualifier": r"(result |value )?(qualifiers?|qual|flags?|signs?|prefix|censor(ed|ing)?|comparator|operator)",
     "method": r"(analysis |analytical |lab |laboratory |test )?(methods?|technique|procedure)( (code|name))?",
     "digestion": r"(digestion|digest|preparation|decomposition|attack)( method)?",
-    "lower": r"(lower )?(detection|reporting)( limit)?|l\.?o\.?d|lld|ldl|mdl|dl|lower limit|detection limit value",
+    "lower": r"(lower )?(detection|reporting)( limit)?|l\.?o\.?[drq]|lld|ldl|[mp]ql|mdl|dl|m?rl|lower limit"
+    r"|detection limit value",
     "upper": r"upper (detection |reporting )?limit|u\.?d\.?l|u\.?o\.?[dl]|u\.?l\.?(o\.?)?[dq]",
     "control": r"qa ?/?qc|qc( type)?|sample type|control|check type",
 }

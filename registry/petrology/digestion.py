@@ -92,6 +92,8 @@ _AQUA_REGIA_CARRIES = [
     "zn_ppm",
     "s_wt",
 ]
+#: Over the range of the instruments they are titrated.
+_TITRATED_ORE = ("cu_ppm", "pb_ppm", "zn_ppm")
 #: Volatile at the heat of a borate fusion: partly lost.
 _LOST_FROM_FUSION = ["s_wt", "so3_wt", "cl_wt", "as_ppm", "cd_ppm", "sb_ppm", "te_ppm", "tl_ppm", "re_ppm"]
 #: Too light for X-rays in air or from a bead, or a constituent of the bead itself.
@@ -115,8 +117,8 @@ def _carries() -> NDArray[np.uint8]:
         mark(code, _LOST_WITH_ACID, REFUSED if code == FOUR_ACID else MINIMUM)
     table[AQUA_REGIA] = REFUSED
     mark(AQUA_REGIA, _AQUA_REGIA_CARRIES, MINIMUM)
-    table[TITRATION] = REFUSED  # wet chemistry determines majors, never traces
-    mark(TITRATION, (*OXIDE_COLUMNS, *IRON_COLUMNS), TOTAL)
+    table[TITRATION] = REFUSED  # wet chemistry determines majors and metals of ore grade, never traces
+    mark(TITRATION, (*OXIDE_COLUMNS, *IRON_COLUMNS, *_TITRATED_ORE), TOTAL)
     table[COMBUSTION] = REFUSED  # infrared or pyrohydrolysis after burning
     mark(COMBUSTION, ("s_wt", "so3_wt", "co2_wt", "f_wt", "cl_wt"), TOTAL)
     table[FIRE_ASSAY] = REFUSED

@@ -226,3 +226,22 @@ def test_certificate_of_two_analytes_with_headings_in_rows_is_no_sample_list():
         "Analyte,,Au,Ag\nUnit,,ppb,ppm\nMethod,,Fire assay,Four acid\nSample,Type,,\nA1,Rock,5,1\nA2,Rock,<1,2\n"
     )
     assert results(reading)["A2", "Au", "ppb"] == "<1"
+
+
+@pytest.mark.parametrize("value_first", [False, True])
+def test_turned_table_with_the_sign_in_a_column_of_its_own_joins_them(value_first):
+    order = (lambda sign, value: f"{value};{sign}") if value_first else (lambda sign, value: f"{sign};{value}")
+    heads = ";".join(order("", code) if value_first else f"{code};" for code in ("S1", "S2"))
+    lines = {"SiO2;%": (("", "61,5"), ("<", "0,1")), "TiO2;%": (("", "0,6"), ("<", "0,01")),
+             "Zr;ppm": ((">", "1000"), ("", "120")), "Nb;ppm": (("<", "5"), ("=", "12"))}  # fmt: skip
+    body = "".join(f"{name};" + ";".join(order(*cell) for cell in cells) + "\n" for name, cells in lines.items())
+    reading = read(f"Parameter;Units;{heads}\n{body}")
+    assert [results(reading)[code, "Zr", "ppm"] for code in ("S1", "S2")] == [">1000", "120"]
+    assert [results(reading)[code, "Nb", "ppm"] for code in ("S1", "S2")] == ["<5", "12"]
+    assert results(reading)["S2", "SiO2", "wt%"] == "<0.1"
+    assert reading.results.sample_codes == ["S1", "S2"]
+
+
+def test_long_table_with_a_column_headed_reporting_limit_uses_it():
+    reading = read("Sample,Analyte,Result,Unit,RL\nS1,SiO2,61,%,0.01\nS2,SiO2,ND,%,0.01\n")
+    assert results(reading)["S2", "SiO2", "wt%"] == "<0.01"

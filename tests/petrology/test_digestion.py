@@ -52,6 +52,8 @@ from registry.petrology.digestion import (
         ("fire_assay", "cu_ppm", "refused"),
         ("titration", "feo_titrated_wt", "total"),
         ("titration", "rb_ppm", "refused"),
+        ("titration", "pb_ppm", "total"),  # ore grade
+        ("titration", "zn_ppm", "total"),
         ("aqua_regia", "loi_wt", "total"),  # weighed
         ("unknown", "zr_ppm", "total"),
         ("unknown_without_silica", "zr_ppm", "minimum"),
