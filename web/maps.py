@@ -63,10 +63,19 @@ def page() -> Any:
     return body, 400 if problems else 200
 
 
-@blueprint.get("/map.geojson", defaults={"kind": "geojson"})
-@blueprint.get("/map.gpkg", defaults={"kind": "gpkg"})
-def file(kind: str) -> Any:
-    """The samples of the filter that have a position, as points in longitude and latitude."""
+@blueprint.get("/map.geojson")
+def geojson_file() -> Any:
+    """The samples of the filter that have a position, as GeoJSON."""
+    return _file("geojson")
+
+
+@blueprint.get("/map.gpkg")
+def gpkg_file() -> Any:
+    """The samples of the filter that have a position, as a GeoPackage."""
+    return _file("gpkg")
+
+
+def _file(kind: str) -> Any:
     with registry_connection() as connection:
         columns, targets = offered_columns(connection), target_names(connection)
         asked = asked_filter(arguments_of_request(), columns, targets)
@@ -84,8 +93,8 @@ def _files(asked: Filter, choice: MapChoice, columns: Columns) -> list[tuple[str
     names += [choice.number.name] if choice.number and choice.number.name not in names else []
     pairs = [pair for pair in asked.arguments() if pair[0] != "columns"] + [("columns", ",".join(names))]
     return [
-        ("GeoJSON", address(pairs, "map.file", kind="geojson")),
-        ("GeoPackage", address(pairs, "map.file", kind="gpkg")),
+        ("GeoJSON", address(pairs, "map.geojson_file")),
+        ("GeoPackage", address(pairs, "map.gpkg_file")),
         ("CSV, also those without a position", address(pairs, "samples.csv_file")),
     ]
 

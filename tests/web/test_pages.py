@@ -28,7 +28,8 @@ PAGES = (
     "/static/site.css", "/static/site.js", "/static/favicon.svg", "/import", "/import/none", "/import/none/state.json",
     "/import/none/refused/0",
     "/work", "/work/none", "/work/none/state.json",
-    "/batch/file/Q-2041", "/batch/withdraw/Q-2041", "/reported/PB-001", "/reported/none", "/diagrams", "/sign-in", "/map", "/map.geojson", "/map.gpkg",
+    "/batch/file/Q-2041", "/batch/withdraw/Q-2041", "/reported/PB-001", "/reported/none", "/diagrams", "/sign-in",
+    "/map", "/map.geojson", "/map.gpkg",
     "/log", "/log?subject=sample PB-001&page=99",
 )  # fmt: skip
 
