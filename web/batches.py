@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import re
 from typing import Any
 
 from flask import Blueprint, current_app, flash, redirect, render_template, request, send_file, url_for
@@ -62,9 +63,10 @@ def page(code: str) -> Any:
         counts=counts,
         uncertified=uncertified,
         too_many=too_many,
-        standing=control_charts.standing(states) if counts else "No control sample was judged on it.",
+        standing=control_charts.standing(states) if counts or states else "No control sample was judged on it.",
         digested=_digested(columns),
         counting=batching.counting_instead(registry, code) if batch["state"] != "active" else None,
+        elsewhere=_from_other_parts(states),
         charts=control_charts.charts(controls),
         conspicuous=conspicuous,
         conspicuous_number=number,
@@ -72,6 +74,16 @@ def page(code: str) -> Any:
         weighed=batching.WEIGHED,
         chart=control_charts,
     )
+
+
+def _from_other_parts(states: list[dict[str, Any]]) -> list[dict[str, Any]]:
+    """What the controls of other parts of the certificate say of the analytes: ``analyte state remarks``."""
+    found = []
+    for one in states:
+        said = re.search(r"(?:^|; )(in [^:;]+: .*)", one["remarks"])
+        if said is not None:
+            found.append({"analyte": one["analyte"], "state": one["state"], "remarks": said[1]})
+    return found
 
 
 def _digested(columns: list[dict[str, Any]]) -> dict[str, list[str]]:

@@ -75,6 +75,26 @@ def test_controls_over_time_without_controls_says_so(site: Site) -> None:
     assert "No control of a certificate in use could be judged yet" in site.client.get("/controls").text
 
 
+def test_batch_of_rocks_shows_what_the_controls_of_another_part_say(site: Site, tmp_path: Path) -> None:
+    files = {
+        "certificates.csv": CERTIFICATES,
+        "listed.csv": "sample_code,sample_kind,reference_material\nR9,core,\nC9,reference_material,XM-1\n",
+        "K9.csv": "Sample,Zr fusion (ppm)\nR9,120\n",
+    }
+    for name, text in files.items():
+        (tmp_path / name).write_text(text)
+    (tmp_path / "checks.csv").write_text("Sample,Zr fusion (ppm)\nC9,150\n")
+    registry = open_registry(site.path)
+    import_files(registry, [tmp_path / name for name in files], ImportOptions())
+    import_files(registry, [tmp_path / "checks.csv"], ImportOptions(add_to="K9"))
+    registry.close()
+    page = site.client.get("/batches/K9").text
+    assert "Its controls fail for Zr." in page and "No control stands in this file" in page
+    assert "<li>Zr <strong>fails</strong>: in K9/2: reference material XM-1 failed on line 2: found 150" in page
+    own = site.client.get("/batches/K9/2").text
+    assert "By the controls of other parts" not in own and "Its controls fail for Zr." in own
+
+
 def test_blank_is_drawn_at_two_where_it_is_warned_and_at_three_where_it_fails() -> None:
     """Detection limit 1, content 14 with a deviation of 0.5: warned above 14 + 1.5 + 5, failed above 14 + 1.5 + 10."""
     blank = {"kind": "blank", "z": None, "expected": 14.0, "limit_high": 25.5}
