@@ -21,6 +21,10 @@ UNIT, METHOD, LOWER, UPPER, ANALYTE, LABELS = (
 )
 
 
+#: Both limits in one cell: ``0.01 - 100``.
+RANGE = re.compile(r"\s*(?P<low>\d[\d.,]*)\s*(?:-|\u2013|\u2014|to)\s*(?P<high>\d[\d.,]*)\s*")
+
+
 @dataclass
 class AnalyteColumn:
     """One analyte column as its headings say it; iron and missing units are settled later."""
@@ -37,6 +41,10 @@ class AnalyteColumn:
 
 def take(column: AnalyteColumn, role: str, text: str) -> None:
     """Let one heading cell add what it says to its column."""
+    if role == LOWER and (ends := RANGE.fullmatch(text)):
+        take(column, LOWER, ends["low"])
+        take(column, UPPER, ends["high"])
+        return
     if role in (LOWER, UPPER):
         cell = parse_cell(text, "." if "," not in text else ",")
         if cell.state == NUMBER and cell.value > 0:

@@ -7,7 +7,7 @@ from dataclasses import dataclass, field
 
 from registry.intake.cells import BELOW, MISSING, NUMBER, parse_cell
 from registry.intake.codes import CodeColumn, is_code_heading
-from registry.intake.columns import ANALYTE, LABELS, LOWER, METHOD, UNIT, UPPER, AnalyteColumn, take
+from registry.intake.columns import ANALYTE, LABELS, LOWER, METHOD, RANGE, UNIT, UPPER, AnalyteColumn, take
 from registry.intake.methods import speaks_of_method
 from registry.intake.names import Heading, read_heading
 from registry.intake.units import canonical_unit, foreign_unit, split_unit
@@ -24,6 +24,7 @@ _UPPER_LIMIT = re.compile(
     r"(?i)\b(upper ?(detection|reporting)?[ _]?limits?|u\.?d\.?l|u\.?o\.?[dl]|u\.?l\.?(o\.?)?[dq]"
     r"|max(imum)?\.?[ _]*(detection|reporting|limits?)|upper)\b"
 )
+_RANGE_LABEL = re.compile(r"(?i)\b(ranges?|limits?)\b")
 _LOWER_ONLY = re.compile(r"(?i)\b(lower|l\.?o\.?[drq]|ll?d|ldl|mdl)\b")
 #: Letters, then a number: a sample code, though its letters may be those of a detection limit.
 _CODE_LIKE = re.compile(r"[A-Za-z]+[\s\-_/.]*\d[\w\-./]*")
@@ -117,6 +118,9 @@ def _role(row: list[str], analytes: dict[int, Heading], below: bool) -> str | No
     units = sum(canonical_unit(text) is not None or foreign_unit(text) for text in inside)
     states = [parse_cell(text, "." if "," not in text else ",").state for text in inside]
     numbers = sum(state in (NUMBER, BELOW, MISSING) for state in states)
+    ranges = sum(RANGE.fullmatch(text) is not None for text in inside)
+    if ranges > 0.5 * len(inside) and _RANGE_LABEL.search(label) and not any(map(_CODE_LIKE.fullmatch, outside)):
+        return LOWER
     named = sum(read_heading(text).analyte is not None for text in inside)
     if numbers >= 0.5 * len(inside):
         if any(_CODE_LIKE.fullmatch(text) for text in outside):

@@ -14,6 +14,7 @@ from registry.intake.codes import LONGEST_CODE, CodeColumn, choose_code_column, 
 from registry.intake.corrections import column_keys, corrected, listed, take_in
 from registry.intake.findings import Findings
 from registry.intake.layout import WideLayout
+from registry.intake.names import analyte_symbol
 from registry.intake.qualifiers import qualifier_columns
 from registry.intake.readings import ReadingOptions, ResultColumn, ResultTable
 from registry.intake.recipes import ColumnChoice, Recipe
@@ -204,6 +205,13 @@ def _drop_empty(
     return [columns[index] for index in kept], body
 
 
+def _meant(name: str) -> str:
+    """A digit 0 that was typed for the letter O: ``K20``, ``Al203``."""
+    letter = re.sub(r"0(?=\d?$)", "O", name)
+    symbol = analyte_symbol(letter) if letter != name else None
+    return f"did you mean {symbol}, with the letter O? " if symbol else ""
+
+
 def _say_ignored(
     layout: WideLayout, used: set[int], control: int | None, findings: Findings, understood: list[str]
 ) -> None:
@@ -218,7 +226,7 @@ def _say_ignored(
             findings.warn(
                 "the heading names no analyte that the register knows; the column is ignored", column=label,
                 found=rest, expected="an oxide or element, or a total",
-                remedy="if it is one, name the analyte with --column",
+                remedy=_meant(rest) + "if it is one, name the analyte with --column",
             )  # fmt: skip
         plain.append(f"'{label}'")
     if plain:

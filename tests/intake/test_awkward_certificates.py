@@ -245,3 +245,17 @@ def test_turned_table_with_the_sign_in_a_column_of_its_own_joins_them(value_firs
 def test_long_table_with_a_column_headed_reporting_limit_uses_it():
     reading = read("Sample,Analyte,Result,Unit,RL\nS1,SiO2,61,%,0.01\nS2,SiO2,ND,%,0.01\n")
     assert results(reading)["S2", "SiO2", "wt%"] == "<0.01"
+
+
+@pytest.mark.parametrize("sign", ["-", " - ", "\u2013", " to "])
+def test_row_of_ranges_gives_both_limits(sign):
+    reading = read(f"Sample,SiO2,Zr\nUnit,%,ppm\nRange,0.01{sign}100,1{sign}9000\nX1,61,bdl\nX2,62,over range\n")
+    assert [results(reading)[code, "Zr", "ppm"] for code in ("X1", "X2")] == ["<1", ">9000"]
+
+
+@pytest.mark.parametrize(
+    ("typed", "meant"), [("K20", "K2O"), ("Al203", "Al2O3"), ("Si02", "SiO2"), ("P205", "P2O5"), ("Mn0", "MnO")]
+)
+def test_nought_typed_for_the_letter_is_told(typed, meant):
+    (said,) = remarks(read(f"Sample,TiO2 (%),{typed} (%)\nS1,0.5,3\n"))
+    assert f"did you mean {meant}, with the letter O?" in said
