@@ -92,13 +92,29 @@ def _analytes_in(row: list[str]) -> dict[int, Heading]:
     return found
 
 
+def _are_others(headings: dict[int, Heading], below: dict[int, Heading]) -> bool:
+    """Whether half the headings or more of one row name other analytes than the row below it at the same places."""
+    shared = [place for place in headings if place in below]
+    return 0 < len(shared) <= 2 * sum(headings[place].analyte != below[place].analyte for place in shared)
+
+
 def find_header_row(rows: list[list[str]]) -> tuple[int, dict[int, Heading]]:
-    """The row with most analyte headings, the first of equals; (-1, {}) if there is none."""
+    """The row with most analyte headings, the first of equals; (-1, {}) if there is none.
+
+    A row right below it that names other analytes at the same places stands for it.
+    """
     best: tuple[int, dict[int, Heading]] = (-1, {})
     for index, row in enumerate(rows[:SEARCH_ROWS]):
         found = _analytes_in(row)
         if len(found) > len(best[1]) and (len(found) > 1 or len([cell for cell in row if cell.strip()]) > 1):
             best = index, found
+    index, found = best
+    for later in range(index + 1, min(len(rows), index + 9) if found else 0):
+        below = _analytes_in(rows[later])
+        if len(below) > 1 and _are_others(found, below):
+            return later, below  # what stood above was a sentence or a list: "Elements requested:, Au, Ag, Cu"
+        if any(place < len(rows[later]) and _number(_clean(rows[later][place])) is not None for place in found):
+            break
     return best
 
 
@@ -183,7 +199,7 @@ def find_wide_layout(rows: list[list[str]], told: tuple[int, dict[int, Heading]]
     roles = {index: ANALYTE}
     for above in range(index - 1, max(-1, index - 9), -1):
         role = _role(rows[above], analytes, below=False)
-        if role is not None:
+        if role is not None and not (role == ANALYTE and _are_others(_analytes_in(rows[above]), analytes)):
             roles[above] = role
     below = index + 1
     first_row = below

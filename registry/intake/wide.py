@@ -31,9 +31,10 @@ from registry.intake.wide_body import RowsInMemory, SpooledRows, Texts, WideBody
 from registry.petrology.analytes import WT_PERCENT_PER_UNIT
 
 _SUMMARY_ROW = re.compile(
-    r"(?i)\s*(means?|averages?|avg\.?|totals?|sums?|std\.? ?dev\.?\w*|standard deviation|minimum|maximum|min\.?|max\.?"
+    r"(?i)\s*(means?|averages?|avg\.?|ave\.?|totals?|sums?|n ?=|std?\.? ?dev\.?\w*|%? ?rsd\.? ?\(?%?\)?"
+    r"|cv ?\(?%?\)?|standard deviation|minimum|maximum|min\.?|max\.?"
     r"|medians?|counts?|(lower |upper )?(detection|reporting) ?limits?|l\.?o\.?[drq]\.?|lld|ldl|mdl|udl"
-    r"|units?|methods?|analytes?|number of (samples|results)|rsd|percentiles?|\d+(th|st|nd|rd) percentile|end( of .*)?"
+    r"|units?|methods?|analytes?|number of (samples|results)|percentiles?|\d+(th|st|nd|rd) percentile|end( of .*)?"
     r"|.*end of (report|file|certificate).*)"
     r"\s*[:%]?\s*"
 )

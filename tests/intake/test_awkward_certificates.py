@@ -259,3 +259,20 @@ def test_row_of_ranges_gives_both_limits(sign):
 def test_nought_typed_for_the_letter_is_told(typed, meant):
     (said,) = remarks(read(f"Sample,TiO2 (%),{typed} (%)\nS1,0.5,3\n"))
     assert f"did you mean {meant}, with the letter O?" in said
+
+
+@pytest.mark.parametrize(
+    "title", ["Elements requested:,Au,Ag,Cu,Pb,Zn", "Analysis of SiO2, Al2O3, Zr, Nb and Y", "Scope:,Zr,Au"]
+)
+def test_list_of_analytes_above_the_headings_is_a_title(title):
+    reading = read(f"{title}\nSample,Au (ppb),Cu (ppm)\nS1,5,100\nS2,6,110\n")
+    assert [column.header for column in reading.results.columns] == ["Au (ppb)", "Cu (ppm)"]
+    assert reading.results.sample_header == "Sample"
+    assert results(reading)["S2", "Cu", "ppm"] == "110"
+    assert remarks(reading) == []
+
+
+@pytest.mark.parametrize("code", ["% RSD", "RSD (%)", "StDev", "Ave", "N =", "CV%", "Std. Dev."])
+def test_statistics_below_the_data_are_no_samples(code):
+    reading = read(f"Sample,SiO2 (%),Zr (ppm)\nS1,60,100\nS2,61,110\n{code},1.1,2.2\n")
+    assert reading.results.sample_codes == ["S1", "S2"]
