@@ -74,7 +74,7 @@ def choose(n: int, blocks: Sequence[Block]) -> tuple[np.ndarray, np.ndarray, np.
 class TracedChoice:
     """A choice and where it came from: ``source`` int32 (81, n), a position in ``origins``, -1 where no value is.
 
-    ``origins``: block and column position of each candidate.
+    ``origins``: block and column position of each candidate; ``factors``: from the block's unit to the column's.
     """
 
     values: np.ndarray
@@ -82,6 +82,7 @@ class TracedChoice:
     digestions: np.ndarray
     source: np.ndarray
     origins: list[tuple[Block, int]]
+    factors: list[float]
 
 
 def trace_choice(n: int, blocks: Sequence[Block]) -> TracedChoice:
@@ -101,7 +102,8 @@ def trace_choice(n: int, blocks: Sequence[Block]) -> TracedChoice:
     for candidate in candidates:
         if candidate.refused:
             _mark_refused(candidate, values, digestions)
-    return TracedChoice(values, qualifiers, digestions, source, [(c.block, c.column) for c in candidates])
+    origins, factors = [(c.block, c.column) for c in candidates], [c.factor for c in candidates]
+    return TracedChoice(values, qualifiers, digestions, source, origins, factors)
 
 
 def _candidates(block: Block) -> list[_Candidate]:

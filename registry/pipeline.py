@@ -17,7 +17,7 @@ from registry.petrology.catalogue import CAUSES, METHODS, QUANTITIES, WARNINGS, 
 from registry.petrology.conventions import Conventions
 from registry.petrology.logged import logged_words
 from registry.petrology.quotients import is_absent
-from registry.targets.engine import CONTROL_KINDS, Verdicts, best, judge_all
+from registry.targets.engine import CONTROL_KINDS, Verdicts, best, judge_all, verdict_codes
 
 #: Samples computed at a time: keeps the temporaries in the processor's cache and the memory bounded.
 CHUNK_SIZE = 16_384
@@ -113,6 +113,17 @@ def compute(chunk: Chunk, definitions: Sequence[Any], conventions: Conventions) 
         best_target, best_verdict = best(verdicts, n)
     derived = {quantity.name: workspace[quantity.name] for quantity in QUANTITIES}
     return Computed(derived, causes, warnings, verdicts, best_target, best_verdict)
+
+
+def judged_only(chunk: Chunk, definitions: Sequence[Any], conventions: Conventions) -> dict[str, np.ndarray]:
+    """The verdict codes that ``compute`` gives, uint8 (n,) by target code, and nothing else of it.
+
+    For many drawn analyses of few samples: causes, remarks and reasons of a draw are not asked for.
+    """
+    workspace = workspace_of(chunk, conventions)
+    with np.errstate(all="ignore"):
+        _evaluate(workspace, len(chunk))
+        return verdict_codes(definitions, workspace, len(chunk))
 
 
 def compute_in_parts(

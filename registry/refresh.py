@@ -127,6 +127,11 @@ def recompose(connection: Any, sample_ids: Sequence[int], held: np.ndarray | Non
 
 def stored_blocks(connection: Any, ids: np.ndarray, held: np.ndarray | None = None) -> list[Block]:
     """The active results of the samples ``ids`` (ascending) as the choice takes them, without ``held`` columns."""
+    return as_blocks(loading.load_blocks(connection, ids, held))
+
+
+def as_blocks(blocks: Sequence[loading.StoredBlock]) -> list[Block]:
+    """Stored blocks of results as the choice takes them, in their order."""
     return [
         Block(
             [ColumnUse(column.analyte, column.unit, column.digestion) for column in block.columns],
@@ -136,7 +141,7 @@ def stored_blocks(connection: Any, ids: np.ndarray, held: np.ndarray | None = No
             block.newness,
             block.repeat,
         )
-        for block in loading.load_blocks(connection, ids, held)
+        for block in blocks
     ]
 
 

@@ -93,19 +93,40 @@ _HOW_READ = (
 @registry_option
 @click.option("--all", "everything", is_flag=True, help="Recompute every sample, not only the stale ones.")
 @click.option("--probability", is_flag=True, help="Also draw the probability that each verdict survives error.")
+@click.option(
+    "--intrusion",
+    "intrusions",
+    metavar="NAME",
+    multiple=True,
+    help="With --probability: draw for the samples of this intrusion only; may be given many times.",
+)
 @json_option
-def refresh(registry_path: str | None, everything: bool, probability: bool, as_json: bool) -> None:
-    """Recompute what is stale, or everything."""
+def refresh(
+    registry_path: str | None, everything: bool, probability: bool, intrusions: tuple[str, ...], as_json: bool
+) -> None:
+    """Recompute what is stale, or everything.
+
+    With --probability the analysis of every sample is then drawn many times within analytical error, and judged anew:
+    the share of draws that give a verdict again is the chance that it survives analytical error, not the chance of
+    ore. Verdicts that have one are not drawn again; an interrupted run goes on where it stopped.
+    """
     from registry.refresh import refresh_registry
     from registry.store.engine import open_registry
+    from registry.surviving import draw_probabilities
 
-    if probability:
-        raise UsageError(
-            "--probability is not there yet: probability_state stands at 'not_computed'; run refresh without it"
-        )
+    if intrusions and not probability:
+        raise UsageError("--intrusion limits what --probability draws; give both, or neither")
+    registry = open_registry(registry_named(registry_path))
     with shown() as progress:
-        count = refresh_registry(open_registry(registry_named(registry_path)), everything, progress=progress)
-    say({"recomputed": count}, [f"Recomputed {count:,} {'sample' if count == 1 else 'samples'}."], as_json)
+        count = refresh_registry(registry, everything, progress=progress)
+        drawn = draw_probabilities(registry, intrusions, progress, progress.tell) if probability else 0
+    lines = [f"Recomputed {count:,} {'sample' if count == 1 else 'samples'}."]
+    if probability:
+        lines.append(
+            f"Drew probabilities for {drawn:,} {'sample' if drawn == 1 else 'samples'}: how often a verdict survives "
+            "analytical error, not the chance of ore."
+        )
+    say({"recomputed": count, **({"drawn": drawn} if probability else {})}, lines, as_json)
 
 
 @click.command()

@@ -43,6 +43,11 @@ class Conventions:
     sulphur_warn_wt: float = 0.5
     magnetite_series_si: float = 3e-3
     failed_control: str = "mark"  # hold | mark | ignore
+    probability_draws: float = 200.0  # a whole number
+    error_major_percent: float = 0.5  # relative standard deviations where no control of the batch tells them
+    error_trace_percent: float = 5.0
+    error_feo_percent: float = 2.0
+    error_volatile_percent: float = 5.0
 
     def as_dict(self) -> dict[str, Any]:
         return asdict(self)

@@ -49,8 +49,18 @@ MEANINGS: dict[str, Words] = {
     "score_min": _counted("1", f"{_SCORE}; unknown ones taken as not met"),
     "score_max": _counted("1", f"{_SCORE}; unknown ones taken as met"),
     "coverage": _counted("1", "weights of the criteria that could be answered over all weights"),
-    "probability": _counted("1", "chance that the verdict survives analytical error, not the chance of ore"),
-    "probability_state": _counted("text", "whether the probability was computed"),
+    "probability": (
+        "1",
+        "chance that the verdict survives analytical error, not the chance of ore",
+        "share of analyses drawn within analytical error that give the verdict again; normal errors, independent by "
+        "analyte, s = s0 + k c by the batch's controls, else by convention",
+        "Thompson & Howarth 1976 for the errors; the draws are this register's",
+    ),
+    "probability_state": _counted(
+        "text",
+        "not_computed (plutonbook refresh --probability does it), computed, or out_of_date where something changed "
+        "since",
+    ),
     "provisional": _counted("1", "1 where a threshold it rests on is provisional", "target definition"),
     "target_version": _counted("text", "version of the target definition used", "target definition"),
     "criterion": _counted("text", "code of the gate or criterion", "target definition"),

@@ -39,11 +39,12 @@ class Composition:
 
 @dataclass(frozen=True)
 class StoredColumn:
-    """A batch column: analyte symbol, unit and digestion as stored."""
+    """A batch column: analyte symbol, unit and digestion as stored, and its id."""
 
     analyte: str
     unit: str
     digestion: str
+    column_id: int
 
 
 @dataclass(frozen=True)
@@ -171,10 +172,10 @@ def _columns(
         batch_ids,
     )
     grouped: dict[int, tuple[list[int], list[StoredColumn]]] = {}
-    for batch_id, column_id, *words in rows:
+    for batch_id, column_id, analyte, unit, digestion in rows:
         ids, described = grouped.setdefault(batch_id, ([], []))
         ids.append(column_id)
-        described.append(StoredColumn(*words))
+        described.append(StoredColumn(analyte, unit, digestion, column_id))
     return {
         batch_id: (np.array(ids, dtype=np.int64), tuple(described)) for batch_id, (ids, described) in grouped.items()
     }

@@ -105,8 +105,10 @@ def _judgement_sheets(dialect: Any, sample: dict[str, str]) -> dict[str, tuple[d
     return {
         "verdict_sheet": (
             {
-                **_each("v", "score_min score_max coverage probability probability_state provisional"),
+                **_each("v", "score_min score_max coverage probability provisional"),
                 **sample,
+                "probability_state": "CASE WHEN v.probability_state = 'computed' AND EXISTS (SELECT 1 FROM stale AS z "
+                "WHERE z.sample_id = s.sample_id) THEN 'out_of_date' ELSE v.probability_state END",
                 "target": "t.code",
                 "verdict": _verdict_word("v.verdict"),
                 "target_version": "w.version",

@@ -15,7 +15,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from registry.targets.definition import Criterion, Need, TargetDefinition
-from registry.targets.evaluation import Outcome, evaluate_criterion, evaluate_gate
+from registry.targets.evaluation import Outcome, criterion_letters, evaluate_criterion, evaluate_gate, gate_letters
 from registry.targets.intervals import Booleans, Floats, Known, Words
 from registry.targets.packing import pack_reasons
 from registry.targets.quantities import TEXT_RULES, known_of
@@ -99,9 +99,30 @@ def best(verdicts: Mapping[str, Verdicts], n: int) -> tuple[NDArray[np.object_],
     return best_target, best_verdict
 
 
+def verdict_codes(
+    definitions: Iterable[TargetDefinition], workspace: Mapping[str, Any], n: int
+) -> dict[str, NDArray[np.uint8]]:
+    """What ``judge_all`` gives as ``verdict``, by code, without the reasons, which take most of its time."""
+    known = known_of(workspace, n)
+    judged, (fit, cause) = ~_controls(known), _fitness(known)
+    codes = {}
+    for definition in definitions:
+        letters = [gate_letters(known, gate) for gate in definition.gates]
+        letters += [criterion_letters(known, criterion) for criterion in definition.criteria]
+        answered = np.where(fit[:, None], np.stack(letters, axis=1), np.uint8(_U))
+        verdict = _verdict_of_letters(definition, known, answered, fit, cause)
+        codes[definition.code] = np.where(judged, verdict, np.uint8(NOT_JUDGED))
+    return codes
+
+
 def verdicts_of_outcomes(definition: TargetDefinition, known: Known, letters: NDArray[np.uint8]) -> NDArray[np.uint8]:
     """The verdict codes (k,) that k rows of outcome letters (k, tests) would give one sample, ``known`` with n = 1."""
-    fit, cause = _fitness(known)
+    return _verdict_of_letters(definition, known, letters, *_fitness(known))
+
+
+def _verdict_of_letters(
+    definition: TargetDefinition, known: Known, letters: NDArray[np.uint8], fit: Booleans, cause: Words
+) -> NDArray[np.uint8]:
     gates, criteria = letters[:, : len(definition.gates)], letters[:, len(definition.gates) :]
     score_min, score_max, _ = _scores(criteria, definition.criteria)
     allowed, exclusion_only, _ = _needs(known, definition.needs, fit, cause)
@@ -205,5 +226,6 @@ __all__ = [
     "is_known",
     "judge",
     "judge_all",
+    "verdict_codes",
     "verdicts_of_outcomes",
 ]  # fmt: skip

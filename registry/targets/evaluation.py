@@ -76,29 +76,55 @@ def _compare(value: Interval, limit: Interval, sign: str) -> tuple[Booleans, Boo
     return holds, fails
 
 
-def evaluate_gate(known: Known, gate: Gate) -> Outcome:
+def gate_letters(known: Known, gate: Gate) -> NDArray[np.uint8]:
+    """Outcome letters (n,) of a gate."""
     met, failed = evaluate(known, gate.test)
-    letters = np.where(met, MET, np.where(failed, NOT_MET, UNKNOWN)).astype(np.uint8)
-    values, limits, texts = _shown(known, gate.test)
-    return Outcome(letters, values, limits, texts)
+    return np.where(met, MET, np.where(failed, NOT_MET, UNKNOWN)).astype(np.uint8)
+
+
+def evaluate_gate(known: Known, gate: Gate) -> Outcome:
+    return Outcome(gate_letters(known, gate), *_shown(known, gate.test))
+
+
+def criterion_letters(known: Known, criterion: Criterion) -> NDArray[np.uint8]:
+    """Outcome letters (n,) of a criterion with its alternative, its precondition and its near band."""
+    letters = _letters_of_tests(known, criterion)
+    if criterion.only_if:
+        fails, open_question = _precondition(known, criterion, letters)
+        letters = _under_precondition(letters, fails, open_question)
+    return letters
 
 
 def evaluate_criterion(known: Known, criterion: Criterion) -> Outcome:
     """The outcome of a criterion with its alternative, its precondition and its near band."""
-    letters = _letters(known, criterion.test, criterion.near)
+    letters = _letters_of_tests(known, criterion)
     values, limits, texts = _shown(known, criterion.test)
     if criterion.otherwise is not None:
-        instead = known.number(criterion.test.quantity).missing
-        other = _letters(known, criterion.otherwise, criterion.otherwise_near)
+        instead = _instead(known, criterion)
         other_values, other_limits, other_texts = _shown(known, criterion.otherwise)
-        instead &= ~known.number(criterion.otherwise.quantity).missing
-        letters = np.where(instead, other, letters)
         values, limits = np.where(instead, other_values, values), np.where(instead, other_limits, limits)
         merged = np.where(instead, other_texts.codes + len(texts.labels), texts.codes)
         texts = Words(np.where(instead & (other_texts.codes == 0), 0, merged), (*texts.labels, *other_texts.labels))
     if criterion.only_if:
-        letters, texts = _with_precondition(known, criterion, letters, texts)
+        fails, open_question = _precondition(known, criterion, letters)
+        letters = _under_precondition(letters, fails, open_question)
+        texts = _precondition_texts(criterion, fails, open_question, texts)
     return Outcome(letters, values, limits, texts)
+
+
+def _letters_of_tests(known: Known, criterion: Criterion) -> NDArray[np.uint8]:
+    """The letters of the test, or of the other one where that takes its place."""
+    letters = _letters(known, criterion.test, criterion.near)
+    if criterion.otherwise is None:
+        return letters
+    other = _letters(known, criterion.otherwise, criterion.otherwise_near)
+    return np.where(_instead(known, criterion), other, letters)
+
+
+def _instead(known: Known, criterion: Criterion) -> Booleans:
+    """Where the quantity of a criterion is not known and that of its alternative is."""
+    assert criterion.otherwise is not None
+    return known.number(criterion.test.quantity).missing & ~known.number(criterion.otherwise.quantity).missing
 
 
 def _letters(known: Known, test: Condition, near: Condition | None) -> NDArray[np.uint8]:
@@ -109,21 +135,25 @@ def _letters(known: Known, test: Condition, near: Condition | None) -> NDArray[n
     return letters
 
 
-def _with_precondition(
-    known: Known, criterion: Criterion, letters: NDArray[np.uint8], texts: Words
-) -> tuple[NDArray[np.uint8], Words]:
-    """False precondition: not met. Unknown precondition: unknown unless the test already fails."""
+def _precondition(known: Known, criterion: Criterion, letters: NDArray[np.uint8]) -> tuple[Booleans, Booleans]:
+    """Where the precondition fails, and where it is not known while the test is met."""
     holds, fails = np.ones(known.n, dtype=bool), np.zeros(known.n, dtype=bool)
     for condition in criterion.only_if:
         this_holds, this_fails = evaluate(known, condition)
         holds &= this_holds
         fails |= this_fails
-    open_question = ~holds & ~fails & (letters == MET)
-    letters = np.where(fails, NOT_MET, np.where(open_question, UNKNOWN, letters)).astype(np.uint8)
+    return fails, ~holds & ~fails & (letters == MET)
+
+
+def _under_precondition(letters: NDArray[np.uint8], fails: Booleans, open_question: Booleans) -> NDArray[np.uint8]:
+    """False precondition: not met. Unknown precondition: unknown unless the test already fails."""
+    return np.where(fails, NOT_MET, np.where(open_question, UNKNOWN, letters)).astype(np.uint8)
+
+
+def _precondition_texts(criterion: Criterion, fails: Booleans, open_question: Booleans, texts: Words) -> Words:
     spelled = " and ".join(f"{c.quantity} {c.text}" for c in criterion.only_if)
     labels = (*texts.labels, f"counts only if {spelled}", f"counts only if {spelled}, which is not known")
-    codes = np.where(fails, len(labels) - 2, np.where(open_question, len(labels) - 1, texts.codes))
-    return letters, Words(codes, labels)
+    return Words(np.where(fails, len(labels) - 2, np.where(open_question, len(labels) - 1, texts.codes)), labels)
 
 
 def _shown(known: Known, test: Condition) -> tuple[Floats, Floats, Words]:

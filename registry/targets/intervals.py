@@ -81,6 +81,21 @@ def interval_text(low: float, high: float, open_low: bool, open_high: bool) -> s
     return f"{low:.4g} to {high:.4g}"
 
 
+class _Seen(dict[Any, int]):
+    """The code of each text by its first appearance; what is no text has code 0."""
+
+    def __init__(self) -> None:
+        super().__init__({None: 0, "": 0})
+        self.labels = [""]
+
+    def __missing__(self, text: Any) -> int:
+        if not isinstance(text, str):
+            return 0
+        self[text] = code = len(self.labels)
+        self.labels.append(text)
+        return code
+
+
 @dataclass(frozen=True)
 class Words:
     """A text quantity: ``codes`` of shape (n,) into ``labels``; label 0 is '' and means not known."""
@@ -94,11 +109,9 @@ class Words:
 
     @classmethod
     def of(cls, texts: Any) -> Words:
-        seen: dict[str, int] = {"": 0}
-        codes = np.fromiter(
-            (seen.setdefault(text, len(seen)) if isinstance(text, str) else 0 for text in texts), dtype=np.intp
-        )
-        return cls(codes, tuple(seen))
+        listed = texts.tolist() if isinstance(texts, np.ndarray) else list(texts)
+        seen = _Seen()
+        return cls(np.fromiter(map(seen.__getitem__, listed), dtype=np.intp, count=len(listed)), tuple(seen.labels))
 
     @classmethod
     def yes_no(cls, yes: Any, known: Any = True) -> Words:

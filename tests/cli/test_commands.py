@@ -186,9 +186,9 @@ def test_demo_is_built_once_and_then_used_again(tmp_path: Path, capsys: pytest.C
 
 
 @pytest.mark.parametrize(
-    "arguments", [["refresh", "--probability"], ["import", "x.csv", "--supersede", "--add-to", "B"]]
+    "arguments", [["refresh", "--intrusion", "Grey sill"], ["import", "x.csv", "--supersede", "--add-to", "B"]]
 )
-def test_what_is_not_there_yet_or_contradicts_exits_2(
+def test_options_that_contradict_each_other_or_lack_one_exit_2(
     arguments: list[str], path: Path, capsys: pytest.CaptureFixture
 ) -> None:
     assert run(*arguments, "--registry", path) == 2

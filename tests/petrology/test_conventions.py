@@ -96,7 +96,10 @@ CASES: dict[str, tuple[Any, set[str], set[str], dict[str, float]]] = {
     "magnetite_series_si": (1e-3, {"redox_series"}, {"fe2o3_feo"}, {}),
 }  # fmt: skip
 #: Read by one of the others' choices, or no part of what is computed of an analysis.
-ELSEWHERE = {"iron_fixed_ratio", "iron_buffer", "iron_buffer_shift", "failed_control"}
+ELSEWHERE = {
+    "iron_fixed_ratio", "iron_buffer", "iron_buffer_shift", "failed_control", "probability_draws",
+    "error_major_percent", "error_trace_percent", "error_feo_percent", "error_volatile_percent",
+}  # fmt: skip
 
 
 def test_conventions_all_have_a_case_here() -> None:

@@ -125,5 +125,33 @@ CONVENTION_GROUPS: tuple[tuple[str, tuple[Convention, ...]], ...] = (
             ),
         ),
     ),
+    (
+        "Analytical error",
+        (
+            _number(
+                "probability_draws", "1", 20.0, 10_000.0,
+                "Analyses drawn of each sample to see how often a verdict survives analytical error; the whole part "
+                "counts.",
+            ),
+            _number(
+                "error_major_percent", "%", 0.0, 30.0,
+                "Relative standard deviation of a major oxide where no control of its batch tells it (common "
+                "practice, no source; provisional).",
+            ),
+            _number(
+                "error_trace_percent", "%", 0.0, 30.0,
+                "The same of a trace element (common practice, no source; provisional).",
+            ),
+            _number(
+                "error_feo_percent", "%", 0.0, 30.0,
+                "The same of titrated FeO (common practice, no source; provisional).",
+            ),
+            _number(
+                "error_volatile_percent", "%", 0.0, 30.0,
+                "The same of the loss on ignition, water, CO2, sulphur and the halogens (common practice, no source; "
+                "provisional).",
+            ),
+        ),
+    ),
 )  # fmt: skip
 CONVENTIONS = {record.name: record for _, group in CONVENTION_GROUPS for record in group}
