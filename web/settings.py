@@ -50,6 +50,9 @@ PATTERN_MEANINGS = {
     "control_pattern.blank": "^BLK finds BLK-001 and BLK-002.",
     "control_pattern.reference_material": "^STD-(.+)$ finds STD-A1, and takes A1 for the name of the material.",
     "control_pattern.duplicate": "-D$ finds A12-D, the duplicate of A12.",
+    "control_pattern.field_duplicate": "-FD$ finds A12-FD: a second piece of the core or outcrop.",
+    "control_pattern.crush_duplicate": "-CD$ finds A12-CD: a second split of the crushed rock.",
+    "control_pattern.pulp_duplicate": "-PD$ finds A12-PD: the same pulp analysed twice.",
 }
 
 
