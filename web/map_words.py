@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections import Counter
 from collections.abc import Mapping, Sequence
 from typing import Any
 
@@ -65,7 +66,5 @@ def moves(frame: Frame, grid: Grid, asked: Filter, choice: MapChoice, whole: str
 
 def bases(stored: Sequence[str | None]) -> list[tuple[str, int]]:
     """(what the positions rest on, how many samples), most first."""
-    counts: dict[str, int] = {}
-    for basis in stored:
-        counts[basis or "not said"] = counts.get(basis or "not said", 0) + 1
-    return sorted(counts.items(), key=lambda item: (-item[1], item[0]))
+    counts = Counter(stored)
+    return sorted(((basis or "not said", many) for basis, many in counts.items()), key=lambda item: (-item[1], item[0]))
