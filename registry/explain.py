@@ -58,7 +58,10 @@ class Reason:
 
 @dataclass(frozen=True)
 class Conclusion:
-    """The verdict on one sample for one target, with everything that stands behind it."""
+    """The verdict on one sample for one target, with everything that stands behind it.
+
+    ``probability`` that it survives analytical error (never a chance of ore), of ``draws``; None where not computed.
+    """
 
     target: str
     name: str
@@ -67,6 +70,8 @@ class Conclusion:
     score_min: float | None
     score_max: float | None
     coverage: float | None
+    probability: float | None
+    draws: int
     provisional: bool
     cause: str
     argument: str
@@ -160,6 +165,8 @@ def _conclusion(row: dict[str, Any], sample: dict[str, Any], conventions: Conven
         score_min=row["score_min"],
         score_max=row["score_max"],
         coverage=row["coverage"],
+        probability=row["probability"],
+        draws=int(conventions.probability_draws),
         provisional=bool(row["provisional"]),
         cause=(texts.get("cause") or "") if row["verdict"] == "undecided" else "",
         argument=told["argument"],

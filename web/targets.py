@@ -27,9 +27,10 @@ def list_page() -> Any:
 def page(code: str) -> Any:
     with registry_connection() as connection:
         targets = reading.target_list(connection)
+        target = next((target for target in targets if target["code"] == code), None)
+        drawn = reading.surviving_counts(connection, target["target_id"]) if target else None
         quantities = methods_reading.quantities(connection)
         offered = offered_columns(connection)
-    target = next((target for target in targets if target["code"] == code), None)
     if target is None:
         near = [(other["name"], url_for("targets.page", code=other["code"])) for other in targets]
         raise Missing("target", code, near)
@@ -38,5 +39,11 @@ def page(code: str) -> Any:
     units = {name: column.unit for name, column in offered.items()}
     units |= {row["name"]: row["unit"] for row in quantities}
     return render_template(
-        "target.html", section="Targets", target=target, definition=definition, labels=labels, units=units
+        "target.html",
+        section="Targets",
+        target=target,
+        drawn=drawn,
+        definition=definition,
+        labels=labels,
+        units=units,
     )

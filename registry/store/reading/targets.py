@@ -33,6 +33,23 @@ def target_list(connection: Connection) -> list[dict[str, Any]]:
     return targets
 
 
+def surviving_counts(connection: Connection, target_id: int) -> dict[str, Any]:
+    """How many ``samples`` have a probability that the verdict survives analytical error, and by verdict word, of the
+    favourable and possible ones, their ``number`` and how many are ``surviving`` in nine draws of ten or more."""
+    rows = connection.execute(
+        text(
+            "SELECT verdict, count(*) AS number, sum(CASE WHEN probability >= 0.9 THEN 1 ELSE 0 END) AS surviving "
+            "FROM verdict WHERE target_id = :target_id AND probability IS NOT NULL GROUP BY verdict ORDER BY verdict"
+        ),
+        {"target_id": target_id},
+    ).all()
+    shown = {VERDICT_WORDS[row.verdict]: {"number": row.number, "surviving": row.surviving} for row in rows}
+    return {
+        "samples": sum(row.number for row in rows),
+        "verdicts": {word: shown[word] for word in ("favourable", "possible") if word in shown},
+    }
+
+
 def target_names(connection: Connection) -> dict[str, str]:
     """Names of the targets by code, in their own order."""
     return {row.code: row.name for row in connection.execute(text("SELECT code, name FROM target ORDER BY target_id"))}
