@@ -78,8 +78,8 @@ def precisions(connection: Any) -> list[dict[str, Any]]:
     """
     patterns = read_patterns(connection)
     groups: dict[tuple[Any, ...], list[tuple[float, float]]] = {}
-    for *column, kind, code, text, original, duplicate in quality_rows.pairs(connection):
-        stage = stage_of_pair(kind, code, text, patterns)
+    for *column, kind, code, declared, text, original, duplicate in quality_rows.pairs(connection):
+        stage = stage_of_pair(kind, declared, code, text, patterns)
         groups.setdefault((*column, stage), []).append((original, duplicate))
     found = []
     for key, values in sorted(groups.items(), key=lambda item: tuple(word or "" for word in item[0])):

@@ -33,7 +33,9 @@ def load_controls(connection: Any, batch_id: int, patterns: Patterns) -> Control
     aliquots = np.array([line.aliquot_id for line, *_ in kept], dtype=np.int64)
     line_no = np.array([line.line_no for line, *_ in kept], dtype=np.int64)
     kinds = np.array([kind for _, kind, *_ in kept], dtype=object)
-    stages = [stage_of_pair(kind, line.code, line.control_text, patterns) for line, kind, *_ in kept]
+    stages = [
+        stage_of_pair(kind, line.duplicate_stage, line.code, line.control_text, patterns) for line, kind, *_ in kept
+    ]
     values, signs = quality_rows.results_of(connection, aliquots, column_ids)
     originals = np.array([original or 0 for *_, original in kept], dtype=np.int64)
     partner, partner_signs = _partners(connection, batch_id, stored_columns, originals, aliquots)
@@ -131,10 +133,12 @@ def _material(line: StoredLine, kind: str, materials: Sequence[str], patterns: P
     return material_of(None, line.code, materials)
 
 
-def stage_of_pair(kind: str, code: str, control_text: str | None, patterns: Patterns) -> str:
-    """The stage of a judged pair, from its kind, what the certificate says of the line, and the form of its code."""
+def stage_of_pair(kind: str, declared: str | None, code: str, control_text: str | None, patterns: Patterns) -> str:
+    """The stage of a judged pair, from its kind, the sample list, the certificate's word, and the form of its code."""
     if kind == LAB_REPEAT:
         return "lab"
+    if declared is not None:
+        return declared
     stage = read_control_text(control_text).stage
     return stage if stage != "unknown" else patterns.stage_of(code)
 

@@ -34,10 +34,11 @@ LINES_AT_A_TIME = 8192
 
 @dataclass(frozen=True)
 class StoredBatch:
-    """The batch that a table of results was stored as."""
+    """The batch that a table of results was stored as, and the id of the whole certificate that it is a part of."""
 
     batch_id: int
     code: str
+    whole: int
 
 
 @dataclass
@@ -92,7 +93,7 @@ def store_results(
     if within is None:
         place, problems = place_of(connection, reading.file, table, packed.sha256, options)
     else:
-        place, problems = Place(f"{within.code}/{reading.part}", part_of=within.batch_id), []
+        place, problems = Place(f"{within.code}/{reading.part}", part_of=within.whole), []
     lines = resolve(connection, table, options.code_prefix, add=options.create_samples)
     if lines.any_missing and not options.create_samples:
         problems += first_of(unknown_codes(connection, reading.file, table, options.code_prefix), reading.file)
@@ -121,9 +122,7 @@ def store_results(
         bulk.guarded(connection),
         Computations(chunks, rules, by_child, tables) as computations,
     ):
-        batch_id, column_ids = _store_batch(
-            connection, reading.file, table, packed if within is None else None, place, options
-        )
+        batch_id, column_ids = _store_batch(connection, reading, packed if within is None else None, place, options)
         for start in range(0, len(table), LINES_AT_A_TIME):
             progress("storing", start, len(table))
             part = slice(start, start + LINES_AT_A_TIME)
@@ -145,7 +144,7 @@ def store_results(
     for ids in raw_parts(np.setdiff1d(lines.sample_ids, fresh_ids)):
         stale.mark(connection, ids.tolist(), stale.DERIVE)
     report.remarks = [*_laboratories(table, options.lab, place), *columns_that_disagree(table)]
-    report.stored = StoredBatch(batch_id, place.code)
+    report.stored = StoredBatch(batch_id, place.code, place.part_of or batch_id)
     return report, fresh_ids, []
 
 
@@ -164,12 +163,13 @@ def _laboratories(table: ResultTable, lab: str | None, place: Place) -> list[str
 
 def _store_batch(
     connection: Any,
-    file: str,
-    table: ResultTable,
+    reading: Reading,
     packed: Packed | None,
     place: Place,
     options: ImportOptions,
 ) -> tuple[int, np.ndarray]:
+    table = reading.results
+    assert table is not None
     batch_id = batches.insert_batch(
         connection,
         code=place.code,
@@ -178,11 +178,13 @@ def _store_batch(
         received_on=table.received_on or place.received_on,
         reported_on=table.reported_on or place.reported_on,
         part_of=place.part_of,
-        file_name=file,
+        file_name=reading.file,
         sha256=None if packed is None else packed.sha256,
         parts=() if packed is None else packed.parts(),
         imported_at=now(),
         imported_by=auditing.who(),
+        file_part=reading.part,
+        reading=None if reading.recipe is None else reading.recipe.to_json(),
     )
     column_ids = batches.insert_columns(
         connection,

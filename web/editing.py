@@ -23,7 +23,7 @@ PARTS = {
         ("What it is", ("sample_kind", "lithology", "texture", "alteration", "intrusion")),
         ("Where it comes from", ("site_code", "from_m", "to_m", "collected_on", "igsn")),
         ("What was measured on it", ("magnetic_susceptibility_si", "density_kg_m3", "pulp_available")),
-        ("If it is a control", ("duplicate_of", "reference_material")),
+        ("If it is a control", ("duplicate_of", "duplicate_stage", "reference_material")),
         (
             "Coordinates of its own (blank: placed by its site)",
             ("easting", "northing", "epsg", "elevation_m", "longitude", "latitude"),
@@ -53,6 +53,7 @@ LABELS = {
     "sample_kind": "Kind", "site_kind": "Kind", "site_code": "Site", "from_m": "From", "to_m": "To",
     "collected_on": "Collected on", "igsn": "IGSN", "magnetic_susceptibility_si": "Magnetic susceptibility",
     "density_kg_m3": "Density", "pulp_available": "Pulp kept", "duplicate_of": "Duplicate of",
+    "duplicate_stage": "What was split for it",
     "reference_material": "Reference material", "epsg": "EPSG code of the system", "elevation_m": "Elevation",
     "depth_m": "Length of the hole", "azimuth_reference": "Azimuths from north", "half_width_m": "Half-width",
     "volume_km3": "Volume", "depth_to_top_m": "Depth to top", "mapped": "Outline mapped or cored", "age_ma": "Age",

@@ -35,12 +35,24 @@ _WORDS = {
     "float": "boulder|float boulder",
     "reference_material": "crm|standard|std|reference material|srm|reference|certified reference material",
     "blank": "blk|bl|blank sample",
-    "duplicate": "dup|field duplicate|repeat|duplicate sample",
+    "duplicate": "dup|repeat|duplicate sample|field duplicate|field dup|core duplicate|quarter core duplicate"
+    "|crush duplicate|crush dup|coarse duplicate|coarse reject duplicate|reject duplicate|prep duplicate"
+    "|pulp duplicate|pulp dup|lab duplicate|laboratory duplicate|lab repeat",
+    "field": "core|quarter core|field duplicate", "crush": "crushed|coarse|coarse reject|reject|prep|crush duplicate",
+    "pulp": "pulps|pulp duplicate", "lab": "laboratory|repeat|lab repeat",
     "unknown": "not known|unspecified",
     "sphere": "spherical|stock|ball", "slab": "sheet|sill|dyke|dike|tabular|laccolith",
     "cylinder": "pipe|plug|cylindrical",
     "true": "true north|tn|t|geographic", "grid": "grid north|gn|g|utm", "magnetic": "magnetic north|mn|mag|m",
 }  # fmt: skip
+
+
+def stage_in(text: str) -> str | None:
+    """The stage of a duplicate that its kind names: ``pulp duplicate`` -> ``pulp``; None where it names none."""
+    words = re.sub(r"[\s_-]+", " ", text).strip().casefold()
+    found = re.fullmatch(r"(.+?) (?:duplicate|dup|repeat)", words)
+    stage = word(found[1], ("field", "crush", "pulp", "lab")) if found else None
+    return stage if word(text, ("duplicate",)) else None
 
 
 def unit_factor(field_name: str, unit: str) -> float | None:

@@ -111,6 +111,7 @@ FIELDS: dict[str, tuple[Field, ...]] = {
         _field("igsn", TEXT, "igsn number"),
         _field("collected_on", DATE, "collected, date, date collected, sample date, sampling date, collection date"),
         _field("duplicate_of", TEXT, "duplicate, dup of, parent sample, original sample, parent"),
+        _field("duplicate_stage", WORD, "duplicate type, stage of duplicate, stage", words="field crush pulp lab"),
         _field("reference_material", TEXT, "crm, standard, standard id, reference, reference standard, srm"),
         _field("magnetic_susceptibility_si", NUMBER, "magnetic susceptibility, susceptibility, mag sus, magsus, k si,"
                "susceptibility si", -0.01, 20),

@@ -67,6 +67,9 @@ def read_master(
         table[name] = _column(by_name[name], headings[at], cells, lines, decimal, factor, findings, understood)
         if headings[at] != name:
             understood.append(f"column '{headings[at]}' is {name}")
+    if kind == "samples" and "sample_kind" in positions:
+        at = positions["sample_kind"]
+        _take_stages(table, order, [row[at] if at < len(row) else "" for row in rows], headings[at], understood)
     ignored = tuple(heading for at, heading in enumerate(headings) if at not in used and heading)
     if ignored:
         understood.append("columns not read: " + ", ".join(f"'{heading}'" for heading in ignored))
@@ -87,6 +90,20 @@ def read_master(
     )
     understood.append(f"{len(rows)} rows of {kind}")
     return MasterTable(kind, tuple(order), table, lines, ignored)
+
+
+def _take_stages(
+    table: dict[str, list[Any]], order: list[str], cells: list[str], heading: str, understood: list[str]
+) -> None:
+    """Stages of duplicates that the kind names (``pulp duplicate``), where no column of their own says them."""
+    named = [fields.stage_in(cell) for cell in cells]
+    if not any(named):
+        return
+    said = table.get("duplicate_stage", [None] * len(named))
+    table["duplicate_stage"] = [one or other for one, other in zip(said, named, strict=True)]
+    if "duplicate_stage" not in order:
+        order.append("duplicate_stage")
+    understood.append(f"column '{heading}' says the stage of {sum(map(bool, named))} duplicates")
 
 
 def _has_required(kind: str, positions: dict[str, int], headings: list[str], findings: Findings) -> bool:

@@ -30,9 +30,12 @@ def insert_batch(
     imported_by: str | None = None,
     file_name: str | None = None,
     part_of: int | None = None,
+    file_part: str | None = None,
+    reading: str | None = None,
 ) -> int:
     """Insert an active batch; its id. ``data`` are the file's bytes, kept compressed; their hash is computed here.
 
+    ``file_part`` is the sheet or member of the file it was read from, ``reading`` how, as a recipe's JSON.
     ``parts``: the pieces of the compressed bytes, where they were compressed beforehand; then ``sha256`` is enough.
     """
     if data is not None:
@@ -54,6 +57,8 @@ def insert_batch(
             sha256=sha256,
             state="active",
             part_of=part_of,
+            file_part=file_part,
+            reading=reading,
         )
     )
     batch_id = int(inserted.inserted_primary_key[0])  # type: ignore[index]
@@ -113,13 +118,26 @@ def set_state(connection: sa.Connection, batch_id: int, state: str) -> list[str]
     batch = find_by_id(connection, batch_id)
     if batch is None:
         raise NotFound(f"there is no batch with the id {batch_id}")
-    together = sa.and_(_batch.c.part_of == batch_id, _batch.c.state == batch["state"], _batch.c.superseded_by.is_(None))
+    belongs = sa.or_(_batch.c.part_of == batch_id, _batch.c.batch_id.in_(further_tables(connection, batch_id)))
+    together = sa.and_(belongs, _batch.c.state == batch["state"], _batch.c.superseded_by.is_(None))
     parts = list(connection.scalars(sa.select(_batch.c.code).where(together).order_by(_batch.c.batch_id)))
     whole = sa.or_(_batch.c.batch_id == batch_id, together)
     connection.execute(sa.update(_batch).where(whole).values(state=state))
     if state == "active":
         _put_before(connection, batch_id)
     return parts
+
+
+def further_tables(connection: sa.Connection, batch_id: int) -> list[int]:
+    """The ids of the batches that are further tables (sheets, members) of the file of a batch: stored after it."""
+    ids = (_batch.c.batch_id, sa.func.coalesce(_batch.c.part_of, _batch.c.batch_id), _batch.c.sha256)
+    rows = connection.execute(sa.select(*ids).where(_batch.c.batch_id >= batch_id).order_by(_batch.c.batch_id)).all()
+    found: list[int] = []
+    for other, whole, sha256 in rows[1:]:
+        if sha256 is not None or whole != rows[0][1]:
+            break
+        found.append(other)
+    return found
 
 
 def supersede(connection: sa.Connection, batch_id: int, successor_id: int) -> None:

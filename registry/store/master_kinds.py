@@ -40,6 +40,8 @@ def _same(names: str, **renamed: str) -> dict[str, str]:
 
 _AREA = Reference("area", "area_id", "area", "name", "area")
 _SITE = Reference("site_code", "site_id", "site", "code", "site")
+#: What was split to make a duplicate.
+DUPLICATE_STAGES = ("field", "crush", "pulp", "lab")
 SAMPLE_KINDS = ("core", "chips", "outcrop", "float", "unknown", "reference_material", "blank", "duplicate")
 
 MASTER_KINDS = {
@@ -97,7 +99,7 @@ MASTER_KINDS = {
         "sample",
         ("code",),
         _same(
-            "from_m to_m lithology texture alteration igsn collected_on reference_material "
+            "from_m to_m lithology texture alteration igsn collected_on duplicate_stage reference_material "
             "magnetic_susceptibility_si density_kg_m3 pulp_available easting northing elevation_m epsg longitude "
             "latitude",
             sample_code="code",
@@ -108,7 +110,7 @@ MASTER_KINDS = {
             Reference("intrusion", "intrusion_id", "intrusion", "name", "intrusion"),
             Reference("duplicate_of", "duplicate_of", "sample", "code", "sample"),
         ),
-        {"sample_kind": SAMPLE_KINDS},
+        {"sample_kind": SAMPLE_KINDS, "duplicate_stage": DUPLICATE_STAGES},
         {"kind": "unknown"},
     ),
 }

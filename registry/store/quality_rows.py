@@ -32,6 +32,7 @@ class StoredLine:
     kind: str
     reference_material: str | None
     duplicate_of: int | None
+    duplicate_stage: str | None
 
 
 @dataclass(frozen=True)
@@ -50,7 +51,8 @@ def control_lines(connection: sa.Connection, batch_id: int) -> list[StoredLine]:
     rows = raw_rows.select(
         connection,
         "SELECT a.aliquot_id, a.line_no, a.repeat_no, a.control_text, s.sample_id, s.code, s.kind, "
-        "s.reference_material, s.duplicate_of FROM aliquot AS a JOIN sample AS s ON s.sample_id = a.sample_id "
+        "s.reference_material, s.duplicate_of, s.duplicate_stage FROM aliquot AS a "
+        "JOIN sample AS s ON s.sample_id = a.sample_id "
         f"WHERE a.batch_id {{ids}} AND (s.kind IN ({_KINDS}) OR a.repeat_no > 0 OR a.control_text IS NOT NULL) "
         "ORDER BY a.line_no, a.aliquot_id",
         [batch_id],
@@ -271,11 +273,12 @@ def history(connection: sa.Connection, materials: Sequence[str] | None = None) -
 def pairs(connection: sa.Connection) -> list[tuple[Any, ...]]:
     """Pairs of duplicates and repeats in active batches.
 
-    Each is (analyte, unit, digestion, lab, kind, code of the duplicate, what the certificate says of its line,
-    original, duplicate).
+    Each is (analyte, unit, digestion, lab, kind, code of the duplicate, its stage as the sample list says it, what the
+    certificate says of its line, original, duplicate).
     """
     rows = connection.exec_driver_sql(
-        "SELECT c.analyte, c.unit, c.digestion, h.lab, o.kind, s.code, a.control_text, o.expected, o.found "
+        "SELECT c.analyte, c.unit, c.digestion, h.lab, o.kind, s.code, s.duplicate_stage, a.control_text, "
+        "o.expected, o.found "
         "FROM control_outcome AS o JOIN batch AS h ON h.batch_id = o.batch_id AND h.state = 'active' "
         "JOIN batch_column AS c ON c.batch_column_id = o.column_id JOIN aliquot AS a ON a.aliquot_id = o.aliquot_id "
         "JOIN sample AS s ON s.sample_id = a.sample_id "

@@ -106,7 +106,7 @@ RULES = (
         "p.sample_id = {row}.sample_id",
         1,
         _watched(
-            "kind site_id intrusion_id lithology texture alteration duplicate_of reference_material "
+            "kind site_id intrusion_id lithology texture alteration duplicate_of duplicate_stage reference_material "
             "magnetic_susceptibility_si density_kg_m3"
         ),
         ("INSERT", "UPDATE"),

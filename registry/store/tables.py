@@ -170,6 +170,7 @@ sample = table(
     *numbers("longitude latitude"),
     sa.Column("position_basis", Words),
     row_version(),
+    sa.Column("duplicate_stage", Words),
     one_of("kind", "core", "chips", "outcrop", "float", "unknown", "reference_material", "blank", "duplicate"),
     sa.CheckConstraint("from_m <= to_m", name="from_m"),
     sa.CheckConstraint("pulp_available BETWEEN 0 AND 1", name="pulp_available"),
@@ -188,6 +189,7 @@ batch = table(
     sa.Column("state", Words, nullable=False, server_default="active"),
     link("superseded_by", "batch.batch_id", ondelete="SET NULL"),
     link("part_of", "batch.batch_id", ondelete="SET NULL"),
+    *words("file_part reading"),
     one_of("state", "active", "superseded", "withdrawn"),
 )
 sa.Index(None, batch.c.certificate)

@@ -245,3 +245,23 @@ def test_controls_in_a_file_of_their_own_judge_the_rocks_of_the_certificate(
     if rocks_first:  # else the rocks, a part of the checks' batch, go with it
         assert sheet(any_registry, marked) == []
         assert sheet(any_registry, ZR) == [("R1", 120.0), ("R2", 130.0)]
+
+
+@pytest.mark.parametrize(
+    "listed",
+    [
+        "sample_code,sample_kind,duplicate_of\nR1,core,\nD1,pulp duplicate,R1\nD2,Field Duplicate,R1\nD3,dup,R1\n",
+        "sample_code,sample_kind,duplicate_of,stage\nR1,core,,\nD1,dup,R1,pulp\nD2,dup,R1,field\nD3,dup,R1,\n",
+    ],
+)
+def test_sample_list_declares_the_stage_of_a_duplicate(any_registry: Registry, tmp_path: Path, listed: str) -> None:
+    """148 beside 120, no limit known: 28/(k 134) is 4.2 at k 0.05 of a pulp, 1.4 in the field; 3.64 is kept."""
+    text = "Sample,Zr fusion (ppm)\nR1,120\nD1,148\nD2,148\nD3,148\n"
+    bring(any_registry, tmp_path, {"samples.csv": listed, "K1.csv": text})
+    assert [(row[0], row[4]) for row in sheet(any_registry, SHEET)] == [
+        ("D1", "warned"), ("D2", "passed"), ("D3", "passed"),
+    ]  # fmt: skip
+    with writing(any_registry) as connection:
+        connection.exec_driver_sql("UPDATE sample SET duplicate_stage = 'pulp' WHERE code = 'D2'")
+    refresh_registry(any_registry)
+    assert sheet(any_registry, SHEET)[1][4] == "warned"

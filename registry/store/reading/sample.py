@@ -41,8 +41,14 @@ def reported_places(connection: Connection, sample_id: int) -> list[dict[str, An
         """
         SELECT batch.batch_id, batch.code AS batch, batch.state, batch.file_name, aliquot.line_no,
             batch_column.position, batch_column.header, batch_column.analyte, batch_column.unit, result.value,
-            result.qualifier
+            result.qualifier, batch.file_part, batch.reading,
+            kept.batch_id AS file_batch_id, kept.code AS file_batch
         FROM aliquot JOIN batch ON batch.batch_id = aliquot.batch_id
+        JOIN batch AS kept ON kept.batch_id = CASE WHEN batch.sha256 IS NOT NULL OR batch.part_of IS NULL
+            THEN batch.batch_id ELSE
+                (SELECT max(holder.batch_id) FROM batch AS holder
+                WHERE holder.batch_id < batch.batch_id AND holder.sha256 IS NOT NULL
+                AND coalesce(holder.part_of, holder.batch_id) = batch.part_of) END
         JOIN result ON result.aliquot_id = aliquot.aliquot_id
         JOIN batch_column ON batch_column.batch_column_id = result.column_id
         WHERE aliquot.sample_id = :sample_id
@@ -59,7 +65,8 @@ def find_sample(connection: Connection, code: str) -> dict[str, Any] | None:
         """
         SELECT sample.sample_id, sample.code, sample.kind, sample.from_m, sample.to_m, sample.lithology,
             sample.texture, sample.alteration, sample.igsn, sample.collected_on, sample.reference_material,
-            sample.magnetic_susceptibility_si, sample.density_kg_m3, sample.pulp_available, sample.longitude,
+            sample.magnetic_susceptibility_si, sample.density_kg_m3, sample.pulp_available, sample.duplicate_stage,
+            sample.longitude,
             sample.latitude, sample.position_basis, site.code AS site_code, site.kind AS site_kind,
             area.name AS area, intrusion.name AS intrusion, original.code AS duplicate_of,
             CASE WHEN stale.sample_id IS NULL THEN 0 ELSE 1 END AS is_stale, derived.method_version,
