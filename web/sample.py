@@ -144,6 +144,7 @@ def _facts(found: Mapping[str, Any]) -> list[tuple[str, str, str]]:
         ("Pulp kept", {1: "yes", 0: "no"}.get(found["pulp_available"], ""), ""),
         ("Reference material", found["reference_material"], ""),
         ("Duplicate of", found["duplicate_of"], _sample_address(found["duplicate_of"])),
+        ("Split for it", found["duplicate_stage"], ""),
     ]
     return [(label, str(words), address) for label, words, address in entries if words]
 
