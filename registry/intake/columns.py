@@ -3,9 +3,11 @@
 from __future__ import annotations
 
 import re
+from collections.abc import Container
 from dataclasses import dataclass
 
 from registry.intake.cells import NUMBER, TEXT, parse_cell
+from registry.intake.findings import Findings
 from registry.intake.methods import digestion_in, may_be_method
 from registry.intake.names import Heading, read_heading
 from registry.intake.units import canonical_unit, spelt_like_a_unit, split_unit
@@ -21,6 +23,8 @@ UNIT, METHOD, LOWER, UPPER, ANALYTE, LABELS = (
 )
 
 
+#: Of a result that was computed from another.
+_RECALCULATED = re.compile(r"(?i)\b(norm(ali[sz]ed)?|recalc\w*|anhydrous|(volatile|water)[- ]?free)\b")
 #: Both limits in one cell: ``0.01 - 100``.
 RANGE = re.compile(r"\s*(?P<low>\d[\d.,]*)\s*(?:-|\u2013|\u2014|to)\s*(?P<high>\d[\d.,]*)\s*")
 
@@ -37,6 +41,29 @@ class AnalyteColumn:
     lower: float | None = None
     upper: float | None = None
     foreign_unit: str | None = None
+
+
+def measured(columns: list[AnalyteColumn], said: Container[str], findings: Findings) -> list[AnalyteColumn]:
+    """The columns without those recalculated (anhydrous, normalised) beside the measured one, with a remark each.
+
+    Of an analyte that stands in a recalculated column only, it is kept; so is a heading that is ``said`` by the user.
+    """
+
+    def is_recalculated(column: AnalyteColumn) -> bool:
+        return bool(column.method and _RECALCULATED.search(column.method))
+
+    known = {column.heading.analyte for column in columns if not is_recalculated(column)}
+    kept = []
+    for column in columns:
+        if is_recalculated(column) and column.heading.analyte in known and column.header not in said:
+            findings.warn(
+                "a recalculated column beside the measured one is not read", column=column.header,
+                found=column.method, expected="what was measured",
+                remedy="nothing to do; if it is the measured one, say so with --column",
+            )  # fmt: skip
+        else:
+            kept.append(column)
+    return kept
 
 
 def take(column: AnalyteColumn, role: str, text: str) -> None:

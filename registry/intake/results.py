@@ -11,10 +11,11 @@ from registry.intake.arrangement import arrange
 from registry.intake.cells import decimal_sign
 from registry.intake.checks import check_units, check_values
 from registry.intake.codes import LONGEST_CODE, CodeColumn, choose_code_column, tidy_codes, unfit_codes
+from registry.intake.columns import measured
 from registry.intake.corrections import column_keys, corrected, listed, take_in
 from registry.intake.findings import Findings
 from registry.intake.layout import WideLayout
-from registry.intake.names import analyte_symbol
+from registry.intake.names import analyte_symbol, read_heading
 from registry.intake.qualifiers import qualifier_columns
 from registry.intake.readings import ReadingOptions, ResultColumn, ResultTable
 from registry.intake.recipes import ColumnChoice, Recipe
@@ -59,7 +60,8 @@ def read_results(
             remedy="give the column of sample codes a heading, or name it with --column",
         )  # fmt: skip
         return Understanding(None, Recipe(shape=layout.shape))
-    layout.columns = [column for column in layout.columns if column.position != layout.code.position]
+    beside = [column for column in layout.columns if column.position != layout.code.position]
+    layout.columns = measured(beside, recipe.columns, findings)
     taken = {column.position for column in layout.columns}
     _say_layout(layout, preview_lines.tolist(), understood)
     titles = read_titles(layout.titles)
@@ -222,7 +224,8 @@ def _say_ignored(
             continue
         rest, unit = split_unit(label)
         weighed = re.search(r"(?i)[(\[]\s*(k?g|lbs?)\s*[)\]]", label)  # "Recvd Wt. (kg)" is no unknown analyte
-        if unit is not None and place not in analytes and not weighed and re.search(r"[A-Z]", rest) and len(rest) < 20:
+        known = place in analytes or weighed or read_heading(label).analyte is not None
+        if unit is not None and not known and re.search(r"[A-Z]", rest) and len(rest) < 20:
             findings.warn(
                 "the heading names no analyte that the register knows; the column is ignored", column=label,
                 found=rest, expected="an oxide or element, or a total",

@@ -276,3 +276,14 @@ def test_list_of_analytes_above_the_headings_is_a_title(title):
 def test_statistics_below_the_data_are_no_samples(code):
     reading = read(f"Sample,SiO2 (%),Zr (ppm)\nS1,60,100\nS2,61,110\n{code},1.1,2.2\n")
     assert reading.results.sample_codes == ["S1", "S2"]
+
+
+@pytest.mark.parametrize(
+    "heading", ["SiO2 norm (%)", "SiO2 anhydrous (wt%)", "SiO2 recalc. (%)", "SiO2 (%) volatile-free"]
+)
+def test_recalculated_column_beside_the_measured_one_is_not_read(heading):
+    reading = read(f"Sample,SiO2 (%),{heading},Zr (ppm)\nS1,60,61.5,100\n")
+    assert results(reading) == {("S1", "SiO2", "wt%"): "60", ("S1", "Zr", "ppm"): "100"}
+    assert len(remarks(reading)) == 1
+    assert "recalculated" in remarks(reading)[0]
+    assert read(f"Sample,{heading},Zr (ppm)\nS1,61.5,100\n").results.columns[0].header == heading
