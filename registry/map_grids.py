@@ -163,8 +163,8 @@ def _suitable(longitude: Floats, latitude: Floats, middle: tuple[float, float, f
     return Grid(
         f"equal-area_{lat}_{lon}",
         f"Lambert azimuthal equal-area projection about {said} (WGS 84), from where eastings and northings count",
-        f"an equal-area projection about the middle, because {because} and no UTM zone holds all of it; lengths are "
-        "true in the middle and less so towards the edges",
+        f"chosen because {because} and no UTM zone holds all of it; lengths are true in the middle and less so towards "
+        "the edges",
         f"+proj=laea +lat_0={lat} +lon_0={lon} +x_0=0 +y_0=0 +datum=WGS84 +units=m +no_defs",
     )
 

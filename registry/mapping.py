@@ -179,7 +179,11 @@ class Classes:
     number: Numbers
     ends: list[tuple[float, float]]
     counts: list[int]
-    edges: Floats
+
+    def among(self, rows: Sequence[int]) -> Classes:
+        """The same classes for some of the samples alone."""
+        number = self.number[rows]
+        return Classes(number, self.ends, [int(np.count_nonzero(number == place)) for place in range(len(self.ends))])
 
 
 def classes_of(values: Floats) -> Classes:
@@ -187,13 +191,13 @@ def classes_of(values: Floats) -> Classes:
     there = np.isfinite(values)
     number = np.full(len(values), -1, dtype=np.intp)
     if not there.any():
-        return Classes(number, [], [], np.empty(0))
+        return Classes(number, [], [])
     edges = np.unique(np.quantile(values[there], np.linspace(0.0, 1.0, MOST_CLASSES + 1), method="lower"))
     raw = np.searchsorted(edges, values[there], side="right") - 1
     raw = np.minimum(raw, max(len(edges) - 2, 0))
     used, number[there] = np.unique(raw, return_inverse=True)
     members = [values[number == place] for place in range(len(used))]
-    return Classes(number, [(float(m.min()), float(m.max())) for m in members], [len(m) for m in members], edges)
+    return Classes(number, [(float(m.min()), float(m.max())) for m in members], [len(m) for m in members])
 
 
 def classes_in_cells(

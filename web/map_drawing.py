@@ -19,8 +19,8 @@ from web.numbers import MINUS, derived, grouped
 
 #: Widths of the frame for which labels are laid out, px; those that fit the first alone are not shown on the second.
 WIDTHS_PX = {"wide": (800, 330), "square": (700, 330), "tall": (600, 330)}
-LETTER_PX, LINE_PX = 7.9, 14.0
-#: Sides of the symbols of a number's classes from the first to the last, px: more is larger as well as darker.
+LETTER_PX, LINE_PX = 8.5, 14.0
+#: Sides of the symbols of a number's classes from the first to the last, px: more is larger, too.
 LEAST_RADIUS, MOST_RADIUS = 3.2, 6.2
 SHADES = 7
 MOST_LABELS, MOST_TRIED = 150, 1500

@@ -112,7 +112,7 @@ def _placed(
     nothing = NOTHING_WORDS.get(choice.by, "not judged")
     if choice.number:
         values = mapping.numbers_of([rows[n][reading.VALUE] for n in inside])
-        classes = mapping.classes_of(values)
+        classes = mapping.classes_of(mapping.numbers_of([row[reading.VALUE] for row in rows])).among(inside)
         unit = wording.unit_words(choice.number.unit)
         without = int((classes.number < 0).sum())
         entries: list[Any] = drawing.class_entries(classes, choice.number.unit, without)

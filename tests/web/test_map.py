@@ -249,6 +249,10 @@ def test_number_is_drawn_in_classes_with_its_unit(client: FlaskClient) -> None:
     assert sum(counts) == 84
     assert re.search(r'id="s-c\d" class="s-v6"', page)
     assert "Sr 620\xa0ppm" in unescape(page)
+    part = get(client, "/map?number=sr_ppm&kind=core&grid=32633&x_from=500000&x_to=500030&y_from=6099990&y_to=6100010")
+    classes = r"</svg>([\d.]+(?: to [\d.]+)?) <span"
+    assert len(re.findall(classes, page)) >= 2
+    assert re.findall(classes, part) == re.findall(classes, page)  # the same colours mean the same in every part
     assert ">by=" not in page
 
 
