@@ -47,11 +47,13 @@ def drawn_map(connection: Any, asked: Filter, choice: MapChoice, fixed: Sequence
     every_site = remembered("sites of the map", lambda: reading.map_sites(connection))
     sites = _sites_shown(every_site, asked, used)
     found: dict[str, Any] = {"total": len(every), "some_sites": bool(sites), "left_out": []}
-    if len(every) > len(rows):
-        count = len(every) - len(rows)
-        found["left_out"].append({"count": count, "words": "controls of the laboratory (blanks, reference materials, "
-                                  "duplicates), which have no place" if count > 1 else "control of the laboratory, "
-                                  "which has no place"})  # fmt: skip
+    if count := len(every) - len(rows):
+        kinds = [("kind", kind) for kind in reading.CONTROL_KINDS]
+        words = "control of the laboratory" if count == 1 else "controls of the laboratory"
+        found["left_out"].append({
+            "count": count, "words": f"{words} (blanks, reference materials, duplicates)", "link": "show them alone",
+            "address": address([*asked.arguments(), *kinds, *choice.pairs()], "map.page"),
+        })  # fmt: skip
     places = places_of([row[reading.EASTING : reading.BASIS] for row in rows])
     at_sites = places_of(
         [[site[name] for name in ("easting", "northing", "epsg", "longitude", "latitude")] for site in sites]

@@ -159,7 +159,7 @@ def test_samples_without_coordinates_are_counted_and_linked(client: FlaskClient)
     assert "2 samples without coordinates" in page
     assert 'href="/samples/no%20results/1">no results/1</a>' in page
     assert HOSTILE not in page
-    assert "6 controls of the laboratory (blanks, reference materials, duplicates), which have no place" in page
+    assert "6 controls of the laboratory (blanks, reference materials, duplicates)" in page
     assert "114 of 122 samples and 2 sites shown" in page
 
 
@@ -394,3 +394,12 @@ def test_caution_stands_beside_the_map(client: FlaskClient) -> None:
     page = get(client, "/map")
     assert "a licensed surveyor sets out the collar" in page
     assert 'href="/map" aria-current="page">Map</a>' in page
+
+
+def test_controls_alone_are_said_to_have_no_place(client: FlaskClient) -> None:
+    page = get(client, "/map")
+    link = re.search(r'<a href="([^"]+)">show them alone</a>', page)
+    assert link is not None
+    alone = get(client, unescape(link[1]))
+    assert "None of this has coordinates yet" in alone
+    assert "6 samples without coordinates" in alone
