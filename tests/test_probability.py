@@ -313,3 +313,27 @@ def test_control_samples_have_no_probability(demo: Registry) -> None:
         shares = shares_of(inputs_of(connection, ids, rules), rules)
     assert len(ids) == 5 and np.isnan(shares).all()
     assert draws_of(rules.conventions) == 200
+
+
+def test_probability_is_set_back_when_the_controls_of_its_batch_show_another_precision(
+    any_registry: Registry, tmp_path: Path
+) -> None:
+    """A result of a reference material corrected by SQL touches no other sample's verdict, but its error."""
+    one_target(any_registry, 50)
+    (tmp_path / "samples.csv").write_text(
+        "sample_code,sample_kind,lithology,reference_material\nT1,core,granite,\nC1,reference_material,,XM-1\n"
+        "C2,reference_material,,XM-1\n"
+    )
+    (tmp_path / "materials.csv").write_text(
+        "reference_material,analyte,value,unit,uncertainty,status,source\nXM-1,Sn,100,ppm,10,certified,invented\n"
+    )
+    (tmp_path / "K1.csv").write_text(f"Sample,{MAJORS},Sn fusion (ppm)\nT1,{ROCK},120\nC1,{ROCK},98\nC2,{ROCK},104\n")
+    import_files(any_registry, [tmp_path / name for name in ("samples.csv", "materials.csv", "K1.csv")])
+    draw_probabilities(any_registry)
+    assert sheet(any_registry, "probability_state") == {"T1": "computed"}
+    refresh_registry(any_registry)
+    assert sheet(any_registry, "probability_state") == {"T1": "computed"}
+    with writing(any_registry) as connection:
+        connection.exec_driver_sql("UPDATE result SET value = 99 WHERE value = 104")
+    refresh_registry(any_registry)
+    assert sheet(any_registry, "probability, probability_state") == {"T1": (None, "not_computed")}

@@ -10,7 +10,7 @@ from typing import Any
 import numpy as np
 import sqlalchemy as sa
 
-from registry.store import raw_rows, tables
+from registry.store import raw_rows, survival_rows, tables
 from registry.store.raw_rows import cells
 from registry.store.sheets import CONTROL_KINDS
 
@@ -152,18 +152,40 @@ def replace_outcomes(connection: sa.Connection, batch_id: int, columns: dict[str
     raw_rows.insert(connection, "control_outcome", [*listed, "batch_id"], [*listed.values(), [batch_id] * n])
 
 
+#: What of the state of an analyte the error of its results follows from.
+_PRECISION = ("precision_s0", "precision_k", "bias_error_percent", "reference_results")
+
+
 def replace_states(connection: sa.Connection, batch_id: int, rows: Sequence[dict[str, Any]]) -> bool:
-    """Write the states of the analytes of a batch; whether other columns fail now than before."""
+    """Write the states of the analytes of a batch; whether other columns fail now than before.
+
+    Where they show another precision, the probabilities of the batch's verdicts are set back: they rested on it.
+    """
     table = tables.control_state
-    before = set(
-        connection.execute(
-            sa.select(table.c.column_id).where(table.c.batch_id == batch_id, table.c.state == FAILS)
-        ).scalars()
-    )
+    before = [dict(row) for row in connection.execute(_STATES, {"batch": batch_id}).mappings()]
     connection.execute(sa.delete(table).where(table.c.batch_id == batch_id))
     if rows:
         connection.execute(sa.insert(table), [{**row, "batch_id": batch_id} for row in rows])
-    return before != {row["column_id"] for row in rows if row["state"] == FAILS}
+    if before:
+        after = [dict(row) for row in connection.execute(_STATES, {"batch": batch_id}).mappings()]
+        if [_precision(row) for row in before] != [_precision(row) for row in after]:
+            survival_rows.set_back_batch(connection, batch_id)
+    return _failing(before) != _failing(rows)
+
+
+_STATES = (
+    sa.select(tables.control_state)
+    .where(tables.control_state.c.batch_id == sa.bindparam("batch"))
+    .order_by(tables.control_state.c.column_id)
+)
+
+
+def _precision(row: dict[str, Any]) -> list[Any]:
+    return [row["column_id"], *(row[name] for name in _PRECISION)]
+
+
+def _failing(rows: Sequence[dict[str, Any]]) -> set[int]:
+    return {row["column_id"] for row in rows if row["state"] == FAILS}
 
 
 def failed_columns(connection: sa.Connection, batch_id: int | None = None) -> np.ndarray:

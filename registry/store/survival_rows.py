@@ -101,3 +101,14 @@ def write_probabilities(
     if rows:
         connection.execute(statement, rows)
     return len(rows)
+
+
+def set_back_batch(connection: sa.Connection, batch_id: int) -> None:
+    """Take the probabilities of every sample of a batch away."""
+    table, aliquot = tables.verdict, tables.aliquot
+    samples = sa.select(aliquot.c.sample_id).where(aliquot.c.batch_id == batch_id)
+    connection.execute(
+        sa.update(table)
+        .where(table.c.sample_id.in_(samples), table.c.probability_state == COMPUTED)
+        .values(probability=None, probability_state=NOT_COMPUTED)
+    )
