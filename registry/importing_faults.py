@@ -69,7 +69,7 @@ class Rest:
             return []
         if reading.results is not None:
             faults = [] if within else self._of_place(connection, reading, file, options)
-            if not reading.whole_file_refused and not options.create_samples and not options.keep_going:
+            if not options.create_samples and not options.keep_going:
                 faults += self._of_codes(connection, reading, options.code_prefix)
             return faults
         if reading.whole_file_refused:
@@ -115,10 +115,13 @@ class Rest:
         assert reading.results is not None
         if "sample" in self.anything:
             return []
-        without_lines(reading, frozenset(reading.refused_lines))
         promised = self.promised.get("sample", set())
+        told = {fault.row for fault in reading.problems if fault.column == (reading.results.sample_header or None)}
         faults = unknown_codes(connection, reading.file, reading.results, prefix)
-        return first_of((fault for fault in faults if fault.found not in promised), reading.file)
+        return first_of(
+            (fault for fault in faults if fault.found not in promised and fault.found and fault.row not in told),
+            reading.file,
+        )
 
     def _of_certificates(self, connection: Any, reading: Reading) -> list[Problem]:
         without_lines(reading, frozenset(reading.refused_lines))

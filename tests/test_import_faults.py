@@ -158,6 +158,23 @@ def test_keep_going_tells_every_file_that_is_faulty_as_a_whole(sqlite_registry: 
     assert not list(tmp_path.glob("*.refused*"))
 
 
+@pytest.mark.parametrize("heading", ["Zr (ppm)", "Zr (furlong)"])
+def test_unknown_codes_are_told_beside_the_faulty_cells_and_columns_of_the_same_lines(
+    sqlite_registry: Registry, tmp_path: Path, heading: str
+) -> None:
+    (tmp_path / "samples.csv").write_text("sample_code,sample_kind\nK-1,core\n")
+    import_files(sqlite_registry, [tmp_path / "samples.csv"])
+    (tmp_path / "T.csv").write_text(f"Sample,SiO2 (%),{heading}\nK-1,sixty,100\nk-1,65,x12\nX-9,60,120\n,61,130\n")
+    with pytest.raises(InputProblems, match="not in the registry") as raised:
+        import_files(sqlite_registry, [tmp_path / "T.csv"])
+    told = {(problem.row, problem.column) for problem in raised.value.problems if problem.severity == "problem"}
+    expected = {(2, "SiO2 (%)"), (3, "Sample"), (4, "Sample"), (5, "Sample")}
+    assert told >= expected
+    assert told - expected == {(3, heading)} if heading == "Zr (ppm)" else {(None, heading)}
+    codes = [problem for problem in raised.value.problems if "not in the registry" in problem.what]
+    assert [problem.found for problem in codes] == ["k-1", "X-9"]
+
+
 def test_dry_run_with_unknown_codes_tells_what_was_understood_and_counts_the_codes(
     sqlite_registry: Registry, tmp_path: Path, capsys: pytest.CaptureFixture[str]
 ) -> None:

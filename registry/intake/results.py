@@ -95,6 +95,7 @@ def read_results(
         columns, decimal, findings, code_position=layout.code.position, control_position=control,
         qualifier_positions=qualifier_positions,
         width=layout.width, negative_means_below=below, thousands=thousands,
+        code_heading=layout.labels[layout.code.position],
     )  # fmt: skip
     in_headings = sum(cell.count("_") for row in preview[: layout.first_row] for cell in row)
     watch = arranged.underscores and (source is not given or underscores > in_headings)

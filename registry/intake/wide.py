@@ -64,9 +64,11 @@ class WideReader:
         width: int,
         negative_means_below: bool = False,
         thousands: str | None = None,
+        code_heading: str = "",
     ) -> None:
         self.columns, self.findings, self.decimal = columns, findings, decimal
         self.code_position, self.control_position = code_position, control_position
+        self.code_heading = code_heading or "sample code"
         self.qualifier_positions = qualifier_positions or {}
         self.negative_means_below, self.width = negative_means_below, width
         self.block = BlockReader([column.position for column in columns], decimal, thousands)
@@ -193,7 +195,7 @@ class WideReader:
                 self.passed_over.append(f"row {line} ('{said[:40]}') has no sample code and is a note or a summary")
                 return False
             self.findings.add(
-                "results without a sample code", row=line, column="sample code", found="",
+                "results without a sample code", row=line, column=self.code_heading, found="",
                 expected="a sample code", remedy="write the code, or delete the row if it is no sample",
             )  # fmt: skip
             return False
