@@ -9,10 +9,11 @@ from __future__ import annotations
 
 import os
 import pickle
+import signal
 import subprocess
 import sys
 from collections import deque
-from collections.abc import Iterable, Iterator, Sequence
+from collections.abc import Callable, Iterable, Iterator, Sequence
 from concurrent.futures import Future, ThreadPoolExecutor
 from contextlib import contextmanager, suppress
 from types import TracebackType
@@ -31,14 +32,16 @@ CHILDS_CHUNK_SIZE = CHUNK_SIZE // 4
 AHEAD = 2
 
 
+#: Argument of a child that runs functions.
+_FUNCTIONS = "functions"
 #: Children that are started and wait for their rules.
 _SPARE: deque[subprocess.Popen[bytes]] = deque(maxlen=1)
 
 
-def _start() -> subprocess.Popen[bytes]:
+def _start(*arguments: str) -> subprocess.Popen[bytes]:
     path = os.pathsep.join(entry for entry in sys.path if entry)
     return subprocess.Popen(
-        [sys.executable, "-m", "registry.computing"],
+        [sys.executable, "-m", "registry.computing", *arguments],
         stdin=subprocess.PIPE,
         stdout=subprocess.PIPE,
         env={**os.environ, "PYTHONPATH": path},
@@ -140,6 +143,57 @@ class Computations:
         return answer
 
 
+class Helpers:
+    """Child processes that run functions of the project beside this one; ``with Helpers(count) as helpers:``."""
+
+    def __init__(self, count: int) -> None:
+        self.count = count
+        self.children: list[subprocess.Popen[bytes]] = []
+        self._pool: ThreadPoolExecutor | None = None
+
+    def __enter__(self) -> Helpers:
+        if self.count:
+            self.children = [_start(_FUNCTIONS) for _ in range(self.count)]
+            self._pool = ThreadPoolExecutor(self.count)
+        return self
+
+    def __exit__(
+        self, kind: type[BaseException] | None, error: BaseException | None, trace: TracebackType | None
+    ) -> None:
+        for child in self.children:
+            if kind is not None:
+                child.kill()
+        if self._pool is not None:
+            self._pool.shutdown(wait=True, cancel_futures=True)
+        for child in self.children:
+            _end(child)
+
+    def share(self, function: Callable[..., Any], tasks: Sequence[tuple[Any, ...]]) -> list[Any]:
+        """``function(*task)`` for each task, at most one more than there are children; the last is done here.
+
+        Function, tasks and answers must pickle. What a child raises is raised here.
+        """
+        *given, own = tasks
+        assert len(given) <= self.count
+        futures = []
+        if self._pool is not None:
+            pairs = zip(self.children, given, strict=False)
+            futures = [self._pool.submit(_asked, child, (function, task)) for child, task in pairs]
+        here = function(*own)
+        answers = [future.result() for future in futures]
+        for answer in answers:
+            if isinstance(answer, Exception):
+                raise answer
+        return [*answers, here]
+
+
+def _asked(child: subprocess.Popen[bytes], message: Any) -> Any:
+    assert child.stdin is not None and child.stdout is not None
+    pickle.dump(message, child.stdin, pickle.HIGHEST_PROTOCOL)
+    child.stdin.flush()
+    return pickle.load(child.stdout)
+
+
 def _answer(chunk: Chunk, rules: Rules, tables: Sequence[str]) -> Computed | bytes:
     computed = compute(chunk, rules.definitions, rules.conventions)
     if not tables:
@@ -165,5 +219,22 @@ def _serve(requests: BinaryIO, answers: BinaryIO) -> None:
         return
 
 
+def _serve_functions(requests: BinaryIO, answers: BinaryIO) -> None:
+    """The child of ``Helpers``: functions with their arguments until the parent closes the pipe."""
+    signal.signal(signal.SIGINT, signal.SIG_IGN)  # the parent is interrupted, and ends it
+    try:
+        while True:
+            function, task = pickle.load(requests)
+            try:
+                answer: Any = function(*task)
+            except Exception as error:  # handed to the parent, which raises it
+                answer = error
+            pickle.dump(answer, answers, pickle.HIGHEST_PROTOCOL)
+            answers.flush()
+    except EOFError:
+        return
+
+
 if __name__ == "__main__":
-    _serve(sys.stdin.buffer, sys.stdout.buffer)
+    serve = _serve_functions if sys.argv[1:] == [_FUNCTIONS] else _serve
+    serve(sys.stdin.buffer, sys.stdout.buffer)

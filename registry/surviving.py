@@ -9,7 +9,9 @@ log), the bias of the batch, which result was chosen for a column. The error mod
 from __future__ import annotations
 
 import hashlib
+import itertools
 import json
+import os
 from collections.abc import Callable, Sequence
 from dataclasses import dataclass
 from typing import Any
@@ -17,6 +19,7 @@ from typing import Any
 import numpy as np
 
 from registry.choice import TracedChoice, trace_choice
+from registry.computing import Helpers
 from registry.controlling import held_columns
 from registry.errors import PlutonbookError, UsageError
 from registry.judging import Rules, read_rules
@@ -33,6 +36,9 @@ from registry.store.verdict_rows import NO_VERDICT
 
 #: Draws judged between two commits: some seconds of work are lost to an interruption.
 DRAWS_A_COMMIT = 400_000
+#: Below so many draws child processes would take longer to start than they save; with more of them than this the one
+#: that reads and writes would be waited for.
+WORTH_HELPERS, MOST_PROCESSES = 400_000, 8
 #: Reference results needed before their spread is taken: that of ten is known to a quarter of itself, 1/sqrt(2 (n - 1))
 #: for normal errors (recomputed).
 NEEDED_REFERENCES = 10
@@ -45,6 +51,10 @@ class Inputs:
     chunk: Chunk
     model: ErrorModel
     stored: np.ndarray
+
+    def part(self, start: int, stop: int) -> Inputs:
+        """Those of samples start to stop."""
+        return Inputs(self.chunk.part(start, stop), self.model.part(start, stop), self.stored[:, start:stop])
 
 
 def draw_probabilities(
@@ -66,18 +76,33 @@ def draw_probabilities(
         total = survival_rows.count_waiting(connection, wanted)
     size = max(1, DRAWS_A_COMMIT // draws_of(rules.conventions))
     done = seen = last = 0
-    while True:
-        if progress is not None:
-            progress("drawing within analytical error", seen, total)
-        with reading(registry) as connection:
-            ids = survival_rows.waiting(connection, last, size, wanted)
-            if not len(ids):
-                return done
-            before = inputs_of(connection, ids, rules)
-        shares = shares_of(before, rules)
-        with writing(registry, what="writing probabilities", tell=tell) as connection:
-            done += _write(connection, before, shares, rules)
-        seen, last = seen + len(ids), int(ids[-1])
+    with Helpers(_helpers_for(total, rules.conventions)) as helpers:
+        while True:
+            if progress is not None:
+                progress("drawing within analytical error", seen, total)
+            with reading(registry) as connection:
+                ids = survival_rows.waiting(connection, last, size, wanted)
+                if not len(ids):
+                    return done
+                before = inputs_of(connection, ids, rules)
+            shares = _shared(helpers, before, rules)
+            with writing(registry, what="writing probabilities", tell=tell) as connection:
+                done += _write(connection, before, shares, rules)
+            seen, last = seen + len(ids), int(ids[-1])
+
+
+def _helpers_for(samples: int, conventions: Conventions) -> int:
+    """Child processes beside this one: a processor each, none where little is to be done."""
+    if samples * draws_of(conventions) < WORTH_HELPERS:
+        return 0
+    return max(0, min(MOST_PROCESSES, os.cpu_count() or 1) - 1)
+
+
+def _shared(helpers: Helpers, inputs: Inputs, rules: Rules) -> np.ndarray:
+    """``shares_of`` with the samples dealt out to this process and its helpers."""
+    bounds = np.linspace(0, len(inputs.chunk), helpers.count + 2).astype(int).tolist()
+    parts = [inputs.part(start, stop) for start, stop in itertools.pairwise(bounds)]
+    return np.concatenate(helpers.share(shares_of, [(part, rules) for part in parts]), axis=1)
 
 
 def draws_of(conventions: Conventions) -> int:
@@ -141,7 +166,7 @@ def shares_of(inputs: Inputs, rules: Rules) -> np.ndarray:
     seed, at_once = seed_of(rules.conventions), max(1, CHUNK_SIZE // draws)
     for start in range(0, n, at_once):
         part = slice(start, start + at_once)
-        many = _drawn(inputs, part, rules.conventions, draws, seed)
+        many = _drawn(inputs.part(start, start + at_once), rules.conventions, draws, seed)
         codes = judged_only(many, rules.definitions, rules.conventions)
         for row, definition in enumerate(rules.definitions):
             again = codes[definition.code].reshape(-1, draws) == inputs.stored[row, part, None]
@@ -149,14 +174,11 @@ def shares_of(inputs: Inputs, rules: Rules) -> np.ndarray:
     return np.where(inputs.stored == NO_VERDICT, np.nan, shares)
 
 
-def _drawn(inputs: Inputs, part: slice, conventions: Conventions, draws: int, seed: int) -> Chunk:
+def _drawn(inputs: Inputs, conventions: Conventions, draws: int, seed: int) -> Chunk:
     """The draws of some samples as a chunk of their own, all of the first sample first."""
-    chunk, model = inputs.chunk.part(part.start, part.stop), inputs.model
-    of_part = ErrorModel(
-        model.s0[:, part], model.k[:, part], model.spread[:, part], model.limit[:, part], model.one_result[:, part]
-    )
+    chunk = inputs.chunk
     keys = keys_of(seed, chunk.sample_id)
-    values, qualifiers = drawn(chunk.values, chunk.qualifiers, of_part, conventions, keys, draws)
+    values, qualifiers = drawn(chunk.values, chunk.qualifiers, inputs.model, conventions, keys, draws)
     return Chunk(
         np.repeat(chunk.sample_id, draws),
         values,

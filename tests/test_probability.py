@@ -17,6 +17,8 @@ import numpy as np
 import pytest
 
 from registry import surviving
+from registry.cli import main
+from registry.computing import Helpers
 from registry.errors import PlutonbookError, UsageError
 from registry.importing import ImportOptions, import_files
 from registry.judging import install_shipped_definitions, read_rules
@@ -337,3 +339,56 @@ def test_probability_is_set_back_when_the_controls_of_its_batch_show_another_pre
         connection.exec_driver_sql("UPDATE result SET value = 99 WHERE value = 104")
     refresh_registry(any_registry)
     assert sheet(any_registry, "probability, probability_state") == {"T1": (None, "not_computed")}
+
+
+def test_probability_is_the_same_with_child_processes(
+    sqlite_registry: Registry, tmp_path: Path, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    bring(one_target(sqlite_registry, 100), tmp_path, TIN)
+    draw_probabilities(sqlite_registry)
+    alone = sheet(sqlite_registry)
+    with writing(sqlite_registry) as connection:
+        connection.exec_driver_sql("UPDATE verdict SET probability_state = 'not_computed', probability = NULL")
+    monkeypatch.setattr(surviving, "WORTH_HELPERS", 0)
+    monkeypatch.setattr("os.cpu_count", lambda: 3)
+    given: list[int] = []
+    sharing = Helpers.share
+
+    def watched(helpers: Helpers, function: Any, tasks: Any) -> list[Any]:
+        given.append(len(tasks))
+        return sharing(helpers, function, tasks)
+
+    monkeypatch.setattr(Helpers, "share", watched)
+    assert draw_probabilities(sqlite_registry) == len(TIN)
+    assert given == [3]
+    assert sheet(sqlite_registry) == alone
+
+
+def test_what_a_child_process_raises_is_raised_here_and_the_others_end() -> None:
+    with Helpers(2) as helpers:
+        assert helpers.share(divmod, [(7, 2), (9, 4), (5, 5)]) == [(3, 1), (2, 1), (1, 0)]
+        children = list(helpers.children)
+        with pytest.raises(ZeroDivisionError, match="by zero"):
+            helpers.share(divmod, [(7, 0), (9, 4), (5, 5)])
+        assert helpers.share(divmod, [(1, 1)]) == [(1, 0)]
+    assert [child.wait(5) for child in children] == [0, 0]
+
+
+def run(*arguments: object) -> int:
+    with pytest.raises(SystemExit) as ended:
+        main([str(argument) for argument in arguments])
+    return int(ended.value.code or 0)
+
+
+def test_refresh_command_draws_and_says_what_it_is(
+    founded_registry: Registry, tmp_path: Path, capsys: pytest.CaptureFixture
+) -> None:
+    bring(one_target(founded_registry, 20), tmp_path, TIN)
+    assert run("refresh", "--probability", "--registry", founded_registry.path) == 0
+    printed = capsys.readouterr().out
+    assert "Drew probabilities for 5 samples" in printed and "not the chance of ore" in printed
+    assert table(founded_registry, "SELECT DISTINCT probability_state FROM verdict") == [("computed",)]
+    assert run("refresh", "--probability", "--json", "--registry", founded_registry.path) == 0
+    assert json.loads(capsys.readouterr().out) == {"recomputed": 0, "drawn": 0}
+    assert run("refresh", "--probability", "--intrusion", "X", "--registry", founded_registry.path) == 2
+    assert "there is no intrusion 'X'" in capsys.readouterr().err

@@ -61,6 +61,13 @@ class ErrorModel:
     limit: Floats
     one_result: NDArray[np.int64]
 
+    def part(self, start: int, stop: int) -> ErrorModel:
+        """That of samples start to stop."""
+        part = slice(start, stop)
+        return ErrorModel(
+            self.s0[:, part], self.k[:, part], self.spread[:, part], self.limit[:, part], self.one_result[:, part]
+        )
+
 
 def conventional_k(conventions: Conventions) -> Floats:
     """Relative standard deviation by column (81,) where no control tells it. Common practice, no source."""
