@@ -58,7 +58,7 @@ def test_controls_over_time_shows_bias_drift_and_precision(site: Site, tmp_path:
     slope, error = fit[0], np.sqrt(covariance[0, 0])
     shown = cells(page, "materials")
     assert shown[:7] == ["Zr ppm", "XM-1", "fusion", "North Lab", "12", "2024-01-01", "2026-01-01"]
-    assert shown[7:] == ["+10.0", f"{difference.std(ddof=1) / np.sqrt(12):.3g}", f"+{slope:.1f}", f"{error:.3g}",
+    assert shown[7:] == ["+10.00", f"{difference.std(ddof=1) / np.sqrt(12):.2f}", f"+{slope:.2f}", f"{error:.2f}",
                          "bias and drift"]  # fmt: skip
     pairs = cells(page, "pairs")
     assert pairs[:6] == ["Zr ppm", "laboratory repeats", "fusion", "North Lab", "60", "0.99"]
