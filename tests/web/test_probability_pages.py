@@ -16,7 +16,9 @@ SENTENCE = re.compile(r"Survives analytical error in ([a-z ]*\d+)\s% of (\d+) dr
 
 
 def page_of(client: FlaskClient, address: str) -> str:
-    return unescape(re.sub(r"\s+", " ", client.get(address).text)).replace("\N{NO-BREAK SPACE}", " ")
+    """The words of a page without its tags."""
+    text = re.sub(r"\s+", " ", re.sub(r"<[^>]*>", "", client.get(address).text))
+    return unescape(text).replace("\N{NO-BREAK SPACE}", " ")
 
 
 @pytest.fixture
@@ -47,6 +49,8 @@ def test_sample_page_says_of_each_verdict_how_often_it_survives(drawn: Any) -> N
     said = SENTENCE.findall(page_of(client, f"/samples/{code}"))
     assert sorted(int(percent) for percent, *_ in said) == expected
     assert {(draws, rest) for _, draws, rest in said} == {("20", "")}
+    assert "/methods#probability" in client.get(f"/samples/{code}").text
+    assert 'id="probability"' in client.get("/methods").text
 
 
 def test_sample_page_says_that_it_was_drawn_before_a_change(drawn: Any) -> None:
