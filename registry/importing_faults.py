@@ -116,7 +116,8 @@ class Rest:
         if "sample" in self.anything:
             return []
         promised = self.promised.get("sample", set())
-        told = {fault.row for fault in reading.problems if fault.column == (reading.results.sample_header or None)}
+        header = reading.results.sample_header or None
+        told = {fault.row for fault in reading.problems if fault.column == header and fault.severity == "problem"}
         faults = unknown_codes(connection, reading.file, reading.results, prefix)
         return first_of(
             (fault for fault in faults if fault.found not in promised and fault.found and fault.row not in told),
