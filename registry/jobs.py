@@ -65,12 +65,24 @@ class Jobs:
         with self._lock:
             if (live := self._live.get(job_id)) is not None:
                 return live
-        held = self.folder.is_held(job_id)
         job = self.folder.load(job_id)
-        if job is not None and job.under_way and not held and not self.folder.is_held(job_id):
-            job.state, job.sentence, job.ended_at = FAILED, job.left_undone, now()
-            self.folder.save(job)
-        return job
+        return self._left(job_id) if job is not None and job.under_way else job
+
+    def _left(self, job_id: str) -> Job | None:
+        """A job that was under way when it was looked up; failed where nobody works on it, and nobody can begin now."""
+        with self._lock:
+            if (live := self._live.get(job_id)) is not None:
+                return live
+            alone = self.folder.hold(job_id)
+            try:
+                job = self.folder.load(job_id)
+                if alone and job is not None and job.under_way:
+                    job.state, job.sentence, job.ended_at = FAILED, job.left_undone, now()
+                    self.folder.save(job)
+            finally:
+                if alone:
+                    self.folder.release(job_id)
+            return job
 
     def all(self) -> list[Job]:
         """Every job as it stands now, newest first."""

@@ -180,6 +180,26 @@ def test_work_of_a_stopped_program_is_told_as_failed(jobs: Jobs) -> None:
     assert jobs.all()[0].state == "failed"
 
 
+def test_work_that_begins_and_ends_while_it_is_looked_up_is_not_told_as_stopped(
+    jobs: Jobs, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    """A draft just sent waits and is held by nobody yet; who looks just then must not write over what comes of it."""
+    draft = draft_of(jobs, create_samples=True)
+    real = jobs.folder.load
+
+    def done_meanwhile(job_id: str) -> Any:
+        as_it_was = real(job_id)
+        monkeypatch.setattr(jobs.folder, "load", real)
+        import_jobs.look(jobs, draft)
+        assert ended(jobs, draft).state == "read"
+        return as_it_was
+
+    monkeypatch.setattr(jobs.folder, "load", done_meanwhile)
+    found = jobs.find(draft.draft_id)
+    assert found is not None and found.state == "read"
+    assert jobs.all()[0].state == "read"
+
+
 HOLDER = """
 import sys
 from pathlib import Path
