@@ -178,7 +178,9 @@ def _put_before(connection: sa.Connection, batch_id: int, others: Iterable[int] 
 
 def free_code(connection: sa.Connection, code: str, mark: str) -> str:
     """The first of ``code`` + ``mark`` + 2, 3, ... that no batch has."""
-    taken = set(connection.scalars(sa.select(_batch.c.code).where(_batch.c.code.startswith(f"{code}{mark}"))))
+    taken = set(
+        connection.scalars(sa.select(_batch.c.code).where(_batch.c.code.startswith(f"{code}{mark}", autoescape=True)))
+    )
     return next(name for number in range(2, len(taken) + 3) if (name := f"{code}{mark}{number}") not in taken)
 
 

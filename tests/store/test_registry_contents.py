@@ -85,6 +85,15 @@ def test_large_file_is_kept_in_parts_and_read_back_whole(any_registry: Registry)
         assert connection.exec_driver_sql("SELECT count(*) FROM batch_file").scalar() == 0
 
 
+@pytest.mark.parametrize("code", ["K-1", "K\\1", "K_1", "K%1"])
+def test_free_code_is_one_that_no_batch_has(any_registry: Registry, code: str) -> None:
+    """Also where the code holds what a pattern of SQL gives a meaning to; the codes are invented."""
+    with writing(any_registry) as connection:
+        for taken in (code, f"{code} corrected 2"):
+            batches.insert_batch(connection, code=taken, imported_at="2026-01-01T00:00:00Z")
+        assert batches.free_code(connection, code, " corrected ") == f"{code} corrected 3"
+
+
 def test_withdrawn_batch_gives_no_results_until_it_is_restored(any_registry: Registry) -> None:
     with writing(any_registry) as connection:
         ids = insert_samples(connection, 2)
