@@ -66,7 +66,7 @@ class LabFile:
     def packed(self) -> Packed:
         """Hash and compressed bytes; PlutonbookError where the file was changed since it was first looked at."""
         packed = self._packed.result()
-        if self.data is None and _stamp(self.path) != self._stamp:
+        if self.is_large and _stamp(self.path) != self._stamp:
             raise PlutonbookError(
                 f"{self.path} was changed while it was read; nothing was written. Import it again when it is complete"
             )

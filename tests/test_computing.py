@@ -134,19 +134,21 @@ def test_import_of_a_large_file_reports_its_bytes_and_keeps_them(
         import_files(founded_registry, [path], ImportOptions(create_samples=True, batch="2"))
 
 
+@pytest.mark.parametrize("encoding", ["utf-8", "utf-16"])
 def test_import_of_a_large_file_that_changes_meanwhile_is_refused(
-    founded_registry: Registry, tmp_path: Path, monkeypatch: pytest.MonkeyPatch
+    founded_registry: Registry, tmp_path: Path, monkeypatch: pytest.MonkeyPatch, encoding: str
 ) -> None:
+    """Read as a stream (UTF-8) or whole (UTF-16): what is hashed and kept must be what was read."""
     monkeypatch.setattr(lab_files, "LARGE_BYTES", 1)
     path = tmp_path / "first.csv"
-    path.write_text(FIRST)
+    path.write_text(FIRST, encoding)
 
     with pytest.raises(PlutonbookError, match=r"first\.csv was changed while it was read; nothing was written"):
         import_files(
             founded_registry,
             [path],
             ImportOptions(create_samples=True),
-            on_read=lambda *_: path.write_text(FIRST + "Z,60,,,,,,,,,\n"),
+            on_read=lambda *_: path.write_text(FIRST + "Z,60,,,,,,,,,\n", encoding),
         )
     with reading(founded_registry) as connection:
         assert connection.exec_driver_sql("SELECT count(*) FROM sample").scalar() == 0
