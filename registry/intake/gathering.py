@@ -71,7 +71,9 @@ class GatheredRows(Source):
         filled = self._filled[block]
         if not filled[first] >> bit & 1:
             return first
-        return next((row for row in self._more.get(code, ()) if not filled[row] >> bit & 1), None)
+        more = self._more.get(code, [])  # those with a free cell are the last: each result takes the first free one
+        place = bisect_left(more, True, key=lambda row: not filled[row] >> bit & 1)
+        return more[place] if place < len(more) else None
 
     def _open(self, code: str, line: int) -> int:
         row = len(self.lines)

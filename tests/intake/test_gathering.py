@@ -64,3 +64,14 @@ def test_gathered_rows_keep_what_the_control_column_said_first() -> None:
     gathered.add("A", "other", 1, "2", 3)
     gathered.width = 4
     assert [chunk.rows for chunk in gathered.chunks()] == [[["A", "BLANK", "1", "2"]]]
+
+
+def test_gathered_rows_of_one_code_a_hundred_thousand_times_are_as_many_rows() -> None:
+    """A row is found in a few steps however many its code has; else it would be thousands of millions."""
+    gathered = GatheredRows(on_disk=True)
+    for line in range(100_000):
+        gathered.add("A", "", line % 2, str(line), line)
+    gathered.width = 4
+    rows = [row for chunk in gathered.chunks() for row in chunk.rows]
+    assert len(rows) == 50_000
+    assert rows[0] == ["A", "", "0", "1"] and rows[-1] == ["A", "", "99998", "99999"]
