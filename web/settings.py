@@ -78,7 +78,8 @@ def typed_form(value: Any) -> str:
 
 @blueprint.get("/settings")
 def page() -> Any:
-    return _page({}, {}, done=session.pop("settings_done", None) if "settings_done" in session else None)
+    job = working.jobs().find(session.pop("settings_done")) if "settings_done" in session else None
+    return _page({}, {}, done=_done(job) if isinstance(job, Change) and job.report else None)
 
 
 @blueprint.post("/settings")
@@ -111,7 +112,7 @@ def _outcome(change: Change) -> Any:
 
 
 def _back_to_settings(change: Change) -> Any:
-    session["settings_done"] = _done(change)
+    session["settings_done"] = change.job_id  # what was typed may be longer than a cookie
     return redirect(url_for("settings.page"), 303)
 
 

@@ -166,3 +166,16 @@ def test_settings_faulty_fields_are_named_and_linked_above(writable: Any) -> Non
     assert "“^(BLK” is no regular expression" in words(answer.text)
     assert 'value="^(BLK" spellcheck="false" aria-invalid="true"' in answer.text
     assert contents(writable) == kept
+
+
+def test_settings_long_pattern_is_told_of_after_it_was_changed(writable: Any, monkeypatch: pytest.MonkeyPatch) -> None:
+    """A cookie holds some 4,000 letters, and a list of codes may be longer; the codes are invented."""
+    monkeypatch.setattr("web.working.PATIENCE_S", 60.0)
+    pattern = "^(" + "|".join(hashlib.sha256(bytes([one])).hexdigest()[:40] for one in range(200)) + ")$"
+    fields = {"control_pattern.blank": pattern}
+    seen = unescape(re.search(r'name="seen" value="([^"]*)"', writable.post("/settings", **fields).text)[1])  # type: ignore[index]
+    answer = writable.post("/settings", do="change", seen=seen, **fields)
+    assert answer.headers["Location"] == "/settings"
+    page = writable.client.get("/settings").text
+    assert "Everything was computed anew" in page and pattern in unescape(page)
+    assert "Everything was computed anew" not in writable.client.get("/settings").text, "it is told once"
