@@ -22,7 +22,7 @@ from registry.targets.engine import CONTROL_KINDS, Verdicts, best, judge_all, ve
 #: Samples computed at a time: keeps the temporaries in the processor's cache and the memory bounded.
 CHUNK_SIZE = 16_384
 #: Rises whenever a computed number can change; stamped on each derived row.
-METHOD_VERSION = 3
+METHOD_VERSION = 4
 
 TEXT_CONTEXT = ("sample_kind", "lithology", "texture", "alteration", "intrusion_shape", "site_kind")
 FLAG_CONTEXT = ("has_intrusion", "body_mapped_or_cored")

@@ -2,7 +2,7 @@
 
 So a sample gets the same numbers in any order and company. The uniform numbers are those of SplitMix64 (Steele, Lea and
 Flood 2014): its state advances by a constant, so that the k-th number of a key is had without the others. Normal ones
-are made of pairs of them (Box and Muller 1958).
+are made of pairs of them [boxmuller1958].
 """
 
 from __future__ import annotations

@@ -78,6 +78,10 @@ REFERENCES = {
     "crank1975": "Crank, J. 1975. The Mathematics of Diffusion, 2nd edition. Clarendon Press, Oxford.",
     "carslaw1959": "Carslaw, H.S., Jaeger, J.C. 1959. Conduction of Heat in Solids, 2nd edition. "
     "Clarendon Press, Oxford.",
+    "steele2014": "Steele, G.L., Lea, D., Flood, C.H. 2014. Fast splittable pseudorandom number generators. "
+    "Proceedings of OOPSLA 2014, ACM, 453-472.",
+    "boxmuller1958": "Box, G.E.P., Muller, M.E. 1958. A note on the generation of random normal deviates. Annals of "
+    "Mathematical Statistics 29, 610-611.",
     "abramowitz1964": "Abramowitz, M., Stegun, I.A. (eds) 1964. Handbook of Mathematical Functions. "
     "National Bureau of Standards Applied Mathematics Series 55.",
     "hirschmann2000": "Hirschmann, M.M. 2000. Mantle solidus: experimental constraints and the effects of peridotite "
