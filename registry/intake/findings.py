@@ -57,9 +57,6 @@ class Findings:
     def warn(self, what: str, **places: object) -> None:
         self.add(what, severity="warning", **places)  # type: ignore[arg-type]
 
-    def has_problems(self) -> bool:
-        return self.whole_file_refused or bool(self.refused_lines)
-
     def problems(self) -> list[Problem]:
         """All faults: those of the whole file first, then by row, then the counts of the groups cut short."""
         ordered = sorted(self._problems, key=lambda one: (one.row is not None, one.row or 0))
