@@ -137,7 +137,7 @@ def _facts(found: Mapping[str, Any]) -> list[tuple[str, str, str]]:
         ("Alteration", found["alteration"], ""),
         ("Susceptibility", susceptibility is not None and f"{numbers.reported(susceptibility)} SI", ""),
         ("Density", density is not None and f"{numbers.reported(density)} kg/m³", ""),
-        ("Position", position, ""),
+        ("Position", position, _page_of("map.page", site=found["site_code"])),
         ("Position from", found["position_basis"], ""),
         ("Collected", found["collected_on"], ""),
         ("IGSN", found["igsn"], ""),
