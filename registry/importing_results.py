@@ -138,9 +138,9 @@ def store_results(
         for chunk, outcome in computations:
             write(chunk, outcome)
         ready_rows.let_go(connection)
-    report.controls = controlling.assess_imported(connection, batch_id, lines.controlled)
-    if place.supersedes is not None:
+    if place.supersedes is not None:  # first, so that its controls judge nothing any more
         batches.supersede(connection, place.supersedes, batch_id)
+    report.controls = controlling.assess_imported(connection, batch_id, lines.controlled)
     for ids in raw_parts(np.setdiff1d(lines.sample_ids, fresh_ids)):
         stale.mark(connection, ids.tolist(), stale.DERIVE)
     report.remarks = [*_laboratories(table, options.lab, place), *columns_that_disagree(table)]

@@ -265,3 +265,16 @@ def test_sample_list_declares_the_stage_of_a_duplicate(any_registry: Registry, t
         connection.exec_driver_sql("UPDATE sample SET duplicate_stage = 'pulp' WHERE code = 'D2'")
     refresh_registry(any_registry)
     assert sheet(any_registry, SHEET)[1][4] == "warned"
+
+
+def test_corrected_part_of_a_certificate_is_not_judged_by_what_it_corrects(
+    any_registry: Registry, tmp_path: Path
+) -> None:
+    """The control was read wrongly, 150 for 101; the corrected file takes the place of the faulty part."""
+    bring(any_registry, tmp_path, {"certificates.csv": CERTIFICATES, "samples.csv": LISTED, "K1.csv": ROCKS})
+    assert told(bring(any_registry, tmp_path, {"more.csv": CHECKS}, add_to="K1"))[1].startswith("batch fails")
+    corrected = {"right.csv": CHECKS.replace("150", "101")}
+    report = bring(any_registry, tmp_path, corrected, batch="K1/2", supersede=True)
+    assert told(report)[1:] == ["batch passes (1 of 1 analytes: passes)"]
+    with reading(any_registry) as connection:
+        assert [batch_state(connection, batch_id) for batch_id in (1, 3)] == ["passes", "passes"]
