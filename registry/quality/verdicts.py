@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
-from dataclasses import dataclass, replace
+from dataclasses import dataclass
 
 import numpy as np
 
@@ -107,21 +107,42 @@ def state_of_analyte(controls: Controls, outcome: Outcome) -> AnalyteState | Non
 def joined(own: AnalyteState | None, others: Sequence[tuple[str, AnalyteState]]) -> AnalyteState | None:
     """The state of a column with what other parts of the certificate say of it, each with its code: the worst of all.
 
-    Counts are added up; bias, drift and precision are those of the own controls, else of the first other part.
+    Counts are added up, and the bias and its error are those of all the results; drift and precision are those of the
+    own controls, else of the first other part that has them.
     """
     known = [state for state in (own, *(state for _, state in others)) if state is not None]
     if not known:
         return None
     remarks = [] if own is None or not own.remarks else [own.remarks]
     remarks += [f"in {code}: {state.remarks}" for code, state in others if state.remarks]
-    return replace(
-        known[0],
-        state=max(state.state for state in known),
-        remarks="; ".join(remarks),
-        references=sum(state.references for state in known),
-        blanks=sum(state.blanks for state in known),
-        pairs=sum(state.pairs for state in known),
+    drifting = next((state for state in known if not np.isnan(state.drift_percent)), known[0])
+    fitted = next((state for state in known if not np.isnan(state.precision_s0)), known[0])
+    bias_percent, bias_error_percent = _bias_of_all(known)
+    return AnalyteState(
+        max(state.state for state in known),
+        "; ".join(remarks),
+        sum(state.references for state in known),
+        sum(state.blanks for state in known),
+        sum(state.pairs for state in known),
+        bias_percent,
+        bias_error_percent,
+        drifting.drift_percent,
+        drifting.drift_error_percent,
+        fitted.precision_s0,
+        fitted.precision_k,
     )
+
+
+def _bias_of_all(states: Sequence[AnalyteState]) -> tuple[float, float]:
+    """Mean and standard error over the results of several parts: their spread is that within the parts (pooled)."""
+    biased = [state for state in states if state.references and not np.isnan(state.bias_percent)]
+    if len(biased) < 2:
+        only = biased[0] if biased else states[0]
+        return only.bias_percent, only.bias_error_percent
+    n, mean, error = np.array([(one.references, one.bias_percent, one.bias_error_percent) for one in biased]).T
+    several = ~np.isnan(error)
+    variance = (n**2 * error**2)[several].sum() / n[several].sum() if several.any() else np.nan
+    return float((n * mean).sum() / n.sum()), float(np.sqrt(variance / n.sum()))
 
 
 def _own_content(controls: Controls, outcome: Outcome) -> list[str]:

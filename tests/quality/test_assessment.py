@@ -12,7 +12,7 @@ from registry.quality.assessment import Column, Controls, Outcome, expectation, 
 from registry.quality.columns import disagreeing_columns
 from registry.quality.shipped import ReferenceValue
 from registry.quality.states import FAILED, FAILS, NOT_JUDGED, PASSED, PASSES, REMARKS, WARNED
-from registry.quality.verdicts import state_of_analyte
+from registry.quality.verdicts import AnalyteState, joined, state_of_analyte
 
 
 def controls(kinds: list[str], found: list[float], *, analyte: str = "Zr", unit: str = "ppm", limit: float | None = 1.0,
@@ -219,3 +219,24 @@ def test_reference_off_by_a_thousand_is_asked_for_its_unit() -> None:
     assert "off by a factor of about 1,000: is the unit right?" in state.remarks
     _, state = judged(controls(["reference_material"], [150.0]))
     assert "is the unit right" not in state.remarks
+
+
+def _state(references: int, bias: float, error: float, s0: float = np.nan) -> AnalyteState:
+    return AnalyteState(0, "", references, 0, 0, bias, error, np.nan, np.nan, s0, s0 / 10.0)
+
+
+def test_states_of_two_parts_joined_give_the_bias_and_spread_of_all_their_results() -> None:
+    """4 results of mean 2 and 16 of mean -1, deviations of 2 both: mean -0.4, error 2/sqrt(20). Recomputed by hand."""
+    state = joined(_state(4, 2.0, 1.0), [("K1/2", _state(16, -1.0, 0.5))])
+    assert state is not None and state.references == 20
+    np.testing.assert_allclose([-0.4, 2.0 / np.sqrt(20.0)], [state.bias_percent, state.bias_error_percent])
+
+
+def test_states_joined_take_what_only_another_part_knows() -> None:
+    """One result has no deviation of its own, and a part with nothing but a blank has no bias and no precision."""
+    state = joined(_state(1, 3.0, np.nan), [("K1/2", _state(9, -2.0, 1.0, 0.5)), ("K1/3", _state(0, np.nan, np.nan))])
+    assert state is not None and state.references == 10
+    np.testing.assert_allclose([-1.5, 3.0 / np.sqrt(10.0)], [state.bias_percent, state.bias_error_percent])
+    assert (state.precision_s0, state.precision_k) == (0.5, 0.05)
+    nothing = joined(None, [("K1/2", _state(0, np.nan, np.nan))])
+    assert nothing is not None and np.isnan([nothing.bias_percent, nothing.bias_error_percent]).all()
