@@ -66,14 +66,18 @@ def read_results(
     _say_layout(layout, preview_lines.tolist(), understood)
     titles = read_titles(layout.titles)
     stated = options.unit or recipe.unit or titles.unit
-    digested = options.digestion or recipe.digestion
     if titles.unit:
         understood.append(f"the lines above the table state {titles.unit} for columns without a unit of their own")
-    if titles.digestion:
+    overruled = options.digestion is not None and titles.digestion not in (None, options.digestion)
+    if overruled:
+        said_before = f"{str(options.digestion).replace('_', ' ')}, as was said, goes before it"
+        understood.append(f"the lines above the table state the method {titles.method}; {said_before}")
+    elif titles.digestion:
         understood.append(f"the lines above the table state the method for all columns that name none: {titles.method}")
     columns = settle_columns(
         layout.columns, findings, understood, stated_unit=canonical_unit(stated) if stated else None,
-        stated_digestion=titles.digestion or digested, stated_method=titles.method, recipe=recipe,
+        stated_digestion=options.digestion or titles.digestion or recipe.digestion,
+        stated_method=None if overruled else titles.method, recipe=recipe,
     )  # fmt: skip
     if not columns:
         findings.add("every analyte column is ignored", remedy="keep at least one, see --column")
@@ -120,7 +124,7 @@ def read_results(
         separator=options.separator or recipe.separator,
         decimal=decimal if sure else None,
         unit=options.unit or recipe.unit,
-        digestion=digested,
+        digestion=options.digestion or recipe.digestion,
         thousands=thousands,
         negative_means_below=below,
     )

@@ -247,3 +247,20 @@ def test_recipe_of_the_first_release_is_still_read() -> None:
     reading = read("Sample,Cu (ppm)\nA,5\n", recipe=recipe)
     assert columns(reading) == [("Cu (ppm)", "Cu", "ppm", "fusion")]
     assert reading.recipe is not None and recipe.fits(reading.recipe.shape)
+
+
+def test_digestion_that_the_user_states_goes_before_that_of_the_title_lines() -> None:
+    """As a unit that is stated does; a column that tells its own keeps it, a saved reading gives way to the file."""
+    text = b"Method: four-acid digestion\n\nSample,Zr ppm,Y ppm by aqua regia\nA,100,20\n"
+
+    def told(**options: Any) -> list[tuple[str | None, str]]:
+        table = read_file("a.csv", text, "results", ReadingOptions(**options)).results
+        assert table is not None
+        return [(column.method, column.digestion) for column in table.columns]
+
+    own = ("by aqua regia", "aqua_regia")
+    assert told() == [("four-acid digestion", "four_acid"), own]
+    assert told(digestion="fusion") == [(None, "fusion"), own]
+    assert told(recipe=Recipe(digestion="fusion")) == [("four-acid digestion", "four_acid"), own]
+    said = read_file("a.csv", text, "results", ReadingOptions(digestion="fusion")).understood
+    assert any("state the method four-acid digestion; fusion, as was said, goes before it" in line for line in said)
