@@ -128,7 +128,8 @@ def _role(row: list[str], analytes: dict[int, Heading], below: bool) -> str | No
     ]
     if not inside:
         return None
-    if not below and len(inside) < len(analytes) and any(_STATEMENT.match(text) for text in outside[:1]):
+    short = len(inside) < max(2, len(analytes))
+    if not below and short and any(_STATEMENT.match(text) for text in outside[:1]):
         return None  # a sentence for the whole table, such as "Method: four-acid digestion, ICP-MS", cut at its commas
     label = " ".join(outside)
     units = sum(canonical_unit(text) is not None or foreign_unit(text) for text in inside)

@@ -235,6 +235,14 @@ def test_method_stated_once_above_the_table_is_no_heading_row_though_it_holds_co
     assert reading.results.sample_header == "Sample"
 
 
+def test_title_that_its_comma_cuts_over_a_single_analyte_is_a_title():
+    reading = read_file("au.csv", b"Method: fire assay, AAS finish\nSample,Au (ppb)\nA1,5\nA2,7\n", None)
+    assert reading.results is not None and reading.problems == []
+    (gold,) = reading.results.columns
+    assert (gold.header, gold.unit, gold.digestion) == ("Au (ppb)", "ppb", "fire_assay")
+    assert gold.method == "fire assay, AAS finish"
+
+
 @pytest.mark.parametrize("pack", [bytes, gzip.compress])
 def test_endless_first_line_is_refused_before_it_is_cut_into_cells(pack, tmp_path):
     data = pack(b"0," * 3_000_000)
