@@ -40,3 +40,15 @@ def test_remark_on_an_analysis_tells_every_number_it_was_made_from(texts: dict[s
     assert "Sm 40 ppm" in texts["sm_not_smooth"]
     assert "(Pr not known, Nd 20, Gd 3, Tb 0.5)" in texts["sm_not_smooth"]
     assert not [text for text in texts.values() if "{" in text]
+
+
+def test_total_that_is_not_the_sum_is_told_with_both(any_registry: Registry, tmp_path: Path) -> None:
+    """The loss on ignition of an invented granite was left out of the table: 100.0 by the laboratory, 98.0 as read."""
+    head = "Sample,SiO2 (%),TiO2 (%),Al2O3 (%),Fe2O3T (%),MnO (%),MgO (%),CaO (%),Na2O (%),K2O (%),P2O5 (%),Total (%)"
+    (tmp_path / "lost.csv").write_text(f"{head}\nR1,69.9,0.3,14.5,2.5,0.1,0.7,1.9,3.6,4.4,0.1,100.0\n")
+    import_files(any_registry, [tmp_path / "lost.csv"], ImportOptions(create_samples=True))
+    with reading(any_registry) as connection:
+        (text,) = connection.exec_driver_sql(
+            "SELECT text FROM warning_sheet WHERE code = 'total_differs_from_reported'"
+        ).scalars()
+    assert "the laboratory's total 100 wt% and the sum of what was read, 98 wt%, differ by more than 1.5" in text

@@ -32,6 +32,9 @@ ZR_HF_LIMITS, NB_TA_LIMITS = (8.0, 90.0), (0.5, 40.0)
 #: O2 that iron takes up on ignition, by mass of FeO: 4 FeO + O2 -> 2 Fe2O3.
 OXYGEN_PER_FEO = FE2O3_FROM_FEO - 1.0
 
+#: A total may differ from the sum of the analysis by this much. Common practice, no source.
+TOTALS_DIFFER_WT = 1.5
+
 #: Two reports of one metal may differ by this share. Common practice, no source.
 DUPLICATE_PERCENT = 10.0
 #: element column -> (oxide column, formula): both stand in the composition, each as it was reported.

@@ -35,7 +35,7 @@ BCR_2 = {
 BCR_2_MORE = {"Sr": 337.0, "Y": 36.0, "Rb": 46.0, "Th": 5.8, "U": 1.68, "V": 418.0, "Sc": 33.5}
 
 
-def told(changes: dict[str, float], digestion: str = "fusion") -> set[str]:
+def told(changes: dict[str, float], digestion: str = "fusion", summed: float = np.nan) -> set[str]:
     """The codes of this topic that a sample of BCR-2 with these columns changed is warned of."""
     chunk = empty_chunk(1)
     columns = {f"{symbol.lower()}_ppm": value for symbol, value in BCR_2.items()} | changes
@@ -44,6 +44,7 @@ def told(changes: dict[str, float], digestion: str = "fusion") -> set[str]:
         chunk.digestions[CHOSEN_INDEX[column], 0] = DIGESTION_CODE[digestion]
     known: dict[str, Any] = workspace_of(chunk, Conventions())
     known["zr_hf"], known["nb_ta"] = known["zr_ppm"] / known["hf_ppm"], known["nb_ppm"] / known["ta_ppm"]
+    known["total_wt"] = np.array([summed])
     known["feot_wt"] = known["fe2o3t_reported_wt"] * FEO_FROM_FE2O3
     return {
         warning.code
@@ -58,7 +59,7 @@ def test_published_analysis_agrees_with_itself() -> None:
 
 def test_remarks_of_this_topic_are_in_the_catalogue() -> None:
     assert set(WARNINGS) <= set(catalogue.WARNINGS)
-    assert len(WARNINGS) == 34
+    assert len(WARNINGS) == 35
 
 
 @pytest.mark.parametrize("symbol", ["Pr", "Nd", "Sm", "Gd", "Tb", "Dy", "Ho", "Er", "Tm", "Yb"])
@@ -107,6 +108,15 @@ def test_gain_on_ignition_is_told_by_what_iron_can_take_up(loi: float, code: set
     """4 FeO + O2 = 2 Fe2O3: 31.998/(4 x 71.844) = 0.1113 of FeO (IUPAC weights); 10 wt% FeO gain 1.11."""
     np.testing.assert_allclose(31.998 / (4 * 71.844), OXYGEN_PER_FEO, rtol=1e-4)
     assert told({"loi_wt": loi, "fe2o3t_reported_wt": 11.113}) == code
+
+
+@pytest.mark.parametrize(
+    ("reported", "summed", "code"),
+    [(99.8, 100.1, set()), (99.8, 98.4, set()), (99.8, 98.2, {"total_differs_from_reported"}),
+     (80.0, 101.0, {"total_differs_from_reported"}), (99.8, np.nan, set())],
+)  # fmt: skip
+def test_total_of_the_laboratory_that_is_not_the_sum_is_told(reported: float, summed: float, code: set[str]) -> None:
+    assert told({"total_reported_wt": reported}, summed=summed) == code
 
 
 @pytest.mark.parametrize("symbol", JUDGED_BY_TRACES)

@@ -131,7 +131,7 @@ WARNINGS = (
         "total_outside_limits",
         "total_wt",
         "total_wt",
-        "the oxides sum to {value} wt%, outside the convention's limits of a good analysis",
+        "the oxides sum to {value} wt%, outside the convention's limits of a good analysis (as shipped 98.5 to 101.5)",
         _outside,
         ("total_wt", "conventions"),
     ),

@@ -16,6 +16,7 @@ from registry.petrology.consistency import (
     OXYGEN_PER_FEO,
     ROUGH_FACTOR,
     SMOOTH_RARE_EARTHS,
+    TOTALS_DIFFER_WT,
     ZR_HF_LIMITS,
     disagreement_percent,
     element_from_oxide,
@@ -135,7 +136,21 @@ def _more_than_iron_gains(loi: Any, iron: Any) -> Any:
     return loi < -OXYGEN_PER_FEO * iron - _WEIGHING_WT
 
 
+def _another_total(reported: Any, summed: Any) -> Any:
+    return np.abs(reported - summed) > TOTALS_DIFFER_WT
+
+
 WARNINGS = (
+    Warning(
+        "total_differs_from_reported",
+        "total_reported_wt",
+        "total_reported_wt",
+        f"the laboratory's total {{value}} wt% and the sum of what was read, {{total_wt}} wt%, differ by more than "
+        f"{TOTALS_DIFFER_WT:g} (common practice, no source): a column is missing, was read in another unit or is "
+        "counted by the laboratory alone",
+        _another_total,
+        ("total_reported_wt", "total_wt"),
+    ),
     *(_smoothness(symbol) for symbol in SMOOTH_RARE_EARTHS if neighbours_of(symbol)[0]),
     _ratio("zr_hf", "Zr/Hf", ("zr_ppm", "hf_ppm"), ZR_HF_LIMITS),
     _ratio("nb_ta", "Nb/Ta", ("nb_ppm", "ta_ppm"), NB_TA_LIMITS),
