@@ -9,7 +9,7 @@ from typing import IO, Any
 
 from registry import auditing
 from registry.errors import NotFound, PlutonbookError, UsageError
-from registry.petrology.digestion import DIGESTIONS
+from registry.petrology.digestion import DIGESTION_NAMES, WEIGHED
 from registry.progress import Progress
 from registry.recomputing import recomputed_after
 from registry.store import batch_files, batches
@@ -17,11 +17,6 @@ from registry.store.engine import Registry, reading
 
 #: A stored file that is larger is handed out from disk.
 _IN_MEMORY_BYTES = 8_000_000
-
-#: Weighed or summed, not dissolved.
-WEIGHED = ("Total", "LOI", "H2O", "H2O+", "H2O-")
-#: What a person can say of a column.
-DIGESTION_NAMES = tuple(name for name in DIGESTIONS if name and name != "unknown_without_silica")
 
 
 def list_batches(registry: Registry) -> list[dict[str, Any]]:

@@ -10,7 +10,8 @@ from typing import Any
 from registry.errors import Problem
 from registry.importing_results import ResultsReport
 from registry.intake import Reading
-from registry.intake_choices import TIMES, WEIGHED, described_columns, is_of_column
+from registry.intake_choices import TIMES, described_columns, is_of_column
+from registry.petrology.digestion import WEIGHED
 from registry.precedence import Alternative, Replacement
 
 #: Lines of one sort that are printed before the rest is counted.

@@ -17,7 +17,6 @@ from registry.petrology.digestion import (
     CARRIES,
     DIGESTION_CODE,
     DIGESTION_WORDS,
-    DIGESTIONS,
     MINIMUM,
     REFUSED,
     settle_unknown,
@@ -31,11 +30,8 @@ SEPARATORS = {"comma": ",", "semicolon": ";", "tab": "\t", "bar": "|"}
 UNIT_NAMES = CANONICAL_UNITS
 ANALYTE_NAMES = tuple(ANALYTES)
 TIMES = "\N{MULTIPLICATION SIGN}"
-#: Weighed or summed, not dissolved: a digestion stated for every column is not meant for these.
-WEIGHED = ("LOI", "H2O", "H2O+", "H2O-", "Total")
 #: Equal problems that are listed one by one.
 LISTED = 20
-DIGESTION_NAMES = tuple(name for name in DIGESTIONS if name and name != "unknown_without_silica")
 
 
 @dataclass(frozen=True)

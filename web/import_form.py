@@ -9,10 +9,10 @@ from typing import Any
 
 from werkzeug.datastructures import MultiDict
 
+from registry.batching import WEIGHED
 from registry.import_drafts import Draft, DraftFile
 from registry.intake_choices import (
     THOUSANDS,
-    WEIGHED,
     ColumnWish,
     corrected_recipe,
     ignored_columns,

@@ -9,9 +9,10 @@ from flask import Blueprint, Flask, abort, jsonify, redirect, render_template, r
 from werkzeug.datastructures import FileStorage
 
 from registry import import_jobs, reading_recipes
+from registry.batching import DIGESTION_NAMES
 from registry.errors import PlutonbookError
 from registry.import_drafts import Draft, DraftFile, create_draft
-from registry.intake_choices import ANALYTE_NAMES, DIGESTION_NAMES, KIND_NAMES, UNIT_NAMES
+from registry.intake_choices import ANALYTE_NAMES, KIND_NAMES, UNIT_NAMES
 from registry.job_folder import DONE
 from registry.store.reading import batches as batches_reading
 from registry.store.reading import targets as targets_reading

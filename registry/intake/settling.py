@@ -12,14 +12,11 @@ from registry.intake.readings import ResultColumn
 from registry.intake.recipes import Recipe
 from registry.intake.units import CANONICAL_UNITS, canonical_unit, foreign_unit
 from registry.petrology.analytes import ANALYTES, ELEMENT_SYMBOLS, OXIDE_OF_ELEMENT_COLUMN, OXIDE_SYMBOLS
-from registry.petrology.digestion import DIGESTIONS
+from registry.petrology.digestion import DIGESTION_NAMES, WEIGHED
 
 #: Without a stated unit these are oxides in wt% and trace elements in ppm by common practice of the trade.
 _BY_CUSTOM_WT = frozenset(OXIDE_SYMBOLS) - {"S", "F", "Cl"} | {"Fe2O3T", "FeOT", "Fe2O3", "FeO", "Total", "H2O"}
 _BY_CUSTOM_PPM = frozenset(ELEMENT_SYMBOLS) - {"Au", "Ag", "Pt", "Pd", "Cu", "Pb", "Zn", "Ni", "Re", "B", "Li"}
-#: Weighed or summed, not dissolved.
-_WEIGHED = ("Total", "LOI", "H2O", "H2O+", "H2O-")
-_KNOWN_DIGESTIONS = tuple(name for name in DIGESTIONS if name and name != "unknown_without_silica")
 
 
 def settle_columns(
@@ -45,7 +42,7 @@ def settle_columns(
         method = heading.method
         digestion = next((told for text in (method, heading.header) if text and (told := digestion_in(text))), None)
         if digestion is None and stated_digestion and (method is None or stated_method is None):
-            weighed = heading.heading.analyte in _WEIGHED
+            weighed = heading.heading.analyte in WEIGHED
             digestion = None if weighed and stated_method is None else stated_digestion
             method = method or stated_method
         column = ResultColumn(
@@ -106,10 +103,10 @@ def _corrected(
         else:
             column = replace(column, unit=word)
     if digestion is not None:
-        if digestion not in _KNOWN_DIGESTIONS:
+        if digestion not in DIGESTION_NAMES:
             findings.add(
                 "the reading recipe names an unknown digestion", column=column.header, found=digestion,
-                expected=" ".join(_KNOWN_DIGESTIONS), remedy="correct the recipe",
+                expected=" ".join(DIGESTION_NAMES), remedy="correct the recipe",
             )  # fmt: skip
         else:
             column = replace(column, digestion=digestion)
@@ -174,7 +171,7 @@ def _settle_unit(column: ResultColumn, foreign: str | None, stated: str | None, 
 
 
 def _say_unknown_digestions(columns: list[ResultColumn], findings: Findings) -> None:
-    dissolved = [column for column in columns if column.analyte not in _WEIGHED]
+    dissolved = [column for column in columns if column.analyte not in WEIGHED]
     unknown = [column.header for column in dissolved if column.digestion == "unknown"]
     if not unknown:
         return

@@ -28,6 +28,10 @@ DIGESTION_WORDS = (
     "no digestion", "lithium borate fusion", "peroxide fusion", "XRF", "four-acid digestion", "aqua regia", "INAA",
     "portable XRF", "titration", "combustion", "fire assay", "an unknown digestion", "an unknown digestion",
 )  # fmt: skip
+#: What a person can say of a column.
+DIGESTION_NAMES = tuple(name for name in DIGESTIONS if name and name != "unknown_without_silica")
+#: Analytes that are weighed or summed, not dissolved: a digestion stated for every column is not meant for these.
+WEIGHED = ("Total", "LOI", "H2O", "H2O+", "H2O-")
 NONE, FUSION, PEROXIDE_FUSION, XRF, FOUR_ACID, AQUA_REGIA, INAA, PORTABLE_XRF = range(8)
 TITRATION, COMBUSTION, FIRE_ASSAY, UNKNOWN, UNKNOWN_WITHOUT_SILICA = range(8, 13)
 
