@@ -237,11 +237,11 @@ def state_of_batch(connection: Any, batch_id: int) -> list[str]:
     if not states:
         return [*lines, "none of them could be judged (no reference values, detection limits, originals or digestions)"]
     tally = Counter(state["state"] for state in states)
-    told = ", ".join(f"{tally[word]} of {len(states)} analytes: {word}" for word in STATE_WORDS if tally[word])
+    told = "; ".join(_of_analytes(word, tally[word], len(states)) for word in STATE_WORDS[::-1] if tally[word])
     others = len(quality_rows.batch_columns(connection, batch_id)) - len(states)
     if others:
         told += f"; {others:,} {'column has' if others == 1 else 'columns have'} no control that could be judged"
-    lines.append(f"batch {_worst(states)} ({told})")
+    lines.append(f"batch {told}")
     remarked = [state for state in states if state["state"] != STATE_WORDS[0]]
     remarked.sort(key=lambda state: -STATE_WORDS.index(state["state"]))
     lines += [f"{state['analyte']} {state['state']}: {state['remarks']}" for state in remarked[:ANALYTES_TOLD]]
@@ -254,5 +254,8 @@ def state_of_batch(connection: Any, batch_id: int) -> list[str]:
     return lines
 
 
-def _worst(states: Sequence[Mapping[str, Any]]) -> str:
-    return max((state["state"] for state in states), key=STATE_WORDS.index)
+def _of_analytes(word: str, number: int, all_of_them: int) -> str:
+    """``fails for 1 of 49 analytes``; where it is so for each: ``passes for all 49 analytes``."""
+    if number == all_of_them:
+        return f"{word} for {'its one analyte' if number == 1 else f'all {number:,} analytes'} judged"
+    return f"{word} for {number:,} of {all_of_them:,} analytes"

@@ -142,7 +142,7 @@ def test_failed_analytes_are_told_before_those_with_remarks(any_registry: Regist
     text = f"Sample,{heading}\n" + "\n".join(map(",".join, rows)) + "\n"
     files = {"samples.csv": "sample_code,sample_kind\nA1,core\nB1,blank\n", "K1.csv": text}
     lines = told(bring(any_registry, tmp_path, files))
-    assert lines[1] == "batch fails (14 of 15 analytes: passes with remarks, 1 of 15 analytes: fails)"
+    assert lines[1] == "batch fails for 1 of 15 analytes; passes with remarks for 14 of 15 analytes"
     assert lines[2].startswith("Y fails: blank failed on line 3: found 20 for 0 ppm (20 times the detection limit")
     assert lines[-1] == "... and 5 more analytes: the page of the batch and control_sheet hold them all"
 
@@ -204,7 +204,7 @@ def test_columns_without_a_judged_control_are_counted_beside_the_state(any_regis
     listed = "sample_code,sample_kind,reference_material\nR1,core,\nC1,reference_material,XM-1\n"
     text = "Sample,Zr fusion (ppm),Y (ppm),Cu fusion (ppm)\nR1,120,9,8\nC1,101,9,7\n"
     report = bring(any_registry, tmp_path, {"certificates.csv": CERTIFICATES, "samples.csv": listed, "K1.csv": text})
-    assert told(report)[1] == "batch passes (1 of 1 analytes: passes; 2 columns have no control that could be judged)"
+    assert told(report)[1] == "batch passes for its one analyte judged; 2 columns have no control that could be judged"
 
 
 LISTED = "sample_code,sample_kind,reference_material\nR1,core,\nR2,core,\nC1,reference_material,XM-1\n"
@@ -275,6 +275,6 @@ def test_corrected_part_of_a_certificate_is_not_judged_by_what_it_corrects(
     assert told(bring(any_registry, tmp_path, {"more.csv": CHECKS}, add_to="K1"))[1].startswith("batch fails")
     corrected = {"right.csv": CHECKS.replace("150", "101")}
     report = bring(any_registry, tmp_path, corrected, batch="K1/2", supersede=True)
-    assert told(report)[1:] == ["batch passes (1 of 1 analytes: passes)"]
+    assert told(report)[1:] == ["batch passes for its one analyte judged"]
     with reading(any_registry) as connection:
         assert [batch_state(connection, batch_id) for batch_id in (1, 3)] == ["passes", "passes"]
