@@ -118,7 +118,7 @@ def ask(change: str, code: str) -> Any:
 def do(change: str, code: str) -> Any:
     """Try withdrawing or restoring a batch out, or do it."""
     _found(code)
-    trial = request.form.get("do") == "try"
+    trial = request.form.get("do") != "confirmed"
     asked = change_jobs.start(working.jobs(), change, code, trial=trial)
     return working.answered(asked, _outcome if trial else _back_to_batch)
 

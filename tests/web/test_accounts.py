@@ -224,7 +224,7 @@ def test_accounts_name_stands_with_what_its_owner_did(site: Site) -> None:
                            "seen": "Loss on ignition, remarked above: 3 wt% → 2.5 wt%"},
     )  # fmt: skip
     ask = site.client.get("/batch/withdraw/Q-2041").text
-    site.client.post("/batch/withdraw/Q-2041", data={"csrf_token": field(ask, "csrf_token")})
+    site.client.post("/batch/withdraw/Q-2041", data={"csrf_token": field(ask, "csrf_token"), "do": "confirmed"})
     form = token(site.client, "/import")
     file = (io.BytesIO(b"sample_code,sample_kind\nNEW-1,core\n"), "samples.csv")
     results = (io.BytesIO(b"Sample,SiO2 XRF (%)\nNEW-1,61\n"), "X-1.csv")

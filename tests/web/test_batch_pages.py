@@ -56,7 +56,7 @@ def test_batch_withdrawn_and_restored_tells_first_what_it_touches(site: Site) ->
     assert rows(site, "SELECT state FROM batch") == [("active",)]
     assert rows(site, "SELECT count(*) FROM verdict_change") == [(0,)]
 
-    answer = site.client.post("/batch/withdraw/majors", data=form_fields(page))
+    answer = site.client.post("/batch/withdraw/majors", data=form_fields(page) | {"do": "confirmed"})
     assert (answer.status_code, answer.headers["Location"]) == (303, "/batches/majors")
     page = site.client.get(answer.headers["Location"]).text
     assert "Batch majors is withdrawn: 3 samples recomputed" in page
@@ -64,15 +64,21 @@ def test_batch_withdrawn_and_restored_tells_first_what_it_touches(site: Site) ->
     changed = rows(site, "SELECT count(*) FROM verdict_change")[0][0]
     assert f"{changed} verdict" in page
     assert rows(site, "SELECT sio2_wt FROM composition") == [(None,)] * 3
-    refused = site.client.post("/batch/withdraw/majors", data=form_fields(page))
+    refused = site.client.post("/batch/withdraw/majors", data=form_fields(page) | {"do": "confirmed"})
     assert refused.status_code == 400
     assert "Batch &#39;majors&#39; is withdrawn already; nothing was changed." in refused.text
 
     page = tried(site, "restore")
     assert "<strong>3 samples</strong> are computed anew" in page
-    site.client.post("/batch/restore/majors", data=form_fields(page))
+    site.client.post("/batch/restore/majors", data=form_fields(page) | {"do": "confirmed"})
     assert rows(site, "SELECT state FROM batch") == [("active",)]
     assert rows(site, "SELECT sample_id, target_id, verdict FROM verdict ORDER BY 1, 2") == verdicts
+
+
+def test_batch_change_sent_without_its_button_is_only_tried_out(site: Site) -> None:
+    answer = site.client.post("/batch/withdraw/majors", data=form_fields(tried(site, "withdraw")))
+    assert "nothing is changed yet" in answer.text
+    assert rows(site, "SELECT state FROM batch") == [("active",)]
 
 
 def test_batch_digestions_are_changed_after_confirmation(site: Site) -> None:
@@ -106,7 +112,7 @@ def test_batch_list_says_states_in_words(site: Site) -> None:
     page = site.client.get("/batches").text
     assert '<td data-label="State">in use</td>' in page and 'class="left-out"' not in page
     page = site.client.get("/batch/withdraw/majors").text
-    site.client.post("/batch/withdraw/majors", data=form_fields(page))
+    site.client.post("/batch/withdraw/majors", data=form_fields(page) | {"do": "confirmed"})
     page = site.client.get("/batches").text
     assert '<tr class="left-out">' in page and '<td data-label="State">withdrawn</td>' in page
 
@@ -210,7 +216,7 @@ def test_batch_page_of_a_superseded_certificate_names_the_one_that_counts_in_pla
     assert "This certificate is superseded" in page and "Restore …" not in page
     link = '<a href="/batches/majors%20corrected%202">majors corrected 2</a>'
     assert f"To let it count again, withdraw {link} first." in page
-    site.client.post("/batch/withdraw/majors corrected 2", data=form_fields(page))
+    site.client.post("/batch/withdraw/majors corrected 2", data=form_fields(page) | {"do": "confirmed"})
     page = site.client.get("/batches/majors").text
     assert "Restore …" in page and "first." not in page
 
