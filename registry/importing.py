@@ -115,8 +115,8 @@ def _import(
     on_read: Callable[[Path, Reading], Any] | None,
 ) -> ImportReport:
     readings: list[tuple[Reading, _File]] = []
-    for file in files:
-        progress("reading", len(readings), len(files))
+    for number, file in enumerate(files):
+        progress("reading", number, len(files))
         choice = choices.get(file.path, FileChoice())
         how = choice.reading or ReadingOptions()
         if options.keep_going:

@@ -8,6 +8,7 @@ import subprocess
 import sys
 import threading
 import time
+import zipfile
 from collections.abc import Callable, Iterator
 from pathlib import Path
 from typing import Any
@@ -126,6 +127,37 @@ def test_job_wrong_use_is_a_sentence(jobs: Jobs) -> None:
     import_jobs.store(jobs, draft)
     failed = ended(jobs, draft)
     assert failed.state == "failed" and "names one batch" in failed.sentence
+
+
+def test_job_of_a_file_with_several_tables_and_another_file_names_each_as_it_is_read(
+    jobs: Jobs, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    def packed(path: Path) -> None:
+        with zipfile.ZipFile(path, "w") as archive:
+            for number in range(3):
+                archive.writestr(f"{number}.csv", TEXT.replace("150", f"{150 + number}"))
+
+    draft = create_draft(jobs.folder, [("three.zip", packed), ("r.csv", written(TEXT))])
+    draft.options = {"create_samples": True}
+    said: list[str] = []
+    real = jobs.watched
+
+    def watched(job: Any, say: Any) -> Any:
+        progress = real(job, say)
+
+        def heard(what: str, done: int, total: int) -> None:
+            progress(what, done, total)
+            said.append(job.sentence)
+
+        return heard
+
+    monkeypatch.setattr(jobs, "watched", watched)
+    import_jobs.look(jobs, draft)
+    assert ended(jobs, draft).state == "read"
+    assert [text for text in said if ", file " in text] == [
+        "Reading three.zip, file 1 of 2.",
+        "Reading r.csv, file 2 of 2.",
+    ]
 
 
 def test_job_waits_for_another_writer_and_says_what_holds_the_registry(jobs: Jobs) -> None:
