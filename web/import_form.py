@@ -12,6 +12,7 @@ from werkzeug.datastructures import MultiDict
 from registry.batching import WEIGHED
 from registry.import_drafts import Draft, DraftFile
 from registry.intake_choices import (
+    KIND_NAMES,
     THOUSANDS,
     ColumnWish,
     corrected_recipe,
@@ -86,7 +87,8 @@ def take_choices(file: DraftFile, number: int, form: MultiDict[str, str]) -> boo
         return False
     before = (file.kind, file.recipe, file.sheet, file.negative_means_below, file.positive_dips, file.unit)
     if f"kind-{number}" in form:
-        kind = form.get(f"kind-{number}") or None
+        kind = form.get(f"kind-{number}")
+        kind = kind if kind in KIND_NAMES else None
         if len(file.looked) != 1 or kind != file.looked[0]["kind"]:
             file.kind = kind
     sheet = form.get(f"sheet-{number}") or None
@@ -126,7 +128,9 @@ def _take_recipe(file: DraftFile, number: int, form: MultiDict[str, str]) -> Non
         "sample_header": code_column(file), "separator": recipe.separator or "", "decimal": recipe.decimal or "",
         "thousands": thousands_name(recipe),
     }  # fmt: skip
+    offered = {"separator": SEPARATORS, "decimal": DECIMALS, "thousands": THOUSANDS_WORDS}
     wanted = {name: form.get(f"{name}-{number}", shown[name]) for name in shown}
+    wanted |= {name: shown[name] for name, signs in offered.items() if wanted[name] not in signs}
     if changed or given_up or wanted != shown:
         if len(file.looked) > 1 and wanted["sample_header"] == shown["sample_header"]:
             wanted["sample_header"] = ""  # each table has a column of its own

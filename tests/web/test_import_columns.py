@@ -6,6 +6,8 @@ import json
 import sqlite3
 from typing import Any
 
+import pytest
+
 from registry import reading_recipes
 from tests.web.import_site import Site
 
@@ -197,3 +199,11 @@ def test_import_page_table_whose_headings_name_nothing_is_read_as_the_user_says(
     site.press(later, "use:0")
     site.press(later, "store")
     assert [row[1] for row in stored(site, "more")] == ["SiO2", "Zr"]
+
+
+@pytest.mark.parametrize("field", ["kind", "separator", "decimal", "thousands", "unit", "dips", "sheet"])
+def test_import_form_with_a_choice_that_is_not_offered_is_no_fault_of_the_program(site: Site, field: str) -> None:
+    address = site.send(("r.csv", "Sample,Zr fusion (ppm)\nKD-1,150\n"))
+    site.press(address, "read", **{f"{field}__0": "no such choice"})
+    (draft,) = site.jobs.all()
+    assert draft.state in ("read", "refused"), draft.sentence
