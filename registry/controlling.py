@@ -172,15 +172,18 @@ def read_patterns(connection: Any) -> Patterns:
         raise PlutonbookError(str(fault)) from fault
 
 
-def call_by_patterns(connection: Any, patterns: Patterns | None = None) -> None:
-    """Stale samples of the kind ``unknown`` become the controls that the user's patterns call them."""
+def call_by_patterns(connection: Any, patterns: Patterns | None = None) -> dict[str, list[str]]:
+    """Stale samples of the kind ``unknown`` become the controls that the user's patterns call them: codes by kind."""
     patterns = read_patterns(connection) if patterns is None else patterns
     kinds: dict[str, list[int]] = {}
+    called: dict[str, list[str]] = {}
     for sample_id, code in quality_rows.stale_unknown_samples(connection) if patterns else ():
         kind = patterns.kind_of(code)
         if kind is not None:
             kinds.setdefault(kind, []).append(sample_id)
+            called.setdefault(kind, []).append(code)
     quality_rows.set_kinds(connection, kinds)
+    return called
 
 
 def kinds_of_new(codes: Sequence[str], said: Mapping[str, Spoken], patterns: Patterns) -> dict[str, list[str]]:

@@ -8,6 +8,7 @@ from collections.abc import Callable, Mapping, Sequence
 from typing import Any
 
 from registry import auditing, settings
+from registry.controlling import call_by_patterns
 from registry.errors import PlutonbookError, UsageError
 from registry.judging import CONVENTION_PREFIX
 from registry.petrology.catalogue.conventions import CONVENTIONS
@@ -19,6 +20,8 @@ from registry.store.engine import Registry, reading
 
 #: The settings that hold a code pattern of control samples.
 PATTERNS = tuple(PATTERN_PREFIX + name for name in PATTERN_NAMES)
+#: So many codes of samples that become controls are named, the others counted.
+CODES_NAMED = 5
 
 
 def list_settings(registry: Registry) -> list[dict[str, Any]]:
@@ -72,7 +75,8 @@ def change_settings(
     """Put ``name=value`` settings in force and compute all that hangs on them, in one transaction.
 
     A value left empty gives a convention its default back and takes a pattern away. Returns ``settings`` (what
-    changed, before and after), ``recomputed verdicts_changed changes``. UsageError names every wish that cannot be met.
+    changed, before and after), ``controls`` (``kind samples first`` of the samples that patterns make controls) and
+    ``recomputed verdicts_changed changes kinds``. UsageError names every wish that cannot be met.
     """
     conventions, patterns = _sorted_out(wishes)
     with reading(registry) as connection:
@@ -92,6 +96,8 @@ def change_settings(
     if not changed:
         raise PlutonbookError("these settings stand so already; nothing was changed")
 
+    controls: list[dict[str, Any]] = []
+
     def change(connection: Any) -> None:
         for name, value in values.items():
             target_rows.write_setting(connection, CONVENTION_PREFIX + name, json.dumps(value))
@@ -99,10 +105,37 @@ def change_settings(
             target_rows.write_setting(connection, name, text)
         for name, (was, now) in changed.items():
             auditing.note(connection, "setting", name, f"{was or '(none)'} -> {now or '(none)'}")
+        called = call_by_patterns(connection) if differing else {}
+        for kind, codes in called.items():
+            controls.append({"kind": kind, "samples": len(codes), "first": sorted(codes)[:CODES_NAMED]})
 
     what = ("a trial of " if dry_run else "") + "changing the settings"
     report = recomputed_after(registry, change, what, settings.CAUSE, dry_run, progress=progress, tell=tell)
-    return {"settings": changed, **report}
+    return {"settings": changed, "controls": controls, **report}
+
+
+def controls_in_lines(report: Mapping[str, Any], dry_run: bool) -> list[str]:
+    """What a change of patterns makes of registered samples, in sentences; none where no pattern was changed."""
+    patterns = {name: now for name, (_, now) in report["settings"].items() if name in PATTERNS}
+    lines = []
+    for made in report["controls"]:
+        number, kind = made["samples"], made["kind"].replace("_", " ")
+        became = "would become" if dry_run else "became"
+        judged = "be judged no more" if dry_run else ("is judged no more" if number == 1 else "are judged no more")
+        named = ", ".join(made["first"]) + (
+            f" and {number - len(made['first']):,} more" * (number > len(made["first"]))
+        )
+        what = f"{became} a {kind}" if number == 1 else f"{became} {kind}s"
+        samples = "sample" if number == 1 else "samples"
+        lines.append(f"{number:,} {samples} of unknown kind {what} and {judged}: {named}.")
+    if any(patterns.values()) and not lines:
+        lines.append("No registered sample of unknown kind becomes a control by these patterns.")
+    lines += [
+        f"{name} is taken away; the samples it made controls stay controls: correct their kind in the sample list."
+        for name, now in patterns.items()
+        if not now
+    ]
+    return lines
 
 
 def _sorted_out(wishes: Sequence[str]) -> tuple[dict[str, str], dict[str, str]]:

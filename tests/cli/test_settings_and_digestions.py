@@ -64,6 +64,27 @@ def test_pattern_of_blanks_makes_controls_of_samples_of_unknown_kind(run: Run, p
     assert of_registry(path, "SELECT count(*) FROM stale") == [(0,)]
 
 
+def test_change_of_a_pattern_says_how_many_samples_become_controls(run: Run) -> None:
+    _, tried, _ = run("settings", "control_pattern.blank=^BLK", "control_pattern.duplicate=^B$", "--dry-run")
+    assert "1 sample of unknown kind would become a blank and be judged no more: BLK-1." in tried.splitlines()
+    assert "1 sample of unknown kind would become a duplicate and be judged no more: B." in tried.splitlines()
+    _, printed, _ = run("settings", "control_pattern.blank=^[AB]", "--json")
+    report = json.loads(printed)
+    assert report["controls"] == [{"kind": "blank", "samples": 3, "first": ["A", "B", "BLK-1"]}]
+    _, printed, _ = run("settings", "control_pattern.blank=")
+    assert "the samples it made controls stay controls: correct their kind" in printed
+
+
+def test_change_of_a_pattern_that_no_registered_code_fits_says_so(run: Run) -> None:
+    _, printed, _ = run("settings", "control_pattern.blank=^QQ")
+    assert "No registered sample of unknown kind becomes a control by these patterns." in printed.splitlines()
+
+
+def test_change_of_a_convention_says_nothing_of_controls(run: Run) -> None:
+    _, printed, _ = run("settings", "failed_control=hold")
+    assert "control by" not in printed and "unknown kind" not in printed
+
+
 def test_convention_is_changed_and_given_back_its_default(run: Run) -> None:
     assert run("settings", "failed_control=hold")[0] == 0
     assert "failed_control = hold, by default mark" in run("settings")[1]
