@@ -2,7 +2,9 @@
 
 from __future__ import annotations
 
-from flask import Flask, Response
+from flask import Flask, Response, abort, request
+
+from web.writing import OPEN_ENDPOINTS
 
 #: Start from nothing, add what a page needs. No inline script, no inline style, no frame, no foreign host.
 CONTENT_SECURITY_POLICY = "; ".join(
@@ -37,6 +39,17 @@ def _add_headers(response: Response) -> Response:
     return response
 
 
+def _refuse_nul() -> None:
+    """No name in a registry holds the character NUL, and PostgreSQL takes no text that does."""
+    if "\0" in request.path:
+        abort(404)
+    if request.method == "POST" and request.endpoint not in OPEN_ENDPOINTS:
+        named = [name for name, text in request.form.items(multi=True) if "\0" in text]
+        if named:
+            abort(400, f"Nothing was changed: the field “{named[0]}” holds a character that cannot be typed (NUL).")
+
+
 def protect(app: Flask) -> None:
-    """Add the headers to every answer of ``app``, errors and files included."""
+    """Add the headers to every answer of ``app``, errors and files included; refuse what no registry can hold."""
+    app.before_request(_refuse_nul)
     app.after_request(_add_headers)

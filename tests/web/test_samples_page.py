@@ -172,6 +172,7 @@ def test_samples_numbers_stand_on_their_points(client: FlaskClient) -> None:
         ("text=a&text=b", "“text” was given 2 times"),
         ("text=" + "x" * 300, "search for at most 200"),
         ("text=a%00b", "a character that no code or name can hold"),
+        ("site=a%00b", "a character that no code or name can hold"),
     ],
 )
 def test_samples_bad_condition_gets_a_sentence_and_status_400(client: FlaskClient, query: str, sentence: str) -> None:

@@ -179,3 +179,19 @@ def test_settings_long_pattern_is_told_of_after_it_was_changed(writable: Any, mo
     page = writable.client.get("/settings").text
     assert "Everything was computed anew" in page and pattern in unescape(page)
     assert "Everything was computed anew" not in writable.client.get("/settings").text, "it is told once"
+
+
+@pytest.mark.parametrize(
+    "path", ["/samples/a%00b", "/batches/%00", "/sites/%00", "/intrusions/%00", "/edit/sample/%00"]
+)
+def test_address_with_a_character_that_no_name_holds_is_not_found(writable: Any, path: str) -> None:
+    """PostgreSQL takes no text with NUL, so that the registry must not be asked."""
+    assert writable.client.get(path).status_code == 404
+
+
+def test_form_with_a_character_that_cannot_be_typed_is_refused(writable: Any) -> None:
+    kept = contents(writable)
+    answer = writable.post("/settings", **{"control_pattern.blank": "a\0b"})
+    assert answer.status_code == 400
+    assert "the field “control_pattern.blank” holds a character that cannot be typed" in answer.text
+    assert contents(writable) == kept

@@ -122,6 +122,10 @@ def _words(
     return tuple(value for value in values if value in known)
 
 
+#: What is said of the character NUL, which no text of PostgreSQL can hold.
+_UNTYPEABLE = "The words hold a character that no code or name can hold; type them again."
+
+
 def _unknown_column(name: str, columns: Columns) -> str:
     near = [column for column in columns if name and (name in column or column in name)][:3]
     hint = f"; near it are {', '.join(near)}" if near else "; the page Methods lists them"
@@ -221,7 +225,7 @@ def parse_filter(
         problems["text"] = f"The words are {len(words)} characters long; search for at most {LONGEST_TEXT}."
         words = ""
     if "\x00" in words:
-        problems["text"] = "The words hold a character that no code or name can hold; type them again."
+        problems["text"] = _UNTYPEABLE
         words = ""
     targets_asked = _words(arguments, "target", targets, "target", problems)
     if len(targets_asked) > 1:
@@ -237,6 +241,8 @@ def parse_filter(
         name: tuple(dict.fromkeys(value.strip() for value in arguments.get(name, ()) if value.strip()))
         for name in NAMED
     }
+    for name in [name for name, values in named.items() if any("\x00" in value for value in values)]:
+        problems[name], named[name] = _UNTYPEABLE, ()
     return Filter(
         text=words,
         **named,
