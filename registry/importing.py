@@ -20,7 +20,7 @@ from registry.importing_codes import almost_known, unknown_codes
 from registry.importing_controls import called_otherwise
 from registry.importing_faults import Rest, prefixed
 from registry.importing_lines import resolve
-from registry.importing_results import StoredBatch, store_results
+from registry.importing_results import StoredBatch, on_parts_left, store_results
 from registry.intake import KINDS, MasterTable, Reading, ReadingOptions
 from registry.intake_choices import described_columns
 from registry.keeping_going import SetAside
@@ -178,6 +178,9 @@ def _store(
     for report, one in zip(reports, earlier, strict=True):
         if one is not None and report.results is not None:
             report.precedence = look_after(connection, one, [report.results.batch])
+    for report in reports:
+        if report.results is not None and report.results.stored is not None:
+            report.results.remarks += on_parts_left(connection, report.results.stored)
     for report, aside in zip(reports, asides, strict=True):
         if aside is not None and aside.reasons:
             report.refused = len(aside.reasons)

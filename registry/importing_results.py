@@ -34,11 +34,14 @@ LINES_AT_A_TIME = 8192
 
 @dataclass(frozen=True)
 class StoredBatch:
-    """The batch that a table of results was stored as, and the id of the whole certificate that it is a part of."""
+    """The batch that a table of results was stored as; the ids of the whole certificate that it is a part of, and of
+    the batch that its file corrects.
+    """
 
     batch_id: int
     code: str
     whole: int
+    supersedes: int | None = None
 
 
 @dataclass
@@ -138,18 +141,38 @@ def store_results(
         for chunk, outcome in computations:
             write(chunk, outcome)
         ready_rows.let_go(connection)
+    supersedes = place.supersedes if within is None else within.supersedes
     if place.supersedes is not None:  # first, so that its controls judge nothing any more
         batches.supersede(connection, place.supersedes, batch_id)
+    elif supersedes is not None:
+        batches.supersede_parts(connection, supersedes, batch_id)
     report.controls = controlling.assess_imported(connection, batch_id, lines.controlled)
     for ids in raw_parts(np.setdiff1d(lines.sample_ids, fresh_ids)):
         stale.mark(connection, ids.tolist(), stale.DERIVE)
     report.remarks = [*_laboratories(table, options.lab, place), *columns_that_disagree(table)]
-    report.stored = StoredBatch(batch_id, place.code, place.part_of or batch_id)
+    report.stored = StoredBatch(batch_id, place.code, place.part_of or batch_id, supersedes)
     return report, fresh_ids, []
 
 
 def _count(number: int, word: str) -> str:
     return f"{number:,} {word}" if number == 1 else f"{number:,} {word}s"
+
+
+def on_parts_left(connection: Any, stored: StoredBatch) -> list[str]:
+    """Sentences on the parts of a corrected certificate that the correction does not touch."""
+    if stored.supersedes is None:
+        return []
+    own = {stored.batch_id, *batches.further_tables(connection, stored.batch_id)}
+    left = [code for batch_id, code in batches.parts_in_use(connection, stored.supersedes) if batch_id not in own]
+    if not left:
+        return []
+    named = f"'{left[0]}'" if len(left) == 1 else ", ".join(f"'{code}'" for code in left[:-1]) + f" and '{left[-1]}'"
+    one = len(left) == 1
+    return [
+        f"{named}, {'a part' if one else 'parts'} of the corrected certificate, {'reports' if one else 'report'} other "
+        f"analytes than this file and {'stays' if one else 'stay'} in use; if {'it is' if one else 'they are'} wrong "
+        "too, withdraw or supersede by code"
+    ]
 
 
 def _laboratories(table: ResultTable, lab: str | None, place: Place) -> list[str]:

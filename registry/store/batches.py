@@ -141,11 +141,36 @@ def further_tables(connection: sa.Connection, batch_id: int) -> list[int]:
 
 
 def supersede(connection: sa.Connection, batch_id: int, successor_id: int) -> None:
-    """Let a corrected certificate take the place of a batch and its parts."""
+    """Let a corrected certificate take the place of a batch, and of its parts as ``supersede_parts`` says."""
     earlier = lineage(connection, batch_id)
-    set_state(connection, batch_id, "superseded")
-    connection.execute(sa.update(_batch).where(_batch.c.batch_id == batch_id).values(superseded_by=successor_id))
+    values = {"state": "superseded", "superseded_by": successor_id}
+    connection.execute(sa.update(_batch).where(_batch.c.batch_id == batch_id).values(**values))
+    supersede_parts(connection, batch_id, successor_id)
     _put_before(connection, successor_id, earlier)
+
+
+def supersede_parts(connection: sa.Connection, batch_id: int, successor_id: int) -> None:
+    """Let a table of a corrected certificate take the place of those active parts of a batch that it corrects.
+
+    It corrects a part where it reports half of the part's analytes or more: a correction of the majors leaves the
+    traces, which came as another file, in use.
+    """
+    brought = set(connection.scalars(sa.select(_column.c.analyte).where(_column.c.batch_id == successor_id)))
+    own = [*lineage(connection, batch_id), *further_tables(connection, batch_id)]
+    belongs = sa.or_(_batch.c.part_of.in_(own), _batch.c.batch_id.in_(own))
+    mine = [successor_id, *further_tables(connection, successor_id)]
+    others = sa.and_(belongs, _batch.c.state == "active", _batch.c.batch_id.not_in(mine))
+    for part in connection.scalars(sa.select(_batch.c.batch_id).where(others)).all():
+        held = set(connection.scalars(sa.select(_column.c.analyte).where(_column.c.batch_id == part)))
+        if 2 * len(held & brought) >= len(held):
+            connection.execute(sa.update(_batch).where(_batch.c.batch_id == part).values(state="superseded"))
+
+
+def parts_in_use(connection: sa.Connection, batch_id: int) -> list[tuple[int, str]]:
+    """Ids and codes of the active parts of a batch and of those it took the place of, oldest first."""
+    active = sa.and_(_batch.c.part_of.in_(lineage(connection, batch_id)), _batch.c.state == "active")
+    query = sa.select(_batch.c.batch_id, _batch.c.code).where(active).order_by(_batch.c.batch_id)
+    return [(row[0], row[1]) for row in connection.execute(query)]
 
 
 def lineage(connection: sa.Connection, batch_id: int) -> list[int]:
