@@ -10,7 +10,7 @@ from registry.intake.cells import NUMBER, TEXT, parse_cell
 from registry.intake.findings import Findings
 from registry.intake.methods import digestion_in, may_be_method
 from registry.intake.names import Heading, read_heading
-from registry.intake.units import canonical_unit, spelt_like_a_unit, split_unit
+from registry.intake.units import canonical_unit, foreign_unit, spelt_like_a_unit, split_unit
 
 #: What a heading row holds.
 UNIT, METHOD, LOWER, UPPER, ANALYTE, LABELS = (
@@ -106,4 +106,5 @@ def unknown_unit(heading: str) -> str | None:
     if bracket:
         return None if may_be_method(bracket.group(1)) else bracket.group(1).strip()
     words = re.split(r"[\s_]+", heading.strip())
-    return words[-1] if len(words) > 1 and spelt_like_a_unit(words[-1]) else None
+    last = words[-1] if len(words) > 1 else ""
+    return last if len(last) > 2 and (spelt_like_a_unit(last) or foreign_unit(last)) else None

@@ -21,7 +21,7 @@ _SPELLINGS = {
 _CANONICAL = {spelling: unit for unit, words in _SPELLINGS.items() for spelling in words.split()}
 #: Looks like a unit of something, though not one of a mass fraction that the register takes.
 _FOREIGN = re.compile(
-    r"(mg|ug|ng|g|mol|mmol|umol)/(l|ml|cm3|m3|kg|g|mol)|mol%|at%|vol%|v%|cps|counts?|cpm|bq/kg|permil|‰|m|cm|mm|ft|si"
+    r"(mg|ug|ng|g|mol|mmol|umol)/(l|ml|cm3|m3|kg|g|mol)|mol%|at%|vol%|v%|[kmg]?cps|k?counts?(persecond)?|k?cpm|bq/kg|permil|‰|m|cm|mm|ft|si"
     r"|kg|g|lbs?|degc|°c|atom%|pg/l"
 )
 

@@ -223,3 +223,10 @@ def test_unit_that_is_not_known_in_a_long_table_is_a_problem(text):
     (problem,) = [one for one in read(text).problems if one.severity == "problem"]
     assert problem.what == "the unit is not known" and problem.found == "furlong"
     assert read(text.replace("furlong", "%")).ok
+
+
+@pytest.mark.parametrize("heading", ["Nb kcps", "Nb (kcps)", "Nb Mcps", "Nb mg/L"])
+def test_counts_and_other_units_behind_an_analyte_are_a_problem_and_no_method(heading: str) -> None:
+    reading = read_file("k.csv", f"Sample,SiO2 (%),{heading}\nA,60,3\nB,61,4\n".encode())
+    (problem,) = [problem for problem in reading.problems if problem.severity == "problem"]
+    assert "the unit is not" in problem.what and problem.column == heading

@@ -101,7 +101,10 @@ CONVENTION_GROUPS: tuple[tuple[str, tuple[Convention, ...]], ...] = (
             _number("total_warn_high_wt", "wt%", 100.0, 115.0, "A total above it is remarked on."),
             _number("total_fail_low_wt", "wt%", 80.0, 100.0, "A total below it makes the analysis unfit."),
             _number("total_fail_high_wt", "wt%", 100.0, 115.0, "A total above it makes the analysis unfit."),
-            _number("loi_warn_wt", "wt%", 0.0, 30.0, "A loss on ignition above it is remarked on."),
+            _number(
+                "loi_warn_wt", "wt%", 0.0, 30.0,
+                "A loss on ignition above it is remarked on, and iron is then no evidence of redox: verdicts can turn.",
+            ),
             _number("loi_fail_wt", "wt%", 0.0, 50.0, "A loss on ignition above it makes the analysis unfit."),
             _number(
                 "loi_exempt_mgo_vf_wt", "wt%", 0.0, 60.0,
