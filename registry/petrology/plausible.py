@@ -21,6 +21,10 @@ PLAUSIBLE_PPM: dict[str, tuple[float, float]] = {
     "Tm": (0.005, 500.0), "Yb": (0.03, 1_000.0), "Lu": (0.004, 300.0), "Hf": (0.02, 2_000.0), "Ta": (0.003, 30_000.0),
     "Th": (0.005, 100_000.0), "U": (0.002, 300_000.0),
 }  # fmt: skip
+#: The least of a major oxide, wt%, that half of the samples of a batch hold in all but ores and carbonate rocks.
+LEAST_MAJOR_WT = {
+    "SiO2": 2.0, "Al2O3": 0.05, "Fe2O3T": 0.02, "MgO": 0.003, "CaO": 0.003, "Na2O": 0.003, "K2O": 0.001, "TiO2": 0.001,
+}  # fmt: skip
 #: The traces that verdicts rest on: each has a remark of its own on the sample.
 JUDGED_BY_TRACES = ("Sr", "Y", "La", "Yb", "Rb", "Nb", "Ta", "Zr", "Hf", "Th", "U", "V", "Sc")
 

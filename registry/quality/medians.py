@@ -7,7 +7,7 @@ from typing import Any
 
 import numpy as np
 
-from registry.petrology.plausible import PLAUSIBLE_PPM, is_implausible
+from registry.petrology.plausible import LEAST_MAJOR_WT, PLAUSIBLE_PPM, is_implausible
 from registry.quality.assessment import Column, carried_wholly
 from registry.quality.substances import conversion, substance
 
@@ -28,6 +28,7 @@ def implausible_columns(columns: Sequence[Column], values: Any, qualifiers: Any)
     sio2 = _median_wt(columns, values, qualifiers, "Si", "SiO2")
     told = []
     for place, column in enumerate(columns):
+        told += _too_little(column, place, values, qualifiers, reports_silica)
         element = substance(column.analyte)[0]
         factor = conversion(column.analyte, column.unit, element, "ppm") if column.unit else None
         if element not in PLAUSIBLE_PPM or factor is None:
@@ -45,6 +46,25 @@ def implausible_columns(columns: Sequence[Column], values: Any, qualifiers: Any)
                 "Verdicts on these samples rest on it"
             )
     return told
+
+
+def _too_little(column: Column, place: int, values: Any, qualifiers: Any, reports_silica: bool) -> list[str]:
+    """A sentence on a column of a major oxide, or of its metal, of which the median is next to nothing."""
+    if not column.unit or not carried_wholly(column, reports_silica):
+        return []
+    for oxide, least in LEAST_MAJOR_WT.items():
+        factor = conversion(column.analyte, column.unit, oxide, "wt%")
+        if factor is None:
+            continue
+        median = _median(values, qualifiers, place)
+        if median * factor >= least or np.isnan(median):
+            return []
+        return [
+            f"{column.analyte} ({column.unit}): the median is {median:.4g} {column.unit}, {median * factor:.2g} wt% of "
+            f"{oxide}; all but ores and carbonates hold more than {least:g} wt%: is the unit %, or a fraction of one? "
+            "Verdicts on these samples rest on it"
+        ]
+    return []
 
 
 def _plain(number: float) -> str:

@@ -161,3 +161,19 @@ def test_medians_of_peridotite_may_be_low() -> None:
     columns = [Column(1, "Y", "ppm", "fusion", None), Column(2, "MgO", "wt%", "fusion", None)]
     values = np.array([[0.04, 42.0]] * 3)
     assert implausible_columns(columns, values, np.zeros(values.shape, dtype=np.uint8)) == []
+
+
+def test_majors_in_the_wrong_unit_or_as_fractions_are_told_once_a_column() -> None:
+    """G-2: SiO2 69.14, K2O 4.48, MgO 0.75 wt% (Govindaraju 1994; from memory)."""
+    names = ("SiO2", "K2O", "MgO")
+    values = np.array([[69.14, 4.48, 0.75]] * 3)
+    signs = np.zeros(values.shape, dtype=np.uint8)
+
+    def told_of(unit: str, factor: float = 1.0, digestion: str = "xrf") -> list[str]:
+        columns = [Column(place, name, unit, digestion, None) for place, name in enumerate(names)]
+        return [sentence.split(":")[0] for sentence in implausible_columns(columns, values * factor, signs)]
+
+    assert told_of("wt%") == [] and told_of("ppm", 1e4) == []
+    assert told_of("ppm") == ["SiO2 (ppm)", "K2O (ppm)", "MgO (ppm)"]
+    assert told_of("wt%", 0.01) == ["SiO2 (wt%)"]
+    assert told_of("ppm", digestion="aqua_regia") == []
