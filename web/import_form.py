@@ -182,7 +182,7 @@ def spare_columns(file: DraftFile, table: int) -> list[dict[str, Any]]:
     return unread_columns(file.looked[table], shown_columns(file, table))
 
 
-def column_words(header: str) -> str:
+def heading_words(header: str) -> str:
     """What a column is called on the page: its heading, or its number where it has none."""
     return f"column {header[1:]}, without heading" if re.fullmatch(r"#\d+", header) else header or "without heading"
 

@@ -37,7 +37,7 @@ def register(app: Flask) -> None:
     # a table of 2,000 columns has some 12,000 fields
     app.config["MAX_FORM_PARTS"] = 50_000
     app.config["MAX_FORM_MEMORY_SIZE"] = 8 * 1024 * 1024
-    app.jinja_env.filters["column_words"] = import_form.column_words
+    app.jinja_env.filters["heading_words"] = import_form.heading_words
     app.jinja_env.filters["page_words"] = import_form.page_words
     app.jinja_env.filters["grouped_problems"] = import_form.grouped_problems
     app.jinja_env.filters["precedence_words"] = import_form.precedence_words

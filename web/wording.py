@@ -6,6 +6,7 @@ import re
 from collections.abc import Mapping, Sequence
 
 from flask import Flask
+from markupsafe import Markup
 
 from registry.store.reading.columns import Columns
 from registry.store.reading.filters import SCORE, Filter, Range, number_text
@@ -33,6 +34,8 @@ VIEW_WORDS = {
 #: Oxides whose figures are set below the line.
 _OXIDE = re.compile(r"\b(?:SiO2|TiO2|Al2O3|Fe2O3T?|Na2O|K2O|P2O5|Cr2O3|V2O3|V2O5|ZrO2|Li2O|CO2|SO3|H2O)(?![a-z0-9])")
 _LOWERED = str.maketrans("0123456789", "₀₁₂₃₄₅₆₇₈₉")
+_RAISED = str.maketrans("0123456789-", "⁰¹²³⁴⁵⁶⁷⁸⁹⁻")
+_EXPONENT = re.compile(r"(?<![\w.])(?<!\w-)(?P<mantissa>\d+(?:\.\d+)?)e(?P<exponent>[-+]?\d+)\b")
 _COLUMN = re.compile(r"\b[a-z][a-z0-9]*(?:_[a-z0-9]+)+\b")
 _SPELLINGS = {
     "sio2": "SiO2", "tio2": "TiO2", "al2o3": "Al2O3", "fe2o3": "Fe2O3", "fe2o3t": "total Fe2O3", "feo": "FeO",
@@ -82,6 +85,24 @@ def column_words(name: str) -> str:
     return formula(spelled) + (" volatile-free" if closed else "")
 
 
+def powers_of_ten(text: str) -> str:
+    """Numbers such as ``2.215e-05`` as a person writes them, with at most three digits before the sign of times."""
+
+    def spelled(found: re.Match[str]) -> str:
+        value, exponent = float(found["mantissa"]), int(found["exponent"])
+        power = f"10{str(exponent).translate(_RAISED)}"
+        return power if found["mantissa"] == "1" else f"{value:.3g} \N{MULTIPLICATION SIGN} {power}"
+
+    return _EXPONENT.sub(spelled, text)
+
+
+def marked(text: str) -> Markup:
+    """A text of the dictionary as HTML: column names and code words set as code, formulas and powers in print."""
+    printed = powers_of_ten(formula(text))
+    parts = re.split(r"(\w*[A-Za-z0-9]_\w+)", printed)
+    return Markup("").join(Markup("<code>{}</code>").format(part) if n % 2 else part for n, part in enumerate(parts))
+
+
 def readable(text: str) -> str:
     """A test or sentence in print: ``≥ 35``, ``≤ 0.5 La``, ``from 40 to 88``, ``is magnetite``; no column names."""
     if text.startswith("between "):
@@ -92,6 +113,7 @@ def readable(text: str) -> str:
         return "is " + text.removeprefix("= ").replace(", ", " or ")
     for written, printed in _PRINTED:
         text = text.replace(written, printed)
+    text = powers_of_ten(text)
     text = re.sub(r"([≥≤<>]) (?=[\d-])", "\\1\N{NO-BREAK SPACE}", text)
     return formula(_COLUMN.sub(lambda found: column_words(found.group()), text))
 
@@ -145,6 +167,7 @@ def register(app: Flask) -> None:
     """Make the spellings known to the templates."""
     app.jinja_env.filters.update(
         formula=formula,
+        marked=marked,
         column_words=column_words,
         readable=readable,
         unit_words=unit_words,

@@ -8,12 +8,20 @@ from __future__ import annotations
 from collections.abc import Mapping, Sequence
 from typing import Any
 
-from registry.petrology.analytes import CHOSEN_COLUMNS, IRON_COLUMNS
+from registry.petrology.analytes import (
+    CHOSEN_COLUMNS,
+    ELEMENT_COLUMNS,
+    ELEMENT_SYMBOLS,
+    IRON_COLUMNS,
+    OXIDE_COLUMNS,
+    OXIDE_SYMBOLS,
+)
 from registry.store.column_meanings import BY_VIEW, MEANINGS
 from registry.store.sheets import SHEETS
 
 AS_ENTERED = "as entered"
 _AS_ANALYSED = "as reported by the laboratory, chosen by digestion and then the newest batch, converted to this unit"
+_SYMBOLS = dict(zip((*OXIDE_COLUMNS, *ELEMENT_COLUMNS), (*OXIDE_SYMBOLS, *ELEMENT_SYMBOLS), strict=True))
 #: Longest suffix first.
 UNITS_BY_SUFFIX = {
     "_log10_pa_s": "log10(Pa s)",
@@ -82,5 +90,4 @@ def _analysed(column: str) -> str:
         return "ferrous iron by titration"
     if column in IRON_COLUMNS:
         return "iron as reported"
-    symbol = column.removesuffix("_wt").removesuffix("_ppm")
-    return f"{symbol} as analysed; below or above a limit, the limit itself (see censored)"
+    return f"{_SYMBOLS[column]} as analysed; below or above a limit, the limit itself (see censored)"

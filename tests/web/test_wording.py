@@ -6,7 +6,7 @@ import pytest
 
 from web.numbers import MINUS, TIMES, aligned, counted, derived, grouped, reported
 from web.pictures import MINERALS, minerals_of, norm_segments
-from web.wording import column_letters, column_words, formula, joined, readable, short_source, unit_of_column
+from web.wording import column_letters, column_words, formula, joined, marked, readable, short_source, unit_of_column
 
 
 @pytest.mark.parametrize(
@@ -61,6 +61,9 @@ def test_column_name_is_said_in_words(name: str, words: str) -> None:
     [
         (">= 35", "≥\N{NO-BREAK SPACE}35"), ("between 40 and 88", "from 40 to 88"), ("= magnetite", "is magnetite"),
         ("= yes", "yes"), ("<= 0.5 la_ppm", "≤\N{NO-BREAK SPACE}0.5 La"), ("61 +- 3 Ma", "61 ± 3 Ma"),
+        ("2.217e-05 to 2.333e-05", f"2.22 {TIMES} 10⁻⁵ to 2.33 {TIMES} 10⁻⁵"),
+        ("it keeps 4.749e-12", f"it keeps 4.75 {TIMES} 10⁻¹²"),
+        ("at 1e-5 and 1e4/T, Fe2O3 of A-2e5", "at 10⁻⁵ and 10⁴/T, Fe₂O₃ of A-2e5"),
         ("mgo_vf_wt is 1.9", "MgO volatile-free is 1.9"),
     ],
 )  # fmt: skip
@@ -84,6 +87,10 @@ def test_test_of_a_target_is_printed_without_code(written: str, printed: str) ->
 )
 def test_citation_is_shortened_to_names_and_year(source: str, short: str) -> None:
     assert short_source(source) == short
+
+
+def test_marked_text_sets_names_as_code_and_escapes_the_rest() -> None:
+    assert marked("why liquidus_c < 3e-3 & SiO2") == f"why <code>liquidus_c</code> &lt; 3 {TIMES} 10⁻³ &amp; SiO₂"
 
 
 def test_formula_lowers_figures_of_oxides_only() -> None:
