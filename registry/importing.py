@@ -16,7 +16,12 @@ from registry.computing import child_at_hand
 from registry.errors import InputProblems, Problem, UsageError
 from registry.import_reports import FileReport, ImportReport, counted, understood_of
 from registry.importing_certificates import store_certificates
-from registry.importing_codes import almost_known, unknown_codes
+from registry.importing_codes import (
+    almost_known,
+    on_named_like_materials,
+    rocks_named_like_materials,
+    unknown_codes,
+)
 from registry.importing_controls import called_otherwise
 from registry.importing_faults import Rest, prefixed
 from registry.importing_lines import resolve
@@ -217,12 +222,16 @@ def _store_one(
             report.alternatives = alternatives_within(reading.results)
         if options.create_samples:
             report.on_storing += almost_known(connection, reading, options.code_prefix)
+        rocks_before = rocks_named_like_materials(connection) if options.create_samples else set()
         report.results, done, faults = store_results(
             connection, reading, contents.file, options, progress, contents.batch
         )
         contents.batch = contents.batch or report.results.stored
         if not faults:
             report.results.remarks += called_otherwise(connection, reading.results, options.code_prefix)
+            if options.create_samples:
+                added = rocks_named_like_materials(connection) - rocks_before
+                report.on_storing += on_named_like_materials(reading.file, added)
         return report, done, faults
     table = reading.master
     assert table is not None

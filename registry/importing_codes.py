@@ -12,7 +12,7 @@ from typing import Any
 from registry.errors import Problem
 from registry.intake import Reading, ResultTable
 from registry.intake.spooled import parts_of
-from registry.store import masters
+from registry.store import masters, reference_values
 from registry.store.near_codes import KnownCodes, pattern_of
 
 #: Remarks on almost equal sample codes that are listed one by one; unknown codes, before the rest is counted.
@@ -22,10 +22,10 @@ LISTED_CODES, UNKNOWN_LISTED = 20, 5
 def unknown_codes(connection: Any, file: str, table: ResultTable, prefix: str = "") -> Iterator[Problem]:
     """One problem a line whose sample code is not in the registry, with a near code where there is one.
 
-    Near codes are looked for the first ``LISTED_CODES`` of them.
+    Near codes are looked for the first few of them, those that are listed one by one.
     """
     lines = _unknown_lines(connection, table, prefix)
-    first = list(islice(lines, LISTED_CODES))
+    first = list(islice(lines, UNKNOWN_LISTED + 1))
     near = masters.near_codes(connection, [code for _, code in first])
     for position, code in chain(first, lines):
         yield Problem(
@@ -81,6 +81,29 @@ def almost_known(connection: Any, reading: Reading, prefix: str) -> list[Problem
         if len(remarks) >= LISTED_CODES:
             break
     return remarks[:LISTED_CODES]
+
+
+def rocks_named_like_materials(connection: Any) -> set[str]:
+    """Codes of samples of the kind 'unknown' that are names of reference materials of the registry."""
+    known = masters.sample_ids(connection, reference_values.material_names(connection))
+    rocks = set(masters.samples_of_kinds(connection, ("unknown",)).tolist()) if known else set()
+    return {code for code, sample_id in known.items() if sample_id in rocks}
+
+
+def on_named_like_materials(file: str, codes: Iterable[str]) -> list[Problem]:
+    """Remarks on samples that were just added as rocks although they have the names of reference materials."""
+    return [
+        Problem(
+            file,
+            "a sample with the name of a reference material was added as a rock of the kind 'unknown'",
+            found=code,
+            expected="the kind reference_material",
+            remedy="give it that kind in the sample list, or name such codes with 'plutonbook settings "
+            "control_pattern.reference_material=...'",
+            severity="warning",
+        )
+        for code in sorted(codes)
+    ]
 
 
 def _unknown_lines(connection: Any, table: ResultTable, prefix: str) -> Iterator[tuple[int, str]]:

@@ -94,3 +94,15 @@ def test_check_finds_control_rows_without_their_line_or_column(
         found = [one for one in findings(connection) if one["subject"] == subject]
     assert len(found) == 1
     assert words in found[0]["found"]
+
+
+def test_new_rock_with_the_name_of_a_reference_material_is_remarked_on_once(
+    founded_registry: Registry, tmp_path: Path
+) -> None:
+    """BHVO-2 ships with the registry; the numbers are invented."""
+    text = "Sample,SiO2 (%),MgO (%)\nA1,60,2\nBHVO-2,49.9,7.2\n"
+    for number in (1, 2):
+        (tmp_path / f"{number}.csv").write_text(text.replace("60", f"6{number}"))
+        report = import_files(founded_registry, [tmp_path / f"{number}.csv"], ImportOptions(create_samples=True))
+        told = [remark for remark in report.files[0].on_storing if "name of a reference material" in remark.what]
+        assert [remark.found for remark in told] == (["BHVO-2"] if number == 1 else [])
