@@ -84,6 +84,11 @@ def fit_precision(a: ArrayLike, b: ArrayLike) -> PrecisionFit | None:
     return PrecisionFit(line.intercept, line.slope, len(first), groups, line)
 
 
+#: A pair so many times as far apart as the 99th percentile line is no matter of precision. No source: common practice.
+GROSS_LINES = 2.0
+_EXCHANGED = ", and by more than twice: were two samples exchanged, or is one a nugget?"
+
+
 @dataclass(frozen=True)
 class PairResult:
     """Pairs (n,): their mean, signed difference over its standard deviation, and which exceed the percentile lines.
@@ -154,13 +159,14 @@ def judge_duplicates(
     states = np.where(plain, np.where(pairs.above_ninety_ninth, WARNED, PASSED), NOT_JUDGED).astype(np.uint8)
     apart = there & censored & _apart(original, original_signs, found, found_signs) & pairs.above_ninety_ninth
     states[apart] = WARNED
+    grossly = np.abs(pairs.z) * math.sqrt(2.0) > GROSS_LINES * NINETY_NINTH
     rules = np.full(original.shape, None, dtype=object)
     rules[there & censored] = "outside the laboratory's limits"
     rules[there & ~censored & ~plain] = "neither a detection limit nor a result above 0 says how far apart they may lie"
     for place in np.flatnonzero(plain & pairs.above_ninety_ninth).tolist():
         rules[place] = (
             f"half relative difference {pairs.half_difference[place]:.3g} %: beyond the line that 99 % of "
-            f"pairs keep at a precision of {200.0 * k[place]:g} %"
+            f"pairs keep at a precision of {200.0 * k[place]:g} %{_EXCHANGED if grossly[place] else ''}"
         )
     for place in np.flatnonzero(apart).tolist():
         rules[place] = (

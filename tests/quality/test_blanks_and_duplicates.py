@@ -164,3 +164,14 @@ def test_bias_is_the_mean_with_its_standard_error() -> None:
     found = bias([2.0, 4.0, 6.0, np.nan])
     np.testing.assert_allclose([4.0, 2.0 / np.sqrt(3.0)], [found.mean, found.error])
     assert np.isnan(bias([1.0]).error)
+
+
+def test_pair_grossly_apart_asks_whether_samples_were_exchanged() -> None:
+    """Invented copper results of field duplicates: 20 against 26 is poor, 20 against 8450 is no matter of precision."""
+    plain = np.zeros(3, dtype=np.uint8)
+    found = judge_duplicates(
+        np.array([20.0, 20.0, 20.0]), plain, np.array([21.0, 45.0, 8450.0]), plain, 1.0, ["field"] * 3
+    )
+    asked = ["exchanged" in (rule or "") for rule in found.rules]
+    assert asked == [False, False, True]
+    assert found.states.tolist() == [PASSED, WARNED, WARNED]
