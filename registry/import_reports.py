@@ -89,7 +89,11 @@ class FileReport:
         if self.refused_file is None:
             return ""
         text = f", saved with the reasons in {self.refused_file}; correct them there and import that file"
-        return text if self.results is None else f"{text} with --add-to '{self.results.batch}'"
+        return (
+            text
+            if self.results is None
+            else f"{text} with --add-to '{self.results.batch}', and with the options that said how this one is read"
+        )
 
     def noted(self) -> tuple[str, str] | None:
         """What the log of changes says of it, as (subject, detail); None where nothing was stored."""

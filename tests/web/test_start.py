@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import re
 from html import unescape
+from itertools import pairwise
 from typing import Any
 
 from flask.testing import FlaskClient
@@ -43,9 +44,12 @@ def test_start_page_tells_what_is_lacking_worth_most_first_and_what_has_no_resul
     text = words(client.get("/").text)
     assert "2 samples that no laboratory has reported on" in text
     part = text[text.index("To determine next, worth most first") :]
-    assert re.search(r"W by fusion ICP-MS.*?: worth [\d ]+ points in \d+ undecided verdicts? for granite-related", part)
-    shown = [int(re.sub(r"\D", "", number)) for number in re.findall(r": worth ([\d ]+) points? in", part)]
-    assert len(shown) > 1 and shown == sorted(shown, reverse=True)
+    told = r": open in (\d+) undecided verdicts? for granite-related[^:]*?, (\d+) of 100 points in each"
+    assert re.search(f"W by fusion ICP-MS[^:]*{told}", part)
+    shown = re.findall(r": open in (\d+) undecided verdicts? for [^:]*?, (\d+) of 100 points in each", part)
+    worth = [int(verdicts) * int(points) for verdicts, points in shown]
+    rounding = max(int(verdicts) for verdicts, _ in shown)
+    assert len(worth) > 1 and all(later <= earlier + rounding for earlier, later in pairwise(worth))
 
 
 def test_start_page_shows_failed_controls_and_last_batches(writable: Any) -> None:
