@@ -16,12 +16,13 @@ from registry.store.reading import targets as targets_reading
 from registry.store.reading.doubts import doubted_samples
 from registry.store.sheets import VERDICT_WORDS
 from registry.targets.definition import Criterion, TargetDefinition
+from registry.targets.redox_words import REMEDIES
 
 #: Best samples named for each target.
 BEST_NAMED = 3
 #: Favourable samples come before possible ones, and those before all others, which only their scores tell apart.
 _RANK = {0: 0, 1: 1, 2: 2, 3: 2}
-_LACKING = re.compile(rf'"(\d+)":"{MISSING}([^"]*)"')
+_LACKING = re.compile(rf'"(\d+)":"(?:{MISSING}([^"]*)|({"|".join(map(re.escape, REMEDIES))}))"')
 _CAUSE = re.compile(r'"cause":"([^"]*)"')
 
 
@@ -172,6 +173,7 @@ def lacking_of(
     """What the samples of these packed reasons lack, worth most first, and the causes of not being judged with counts.
 
     The points of a criterion count once for each thing it lacks in a sample, as on the page of the sample itself.
+    Where something was measured and does not tell, it is named by the ground, with the remedy for that.
     """
     weights = {
         position: item.weight if isinstance(item, Criterion) else 0 for position, item in enumerate(definition.tests)
@@ -181,14 +183,17 @@ def lacking_of(
     causes: Counter[str] = Counter()
     for packed in reasons:
         named: set[str] = set()
-        for position, names in _LACKING.findall(packed):
-            for name in names.split(", "):
+        for position, names, ground in _LACKING.findall(packed):
+            for name in (ground,) if ground else names.split(", "):
                 points[name] += weights.get(int(position), 0)
                 named.add(name)
         samples.update(named)
         if cause := _CAUSE.search(packed):
             causes[cause.group(1)] += 1
-    lacking = [Lacking(name, definition.supply.get(name, ""), samples[name], points[name]) for name in samples]
+    lacking = [
+        Lacking(name, REMEDIES.get(name) or definition.supply.get(name, ""), samples[name], points[name])
+        for name in samples
+    ]
     lacking.sort(key=lambda one: (-one.points, -one.samples, one.name))
     return tuple(lacking), tuple(causes.most_common())
 
@@ -205,13 +210,17 @@ class Open:
 
 
 def dearest_lacking(parts: Iterable[tuple[str, TargetDefinition, Sequence[str]]]) -> list[Open]:
-    """What the undecided verdicts lack over all targets, worth most first; ``parts``: (name, definition, reasons)."""
+    """What the undecided verdicts lack over all targets, worth most first; ``parts``: (name, definition, reasons).
+
+    Samples that cannot be judged at all are left out: what they need first is an analysis that can.
+    """
     points: Counter[str] = Counter()
     verdicts: Counter[str] = Counter()
     named: dict[str, list[str]] = {}
     remedies: dict[str, str] = {}
     for target, definition, reasons in parts:
-        for one in lacking_of(definition, reasons)[0]:
+        fit = (packed for packed in reasons if _CAUSE.search(packed) is None)
+        for one in lacking_of(definition, fit)[0]:
             points[one.name] += one.points
             verdicts[one.name] += one.samples
             named.setdefault(one.name, []).append(target)

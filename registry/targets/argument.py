@@ -13,6 +13,7 @@ from registry.petrology.analytes import QUALIFIER_BELOW
 from registry.petrology.conventions import Conventions
 from registry.petrology.digestion import DIGESTION_WORDS
 from registry.petrology.intrusion_heat import ASSUMED_AGE_SIGMA
+from registry.targets import redox_words
 from registry.targets.definition import Criterion, Gate, Phrase, TargetDefinition
 from registry.targets.engine import (
     POSSIBLE,
@@ -111,7 +112,8 @@ class _Argument:
 
     def _fill_value(self, name: str) -> str:
         special = {
-            "redox_source": self._redox_source,
+            "redox_series": lambda: redox_words.state_of(self.known, NOT_KNOWN),
+            "redox_source": lambda: redox_words.source_of(self.known, self.sample.get("redox_evidence")),
             "density_basis": self._density_basis,
             "two_sigma": self._two_sigma,
             "because_missing": self._because_missing,
@@ -154,14 +156,6 @@ class _Argument:
         low, high = float(value.low[0]), float(value.high[0])
         open_low, open_high = value.ends()
         return interval_text(low, high, bool(open_low[0]), bool(open_high[0])) or number_text(low)
-
-    def _redox_source(self) -> str:
-        evidence = self.sample.get("redox_evidence")
-        if isinstance(evidence, str):
-            return evidence
-        names = {"feo_titrated_wt": "titrated FeO", "magnetic_susceptibility_si": "magnetic susceptibility"}
-        present = [words for name, words in names.items() if not self.known.number(name).missing[0]]
-        return " and ".join(present) or "neither titrated FeO nor a susceptibility reading"
 
     def _density_basis(self) -> str:
         return "the default of its silica class" if self.sample.get("density_kg_m3") is None else "measured"
@@ -263,7 +257,7 @@ class _Argument:
         if name in TEXT_QUANTITIES:
             why = self.known.why_unknown(name)
             ground = why.labels[int(why.codes[0])]
-            return f"{words} of fresh rock or a third witness ({ground})" if ground else words
+            return redox_words.REMEDIES.get(ground, words)
         below = np.asarray(self.known.workspace.get(f"qualifier:{name}", [0]))[0] == QUALIFIER_BELOW
         return f"{words}, with a lower detection limit" if below else words
 

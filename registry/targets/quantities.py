@@ -12,6 +12,7 @@ from registry.petrology.redox_series import is_loi_too_high, is_magnetite_destro
 from registry.petrology.saturation import ZIRCON_M_HIGH, ZIRCON_M_LOW, ZIRCON_SIO2_LOW_WT, zircon_m
 from registry.petrology.trace import RATIOS
 from registry.targets.intervals import Booleans, Floats, Interval, Known, Rule, Words, point
+from registry.targets.redox_words import CONFLICT, LOI_TOO_HIGH, MAGNETITE_DESTROYED
 
 #: Contributions to heat production, uW/m3 per kg/m3: U and Th in ppm, K2O in wt% [rybach1988].
 HEAT_PER_U_PPM, HEAT_PER_TH_PPM, HEAT_PER_K2O_WT = 9.52e-5, 2.56e-5, 3.48e-5 / oxide_from_element("K2O")
@@ -203,14 +204,9 @@ def _why_no_redox(known: Known) -> Words:
     conflict, destroyed = is_redox_conflict(*inputs), is_magnetite_destroyed(*inputs)
     altered = is_loi_too_high(*inputs)
     codes = np.select([conflict, destroyed, altered], [1, 2, 3], 0)
-    return Words(codes, ("", *_REDOX_GROUNDS))
+    return Words(codes, ("", CONFLICT, MAGNETITE_DESTROYED, LOI_TOO_HIGH))
 
 
-_REDOX_GROUNDS = (
-    "redox_conflict: titrated FeO and susceptibility disagree",
-    "susceptibility is low, but alteration may have destroyed magnetite",
-    "loss on ignition is too high for the iron to be the magma's",
-)
 GROUNDS = {"redox_series": _why_no_redox}
 
 

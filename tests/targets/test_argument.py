@@ -52,9 +52,40 @@ def test_argue_gaps_are_listed_worth_most_first_with_what_supplies_them():
 def test_argue_witnesses_of_redox_that_disagree_are_named():
     told = argue(load_definition("porphyry_copper"), PORPHYRY | {"redox_series": None, "delta_ox": -0.3, "loi_wt": 1.0})
     assert told["missing"] == [
-        "titrated FeO or a susceptibility reading of fresh rock or a third witness "
-        "(redox_conflict: titrated FeO and susceptibility disagree) (opens 24 of 100 points)"
+        "titrated FeO or the susceptibility once more, on fresh rock, since the two contradict each other "
+        "(opens 24 of 100 points)"
     ]
+    assert (
+        "Redox is not settled (titrated FeO says ilmenite series, magnetic susceptibility magnetite series: the two "
+        "contradict each other; repeat one of them on fresh rock)" in told["argument"]
+    )
+
+
+def test_argue_witnesses_of_redox_that_disagree_the_other_way_are_not_swapped():
+    sample = PORPHYRY | {"redox_series": None, "delta_ox": 0.3, "loi_wt": 1.0, "magnetic_susceptibility_si": 2e-4}
+    told = argue(load_definition("tin"), sample)
+    assert "titrated FeO says magnetite series, magnetic susceptibility ilmenite series" in told["argument"]
+
+
+@pytest.mark.parametrize(
+    ("changes", "why", "remedy"),
+    [
+        (
+            {"magnetic_susceptibility_si": 2e-4, "feo_titrated_wt": None, "alteration": "phyllic"},
+            "not known (magnetic susceptibility is low, but alteration may have destroyed magnetite)",
+            "titrated FeO of fresh rock, since alteration may have destroyed the magnetite",
+        ),
+        (
+            {"delta_ox": 0.3, "loi_wt": 5.0, "feo_titrated_wt": 1.9, "magnetic_susceptibility_si": None},
+            "not known (loss on ignition is too high for the iron to be the magma's)",
+            "titrated FeO or a susceptibility reading of fresh rock, since the loss on ignition is too high here",
+        ),
+    ],
+)
+def test_argue_redox_that_a_measurement_does_not_tell_says_why(changes, why, remedy):
+    told = argue(load_definition("porphyry_copper"), PORPHYRY | {"redox_series": None} | changes)
+    assert f"Redox is {why}" in told["argument"]
+    assert told["missing"] == [f"{remedy} (opens 24 of 100 points)"]
 
 
 def test_argue_near_miss_and_contradiction_are_shown():

@@ -87,7 +87,7 @@ def test_redox_witnesses_that_disagree_leave_redox_unknown(reference_table, make
     assert computed.derived["redox_series"].tolist() == ["magnetite", None]
     porphyry = computed.verdicts["porphyry_copper"]
     assert [VERDICT_WORDS[code] for code in porphyry.verdict] == ["favourable", "undecided"]
-    assert '"6":"redox_conflict: titrated FeO and susceptibility disagree"' in porphyry.reasons[1]
+    assert '"6":"titrated FeO and magnetic susceptibility contradict each other"' in porphyry.reasons[1]
     assert porphyry.score_min[1] == pytest.approx(porphyry.score_min[0] - 0.24)
 
 

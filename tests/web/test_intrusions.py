@@ -12,12 +12,15 @@ from html import unescape
 from pathlib import Path
 from typing import Any
 
+import numpy as np
 import pytest
 from flask.testing import FlaskClient
 
 from registry.standing import dearest_lacking, lacking_of
 from registry.store.reading.intrusions import ValueRange, spread_evenly
 from registry.targets.definition import load_definitions
+from registry.targets.engine import judge
+from registry.targets.redox_words import CONFLICT, REMEDIES
 from web.ranges import SCALES, range_bar
 
 DEFINITIONS = load_definitions()
@@ -191,6 +194,19 @@ def test_lacking_points_follow_the_weights_of_the_definition() -> None:
     assert causes == (("SiO2 is not known", 1),)
     over_all = dearest_lacking([("Tungsten", definition, [packed]), ("Again", definition, [packed])])
     assert (over_all[0].name, over_all[0].verdicts, over_all[0].targets) == ("w_ppm", 2, ("Tungsten", "Again"))
+
+
+def test_lacking_redox_that_two_witnesses_contradict_asks_for_a_repeat_not_for_a_first_measurement() -> None:
+    definition = DEFINITIONS["tin"]
+    n = 2
+    known = {"delta_ox": np.array([0.3, np.nan]), "magnetic_susceptibility_si": np.array([2e-4, np.nan])}
+    workspace = known | {"fitness": np.full(n, "fit", dtype=object), "redox_series": np.full(n, None, dtype=object)}
+    lacking, _ = lacking_of(definition, judge(definition, workspace, n).reasons)
+    told = {one.remedy: (one.points, one.samples) for one in lacking}
+    (weight,) = (criterion.weight for criterion in definition.criteria if criterion.code == "reduced")
+    assert told[definition.supply["redox_series"]] == (weight, 1)
+    assert told[REMEDIES[CONFLICT]] == (weight, 1)
+    assert "contradict each other" in REMEDIES[CONFLICT]
 
 
 def test_spread_evenly_keeps_first_and_last() -> None:
