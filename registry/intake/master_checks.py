@@ -139,18 +139,13 @@ def _check_coordinates(
                 )  # fmt: skip
     if kind != "sites":
         return
-    pairs = zip(table.get("easting", blank), table.get("northing", blank), table.get("longitude", blank), strict=True)
-    for line, (east, north, longitude) in zip(lines.tolist(), pairs, strict=True):
+    pairs = zip(table.get("easting", blank), table.get("longitude", blank), strict=True)
+    for line, (east, longitude) in zip(lines.tolist(), pairs, strict=True):
         if east is None and longitude is None:
             findings.warn(
                 "the site has no coordinates", row=line,
                 expected="easting and northing, or longitude and latitude",
                 remedy="it is stored without a position; add the coordinates later",
-            )  # fmt: skip
-        if east is not None and north is not None and abs(east) <= 180 and abs(north) <= 90 and (east or north):
-            findings.warn(
-                "easting and northing look like degrees", row=line, column=headings["easting"],
-                found=f"{east:g}, {north:g}", expected="metres", remedy="head the columns longitude and latitude",
             )  # fmt: skip
 
 

@@ -10,7 +10,7 @@ from typing import Any
 import sqlalchemy as sa
 
 from registry.errors import Problem
-from registry.store import master_positions, raw_rows, tables
+from registry.store import master_positions, raw_rows, sample_spans, tables
 from registry.store.master_kinds import MasterKind, Reference
 from registry.store.near_codes import near_misses, written_twice
 
@@ -70,11 +70,13 @@ def check(
     if spec.kind == "sites":
         problems += master_positions.check_sites(given, stored, known, lines, file)
     if spec.kind in ("sites", "samples"):
-        problems += master_positions.check_places(connection, given, stored, lines, file)
+        problems += master_positions.check_places(connection, spec.noun, given, stored, known, lines, file)
     if spec.kind in ("surveys", "intervals", "samples"):
         problems += _depths(connection, spec, stored, known, lines, file)
     if spec.kind == "intervals":
         problems += _overlaps(connection, stored, lines, file)
+    if spec.kind == "samples":
+        problems += sample_spans.partial_overlaps(connection, given, stored, known, lines, file)
     return problems
 
 

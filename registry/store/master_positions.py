@@ -9,7 +9,7 @@ import numpy as np
 import sqlalchemy as sa
 
 from registry.errors import Problem
-from registry.store import positions, tables
+from registry.store import master_outlying, positions, tables
 
 Rows = dict[str, list[Any]]
 Known = Mapping[tuple[Any, ...], Mapping[str, Any]]
@@ -71,9 +71,13 @@ def check_systems(codes: Sequence[Any], lines: Sequence[int], file: str) -> list
 
 
 def check_sites(given: Rows, stored: Rows, known: Known, lines: Sequence[int], file: str) -> list[Problem]:
-    """A new site without its kind; coordinates without a system, or outside it."""
+    """A new site without its kind; coordinates without a system, or outside it (those in degrees are told of by
+    ``check_places``)."""
     problems = []
     blank = [None] * len(lines)
+    degrees = master_outlying.look_like_degrees(
+        *(_column(rows, name, len(lines)) for rows, name in ((given, "easting"), (given, "northing"), (stored, "epsg")))
+    )
     for row, code in enumerate(stored["code"]):
         before = known.get((code,), {})
         if stored.get("kind", blank)[row] is None and not before:
@@ -87,7 +91,7 @@ def check_sites(given: Rows, stored: Rows, known: Known, lines: Sequence[int], f
                     remedy="add the kind",
                 )
             )
-        if given.get("easting", blank)[row] is None:
+        if given.get("easting", blank)[row] is None or degrees[row]:
             continue
         if stored["epsg"][row] is None:
             problems.append(
@@ -116,23 +120,37 @@ def check_sites(given: Rows, stored: Rows, known: Known, lines: Sequence[int], f
     return problems
 
 
-def check_places(
-    connection: sa.Connection, given: Rows, stored: Rows, lines: Sequence[int], file: str
-) -> list[Problem]:
-    """Coordinates outside the area of use of their system or of their area's, and two that name different places.
+def _column(rows: Rows, name: str, n: int) -> np.ndarray:
+    return np.array(rows.get(name, [None] * n), dtype=float)
 
-    ``stored`` may lack ``longitude`` and ``latitude`` (samples); they are then computed.
+
+def check_places(
+    connection: sa.Connection,
+    noun: str,
+    given: Rows,
+    stored: Rows,
+    known: Known,
+    lines: Sequence[int],
+    file: str,
+) -> list[Problem]:
+    """Coordinates outside the area of use of their system or of their area's, two that name different places, degrees
+    in place of metres, and places very far from the others of their area.
+
+    ``noun``: site or sample. ``stored`` may lack ``longitude`` and ``latitude`` (samples); they are then computed.
     """
     n = len(lines)
 
     def column(rows: Rows, name: str) -> np.ndarray:
-        return np.array(rows.get(name, [None] * n), dtype=float)
+        return _column(rows, name, n)
 
     east, north, epsg = column(given, "easting"), column(given, "northing"), column(stored, "epsg")
+    degrees = master_outlying.look_like_degrees(east, north, epsg)
+    told_degrees = master_outlying.degrees_problems(east, north, degrees, lines, file)
+    east, north = np.where(degrees, np.nan, east), np.where(degrees, np.nan, north)
     lon, lat = positions.longitude_latitude(east, north, epsg)
     beyond = positions.degrees_outside(lon, lat, epsg)
     turned = positions.degrees_outside(*positions.longitude_latitude(north, east, epsg), epsg)
-    problems = []
+    problems = told_degrees
     for row in np.flatnonzero(beyond > 0.0)[:LISTED].tolist():
         far = beyond[row] > DEGREES_BEYOND
         remedy = "check the EPSG code (zone, hemisphere) and the digits of the coordinates"
@@ -168,7 +186,34 @@ def check_places(
                 "warning",
             )
         )
-    return problems + _outside_their_area(connection, stored, epsg, (lon, lat), (own_lon, own_lat), lines, file)
+    refused = beyond > DEGREES_BEYOND
+    placed = master_outlying.Placed(
+        east,
+        north,
+        epsg,
+        np.where(refused, np.nan, np.where(np.isnan(own_lon), lon, own_lon)),
+        np.where(refused, np.nan, np.where(np.isnan(own_lat), lat, own_lat)),
+    )
+    far = np.zeros(n, dtype=bool)
+    if not np.isnan(placed.longitude).all():
+        areas, codes = _areas_of(connection, noun, stored, known)
+        far, told_far = master_outlying.far_from_area(connection, noun, placed, areas, codes, lines, file)
+        problems += told_far
+    return problems + _outside_their_area(connection, stored, epsg, (lon, lat), (own_lon, own_lat), far, lines, file)
+
+
+def _areas_of(connection: sa.Connection, noun: str, stored: Rows, known: Known) -> tuple[list[Any], list[Any]]:
+    """The area (id or None) of each row, and the codes of the rows that are sites."""
+    blank = [None] * len(stored["code"])
+
+    def current(name: str) -> list[Any]:
+        column = stored.get(name, blank)
+        rows = zip(column, stored["code"], strict=True)
+        return [known.get((code,), {}).get(name) if value is None else value for value, code in rows]
+
+    if noun == "site":
+        return current("area_id"), stored["code"]
+    return master_outlying.areas_of_samples(connection, current("site_id"), current("intrusion_id")), blank
 
 
 def _outside_their_area(
@@ -177,10 +222,13 @@ def _outside_their_area(
     epsg: np.ndarray,
     computed: tuple[np.ndarray, np.ndarray],
     entered: tuple[np.ndarray, np.ndarray],
+    told: np.ndarray,
     lines: Sequence[int],
     file: str,
 ) -> list[Problem]:
-    """Sites of another system than their area's that lie where the area's system is not used: a wrong zone, perhaps."""
+    """Sites of another system than their area's that lie where the area's system is not used: a wrong zone, perhaps.
+
+    Rows of ``told`` (bool, (n,)) are remarked on already."""
     if not any(area is not None for area in stored.get("area_id", ())):
         return []
     systems = {
@@ -189,7 +237,7 @@ def _outside_their_area(
     own = np.array([systems.get(area) for area in stored["area_id"]], dtype=float)
     lon = np.where(np.isnan(entered[0]), computed[0], entered[0])
     lat = np.where(np.isnan(entered[1]), computed[1], entered[1])
-    far = (positions.degrees_outside(lon, lat, own) > DEGREES_BEYOND) & ~(epsg == own)
+    far = (positions.degrees_outside(lon, lat, own) > DEGREES_BEYOND) & ~(epsg == own) & ~told
     return [
         Problem(
             file,

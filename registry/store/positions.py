@@ -60,6 +60,24 @@ def longitude_latitude(easting: Any, northing: Any, epsg: Any) -> tuple[np.ndarr
     return longitude, latitude
 
 
+def easting_northing(longitude: float, latitude: float, epsg: int) -> tuple[float, float]:
+    """Easting and northing, in the unit of a system that pyproj knows, of a place in degrees (WGS 84); infinite where
+    the system does not reach."""
+    east, north = _transformer(_WGS84, epsg).transform(longitude, latitude)
+    return float(east), float(north)
+
+
+def in_degrees(epsg: Any) -> np.ndarray:
+    """Whether each coordinate system (n,) is in degrees of longitude and latitude; False where it is not known."""
+    systems = np.asarray(epsg, dtype=np.float64)
+    angular = np.zeros(systems.shape, dtype=bool)
+    for code in np.unique(systems[~np.isnan(systems)]).astype(int).tolist():
+        crs = _crs(code)
+        if crs is not None and crs.is_geographic:
+            angular[systems == code] = True
+    return angular
+
+
 def degrees_outside(longitude: Any, latitude: Any, epsg: Any) -> np.ndarray:
     """How far each place (degrees, WGS 84, all (n,)) lies outside the area of use of its system (EPSG registry).
 
