@@ -12,7 +12,8 @@ from dataclasses import dataclass
 from typing import Any
 
 LEAST_HEIGHT, GREATEST_HEIGHT, PIXELS_PER_METRE = 320, 960, 2.0
-TICK_PIXELS, LABEL_PIXELS, LINE_PIXELS, MARK_PIXELS = 48, 13, 14, 15
+#: A mark is 12 pixels high in its box of 14: at 13 it touches no other.
+TICK_PIXELS, LABEL_PIXELS, LINE_PIXELS, MARK_PIXELS = 48, 13, 14, 13
 #: Letters of a label, and of each line of it on a telephone.
 LONGEST_LABEL, LONGEST_LINE = 23, 11
 #: Values that spread over more than this ratio are drawn on a logarithmic scale.
@@ -93,12 +94,12 @@ class Track:
 
 @dataclass(frozen=True)
 class Mark:
-    """The best verdict of the samples that share a place on the strip; ``code`` where there is one alone."""
+    """One sample at its depth, or the best of some that lie too close to be drawn apart; ``code`` is that sample's."""
 
     y: float
     word: str
     words: str
-    code: str | None
+    code: str
 
 
 @dataclass(frozen=True)
@@ -260,26 +261,31 @@ def _scale(least: float, greatest: float) -> tuple[float, float, bool]:
 
 
 def _marks(samples: Sequence[Mapping[str, Any]], at: Any) -> tuple[Mark, ...]:
-    """One mark a place of ``MARK_PIXELS``; samples too close to be told apart share the best of their verdicts."""
+    """Marks at least ``MARK_PIXELS`` apart, each at the depth of a sample that has that verdict.
+
+    The best verdicts are placed first; a sample without room for a mark of its own goes with the nearest one, whose
+    verdict is as good or better.
+    """
     order = ("favourable", "possible", "undecided", "unfavourable")
+    judged = [((at(_top(row)) + at(_bottom(row))) / 2, row) for row in samples if row["verdict"] is not None]
     groups: list[list[tuple[float, Mapping[str, Any]]]] = []
-    for row in samples:
-        if row["verdict"] is None:
-            continue
-        y = (at(_top(row)) + at(_bottom(row))) / 2
-        if groups and y - groups[-1][0][0] < MARK_PIXELS:
-            groups[-1].append((y, row))
+    for y, row in sorted(judged, key=lambda pair: (order.index(pair[1]["verdict"]), pair[0])):
+        nearest = min(groups, key=lambda group: abs(group[0][0] - y), default=None)
+        if nearest is not None and abs(nearest[0][0] - y) < MARK_PIXELS:
+            nearest.append((y, row))
         else:
             groups.append([(y, row)])
-    marks = []
-    for group in groups:
-        counted = {word: sum(row["verdict"] == word for _, row in group) for word in order}
-        word = next(word for word in order if counted[word])
-        first, last = group[0][1], group[-1][1]
-        if len(group) == 1:
-            words = f"{first['code']}, {_top(first):g} to {_bottom(first):g} m: {word}"
-        else:
-            told = ", ".join(f"{number} {name}" for name, number in counted.items() if number)
-            words = f"{_top(first):g} to {_bottom(last):g} m: {told}"
-        marks.append(Mark(round(group[0][0], 2), word, words, first["code"] if len(group) == 1 else None))
-    return tuple(marks)
+    return tuple(_mark(group, order) for group in sorted(groups, key=lambda group: group[0][0]))
+
+
+def _mark(group: Sequence[tuple[float, Mapping[str, Any]]], order: Sequence[str]) -> Mark:
+    """The mark of some samples; the first of them is the best and gives its place."""
+    y, best = group[0]
+    own = f"{best['code']}, {_top(best):g} to {_bottom(best):g} m"
+    if len(group) == 1:
+        return Mark(round(y, 2), best["verdict"], f"{own}: {best['verdict']}", best["code"])
+    counted = {word: sum(row["verdict"] == word for _, row in group) for word in order}
+    told = ", ".join(f"{number} {name}" for name, number in counted.items() if number)
+    first, last = min(_top(row) for _, row in group), max(_bottom(row) for _, row in group)
+    words = f"{first:g} to {last:g} m: {told}; drawn at {own}: {best['verdict']}"
+    return Mark(round(y, 2), best["verdict"], words, best["code"])

@@ -10,7 +10,7 @@ from typing import Any
 import pytest
 from flask.testing import FlaskClient
 
-from web.strip import EDGE, FAMILIES, OTHER, PATTERNS, build_strip, rock_fill
+from web.strip import EDGE, FAMILIES, MARK_PIXELS, OTHER, PATTERNS, Mark, build_strip, rock_fill
 
 SR_Y = SimpleNamespace(label="Sr/Y", unit="1", name="sr_y")
 
@@ -125,12 +125,43 @@ def test_strip_one_value_alone_and_none_are_drawn_without_a_fault() -> None:
     assert build_strip(None, [], [], []) is None
 
 
-def test_strip_marks_of_samples_too_close_show_the_best_of_them() -> None:
-    crowded = [sample(10 + n / 100, 1.0, "unfavourable") for n in range(50)] + [sample(10.6, 1.0, "possible")]
-    strip = build_strip(400.0, [], [*crowded, sample(300, 1.0, "undecided", "ALONE")], [SR_Y])
+def marks_of(depth: float, samples: list[dict[str, Any]]) -> tuple[Mark, ...]:
+    strip = build_strip(depth, [], samples, [SR_Y])
     assert strip is not None
-    assert [(mark.word, mark.code) for mark in strip.marks] == [("possible", None), ("undecided", "ALONE")]
-    assert "1 possible, 50 unfavourable" in strip.marks[0].words
+    scale = (strip.height - 2 * EDGE) / depth
+    for mark in strip.marks:  # each stands at the depth of the sample it leads to, with that sample's verdict
+        (own,) = (row for row in samples if row["code"] == mark.code)
+        assert (mark.word, mark.y) == (own["verdict"], pytest.approx(EDGE + (own["from_m"] + 1) * scale, abs=0.02))
+    assert all(after.y - before.y >= MARK_PIXELS for before, after in pairwise(strip.marks))
+    return strip.marks
+
+
+def test_strip_marks_of_samples_too_close_stand_at_the_depth_of_the_best_of_them() -> None:
+    crowded = [sample(10 + n / 100, 1.0, "unfavourable", f"U{n}") for n in range(50)]
+    crowded.append(sample(10.6, 1.0, "possible", "BEST"))
+    marks = marks_of(400.0, [*crowded, sample(300, 1.0, "undecided", "ALONE")])
+    assert [(mark.word, mark.code) for mark in marks] == [("possible", "BEST"), ("undecided", "ALONE")]
+    assert "1 possible, 50 unfavourable; drawn at BEST, 10.6 to 12.6 m: possible" in marks[0].words
+
+
+def test_strip_favourable_sample_below_a_possible_one_is_not_drawn_at_the_depth_of_the_other() -> None:
+    """Two samples 7 m apart: a mark each where there is room; in a longer hole one, at the favourable rock."""
+    pair = [sample(127, 1.0, "possible", "UPPER"), sample(134, 1.0, "favourable", "LOWER")]
+    assert [(mark.word, mark.code) for mark in marks_of(240.0, pair)] == [
+        ("possible", "UPPER"),
+        ("favourable", "LOWER"),
+    ]
+    (mark,) = marks_of(900.0, pair)
+    assert (mark.word, mark.code) == ("favourable", "LOWER")
+    assert mark.words == "127 to 136 m: 1 favourable, 1 possible; drawn at LOWER, 134 to 136 m: favourable"
+
+
+def test_strip_marks_of_a_densely_sampled_hole_count_every_sample_once() -> None:
+    words = ("unfavourable", "undecided", "possible", "favourable")
+    many = [sample(n, 1.0, words[n * n % 7 % 4], f"S{n}") for n in range(0, 600, 2)]
+    told = " ".join(mark.words.split(";")[0] for mark in marks_of(602.0, many))
+    counted = [int(number) for number in re.findall(r"(\d+) (?:un)?(?:favourable|possible|decided)", told)]
+    assert len(counted) > 40 and sum(counted) == len(many)
 
 
 def test_strip_labels_are_broken_and_shortened_and_left_out_where_there_is_no_room() -> None:
