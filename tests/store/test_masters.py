@@ -178,7 +178,7 @@ FAULTS = [
     ("sites", {"site_code": ["XH9"], "site_kind": ["shaft"]}, "this word is not known; found 'shaft'"),
     ("sites", {"site_code": ["XH9"], "site_kind": ["outcrop"], "easting": [1000.0], "northing": [2000.0]},
      "say nothing without their coordinate system"),
-    ("sites", {"site_code": ["XH9"], "site_kind": ["outcrop"], "easting": [1.0e3], "northing": [2.0e3], "epsg": [29999]},
+    ("sites", {"site_code": ["XH9"], "site_kind": ["outcrop"], "easting": [1.0], "northing": [2e6], "epsg": [29999]},
      "this coordinate system is not known; found '29999'"),
     ("sites", {"site_code": ["XH9"], "site_kind": ["outcrop"], "easting": [1e9], "northing": [1e9], "epsg": [32633]},
      "lie outside the system EPSG:32633"),
