@@ -182,3 +182,11 @@ def test_conventional_errors_are_by_kind_of_analyte() -> None:
         "feo_titrated_wt": 0.02,
     }
     assert {name: k[CHOSEN_INDEX[name]] for name in expected} == pytest.approx(expected)
+
+
+def test_part_of_an_error_model_is_that_of_its_samples() -> None:
+    model = model_of(3, spread={"zr_ppm": 0.05})
+    model.s0[CHOSEN_INDEX["zr_ppm"]] = [1.0, 2.0, 3.0]
+    part = model.part(1, 3)
+    assert part.s0[CHOSEN_INDEX["zr_ppm"]].tolist() == [2.0, 3.0]
+    assert {part.k.shape, part.spread.shape, part.limit.shape, part.one_result.shape} == {(len(CHOSEN_COLUMNS), 2)}
