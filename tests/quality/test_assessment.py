@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-import time
 from typing import Any
 
 import numpy as np
@@ -203,13 +202,11 @@ def test_many_columns_of_one_metal_are_compared_at_once_and_told_in_one_sentence
     values[1, 1200] = 180.0
     values[2, :] = 5.0
     values[2, 7] = 9.0  # below ten detection limits
-    started = time.perf_counter()
     told = disagreeing_columns(columns, values, np.zeros(values.shape, dtype=np.uint8), np.array([2, 3, 4]))
     assert told == [
         "2,000 columns of Zr differ by more than 10 % in 1 of 2 lines (line 3: 150 against 180 ppm, 18.2 %): check the "
         "units and the columns"
     ]
-    assert time.perf_counter() - started < 5.0
     values[1, 1200] = 150.0
     assert disagreeing_columns(columns, values, np.zeros(values.shape, dtype=np.uint8), np.array([2, 3, 4])) == []
 
