@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import re
 from collections.abc import Sequence
 from dataclasses import replace
 from difflib import get_close_matches
@@ -24,7 +25,8 @@ def column_keys(labels: Sequence[str]) -> list[str]:
 
 
 def place_of(wanted: str, labels: Sequence[str]) -> int | None:
-    """The position of a column: by its heading as written, then in any case and spacing, then by ``#`` and its number.
+    """The position of a column: by its heading as written, then in any case and spacing, then by ``#`` and its number,
+    then by a word that stands in the heading of this column alone (``Cu`` of ``ABC-12 Cu ppm``).
 
     None where there is none, or where several headings differ in case and spacing only and none is as written.
     """
@@ -38,7 +40,8 @@ def place_of(wanted: str, labels: Sequence[str]) -> int | None:
     number = wanted[1:]
     if not alike and wanted.startswith("#") and number.isdecimal() and 0 < int(number) <= len(labels):
         return int(number) - 1
-    return None
+    holding = [place for place, label in enumerate(labels) if wanted and wanted in re.split(r"[\s_,;:()\[\]]+", label)]
+    return holding[0] if len(holding) == 1 and not alike else None
 
 
 def _folded(text: str) -> str:

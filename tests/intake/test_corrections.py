@@ -264,3 +264,15 @@ def test_digestion_that_the_user_states_goes_before_that_of_the_title_lines() ->
     assert told(recipe=Recipe(digestion="fusion")) == [("four-acid digestion", "four_acid"), own]
     said = read_file("a.csv", text, "results", ReadingOptions(digestion="fusion")).understood
     assert any("state the method four-acid digestion; fusion, as was said, goes before it" in line for line in said)
+
+
+def test_column_is_found_by_a_word_that_no_other_heading_holds() -> None:
+    labels = ["Sample", "ABC-12 Cu ppm", "ABC-12 Co ppm", "Zr (ppm)", "Zr fusion"]
+    assert [place_of(word, labels) for word in ("Cu", "Co", "Zr", "ABC-12", "CO", "fusion")] == [
+        1,
+        2,
+        None,
+        None,
+        None,
+        4,
+    ]
