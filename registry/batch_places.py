@@ -14,17 +14,22 @@ if TYPE_CHECKING:
     from registry.importing import ImportOptions
 
 
+#: Between the code of a batch and the number of its corrected form.
+_CORRECTED = " corrected "
+
+
 @dataclass(frozen=True)
 class Place:
     """Where a file of results goes: the code of its batch, the batch it is a part of, the batch it supersedes.
 
-    ``lab``, the dates and the batch it is a part of are those of the superseded batch, for what the new file leaves
-    open.
+    ``told`` says what that does. ``lab``, the dates and the batch it is a part of are those of the superseded batch,
+    for what the new file leaves open.
     """
 
     code: str
     part_of: int | None = None
     supersedes: int | None = None
+    told: str | None = None
     lab: str | None = None
     received_on: str | None = None
     reported_on: str | None = None
@@ -45,6 +50,11 @@ def place_of(
         return _part(connection, file, options)
     by_code = batches.find_batch(connection, code)
     by_certificate = batches.find_by_certificate(connection, table.certificate) if table.certificate else None
+    if options.supersede and options.corrects:
+        named = batches.find_batch(connection, options.corrects)
+        given = options.batch or table.certificate
+        code = given or _first_form(named, options.corrects)
+        return _successor(connection, file, options.corrects if named is None else code, named)
     if options.supersede:
         return _successor(connection, file, code, by_code or by_certificate)
     if by_code is None and by_certificate is not None and options.batch and by_certificate["state"] != "active":
@@ -117,5 +127,12 @@ def _successor(connection: Any, file: str, code: str, other: dict[str, Any] | No
     other = batches.counting_for(connection, other["batch_id"]) or other
     inherited = {name: other[name] for name in ("lab", "received_on", "reported_on", "part_of")}
     if batches.find_batch(connection, code) is not None:
-        code = batches.free_code(connection, code, " corrected ")
-    return Place(code, supersedes=other["batch_id"], **inherited), []
+        code = batches.free_code(connection, code, _CORRECTED)
+    whose = f" ({other['file_name']})" if other["file_name"] else ""
+    told = f"takes the place of batch '{other['batch']}'{whose}, which is kept and no longer used"
+    return Place(code, supersedes=other["batch_id"], told=told, **inherited), []
+
+
+def _first_form(batch: dict[str, Any] | None, code: str) -> str:
+    """What a correction of a batch is called after: its certificate, else its code as it was before corrections."""
+    return (batch and batch["certificate"]) or code.partition(_CORRECTED)[0]

@@ -40,7 +40,10 @@ from registry.store.reading.changes import verdict_changes
 
 @dataclass(frozen=True)
 class ImportOptions:
-    """The choices of ``plutonbook import`` (see its help)."""
+    """The choices of ``plutonbook import`` (see its help).
+
+    ``corrects``: the batch whose place a file with ``supersede`` takes; None: that of its code or certificate number.
+    """
 
     kind: str | None = None
     dry_run: bool = False
@@ -49,6 +52,7 @@ class ImportOptions:
     create_samples: bool = False
     keep_going: bool = False
     supersede: bool = False
+    corrects: str | None = None
     add_to: str | None = None
     code_prefix: str = ""
 
@@ -162,6 +166,9 @@ def _store(
     rest = Rest.of(reading for reading, _ in readings)
     computed = np.zeros(0, dtype=np.int64)
     results = len({file.path for reading, file in readings if reading.kind == "results"})
+    if options.corrects and results > 1:
+        several = f"{results} files hold results, and one batch, '{options.corrects}', is named that they correct"
+        raise UsageError(f"{several}; import them one by one")
     if options.batch and results > 1:
         raise UsageError(f"--batch names one batch, but {results} files hold results; import them one by one")
     for (reading, contents), aside in zip(readings, asides, strict=True):

@@ -5,8 +5,10 @@ from __future__ import annotations
 from pathlib import Path
 from typing import Any
 
+import pytest
 from openpyxl import Workbook
 
+from registry.errors import InputProblems
 from registry.importing import ImportOptions, import_files
 from registry.store.engine import Registry, reading
 
@@ -72,3 +74,31 @@ def analysis(registry: Registry, code: str) -> tuple[float, float]:
             f"SELECT sio2_wt, zr_ppm FROM composition_sheet WHERE sample_code = '{code}'"
         ).one()
     return row[0], row[1]
+
+
+def test_correction_says_which_batch_and_which_of_its_parts_it_takes_the_place_of(
+    founded_registry: Registry, tmp_path: Path
+) -> None:
+    """Invented: the correction names another certificate, and brings the majors and the traces together."""
+    (tmp_path / "majors.csv").write_text(MAJORS.format(a=60))
+    (tmp_path / "traces.csv").write_text(TRACES.format(b=9))
+    (tmp_path / "all.csv").write_text("Sample,SiO2 (%),MgO (%),Zr (ppm),Nb (ppm)\nA,66,2,155,10\n")
+    import_files(founded_registry, [tmp_path / "majors.csv"], ImportOptions(batch="C-1", create_samples=True))
+    import_files(founded_registry, [tmp_path / "traces.csv"], ImportOptions(add_to="C-1"))
+    named = ImportOptions(supersede=True, corrects="C-1", dry_run=True)
+    report = import_files(founded_registry, [tmp_path / "all.csv"], named)
+    (results,) = [file.results for file in report.files]
+    assert results is not None and results.batch == "C-1 corrected 2"
+    assert results.remarks == [
+        "takes the place of batch 'C-1' (majors.csv), which is kept and no longer used",
+        "takes the place of 'C-1/2' as well, which reports the same analytes",
+    ]
+
+
+def test_correction_of_a_batch_that_is_not_there_is_refused_with_its_name(
+    founded_registry: Registry, tmp_path: Path
+) -> None:
+    (tmp_path / "all.csv").write_text("Certificate: C-9\nSample,SiO2 (%),MgO (%)\nA,66,2\n")
+    options = ImportOptions(supersede=True, corrects="C-1", create_samples=True)
+    with pytest.raises(InputProblems, match="no batch has the code or certificate number 'C-1'"):
+        import_files(founded_registry, [tmp_path / "all.csv"], options)

@@ -43,6 +43,7 @@ _PAGE_WORDS = (
     (re.compile(r"name the kind when importing the file"), "choose under “What it holds”"),
     (re.compile(r"name the one to read"), "choose it under “Sheet or part”"),
     (re.compile(r"--add-to names"), "this is to be added to"),
+    (re.compile(r"name the batch that this file corrects with --batch"), "choose the one that it corrects below"),
     (re.compile(r"--supersede: "), "nothing to correct: "),
     (re.compile(r"without --supersede"), "as a certificate of its own"),
     (re.compile(r"with --batch|--batch"), "under “Batch code” below"),
@@ -69,6 +70,7 @@ def take_options(draft: Draft, form: Mapping[str, str]) -> bool:
         "create_samples": "create_samples" in form,
         "keep_going": "keep_going" in form,
         "supersede": place == "supersede",
+        "corrects": (form.get("corrects") or None) if place == "supersede" else None,
         "add_to": (form.get("add_to") or None) if place == "add" else None,
     }
     changed = any((draft.options.get(name) or None) != (value or None) for name, value in options.items())

@@ -106,7 +106,7 @@ def _page(draft: Draft, notice: str = "", fault: str = "") -> Any:
         if not draft.under_way:
             names = targets_reading.target_names(connection)
         if not draft.under_way and draft.state != DONE:
-            batches = [row["code"] for row in batches_reading.batch_list(connection) if row["state"] == "active"]
+            batches = [row for row in batches_reading.batch_list(connection) if row["state"] == "active"]
     ended = draft.under_way or draft.state == DONE
     files = [] if ended else [_file_view(draft, number) for number in range(len(draft.files))]
     return render_template(

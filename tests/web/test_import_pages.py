@@ -4,9 +4,10 @@ from __future__ import annotations
 
 import io
 import os
+import re
 import sqlite3
 import stat
-from html import escape
+from html import escape, unescape
 from pathlib import Path
 from typing import Any
 
@@ -243,6 +244,51 @@ def test_import_page_corrected_certificate_supersedes_the_earlier(site: Site) ->
         ("active",),
     ]
     assert rows(site, "SELECT zr_ppm FROM composition JOIN sample USING (sample_id) WHERE code = 'KD-1'") == [(151.0,)]
+
+
+def test_import_page_offers_the_active_batches_to_be_corrected_and_says_which_is(site: Site) -> None:
+    """The corrected file names another certificate than the one that it corrects."""
+    site.press(site.send(("one.csv", "Certificate: C-1\n" + GOOD)), "store")
+    address = site.send(("two.csv", "Certificate: C-1-rev\n" + GOOD.replace("150", "151")))
+    page = site.client.get(address).text
+    offered = re.search(r'<select class="inline" name="corrects".*?</select>', page, re.DOTALL)
+    assert offered is not None
+    assert re.findall(r'<option value="([^"]*)"', offered[0]) == ["", "C-1", "majors"]
+    site.press(address, "read", place="supersede", corrects="C-1")
+    tried = unescape(site.client.get(address).text)
+    assert "Takes the place of batch 'C-1' (one.csv), which is kept and no longer used" in tried
+    assert site.form(address).get("corrects") == "C-1"
+    assert rows(site, "SELECT state FROM batch WHERE code = 'C-1'") == [("active",)]
+    site.press(address, "store")
+    assert rows(site, "SELECT code, state FROM batch WHERE code LIKE 'C-1%' ORDER BY code") == [
+        ("C-1", "superseded"),
+        ("C-1-rev", "active"),
+    ]
+    later = site.form(site.send(("three.csv", GOOD)))
+    assert later.get("place") == "new"
+    page = site.client.get(site.send(("four.csv", GOOD.replace("150", "152")))).text
+    assert 'value="C-1"' not in page and 'value="C-1-rev"' in page
+
+
+def test_import_page_correction_without_a_certificate_is_called_after_the_corrected(site: Site) -> None:
+    site.press(site.send(("one.csv", "Certificate: C-1\n" + GOOD)), "store")
+    for zr, name in (("151", "new.csv"), ("152", "newer.csv")):
+        address = site.send((name, GOOD.replace("150", zr)))
+        (active,) = rows(site, "SELECT code FROM batch WHERE code LIKE 'C-1%' AND state = 'active'")
+        site.press(address, "read", place="supersede", corrects=active[0])
+        site.press(address, "store")
+    assert rows(site, "SELECT code, state FROM batch WHERE code LIKE 'C-1%' ORDER BY batch_id") == [
+        ("C-1", "superseded"),
+        ("C-1 corrected 2", "superseded"),
+        ("C-1 corrected 3", "active"),
+    ]
+
+
+def test_import_page_two_files_do_not_correct_one_batch(site: Site) -> None:
+    site.press(site.send(("one.csv", "Certificate: C-1\n" + GOOD)), "store")
+    address = site.send(("two.csv", GOOD.replace("150", "151")), ("three.csv", GOOD.replace("150", "152")))
+    site.press(address, "read", place="supersede", corrects="C-1")
+    assert "2 files hold results, and one batch" in site.client.get(address).text
 
 
 def test_import_page_further_part_is_added_to_its_batch(site: Site) -> None:
