@@ -181,7 +181,7 @@ def _conclusion(row: dict[str, Any], sample: dict[str, Any], conventions: Conven
         missing=tuple(told["missing"]),
         favourable=definition.favourable,
         possible=definition.possible,
-        cautions=definition.cautions,
+        cautions=tuple(told["cautions"]),
     )
 
 

@@ -47,7 +47,11 @@ _NAMES = {
     "v_sc": "V/Sc", "rb_sr": "Rb/Sr", "k_rb": "K/Rb", "la_yb": "La/Yb", "nb_ta": "Nb/Ta", "zr_hf": "Zr/Hf",
     "cu_zr": "Cu/Zr", "pd_pt": "Pd/Pt", "a_nk": "A/NK", "a_cnk": "A/CNK",
     "heat_production_uw_m3": "heat production", "th_u": "Th/U", "th_nb": "Th/Nb",
-    "heat_x_thickness_mw_m2": "heat production times thickness",
+    "heat_x_thickness_mw_m2": "heat production times thickness", "theta_centre": "heat left at the centre",
+    "eu_anomaly": "Eu/Eu*", "fe_number": "Fe-number", "mg_number": "Mg-number", "asi": "ASI",
+    "mg_number_total_iron": "Mg-number (total iron)", "zircon_saturation_wh83_c": "temperature of zircon saturation",
+    "zircon_model_applies": "rock within the zircon model", "intrusion_shape": "shape of the body",
+    "intrusion_recorded": "the intrusion it belongs to", "arrived": "arrival of the body", "altered": "alteration",
 }  # fmt: skip
 _UNIT_ENDS = ("_wt", "_ppm", "_ma", "_m", "_km3", "_mw_m2", "_uw_m3", "_kg_m3", "_si", "_c")
 #: In this order: the longer ends first.

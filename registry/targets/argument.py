@@ -14,7 +14,7 @@ from registry.petrology.conventions import Conventions
 from registry.petrology.digestion import DIGESTION_WORDS
 from registry.petrology.intrusion_heat import ASSUMED_AGE_SIGMA
 from registry.targets import redox_words
-from registry.targets.definition import Criterion, Gate, Phrase, TargetDefinition
+from registry.targets.definition import OPTIONAL_PART, Criterion, Gate, Phrase, TargetDefinition
 from registry.targets.engine import (
     POSSIBLE,
     TEXT_QUANTITIES,
@@ -56,8 +56,8 @@ def argue(
     ``sample``: its stored row (composition, derived, context) by column name; ``reasons``: the stored JSON, else it is
     judged here. Returns plain texts: ``verdict argument cause`` (texts, cause may be None) and the lists
     ``would_turn failed_rules near_misses contradictions missing cautions`` (would_turn: what alone would give another
-    verdict; missing: worth most first, with what supplies it). ``instead`` lists the codes of the criteria that were
-    judged by their other quantity.
+    verdict; missing: worth most first, with what supplies it; cautions: without those that surely do not concern
+    it). ``instead`` lists the codes of the criteria that were judged by their other quantity.
     """
     workspace = workspace_of_sample(sample, conventions)
     known = known_of(workspace, 1)
@@ -75,7 +75,7 @@ def argue(
         "instead": [criterion.code for criterion in definition.criteria if page.by_other(criterion)],
         "contradictions": page.contradictions(),
         "missing": page.missing(),
-        "cautions": list(definition.cautions),
+        "cautions": page.cautions(),
     }
 
 
@@ -103,7 +103,11 @@ class _Argument:
     # sentences
 
     def sentences(self) -> str:
-        return _PLACEHOLDER.sub(self._fill, self.definition.argument)
+        text = OPTIONAL_PART.sub(lambda part: part[1] if self._is_told(part[1]) else "", self.definition.argument)
+        return _PLACEHOLDER.sub(self._fill, text)
+
+    def _is_told(self, part: str) -> bool:
+        return NOT_KNOWN not in map(self._fill, _PLACEHOLDER.finditer(part))
 
     def _fill(self, match: re.Match[str]) -> str:
         name, part, unit = match.groups()
@@ -226,6 +230,14 @@ class _Argument:
             contradiction.label
             for contradiction in self.definition.contradictions
             if all(evaluate(self.known, test)[0][0] for test in contradiction.tests)
+        ]
+
+    def cautions(self) -> list[str]:
+        tests = self.definition.caution_tests
+        return [
+            text
+            for text in self.definition.cautions
+            if not any(evaluate(self.known, test)[1][0] for test in tests.get(text, ()))
         ]
 
     def missing(self) -> list[str]:

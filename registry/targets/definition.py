@@ -101,6 +101,8 @@ class TargetDefinition:
     argument: str = ""
     phrases: Mapping[str, Phrase] = field(default_factory=dict)
     cautions: tuple[str, ...] = ()
+    #: Cautions that concern some samples only: text -> what must hold of a sample.
+    caution_tests: Mapping[str, tuple[Condition, ...]] = field(default_factory=dict)
     text: str = field(default="", repr=False)
 
     @property
@@ -122,7 +124,8 @@ class TargetDefinition:
         for criterion in self.criteria:
             found += [t for t in (criterion.near, criterion.otherwise, criterion.otherwise_near) if t is not None]
             found += criterion.only_if
-        return found + [test for contradiction in self.contradictions for test in contradiction.tests]
+        found += [test for contradiction in self.contradictions for test in contradiction.tests]
+        return found + [test for tests in self.caution_tests.values() for test in tests]
 
 
 _KEYS: dict[str, tuple[set[str], set[str]]] = {
@@ -138,12 +141,15 @@ _KEYS: dict[str, tuple[set[str], set[str]]] = {
     "otherwise": ({"quantity", "test"}, {"near"}),
     "need": ({"any_of", "reason"}, {"strict"}),
     "contradiction": ({"label", "test"}, set()),
+    "caution": ({"text", "only_if"}, set()),
     "phrase": ({"criteria", "met", "not_met", "unknown"}, {"part"}),
 }
 
 
 #: Anything in braces, and a brace alone.
 _BRACED = re.compile(r"\{[^{}]*\}|[{}]")
+#: A part of the argument that is said only where every quantity in it is known.
+OPTIONAL_PART = re.compile(r"\[([^\[\]]*)\]")
 
 
 class _Reader:
@@ -194,6 +200,13 @@ class _Reader:
             near, only_if, other, other_near,
         )  # fmt: skip
 
+    def caution(self, entry: str | Mapping[str, Any], where: str) -> tuple[str, tuple[Condition, ...]]:
+        if isinstance(entry, str):
+            return entry, ()
+        if not self.keys("caution", entry, where):
+            return "", ()
+        return entry["text"], self.attempt(where, parse_conditions, entry["only_if"]) or ()
+
     def _pair(self, table: Mapping[str, Any], where: str) -> tuple[Condition | None, Condition | None]:
         test = self.attempt(where, parse_test, table["quantity"], table["test"])
         near = self.attempt(where, parse_near, test, table["near"]) if test is not None and "near" in table else None
@@ -231,12 +244,14 @@ def parse_definition(text: str, name: str = "definition", known: Collection[str]
         for key, t in table.get("phrase", {}).items()
         if reader.keys("phrase", t, f"phrase '{key}'")
     }
+    cautions = dict(reader.caution(entry, f"caution {i}") for i, entry in enumerate(table.get("cautions", []), 1))
     if not complete or reader.faults:
         _complain(reader)
     definition = TargetDefinition(
         table["code"], table["name"], table["version"], table["applies_to"], table["favourable"], table["possible"],
         tuple(g for g in gates if g), tuple(c for c in criteria if c), tuple(needs), tuple(contradictions),
-        dict(table.get("supply", {})), table["argument"].strip(), phrases, tuple(table["cautions"]), text,
+        dict(table.get("supply", {})), table["argument"].strip(), phrases, tuple(cautions),
+        {words: tests for words, tests in cautions.items() if tests}, text,
     )  # fmt: skip
     reader.faults += faults_of(definition, known)
     _complain(reader)
@@ -258,6 +273,10 @@ def faults_of(definition: TargetDefinition, known: Collection[str] | None = None
         faults.append(
             f"favourable {definition.favourable} and possible {definition.possible}: expected 0 < possible <"
             " favourable <= 1"
+        )
+    if set("[]") & set(OPTIONAL_PART.sub("", definition.argument)):
+        faults.append(
+            "the argument holds a '[' or ']' alone; between the two stands what is said only where it is known"
         )
     codes = [item.code for item in definition.tests]
     faults += [f"the code '{code}' stands twice" for code in sorted({c for c in codes if codes.count(c) > 1})]

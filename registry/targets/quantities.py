@@ -57,6 +57,13 @@ def _arrived(known: Known) -> Words:
     return Words.yes_no(mapped | ~stalled, mapped | ~outcome.missing)
 
 
+def _altered(known: Known) -> Words:
+    """Logged phyllic, argillic, sericitic or greisen, or LOI above the warning limit; not known without LOI."""
+    loi = known.raw("loi_wt")
+    yes = known.flag("logged_destroyed_magnetite") | (loi > known.conventions.loi_warn_wt)
+    return Words.yes_no(yes, yes | ~np.isnan(loi))
+
+
 def _melt_parameter(known: Known) -> Floats:
     columns = ["sio2", "tio2", "al2o3", "feot", "mno", "mgo", "cao", "na2o", "k2o", "p2o5"]
     minor = {"tio2", "mno", "p2o5"}
@@ -168,6 +175,7 @@ RULES: dict[str, Rule] = {
     "intrusive_body": _intrusive_body,
     "intrusion_recorded": _intrusion_recorded,
     "arrived": _arrived,
+    "altered": _altered,
     "zircon_model_applies": _zircon_model_applies,
     "zircon_saturation_wh83_c": _zircon_temperature,
     "heat_production_uw_m3": _heat_production,
@@ -175,7 +183,7 @@ RULES: dict[str, Rule] = {
     "theta_centre": _theta_centre,
 }
 TEXT_RULES = (
-    "porphyritic_intrusion", "intrusive_body", "intrusion_recorded", "arrived", "zircon_model_applies",
+    "porphyritic_intrusion", "intrusive_body", "intrusion_recorded", "arrived", "altered", "zircon_model_applies",
 )  # fmt: skip
 
 #: Ratios that only the targets ask for: quantity -> (numerator column, denominator column, factor).

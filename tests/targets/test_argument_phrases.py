@@ -2,10 +2,18 @@
 
 from __future__ import annotations
 
+import re
+
 import pytest
 
 from registry.targets.argument import argue
-from registry.targets.definition import DefinitionError, definition_text, load_definition, parse_definition
+from registry.targets.definition import (
+    TARGET_CODES,
+    DefinitionError,
+    definition_text,
+    load_definition,
+    parse_definition,
+)
 
 PORPHYRY = {
     "fitness": "fit", "differentiation_index": 65.0, "sr_ppm": 720.0, "y_ppm": 11.0, "la_ppm": 24.0, "yb_ppm": 0.95,
@@ -45,4 +53,69 @@ def test_parse_definition_part_of_a_phrase_with_an_unknown_word_in_braces_is_ref
     text = definition_text("porphyry_copper").replace("({met} is met", "({found} is met")
 
     with pytest.raises(DefinitionError, match=r"part holds \['\{found\}'\]; it may hold \{met\} and \{not_met\} only"):
+        parse_definition(text, "porphyry_copper")
+
+
+def test_argue_line_that_hangs_on_silica_is_left_out_where_silica_is_not_known() -> None:
+    told = argue(load_definition("porphyry_copper"), PORPHYRY | {"sio2_vf_wt": None})
+
+    assert "V/Sc is 11.7. Redox is magnetite" in told["argument"]
+
+
+@pytest.mark.parametrize("code", TARGET_CODES)
+def test_argue_sample_without_any_value_compares_no_unknown_with_another(code: str) -> None:
+    argument = argue(load_definition(code), {})["argument"]
+
+    assert "not known" in argument
+    assert not re.search(r"(?:gives|give|explains up to|\+-|at|keeps) not known", argument)
+
+
+@pytest.mark.parametrize(
+    ("rock", "said"),
+    [
+        ({"loi_wt": 0.8}, False),
+        ({"loi_wt": 5.5}, True),
+        ({"loi_wt": 0.8, "alteration": "phyllic"}, True),
+        ({}, True),  # LOI is not known, so it cannot be told
+    ],
+)
+def test_argue_caution_on_alteration_is_said_unless_the_rock_is_known_to_be_fresh(
+    rock: dict[str, object], said: bool
+) -> None:
+    cautions = argue(load_definition("porphyry_copper"), PORPHYRY | rock)["cautions"]
+
+    assert any("sericite takes Sr out" in caution for caution in cautions) == said
+    assert any("screening aid" in caution for caution in cautions)
+
+
+def test_argue_caution_on_ore_in_the_sample_is_said_of_sulphur_above_its_limit_only() -> None:
+    definition = load_definition("nickel_copper")
+    told = {s: argue(definition, {"fitness": "fit", "s_wt": s, "mgo_vf_wt": 9.0})["cautions"] for s in (0.1, 1.2)}
+
+    assert [any("S above 0.5 %" in caution for caution in told[s]) for s in (0.1, 1.2)] == [False, True]
+    assert not any("barren dunite" in caution for caution in told[1.2])
+    assert all(any("fibrous minerals" in caution for caution in told[s]) for s in (0.1, 1.2))
+
+
+@pytest.mark.parametrize("code", TARGET_CODES)
+def test_cautions_on_hazards_and_on_decisions_are_never_left_out(code: str) -> None:
+    definition = load_definition(code)
+    always = [caution for caution in definition.cautions if caution not in definition.caution_tests]
+
+    for word in ("fibrous", "Hot ground", "screening aid"):
+        assert [c for c in definition.cautions if word in c] == [c for c in always if word in c]
+
+
+@pytest.mark.parametrize(
+    ("written", "instead", "fault"),
+    [
+        ("[ where the line", " where the line", r"a '\[' or '\]' alone"),
+        ('only_if = "sr_y >= 20" }', 'only_when = "sr_y >= 20" }', "caution 1: 'only_if' is missing"),
+        ('only_if = "sr_y >= 20" }', 'only_if = "sr_y about 20" }', "caution 1: test 'about 20' on sr_y"),
+    ],
+)
+def test_parse_definition_faulty_caution_or_optional_part_is_told(written: str, instead: str, fault: str) -> None:
+    text = definition_text("porphyry_copper").replace(written, instead, 1)
+
+    with pytest.raises(DefinitionError, match=fault):
         parse_definition(text, "porphyry_copper")

@@ -118,7 +118,7 @@ def test_intrusion_page_names_what_its_undecided_samples_lack_worth_most_first(c
 def test_intrusion_page_says_what_holds_for_all_targets_once(client: FlaskClient) -> None:
     page = words(client.get("/intrusions/Aster stock").text)
     assert page.count("decisions on money and land belong to competent persons") == 1
-    assert page.count("Sr/Y follows the thickness of the crust") == 1
+    assert page.count("Thick crust alone also raises Sr/Y") == 1
 
 
 def test_intrusion_page_ranges_are_those_of_the_views(client: FlaskClient, invented_registry: Path) -> None:

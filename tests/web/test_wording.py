@@ -49,6 +49,7 @@ def test_counts_carry_their_noun_and_thin_spaces() -> None:
     ("name", "words"),
     [
         ("feo_titrated_wt", "FeO titrated"), ("sn_ppm", "Sn"), ("sio2_vf_wt", "SiO₂ volatile-free"), ("s_wt", "S"),
+        ("theta_centre", "heat left at the centre"), ("eu_anomaly", "Eu/Eu*"), ("asi", "ASI"),
         ("half_width_m", "half-width"), ("sr_y", "Sr/Y"), ("differentiation_index", "differentiation index"),
     ],
 )  # fmt: skip
