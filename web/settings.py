@@ -108,7 +108,9 @@ def change() -> Any:
 def _outcome(change: Change) -> Any:
     if not change.trial:
         return _page({}, {}, done=_done(change))
-    return _page(change.wishes, {}, foreseen=change.report, changes=change.told)
+    return _page(
+        change.wishes, {}, foreseen=change.report, changes=change.told, controls=_controls(change.report or {}, True)
+    )
 
 
 def _back_to_settings(change: Change) -> Any:
@@ -117,7 +119,16 @@ def _back_to_settings(change: Change) -> Any:
 
 
 def _done(change: Change) -> dict[str, Any]:
-    return {"changes": change.told, "verdicts": (change.report or {})["verdicts_changed"]}
+    report = change.report or {}
+    return {"changes": change.told, "verdicts": report["verdicts_changed"], "controls": _controls(report, False)}
+
+
+def _controls(report: Mapping[str, Any], trial: bool) -> list[str]:
+    """What changed patterns make of registered samples, the patterns called what they are called at their fields."""
+    lines = setting_changes.controls_in_lines(report, trial) if "controls" in report else []
+    for name in setting_changes.PATTERNS:
+        lines = [line.replace(f"{name} is", f"The pattern of {label(name).lower()} is") for line in lines]
+    return lines
 
 
 def _changes(before: Mapping[str, Any], values: Mapping[str, Any]) -> list[str]:
@@ -145,5 +156,5 @@ def _page(typed: Mapping[str, str], faults: Mapping[str, str], **more: Any) -> s
         choices_of=choices_of,
         typed_form=typed_form,
         choice_words=CHOICE_WORDS,
-        **{"done": None, "foreseen": None, "changes": [], "unchanged": False, **more},
+        **{"done": None, "foreseen": None, "changes": [], "controls": [], "unchanged": False, **more},
     )

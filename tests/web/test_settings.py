@@ -148,13 +148,18 @@ def test_settings_code_patterns_of_controls_are_set_like_conventions(writable: A
     answer = writable.post("/settings", **fields, do="foresee")
     text = words(answer.text)
     assert "Loss on ignition, remarked above: 3 wt% → 2.5 wt%; Blanks: none → ^PB-001$." in text
+    assert "1 sample of unknown kind would become a blank and be judged no more: PB-001." in text
     assert 'name="control_pattern.blank" value="^PB-001$"' in answer.text
     assert writable.sql("SELECT kind FROM sample WHERE code = 'PB-001'") == [("unknown",)]
     seen = unescape(re.search(r'name="seen" value="([^"]*)"', answer.text).group(1))  # type: ignore[union-attr]
     assert writable.post("/settings", **fields, do="change", seen=seen).status_code == 303
     assert writable.sql("SELECT value FROM setting WHERE name = 'control_pattern.blank'") == [("^PB-001$",)]
     assert writable.sql("SELECT kind FROM sample WHERE code = 'PB-001'") == [("blank",)]
-    assert 'name="control_pattern.blank" value="^PB-001$"' in writable.client.get("/settings").text
+    page = writable.client.get("/settings").text
+    assert 'name="control_pattern.blank" value="^PB-001$"' in page
+    assert "1 sample of unknown kind became a blank and is judged no more: PB-001." in words(page)
+    text = words(writable.post("/settings", **{"control_pattern.blank": ""}, do="foresee").text)
+    assert "The pattern of blanks is taken away; the samples it made controls stay controls" in text
 
 
 def test_settings_faulty_fields_are_named_and_linked_above(writable: Any) -> None:
