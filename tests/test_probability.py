@@ -387,7 +387,7 @@ def test_refresh_command_draws_and_says_what_it_is(
     assert run("refresh", "--probability", "--registry", founded_registry.path) == 0
     printed = capsys.readouterr().out
     assert "Drew probabilities for 5 samples" in printed and "not the chance of ore" in printed
-    assert "They stand in verdict_sheet.probability and beside the verdicts on the sample pages." in printed
+    assert "Those drawn stand in verdict_sheet.probability and beside the verdicts on the sample pages." in printed
     assert table(founded_registry, "SELECT count(*) FROM verdict_sheet WHERE probability IS NOT NULL")[0][0] > 0
     assert table(founded_registry, "SELECT DISTINCT probability_state FROM verdict") == [("computed",)]
     assert run("refresh", "--probability", "--json", "--registry", founded_registry.path) == 0

@@ -124,7 +124,7 @@ def refresh(
     if probability:
         lines.append(
             f"Drew probabilities for {drawn:,} {'sample' if drawn == 1 else 'samples'}: how often a verdict survives "
-            "analytical error, not the chance of ore. They stand in verdict_sheet.probability and beside the "
+            "analytical error, not the chance of ore. Those drawn stand in verdict_sheet.probability and beside the "
             "verdicts on the sample pages."
         )
     say({"recomputed": count, **({"drawn": drawn} if probability else {})}, lines, as_json)
