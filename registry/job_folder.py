@@ -18,6 +18,8 @@ from dataclasses import asdict, dataclass
 from pathlib import Path
 from typing import Any, ClassVar, Self
 
+from registry.server_secrets import whole_url
+
 #: What becomes of a job: it waits, is at work; then one of the ends. An import reads, has read and stores.
 WAITING, READING, READ, STORING, WORKING, TRIED, DONE, REFUSED, FAILED = (
     "waiting", "reading", "read", "storing", "working", "tried", "done", "refused", "failed",
@@ -73,7 +75,7 @@ class Job:
 def state_folder(registry_url: str) -> Path:
     """Where the jobs of a registry are kept: under XDG_STATE_HOME (XDG Base Directory Specification 0.8)."""
     home = os.environ.get("XDG_STATE_HOME") or str(Path.home() / ".local" / "state")
-    own = hashlib.sha256(registry_url.encode()).hexdigest()[:16]
+    own = hashlib.sha256(whole_url(registry_url).encode()).hexdigest()[:16]
     return Path(home) / "plutonbook" / "imports" / own
 
 

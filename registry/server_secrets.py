@@ -32,10 +32,10 @@ def signing_key(registry_url: str, place: Path | None = None) -> bytes:
         secret = _kept(place or secret_file())
     except (OSError, RuntimeError):  # RuntimeError: a user without a home
         secret = secrets.token_bytes(_LENGTH_BYTES)
-    return hmac.new(secret, _named(registry_url).encode(), hashlib.sha256).digest()
+    return hmac.new(secret, whole_url(registry_url).encode(), hashlib.sha256).digest()
 
 
-def _named(registry_url: str) -> str:
+def whole_url(registry_url: str) -> str:
     """The URL with the whole path of a file, so that two files of one name get two keys."""
     if registry_url.startswith("sqlite:///"):
         return f"sqlite:///{Path(registry_url.removeprefix('sqlite:///')).resolve()}"

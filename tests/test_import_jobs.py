@@ -296,6 +296,9 @@ def test_state_folder_follows_the_standard_and_the_registry(monkeypatch: pytest.
     """XDG Base Directory Specification 0.8: XDG_STATE_HOME, else ~/.local/state."""
     monkeypatch.setenv("XDG_STATE_HOME", str(tmp_path))
     one, other = state_folder("sqlite:///a"), state_folder("sqlite:///b")
+    monkeypatch.chdir(tmp_path)
+    assert state_folder("sqlite:///a") == state_folder(f"sqlite:///{tmp_path / 'a'}"), "one registry, named in two ways"
+    assert state_folder("sqlite:///a") != one, "two registries of one name in two folders"
     assert one != other and one.is_relative_to(tmp_path / "plutonbook")
     monkeypatch.delenv("XDG_STATE_HOME")
     monkeypatch.setenv("HOME", str(tmp_path))
