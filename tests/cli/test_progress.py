@@ -113,8 +113,8 @@ def test_import_that_has_to_wait_says_for_what_and_goes_on(founded_registry: obj
     ("command", "done"),
     [
         (("withdraw", "B-1"), "Batch B-1 withdrawn"),
-        (("digestion", "B-1", "Zr=xrf"), "fusion -> xrf"),
-        (("settings", "loi_warn_wt=1"), "loi_warn_wt: 3.0 -> 1.0"),
+        pytest.param(("digestion", "B-1", "Zr=xrf"), "fusion -> xrf", marks=pytest.mark.slow),
+        pytest.param(("settings", "loi_warn_wt=1"), "loi_warn_wt: 3.0 -> 1.0", marks=pytest.mark.slow),
     ],
 )
 def test_change_that_has_to_wait_says_for_what_and_goes_on(

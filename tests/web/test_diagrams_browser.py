@@ -19,7 +19,7 @@ from selenium.webdriver.common.action_chains import ActionChains
 from tests.web.serving import near, pixels, served, share, until
 from web import create_app
 
-pytestmark = pytest.mark.browser
+pytestmark = [pytest.mark.browser, pytest.mark.slow]  # the everyday run looks at pages in test_browser.py
 PATHS = (
     "/diagrams", "/diagrams?diagram=afm&table=1", "/diagrams?diagram=granite_rb_y_nb&by=porphyry_copper",
     "/diagrams?diagram=harker", "/diagrams?diagram=alumina&mark=PB-001", "/diagrams?diagram=sr_y&by=lithology",

@@ -15,7 +15,7 @@ import seed_demo
 from tests.web.import_site import TRACES, Site
 from tests.web.serving import served, until
 
-pytestmark = pytest.mark.browser
+pytestmark = [pytest.mark.browser, pytest.mark.slow]  # the everyday run looks at pages in test_browser.py
 
 
 @pytest.fixture

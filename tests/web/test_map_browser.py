@@ -17,7 +17,7 @@ from tests.web.placed_registry import placed
 from tests.web.serving import near, pixels, served, share, until
 from web import create_app
 
-pytestmark = pytest.mark.browser
+pytestmark = [pytest.mark.browser, pytest.mark.slow]  # the everyday run looks at pages in test_browser.py
 PATHS = (
     "/map", "/map?number=sr_y&table=1", "/map?by=porphyry_copper", "/map?site=DH-1", "/map?kind=outcrop",
     "/map?text=zzz", "/map?by=nothing",

@@ -77,6 +77,7 @@ def _one_of_each_kind(rows: sqlite3.Connection) -> list[str]:
     return sorted({code for (code,) in found})
 
 
+@pytest.mark.slow
 def test_demo_pages_show_no_raw_name_and_no_computer_spelling_of_powers(
     demo: tuple[FlaskClient, sqlite3.Connection],
 ) -> None:

@@ -10,7 +10,7 @@ from flask import Flask
 
 from tests.web.serving import near, pixels, served, share, until
 
-pytestmark = pytest.mark.browser
+pytestmark = [pytest.mark.browser, pytest.mark.slow]  # the everyday run looks at pages in test_browser.py
 PATHS = (
     "/", "/intrusions", "/intrusions?target=porphyry_copper", "/intrusions/Aster stock", "/sites", "/sites/DH-1",
     "/sites/DH-1?value=sr_y&value=mg_number&value=differentiation_index&target=tin", "/sites/OC-7", "/settings",
