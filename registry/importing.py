@@ -22,7 +22,6 @@ from registry.importing_codes import (
     rocks_named_like_materials,
     unknown_codes,
 )
-from registry.importing_controls import called_otherwise
 from registry.importing_faults import Rest, prefixed
 from registry.importing_lines import resolve
 from registry.importing_results import StoredBatch, on_parts_left, store_results
@@ -235,10 +234,8 @@ def _store_one(
         )
         contents.batch = contents.batch or report.results.stored
         if not faults:
-            report.results.remarks += called_otherwise(connection, reading.results, options.code_prefix)
-            if options.create_samples:
-                added = rocks_named_like_materials(connection) - rocks_before
-                report.on_storing += on_named_like_materials(reading.file, added)
+            added = rocks_named_like_materials(connection) - rocks_before if options.create_samples else ()
+            report.on_storing += on_named_like_materials(reading.file, added)
         return report, done, faults
     table = reading.master
     assert table is not None

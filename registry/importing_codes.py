@@ -12,7 +12,7 @@ from typing import Any
 from registry.errors import Problem
 from registry.intake import Reading, ResultTable
 from registry.intake.spooled import parts_of
-from registry.store import masters, reference_values
+from registry.store import masters, quality_rows, reference_values
 from registry.store.near_codes import KnownCodes, pattern_of
 
 #: Remarks on almost equal sample codes that are listed one by one; unknown codes, before the rest is counted.
@@ -85,9 +85,8 @@ def almost_known(connection: Any, reading: Reading, prefix: str) -> list[Problem
 
 def rocks_named_like_materials(connection: Any) -> set[str]:
     """Codes of samples of the kind 'unknown' that are names of reference materials of the registry."""
-    known = masters.sample_ids(connection, reference_values.material_names(connection))
-    rocks = set(masters.samples_of_kinds(connection, ("unknown",)).tolist()) if known else set()
-    return {code for code, sample_id in known.items() if sample_id in rocks}
+    kinds = quality_rows.kinds_of(connection, reference_values.material_names(connection))
+    return {code for code, kind in kinds.items() if kind == "unknown"}
 
 
 def on_named_like_materials(file: str, codes: Iterable[str]) -> list[Problem]:

@@ -47,22 +47,20 @@ def call_known_controls(connection: Any, said: dict[str, Spoken], known: dict[st
     Before that those that came in with the same import become what the user's code patterns call them.
     """
     call_by_patterns(connection)
-    codes = {code: spoken for code, spoken in said.items() if code not in new}
-    unknown = set(masters.samples_of_kinds(connection, ("unknown",)).tolist()) if codes else set()
     kinds: dict[str, list[int]] = {}
-    for code, spoken in codes.items():
+    for code, kind in quality_rows.kinds_of(connection, said.keys() - new).items():
         # a duplicate under the code of its original is a repeated line, not another sample
-        if known[code] in unknown and spoken.kind is not None and spoken.kind != "duplicate":
-            kinds.setdefault(spoken.kind, []).append(known[code])
+        called = said[code].kind
+        if kind == "unknown" and called is not None and called != "duplicate":
+            kinds.setdefault(called, []).append(known[code])
     quality_rows.set_kinds(connection, kinds)
 
 
-def called_otherwise(connection: Any, table: ResultTable, prefix: str) -> list[str]:
+def called_otherwise(connection: Any, table: ResultTable, prefix: str, said: dict[str, Spoken]) -> list[str]:
     """Sentences on registered samples that the certificate calls a control of another kind than they are registered as.
 
-    A rock's line called a duplicate is a repeat of it, and no contradiction.
+    ``said`` as ``spoken_of`` gives it. A rock's line called a duplicate is a repeat of it, and no contradiction.
     """
-    said = spoken_of((f"{prefix}{code}" for code in table.sample_codes), table, prefix)
     if not said:
         return []
     lines: dict[str, int] = {}

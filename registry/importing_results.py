@@ -15,7 +15,7 @@ from registry.clock import now
 from registry.computing import CHILDS_CHUNK_SIZE, WORTH_A_CHILD, Computations
 from registry.errors import Problem
 from registry.importing_codes import first_of, unknown_codes
-from registry.importing_controls import columns_that_disagree, limit_reported
+from registry.importing_controls import called_otherwise, columns_that_disagree, limit_reported
 from registry.importing_lines import Lines, raw_parts, resolve
 from registry.intake import Reading, ResultTable
 from registry.intake.spooled import SpooledArray
@@ -154,6 +154,7 @@ def store_results(
         *_place_taken(connection, place, supersedes, before),
         *_laboratories(table, options.lab, place),
         *columns_that_disagree(table),
+        *called_otherwise(connection, table, options.code_prefix, lines.said),
     ]
     report.stored = StoredBatch(batch_id, place.code, place.part_of or batch_id, supersedes)
     return report, fresh_ids, []
