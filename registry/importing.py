@@ -83,10 +83,6 @@ _ORDER = sorted(KINDS, key=lambda kind: kind == "results")
 _NOTHING_COMPUTED = np.zeros(0, dtype=np.int64)
 
 
-class _NothingWritten(Exception):
-    """Rolls a dry run back."""
-
-
 def import_files(
     registry: Registry,
     paths: Sequence[Path],
@@ -138,16 +134,10 @@ def _import(
     if options.keep_going:
         asides = SetAside.of_all((file.path, file.file.data, reading) for reading, file in readings)
     unreadable = [problem for reading, _ in readings for problem in reading.problems if not reading.ok]
-    report: ImportReport | None = None
-    try:
-        with writing(registry, what=f"an import of {counted(len(files), 'file')}", tell=tell, bulk=True) as connection:
-            report = _store(connection, readings, asides, options, unreadable, progress)
-            progress("writing", 0, 0)
-            if options.dry_run:
-                raise _NothingWritten
-    except _NothingWritten:
-        pass
-    assert report is not None
+    what = f"an import of {counted(len(files), 'file')}"
+    with writing(registry, what=what, tell=tell, bulk=True, trial=options.dry_run) as connection:
+        report = _store(connection, readings, asides, options, unreadable, progress)
+        progress("writing", 0, 0)
     return report
 
 

@@ -9,7 +9,7 @@ from collections.abc import Callable
 from dataclasses import dataclass
 from typing import Any
 
-from registry.progress import Progress
+from registry.progress import Progress, unwatched
 from registry.refresh import changes_since, drain, last_change
 from registry.store import stale
 from registry.store.engine import Registry, writing
@@ -31,10 +31,6 @@ class Consequence:
         return sum(number for *_, number in self.changes)
 
 
-class _Undo(Exception):
-    """Ends a dry run: the transaction is rolled back."""
-
-
 def recomputed_after(
     registry: Registry,
     change: Callable[[Any], Any],
@@ -53,23 +49,18 @@ def recomputed_after(
     for a busy registry and gets the sentence that says what holds it. ``change`` must make no row that refers to a
     missing one: foreign keys are not looked up row by row (half the time of writing verdicts).
     """
-    report: dict[str, Any] = {}
-    try:
-        with writing(registry, what=what, tell=tell, bulk=True) as connection:
-            before = last_change(connection)
-            if progress is not None:
-                progress("marking", 0, 0)
-            change(connection)
-            report["recomputed"] = drain(connection, cause=cause, progress=progress, trial=dry_run)
-            report["verdicts_changed"] = changes_since(connection, before)
-            report["changes"] = verdict_changes(connection, before)
-            report["kinds"] = changes_by_kind(connection, before)
-            if progress is not None:
-                progress("writing", 0, 0)
-            if dry_run:
-                raise _Undo
-    except _Undo:
-        pass
+    progress = progress or unwatched
+    with writing(registry, what=what, tell=tell, bulk=True, trial=dry_run) as connection:
+        before = last_change(connection)
+        progress("marking", 0, 0)
+        change(connection)
+        report = {
+            "recomputed": drain(connection, cause=cause, progress=progress, trial=dry_run),
+            "verdicts_changed": changes_since(connection, before),
+            "changes": verdict_changes(connection, before),
+            "kinds": changes_by_kind(connection, before),
+        }
+        progress("writing", 0, 0)
     return report
 
 

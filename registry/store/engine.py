@@ -228,6 +228,7 @@ def writing(
     wait_s: float | None = None,
     tell: Callable[[str], Any] | None = None,
     bulk: bool = False,
+    trial: bool = False,
 ) -> Iterator[sa.Connection]:
     """A connection in a transaction of its own that ends with a commit, or with a rollback if anything is raised.
 
@@ -238,6 +239,7 @@ def writing(
 
     ``bulk``: for imports, which make every id they refer to in the same transaction. On SQLite foreign keys are then
     not looked up row by row (a third of the time of an import); the test of the import runs ``foreign_key_check``.
+    ``trial``: everything is rolled back at the end, for a dry run.
     """
     if wait_s is None:
         wait_s = PATIENCE_S if tell is None else 600.0
@@ -247,7 +249,10 @@ def writing(
             yield connection
             if drain is not None:
                 drain(connection)
-            connection.commit()
+            if trial:
+                connection.rollback()
+            else:
+                connection.commit()
         except (sa.exc.DBAPIError, sqlite3.Error) as error:
             _roll_back(connection)
             told = faults.told(error, registry.path or "")
