@@ -89,7 +89,7 @@ class Computations:
         if self._wanted:
             self._child = _SPARE.pop() if _SPARE else _start()
             self._pool = ThreadPoolExecutor(1)
-            self._pool.submit(self._tell, (self._rules, self._tables))
+            self._pool.submit(_tell, self._child, (self._rules, self._tables))
             self._fill()
         return self
 
@@ -129,15 +129,9 @@ class Computations:
                 return
             self._waiting.append((chunk, self._pool.submit(self._ask, chunk)))
 
-    def _tell(self, message: Any) -> None:
-        assert self._child is not None and self._child.stdin is not None
-        pickle.dump(message, self._child.stdin, pickle.HIGHEST_PROTOCOL)
-        self._child.stdin.flush()
-
     def _ask(self, chunk: Chunk) -> Computed | bytes:
-        assert self._child is not None and self._child.stdout is not None
-        self._tell(chunk)
-        answer = pickle.load(self._child.stdout)
+        assert self._child is not None
+        answer = _asked(self._child, chunk)
         if isinstance(answer, Exception):
             raise answer
         return answer
@@ -187,10 +181,15 @@ class Helpers:
         return [*answers, here]
 
 
-def _asked(child: subprocess.Popen[bytes], message: Any) -> Any:
-    assert child.stdin is not None and child.stdout is not None
+def _tell(child: subprocess.Popen[bytes], message: Any) -> None:
+    assert child.stdin is not None
     pickle.dump(message, child.stdin, pickle.HIGHEST_PROTOCOL)
     child.stdin.flush()
+
+
+def _asked(child: subprocess.Popen[bytes], message: Any) -> Any:
+    _tell(child, message)
+    assert child.stdout is not None
     return pickle.load(child.stdout)
 
 
@@ -204,35 +203,29 @@ def _answer(chunk: Chunk, rules: Rules, tables: Sequence[str]) -> Computed | byt
 
 
 def _serve(requests: BinaryIO, answers: BinaryIO) -> None:
-    """The child: rules first, then chunks until the parent closes the pipe."""
-    try:
+    """The child of ``Computations``: rules first, then chunks."""
+    with suppress(EOFError):
         rules, tables = pickle.load(requests)
-        while True:
-            chunk = pickle.load(requests)
-            try:
-                answer: Any = _answer(chunk, rules, tables)
-            except Exception as error:  # handed to the parent, which raises it
-                answer = error
-            pickle.dump(answer, answers, pickle.HIGHEST_PROTOCOL)
-            answers.flush()
-    except EOFError:
-        return
+        _answer_each(requests, answers, lambda chunk: _answer(chunk, rules, tables))
 
 
 def _serve_functions(requests: BinaryIO, answers: BinaryIO) -> None:
-    """The child of ``Helpers``: functions with their arguments until the parent closes the pipe."""
+    """The child of ``Helpers``: functions with their arguments."""
     signal.signal(signal.SIGINT, signal.SIG_IGN)  # the parent is interrupted, and ends it
-    try:
-        while True:
-            function, task = pickle.load(requests)
-            try:
-                answer: Any = function(*task)
-            except Exception as error:  # handed to the parent, which raises it
-                answer = error
-            pickle.dump(answer, answers, pickle.HIGHEST_PROTOCOL)
-            answers.flush()
-    except EOFError:
-        return
+    with suppress(EOFError):
+        _answer_each(requests, answers, lambda asked: asked[0](*asked[1]))
+
+
+def _answer_each(requests: BinaryIO, answers: BinaryIO, answer_to: Callable[[Any], Any]) -> None:
+    """Answer until the parent closes the pipe, which ends in EOFError."""
+    while True:
+        request = pickle.load(requests)
+        try:
+            answer = answer_to(request)
+        except Exception as error:  # handed to the parent, which raises it
+            answer = error
+        pickle.dump(answer, answers, pickle.HIGHEST_PROTOCOL)
+        answers.flush()
 
 
 if __name__ == "__main__":

@@ -88,11 +88,6 @@ def _rows(source: Source, first_data_line: int, reasons: Mapping[int, str]) -> I
 def source_of(file: bytes | Path, reading: Reading) -> Source:
     """The rows of cells that a reading was made from, to be gone through again."""
     options = ReadingOptions(recipe=reading.recipe)
-    if isinstance(file, Path):
-        seen = scan(file)
-        if seen is not None:
-            separator = separator_of(file, seen.encoding, options, seen.quoted)
-            return DelimitedSource(file, seen.encoding, separator, seen.quoted)
     parts = unpack(file, options.unpacked_limit_bytes)
     for part in parts:
         if part.is_workbook:
