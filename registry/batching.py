@@ -5,6 +5,7 @@ from __future__ import annotations
 import io
 import tempfile
 from collections.abc import Callable, Mapping, Sequence
+from pathlib import Path
 from typing import IO, Any
 
 from registry import auditing
@@ -14,9 +15,6 @@ from registry.progress import Progress
 from registry.recomputing import recomputed_after
 from registry.store import batch_files, batches
 from registry.store.engine import Registry, reading
-
-#: A stored file that is larger is handed out from disk.
-_IN_MEMORY_BYTES = 8_000_000
 
 
 def list_batches(registry: Registry) -> list[dict[str, Any]]:
@@ -136,17 +134,13 @@ def stored_file(registry: Registry, code: str) -> tuple[str, IO[bytes]]:
 
     Raises NotFound where none is kept.
     """
-    with reading(registry) as connection:
+    with reading(registry) as connection, tempfile.TemporaryDirectory() as folder:
         batch = _known(connection, code)
-        if not batch_files.is_kept(connection, batch["batch_id"]):
+        held = batch_files.laid_out(connection, batch["batch_id"], Path(folder))
+        if held is None:
             raise NotFound(f"the registry keeps no file of batch '{code}'")
-        file: IO[bytes] = io.BytesIO()
-        for piece in batch_files.unpacked_parts(connection, batch["batch_id"]):
-            if isinstance(file, io.BytesIO) and file.tell() > _IN_MEMORY_BYTES:
-                begun, file = file.getvalue(), tempfile.TemporaryFile()  # noqa: SIM115 - the caller closes it
-                file.write(begun)
-            file.write(piece)
-    file.seek(0)
+        # an open file stays readable when its folder is gone
+        file: IO[bytes] = io.BytesIO(held) if isinstance(held, bytes) else held.open("rb")
     return batch["file_name"] or f"{code}.csv", file
 
 

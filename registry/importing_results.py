@@ -142,16 +142,16 @@ def store_results(
             write(chunk, outcome)
         ready_rows.let_go(connection)
     supersedes = place.supersedes if within is None else within.supersedes
-    before = batches.parts_in_use(connection, supersedes) if supersedes is not None else []
+    gone: list[str] = []
     if place.supersedes is not None:  # first, so that its controls judge nothing any more
-        batches.supersede(connection, place.supersedes, batch_id)
+        gone = batches.supersede(connection, place.supersedes, batch_id)
     elif supersedes is not None:
-        batches.supersede_parts(connection, supersedes, batch_id)
+        gone = batches.supersede_parts(connection, supersedes, batch_id)
     report.controls = controlling.assess_imported(connection, batch_id, lines.controlled)
     for ids in raw_parts(np.setdiff1d(lines.sample_ids, fresh_ids)):
         stale.mark(connection, ids.tolist(), stale.DERIVE)
     report.remarks = [
-        *_place_taken(connection, place, supersedes, before),
+        *_place_taken(place, gone),
         *_laboratories(table, options.lab, place),
         *columns_that_disagree(table),
         *called_otherwise(connection, table, options.code_prefix, lines.said),
@@ -164,16 +164,13 @@ def _count(number: int, word: str) -> str:
     return f"{number:,} {word}" if number == 1 else f"{number:,} {word}s"
 
 
-def _place_taken(connection: Any, place: Place, supersedes: int | None, before: Sequence[tuple[int, str]]) -> list[str]:
-    """Sentences on the batch that a table takes the place of, and on those of its parts in use ``before`` it."""
+def _place_taken(place: Place, parts: Sequence[str]) -> list[str]:
+    """Sentences on the batch that a table takes the place of, and on its parts that go with it."""
     told = [place.told] if place.told else []
-    if supersedes is None:
-        return told
-    left = {batch_id for batch_id, _ in batches.parts_in_use(connection, supersedes)}
-    gone = [f"'{code}'" for batch_id, code in before if batch_id not in left]
-    if gone:
-        report = "reports" if len(gone) == 1 else "report"
-        told.append(f"takes the place of {', '.join(gone)} as well, which {report} the same analytes")
+    if parts:
+        report = "reports" if len(parts) == 1 else "report"
+        named = ", ".join(f"'{code}'" for code in parts)
+        told.append(f"takes the place of {named} as well, which {report} the same analytes")
     return told
 
 

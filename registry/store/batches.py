@@ -140,17 +140,18 @@ def further_tables(connection: sa.Connection, batch_id: int) -> list[int]:
     return found
 
 
-def supersede(connection: sa.Connection, batch_id: int, successor_id: int) -> None:
-    """Let a corrected certificate take the place of a batch, and of its parts as ``supersede_parts`` says."""
+def supersede(connection: sa.Connection, batch_id: int, successor_id: int) -> list[str]:
+    """Let a corrected certificate take the place of a batch and, by ``supersede_parts``, of its parts; their codes."""
     earlier = lineage(connection, batch_id)
     values = {"state": "superseded", "superseded_by": successor_id}
     connection.execute(sa.update(_batch).where(_batch.c.batch_id == batch_id).values(**values))
-    supersede_parts(connection, batch_id, successor_id)
+    parts = supersede_parts(connection, batch_id, successor_id)
     _put_before(connection, successor_id, earlier)
+    return parts
 
 
-def supersede_parts(connection: sa.Connection, batch_id: int, successor_id: int) -> None:
-    """Let a table of a corrected certificate take the place of those active parts of a batch that it corrects.
+def supersede_parts(connection: sa.Connection, batch_id: int, successor_id: int) -> list[str]:
+    """Let a table of a corrected certificate take the place of those active parts of a batch that it corrects; codes.
 
     It corrects a part where it reports half of the part's analytes or more: a correction of the majors leaves the
     traces, which came as another file, in use.
@@ -160,10 +161,14 @@ def supersede_parts(connection: sa.Connection, batch_id: int, successor_id: int)
     belongs = sa.or_(_batch.c.part_of.in_(own), _batch.c.batch_id.in_(own))
     mine = [successor_id, *further_tables(connection, successor_id)]
     others = sa.and_(belongs, _batch.c.state == "active", _batch.c.batch_id.not_in(mine))
-    for part in connection.scalars(sa.select(_batch.c.batch_id).where(others)).all():
+    taken = []
+    parts = sa.select(_batch.c.batch_id, _batch.c.code).where(others).order_by(_batch.c.batch_id)
+    for part, code in connection.execute(parts).all():
         held = set(connection.scalars(sa.select(_column.c.analyte).where(_column.c.batch_id == part)))
         if 2 * len(held & brought) >= len(held):
             connection.execute(sa.update(_batch).where(_batch.c.batch_id == part).values(state="superseded"))
+            taken.append(code)
+    return taken
 
 
 def parts_in_use(connection: sa.Connection, batch_id: int) -> list[tuple[int, str]]:

@@ -163,7 +163,7 @@ def test_charts_stand_with_the_worst_state_first() -> None:
 
 
 def test_large_file_of_a_batch_is_handed_out_from_disk(site: Site, monkeypatch: pytest.MonkeyPatch) -> None:
-    monkeypatch.setattr(batching, "_IN_MEMORY_BYTES", 0)
+    monkeypatch.setattr(batch_files, "HELD_BYTES", 1)
     monkeypatch.setattr(batch_files, "PART_BYTES", 16)
     name, file = batching.stored_file(site.app.extensions["registry"], "majors")
     with file:
