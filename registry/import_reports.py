@@ -8,7 +8,7 @@ from itertools import groupby
 from typing import Any
 
 from registry.errors import Problem
-from registry.importing_results import ResultsReport
+from registry.importing_results import ResultsReport, counted
 from registry.intake import Reading
 from registry.intake_choices import TIMES, described_columns, is_of_column
 from registry.petrology.digestion import WEIGHED
@@ -229,7 +229,3 @@ def _cut(lines: list[str], verbose: bool) -> list[str]:
     if verbose or len(lines) <= SHOWN:
         return lines
     return [*lines[:SHOWN], f"  ... and {len(lines) - SHOWN:,} more (--verbose lists them)"]
-
-
-def counted(number: int, word: str) -> str:
-    return f"{number:,} {word}" if number == 1 else f"{number:,} {word}s"

@@ -14,7 +14,7 @@ import numpy as np
 from registry import auditing
 from registry.computing import child_at_hand
 from registry.errors import InputProblems, Problem, UsageError
-from registry.import_reports import FileReport, ImportReport, counted, understood_of
+from registry.import_reports import FileReport, ImportReport, understood_of
 from registry.importing_certificates import store_certificates
 from registry.importing_codes import (
     almost_known,
@@ -24,7 +24,7 @@ from registry.importing_codes import (
 )
 from registry.importing_faults import Rest, prefixed
 from registry.importing_lines import resolve
-from registry.importing_results import StoredBatch, on_parts_left, store_results
+from registry.importing_results import StoredBatch, counted, on_parts_left, store_results
 from registry.intake import KINDS, MasterTable, Reading, ReadingOptions
 from registry.intake_choices import described_columns
 from registry.keeping_going import SetAside

@@ -60,18 +60,18 @@ class ResultsReport:
     stored: StoredBatch | None = None
 
     def lines(self) -> list[str]:
-        text = f"batch {self.batch}: {_count(self.aliquots, 'line')}, {_count(self.results, 'result')}"
+        text = f"batch {self.batch}: {counted(self.aliquots, 'line')}, {counted(self.results, 'result')}"
         text += f" ({self.censored:,} censored)"
         if self.repeats:
-            text += f", {_count(self.repeats, 'repeated line')}"
+            text += f", {counted(self.repeats, 'repeated line')}"
         lines = [text]
         plain = self.new_samples - self.new_controls
         if plain:
-            lines.append(f"{_count(plain, 'sample')} {'was' if plain == 1 else 'were'} added with the kind 'unknown'")
+            lines.append(f"{counted(plain, 'sample')} {'was' if plain == 1 else 'were'} added with the kind 'unknown'")
         if self.new_controls:
             verb = "was" if self.new_controls == 1 else "were"
             lines.append(
-                f"{_count(self.new_controls, 'control sample')} {verb} added, as the certificate or a code calls them"
+                f"{counted(self.new_controls, 'control sample')} {verb} added, as the certificate or a code calls them"
             )
         return [*lines, *(f"remark: {remark}" for remark in self.remarks), *self.controls]
 
@@ -160,7 +160,8 @@ def store_results(
     return report, fresh_ids, []
 
 
-def _count(number: int, word: str) -> str:
+def counted(number: int, word: str) -> str:
+    """``1 sample``, ``2,000 samples``."""
     return f"{number:,} {word}" if number == 1 else f"{number:,} {word}s"
 
 

@@ -18,7 +18,7 @@ from dataclasses import asdict, dataclass
 from pathlib import Path
 from typing import Any, ClassVar, Self
 
-from registry.server_secrets import whole_url
+from registry.state_place import state_place, whole_url
 
 #: What becomes of a job: it waits, is at work; then one of the ends. An import reads, has read and stores.
 WAITING, READING, READ, STORING, WORKING, TRIED, DONE, REFUSED, FAILED = (
@@ -73,10 +73,9 @@ class Job:
 
 
 def state_folder(registry_url: str) -> Path:
-    """Where the jobs of a registry are kept: under XDG_STATE_HOME (XDG Base Directory Specification 0.8)."""
-    home = os.environ.get("XDG_STATE_HOME") or str(Path.home() / ".local" / "state")
+    """Where the jobs of a registry are kept."""
     own = hashlib.sha256(whole_url(registry_url).encode()).hexdigest()[:16]
-    return Path(home) / "plutonbook" / "imports" / own
+    return state_place() / "imports" / own
 
 
 class JobFolder:

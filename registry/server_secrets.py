@@ -1,7 +1,4 @@
-"""The secret that signs the cookies of the site: in the user's state folder, never in the registry, which is shared.
-
-The folder is that of the XDG Base Directory Specification 0.8, XDG_STATE_HOME or ~/.local/state.
-"""
+"""The secret that signs the cookies of the site: in the user's state folder, never in the registry, which is shared."""
 
 from __future__ import annotations
 
@@ -13,13 +10,14 @@ import stat
 from contextlib import suppress
 from pathlib import Path
 
+from registry.state_place import state_place, whole_url
+
 _LENGTH_BYTES = 32
 
 
 def secret_file() -> Path:
     """Where the secret is kept."""
-    home = os.environ.get("XDG_STATE_HOME") or str(Path.home() / ".local" / "state")
-    return Path(home) / "plutonbook" / "secret"
+    return state_place() / "secret"
 
 
 def signing_key(registry_url: str, place: Path | None = None) -> bytes:
@@ -33,13 +31,6 @@ def signing_key(registry_url: str, place: Path | None = None) -> bytes:
     except (OSError, RuntimeError):  # RuntimeError: a user without a home
         secret = secrets.token_bytes(_LENGTH_BYTES)
     return hmac.new(secret, whole_url(registry_url).encode(), hashlib.sha256).digest()
-
-
-def whole_url(registry_url: str) -> str:
-    """The URL with the whole path of a file, so that two files of one name get two keys."""
-    if registry_url.startswith("sqlite:///"):
-        return f"sqlite:///{Path(registry_url.removeprefix('sqlite:///')).resolve()}"
-    return registry_url
 
 
 def _kept(place: Path) -> bytes:

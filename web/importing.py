@@ -25,10 +25,7 @@ LARGEST_UPLOAD_BYTES = 200 * 1024 * 1024
 #: A quick import is shown as done at once; a longer one shows its progress.
 PATIENCE_S = 1.5
 MOST_FILES = 50
-STATE_WORDS = {
-    "waiting": "waiting", "reading": "being read", "read": "read, not stored", "storing": "being stored",
-    "done": "stored", "refused": "has problems", "failed": "failed",
-}  # fmt: skip
+STATE_WORDS = {**working.STATE_WORDS, "done": "stored"}
 
 
 def register(app: Flask) -> None:
