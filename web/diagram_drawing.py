@@ -17,7 +17,7 @@ from markupsafe import Markup, escape
 
 from registry.diagrams import Diagram
 from registry.plotting import Cells, Placed, Window, count_steps, fractions, line_places, ticks, triangle_place
-from registry.store.reading.diagrams import Group
+from registry.store.reading.drawn_samples import Group
 from registry.store.reading.filters import VERDICTS
 from web.numbers import reported
 from web.wording import formula

@@ -6,7 +6,7 @@ from collections.abc import Collection, Mapping, Sequence
 from typing import Any
 
 from registry.diagrams import ALIASES, DIAGRAMS, FIRST, PANELS, Diagram, Panels
-from registry.store.reading.diagrams import Group
+from registry.store.reading.drawn_samples import Group
 from registry.store.reading.filters import Filter
 from web import wording
 from web.sentence import address

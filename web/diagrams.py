@@ -24,6 +24,7 @@ from registry.plotting import (
 from registry.store.reading import diagrams as reading
 from registry.store.reading import samples as samples_reading
 from registry.store.reading.columns import Columns
+from registry.store.reading.drawn_samples import CONTROL_KINDS
 from registry.store.reading.filters import Filter
 from registry.store.reading.targets import target_names
 from web import diagram_drawing as drawing
@@ -146,7 +147,7 @@ def _drawn(connection: Any, asked: Filter, choice: Choice, columns: Columns, fix
 def _controls_left_out(count: int, asked: Filter, choice: Choice) -> list[dict[str, Any]]:
     if not count:
         return []
-    pairs = [*asked.arguments(), *(("kind", kind) for kind in reading.CONTROL_KINDS), *choice.pairs()]
+    pairs = [*asked.arguments(), *(("kind", kind) for kind in CONTROL_KINDS), *choice.pairs()]
     words = "control of the laboratory" if count == 1 else "controls of the laboratory"
     return [{"count": count, "words": f"{words} (blanks, reference materials, duplicates)",
              "link": "draw them alone", "address": address(pairs, "diagrams.page")}]  # fmt: skip

@@ -5,7 +5,7 @@ from __future__ import annotations
 from collections.abc import Mapping, Sequence
 
 from registry.store.reading.columns import Column, Columns
-from registry.store.reading.diagrams import Group
+from registry.store.reading.drawn_samples import Group
 from registry.store.reading.filters import Filter
 from web.diagram_request import ENDS, GROUP_WORDS
 

@@ -9,6 +9,7 @@ from registry import map_grids, mapping
 from registry.map_grids import Grid, choose_grid, places_of
 from registry.plotting import fractions, in_cells
 from registry.store.reading import maps as reading
+from registry.store.reading.drawn_samples import CONTROL_KINDS
 from registry.store.reading.filters import Filter
 from web import diagram_drawing, numbers, wording
 from web import map_drawing as drawing
@@ -48,7 +49,7 @@ def drawn_map(connection: Any, asked: Filter, choice: MapChoice, fixed: Sequence
     sites = _sites_shown(every_site, asked, used)
     found: dict[str, Any] = {"total": len(every), "some_sites": bool(sites), "left_out": []}
     if count := len(every) - len(rows):
-        kinds = [("kind", kind) for kind in reading.CONTROL_KINDS]
+        kinds = [("kind", kind) for kind in CONTROL_KINDS]
         words = "control of the laboratory" if count == 1 else "controls of the laboratory"
         found["left_out"].append({
             "count": count, "words": f"{words} (blanks, reference materials, duplicates)", "link": "show them alone",

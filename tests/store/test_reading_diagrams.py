@@ -10,7 +10,8 @@ from registry.judging import install_shipped_definitions
 from registry.store import tables
 from registry.store.engine import Registry, reading, writing
 from registry.store.reading.columns import load_columns
-from registry.store.reading.diagrams import GROUPS, Group, cause_words, diagram_rows, point_details
+from registry.store.reading.diagrams import cause_words, diagram_rows, point_details
+from registry.store.reading.drawn_samples import GROUPS, Group
 from registry.store.reading.filters import Filter, parse_filter
 from registry.targets.definition import load_definitions
 

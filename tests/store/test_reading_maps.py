@@ -11,7 +11,7 @@ from registry.map_grids import places_of
 from registry.store import tables
 from registry.store.engine import Registry, reading, writing
 from registry.store.reading.columns import load_columns
-from registry.store.reading.diagrams import GROUPS, Group
+from registry.store.reading.drawn_samples import GROUPS, Group
 from registry.store.reading.filters import Filter, parse_filter
 from registry.store.reading.maps import BASIS, EASTING, VALUE, map_rows, map_sites, place_details
 from registry.targets.definition import load_definitions

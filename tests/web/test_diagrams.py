@@ -15,7 +15,7 @@ from registry.diagrams import DIAGRAMS, PANELS
 from registry.petrology.field_lines import DIAGRAMS as FIELD_LINES
 from registry.petrology.references import REFERENCES
 from registry.store.engine import Registry
-from registry.store.reading.diagrams import Group
+from registry.store.reading.drawn_samples import Group
 from web import diagrams as page_module
 from web.diagram_drawing import legend_of
 from web.security import CONTENT_SECURITY_POLICY

@@ -84,18 +84,21 @@ class Page:
     previous: Place | None
 
 
-def _is_postgresql(connection: Connection) -> bool:
+def is_postgresql(connection: Connection) -> bool:
+    """Whether the registry lies on PostgreSQL."""
     return connection.dialect.name == "postgresql"
 
 
-def _joins(tables: set[str]) -> str:
+def joined_tables(tables: set[str]) -> str:
+    """``sample`` joined with these tables, for FROM."""
     wanted = set(tables)
     if "area" in wanted:
         wanted |= {"site", "intrusion"}
     return " ".join(["sample", *(clause for table, clause in _JOINS.items() if table in wanted)])
 
 
-def _bind_list(values: Sequence[Any], stem: str, bound: dict[str, Any]) -> str:
+def bind_list(values: Sequence[Any], stem: str, bound: dict[str, Any]) -> str:
+    """Placeholders for a list of values, which go into ``bound``."""
     names = []
     for position, value in enumerate(values):
         bound[f"{stem}_{position}"] = value
@@ -103,7 +106,7 @@ def _bind_list(values: Sequence[Any], stem: str, bound: dict[str, Any]) -> str:
     return ", ".join(names)
 
 
-def _conditions(asked: Filter, like: str, bound: dict[str, Any]) -> tuple[list[str], set[str]]:
+def filter_conditions(asked: Filter, like: str, bound: dict[str, Any]) -> tuple[list[str], set[str]]:
     """SQL conditions of a filter, the tables they need; values go into ``bound``."""
     clauses, tables = [], set()
     if asked.text:
@@ -114,14 +117,14 @@ def _conditions(asked: Filter, like: str, bound: dict[str, Any]) -> tuple[list[s
     area = "coalesce(area.name, intrusion_area.name)"
     for name, column in (("area", area), ("site", "site.code"), ("intrusion", "intrusion.name")):
         if values := getattr(asked, name):
-            clauses.append(f"{column} IN ({_bind_list(values, name, bound)})")
+            clauses.append(f"{column} IN ({bind_list(values, name, bound)})")
             tables.add(name)
     if asked.kind:
-        clauses.append(f"sample.kind IN ({_bind_list(asked.kind, 'kind', bound)})")
+        clauses.append(f"sample.kind IN ({bind_list(asked.kind, 'kind', bound)})")
     if asked.verdict:
         table = "verdict" if asked.target else "derived"
         column = "verdict.verdict" if asked.target else "derived.best_verdict"
-        clauses.append(f"{column} IN ({_bind_list(_stored_verdicts(asked), 'verdict', bound)})")
+        clauses.append(f"{column} IN ({bind_list(_stored_verdicts(asked), 'verdict', bound)})")
         tables.add(table)
     for position, limit in enumerate(asked.ranges):
         for sign, value in ((">=", limit.low), ("<=", limit.high)):
@@ -158,13 +161,13 @@ def _beyond(place: Place, column: Column, descending: bool, bound: dict[str, Any
 
 
 def _found_sql(asked: Filter, column: Column, like: str, bound: dict[str, Any]) -> str:
-    clauses, tables = _conditions(asked, like, bound)
+    clauses, tables = filter_conditions(asked, like, bound)
     if column.table != "sample":
         tables = tables | {column.table}
     if "verdict" in tables:
         bound["target"] = asked.target
     where = f" WHERE {' AND '.join(clauses)}" if clauses else ""
-    return f"SELECT sample.sample_id AS sample_id, {column.sql} AS sort_value FROM {_joins(tables)}{where}"
+    return f"SELECT sample.sample_id AS sample_id, {column.sql} AS sort_value FROM {joined_tables(tables)}{where}"
 
 
 def page_of_samples(
@@ -175,7 +178,7 @@ def page_of_samples(
     ``rows`` of the page hold ``sample_id sample_code is_stale``, the columns of the filter, the columns of its
     ranges and order, the norm and, with a target, ``verdict score_min score_max provisional``.
     """
-    like = "ILIKE" if _is_postgresql(connection) else "LIKE"
+    like = "ILIKE" if is_postgresql(connection) else "LIKE"
     column = sort_column(asked, columns)
     backwards = place is not None and place.backwards
     bound: dict[str, Any] = {"rows": rows + 1}
@@ -243,8 +246,8 @@ def _selected(asked: Filter, shown: Sequence[Column], *, norm: bool) -> tuple[st
 def _rows_by_key(connection: Connection, asked: Filter, columns: Columns, keys: list[int]) -> list[dict[str, Any]]:
     bound: dict[str, Any] = {"target": asked.target} if asked.target else {}
     selected, tables = _selected(asked, shown_columns(asked, columns), norm=True)
-    listed = _bind_list(keys, "key", bound)
-    statement = f"SELECT {selected} FROM {_joins(tables - {'sample'})} WHERE sample.sample_id IN ({listed})"
+    listed = bind_list(keys, "key", bound)
+    statement = f"SELECT {selected} FROM {joined_tables(tables - {'sample'})} WHERE sample.sample_id IN ({listed})"
     by_key = {row["sample_id"]: dict(row) for row in connection.execute(text(statement), bound).mappings()}
     return [by_key[key] for key in keys if key in by_key]
 
@@ -253,10 +256,10 @@ def every_sample(
     connection: Connection, asked: Filter, columns: Columns, shown: Sequence[Column]
 ) -> Iterator[dict[str, Any]]:
     """Every matching sample in the order of the list, ``shown`` columns, read a few thousand rows at a time."""
-    like = "ILIKE" if _is_postgresql(connection) else "LIKE"
+    like = "ILIKE" if is_postgresql(connection) else "LIKE"
     column = sort_column(asked, columns)
     bound: dict[str, Any] = {}
-    clauses, needed = _conditions(asked, like, bound)
+    clauses, needed = filter_conditions(asked, like, bound)
     selected, tables = _selected(asked, shown, norm=False)
     tables = (tables | needed | {column.table}) - {"sample"}
     if asked.target:
@@ -264,7 +267,7 @@ def every_sample(
     where = f" WHERE {' AND '.join(clauses)}" if clauses else ""
     order = _order(column, asked.descending, backwards=False).replace("sample_id", "sample.sample_id")
     statement = (
-        f"SELECT {selected}, {column.sql} AS sort_value FROM {_joins(tables)}{where} ORDER BY "
+        f"SELECT {selected}, {column.sql} AS sort_value FROM {joined_tables(tables)}{where} ORDER BY "
         f"{order.replace('sort_value', column.sql)}"
     )
     result = connection.execution_options(yield_per=ROWS_PER_READ).execute(text(statement), bound)
@@ -292,7 +295,7 @@ def names_not_found(connection: Connection, asked: Filter) -> dict[str, str]:
     ):
         if values := getattr(asked, name):
             bound: dict[str, Any] = {}
-            sql = f"SELECT {column} FROM {table} WHERE {column} IN ({_bind_list(values, 'name', bound)})"
+            sql = f"SELECT {column} FROM {table} WHERE {column} IN ({bind_list(values, 'name', bound)})"
             known = {row[0] for row in connection.execute(text(sql), bound)}
             missing = [value for value in values if value not in known]
             if missing:
