@@ -3,11 +3,12 @@
 from __future__ import annotations
 
 from collections.abc import Collection, Mapping, Sequence
-from typing import Any
+from typing import Any, Protocol
 
 from registry.diagrams import ALIASES, DIAGRAMS, FIRST, PANELS, Diagram, Panels
 from registry.store.reading.drawn_samples import Group
 from registry.store.reading.filters import Filter
+from registry.store.reading.samples import names_not_found
 from web import wording
 from web.sentence import address
 
@@ -92,11 +93,39 @@ class Choice:
         return [(name, value) for name, value in found.items() if value] + [("mark", code) for code in self.mark]
 
 
-def by_words(choice: Choice, targets: Mapping[str, str]) -> str:
-    if choice.by in targets:
-        name = targets[choice.by]
-        return f"verdict for {name[:1].lower() + name[1:]}"
-    return GROUP_WORDS[choice.by]
+class Grouped(Protocol):
+    """What a page asks of how samples are told apart."""
+
+    by: str
+    group: Group
+
+
+def by_choices(targets: Mapping[str, str]) -> dict[str, str]:
+    """What samples can be told apart by, in words."""
+    return GROUP_WORDS | {code: f"verdict for {wording.lower_first(name)}" for code, name in targets.items()}
+
+
+def by_words(choice: Grouped, targets: Mapping[str, str]) -> str:
+    """What samples are told apart by, in words."""
+    return by_choices(targets)[choice.by]
+
+
+def narrowed_to(asked: Filter, choice: Grouped, value: Any) -> Filter | None:
+    """The filter with the condition that leaves one group alone; None where the sentence has no such condition."""
+    changed: dict[str, Any] = {}
+    if choice.by in ("intrusion", "area"):
+        changed = {choice.by: (value,)}
+    elif choice.by == "sample_kind":
+        changed = {"kind": (value,)}
+    elif choice.group.is_verdict and (choice.group.target == asked.target or not asked.verdict):
+        changed = {"verdict": (choice.group.word(value),), "target": choice.group.target}
+    return Filter(**{**vars(asked), **changed}) if changed else None
+
+
+def checked(connection: Any, asked: Filter, own: dict[str, str]) -> Filter:
+    """The filter with every problem of the address: its own, names that are not there, and those of the page."""
+    problems = dict(asked.problems) | names_not_found(connection, asked) | own
+    return Filter(**{**vars(asked), "problems": problems}) if problems else asked
 
 
 def picker(asked: Filter, choice: Choice) -> list[tuple[str, list[dict[str, Any]]]]:

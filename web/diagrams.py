@@ -29,7 +29,7 @@ from registry.store.reading.filters import Filter
 from registry.store.reading.targets import target_names
 from web import diagram_drawing as drawing
 from web import numbers, wording
-from web.diagram_request import ENDS, GROUP_WORDS, NOTHING_WORDS, OWN, Choice, by_words, picker
+from web.diagram_request import ENDS, NOTHING_WORDS, OWN, Choice, by_choices, by_words, checked, narrowed_to, picker
 from web.reading import offered_columns, registry_connection
 from web.sentence import address, arguments_of_request, asked_filter, sentence_context, unsettled
 
@@ -52,10 +52,9 @@ def page() -> Any:
         columns, targets = offered_columns(connection), target_names(connection)
         asked = asked_filter(arguments, columns, targets, OWN)
         choice = Choice(arguments, asked, targets)
-        problems = dict(asked.problems) | samples_reading.names_not_found(connection, asked) | choice.problems
-        if problems:
-            asked = Filter(**{**vars(asked), "problems": problems})
-        elif unsettled(arguments):
+        asked = checked(connection, asked, choice.problems)
+        problems = asked.problems
+        if not problems and unsettled(arguments):
             return redirect(address([*asked.arguments(), *choice.pairs()], "diagrams.page"))
         choices = samples_reading.choices(connection)
         drawn = {} if problems else _drawn(connection, asked, choice, columns, choices.get(choice.by, ()))
@@ -67,8 +66,7 @@ def page() -> Any:
         choice=choice,
         page={"total": drawn.get("total", 0)},
         by_words=by_words(choice, targets),
-        by_choices=[*GROUP_WORDS.items(), *((code, f"verdict for {name[:1].lower() + name[1:]}")
-                                           for code, name in targets.items())],
+        by_choices=by_choices(targets).items(),
         own_problems=[s for name, s in problems.items() if name in ("diagram", "by", "mark", *ENDS)],
         picker=picker(asked, choice),
         kept=[(name, value) for name, value in asked.arguments() if name in ("sort", "columns")],
@@ -188,15 +186,8 @@ def _link_entries(
         value = stored[entry.name]
         if entry.name in (drawing.NONE, drawing.OTHERS):
             continue
-        changed: dict[str, Any] = {}
-        if choice.by in ("intrusion", "area"):
-            changed = {choice.by: (value,)}
-        elif choice.by == "sample_kind":
-            changed = {"kind": (value,)}
-        elif choice.group.is_verdict and (choice.group.target == asked.target or not asked.verdict):
-            changed = {"verdict": (choice.group.word(value),), "target": choice.group.target}
-        if changed:
-            narrower = Filter(**{**vars(asked), **changed})
+        narrower = narrowed_to(asked, choice, value)
+        if narrower is not None:
             by = "" if choice.by == (narrower.target or "intrusion") else choice.by
             entry.address = address([*narrower.arguments(), *choice.pairs(by=by)], "diagrams.page")
 

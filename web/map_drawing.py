@@ -61,7 +61,7 @@ def class_entries(classes: Classes, unit: str, without: int) -> list[ClassEntry]
     for place in reversed(range(many)):
         least, most = classes.ends[place]
         part = place / (many - 1) if many > 1 else 0.5
-        shade = round(part * (SHADES - 1))
+        shade = shade_of(place, many)
         radius = LEAST_RADIUS + part * (MOST_RADIUS - LEAST_RADIUS)
         low, high = derived(least, unit), derived(most, unit)
         words = low if low == high else f"{low} to {high}"

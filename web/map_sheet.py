@@ -13,7 +13,7 @@ from registry.store.reading.drawn_samples import CONTROL_KINDS
 from registry.store.reading.filters import Filter
 from web import diagram_drawing, numbers, wording
 from web import map_drawing as drawing
-from web.diagram_request import NOTHING_WORDS
+from web.diagram_request import NOTHING_WORDS, narrowed_to
 from web.map_points import drawn_samples, sites_within, table_of
 from web.map_request import WHOLE, MapChoice
 from web.map_words import bases, moves, north_said, surveys_said
@@ -185,14 +185,7 @@ def _link_entries(
         if entry.name in (diagram_drawing.NONE, diagram_drawing.OTHERS):
             continue
         value = value_of[entry.name]
-        changed: dict[str, Any] = {}
-        if choice.by in ("intrusion", "area"):
-            changed = {choice.by: (value,)}
-        elif choice.by == "sample_kind":
-            changed = {"kind": (value,)}
-        elif choice.group.is_verdict and (choice.group.target == asked.target or not asked.verdict):
-            changed = {"verdict": (choice.group.word(value),), "target": choice.group.target}
-        if changed:
-            narrower = Filter(**{**vars(asked), **changed})
+        narrower = narrowed_to(asked, choice, value)
+        if narrower is not None:
             by = "" if choice.by == (narrower.target or "best_verdict") else choice.by
             entry.address = address([*narrower.arguments(), *choice.pairs(by=by, **WHOLE)], "map.page")

@@ -12,8 +12,7 @@ from registry.store.reading import samples as samples_reading
 from registry.store.reading.columns import Columns
 from registry.store.reading.filters import Filter
 from registry.store.reading.targets import target_names
-from web import wording
-from web.diagram_request import ENDS, GROUP_WORDS, by_words
+from web.diagram_request import ENDS, by_choices, by_words, checked
 from web.map_request import OWN, WHOLE, MapChoice
 from web.map_sheet import drawn_map
 from web.reading import offered_columns, registry_connection
@@ -34,14 +33,13 @@ def page() -> Any:
         columns, targets = offered_columns(connection), target_names(connection)
         asked = asked_filter(arguments, columns, targets, OWN)
         choice = MapChoice(arguments, asked, targets, columns)
-        problems = dict(asked.problems) | samples_reading.names_not_found(connection, asked) | choice.problems
-        if problems:
-            asked = Filter(**{**vars(asked), "problems": problems})
-        elif unsettled(arguments):
+        asked = checked(connection, asked, choice.problems)
+        problems = asked.problems
+        if not problems and unsettled(arguments):
             return redirect(address([*asked.arguments(), *choice.pairs()], "map.page"))
         choices = samples_reading.choices(connection)
         drawn = {} if problems else drawn_map(connection, asked, choice, choices.get(choice.by, ()))
-    shown_by = choice.number.label if choice.number else by_words(choice, targets)  # type: ignore[arg-type]
+    shown_by = choice.number.label if choice.number else by_words(choice, targets)
     body = render_template(
         "map.html",
         section="Map",
@@ -49,8 +47,7 @@ def page() -> Any:
         choice=choice,
         page={"total": drawn.get("total", 0)},
         by_words=shown_by,
-        by_choices=[*GROUP_WORDS.items(), *((code, f"verdict for {wording.lower_first(name)}")
-                                           for code, name in targets.items())],
+        by_choices=by_choices(targets).items(),
         own_problems=[s for name, s in problems.items() if name in ("by", "number", *ENDS)],
         kept=[(name, value) for name, value in asked.arguments() if name in ("sort", "columns")],
         parts=_parts(asked, choice, choices),
@@ -79,9 +76,9 @@ def _file(kind: str) -> Any:
     with registry_connection() as connection:
         columns, targets = offered_columns(connection), target_names(connection)
         asked = asked_filter(arguments_of_request(), columns, targets)
-        problems = dict(asked.problems) | samples_reading.names_not_found(connection, asked)
-        if problems:
-            return Response("\n".join(problems.values()) + "\n", 400, mimetype="text/plain")
+        asked = checked(connection, asked, {})
+        if asked.problems:
+            return Response("\n".join(asked.problems.values()) + "\n", 400, mimetype="text/plain")
         content = map_file(connection, asked, columns, kind)
     headers = {"Content-Disposition": f'attachment; filename="samples.{kind}"'}
     return Response(content, mimetype=FILES[kind], headers=headers)
