@@ -142,22 +142,15 @@ def _written_otherwise(
         return []
     column = tables.metadata.tables[spec.table].c[spec.key[0]]
     near = near_misses(fresh, connection.execute(sa.select(column)).scalars())
-    warnings = [
-        Problem(
-            file,
-            f"a registered {spec.noun} is written almost the same",
-            lines[fresh[code]],
-            shown,
-            code,
-            f"perhaps '{close[0]}'",
-            "they are kept apart; correct the code if they are the same",
-            "warning",
-        )
-        for code, close in list(near.items())[:LISTED]
-    ]
-    if len(near) > LISTED:
-        what = f"{len(near) - LISTED:,} more codes are almost those of registered ones ({spec.kind})"
-        warnings.append(Problem(file, what, severity="warning"))
+    warnings = _almost_the_same(
+        [(code, f"perhaps '{close[0]}'", fresh[code]) for code, close in near.items()],
+        f"a registered {spec.noun} is written almost the same",
+        "they are kept apart; correct the code if they are the same",
+        f"more codes are almost those of registered ones ({spec.kind})",
+        shown,
+        lines,
+        file,
+    )
     return warnings + _written_twice(spec, [code for code in fresh if code not in near], fresh, shown, lines, file)
 
 
@@ -165,23 +158,36 @@ def _written_twice(
     spec: MasterKind, codes: Sequence[str], rows: Mapping[str, int], shown: str, lines: Sequence[int], file: str
 ) -> list[Problem]:
     """New codes of one file that differ from each other only so; ``rows`` are theirs."""
-    twice = written_twice(codes)
+    return _almost_the_same(
+        [
+            (code, f"perhaps '{one}' of row {lines[rows[one]]}", rows[code])
+            for code, one in written_twice(codes).items()
+        ],
+        f"another {spec.noun} of the file is written almost the same",
+        "they are kept apart; correct one if they are the same",
+        f"more codes of the file are almost those of others ({spec.kind})",
+        shown,
+        lines,
+        file,
+    )
+
+
+def _almost_the_same(
+    found: Sequence[tuple[str, str, int]],
+    what: str,
+    remedy: str,
+    more: str,
+    shown: str,
+    lines: Sequence[int],
+    file: str,
+) -> list[Problem]:
+    """Warnings of codes, each with what it may be meant to be and its row; the first of them, and how many ``more``."""
     warnings = [
-        Problem(
-            file,
-            f"another {spec.noun} of the file is written almost the same",
-            lines[rows[code]],
-            shown,
-            code,
-            f"perhaps '{before}' of row {lines[rows[before]]}",
-            "they are kept apart; correct one if they are the same",
-            "warning",
-        )
-        for code, before in list(twice.items())[:LISTED]
+        Problem(file, what, lines[row], shown, code, perhaps, remedy, "warning")
+        for code, perhaps, row in found[:LISTED]
     ]
-    if len(twice) > LISTED:
-        what = f"{len(twice) - LISTED:,} more codes of the file are almost those of others ({spec.kind})"
-        warnings.append(Problem(file, what, severity="warning"))
+    if len(found) > LISTED:
+        warnings.append(Problem(file, f"{len(found) - LISTED:,} {more}", severity="warning"))
     return warnings
 
 

@@ -10,6 +10,7 @@ import sqlalchemy as sa
 
 from registry.errors import Problem
 from registry.store import master_outlying, positions, tables
+from registry.store.current_values import current
 
 Rows = dict[str, list[Any]]
 Known = Mapping[tuple[Any, ...], Mapping[str, Any]]
@@ -26,19 +27,15 @@ def complete_sites(connection: sa.Connection, stored: Rows, known: Known) -> Non
     """Fill the coordinate system from the area where it is blank, and longitude and latitude from the coordinates."""
     n = len(stored["code"])
     blank = [None] * n
-    before = [known.get((code,), {}) for code in stored["code"]]
-
-    def current(name: str) -> list[Any]:
-        column = stored.get(name, blank)
-        return [value if value is not None else row.get(name) for value, row in zip(column, before, strict=True)]
-
     systems = {
         row.area_id: row.epsg for row in connection.execute(sa.select(tables.area.c.area_id, tables.area.c.epsg))
     }
-    easting, northing = current("easting"), current("northing")
+    easting, northing, own, areas = (
+        current(stored, known, name) for name in ("easting", "northing", "epsg", "area_id")
+    )
     epsg = [
         code if code is not None else (systems.get(area) if east is not None else None)
-        for code, area, east in zip(current("epsg"), current("area_id"), easting, strict=True)
+        for code, area, east in zip(own, areas, easting, strict=True)
     ]
     longitude, latitude = positions.longitude_latitude(
         np.array(easting, dtype=float), np.array(northing, dtype=float), np.array(epsg, dtype=float)
@@ -204,16 +201,10 @@ def check_places(
 
 def _areas_of(connection: sa.Connection, noun: str, stored: Rows, known: Known) -> tuple[list[Any], list[Any]]:
     """The area (id or None) of each row, and the codes of the rows that are sites."""
-    blank = [None] * len(stored["code"])
-
-    def current(name: str) -> list[Any]:
-        column = stored.get(name, blank)
-        rows = zip(column, stored["code"], strict=True)
-        return [known.get((code,), {}).get(name) if value is None else value for value, code in rows]
-
     if noun == "site":
-        return current("area_id"), stored["code"]
-    return master_outlying.areas_of_samples(connection, current("site_id"), current("intrusion_id")), blank
+        return current(stored, known, "area_id"), stored["code"]
+    sites, intrusions = (current(stored, known, name) for name in ("site_id", "intrusion_id"))
+    return master_outlying.areas_of_samples(connection, sites, intrusions), [None] * len(stored["code"])
 
 
 def _outside_their_area(

@@ -10,6 +10,7 @@ import sqlalchemy as sa
 
 from registry.errors import Problem
 from registry.store import raw_rows
+from registry.store.current_values import current
 
 Rows = dict[str, list[Any]]
 Known = Mapping[tuple[Any, ...], Mapping[str, Any]]
@@ -29,15 +30,9 @@ def partial_overlaps(
     The others are those of the file and those registered. An interval that holds another whole, or is the same, is
     taken without a word: a piece for a section out of a longer sample, a second split. Duplicates are left out.
     """
-    blank = [None] * len(lines)
-    before = [known.get((code,), {}) for code in stored["code"]]
-
-    def current(name: str) -> list[Any]:
-        column = stored.get(name, blank)
-        return [row.get(name) if value is None else value for value, row in zip(column, before, strict=True)]
-
-    original = given.get("duplicate_of", blank)
-    mine = zip(current("site_id"), current("from_m"), current("to_m"), current("kind"), stored["code"], strict=True)
+    original = given.get("duplicate_of", [None] * len(lines))
+    columns = [current(stored, known, name) for name in ("site_id", "from_m", "to_m", "kind")]
+    mine = zip(*columns, stored["code"], strict=True)
     spans = [
         (site, start, end, code, lines[row])
         for row, (site, start, end, kind, code) in enumerate(mine)
@@ -45,7 +40,7 @@ def partial_overlaps(
         and start < end
         and kind not in _REPEATS
         and original[row] is None
-        and before[row].get("duplicate_of") is None
+        and known.get((code,), {}).get("duplicate_of") is None
     ]
     if not spans:
         return []
