@@ -9,15 +9,13 @@ from __future__ import annotations
 
 import os
 import sqlite3
-import statistics
-import time
-from collections.abc import Callable
 from pathlib import Path
 
 import numpy as np
 import pytest
 
 from registry.founding import found
+from tests.benchmarks.turns import medians
 from web import create_app
 
 SAMPLES = int(os.environ.get("PLUTONBOOK_BENCHMARK_SAMPLES", "100000"))
@@ -95,16 +93,6 @@ def on_places(tmp_path_factory: pytest.TempPathFactory) -> Path:
     return path
 
 
-def _medians(*sides: Callable[[], object]) -> list[float]:
-    taken: list[list[float]] = [[] for _ in sides]
-    for _ in range(TURNS):
-        for times, side in zip(taken, sides, strict=True):
-            start = time.perf_counter()
-            side()
-            times.append(time.perf_counter() - start)
-    return [statistics.median(times) for times in taken]
-
-
 @pytest.mark.parametrize("query", ["", "?number=sr_y"])
 @pytest.mark.parametrize("registry", ["along_holes", "on_places"])
 def test_map_of_100_000_samples_against_the_bare_sql(request: pytest.FixtureRequest, registry: str, query: str) -> None:
@@ -115,7 +103,7 @@ def test_map_of_100_000_samples_against_the_bare_sql(request: pytest.FixtureRequ
     text = client.get(f"/map{query}").text
     counted = f"{SAMPLES:,}".replace(",", "\u202f")
     assert f"{counted} of {counted} samples" in text
-    page, rows = _medians(lambda: client.get(f"/map{query}").text, lambda: bare.execute(BARE).fetchall())
+    page, rows = medians(TURNS, lambda: client.get(f"/map{query}").text, lambda: bare.execute(BARE).fetchall())
     print(f"\n{registry}{query}: page {page * 1e3:.0f} ms (goal 500), bare {rows * 1e3:.0f} ms, {page / rows:.1f}")
     assert page <= MOST_RATIO * rows
     bare.close()

@@ -10,8 +10,6 @@ from __future__ import annotations
 
 import os
 import sqlite3
-import statistics
-import time
 from collections.abc import Callable
 from pathlib import Path
 
@@ -22,6 +20,7 @@ from registry.importing import ImportOptions, import_files
 from registry.store.reading.intrusions import RANGE_COLUMNS
 from registry.store.sheets import DERIVED_COLUMNS
 from tests.benchmarks.batch_of_results import write_files
+from tests.benchmarks.turns import medians
 from web import create_app
 
 SAMPLES = int(os.environ.get("PLUTONBOOK_BENCHMARK_SAMPLES", "100000"))
@@ -78,16 +77,6 @@ def full_registry(tmp_path_factory: pytest.TempPathFactory) -> Path:
     return folder / "full.sqlite"
 
 
-def _medians(*sides: Callable[[], object]) -> list[float]:
-    taken: list[list[float]] = [[] for _ in sides]
-    for _ in range(TURNS):
-        for times, side in zip(taken, sides, strict=True):
-            start = time.perf_counter()
-            side()
-            times.append(time.perf_counter() - start)
-    return [statistics.median(times) for times in taken]
-
-
 def _bare_queries(column: str, key: int) -> tuple[str, ...]:
     names = [name for group in RANGE_COLUMNS.values() for name in group]
     numbers = ", ".join(f"d.{name}" if name in DERIVED_COLUMNS else f"c.{name}" for name in names)
@@ -119,7 +108,8 @@ def test_places_pages_of_100_000_samples_against_the_bare_sql(full_registry: Pat
         """The page as it is asked for after a change: nothing of it is remembered."""
         return lambda: (app.extensions.pop("remembered", None), client.get(address))
 
-    times = _medians(
+    times = medians(
+        TURNS,
         bare_of("intrusion_id", body),
         first("/intrusions/Body 03"),
         bare_of("site_id", hole),
@@ -151,7 +141,8 @@ def test_places_ranking_reads_the_index_once_and_keeps_the_answer(full_registry:
         client.get("/intrusions?target=tungsten")
 
     assert "Body 03" in client.get("/intrusions?target=tungsten").text
-    times = _medians(
+    times = medians(
+        TURNS,
         lambda: bare.execute(query).fetchall(),
         fresh,
         lambda: client.get("/intrusions?target=tungsten"),

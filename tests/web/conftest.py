@@ -5,7 +5,7 @@ from __future__ import annotations
 import re
 import shutil
 import sqlite3
-from collections.abc import Iterator
+from collections.abc import Callable, Iterator
 from pathlib import Path
 from typing import Any
 
@@ -281,3 +281,23 @@ def writable(writable_file: Path, tmp_path: Path) -> Iterator[WritableSite]:
 def patience(monkeypatch: pytest.MonkeyPatch) -> None:
     """A change is answered with its outcome however slow the machine is; tests of progress set less."""
     monkeypatch.setattr(working, "PATIENCE_S", 60.0)
+
+
+@pytest.fixture
+def window(browser: Any) -> Iterator[Callable[..., Any]]:
+    """Open an address at a width and in a theme; the browser is put back afterwards."""
+
+    def visit(where: str, width: int = 1280, dark: bool = False) -> Any:
+        browser.execute_cdp_cmd(
+            "Emulation.setDeviceMetricsOverride",
+            {"width": width, "height": 1200, "deviceScaleFactor": 1, "mobile": width < 500},
+        )
+        scheme = {"name": "prefers-color-scheme", "value": "dark" if dark else "light"}
+        browser.execute_cdp_cmd("Emulation.setEmulatedMedia", {"features": [scheme]})
+        browser.get_log("browser")
+        browser.get(where)
+        return browser
+
+    yield visit
+    browser.execute_cdp_cmd("Emulation.clearDeviceMetricsOverride", {})
+    browser.execute_cdp_cmd("Emulation.setEmulatedMedia", {"features": []})

@@ -90,3 +90,10 @@ def near(drawn: Pixels, colour: str, by: int = 6) -> np.ndarray:
 def share(drawn: Pixels, colour: str) -> float:
     """Which part of the pixels has this colour."""
     return float(near(drawn, colour).mean())
+
+
+def sound(browser: Any, width: int, refused: bool = False) -> None:
+    """The page fits its width and the browser complains of nothing but, of one that is ``refused``, the answer 400."""
+    assert browser.execute_script("return document.documentElement.scrollWidth") <= width
+    complaints = [entry for entry in browser.get_log("browser") if entry["level"] in ("SEVERE", "WARNING")]
+    assert [c for c in complaints if not (refused and "400" in c["message"])] == []
